@@ -158,6 +158,10 @@ int job_parse(struct job *job, const json_t *record, const char **why)
     __attribute__((warn_unused_result));
 
 /* Index of the thing with that name, or -1. */
+struct line;
+/* Adds the field `weights` of a run (NULL: an empty list) to a line that is being built. */
+void job_print_weights(const struct job *job, const struct job_run *run, struct line *line);
+
 int job_find_sensor(const struct job *job, const char *name);
 int job_find_plane(const struct job *job, const char *name);
 int job_find_run(const struct job *job, const char *name);

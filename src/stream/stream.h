@@ -77,6 +77,9 @@ int stream_pass(struct stream *stream, const struct record *record)
 /* Writes a finished line as an own record and clears it. Fails if memory ran out while building it. */
 int stream_write(struct stream *stream, struct line *line) __attribute__((warn_unused_result));
 
+/* Says "malformed record" with the place of the current record and `why` (from X_parse); gives 2. */
+int stream_malformed(struct stream *stream, const char *why);
+
 /* Writes `end`, flushes, checks that everything arrived. */
 int stream_finish(struct stream *stream) __attribute__((warn_unused_result));
 void stream_close(struct stream *stream);
@@ -87,6 +90,9 @@ struct sink; /* buffered standard output that counts records */
 
 struct sink *sink_new(int fd);                  /* NULL: no memory. A pipe is made 256 KiB wide */
 int sink_line(struct sink *sink, struct line *line) __attribute__((warn_unused_result));
+/* A record's original bytes, counted. */
+int sink_record(struct sink *sink, const char *bytes, size_t length)
+    __attribute__((warn_unused_result));
 /* Raw bytes, uncounted (samples behind a block record). */
 int sink_bytes(struct sink *sink, const void *bytes, size_t length)
     __attribute__((warn_unused_result));
