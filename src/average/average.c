@@ -1,8 +1,408 @@
+/* average.c - the stage `average`: the blocks of a run become one reading per sensor. */
 #include "average/average.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "average/mean.h"
+#include "average/overall.h"
+#include "base/message.h"
+#include "base/options.h"
+#include "base/status.h"
+#include "sheet/units.h"
+#include "stream/records.h"
+#include "stream/stream.h"
+
+/* What one run has brought for one sensor. */
+struct track_of {
+    double complex *vectors; /* owned, as the three below; NaN where there is no phase */
+    double *turns, *t, *speed;
+    size_t count, room;
+    struct spectrum_record spectrum; /* owned; count 0: none */
+};
+
+/* The run that is being gathered. */
+struct gather {
+    bool open;
+    char run[NAME_ROOM], condition[NAME_ROOM];
+    struct track_of *sensors; /* owned, one per sensor of the job */
+    size_t sensor_count;
+    struct tacho_record tacho;
+    bool has_tacho;
+};
+
+static int gather_init(struct gather *g, size_t sensor_count)
+{
+    *g = (struct gather){0};
+    g->sensors = calloc(sensor_count + 1, sizeof *g->sensors);
+    g->sensor_count = sensor_count;
+    return g->sensors ? STATUS_DONE : message_no_memory();
+}
+
+static void gather_clear(struct gather *g)
+{
+    for (size_t i = 0; i < g->sensor_count; i++) {
+        g->sensors[i].count = 0;
+        spectrum_release(&g->sensors[i].spectrum);
+        g->sensors[i].spectrum = (struct spectrum_record){0};
+    }
+    g->open = g->has_tacho = false;
+}
+
+static void gather_release(struct gather *g)
+{
+    if (!g->sensors)
+        return;
+    gather_clear(g);
+    for (size_t i = 0; i < g->sensor_count; i++) {
+        free(g->sensors[i].vectors);
+        free(g->sensors[i].turns);
+        free(g->sensors[i].t);
+        free(g->sensors[i].speed);
+    }
+    free(g->sensors);
+}
+
+static int malformed(const struct record *record, const char *why)
+{
+    message("malformed record: '%s' (%s)", record->kind, why);
+    return STATUS_USAGE;
+}
+
+static int foreign(const struct gather *g, const struct record *record, const char *run)
+{
+    if (g->open && !strcmp(g->run, run))
+        return STATUS_DONE;
+    message("record outside its run: '%s' (run '%s')", record->kind, run);
+    return STATUS_USAGE;
+}
+
+static bool grow(double **values, size_t room)
+{
+    double *more = realloc(*values, room * sizeof **values);
+
+    if (more)
+        *values = more;
+    return more != NULL;
+}
+
+static bool track_room(struct track_of *s)
+{
+    size_t room = s->room ? 2 * s->room : 64;
+    double complex *more;
+
+    if (s->count < s->room)
+        return true;
+    more = realloc(s->vectors, room * sizeof *more);
+    if (!more)
+        return false;
+    s->vectors = more;
+    if (!grow(&s->turns, room) || !grow(&s->t, room) || !grow(&s->speed, room))
+        return false;
+    s->room = room;
+    return true;
+}
+
+static int add_turns(struct gather *g, const struct record *record, const struct job *job)
+{
+    struct turns_record r = {0};
+    const char *why = "";
+    int status = STATUS_DONE;
+
+    if (turns_parse(&r, job, record->json, &why))
+        return malformed(record, why);
+    status = foreign(g, record, r.run);
+    if (status == STATUS_DONE && r.turns < 1)
+        status = malformed(record, "no turns");
+    for (size_t i = 0; status == STATUS_DONE && i < r.count; i++) {
+        struct track_of *s = &g->sensors[r.sensors[i]];
+        if (!track_room(s)) {
+            status = message_no_memory();
+            break;
+        }
+        s->vectors[s->count] = r.vectors[i];
+        s->turns[s->count] = (double)r.turns;
+        s->t[s->count] = r.t_s;
+        s->speed[s->count++] = r.speed_rpm;
+    }
+    turns_release(&r);
+    return status;
+}
+
+static int add_tacho(struct gather *g, const struct record *record)
+{
+    const char *why = "";
+
+    if (tacho_parse(&g->tacho, record->json, &why))
+        return malformed(record, why);
+    g->has_tacho = true;
+    return foreign(g, record, g->tacho.run);
+}
+
+static int add_spectrum(struct gather *g, const struct record *record, const struct job *job)
+{
+    struct spectrum_record r = {0};
+    const char *why = "";
+    int status;
+
+    if (spectrum_parse(&r, job, record->json, &why))
+        return malformed(record, why);
+    status = foreign(g, record, r.run);
+    if (status == STATUS_DONE) {
+        spectrum_release(&g->sensors[r.sensor].spectrum);
+        g->sensors[r.sensor].spectrum = r;
+    } else {
+        spectrum_release(&r);
+    }
+    return status;
+}
+
+static void fill_from_mean(struct reading_record *r, const struct mean *mean)
+{
+    r->vector = r->has_phase ? mean->vector : NAN;
+    r->amplitude = cabs(mean->vector);
+    memcpy(r->cov, mean->cov, sizeof r->cov);
+    r->blocks = (long)mean->used;
+    r->steady.amplitude_pct = 100 * mean->amplitude_sd / r->amplitude;
+    r->steady.phase_deg = mean->phase_sd_deg;
+    r->steady.resultant = mean->resultant;
+    r->steady.drift_pct = mean->drift > 0 ? 100 * mean->drift / r->amplitude : mean->drift;
+    r->steady.independent = mean->independent;
+    r->steady.set_aside = mean->set_aside;
+    r->steady.turns = lround(mean->turns);
+}
+
+/* Takes out the blocks that have no vector. */
+static void drop_empty(struct track_of *s)
+{
+    size_t kept = 0;
+
+    for (size_t i = 0; i < s->count; i++) {
+        if (isnan(creal(s->vectors[i])) || isnan(cimag(s->vectors[i])))
+            continue;
+        s->vectors[kept] = s->vectors[i];
+        s->turns[kept] = s->turns[i];
+        s->t[kept] = s->t[i];
+        s->speed[kept++] = s->speed[i];
+    }
+    if (kept)
+        s->count = kept;
+}
+
+/* The reading of a sensor from its blocks: 0 made, 1 nothing to make it of, -1 no memory. */
+static int reading_of_blocks(struct reading_record *r, struct track_of *s, bool reference)
+{
+    struct mean mean;
+    double *amplitudes;
+    int result;
+
+    drop_empty(s);
+    if (isnan(creal(s->vectors[0])) || isnan(cimag(s->vectors[0])))
+        return 1;
+    r->has_phase = reference;
+    if (reference) {
+        result = mean_of_blocks(s->vectors, s->turns, s->t, s->count, &mean);
+    } else {
+        amplitudes = malloc(s->count * sizeof *amplitudes);
+        if (!amplitudes)
+            return -1;
+        for (size_t i = 0; i < s->count; i++)
+            amplitudes[i] = cabs(s->vectors[i]);
+        result = mean_of_amplitudes(amplitudes, s->turns, s->t, s->count, &mean);
+        free(amplitudes);
+    }
+    if (result)
+        return -1;
+    fill_from_mean(r, &mean);
+    return 0;
+}
+
+/* Without phase in the blocks: the amplitude of the spectrum's line at the running speed. */
+static int reading_of_spectrum(struct reading_record *r, const struct track_of *s)
+{
+    double turns = 0;
+
+    r->has_phase = false;
+    r->vector = NAN;
+    r->amplitude = overall_one_x(s->spectrum.orders, s->spectrum.amplitude, s->spectrum.count);
+    if (isnan(r->amplitude))
+        return 1;
+    for (size_t i = 0; i < s->count; i++)
+        turns += s->turns[i];
+    r->steady = (struct steady){NAN, NAN, NAN, NAN, NAN, NAN, 0, lround(turns)};
+    r->blocks = (long)s->count;
+    return 0;
+}
+
+static void fill_speed(struct reading_record *r, const struct track_of *s, const struct gather *g)
+{
+    double n = (double)s->count, sum = 0, squares = 0;
+
+    for (size_t i = 0; i < s->count; i++)
+        sum += s->speed[i];
+    for (size_t i = 0; i < s->count; i++)
+        squares += (s->speed[i] - sum / n) * (s->speed[i] - sum / n);
+    r->speed_rpm = sum / n;
+    if (g->has_tacho && g->tacho.speed_rpm > 0 && !isnan(g->tacho.scatter_rpm))
+        r->steady.speed_pct = 100 * g->tacho.scatter_rpm / g->tacho.speed_rpm;
+    else
+        r->steady.speed_pct = s->count > 1 ? 100 * sqrt(squares / (n - 1)) / r->speed_rpm : NAN;
+}
+
+static void fill_overall(struct reading_record *r, const struct track_of *s, const struct job *job)
+{
+    const struct job_sensor *sensor = &job->sensors[r->sensor];
+
+    r->overall.quantity = sensor->show.quantity;
+    overall_band(r->speed_rpm, &r->overall.from_hz, &r->overall.to_hz);
+    r->overall.rms = overall_rms(s->spectrum.orders, s->spectrum.amplitude, s->spectrum.count,
+                                 r->speed_rpm, sensor->quantity, sensor->show.quantity);
+}
+
+/* Writes the readings of the run gathered so far, and forgets it. */
+static int finish_run(struct gather *g, struct stream *stream, struct line *line)
+{
+    bool reference = !g->has_tacho || g->tacho.reference;
+    int status = STATUS_DONE;
+
+    for (size_t i = 0; g->open && status == STATUS_DONE && i < g->sensor_count; i++) {
+        struct track_of *s = &g->sensors[i];
+        struct reading_record r = {.sensor = (int)i};
+        int made = s->count ? reading_of_blocks(&r, s, reference) : 1;
+        if (made == 1 && s->count)
+            made = reading_of_spectrum(&r, s);
+        if (made < 0)
+            status = message_no_memory();
+        if (made != 0)
+            continue;
+        memcpy(r.run, g->run, sizeof r.run);
+        memcpy(r.condition, g->condition, sizeof r.condition);
+        fill_speed(&r, s, g);
+        fill_overall(&r, s, &stream->job);
+        reading_print(&r, &stream->job, line);
+        status = stream_write(stream, line);
+    }
+    gather_clear(g);
+    return status;
+}
+
+/* The readings that were taken by hand stand behind their run. */
+static int hand_readings(const struct job_run *run, struct stream *stream, struct line *line)
+{
+    int status = STATUS_DONE;
+
+    for (size_t i = 0; status == STATUS_DONE && i < run->hand_count; i++) {
+        const struct job_hand *hand = &run->hand[i];
+        struct reading_record r = {.sensor = (int)hand->sensor,
+                                   .speed_rpm = run->speed_rpm,
+                                   .has_phase = hand->has_phase,
+                                   .vector = hand->has_phase ? hand->vector : NAN,
+                                   .amplitude = hand->amplitude,
+                                   .steady = {NAN, NAN, NAN, NAN, NAN, NAN, 0, 0},
+                                   .overall = {.rms = NAN}};
+        memcpy(r.run, run->name, sizeof r.run);
+        memcpy(r.condition, run->condition, sizeof r.condition);
+        r.overall.quantity = stream->job.sensors[hand->sensor].show.quantity;
+        overall_band(r.speed_rpm, &r.overall.from_hz, &r.overall.to_hz);
+        reading_print(&r, &stream->job, line);
+        status = stream_write(stream, line);
+    }
+    return status;
+}
+
+/* Opens the run of a `run` record. */
+static int begin_run(struct gather *g, struct stream *stream, const struct record *record)
+{
+    struct run_record r = {0};
+    const char *why = "";
+
+    if (run_parse(&r, &stream->job, record->json, &why))
+        return malformed(record, why);
+    memcpy(g->run, r.run, sizeof g->run);
+    memcpy(g->condition, r.condition, sizeof g->condition);
+    g->open = true;
+    run_release(&r);
+    return STATUS_DONE;
+}
+
+static int take(struct gather *g, struct stream *stream, const struct record *record,
+                struct line *line)
+{
+    int status = STATUS_DONE;
+    bool run = !strcmp(record->kind, "run");
+
+    if (run)
+        status = finish_run(g, stream, line);
+    if (status == STATUS_DONE && run)
+        status = begin_run(g, stream, record);
+    else if (!strcmp(record->kind, "turns"))
+        status = add_turns(g, record, &stream->job);
+    else if (!strcmp(record->kind, "tacho"))
+        status = add_tacho(g, record);
+    else if (!strcmp(record->kind, "spectrum"))
+        status = add_spectrum(g, record, &stream->job);
+    if (status == STATUS_DONE)
+        status = stream_pass(stream, record);
+    if (status == STATUS_DONE && run) {
+        int index = job_find_run(&stream->job, g->run);
+        if (index >= 0 && stream->job.runs[index].hand_count)
+            status = hand_readings(&stream->job.runs[index], stream, line);
+    }
+    return status;
+}
+
+static int loop(const struct option_list *files)
+{
+    struct stream stream = {0};
+    struct gather gather = {0};
+    struct line line = LINE_INIT;
+    struct record record;
+    int status = stream_open(&stream, files->items, files->count, true);
+
+    if (status == STATUS_DONE)
+        status = gather_init(&gather, stream.job.sensor_count);
+    while (status == STATUS_DONE && stream_next_tracked(&stream, &record))
+        status = take(&gather, &stream, &record, &line);
+    if (status == STATUS_DONE)
+        status = stream.status;
+    if (status == STATUS_DONE)
+        status = finish_run(&gather, &stream, &line);
+    if (status == STATUS_DONE)
+        status = stream_finish(&stream);
+    line_release(&line);
+    gather_release(&gather);
+    stream_close(&stream);
+    return status;
+}
 
 int stage_average(int argc, char **argv)
 {
-    (void)argc;
-    (void)argv;
-    return 1;
+    static const struct option options[] = {{0}};
+    static const struct usage usage = {
+        "average",
+        "[FILE...]",
+        "blocks of turns become one reading per sensor and run",
+        options,
+        0,
+        (size_t)-1,
+        "Reads records from the files, one after another, or from standard input. Behind the last\n"
+        "record of each run stand its readings: the mean vector of the blocks, outlier blocks set\n"
+        "aside, with the covariance of that mean, and how steady it was.\n"};
+    struct option_list files = {0};
+    int status;
+
+    message_stage("average");
+    switch (options_parse(&usage, argc, argv, &files)) {
+    case OPTIONS_STOP:
+        status = STATUS_DONE;
+        break;
+    case OPTIONS_GO:
+        status = loop(&files);
+        break;
+    default:
+        status = STATUS_USAGE;
+    }
+    option_list_release(&files);
+    return status;
 }

@@ -1,0 +1,105 @@
+#include "average/longrun.h"
+
+#include <math.h>
+
+#include "base/angle.h"
+
+static const size_t COUNT_LEAST = 6;        /* with fewer a correlation says nothing */
+static const double CORRELATION_MOST = 0.9; /* (1+r)/(1-r) = 19: more, and the run has no mean */
+static const double LEVEL = 0.1;       /* of the cosine test; see tests/unit/test_average_mean.c */
+static const double CHI2_95 = 5.99146; /* chi-squared with 2 degrees of freedom, 95 % */
+
+double longrun_f_tail(double x, size_t a, size_t b)
+{
+    double y = (double)b / ((double)b + (double)a * x);
+    double term = pow(y, (double)b), sum = 0;
+
+    for (size_t j = 0; j < a; j++) {
+        sum += term;
+        term *= (1 - y) * (double)(b + j) / (double)(j + 1);
+    }
+    return sum;
+}
+
+double longrun_f2_point(double p, double b)
+{
+    return b * (pow(p, -1 / b) - 1);
+}
+
+static double complex mean(const double complex *vectors, size_t count)
+{
+    double complex sum = 0;
+
+    for (size_t i = 0; i < count; i++)
+        sum += vectors[i];
+    return sum / (double)count;
+}
+
+static double square(double complex z)
+{
+    return creal(z) * creal(z) + cimag(z) * cimag(z);
+}
+
+/* (1+r)/(1-r) of the lag-1 correlation; `power` is the sum of squared deviations. */
+static double from_correlation(const double complex *vectors, size_t count, double complex middle,
+                               double power)
+{
+    double n = (double)count, sum = 0, r;
+
+    for (size_t i = 1; i < count; i++)
+        sum += creal((vectors[i] - middle) * conj(vectors[i - 1] - middle));
+    r = (sum / power + 1 / n) / (1 - 3 / n);
+    if (r < 1 / sqrt(2 * n)) /* the standard error, of both components together */
+        return 1;
+    if (r > CORRELATION_MOST)
+        r = CORRELATION_MOST;
+    return (1 + r) / (1 - r);
+}
+
+/* The power in cosine sum j = 1, 2 ...; those of all j < count add up to the whole. */
+static double cosine_power(const double complex *vectors, size_t count, size_t j)
+{
+    double complex sum = 0;
+
+    for (size_t i = 0; i < count; i++)
+        sum += vectors[i] * cos(PI * (double)j * ((double)i + 0.5) / (double)count);
+    return 2 * square(sum) / (double)count;
+}
+
+static double from_cosines(const double complex *vectors, size_t count, double power)
+{
+    size_t most = count < 128 ? 8 : 16, j = 1;
+    double low = 0, factor = 1;
+
+    for (size_t b = 2; b <= most && 2 * b <= count; b *= 2) {
+        size_t rest = count - 1 - b;
+        double excess;
+        for (; j <= b; j++)
+            low += cosine_power(vectors, count, j);
+        excess = low / (double)b / ((power - low) / (double)rest);
+        if (longrun_f_tail(excess, b, rest) < LEVEL) {
+            double wider = 2 * longrun_f2_point(0.05, (double)b) / CHI2_95;
+            double ratio = low / (double)b / (power / (double)(count - 1)) * wider;
+            if (ratio > factor)
+                factor = ratio;
+        }
+    }
+    return factor;
+}
+
+double longrun_factor(const double complex *vectors, size_t count)
+{
+    double complex middle = mean(vectors, count);
+    double power = 0, a, b;
+
+    for (size_t i = 0; i < count; i++)
+        power += square(vectors[i] - middle);
+    if (isnan(power))
+        return NAN;
+    /* No scatter beyond rounding: correlated or not, it does not matter. */
+    if (count < COUNT_LEAST || power <= 1e-24 * square(middle) * (double)count || power == 0)
+        return 1;
+    a = from_correlation(vectors, count, middle, power);
+    b = from_cosines(vectors, count, power);
+    return a > b ? a : b;
+}

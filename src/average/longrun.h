@@ -1,0 +1,28 @@
+/* longrun.h - how much more the mean of blocks scatters than uncorrelated blocks would let it. */
+#ifndef LOPSIDE_AVERAGE_LONGRUN_H
+#define LOPSIDE_AVERAGE_LONGRUN_H
+
+#include <complex.h>
+#include <stddef.h>
+
+/* The variance of the mean of `count` successive block vectors, over variance/count. At least 1;
+ * exactly 1 for fewer than 6 blocks or blocks without any scatter; NaN where a vector is NaN.
+ *
+ * The larger of two estimates, both pooled over the two components:
+ *  - the lag-1 correlation of the blocks, freed of its small-sample bias (M. G. Kendall, Biometrika
+ *    41 (1954) 403-404), where it exceeds one standard error, as (1+r)/(1-r);
+ *  - the mean power of the first B = 2, 4, 8 (16) cosine sums (E. Lazarus, D. J. Lewis, J. H.
+ * Stock, M. W. Watson, J. Bus. Econ. Stat. 36 (2018) 541-559, "EWC"), where it exceeds the power of
+ * the rest at the 10 % level of F(2B, 2(n-1-B)), widened by what F(2, 2B) is wider than
+ * chi-squared. This sees slow drift that hides below larger white scatter, which the lag-1
+ * correlation does not. */
+double longrun_factor(const double complex *vectors, size_t count);
+
+/* P(F > x) of Snedecor's F with 2a and 2b degrees of freedom, a and b whole and >= 1, x >= 0: the
+ * finite sum of the incomplete beta function (Abramowitz & Stegun 1964, 26.6.4). */
+double longrun_f_tail(double x, size_t a, size_t b);
+
+/* The point that F with 2 and 2b degrees of freedom exceeds with probability p. */
+double longrun_f2_point(double p, double b);
+
+#endif

@@ -1,0 +1,142 @@
+#include "average/mean.h"
+
+#include <math.h>
+#include <stdbool.h>
+#include <stdlib.h>
+
+#include "average/circular.h"
+#include "average/longrun.h"
+#include "average/robust.h"
+#include "average/trend.h"
+
+static const double ROUND_FREEDOM = 10; /* see the header, and the simulation it names */
+static const double CHI2_95 = 5.99146;  /* chi-squared with 2 degrees of freedom, 95 % */
+
+/* The blocks used, in one allocation: z then turns then t. */
+struct kept {
+    double complex *z; /* owned; the others lie behind */
+    double *turns, *t;
+    size_t count;
+};
+
+static int keep_blocks(const double complex *vectors, const double *turns, const double *t,
+                       size_t count, struct kept *kept, long *set_aside)
+{
+    bool *keep = malloc(count * sizeof *keep);
+    double complex *room = malloc(count * (sizeof *room + 2 * sizeof(double)));
+    long aside = keep && room ? robust_keep(vectors, count, keep) : -1;
+
+    if (aside < 0) {
+        free(room);
+        free(keep);
+        return -1;
+    }
+    *kept = (struct kept){room, (double *)(room + count), (double *)(room + count) + count, 0};
+    for (size_t i = 0; i < count; i++) {
+        if (!keep[i])
+            continue;
+        kept->z[kept->count] = vectors[i];
+        kept->turns[kept->count] = turns[i];
+        kept->t[kept->count++] = t[i];
+    }
+    *set_aside = aside;
+    free(keep);
+    return 0;
+}
+
+/* What a region must be scaled by for few blocks; continuous to a few per cent at 12. */
+static double small_sample(size_t count)
+{
+    double n = (double)count;
+
+    return count < 12 ? 2 * longrun_f2_point(0.05, n - 1) / CHI2_95 : 1 - 1.1 / n;
+}
+
+static void covariance_of_mean(const struct kept *k, struct mean *mean)
+{
+    double n = (double)k->count, re = 0, im = 0, both = 0;
+    double weight = (n - 1) / (n - 1 + ROUND_FREEDOM), round, scale;
+
+    if (k->count == 1) {
+        double a = cabs(mean->vector);
+        mean->cov[0] = mean->cov[2] = a * a / 2;
+        mean->cov[1] = 0;
+        mean->independent = 1;
+        return;
+    }
+    for (size_t i = 0; i < k->count; i++) {
+        double complex d = k->z[i] - mean->vector;
+        re += creal(d) * creal(d) / (n - 1);
+        im += cimag(d) * cimag(d) / (n - 1);
+        both += creal(d) * cimag(d) / (n - 1);
+    }
+    scale = longrun_factor(k->z, k->count);
+    mean->independent = n / scale < 1 ? 1 : n / scale;
+    scale *= small_sample(k->count) / n;
+    round = 0.5 * (re + im) * (1 - weight);
+    mean->cov[0] = (re * weight + round) * scale;
+    mean->cov[1] = both * weight * scale;
+    mean->cov[2] = (im * weight + round) * scale;
+}
+
+static void steadiness(const struct kept *k, struct mean *mean)
+{
+    double n = (double)k->count, sum = 0, squares = 0;
+    struct circular lags = circular_of_vectors(k->z, k->count);
+
+    mean->resultant = lags.resultant;
+    mean->phase_sd_deg = k->count > 1 ? lags.sd_deg : NAN;
+    for (size_t i = 0; i < k->count; i++)
+        sum += cabs(k->z[i]);
+    for (size_t i = 0; i < k->count; i++) {
+        double d = cabs(k->z[i]) - sum / n;
+        squares += d * d;
+    }
+    mean->amplitude_sd = k->count > 1 ? sqrt(squares / (n - 1)) : NAN;
+    mean->drift = trend_size(k->z, k->t, k->count);
+}
+
+int mean_of_blocks(const double complex *vectors, const double *turns, const double *t,
+                   size_t count, struct mean *mean)
+{
+    struct kept kept;
+    double complex sum = 0;
+
+    if (count == 0)
+        return -2;
+    *mean = (struct mean){0};
+    if (keep_blocks(vectors, turns, t, count, &kept, &mean->set_aside))
+        return -1;
+    mean->used = kept.count;
+    for (size_t i = 0; i < kept.count; i++) {
+        sum += kept.z[i] * kept.turns[i];
+        mean->turns += kept.turns[i];
+    }
+    mean->vector = sum / mean->turns;
+    covariance_of_mean(&kept, mean);
+    steadiness(&kept, mean);
+    free(kept.z);
+    return 0;
+}
+
+int mean_of_amplitudes(const double *amplitudes, const double *turns, const double *t, size_t count,
+                       struct mean *mean)
+{
+    double complex *vectors = malloc((count + 1) * sizeof *vectors);
+    int result;
+
+    if (!vectors)
+        return -1;
+    for (size_t i = 0; i < count; i++)
+        vectors[i] = amplitudes[i];
+    result = mean_of_blocks(vectors, turns, t, count, mean);
+    free(vectors);
+    if (result)
+        return result;
+    /* The scatter lies on one line: all of it is the amplitude's. */
+    mean->cov[0] += mean->cov[2];
+    mean->cov[2] = mean->cov[0];
+    mean->cov[1] = 0;
+    mean->phase_sd_deg = mean->resultant = NAN;
+    return 0;
+}
