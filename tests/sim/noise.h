@@ -9,8 +9,8 @@
 #define NOISE_LINES 8
 
 struct noise_line {
-    double order;   /* of the shaft; 0: not tied to it */
-    double hz;      /* used where order is 0 */
+    double order; /* of the shaft; 0: not tied to it */
+    double hz;    /* used where order is 0 */
     double amplitude, phase_deg;
 };
 
@@ -19,7 +19,7 @@ struct noise {
     double white;               /* standard deviation */
     double coloured, corner_hz; /* standard deviation and corner of first-order low-passed noise */
     double offset;
-    double drift;               /* the 1x grows by this fraction over the recording, its mean stays */
+    double drift; /* the 1x grows by this fraction over the recording, its mean stays */
     struct noise_line lines[NOISE_LINES];
     size_t line_count;
 };

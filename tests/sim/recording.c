@@ -9,10 +9,13 @@
 
 static int container_format(const char *container, int bits)
 {
-    int sub = bits == 16 ? SF_FORMAT_PCM_16 : bits == 24 ? SF_FORMAT_PCM_24
-              : bits == 32 ? SF_FORMAT_PCM_32 : SF_FORMAT_FLOAT;
-    int type = !strcmp(container, "flac") ? SF_FORMAT_FLAC
-               : !strcmp(container, "rf64") ? SF_FORMAT_RF64 : SF_FORMAT_WAV;
+    int sub = bits == 16   ? SF_FORMAT_PCM_16
+              : bits == 24 ? SF_FORMAT_PCM_24
+              : bits == 32 ? SF_FORMAT_PCM_32
+                           : SF_FORMAT_FLOAT;
+    int type = !strcmp(container, "flac")   ? SF_FORMAT_FLAC
+               : !strcmp(container, "rf64") ? SF_FORMAT_RF64
+                                            : SF_FORMAT_WAV;
     return type | sub;
 }
 

@@ -23,12 +23,12 @@ struct recording_csv {
     const char *units[RECORDING_COLUMNS]; /* units row; units[0] NULL: none */
     const char *time_name;                /* NULL: no time column */
     int time_digits;
-    int preamble;                         /* lines before the header */
-    bool crlf, bom, quoted;               /* quoted: header cells in quotes */
+    int preamble;           /* lines before the header */
+    bool crlf, bom, quoted; /* quoted: header cells in quotes */
 };
 
-/* container "wav", "rf64" or "flac"; bits 16, 24, 32 or 0 for float. Values beyond full_scale volts are
- * clipped. Returns 0, or -1 when it could not be written. */
+/* container "wav", "rf64" or "flac"; bits 16, 24, 32 or 0 for float. Values beyond full_scale volts
+ * are clipped. Returns 0, or -1 when it could not be written. */
 int recording_sound(const char *path, const struct recording *recording, const char *container,
                     int bits, double full_scale) __attribute__((warn_unused_result));
 

@@ -96,7 +96,8 @@ double rotor_steady(const struct rotor *rotor, const struct rotor_mass *masses, 
         const struct rotor_mode *mode = &rotor->modes[k];
         double complex now = mode_force(rotor, mode, masses, mass_count, turned, w, 0);
         /* a quarter turn earlier: tells where in its cycle each direction's force is */
-        double complex past = mode_force(rotor, mode, masses, mass_count, turned - TWO_PI / 4, w, 0);
+        double complex past =
+            mode_force(rotor, mode, masses, mass_count, turned - TWO_PI / 4, w, 0);
         double complex fx = creal(now) + I * creal(past), fy = cimag(now) + I * cimag(past);
         motion += mode->sensors[sensor] * (cx * fx * receptance(mode->x_hz, mode, w) +
                                            cy * fy * receptance(mode->y_hz, mode, w));
@@ -228,7 +229,8 @@ struct rotor_vector rotor_truth(const struct rotor *rotor, const struct rotor_ma
     steady.sweep_rpm_s = 0;
     for (size_t i = 0; i < ROTOR_WANDERS; i++)
         steady.wander[i].depth = 0;
-    double period = 60 / rotor->rpm, start = edge_time(&steady, edge, period), step = period / STEPS;
+    double period = 60 / rotor->rpm, start = edge_time(&steady, edge, period),
+           step = period / STEPS;
     double best = -INFINITY, at = start;
     for (int i = 0; i < STEPS; i++) {
         double x = rotor_steady(&steady, masses, mass_count, sensor, start + i * step);

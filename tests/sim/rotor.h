@@ -1,10 +1,11 @@
 /* rotor.h - a turning disc, a tape, a heavy spot and sensors, by geometry and mechanics only.
  *
  * The model never uses the relation that the program rests on. It knows a laboratory frame (looking
- * at the drive end, angles counter-clockwise from the right), a body that turns in it, masses on the
- * body that pull outwards, modes of the support that answer, and sensors that feel the motion along
- * their own direction. What a weight "at 30 deg against rotation from the tape" means is worked out
- * by walking that angle on the body, and the lag of a vibration by timing its positive peak.
+ * at the drive end, angles counter-clockwise from the right), a body that turns in it, masses on
+ * the body that pull outwards, modes of the support that answer, and sensors that feel the motion
+ * along their own direction. What a weight "at 30 deg against rotation from the tape" means is
+ * worked out by walking that angle on the body, and the lag of a vibration by timing its positive
+ * peak.
  *
  * Units: SI, angles in degrees where the name says so, else radians. All functions are pure but for
  * the random numbers handed in; NaN in gives NaN out.
@@ -29,16 +30,16 @@ enum rotor_quantity { ROTOR_DISPLACEMENT, ROTOR_VELOCITY, ROTOR_ACCELERATION };
 
 /* A mode of the rotor on its support; it may be softer one way than the other. */
 struct rotor_mode {
-    double x_hz, y_hz;               /* natural frequency, horizontal and vertical; > 0 */
-    double damping;                  /* fraction of critical, > 0 */
-    double mass;                     /* modal mass, kg */
-    double planes[ROTOR_PLANES];     /* mode shape at the planes */
-    double sensors[ROTOR_SENSORS];   /* and at the sensors */
+    double x_hz, y_hz;             /* natural frequency, horizontal and vertical; > 0 */
+    double damping;                /* fraction of critical, > 0 */
+    double mass;                   /* modal mass, kg */
+    double planes[ROTOR_PLANES];   /* mode shape at the planes */
+    double sensors[ROTOR_SENSORS]; /* and at the sensors */
 };
 
 struct rotor_sensor {
-    double at_deg;                   /* its direction in the laboratory */
-    enum rotor_quantity quantity;    /* what it measures */
+    double at_deg;                /* its direction in the laboratory */
+    enum rotor_quantity quantity; /* what it measures */
 };
 
 /* Speed: rpm(t) = rpm + sweep*t + rpm * sum depth*sin(2 pi t/period + phase). */
@@ -47,10 +48,10 @@ struct rotor_wander {
 };
 
 struct rotor {
-    int direction;                   /* +1 counter-clockwise, -1 clockwise, seen from the drive end */
-    double start_deg;                /* how far the body stands turned at t = 0 (counter-clockwise) */
-    double rpm;                      /* at t = 0, without wander; > 0 */
-    double sweep_rpm_s;              /* rpm per second */
+    int direction;      /* +1 counter-clockwise, -1 clockwise, seen from the drive end */
+    double start_deg;   /* how far the body stands turned at t = 0 (counter-clockwise) */
+    double rpm;         /* at t = 0, without wander; > 0 */
+    double sweep_rpm_s; /* rpm per second */
     struct rotor_wander wander[ROTOR_WANDERS];
     double tape_deg, tape_width_deg; /* body angle of the tape's middle, its width */
     double tacho_deg;                /* where the fixed tacho looks, laboratory angle */
@@ -98,9 +99,9 @@ double rotor_steady(const struct rotor *rotor, const struct rotor_mass *masses, 
 void rotor_run(const struct rotor *rotor, const struct rotor_mass *masses, size_t mass_count,
                double rate_hz, size_t n, int oversample, double *x);
 
-/* True 1x at constant speed rotor->rpm (sweep and wander left out), measured as a person with a fine
- * oscilloscope would: time from the tape's edge before the tacho (edge +1: the pulse begins, -1: it
- * ends) to the following positive peak. */
+/* True 1x at constant speed rotor->rpm (sweep and wander left out), measured as a person with a
+ * fine oscilloscope would: time from the tape's edge before the tacho (edge +1: the pulse begins,
+ * -1: it ends) to the following positive peak. */
 struct rotor_vector rotor_truth(const struct rotor *rotor, const struct rotor_mass *masses,
                                 size_t mass_count, size_t sensor, int edge);
 

@@ -2,9 +2,10 @@
  *
  *     simulate SPEC.json FOLDER
  *
- * The folder must exist. Same spec, same bytes. truth.json holds what the geometry says, measured on
- * the noise-free motion (see rotor_truth): the 1x vector of every run and sensor, the answer of every
- * sensor to 1 kg at each plane, and the weights that undo the heavy spots where these lie in planes.
+ * The folder must exist. Same spec, same bytes. truth.json holds what the geometry says, measured
+ * on the noise-free motion (see rotor_truth): the 1x vector of every run and sensor, the answer of
+ * every sensor to 1 kg at each plane, and the weights that undo the heavy spots where these lie in
+ * planes.
  */
 #include <math.h>
 #include <stdio.h>
@@ -68,7 +69,7 @@ static int write_run(const struct spec *spec, const char *folder, size_t number)
         for (size_t i = 0; i < n && s->v_per_unit != 0; i++)
             data[i * columns + k] *= s->v_per_unit;
     }
-    pulse_run(&spec->pulse, &rotor, seed + 99, spec->rate_hz, n, data + sensors, columns);
+    optical_run(&spec->optical, &rotor, seed + 99, spec->rate_hz, n, data + sensors, columns);
     struct recording recording = {data, n, columns, spec->rate_hz};
     char path[4096];
     snprintf(path, sizeof path, "%s/%s.%s", folder, run->file,
@@ -177,7 +178,7 @@ static int write_sheet(const struct spec *spec, const char *folder)
 /* The edge of the tape that the sheet's edge is: a rising edge of an inverted pulse is its end. */
 static int tape_edge(const struct spec *spec)
 {
-    return spec->pulse.high_v > spec->pulse.low_v ? spec->edge : -spec->edge;
+    return spec->optical.high_v > spec->optical.low_v ? spec->edge : -spec->edge;
 }
 
 static json_t *vector_of(const struct spec *spec, const struct rotor *rotor,
@@ -235,7 +236,8 @@ static json_t *truth_corrections(const struct spec *spec)
         double against = rotor_against(&spec->rotor, atan2(y, x) / degree);
         json_object_set_new(planes, spec->planes[p].name,
                             json_pack("{s:f,s:f,s:f}", "mass", hypot(x, y) / spec->planes[p].radius,
-                                      "angle_deg", against, "sheet_deg", sheet_angle(spec, against)));
+                                      "angle_deg", against, "sheet_deg",
+                                      sheet_angle(spec, against)));
     }
     return planes;
 }

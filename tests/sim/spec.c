@@ -104,21 +104,21 @@ static void read_tacho(struct spec *spec)
     only(t, " at_deg low_v high_v edge_s ac_s noise_v missing extra gap_from gap_turns scratch_deg "
             "scratch_width_deg scratch_height teeth ripple grow_rpm ");
     spec->rotor.tacho_deg = real(t, "at_deg", NAN);
-    spec->pulse = (struct pulse){.low_v = real(t, "low_v", 0),
-                                 .high_v = real(t, "high_v", 5),
-                                 .edge_s = real(t, "edge_s", 2 / spec->rate_hz),
-                                 .ac_s = real(t, "ac_s", 0),
-                                 .noise_v = real(t, "noise_v", 0),
-                                 .missing = real(t, "missing", 0),
-                                 .extra = real(t, "extra", 0),
-                                 .gap_from = lround(real(t, "gap_from", 0)),
-                                 .gap_turns = lround(real(t, "gap_turns", 0)),
-                                 .scratch_deg = real(t, "scratch_deg", 0),
-                                 .scratch_width_deg = real(t, "scratch_width_deg", 0),
-                                 .scratch_height = real(t, "scratch_height", 0),
-                                 .teeth = (int)real(t, "teeth", 0),
-                                 .ripple = real(t, "ripple", 0),
-                                 .grow_rpm = real(t, "grow_rpm", 0)};
+    spec->optical = (struct optical){.low_v = real(t, "low_v", 0),
+                                     .high_v = real(t, "high_v", 5),
+                                     .edge_s = real(t, "edge_s", 2 / spec->rate_hz),
+                                     .ac_s = real(t, "ac_s", 0),
+                                     .noise_v = real(t, "noise_v", 0),
+                                     .missing = real(t, "missing", 0),
+                                     .extra = real(t, "extra", 0),
+                                     .gap_from = lround(real(t, "gap_from", 0)),
+                                     .gap_turns = lround(real(t, "gap_turns", 0)),
+                                     .scratch_deg = real(t, "scratch_deg", 0),
+                                     .scratch_width_deg = real(t, "scratch_width_deg", 0),
+                                     .scratch_height = real(t, "scratch_height", 0),
+                                     .teeth = (int)real(t, "teeth", 0),
+                                     .ripple = real(t, "ripple", 0),
+                                     .grow_rpm = real(t, "grow_rpm", 0)};
 }
 
 static struct rotor_mass read_mass(const json_t *m)
@@ -156,8 +156,8 @@ static void read_lines(const json_t *s, const char *key, bool order, struct nois
             complain("too many", key);
             return;
         }
-        noise->lines[noise->line_count++] =
-            (struct noise_line){order ? cell(l, 0) : 0, order ? 0 : cell(l, 0), cell(l, 1), cell(l, 2)};
+        noise->lines[noise->line_count++] = (struct noise_line){
+            order ? cell(l, 0) : 0, order ? 0 : cell(l, 0), cell(l, 1), cell(l, 2)};
     }
 }
 
@@ -166,8 +166,9 @@ static void read_sensors(struct spec *spec)
     spec->rotor.sensor_count = count(spec->json, "sensors", ROTOR_SENSORS);
     for (size_t i = 0; i < spec->rotor.sensor_count; i++) {
         const json_t *s = item(spec->json, "sensors", i);
-        only(s, " name unit scale show v_per_unit at_deg white coloured corner_hz offset drift orders "
-                "lines digits ");
+        only(s,
+             " name unit scale show v_per_unit at_deg white coloured corner_hz offset drift orders "
+             "lines digits ");
         struct spec_sensor *sensor = &spec->sensors[i];
         sensor->name = text(s, "name", "");
         sensor->unit = text(s, "unit", "");

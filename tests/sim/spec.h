@@ -1,4 +1,5 @@
-/* spec.h - a simulated job as a JSON file says it. The keys stand in spec.c, an example in demo-fan.json. */
+/* spec.h - a simulated job as a JSON file says it. The keys stand in spec.c, an example in
+ * demo-fan.json. */
 #ifndef LOPSIDE_SIM_SPEC_H
 #define LOPSIDE_SIM_SPEC_H
 
@@ -6,7 +7,7 @@
 #include <stdint.h>
 
 #include "noise.h"
-#include "pulse.h"
+#include "optical.h"
 #include "recording.h"
 #include "rotor.h"
 
@@ -15,15 +16,15 @@
 
 struct spec_sensor {
     const char *name, *unit, *scale, *show;
-    double si_per_unit;   /* SI of the measured quantity per unit */
-    double v_per_unit;    /* 0: the file holds the unit itself (CSV) */
-    struct noise noise;   /* in the unit */
+    double si_per_unit; /* SI of the measured quantity per unit */
+    double v_per_unit;  /* 0: the file holds the unit itself (CSV) */
+    struct noise noise; /* in the unit */
 };
 
 struct spec_plane {
     const char *name;
-    double radius;        /* m */
-    const json_t *lines;  /* further lines of the sheet, or NULL */
+    double radius;       /* m */
+    const json_t *lines; /* further lines of the sheet, or NULL */
 };
 
 struct spec_weight {
@@ -44,13 +45,13 @@ struct spec_run {
 };
 
 struct spec {
-    json_t *json;           /* owned; all strings point into it */
+    json_t *json; /* owned; all strings point into it */
     uint64_t seed;
     const char *title;
-    bool with_rotation;     /* how the sheet counts weight angles */
-    int edge;               /* +1 rising, -1 falling: what the sheet says */
+    bool with_rotation; /* how the sheet counts weight angles */
+    int edge;           /* +1 rising, -1 falling: what the sheet says */
     struct rotor rotor;
-    struct pulse pulse;
+    struct optical optical;
     struct rotor_mass heavy[SPEC_MASSES];
     size_t heavy_count;
     struct spec_sensor sensors[ROTOR_SENSORS];
@@ -58,7 +59,7 @@ struct spec {
     size_t plane_count;
     struct spec_run runs[SPEC_RUNS];
     size_t run_count;
-    const char *format;     /* "wav", "rf64", "flac", "csv" */
+    const char *format; /* "wav", "rf64", "flac", "csv" */
     int bits, oversample;
     double rate_hz, seconds, full_scale;
     struct recording_csv csv;

@@ -1,5 +1,5 @@
-/* pulse.c - the tacho's signal. */
-#include "pulse.h"
+/* optical.c - the tacho's signal. */
+#include "optical.h"
 
 #include <math.h>
 
@@ -21,7 +21,7 @@ static double luck(uint64_t seed, long turn, uint64_t what)
     return rng_uniform(&rng);
 }
 
-static double level(const struct pulse *p, const struct rotor *rotor, uint64_t seed, double t)
+static double level(const struct optical *p, const struct rotor *rotor, uint64_t seed, double t)
 {
     double turned, speed;
     rotor_turned(rotor, t, &turned, &speed, NULL);
@@ -51,20 +51,20 @@ static double level(const struct pulse *p, const struct rotor *rotor, uint64_t s
     return p->low_v + height * (p->high_v - p->low_v);
 }
 
-void pulse_run(const struct pulse *pulse, const struct rotor *rotor, uint64_t seed, double rate_hz,
-               size_t n, double *volts, size_t stride)
+void optical_run(const struct optical *optical, const struct rotor *rotor, uint64_t seed,
+                 double rate_hz, size_t n, double *volts, size_t stride)
 {
     struct rng rng;
     rng_init(&rng, seed ^ 0x7ac40u);
-    double keep = pulse->ac_s > 0 ? exp(-1 / (rate_hz * pulse->ac_s)) : 1, last = 0, out = 0;
+    double keep = optical->ac_s > 0 ? exp(-1 / (rate_hz * optical->ac_s)) : 1, last = 0, out = 0;
     for (size_t i = 0; i < n; i++) {
-        double v = level(pulse, rotor, seed, (double)i / rate_hz);
-        if (pulse->ac_s > 0) {
+        double v = level(optical, rotor, seed, (double)i / rate_hz);
+        if (optical->ac_s > 0) {
             /* starts as if it had been running: at the level beside the tape */
-            out = i == 0 ? v - pulse->low_v : keep * (out + v - last);
+            out = i == 0 ? v - optical->low_v : keep * (out + v - last);
             last = v;
             v = out;
         }
-        volts[i * stride] = v + (pulse->noise_v > 0 ? pulse->noise_v * rng_normal(&rng) : 0);
+        volts[i * stride] = v + (optical->noise_v > 0 ? optical->noise_v * rng_normal(&rng) : 0);
     }
 }
