@@ -430,3 +430,9 @@ void stream_close(struct stream *stream)
     free(s);
     stream->state = NULL;
 }
+
+const char *stream_job_line(const struct stream *stream, size_t *length)
+{
+    *length = stream->state->job_line.length;
+    return stream->state->job_line.bytes;
+}

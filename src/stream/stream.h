@@ -84,6 +84,9 @@ int stream_malformed(struct stream *stream, const char *why);
 int stream_finish(struct stream *stream) __attribute__((warn_unused_result));
 void stream_close(struct stream *stream);
 
+/* The original bytes of the first job record, its newline included; borrowed until stream_close. */
+const char *stream_job_line(const struct stream *stream, size_t *length);
+
 /* ---- the writing half alone, for `read`, which has no input stream ---- */
 
 struct sink; /* buffered standard output that counts records */
