@@ -1,0 +1,281 @@
+/* The records survive printing and parsing, and the input keeps the rules of the stream. */
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+#include <cmocka.h>
+
+#include <fcntl.h>
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <unistd.h>
+
+#include "close_to.h"
+#include "stream/records.h"
+#include "stream/stream.h"
+
+#define JOB                                                                                        \
+    "{\"kind\":\"job\",\"lopside\":1,\"title\":\"t\",\"angles\":\"with rotation\",\"phase\":null," \
+    "\"units\":\"metric\",\"rotor\":{\"mass\":340,\"service_speed_rpm\":1480},\"tacho\":{"         \
+    "\"channel\":\"4\",\"edge\":\"falling\",\"marks\":1},\"sensors\":[{\"name\":\"DE-V\","         \
+    "\"channel\":\"1\",\"quantity\":\"velocity\",\"show\":\"mm/s rms\",\"show_quantity\":"         \
+    "\"velocity\",\"show_si\":0.001}],\"planes\":[{\"name\":\"wheel\",\"radius_m\":0.41,"          \
+    "\"positions\":[{\"number\":1,\"angle_deg\":30,\"taken\":true}],\"stock\":[{\"mass\":0.01,"    \
+    "\"count\":4}],\"pieces\":3,\"most\":0.15,\"most_in_all\":null,\"work\":\"add\"}],\"runs\":["  \
+    "{\"run\":\"a\",\"condition\":\"service\",\"weights\":[{\"plane\":\"wheel\",\"mass\":0.06,"    \
+    "\"angle_deg\":30,\"mounted_mass\":0.06,\"radius_m\":0.41}],\"by_hand\":[],\"without\":["      \
+    "\"DE-V\"]}],\"aim\":{\"targets\":[],\"minimise\":\"worst\",\"mounted\":\"a\","                \
+    "\"repeatability\":0.03},\"limits\":[{\"check\":\"length\",\"caution\":90,\"refuse\":null}]}\n"
+
+/* Writes bytes to a file of its own and gives its name (static). */
+static const char *put(const void *bytes, size_t length)
+{
+    static char path[64];
+    snprintf(path, sizeof path, "test_stream.%d", (int)getpid());
+    FILE *file = fopen(path, "wb");
+    assert_non_null(file);
+    assert_int_equal(fwrite(bytes, 1, length, file), length);
+    assert_int_equal(fclose(file), 0);
+    return path;
+}
+
+/* Reads a whole input, counting its records; gives the status. */
+static int count(const void *bytes, size_t length, int *records)
+{
+    const char *path = put(bytes, length);
+    struct stream stream;
+    struct record record;
+    *records = 0;
+    int status = stream_open(&stream, &path, 1, false);
+    while (status == STATUS_DONE && stream_next(&stream, &record))
+        ++*records;
+    if (status == STATUS_DONE)
+        status = stream.status;
+    stream_close(&stream);
+    unlink(path);
+    return status;
+}
+
+static int count_text(const char *text, int *records)
+{
+    return count(text, strlen(text), records);
+}
+
+static void quiet(void)
+{
+    int null = open("/dev/null", O_WRONLY);
+    dup2(null, STDERR_FILENO);
+    close(null);
+}
+
+static void test_whole_streams(void **state)
+{
+    (void)state;
+    int n;
+    assert_int_equal(count_text(JOB "{\"kind\":\"end\",\"records\":1}\n", &n), STATUS_DONE);
+    assert_int_equal(n, 0);
+    assert_int_equal(count_text(JOB "{\"kind\":\"run\",\"run\":\"a\"}\n{\"kind\":\"strange\"}\n"
+                                    "{\"kind\":\"end\",\"records\":3}\n" JOB
+                                    "{\"kind\":\"run\",\"run\":\"b\"}\n{\"kind\":\"end\",\"records\":2}\n",
+                                &n),
+                     STATUS_DONE);
+    assert_int_equal(n, 3);
+}
+
+static void test_broken_rules(void **state)
+{
+    (void)state;
+    int n;
+    /* no end; a wrong count; another job; a run twice; a doubled key; junk behind the end */
+    assert_int_equal(count_text("", &n), STATUS_SYSTEM);
+    assert_int_equal(count_text(JOB, &n), STATUS_SYSTEM);
+    assert_int_equal(count_text(JOB "{\"kind\":\"end\",\"records\":2}\n", &n), STATUS_SYSTEM);
+    assert_int_equal(count_text(JOB "{\"kind\":\"end\",\"records\":1}\n" JOB, &n), STATUS_SYSTEM);
+    assert_int_equal(count_text(JOB "{\"kind\":\"run\",\"run\":\"a\"}\n" JOB
+                                    "{\"kind\":\"end\",\"records\":1}\n",
+                                &n),
+                     STATUS_SYSTEM);
+    assert_int_equal(count_text(JOB "{\"kind\":\"run\",\"run\":\"a\"}\n"
+                                    "{\"kind\":\"run\",\"run\":\"a\"}\n{\"kind\":\"end\",\"records\":3}\n",
+                                &n),
+                     STATUS_USAGE);
+    assert_int_equal(count_text(JOB "{\"kind\":\"x\",\"a\":1,\"a\":2}\n{\"kind\":\"end\",\"records\":2}\n",
+                                &n),
+                     STATUS_USAGE);
+    assert_int_equal(count_text(JOB "{\"kind\":\"end\",\"records\":1}\nhello\n", &n), STATUS_USAGE);
+    assert_int_equal(count_text("hello\n", &n), STATUS_USAGE);
+    assert_int_equal(count_text("{\"kind\":\"run\",\"run\":\"a\"}\n", &n), STATUS_USAGE);
+    assert_int_equal(count_text("{\"kind\":\"job\",\"lopside\":2}\n", &n), STATUS_USAGE);
+}
+
+/* A job, a wave and two blocks, the first behind a line of odd length so that floats lie unaligned. */
+static size_t sample_stream(char *bytes, size_t room)
+{
+    const char *head = JOB "{\"kind\":\"run\",\"run\":\"a\"}\n{\"kind\":\"wave\",\"run\":\"a\","
+                           "\"rate_hz\":100,\"columns\":[{\"name\":\"DE-V\",\"quantity\":\"velocity\"},"
+                           "{\"name\":\"tacho\",\"quantity\":\"tacho\"}]}\n";
+    size_t used = strlen(head);
+    assert_true(room > used + 4096);
+    memcpy(bytes, head, used);
+    for (int block = 0; block < 2; block++) {
+        used += (size_t)sprintf(bytes + used, "{\"kind\":\"block\",\"run\":\"a\",\"frames\":%d}\n",
+                                100 + block);
+        for (int i = 0; i < 2 * (100 + block); i++, used += sizeof(float)) {
+            float value = (float)i;
+            memcpy(bytes + used, &value, sizeof value);
+        }
+    }
+    return used + (size_t)sprintf(bytes + used, "{\"kind\":\"end\",\"records\":5}\n");
+}
+
+static void test_every_prefix_ends_early(void **state)
+{
+    (void)state;
+    static char bytes[16384];
+    size_t length = sample_stream(bytes, sizeof bytes);
+    int n;
+    assert_int_equal(count(bytes, length, &n), STATUS_DONE);
+    assert_int_equal(n, 4);
+    for (size_t cut = 0; cut < length; cut += cut < length - 40 ? 7 : 1)
+        if (count(bytes, cut, &n) != STATUS_SYSTEM)
+            fail_msg("a stream cut to %zu of %zu bytes does not end early", cut, length);
+}
+
+static void test_samples_are_whole_and_aligned(void **state)
+{
+    (void)state;
+    static char bytes[16384];
+    size_t length = sample_stream(bytes, sizeof bytes);
+    const char *path = put(bytes, length);
+    struct stream stream;
+    struct record record;
+    int blocks = 0;
+    assert_int_equal(stream_open(&stream, &path, 1, false), STATUS_DONE);
+    while (stream_next(&stream, &record)) {
+        if (strcmp(record.kind, "block") != 0)
+            continue;
+        size_t want = 2 * (size_t)(100 + blocks++), got = 0;
+        while (got < want) {
+            const float *samples;
+            size_t part;
+            assert_int_equal(stream_samples(&stream, 52, &samples, &part), STATUS_DONE);
+            assert_int_equal((uintptr_t)samples % 4, 0);
+            for (size_t i = 0; i < part / 4; i++)
+                assert_true(samples[i] == (float)(got + i));
+            got += part / 4;
+        }
+        assert_int_equal(got, want);
+    }
+    assert_int_equal(stream.status, STATUS_DONE);
+    assert_int_equal(blocks, 2);
+    stream_close(&stream);
+    unlink(path);
+}
+
+static void test_job_round_trip(void **state)
+{
+    (void)state;
+    struct job job, again;
+    struct buffer first = BUFFER_INIT, second = BUFFER_INIT;
+    const char *why = NULL;
+    job_init(&job);
+    job_init(&again);
+    json_t *json = json_loads(JOB, 0, NULL);
+    assert_int_equal(job_parse(&job, json, &why), 0);
+    assert_int_equal(job.angles, SENSE_WITH);
+    assert_int_equal(job.tacho_edge, -1);
+    assert_true(job.planes[0].positions[0].taken);
+    assert_true(isinf(job.planes[0].most_in_all));
+    assert_int_equal(job.planes[0].stock[0].count, 4);
+    assert_int_equal(job.aim.mounted, 0);
+    assert_true(job.runs[0].without[0]);
+    assert_true(isnan(job.limits[0].refuse));
+    assert_int_equal(job_print(&job, &first), 0);
+    json_decref(json);
+    json = json_loadb(first.bytes, first.length, JSON_REJECT_DUPLICATES, NULL);
+    assert_non_null(json);
+    assert_int_equal(job_parse(&again, json, &why), 0);
+    assert_int_equal(job_print(&again, &second), 0);
+    assert_string_equal(first.bytes, second.bytes);
+    json_decref(json);
+    buffer_release(&first);
+    buffer_release(&second);
+    job_release(&job);
+    job_release(&again);
+}
+
+static void test_sheet_angles(void **state)
+{
+    (void)state;
+    struct job job;
+    job_init(&job);
+    job.angles = SENSE_AGAINST;
+    assert_close(job_sheet_angle(&job, 30), 30, 0);
+    job.angles = SENSE_WITH; /* 30 deg against rotation is 330 deg with it: geometry of a circle */
+    assert_close(job_sheet_angle(&job, 30), 330, 0);
+    assert_close(job_sheet_angle(&job, 0), 0, 0);
+}
+
+static void test_reals_and_strings(void **state)
+{
+    (void)state;
+    struct line line = LINE_INIT;
+    const double values[] = {0.1, NAN, -INFINITY, 1.0};
+    line_begin(&line, "x");
+    line_reals(&line, "v", values, 4);
+    line_text(&line, "s", "a\"b\n\xC3\xA9");
+    line_vector(&line, "z", CMPLX(NAN, 0));
+    line_end(&line);
+    /* 0.1 to 17 digits: IEEE 754 double arithmetic */
+    assert_string_equal(line.text.bytes, "{\"kind\":\"x\",\"v\":[0.10000000000000001,null,null,1],"
+                                         "\"s\":\"a\\\"b\\n\xC3\xA9\",\"z\":null}\n");
+    line_begin(&line, "x");
+    line_text(&line, "s", "\xFF");
+    line_end(&line);
+    assert_true(line.text.failed);
+    line_release(&line);
+}
+
+static void test_reading_round_trip(void **state)
+{
+    (void)state;
+    struct job job;
+    const char *why = NULL;
+    job_init(&job);
+    json_t *json = json_loads(JOB, 0, NULL);
+    assert_int_equal(job_parse(&job, json, &why), 0);
+    json_decref(json);
+    struct reading_record r = {.run = "a", .condition = "service", .sensor = 0, .speed_rpm = 1480,
+                               .has_phase = true, .vector = CMPLX(1e-3, -2e-3),
+                               .cov = {1e-12, -2e-13, 3e-12}, .blocks = 30,
+                               .steady = {1, 2, .99, 0, .1, 25, 1, 700},
+                               .overall = {NAN, QUANTITY_VELOCITY, 10, 1000}};
+    struct reading_record again;
+    struct line line = LINE_INIT;
+    reading_print(&r, &job, &line);
+    json = json_loadb(line.text.bytes, line.text.length, 0, NULL);
+    assert_int_equal(reading_parse(&again, &job, json, &why), 0);
+    assert_true(again.has_phase && again.vector == r.vector && again.cov[1] == r.cov[1]);
+    assert_int_equal(again.steady.turns, 700);
+    assert_true(isnan(again.overall.rms));
+    json_object_set_new(json, "sensor", json_string("nobody"));
+    assert_int_equal(reading_parse(&again, &job, json, &why), -1);
+    json_decref(json);
+    line_release(&line);
+    job_release(&job);
+}
+
+int main(void)
+{
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(test_whole_streams),      cmocka_unit_test(test_broken_rules),
+        cmocka_unit_test(test_every_prefix_ends_early), cmocka_unit_test(test_samples_are_whole_and_aligned),
+        cmocka_unit_test(test_job_round_trip),     cmocka_unit_test(test_sheet_angles),
+        cmocka_unit_test(test_reals_and_strings),  cmocka_unit_test(test_reading_round_trip),
+    };
+    quiet();
+    cmocka_set_message_output(CM_OUTPUT_STDOUT);
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
