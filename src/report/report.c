@@ -1,8 +1,131 @@
 #include "report/report.h"
 
+#include <errno.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "base/message.h"
+#include "base/options.h"
+#include "base/status.h"
+#include "report/dossier.h"
+#include "report/text.h"
+#include "report/tidy.h"
+#include "report/whole.h"
+#include "stream/stream.h"
+
+enum form { FORM_TEXT, FORM_CSV, FORM_JSON, FORM_HTML, FORM_SVG };
+static const char *const forms[] = {"text", "csv", "json", "html", "svg", NULL};
+
+#define WHAT_NOT_GIVEN (-1)
+
+/* The whole input into the dossier; nothing is printed before its end was seen. */
+static int collect(struct stream *stream, struct dossier *dossier)
+{
+    struct record record;
+    while (stream_next_tracked(stream, &record)) {
+        const char *why = "";
+        int result = dossier_add(dossier, record.json, record.bytes, record.length, &why);
+        if (result == -2)
+            return message_no_memory();
+        if (result != 0) {
+            message("malformed record: '%s' (%s)", record.kind, why);
+            return STATUS_USAGE;
+        }
+    }
+    dossier_close(dossier);
+    return stream->status;
+}
+
+static int write_out(const struct buffer *out)
+{
+    if (out->failed)
+        return message_no_memory();
+    size_t written = fwrite(out->bytes, 1, out->length, stdout);
+    if (written == out->length && fflush(stdout) == 0)
+        return STATUS_DONE;
+    message("cannot write: %s", strerror(errno));
+    return STATUS_SYSTEM;
+}
+
+static int render(const struct stream *stream, const struct dossier *dossier, int form, int what)
+{
+    struct buffer out = BUFFER_INIT;
+    size_t length = 0;
+    const char *job = stream_job_line(stream, &length);
+    if (form == FORM_JSON)
+        whole_write(dossier, job, length, &out);
+    else if (form == FORM_CSV)
+        tidy_write(dossier, what == WHAT_NOT_GIVEN ? TIDY_READINGS : (enum tidy_what)what, &out);
+    else
+        text_write(dossier, &out);
+    int status = write_out(&out);
+    buffer_release(&out);
+    return status;
+}
+
+static int validate(int form, int what)
+{
+    int status = STATUS_DONE;
+    if (form == FORM_HTML || form == FORM_SVG) {
+        message("this version makes no such report: '%s' (--as text, csv or json)", forms[form]);
+        status = STATUS_USAGE;
+    }
+    if (what != WHAT_NOT_GIVEN && form != FORM_CSV) {
+        message("--what chooses a table, so it needs --as csv: '%s'", tidy_names[what]);
+        status = STATUS_USAGE;
+    }
+    return status;
+}
+
 int stage_report(int argc, char **argv)
 {
-    (void)argc;
-    (void)argv;
-    return 1;
+    int form = FORM_TEXT, what = WHAT_NOT_GIVEN;
+    const struct option options[] = {
+        {"as", 0, OPTION_CHOICE, "FORM", "text", 0, 0, forms, "what to make", &form},
+        {"what", 0, OPTION_CHOICE, "TABLE", "readings", 0, 0, tidy_names, "the table of --as csv",
+         &what},
+        {0},
+    };
+    const struct usage usage = {
+        "report",
+        "[FILE...]",
+        "turn a solved stream into a report",
+        options,
+        0,
+        1000000,
+        "Reads whole streams from FILEs or standard input. Exit code: 0 done, 3 a recording "
+        "could not be read,\n4 the readings were refused, 5 there is no correction; 1 and 2 as "
+        "everywhere."};
+    message_stage("report");
+    struct option_list files = {0};
+    struct stream stream = {0};
+    struct dossier dossier;
+    int status = STATUS_DONE;
+    switch (options_parse(&usage, argc, argv, &files)) {
+    case OPTIONS_STOP:
+        return STATUS_DONE;
+    case OPTIONS_MISUSE:
+        option_list_release(&files);
+        return STATUS_USAGE;
+    case OPTIONS_GO:
+        break;
+    }
+    status = validate(form, what);
+    if (status != STATUS_DONE) {
+        option_list_release(&files);
+        return status;
+    }
+    dossier_init(&dossier, &stream.job);
+    dossier.keep_lines = form == FORM_JSON;
+    status = stream_open(&stream, files.items, files.count, false);
+    if (status == STATUS_DONE)
+        status = collect(&stream, &dossier);
+    if (status == STATUS_DONE)
+        status = render(&stream, &dossier, form, what);
+    if (status == STATUS_DONE)
+        status = dossier_status(&dossier);
+    dossier_release(&dossier);
+    stream_close(&stream);
+    option_list_release(&files);
+    return status;
 }

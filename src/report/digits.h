@@ -1,0 +1,41 @@
+/* digits.h - numbers for people: no digit that the uncertainty does not support.
+ *
+ * The rule: a number stops at the place of the second significant digit of its 95 % half width, and
+ * never has more than DIGITS_MOST significant digits, since no channel is calibrated better. A
+ * number without a known uncertainty (read by hand, nominal) has at most DIGITS_MOST significant
+ * digits and no trailing zeros. Half widths are rounded up, as JCGM 100:2008 (GUM) 7.2.6 allows, so
+ * that a range never looks narrower than it is.
+ */
+#ifndef LOPSIDE_REPORT_DIGITS_H
+#define LOPSIDE_REPORT_DIGITS_H
+
+#include <stddef.h>
+
+#define DIGITS_MOST 4  /* significant digits; common practice for calibrated vibration channels */
+#define DIGITS_ROOM 32 /* bytes that hold every text made here */
+
+/* The decimal exponent of the last digit to show of `value`, known to +/- `half` (same unit; NaN or
+ * <= 0: not known). value NaN or infinite: 0. */
+int digits_place(double value, double half);
+
+/* Writes `value` into text (DIGITS_ROOM bytes) as above; "-" for NaN and infinities. Returns text.
+ */
+char *digits_text(char *text, double value, double half);
+
+/* `value` rounded to the digit 10^place. */
+char *digits_at(char *text, double value, int place);
+
+/* The half width itself, rounded up to 10^place of the number that it stands beside: "0.083". */
+char *digits_half(char *text, double half, int place);
+
+/* An angle in [0, 360): tenths of a degree where it is known to less than a degree, or not at all
+ * known how well (then without a trailing ".0"); whole degrees otherwise. */
+char *digits_angle(char *text, double deg, double half_deg);
+
+/* Half width of an angle, rounded up to the same place as digits_angle shows. */
+char *digits_angle_half(char *text, double half_deg);
+
+/* A probability as percent: "under 1 %", "42 %", "over 99 %". "-" for NaN. */
+char *digits_chance(char *text, double probability);
+
+#endif

@@ -1,0 +1,99 @@
+/* dossier.h - everything a report rests on: the records of one whole stream, parsed, in the sheet's
+ * order.
+ *
+ * Every writer (text, csv, json; pages and pictures later) works on this one model. Filled record
+ * by record, closed once with dossier_close, then only read.
+ */
+#ifndef LOPSIDE_REPORT_DOSSIER_H
+#define LOPSIDE_REPORT_DOSSIER_H
+
+#include <jansson.h>
+#include <stdbool.h>
+#include <stddef.h>
+
+#include "base/buffer.h"
+#include "stream/records.h"
+
+/* A reading together with vet's ruling on it. */
+struct dossier_reading {
+    struct reading_record reading;
+    bool judged;     /* a `vetted` record was seen */
+    bool use;        /* vet's ruling; true where nothing was judged */
+    double widen[3]; /* vet's addition to cov; zero where nothing was judged */
+    size_t run;      /* rank of its run in the report */
+    size_t arrival;  /* position in the stream */
+};
+
+struct dossier_run {
+    struct run_record record;
+    size_t arrival;
+};
+
+struct dossier_line { /* one record's original bytes, without its newline, in `text` */
+    size_t at, length;
+};
+
+#define DOSSIER_LIST(type)                                                                         \
+    struct {                                                                                       \
+        struct type *items;                                                                        \
+        size_t count, room;                                                                        \
+    }
+
+struct dossier {
+    const struct job *job; /* borrowed */
+    bool keep_lines;       /* set before the first record: keep the original bytes */
+    bool keep_traces;      /* set before: keep turns and spectra, for drawings */
+
+    DOSSIER_LIST(dossier_run) runs;         /* the sheet's order, then that of arrival */
+    DOSSIER_LIST(dossier_reading) readings; /* by run, then as they came */
+    DOSSIER_LIST(tacho_record) tachos;
+    DOSSIER_LIST(channel_record) channels;
+    DOSSIER_LIST(turns_record) turns;
+    DOSSIER_LIST(spectrum_record) spectra;
+    DOSSIER_LIST(vetted_record) vetted;
+    DOSSIER_LIST(finding_record) findings;
+    DOSSIER_LIST(response_record) responses;
+    DOSSIER_LIST(correction_record) corrections;
+    DOSSIER_LIST(placement_record) placements;
+    DOSSIER_LIST(forecast_record) forecasts;
+    DOSSIER_LIST(residual_record) residuals;
+    DOSSIER_LIST(dossier_line) lines;
+    struct buffer text; /* of the lines */
+    bool has_next;
+    struct next_record next;
+    json_t *figures; /* owned: the whole `next` record with the figures of its step; NULL: none */
+};
+
+/* Empty; `job` is borrowed. */
+void dossier_init(struct dossier *dossier, const struct job *job);
+void dossier_release(struct dossier *dossier);
+
+/* Adds one record (its JSON and the `length` bytes of its line). A kind that is not known is kept
+ * as a line only. Returns 0; -1 with *why (static text) when the record is malformed; -2 when
+ * memory is out. */
+int dossier_add(struct dossier *dossier, const json_t *json, const char *bytes, size_t length,
+                const char **why) __attribute__((warn_unused_result));
+
+/* Joins rulings to readings and puts runs and readings in order. */
+void dossier_close(struct dossier *dossier);
+
+/* The widened covariance of a reading's mean. */
+void dossier_cov(const struct dossier_reading *reading, double cov[3]);
+
+/* True for a job that asks only whether readings can be trusted: no planes, hence nothing to fit.
+ */
+bool dossier_is_audit(const struct dossier *dossier);
+
+/* The gravest verdict of any finding on that run and sensor (findings on the whole run included).
+ */
+enum verdict dossier_verdict(const struct dossier *dossier, const char *run, int sensor);
+
+/* Name of a sensor or plane of the job; "" for an index that is none. */
+const char *dossier_sensor(const struct dossier *dossier, int sensor);
+const char *dossier_plane(const struct dossier *dossier, int plane);
+
+/* The exit code that the records ask for (enum status): 3 where a recording could not be read; 0
+ * with a placement; 5 where solve refused; 4 where the next step is to repeat; 0 otherwise. */
+int dossier_status(const struct dossier *dossier);
+
+#endif

@@ -1,0 +1,83 @@
+#include "report/phrase.h"
+
+#include <math.h>
+
+#include "report/shown.h"
+#include "sheet/units.h"
+
+void phrase_angle(struct buffer *out, const struct job *job, double angle_deg, double half)
+{
+    char text[DIGITS_ROOM];
+    digits_angle(text, job_sheet_angle(job, angle_deg), half);
+    buffer_format(out, "%s deg %s", text, job_sense_text(job));
+}
+
+void phrase_mass(struct buffer *out, const struct job *job, double kg, double half)
+{
+    char text[DIGITS_ROOM];
+    digits_text(text, shown_mass(job, kg), shown_mass(job, half));
+    buffer_format(out, "%s %s", text, shown_mass_unit(job));
+}
+
+void phrase_pieces(struct buffer *out, const struct job *job, const double *pieces, size_t count)
+{
+    if (count <= 1) {
+        buffer_text(out, "in one piece");
+        return;
+    }
+    buffer_format(out, "in %zu pieces: ", count);
+    for (size_t i = 0; i < count; i++) {
+        char text[DIGITS_ROOM];
+        digits_text(text, shown_mass(job, pieces[i]), NAN);
+        buffer_format(out, "%s%s", i ? " + " : "", text);
+    }
+    buffer_format(out, " %s", shown_mass_unit(job));
+}
+
+static void weight(struct buffer *out, const struct job *job, const struct job_weight *w)
+{
+    if (w->mounted_mass < 0) {
+        phrase_mass(out, job, -w->mounted_mass, NAN);
+        buffer_text(out, " removed");
+    } else {
+        phrase_mass(out, job, w->mounted_mass, NAN);
+    }
+    buffer_text(out, " at ");
+    phrase_angle(out, job, w->angle_deg, NAN);
+    if (w->plane >= job->plane_count)
+        return;
+    const struct job_plane *plane = &job->planes[w->plane];
+    buffer_format(out, " on plane '%s'", plane->name);
+    if (w->position > 0)
+        buffer_format(out, ", position %d", w->position);
+    if (isfinite(w->radius_m) && fabs(w->radius_m - plane->radius_m) > 1e-6 * plane->radius_m) {
+        const char *unit = job->units == UNITS_US ? "in" : "mm";
+        char text[DIGITS_ROOM];
+        digits_text(text, w->radius_m / units_factor(DIMENSION_LENGTH, unit), NAN);
+        buffer_format(out, ", at radius %s %s", text, unit);
+    }
+}
+
+void phrase_weights(struct buffer *out, const struct job *job, size_t run)
+{
+    const struct job_run *r = &job->runs[run];
+    if (r->weight_count == 0)
+        buffer_text(out, "no weights");
+    for (size_t i = 0; i < r->weight_count; i++) {
+        if (i > 0)
+            buffer_text(out, "; ");
+        weight(out, job, &r->weights[i]);
+    }
+}
+
+void phrase_weight_half(double mass, double angle_deg, const double cov[3], double half[2])
+{
+    /* The weight is a vector like a reading's: along it the mass, across it the angle. The "show"
+     * is plain SI. */
+    static const struct show plain = {"m", QUANTITY_DISPLACEMENT, 1, DETECTION_PEAK};
+    double turned = angle_deg * 3.14159265358979323846 / 180;
+    double complex w = mass * cexp(I * turned);
+    struct shown s = shown_vector(w, cov, QUANTITY_DISPLACEMENT, NAN, &plain, NAN);
+    half[0] = s.half;
+    half[1] = s.lag_half;
+}

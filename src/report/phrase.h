@@ -1,0 +1,30 @@
+/* phrase.h - the phrases that every writer shares: weights, angles, masses, pieces, as people say
+ * them.
+ *
+ * All append to a buffer. An angle of a weight never stands without the sense it is counted in.
+ */
+#ifndef LOPSIDE_REPORT_PHRASE_H
+#define LOPSIDE_REPORT_PHRASE_H
+
+#include "base/buffer.h"
+#include "report/dossier.h"
+
+/* "90 deg against rotation": an angle against rotation (deg) in the sheet's sense. half: 95 % half
+ * width, deg; NaN: not known, or nominal. */
+void phrase_angle(struct buffer *out, const struct job *job, double angle_deg, double half);
+
+/* "60 g", to the digits that `half` (kg; NaN: nominal) supports. */
+void phrase_mass(struct buffer *out, const struct job *job, double kg, double half);
+
+/* "3 pieces: 50 + 10 + 10 g". One piece: "in one piece". */
+void phrase_pieces(struct buffer *out, const struct job *job, const double *pieces, size_t count);
+
+/* What run `run` of the job carries: "60 g at 30 deg against rotation on plane 'wheel'", or "no
+ * weights". */
+void phrase_weights(struct buffer *out, const struct job *job, size_t run);
+
+/* 95 % half widths of a weight's mass (kg) and angle (deg) from its covariance (kg^2); NaN where it
+ * is zero. */
+void phrase_weight_half(double mass, double angle_deg, const double cov[3], double half[2]);
+
+#endif

@@ -1,0 +1,355 @@
+#include "report/text_answer.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "base/status.h"
+#include "report/paper.h"
+#include "report/phrase.h"
+#include "report/shown.h"
+#include "report/table.h"
+
+static bool step_is(const struct dossier *d, const char *step)
+{
+    return d->has_next && strcmp(d->next.step, step) == 0;
+}
+
+/* Wraps what a phrase built, and takes over its failure. */
+static void put(struct buffer *out, size_t first, size_t rest, struct buffer *text)
+{
+    if (text->failed)
+        out->failed = 1;
+    else if (text->bytes)
+        paper_wrap(out, first, rest, text->bytes);
+    buffer_release(text);
+}
+
+static void relative_to(const struct dossier *d, const char *name, struct buffer *out)
+{
+    int run = job_find_run(d->job, name);
+    if (run < 0) {
+        paper_say(out, 2, 2, "Relative to the rotor %s: take every trial weight off first.", name);
+        return;
+    }
+    struct buffer text = BUFFER_INIT;
+    buffer_format(&text, "In addition to the weights of run '%s', which stay on: ", name);
+    phrase_weights(&text, d->job, (size_t)run);
+    buffer_text(&text, ".");
+    put(out, 2, 2, &text);
+}
+
+static bool is_removed(const struct dossier *d, const struct placement_record *p)
+{
+    return p->mass < 0 || (p->plane >= 0 && (size_t)p->plane < d->job->plane_count &&
+                           d->job->planes[p->plane].work == WORK_REMOVE);
+}
+
+/* Pieces in stock have their nominal mass; where any mass may be cut, the ideal weight's 95 % half
+ * width (kg) says to which digit it deserves to be. NaN: nominal. */
+static double free_half(const struct dossier *d, int plane)
+{
+    if (plane < 0 || (size_t)plane >= d->job->plane_count || d->job->planes[plane].stock_count > 0)
+        return NAN;
+    for (size_t i = 0; i < d->corrections.count; i++) {
+        const struct correction_record *c = &d->corrections.items[i];
+        double half[2];
+        phrase_weight_half(c->least_squares[0], c->least_squares[1], c->ellipse, half);
+        if (c->plane == plane)
+            return half[0];
+    }
+    return NAN;
+}
+
+static void placement(const struct dossier *d, size_t number, const struct placement_record *p,
+                      struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    bool removed = is_removed(d, p);
+    buffer_format(&text, "%zu. Plane '%s', ", number, dossier_plane(d, p->plane));
+    if (p->position > 0)
+        buffer_format(&text, "position %d: ", p->position);
+    phrase_angle(&text, d->job, p->angle_deg, NAN);
+    put(out, 2, 5, &text);
+
+    text = (struct buffer)BUFFER_INIT;
+    buffer_text(&text, removed ? "remove " : "fit ");
+    phrase_mass(&text, d->job, fabs(p->mass), free_half(d, p->plane));
+    if (!removed) {
+        buffer_text(&text, " ");
+        phrase_pieces(&text, d->job, p->pieces, p->piece_count);
+    }
+    if (isfinite(p->force_n)) {
+        char force[2 * DIGITS_ROOM], speed[DIGITS_ROOM];
+        shown_force(d->job, force, fabs(p->force_n));
+        buffer_format(&text, "; force %s at %s rpm", force,
+                      shown_speed(speed, d->job->service_rpm));
+    }
+    put(out, 5, 5, &text);
+}
+
+/* The answer never stands without a word about what speaks against it. */
+static void doubts(const struct dossier *d, struct buffer *out)
+{
+    size_t counts[3] = {0, 0, 0};
+    for (size_t i = 0; i < d->findings.count; i++)
+        counts[d->findings.items[i].verdict]++;
+    if (counts[VERDICT_REFUSE] > 0)
+        paper_say(out, 2, 2, "Made WITHOUT what was refused (%zu): see the findings below.",
+                  counts[VERDICT_REFUSE]);
+    if (counts[VERDICT_CAUTION] > 0)
+        paper_say(out, 2, 2, "To be read first: cautions (%zu) among the findings below.",
+                  counts[VERDICT_CAUTION]);
+}
+
+static void placements(const struct dossier *d, struct buffer *out)
+{
+    paper_heading(out, "WHAT TO DO NOW");
+    relative_to(d, d->placements.items[0].relative_to, out);
+    for (size_t i = 0; i < d->placements.count; i++)
+        placement(d, i + 1, &d->placements.items[i], out);
+    paper_say(out, 2, 2, "Angles are counted from the mark, %s.", job_sense_text(d->job));
+    doubts(d, out);
+}
+
+/* Why there is no correction: solve's refusals where it made some, else everybody's. */
+static void reasons(const struct dossier *d, bool solve_only, struct buffer *out)
+{
+    for (size_t i = 0; i < d->findings.count; i++) {
+        const struct finding_record *f = &d->findings.items[i];
+        if (f->verdict != VERDICT_REFUSE || (solve_only && strcmp(f->stage, "solve") != 0))
+            continue;
+        struct buffer text = BUFFER_INIT;
+        buffer_format(&text, "- %s", f->check);
+        if (f->run[0])
+            buffer_format(&text, ", run '%s'", f->run);
+        if (f->sensor >= 0)
+            buffer_format(&text, ", sensor '%s'", dossier_sensor(d, f->sensor));
+        buffer_format(&text, ": %s", f->text);
+        put(out, 2, 4, &text);
+    }
+}
+
+static bool has_solve_refusal(const struct dossier *d)
+{
+    for (size_t i = 0; i < d->findings.count; i++) {
+        const struct finding_record *f = &d->findings.items[i];
+        if (f->verdict == VERDICT_REFUSE && strcmp(f->stage, "solve") == 0)
+            return true;
+    }
+    return false;
+}
+
+static void nothing(const struct dossier *d, int status, struct buffer *out)
+{
+    bool solved = has_solve_refusal(d);
+    if (status == STATUS_REFUSED)
+        paper_heading(out, "NO CORRECTION: the readings are not fit to balance on");
+    else if (solved)
+        paper_heading(out, "NO CORRECTION: none can be given from these runs");
+    else
+        paper_heading(out, "NO CORRECTION");
+    paper_say(out, 2, 2, "Do not fit a weight on the strength of these recordings. Why:");
+    reasons(d, solved && status != STATUS_REFUSED, out);
+    paper_heading(out, "WHAT TO DO NOW");
+    if (d->has_next)
+        paper_wrap(out, 2, 2, d->next.text);
+    else
+        paper_wrap(out, 2, 2, "Mend what is listed above and record those runs again.");
+}
+
+/* Neither a weight nor a refusal: a trial weight first, or nothing left to do. */
+static void step_only(const struct dossier *d, struct buffer *out)
+{
+    paper_heading(out, "WHAT TO DO NOW");
+    if (step_is(d, "done"))
+        paper_wrap(out, 2, 2, "Nothing: no weight is to be fitted.");
+    else if (!d->has_next)
+        paper_wrap(out, 2, 2,
+                   "No answer is in this stream: it has not been through `lopside solve`.");
+    if (d->has_next)
+        paper_wrap(out, 2, 2, d->next.text);
+}
+
+void text_answer_now(const struct dossier *dossier, struct buffer *out)
+{
+    int status = dossier_status(dossier);
+    bool repeat = step_is(dossier, "repeat") && dossier->corrections.count == 0;
+    if (dossier->placements.count > 0) {
+        placements(dossier, out);
+        if (dossier->has_next) {
+            paper_heading(out, "NEXT");
+            paper_wrap(out, 2, 2, dossier->next.text);
+        }
+    } else if (status == STATUS_REFUSED || has_solve_refusal(dossier) || repeat) {
+        nothing(dossier, status, out);
+    } else {
+        step_only(dossier, out);
+    }
+}
+
+void text_answer_safety(const struct dossier *dossier, struct buffer *out)
+{
+    static const char *const cautions[] = {
+        "Isolate and lock out the drive before anybody reaches into the machine.",
+        "Each fixing must hold its weight's force, and more at overspeed: it grows with the square "
+        "of speed.",
+        "Nobody stands in the plane of rotation at the start.",
+        "Agree beforehand at which vibration the start is broken off.",
+        "Never balance over a crack, a rub, looseness or build-up: find and mend it first.",
+        "Local codes and the site's licensed engineer decide.",
+    };
+    if (dossier->placements.count == 0 && !step_is(dossier, "trial"))
+        return;
+    paper_heading(out, "BEFORE FITTING");
+    for (size_t i = 0; i < sizeof cautions / sizeof *cautions; i++)
+        paper_say(out, 2, 4, "- %s", cautions[i]);
+}
+
+static void half_text(struct buffer *out, const struct job *job, double kg, const double half[2])
+{
+    if (!(half[0] > 0))
+        return;
+    char mass[DIGITS_ROOM], angle[DIGITS_ROOM];
+    double shown = shown_mass(job, kg), wide = shown_mass(job, half[0]);
+    digits_half(mass, wide, digits_place(shown, wide));
+    buffer_format(out, " (+/-%s %s", mass, shown_mass_unit(job));
+    if (half[1] < 90)
+        buffer_format(out, ", +/-%s deg)", digits_angle_half(angle, half[1]));
+    else
+        buffer_text(out, ", at an angle that is not known)");
+}
+
+static void ideal(const struct dossier *d, const struct correction_record *c, struct buffer *out)
+{
+    double half[2];
+    struct buffer text = BUFFER_INIT;
+    phrase_weight_half(c->least_squares[0], c->least_squares[1], c->ellipse, half);
+    buffer_format(&text, "Plane '%s': ", dossier_plane(d, c->plane));
+    phrase_mass(&text, d->job, c->mass, half[0]);
+    buffer_text(&text, " at ");
+    phrase_angle(&text, d->job, c->angle_deg, half[1]);
+    put(out, 2, 4, &text);
+    if (isnan(c->least_squares[0]))
+        return;
+    text = (struct buffer)BUFFER_INIT;
+    buffer_text(&text, "least squares, for a hand check: ");
+    phrase_mass(&text, d->job, c->least_squares[0], half[0]);
+    buffer_text(&text, " at ");
+    phrase_angle(&text, d->job, c->least_squares[1], half[1]);
+    half_text(&text, d->job, c->least_squares[0], half);
+    put(out, 4, 6, &text);
+}
+
+void text_answer_ideal(const struct dossier *dossier, struct buffer *out)
+{
+    if (dossier->corrections.count == 0)
+        return;
+    const char *to = dossier->corrections.items[0].relative_to;
+    paper_heading(out, "IDEAL WEIGHT");
+    paper_say(out, 2, 2, "%s, relative to %s%s%s.",
+              dossier->placements.count > 0 ? "Before it is split over positions and pieces"
+                                            : "For the record, not to be fitted as it stands",
+              job_find_run(dossier->job, to) >= 0 ? "run '" : "", to,
+              job_find_run(dossier->job, to) >= 0 ? "'" : "");
+    for (size_t i = 0; i < dossier->corrections.count; i++)
+        ideal(dossier, &dossier->corrections.items[i], out);
+}
+
+static bool one_condition(const struct dossier *d)
+{
+    for (size_t i = 1; i < d->forecasts.count; i++) {
+        if (strcmp(d->forecasts.items[i].condition, d->forecasts.items[0].condition) != 0)
+            return false;
+    }
+    return true;
+}
+
+static void forecast_row(const struct dossier *d, const struct forecast_record *f, bool single,
+                         struct table *table)
+{
+    if (f->sensor < 0 || (size_t)f->sensor >= d->job->sensor_count)
+        return;
+    const struct job_sensor *sensor = &d->job->sensors[f->sensor];
+    double peaks[5] = {cabs(f->before), cabs(f->after), f->after_95[0], f->after_95[1], f->target};
+    for (int i = 0; i < 5; i++)
+        peaks[i] =
+            shown_amplitude(peaks[i], NAN, sensor->quantity, f->speed_rpm, &sensor->show).amplitude;
+    double half = (peaks[3] - peaks[2]) / 2;
+    int place = digits_place(fmax(peaks[1], half > 0 ? half : 0), half);
+    int first = digits_place(peaks[0], half);
+    char before[DIGITS_ROOM], after[DIGITS_ROOM], low[DIGITS_ROOM], high[DIGITS_ROOM];
+    char target[DIGITS_ROOM], chance[DIGITS_ROOM];
+    table_cell(table, "%s%s%s", sensor->name, single ? "" : ", ", single ? "" : f->condition);
+    table_cell(table, "%s %s", sensor->show.unit, detection_text(sensor->show.detection));
+    table_cell(table, "%s", digits_at(before, peaks[0], first));
+    table_cell(table, "%s", digits_at(after, peaks[1], place));
+    table_cell(table, "%s to %s", digits_at(low, peaks[2], place),
+               digits_at(high, peaks[3], place));
+    table_cell(table, "%s", digits_text(target, peaks[4], NAN));
+    table_cell(table, "%s", digits_chance(chance, f->chance));
+}
+
+void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
+{
+    static const struct table_column columns[] = {
+        {"sensor", false, true},
+        {"unit", false, false},
+        {"before", true, false},
+        {"after", true, false},
+        {"next reading, 95 %", true, false},
+        {"target", true, false},
+        {"chance", true, false},
+    };
+    if (dossier->forecasts.count == 0)
+        return;
+    struct table table;
+    bool single = one_condition(dossier);
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < dossier->forecasts.count; i++)
+        forecast_row(dossier, &dossier->forecasts.items[i], single, &table);
+    paper_heading(out, dossier->placements.count > 0
+                           ? "FORECAST: 1x amplitudes with the weights above fitted"
+                           : "FORECAST: 1x amplitudes with nothing fitted");
+    table_print(&table, 2, out);
+    table_release(&table);
+}
+
+static const char *within(const struct residual_record *r)
+{
+    if (isnan(r->after) || isnan(r->permissible))
+        return "not known";
+    if (r->after > r->permissible)
+        return "NOT MET";
+    return isnan(r->after_95) || r->after_95 <= r->permissible ? "met" : "met, not surely";
+}
+
+void text_answer_tolerance(const struct dossier *dossier, struct buffer *out)
+{
+    static const struct table_column columns[] = {
+        {"plane", false, true},      {"unit", false, false},      {"before", true, false},
+        {"after", true, false},      {"95 % below", true, false}, {"permissible", true, false},
+        {"tolerance", false, false},
+    };
+    if (dossier->residuals.count == 0)
+        return;
+    struct table table;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < dossier->residuals.count; i++) {
+        const struct residual_record *r = &dossier->residuals.items[i];
+        double half = shown_unbalance(dossier->job, r->after_95 - r->after);
+        double values[4] = {r->before, r->after, r->after_95, r->permissible};
+        table_cell(&table, "%s", dossier_plane(dossier, r->plane));
+        table_cell(&table, "%s", shown_unbalance_unit(dossier->job));
+        for (int v = 0; v < 4; v++) {
+            char text[DIGITS_ROOM];
+            double value = shown_unbalance(dossier->job, values[v]);
+            table_cell(&table, "%s", digits_text(text, value, v < 3 ? half : NAN));
+        }
+        table_cell(&table, "%s", within(r));
+    }
+    paper_heading(out, "TOLERANCE: estimated residual unbalance");
+    table_print(&table, 2, out);
+    if (dossier->residuals.items[0].basis[0])
+        paper_say(out, 2, 2, "Basis: %s.", dossier->residuals.items[0].basis);
+    table_release(&table);
+}

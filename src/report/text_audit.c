@@ -1,0 +1,111 @@
+#include "report/text_audit.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "report/paper.h"
+#include "report/table.h"
+#include "report/text_readings.h"
+
+static bool is_unreadable(const struct finding_record *f)
+{
+    return f->verdict == VERDICT_REFUSE && strcmp(f->check, "readable") == 0;
+}
+
+static enum verdict verdict_of(const struct dossier *d, const struct dossier_reading *item)
+{
+    enum verdict verdict = dossier_verdict(d, item->reading.run, item->reading.sensor);
+    return item->use ? verdict : VERDICT_REFUSE;
+}
+
+void text_audit_summary(const struct dossier *dossier, struct buffer *out)
+{
+    size_t counts[3] = {0, 0, 0}, unreadable = 0, open = 0;
+    for (size_t i = 0; i < dossier->readings.count; i++) {
+        counts[verdict_of(dossier, &dossier->readings.items[i])]++;
+        open += !dossier->readings.items[i].judged;
+    }
+    for (size_t i = 0; i < dossier->findings.count; i++)
+        unreadable += is_unreadable(&dossier->findings.items[i]);
+    paper_heading(out, "CAN THESE READINGS BE TRUSTED?");
+    paper_say(out, 2, 2,
+              "%zu readings from %zu recordings: %zu in order, %zu with caution, %zu refused.",
+              dossier->readings.count, dossier->runs.count, counts[VERDICT_OK],
+              counts[VERDICT_CAUTION], counts[VERDICT_REFUSE]);
+    if (unreadable > 0)
+        paper_say(out, 2, 2, "%zu could not be read: they stand at the end of the table.",
+                  unreadable);
+    if (open > 0)
+        paper_say(out, 2, 2,
+                  "%zu readings were not judged: the stream has not been through `lopside "
+                  "vet`.",
+                  open);
+    if (dossier->has_next)
+        paper_wrap(out, 2, 2, dossier->next.text);
+}
+
+static void percent_cell(struct table *table, double value)
+{
+    if (isnan(value))
+        table_cell(table, "-");
+    else
+        table_cell(table, value < 9.95 ? "%.1f" : "%.0f", value);
+}
+
+static void audit_row(const struct dossier *d, const struct dossier_reading *item,
+                      struct table *table)
+{
+    static const char *const words[] = {"ok", "caution", "REFUSED"};
+    const struct reading_record *r = &item->reading;
+    const struct job_sensor *sensor = &d->job->sensors[r->sensor];
+    struct shown s = text_readings_shown(d, item);
+    char text[DIGITS_ROOM];
+    table_cell(table, "%s", r->run);
+    table_cell(table, "%s", sensor->name);
+    table_cell(table, "%s", shown_speed(text, r->speed_rpm));
+    table_cell(table, "%s %s %s", digits_text(text, s.amplitude, s.half), sensor->show.unit,
+               detection_text(sensor->show.detection));
+    if (isnan(s.lag_deg) || s.lag_open)
+        table_cell(table, "none");
+    else
+        table_cell(table, "%s", digits_angle(text, s.lag_deg, s.lag_half));
+    percent_cell(table, r->steady.amplitude_pct);
+    percent_cell(table, isnan(s.lag_deg) ? NAN : r->steady.phase_deg);
+    percent_cell(table, r->steady.drift_pct);
+    table_cell(table, "%s", item->judged ? words[verdict_of(d, item)] : "not vetted");
+}
+
+static void unreadable_row(const struct finding_record *f, struct table *table)
+{
+    table_cell(table, "%s", f->run);
+    for (int i = 0; i < 7; i++)
+        table_cell(table, "-");
+    table_cell(table, "UNREAD");
+}
+
+void text_audit_table(const struct dossier *dossier, struct buffer *out)
+{
+    static const struct table_column columns[] = {
+        {"recording", false, true},    {"sensor", false, true}, {"rpm", true, false},
+        {"1x amplitude", true, false}, {"lag", true, false},    {"sd%", true, false},
+        {"deg", true, false},          {"drift", true, false},  {"verdict", false, false},
+    };
+    struct table table;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    table.gap = 1;
+    for (size_t i = 0; i < dossier->readings.count; i++)
+        audit_row(dossier, &dossier->readings.items[i], &table);
+    for (size_t i = 0; i < dossier->findings.count; i++) {
+        if (is_unreadable(&dossier->findings.items[i]))
+            unreadable_row(&dossier->findings.items[i], &table);
+    }
+    if (table.cell_count > 0) {
+        paper_heading(out, "READINGS");
+        paper_say(
+            out, 2, 2,
+            "Phase is lag, in degrees. sd%% and deg: standard deviation of the blocks of a "
+            "recording, amplitude in %% and lag in degrees. drift: trend over the recording, %%.");
+    }
+    table_print(&table, 0, out);
+    table_release(&table);
+}

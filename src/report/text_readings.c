@@ -1,0 +1,195 @@
+#include "report/text_readings.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "report/paper.h"
+#include "report/phrase.h"
+#include "report/table.h"
+
+struct shown text_readings_shown(const struct dossier *dossier,
+                                 const struct dossier_reading *reading)
+{
+    const struct reading_record *r = &reading->reading;
+    const struct job_sensor *sensor = &dossier->job->sensors[r->sensor];
+    double cov[3];
+    dossier_cov(reading, cov);
+    if (r->has_phase)
+        return shown_vector(r->vector, cov, sensor->quantity, r->speed_rpm, &sensor->show,
+                            r->steady.independent - 1);
+    double half = cov[0] > 0 ? shown_t95(r->steady.independent - 1) * sqrt(cov[0]) : NAN;
+    return shown_amplitude(r->amplitude, half, sensor->quantity, r->speed_rpm, &sensor->show);
+}
+
+/* Amplitude, its half width, lag, its half width: four cells. */
+static void vector_cells(struct table *table, const struct shown *s, const char *unit)
+{
+    char text[DIGITS_ROOM];
+    int place = digits_place(s->amplitude, s->half);
+    table_cell(table, "%s %s", digits_text(text, s->amplitude, s->half), unit);
+    table_cell(table, "%s", s->half > 0 ? digits_half(text, s->half, place) : "-");
+    if (isnan(s->lag_deg)) {
+        table_cell(table, "no phase");
+        table_cell(table, "-");
+    } else if (s->lag_open) {
+        table_cell(table, "not known");
+        table_cell(table, "-");
+    } else {
+        table_cell(table, "%s deg", digits_angle(text, s->lag_deg, s->lag_half));
+        table_cell(table, "%s", s->lag_half > 0 ? digits_angle_half(text, s->lag_half) : "-");
+    }
+}
+
+static void reading_row(const struct dossier *d, const struct dossier_reading *item,
+                        struct table *table)
+{
+    const struct reading_record *r = &item->reading;
+    const struct job_sensor *sensor = &d->job->sensors[r->sensor];
+    char unit[32];
+    struct shown s = text_readings_shown(d, item);
+    snprintf(unit, sizeof unit, "%s %s", sensor->show.unit, detection_text(sensor->show.detection));
+    table_cell(table, "%s", sensor->name);
+    vector_cells(table, &s, unit);
+    if (r->blocks > 0)
+        table_cell(table, "%ld/%ld", r->steady.turns, r->blocks);
+    else
+        table_cell(table, "by hand");
+    table_cell(table, "%s", !item->judged ? "not vetted" : item->use ? "used" : "REFUSED");
+}
+
+static bool same_group(const struct dossier_reading *a, const struct dossier_reading *b)
+{
+    return strcmp(a->reading.run, b->reading.run) == 0 &&
+           strcmp(a->reading.condition, b->reading.condition) == 0;
+}
+
+static void group_heading(const struct dossier *d, const struct reading_record *r,
+                          struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    char speed[DIGITS_ROOM];
+    int run = job_find_run(d->job, r->run);
+    buffer_format(&text, "Run '%s': ", r->run);
+    if (run >= 0) {
+        phrase_weights(&text, d->job, (size_t)run);
+        buffer_text(&text, "; ");
+    }
+    buffer_format(&text, "%s rpm", shown_speed(speed, r->speed_rpm));
+    if (strcmp(r->condition, "service") != 0)
+        buffer_format(&text, "; condition '%s'", r->condition);
+    if (run >= 0 && d->job->runs[run].when[0])
+        buffer_format(&text, "; %s", d->job->runs[run].when);
+    if (text.failed)
+        out->failed = 1;
+    else
+        paper_wrap(out, 2, 4, text.bytes);
+    buffer_release(&text);
+}
+
+void text_readings_all(const struct dossier *dossier, struct buffer *out)
+{
+    static const struct table_column columns[] = {
+        {"sensor", false, true}, {"1x amplitude", true, false}, {"+/-", true, false},
+        {"lag", true, false},    {"+/-", true, false},          {"turns/blocks", true, false},
+        {"use", false, false},
+    };
+    if (dossier->readings.count == 0)
+        return;
+    paper_heading(out, "READINGS");
+    paper_say(out, 2, 2,
+              "Phase is lag: how far the shaft turns from the mark to the vibration's "
+              "peak. +/- is the 95 %% half width of one reading; what differs from run to "
+              "run is not in it.");
+    for (size_t i = 0; i < dossier->readings.count;) {
+        const struct dossier_reading *first = &dossier->readings.items[i];
+        struct table table;
+        table_init(&table, columns, sizeof columns / sizeof *columns);
+        for (; i < dossier->readings.count && same_group(first, &dossier->readings.items[i]); i++)
+            reading_row(dossier, &dossier->readings.items[i], &table);
+        group_heading(dossier, &first->reading, out);
+        table_print(&table, 4, out);
+        table_release(&table);
+    }
+}
+
+static void response_row(const struct dossier *d, const struct response_record *r, double mass,
+                         struct table *table)
+{
+    if (r->sensor < 0 || (size_t)r->sensor >= d->job->sensor_count)
+        return;
+    const struct job_sensor *sensor = &d->job->sensors[r->sensor];
+    double cov[3];
+    char unit[32];
+    for (int i = 0; i < 3; i++)
+        cov[i] = r->cov[i] * mass * mass;
+    struct shown s =
+        shown_vector(r->vector * mass, cov, sensor->quantity, r->speed_rpm, &sensor->show, NAN);
+    snprintf(unit, sizeof unit, "%s %s", sensor->show.unit, detection_text(sensor->show.detection));
+    table_cell(table, "%s", sensor->name);
+    table_cell(table, "%s", dossier_plane(d, r->plane));
+    table_cell(table, "%s", r->condition);
+    vector_cells(table, &s, unit);
+}
+
+void text_readings_responses(const struct dossier *dossier, struct buffer *out)
+{
+    static const struct table_column columns[] = {
+        {"sensor", false, true},       {"plane", false, true}, {"condition", false, true},
+        {"1x amplitude", true, false}, {"+/-", true, false},   {"lag", true, false},
+        {"+/-", true, false},
+    };
+    if (dossier->responses.count == 0)
+        return;
+    bool us = dossier->job->units == UNITS_US;
+    double mass = us ? 0.45359237 / 16 : 0.1; /* kg: one ounce, or 100 g */
+    struct table table;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < dossier->responses.count; i++)
+        response_row(dossier, &dossier->responses.items[i], mass, &table);
+    paper_heading(out, "RESPONSES");
+    paper_say(out, 2, 2,
+              "What %s at the mark (0 deg %s) at the plane's radius adds to the vibration.",
+              us ? "1 oz" : "100 g", job_sense_text(dossier->job));
+    table_print(&table, 2, out);
+    table_release(&table);
+}
+
+static void finding(const struct dossier *d, const struct finding_record *f, struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    buffer_format(&text, "%s %s", f->verdict == VERDICT_REFUSE ? "REFUSED" : "caution", f->check);
+    if (f->run[0])
+        buffer_format(&text, ", run '%s'", f->run);
+    if (f->sensor >= 0)
+        buffer_format(&text, ", sensor '%s'", dossier_sensor(d, f->sensor));
+    buffer_format(&text, ": %s", f->text);
+    if (isfinite(f->value) && isfinite(f->limit))
+        buffer_format(&text, " [%.3g against a limit of %.3g%s%s]", f->value, f->limit,
+                      f->unit[0] ? " " : "", f->unit);
+    if (text.failed)
+        out->failed = 1;
+    else
+        paper_wrap(out, 2, 4, text.bytes);
+    buffer_release(&text);
+}
+
+void text_readings_findings(const struct dossier *dossier, struct buffer *out)
+{
+    size_t counts[3] = {0, 0, 0};
+    if (dossier->findings.count == 0)
+        return;
+    paper_heading(out, "FINDINGS");
+    for (int verdict = VERDICT_REFUSE; verdict >= VERDICT_OK; verdict--) {
+        for (size_t i = 0; i < dossier->findings.count; i++) {
+            const struct finding_record *f = &dossier->findings.items[i];
+            if ((int)f->verdict != verdict)
+                continue;
+            counts[verdict]++;
+            if (verdict != VERDICT_OK)
+                finding(dossier, f, out);
+        }
+    }
+    paper_say(out, 2, 2, "%zu refused, %zu to be read with caution, %zu in order.",
+              counts[VERDICT_REFUSE], counts[VERDICT_CAUTION], counts[VERDICT_OK]);
+}
