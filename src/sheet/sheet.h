@@ -45,9 +45,10 @@ struct sheet {
 
 /* Reads and validates the sheet. Returns 0; or the number of lines appended to `errors`, each
  * "SHEET:LINE: cause: 'name'\n" with no stage name in front; or -1 when memory is out.
+ * Where it does not return 0 the sheet is left released. A sheet is at most 1 MiB.
  * With `audit` a sheet needs no runs, planes or angles, and its runs are not checked for files. */
 int sheet_read(struct sheet *sheet, const char *path, bool audit, struct buffer *errors)
     __attribute__((warn_unused_result));
-void sheet_release(struct sheet *sheet);
+void sheet_release(struct sheet *sheet); /* also twice, or after a failed sheet_read */
 
 #endif
