@@ -1,8 +1,337 @@
 #include "track/track.h"
 
+#include <stdint.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/message.h"
+#include "base/options.h"
+#include "stream/records.h"
+#include "stream/stream.h"
+#include "track/tracker.h"
+
+/* What is known of the recording that is passing through. */
+struct recording {
+    bool open;
+    char run[NAME_ROOM];
+    struct wave_record wave; /* owned while open */
+    int *sensors;            /* owned: per column the sensor's index, -1 the tacho */
+    struct tracker tracker;  /* owned while open */
+    double frames, got;      /* promised by the run record (0: it says nothing), and seen */
+};
+
+static int malformed(const struct record *record, const char *why)
+{
+    message("malformed record: '%s' (%s)", record->kind, why);
+    return STATUS_USAGE;
+}
+
+/* ---- a recording begins ---- */
+
+static int note_run(struct recording *rec, struct stream *stream, const struct record *record)
+{
+    struct run_record run = {0};
+    const char *why = "";
+
+    if (run_parse(&run, &stream->job, record->json, &why)) {
+        return malformed(record, why);
+    }
+    rec->frames = run.file_count > 0 ? (double)run.files[0].frames : 0;
+    run_release(&run);
+    return STATUS_DONE;
+}
+
+static int name_columns(struct recording *rec, const struct job *job, int *tacho)
+{
+    *tacho = -1;
+    for (size_t c = 0; c < rec->wave.column_count; c++) {
+        const struct wave_column *column = &rec->wave.columns[c];
+
+        rec->sensors[c] = column->quantity == QUANTITY_TACHO ? -1
+                                                             : job_find_sensor(job, column->name);
+        if (column->quantity == QUANTITY_TACHO && *tacho < 0) {
+            *tacho = (int)c;
+        } else if (rec->sensors[c] < 0) {
+            message("no such sensor in the job: '%s' (run '%s')", column->name, rec->wave.run);
+            return STATUS_USAGE;
+        }
+    }
+    return STATUS_DONE;
+}
+
+static int begin_tracker(struct recording *rec, const struct job *job)
+{
+    size_t columns = rec->wave.column_count;
+    double *rail = malloc((columns + 1) * sizeof *rail);
+    int tacho, status, failed;
+
+    rec->sensors = malloc((columns + 1) * sizeof *rec->sensors);
+    if (!rec->sensors || !rail) {
+        free(rail);
+        return message_no_memory();
+    }
+    status = name_columns(rec, job, &tacho);
+    for (size_t c = 0; c < columns; c++) {
+        rail[c] = rec->wave.columns[c].rail;
+    }
+    if (status == STATUS_DONE) {
+        struct tracker_set_up set_up = {rec->wave.rate_hz, rec->frames, columns, tacho, rail,
+                                        job->tacho_edge, job->tacho_level, job->service_rpm};
+
+        failed = tracker_init(&rec->tracker, &set_up);
+        status = failed ? message_no_memory() : STATUS_DONE;
+    }
+    rec->open = status == STATUS_DONE;
+    free(rail);
+    return status;
+}
+
+static int begin(struct recording *rec, struct stream *stream, const struct record *record)
+{
+    const char *why = "";
+
+    if (wave_parse(&rec->wave, record->json, &why)) {
+        return malformed(record, why);
+    }
+    if (!(rec->wave.rate_hz > 0) || rec->wave.column_count == 0) {
+        return malformed(record, "no rate, or no columns");
+    }
+    strcpy(rec->run, rec->wave.run);
+    rec->got = 0;
+    return begin_tracker(rec, &stream->job);
+}
+
+/* ---- its samples ---- */
+
+/* Hands whole frames to the tracker; `carry` keeps the floats of a frame that a piece ends within. */
+static int feed(struct recording *rec, const float *x, size_t floats, float *carry, size_t *carried)
+{
+    size_t columns = rec->wave.column_count;
+    int failed = 0;
+
+    while (*carried > 0 && floats > 0) {
+        carry[(*carried)++] = *x++;
+        floats--;
+        if (*carried == columns) {
+            failed = tracker_add(&rec->tracker, carry, 1);
+            *carried = 0;
+        }
+    }
+    if (!failed && floats >= columns) {
+        failed = tracker_add(&rec->tracker, x, floats / columns);
+    }
+    while (*carried < floats % columns) {
+        carry[*carried] = x[floats / columns * columns + *carried];
+        (*carried)++;
+    }
+    return failed ? message_no_memory() : STATUS_DONE;
+}
+
+static int samples(struct recording *rec, struct stream *stream, const struct record *record)
+{
+    char run[NAME_ROOM];
+    long frames;
+    const char *why = "";
+    size_t frame = rec->wave.column_count * sizeof(float);
+
+    if (block_parse(run, &frames, record->json, &why)) {
+        return malformed(record, why);
+    }
+    if (!rec->open || strcmp(run, rec->run)) {
+        return malformed(record, "no wave record before it");
+    }
+    float *carry = malloc(frame); /* a frame that is cut by the input buffer's end */
+    size_t carried = 0, left = (size_t)frames * frame;
+    int status = carry ? STATUS_DONE : message_no_memory();
+
+    while (status == STATUS_DONE && left > 0) {
+        const float *x;
+        size_t length = 0;
+
+        status = stream_samples(stream, left, &x, &length);
+        if (status != STATUS_DONE) {
+            break;
+        }
+        left -= length;
+        status = feed(rec, x, length / sizeof(float), carry, &carried);
+    }
+    rec->got += (double)frames;
+    free(carry);
+    return status;
+}
+
+/* ---- its results ---- */
+
+static int print_channels(const struct recording *rec, struct stream *stream, struct line *line)
+{
+    int status = STATUS_DONE;
+
+    for (size_t c = 0; status == STATUS_DONE && c < rec->wave.column_count; c++) {
+        const struct channel *channel = &rec->tracker.channels[c];
+        int same = channel_pairs_same(&rec->tracker.pairs, c);
+        struct channel_record record = {.sensor = rec->sensors[c], .min = channel->min,
+                                        .max = channel->max,
+                                        .resolution = channel_resolution(channel),
+                                        .railed = channel_railed(channel),
+                                        .samples = channel->samples,
+                                        .same_as = same < 0 ? -1
+                                                            : rec->sensors[same] < 0 ? -2
+                                                            : rec->sensors[same]};
+
+        strcpy(record.run, rec->run);
+        channel_print(&record, &stream->job, line);
+        status = stream_write(stream, line);
+    }
+    return status;
+}
+
+static int print_turns(const struct recording *rec, struct stream *stream, struct line *line)
+{
+    const struct windows *windows = &rec->tracker.windows;
+    struct turns_record record = {.count = windows->sensors};
+    bool reference = tracker_reference(&rec->tracker);
+    int status = STATUS_DONE;
+
+    record.sensors = malloc((record.count + 1) * sizeof *record.sensors);
+    record.vectors = malloc((record.count + 1) * sizeof *record.vectors);
+    record.rest = malloc((record.count + 1) * sizeof *record.rest);
+    if (!record.sensors || !record.vectors || !record.rest) {
+        turns_release(&record);
+        return message_no_memory();
+    }
+    strcpy(record.run, rec->run);
+    for (size_t c = 0, s = 0; c < rec->wave.column_count; c++) {
+        if (rec->sensors[c] >= 0) {
+            record.sensors[s++] = rec->sensors[c];
+        }
+    }
+    for (size_t b = 0; reference && status == STATUS_DONE && b < windows->count; b++) {
+        const struct window_block *block = &windows->blocks[b];
+
+        record.t_s = (block->from + block->to) / 2 / rec->wave.rate_hz;
+        record.turns = block->turns;
+        record.speed_rpm = 60 * rec->wave.rate_hz * (double)block->turns / (block->to - block->from);
+        for (size_t s = 0; s < windows->sensors; s++) {
+            record.vectors[s] = window_vector(windows, b, s, &record.rest[s]);
+        }
+        turns_print(&record, &stream->job, line);
+        status = stream_write(stream, line);
+    }
+    turns_release(&record);
+    return status;
+}
+
+static int print_tacho(const struct recording *rec, struct stream *stream, struct line *line)
+{
+    const struct tracker *tracker = &rec->tracker;
+    struct tacho_record record = {.marks = tracker->marks.count, .missed = tracker->marks.missed,
+                                  .extra = tracker->marks.extra,
+                                  .jitter_deg = shaft_jitter(&tracker->shaft),
+                                  .speed_rpm = tracker_speed(tracker),
+                                  .scatter_rpm = tracker_scatter(tracker),
+                                  .reference = tracker_reference(tracker)};
+
+    strcpy(record.run, rec->run);
+    tacho_print(&record, line);
+    return stream_write(stream, line);
+}
+
+static void drop(struct recording *rec)
+{
+    tracker_release(&rec->tracker);
+    wave_release(&rec->wave);
+    free(rec->sensors);
+    rec->sensors = NULL;
+    rec->open = false;
+}
+
+/* Ends the recording that is open, if one is, and writes its records. */
+static int finish(struct recording *rec, struct stream *stream)
+{
+    struct line line = LINE_INIT;
+    int status = STATUS_DONE;
+
+    if (!rec->open) {
+        return STATUS_DONE;
+    }
+    if (rec->frames > 0 && rec->got != rec->frames) {
+        message("ended early: '%s' (%.0f of %.0f frames)", rec->run, rec->got, rec->frames);
+        status = STATUS_SYSTEM;
+    } else if (tracker_finish(&rec->tracker)) {
+        status = message_no_memory();
+    }
+    if (status == STATUS_DONE) {
+        status = print_channels(rec, stream, &line);
+    }
+    if (status == STATUS_DONE) {
+        status = print_turns(rec, stream, &line);
+    }
+    if (status == STATUS_DONE) {
+        status = print_tacho(rec, stream, &line);
+    }
+    line_release(&line);
+    drop(rec);
+    return status;
+}
+
+/* ---- the stage ---- */
+
+static int take(struct recording *rec, struct stream *stream, const struct record *record)
+{
+    int status = STATUS_DONE;
+
+    if (!strcmp(record->kind, "block")) {
+        return samples(rec, stream, record);
+    }
+    if (!strcmp(record->kind, "run") || !strcmp(record->kind, "wave")) {
+        status = finish(rec, stream);
+    }
+    if (status == STATUS_DONE && !strcmp(record->kind, "wave")) {
+        return begin(rec, stream, record);
+    }
+    if (status == STATUS_DONE && !strcmp(record->kind, "run")) {
+        status = note_run(rec, stream, record);
+    }
+    return status == STATUS_DONE ? stream_pass(stream, record) : status;
+}
+
 int stage_track(int argc, char **argv)
 {
-    (void)argc;
-    (void)argv;
-    return 1;
+    static const struct option options[] = {{.name = NULL}};
+    static const struct usage usage = {
+        "track", "[FILE...]",
+        "samples become one vector per sensor per block of turns, and the tacho's health", options,
+        0, SIZE_MAX, NULL};
+    struct option_list files = {0};
+    struct stream stream;
+    struct recording rec = {0};
+    struct record record;
+
+    message_stage("track");
+    switch (options_parse(&usage, argc, argv, &files)) {
+    case OPTIONS_STOP:
+        return STATUS_DONE;
+    case OPTIONS_MISUSE:
+        return STATUS_USAGE;
+    case OPTIONS_GO:
+        break;
+    }
+    int status = stream_open(&stream, files.items, files.count, true);
+
+    while (status == STATUS_DONE && stream_next(&stream, &record)) {
+        status = take(&rec, &stream, &record);
+    }
+    if (status == STATUS_DONE) {
+        status = stream.status;
+    }
+    if (status == STATUS_DONE) {
+        status = finish(&rec, &stream);
+    }
+    drop(&rec);
+    if (status == STATUS_DONE) {
+        status = stream_finish(&stream);
+    }
+    stream_close(&stream);
+    option_list_release(&files);
+    return status;
 }

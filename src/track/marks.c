@@ -1,0 +1,237 @@
+#include "track/marks.h"
+
+#include <math.h>
+#include <string.h>
+
+/* How far from its expected time a mark may come, as a share of the period: a change of speed of a fifth
+ * within a turn is more than a rotor with a flywheel's inertia does. */
+#define TOLERANCE 0.2
+
+void marks_init(struct marks *marks)
+{
+    *marks = (struct marks){0};
+}
+
+/* How many periods behind the last mark the pulse lies, 0 where it is on no mark's place. */
+static long place(double since, double period)
+{
+    double turns = since / period;
+    long n = lround(turns);
+
+    return n >= 1 && fabs(turns - (double)n) <= TOLERANCE ? n : 0;
+}
+
+/* The pulse as a mark of this size: what is clearly the wider and taller one is the mark. */
+static double size_of(const struct pulse *pulse)
+{
+    double width = pulse->high < pulse->low ? pulse->high : pulse->low;
+
+    return (pulse->top - pulse->bottom) * width;
+}
+
+struct ballot {
+    double period, score, size;
+    size_t start;
+};
+
+/* Follows the voters from `start` with a first period and counts how well that goes. */
+static struct ballot follow(const struct pulse *pulses, size_t count, size_t start, double period)
+{
+    struct ballot ballot = {period, -(double)start, 0, start};
+    double last = pulses[start].at, current = period;
+    size_t hits = 1;
+
+    ballot.size = size_of(&pulses[start]);
+    for (size_t i = start + 1; i < count; i++) {
+        long n = place(pulses[i].at - last, current);
+
+        if (n == 0) {
+            ballot.score -= 1;
+            continue;
+        }
+        ballot.score += 1 - (double)(n - 1);
+        current = 0.5 * current + 0.5 * (pulses[i].at - last) / (double)n;
+        last = pulses[i].at;
+        ballot.size += size_of(&pulses[i]);
+        hits++;
+    }
+    ballot.size /= (double)hits;
+    return ballot;
+}
+
+static bool better(const struct ballot *a, const struct ballot *b)
+{
+    if (fabs(a->score - b->score) > 2) {
+        return a->score > b->score;
+    }
+    return a->size > b->size * 1.02 || (a->size > b->size * 0.98 && a->score > b->score);
+}
+
+/* The best start and period that the voters have; false where no regular pulse is among them. */
+static bool vote(const struct marks *marks, struct ballot *best)
+{
+    const struct pulse *p = marks->voters;
+    size_t n = marks->voter_count;
+    bool found = false;
+
+    for (size_t start = 0; start < 6 && start + 1 < n; start++) {
+        for (size_t next = start + 1; next < start + 4 && next < n; next++) {
+            struct ballot ballot = follow(p, n, start, p[next].at - p[start].at);
+
+            if (!found || better(&ballot, best)) {
+                *best = ballot;
+                found = true;
+            }
+        }
+    }
+    return found && (n < 4 || best->score > -0.25 * (double)n);
+}
+
+static size_t give(struct marks *marks, double at, long turns, struct mark *out)
+{
+    size_t n = 0;
+
+    for (long k = 1; k < turns; k++) {
+        double share = (double)k / (double)turns;
+
+        out[n++] = (struct mark){marks->last + share * (at - marks->last), false, false};
+        marks->missed++;
+    }
+    out[n++] = (struct mark){at, true, marks->breaks};
+    marks->breaks = false;
+    marks->count++;
+    return n;
+}
+
+/* The candidate becomes a mark. */
+static size_t commit(struct marks *marks, struct mark *out)
+{
+    if (!marks->has_candidate) {
+        return 0;
+    }
+    size_t n = give(marks, marks->candidate, marks->candidate_turns, out);
+
+    marks->period = 0.5 * marks->period + 0.5 * (marks->candidate - marks->last) /
+                                              (double)marks->candidate_turns;
+    marks->last = marks->candidate;
+    marks->has_candidate = false;
+    marks->strays = 0;
+    return n;
+}
+
+void marks_unlock(struct marks *marks)
+{
+    marks->locked = false;
+    marks->breaks = true;
+    marks->voter_count = 0;
+}
+
+/* One pulse, once the period is known. Sets *lost where the rhythm is gone; the pulse is then not used. */
+static size_t step(struct marks *marks, const struct pulse *pulse, struct mark *out, bool *lost)
+{
+    size_t given = 0;
+    double since = pulse->at - marks->last;
+
+    *lost = false;
+    if (marks->has_candidate && since > ((double)marks->candidate_turns + TOLERANCE) * marks->period) {
+        given = commit(marks, out);
+        since = pulse->at - marks->last;
+    }
+    long n = place(since, marks->period);
+
+    if (since > (MARKS_GAP + 0.5) * marks->period || (n == 0 && marks->strays > 8 && since > 3 * marks->period)) {
+        *lost = true;
+        return given;
+    }
+    if (n == 0) {
+        marks->extra++;
+        marks->strays++;
+        return given;
+    }
+    double expected = marks->last + (double)n * marks->period;
+
+    if (marks->has_candidate) {
+        marks->extra++;
+        marks->strays++;
+        if (fabs(pulse->at - expected) >= fabs(marks->candidate - expected)) {
+            return given;
+        }
+    }
+    marks->has_candidate = true;
+    marks->candidate = pulse->at;
+    marks->candidate_turns = n;
+    return given;
+}
+
+/* Locks on with the voters and runs them through; keeps waiting where they are irregular. */
+static size_t lock(struct marks *marks, struct mark *out)
+{
+    struct ballot best;
+    size_t given = 0, count = marks->voter_count;
+    struct pulse voters[MARKS_VOTERS];
+
+    if (!vote(marks, &best)) {
+        size_t drop = (count + 1) / 2;
+
+        marks->extra += (long)drop;
+        marks->voter_count -= drop;
+        memmove(marks->voters, marks->voters + drop, marks->voter_count * sizeof *voters);
+        return 0;
+    }
+    memcpy(voters, marks->voters, count * sizeof *voters);
+    marks->locked = true;
+    marks->voter_count = 0;
+    marks->extra += (long)best.start;
+    marks->period = best.period;
+    marks->has_candidate = false;
+    marks->strays = 0;
+    given = give(marks, voters[best.start].at, 1, out);
+    marks->last = voters[best.start].at;
+    for (size_t i = best.start + 1; i < count; i++) {
+        bool lost;
+
+        given += step(marks, &voters[i], out + given, &lost);
+        if (lost) {
+            marks_unlock(marks);
+            marks->voter_count = count - i;
+            memcpy(marks->voters, voters + i, marks->voter_count * sizeof *voters);
+            break;
+        }
+    }
+    return given;
+}
+
+size_t marks_push(struct marks *marks, const struct pulse *pulse, struct mark *out)
+{
+    size_t given = 0;
+
+    if (marks->locked) {
+        bool lost;
+
+        given = step(marks, pulse, out, &lost);
+        if (!lost) {
+            return given;
+        }
+        marks_unlock(marks);
+    }
+    marks->voters[marks->voter_count++] = *pulse;
+    if (marks->voter_count == MARKS_VOTERS) {
+        given += lock(marks, out + given);
+    }
+    return given;
+}
+
+size_t marks_hurry(struct marks *marks, struct mark *out)
+{
+    return marks->locked || marks->voter_count < 4 ? 0 : lock(marks, out);
+}
+
+size_t marks_finish(struct marks *marks, struct mark *out)
+{
+    size_t given = 0;
+
+    while (!marks->locked && marks->voter_count > 1) {
+        given += lock(marks, out + given);
+    }
+    return marks->locked ? given + commit(marks, out + given) : given;
+}

@@ -1,0 +1,170 @@
+#include "track/pulse.h"
+
+#include <math.h>
+
+enum { UNKNOWN, BELOW, ABOVE, ABOVE_FROM_START };
+
+/* Half the hysteresis as a share of the span: common practice for comparators on tacho pulses. Noise
+ * of up to 30 % peak to peak cannot fire twice; a ripple of a third of the mark's height stays out. */
+#define HYSTERESIS 0.15f
+
+void pulse_init(struct pulse_finder *finder, int edge, double level)
+{
+    *finder = (struct pulse_finder){.sign = edge < 0 ? -1.0f : 1.0f, .level = level};
+}
+
+/* Mean of the second to fourth largest of the memory times `sign`: one spike cannot move it, and
+ * smaller pulses among the marks do not lower it. */
+static float typical(const float *values, float sign)
+{
+    float sorted[PULSE_MEMORY];
+
+    for (size_t i = 0; i < PULSE_MEMORY; i++) {
+        size_t k = i;
+
+        for (; k > 0 && sign * sorted[k - 1] < sign * values[i]; k--) {
+            sorted[k] = sorted[k - 1];
+        }
+        sorted[k] = values[i];
+    }
+    return (sorted[1] + sorted[2] + sorted[3]) / 3.0f;
+}
+
+static void set_levels(struct pulse_finder *finder)
+{
+    float top = typical(finder->tops, 1.0f), bottom = typical(finder->bottoms, -1.0f);
+    float span = top - bottom;
+
+    finder->middle = isnan(finder->level) ? 0.5f * (top + bottom)
+                                          : finder->sign * (float)finder->level;
+    finder->above = finder->middle + HYSTERESIS * span;
+    finder->below = finder->middle - HYSTERESIS * span;
+    if (!isnan(finder->level)) { /* a level close to an extreme still has to work */
+        finder->above = fminf(finder->above, 0.5f * (finder->middle + top));
+        finder->below = fmaxf(finder->below, 0.5f * (finder->middle + bottom));
+    }
+}
+
+bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n)
+{
+    float top = -INFINITY, bottom = INFINITY;
+
+    for (size_t i = 0; i < n; i++) {
+        float y = finder->sign * x[i];
+
+        top = y > top ? y : top;
+        bottom = y < bottom ? y : bottom;
+    }
+    if (!(top > bottom) || !isfinite(top - bottom)) {
+        return false;
+    }
+    for (size_t i = 0; i < PULSE_MEMORY; i++) {
+        finder->tops[i] = top;
+        finder->bottoms[i] = bottom;
+    }
+    set_levels(finder);
+    finder->live = true;
+    return true;
+}
+
+/* The time within [0, 1] at which the cubic through y(-1), y(0), y(1), y(2) passes `level`, which
+ * lies between y(0) and y(1); linear where the outer points are not to be had. */
+static double crossing(const float *x, float sign, float level, bool outer)
+{
+    double y0 = sign * x[0] - level, y1 = sign * x[1] - level;
+    double at = y1 > y0 ? -y0 / (y1 - y0) : 0.5;
+
+    if (!outer) {
+        return at;
+    }
+    double ym = sign * x[-1] - level, y2 = sign * x[2] - level;
+    double c1 = y1 - ym / 3 - y0 / 2 - y2 / 6, c2 = (ym + y1) / 2 - y0;
+    double c3 = (y2 - ym) / 6 + (y0 - y1) / 2;
+
+    for (int k = 0; k < 3; k++) {
+        double value = y0 + at * (c1 + at * (c2 + at * c3));
+        double slope = c1 + at * (2 * c2 + at * 3 * c3);
+
+        if (!(slope > 0.25 * (y1 - y0))) {
+            break;
+        }
+        at = fmin(1, fmax(0, at - value / slope));
+    }
+    return at;
+}
+
+static void learn(struct pulse_finder *finder, float top, float bottom)
+{
+    finder->tops[finder->turn] = top;
+    finder->bottoms[finder->turn] = bottom;
+    finder->turn = (finder->turn + 1) % PULSE_MEMORY;
+    set_levels(finder);
+}
+
+/* The signal rose at x[i]: where did it last pass the middle? */
+static double rise_time(const struct pulse_finder *finder, const float *x, size_t i, size_t n,
+                        size_t back)
+{
+    ptrdiff_t k = (ptrdiff_t)i - 1, first = -(ptrdiff_t)back;
+
+    while (k > first && finder->sign * x[k] > finder->middle) {
+        k--;
+    }
+    if (k < first) {
+        return (double)k + 1;
+    }
+    return (double)k + crossing(x + k, finder->sign, finder->middle,
+                                k > first && k + 2 < (ptrdiff_t)n);
+}
+
+static struct pulse ended(struct pulse_finder *finder, double end)
+{
+    return (struct pulse){.at = finder->rose, .high = end - finder->rose, .low = finder->low,
+                          .top = finder->extreme, .bottom = finder->bottom};
+}
+
+size_t pulse_find(struct pulse_finder *finder, const float *x, size_t n, size_t back, double start,
+                  struct pulse *pulses)
+{
+    size_t count = 0;
+
+    if (!finder->live) {
+        return 0;
+    }
+    for (size_t i = 0; i < n; i++) {
+        float y = finder->sign * x[i];
+
+        if (finder->state == UNKNOWN) {
+            finder->state = y > finder->below ? ABOVE_FROM_START : BELOW;
+            finder->extreme = y;
+            finder->fell = start + (double)i;
+        } else if (finder->state == BELOW && y > finder->above) {
+            finder->rose = start + rise_time(finder, x, i, n, back);
+            finder->low = finder->rose - finder->fell;
+            finder->bottom = finder->extreme;
+            finder->extreme = y;
+            finder->state = ABOVE;
+        } else if (finder->state >= ABOVE && y < finder->below) {
+            if (finder->state == ABOVE) {
+                pulses[count++] = ended(finder, start + (double)i);
+                learn(finder, finder->extreme, finder->bottom);
+            }
+            finder->fell = start + (double)i;
+            finder->extreme = y;
+            finder->state = BELOW;
+        } else if (finder->state == BELOW ? y < finder->extreme : y > finder->extreme) {
+            finder->extreme = y;
+        }
+    }
+    return count;
+}
+
+size_t pulse_finish(struct pulse_finder *finder, double end, struct pulse *pulse)
+{
+    if (finder->state != ABOVE) {
+        return 0;
+    }
+    *pulse = ended(finder, end);
+    finder->state = UNKNOWN;
+    return 1;
+}
