@@ -1,0 +1,393 @@
+#include "solve/advice.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "base/angle.h"
+#include "solve/tolerance.h"
+#include "solve/trial.h"
+
+struct limits {
+    bool off;
+    double caution, refuse;
+};
+
+/* The sheet's limits of a check over the defaults. */
+static struct limits limits_of(const struct job *job, const char *check, double caution,
+                               double refuse)
+{
+    struct limits l = {false, caution, refuse};
+    for (size_t i = 0; i < job->limit_count; i++) {
+        if (strcmp(job->limits[i].check, check))
+            continue;
+        l.off = job->limits[i].off;
+        if (!isnan(job->limits[i].caution))
+            l.caution = job->limits[i].caution;
+        if (!isnan(job->limits[i].refuse))
+            l.refuse = job->limits[i].refuse;
+    }
+    return l;
+}
+
+static void judge(struct advice_finding *f, const struct limits *l, double value)
+{
+    f->value = value;
+    f->verdict = value >= l->refuse    ? ADVICE_REFUSE
+                 : value >= l->caution ? ADVICE_CAUTION
+                                       : ADVICE_OK;
+    f->limit = f->verdict == ADVICE_REFUSE ? l->refuse : l->caution;
+}
+
+bool advice_linearity(const struct model *m, const struct model_row *row, struct advice_finding *f)
+{
+    struct limits l = limits_of(m->job, "linearity", 3, 10);
+    if (l.off || isnan(row->misfit) || row->state != MODEL_GOOD)
+        return false;
+    *f = (struct advice_finding){.check = "linearity",
+                                 .unit = "s.e.",
+                                 .basis = "common practice",
+                                 .run = (int)row->misfit_run,
+                                 .sensor = (int)row->sensor};
+    judge(f, &l, row->misfit);
+    const char *run = m->job->runs[row->misfit_run].name;
+    if (f->verdict == ADVICE_OK)
+        snprintf(f->text, sizeof f->text,
+                 "the runs fit one set of responses; run '%s' is furthest off", run);
+    else
+        snprintf(f->text, sizeof f->text,
+                 "run '%s' does not fit the others: check its weights, their angles and radii, and "
+                 "whether the machine or its speed changed",
+                 run);
+    return true;
+}
+
+static double weight_unit(const struct job *job, const char **name)
+{
+    *name = job->units == UNITS_US ? "oz" : "g";
+    return job->units == UNITS_US ? 0.45359237 / 16 : 1e-3;
+}
+
+/* "'left' and 'right'": planes with a say in the pattern that is seen least. */
+static void weak_planes(const struct answer *a, char *text, size_t size)
+{
+    size_t length = 0;
+    text[0] = '\0';
+    for (size_t p = 0; p < a->planes && length + 1 < size; p++)
+        if (cabs(a->weak[p]) > 0.2) /* of the largest part: a lesser one is not the trouble */
+            length += (size_t)snprintf(text + length, size - length, "%s'%s'",
+                                       length ? " and " : "", a->model->job->planes[p].name);
+}
+
+bool advice_conditioning(const struct answer *a, struct advice_finding *f)
+{
+    const struct job *job = a->model->job;
+    struct limits l = limits_of(job, "conditioning", 10, 100);
+    bool short_of_rows = isinf(a->condition);
+    if (a->planes < 2 && !short_of_rows)
+        return false;
+    if (l.off && !short_of_rows)
+        return false;
+    *f = (struct advice_finding){
+        .check = "conditioning", .unit = "", .basis = "common practice", .run = -1, .sensor = -1};
+    judge(f, &l, a->condition);
+    char names[200];
+    weak_planes(a, names, sizeof names);
+    if (short_of_rows) {
+        f->verdict = ADVICE_REFUSE;
+        f->limit = l.refuse;
+        snprintf(f->text, sizeof f->text,
+                 "%zu planes cannot be told apart by %zu usable readings a run: %s; more sensors or "
+                 "another speed are needed",
+                 a->planes, a->rows, names);
+        return true;
+    }
+    if (f->verdict == ADVICE_OK) {
+        snprintf(f->text, sizeof f->text, "the planes can be told apart");
+        return true;
+    }
+    size_t first = 0, second = 0;
+    for (size_t p = 0; p < a->planes; p++)
+        if (cabs(a->weak[p]) > cabs(a->weak[first]))
+            first = p;
+    second = first == 0 ? 1 : 0;
+    for (size_t p = 0; p < a->planes; p++)
+        if (p != first && cabs(a->weak[p]) > cabs(a->weak[second]))
+            second = p;
+    double apart = fabs(angle_wrap_180(angle_of(a->weak[second]) - angle_of(a->weak[first])));
+    snprintf(f->text, sizeof f->text,
+             "planes %s are hardly told apart%s; a run with trial weights on both, %.0f deg apart, "
+             "%.2g times the mass on '%s', would show the difference best",
+             names,
+             f->verdict == ADVICE_REFUSE ? "" : ", so the weights are kept moderate", apart,
+             cabs(a->weak[second]), job->planes[second].name);
+    return true;
+}
+
+/* Static load on the journal that carries plane `plane`, kg: half the weight unless distances tell. */
+static double journal_load(const struct job *job, size_t plane)
+{
+    double share[2] = {0.5, 0.5};
+    if (job->span_m > 0 && !isnan(job->centre_m))
+        tolerance_loads(job->span_m, job->centre_m, share);
+    share[0] = fabs(share[0]);
+    share[1] = fabs(share[1]);
+    if (job->plane_count == 2)
+        return job->rotor_mass * share[plane];
+    if (job->support == SUPPORT_OVERHUNG) /* the bearing beside the overhung mass carries it */
+        return job->rotor_mass * fmax(share[0], share[1]);
+    return job->rotor_mass * fmin(share[0], share[1]);
+}
+
+bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f)
+{
+    const struct job *job = a->model->job;
+    struct limits l = limits_of(job, "correction-force", 15, 50);
+    if (l.off || !(job->rotor_mass > 0) || !(job->service_rpm > 0))
+        return false;
+    double load = journal_load(job, plane) * TRIAL_GRAVITY;
+    double force = trial_force(cabs(a->placed_weights[plane]), job->planes[plane].radius_m,
+                               job->service_rpm);
+    if (!(load > 0))
+        return false;
+    *f = (struct advice_finding){.check = "correction-force",
+                                 .unit = "%",
+                                 .basis = "common practice",
+                                 .run = -1,
+                                 .sensor = -1};
+    judge(f, &l, 100 * force / load);
+    snprintf(f->text, sizeof f->text,
+             "what is placed on '%s' pulls with %.2g N at service speed, %.2g %% of the static "
+             "journal load%s",
+             job->planes[plane].name, force, 100 * force / load,
+             f->verdict == ADVICE_OK ? ""
+                                     : "; check rotor mass, speed, radius and readings before it "
+                                       "is fitted");
+    return true;
+}
+
+void advice_trials(const struct job *job, struct advice_trial *trials)
+{
+    for (size_t p = 0; p < job->plane_count; p++) {
+        const struct job_plane *plane = &job->planes[p];
+        struct advice_trial *t = &trials[p];
+        *t = (struct advice_trial){NAN, NAN, NAN};
+        if (!(job->rotor_mass > 0) || !(job->service_rpm > 0) || !(plane->radius_m > 0))
+            continue;
+        double masses[64];
+        int counts[64];
+        size_t stock = plane->stock_count > 64 ? 64 : plane->stock_count;
+        for (size_t i = 0; i < stock; i++) {
+            masses[i] = plane->stock[i].mass;
+            counts[i] = plane->stock[i].count;
+        }
+        t->wanted = trial_mass(journal_load(job, p), plane->radius_m, job->service_rpm);
+        t->mass = trial_round(t->wanted, masses, counts, stock, plane->pieces,
+                              fmin(plane->most, plane->most_in_all));
+        if (!(t->mass > 0))
+            t->mass = NAN;
+        t->force = trial_force(t->mass, plane->radius_m, job->service_rpm);
+    }
+}
+
+int advice_corrected_run(const struct model *m)
+{
+    int run = m->job->aim.mounted >= 0 ? m->job->aim.mounted : m->last_run;
+    if (run < 0 || job_run_is_bare(m->job, (size_t)run))
+        return -1;
+    int rank = model_rank_before(m, (size_t)run);
+    if (rank < 0)
+        return -2;
+    return rank == (int)m->job->plane_count + 1 ? run : -1;
+}
+
+bool advice_is_done(const struct answer *a, int run)
+{
+    bool targets = false;
+    for (size_t r = 0; r < a->rows; r++) {
+        const double complex *z = model_find(a->row[r], (size_t)run);
+        if (isnan(a->row[r]->target))
+            continue;
+        targets = true;
+        if (!z || cabs(*z) > a->row[r]->target)
+            return false;
+    }
+    if (targets)
+        return true;
+    if (!a->has_residual || run != a->model->job->aim.mounted)
+        return false;
+    for (size_t p = 0; p < a->planes; p++)
+        if (!(a->residuals[p].before <= a->residuals[p].permissible))
+            return false;
+    return true;
+}
+
+/* ---- steps ---- */
+
+/* "'wheel' about 60 g (58 N)" for a plane; without a size just its name. */
+static size_t trial_words(const struct job *job, size_t p, const struct advice_trial *t, char *text,
+                          size_t size)
+{
+    const char *unit;
+    double kg = weight_unit(job, &unit);
+    if (isnan(t->mass))
+        return (size_t)snprintf(text, size, "'%s'", job->planes[p].name);
+    return (size_t)snprintf(text, size, "'%s' about %.3g %s (%.2g N)", job->planes[p].name,
+                            t->mass / kg, unit, t->force);
+}
+
+static bool plane_is_bare(const struct job *job, size_t p)
+{
+    for (size_t i = 0; i < job->run_count; i++)
+        if (job_run_weight(job, i, p) != 0)
+            return false;
+    return true;
+}
+
+/* Appends the trial weights of the planes that no run has tried yet. */
+static void list_trials(const struct job *job, struct advice_next *next)
+{
+    struct advice_trial trials[16];
+    size_t length = strlen(next->text), count = 0;
+    if (job->plane_count > 16)
+        return;
+    advice_trials(job, trials);
+    for (size_t p = 0; p < job->plane_count && length + 80 < sizeof next->text; p++) {
+        if (!plane_is_bare(job, p))
+            continue;
+        length += (size_t)snprintf(next->text + length, sizeof next->text - length, "%s",
+                                   count++ ? ", " : ": ");
+        length += trial_words(job, p, &trials[p], next->text + length, sizeof next->text - length);
+    }
+    if (count && isnan(trials[0].mass) && length < sizeof next->text)
+        snprintf(next->text + length, sizeof next->text - length,
+                 "; no size without rotor mass, service speed and radius");
+}
+
+void advice_trial_step(const struct model *m, struct advice_next *next)
+{
+    *next = (struct advice_next){.step = "trial"};
+    snprintf(next->text, sizeof next->text,
+             m->job->plane_count == 0
+                 ? "the sheet names no plane: add one, then run with a trial weight"
+             : m->job->plane_count == 1
+                 ? "run with a trial weight at any convenient position"
+                 : "run with a trial weight, one plane at a time, at any convenient position");
+    list_trials(m->job, next);
+}
+
+void advice_repeat_step(const struct model *m, const struct ruling *ruling,
+                        struct advice_next *next)
+{
+    *next = (struct advice_next){.step = "repeat"};
+    if (!ruling->row) {
+        snprintf(next->reason, sizeof next->reason, "no reading is fit to balance on");
+        snprintf(next->text, sizeof next->text,
+                 "no reading is fit to balance on: mend what the findings name and repeat the runs");
+        return;
+    }
+    const char *sensor = m->job->sensors[ruling->row->sensor].name;
+    const char *condition = m->conditions[ruling->row->condition];
+    if (ruling->named)
+        snprintf(next->reason, sizeof next->reason,
+                 "refused readings of a sensor that the aim names: '%s' (%s)", sensor, condition);
+    else
+        snprintf(next->reason, sizeof next->reason,
+                 "refused readings of a run that the regression needs: '%s'", condition);
+    snprintf(next->text, sizeof next->text,
+             "the readings left cannot carry a correction: mend what the findings refuse and repeat "
+             "those runs%s%s%s",
+             ruling->named ? ", with sensor '" : "", ruling->named ? sensor : "",
+             ruling->named ? "'" : "");
+}
+
+void advice_missing_step(const struct model *m, const struct ruling *ruling,
+                         struct advice_next *next)
+{
+    const struct job *job = m->job;
+    *next = (struct advice_next){.step = "trial"};
+    bool known_first = ruling->row && ruling->row->posterior.known[0];
+    for (size_t p = 0; p < job->plane_count; p++)
+        if (plane_is_bare(job, p)) {
+            snprintf(next->reason, sizeof next->reason,
+                     "a run is missing: none carries a weight on plane '%s'", job->planes[p].name);
+            snprintf(next->text, sizeof next->text, "run with a trial weight on");
+            list_trials(job, next);
+            return;
+        }
+    if (!known_first && (!ruling->row || ruling->row->count <= job->plane_count)) {
+        snprintf(next->reason, sizeof next->reason,
+                 "a run is missing: as found, or one more set of trial weights");
+        snprintf(next->text, sizeof next->text,
+                 "add the as-found run, or a run with other trial weights");
+        return;
+    }
+    char names[160] = "";
+    size_t length = 0;
+    for (size_t p = 0; p < job->plane_count && ruling->row && length + 50 < sizeof names; p++)
+        if (!ruling->row->posterior.known[p + 1])
+            length += (size_t)snprintf(names + length, sizeof names - length, "%s'%s'",
+                                       length ? " and " : "", job->planes[p].name);
+    snprintf(next->reason, sizeof next->reason,
+             "a run is missing: the weights on planes %s never change apart from each other", names);
+    snprintf(next->text, sizeof next->text,
+             "run with a trial weight on one of the planes %s alone", names);
+}
+
+void advice_refused_step(const struct advice_finding *finding, struct advice_next *next)
+{
+    *next = (struct advice_next){
+        .step = strcmp(finding->check, "conditioning") ? "repeat" : "trial"};
+    snprintf(next->text, sizeof next->text, "%.390s", finding->text);
+    snprintf(next->reason, sizeof next->reason, "no correction: %.280s", finding->text);
+}
+
+void advice_useless_step(const struct answer *a, struct advice_next *next)
+{
+    *next = (struct advice_next){.step = "repeat"};
+    bool limits = a->placement.of_all >= a->placement.nothing;
+    snprintf(next->reason, sizeof next->reason,
+             "nothing that may be placed lowers the expected vibration%s",
+             limits ? "" : " by more than its noise");
+    snprintf(next->text, sizeof next->text,
+             "nothing that may be placed lowers the expected vibration%s: allow more positions, "
+             "pieces or mass, or repeat the runs with a larger trial weight",
+             limits ? "" : " by more than its noise");
+}
+
+void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next)
+{
+    const struct job *job = a->model->job;
+    int mounted = job->aim.mounted;
+    *next = (struct advice_next){.step = trim ? "trim" : "correct"};
+    if (mounted >= 0)
+        snprintf(next->text, sizeof next->text,
+                 "add what is placed to the weights of run '%s', then run again",
+                 job->runs[mounted].name);
+    else
+        snprintf(next->text, sizeof next->text,
+                 "take everything off that was mounted, fit what is placed, then run again");
+    size_t length = strlen(next->text);
+    double gap = a->placement.gap, from = a->placement.nothing;
+    if (gap > 0 && from > 0)
+        snprintf(next->text + length, sizeof next->text - length,
+                 "; a better placement is not ruled out, by %.2g %% of the expected vibration at most",
+                 100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from)));
+    length = strlen(next->text);
+    for (size_t r = 0; r < a->model->row_count && length + 80 < sizeof next->text; r++) {
+        const struct model_row *row = &a->model->rows[r];
+        if (row->in_aim && row->state != MODEL_GOOD)
+            length += (size_t)snprintf(next->text + length, sizeof next->text - length,
+                                       "; without sensor '%s' (%s)", job->sensors[row->sensor].name,
+                                       a->model->conditions[row->condition]);
+    }
+}
+
+void advice_done_step(const struct answer *a, int run, bool met, struct advice_next *next)
+{
+    *next = (struct advice_next){.step = "done"};
+    snprintf(next->text, sizeof next->text,
+             met ? "run '%s' meets the aim: leave its weights on"
+                 : "run '%s': nothing that may be placed lowers it further",
+             a->model->job->runs[run].name);
+}

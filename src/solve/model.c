@@ -1,0 +1,282 @@
+#include "solve/model.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/angle.h"
+#include "sheet/units.h"
+#include "solve/regress.h"
+#include "solve/repeat.h"
+
+static int by_run(const void *a, const void *b)
+{
+    const struct model_reading *x = a, *y = b;
+    if (x->run != y->run)
+        return x->run < y->run ? -1 : 1;
+    if (x->sensor != y->sensor)
+        return x->sensor < y->sensor ? -1 : 1;
+    return strcmp(x->condition, y->condition);
+}
+
+static bool ordinary(const struct job_run *run)
+{
+    return run->role[0] == '\0' || !strcmp(run->role, "coast-down");
+}
+
+static size_t find_condition(struct model *m, const char *name)
+{
+    for (size_t c = 0; c < m->condition_count; c++)
+        if (!strcmp(m->conditions[c], name))
+            return c;
+    return m->condition_count;
+}
+
+static void add_condition(struct model *m, const char *name)
+{
+    if (find_condition(m, name) == m->condition_count)
+        memcpy(m->conditions[m->condition_count++], name, NAME_ROOM);
+}
+
+static int row_room(struct model_row *row, size_t count, size_t planes)
+{
+    row->runs = calloc(count + 1, sizeof *row->runs);
+    row->y = calloc(count + 1, sizeof *row->y);
+    row->x = calloc(count * planes + 1, sizeof *row->x);
+    row->cov = calloc(count + 1, sizeof *row->cov);
+    row->total = calloc(count + 1, sizeof *row->total);
+    return row->runs && row->y && row->x && row->cov && row->total ? 0 : -1;
+}
+
+static void row_take(struct model_row *row, const struct job *job, const struct model_reading *r)
+{
+    size_t i = row->count++;
+    row->runs[i] = r->run;
+    row->y[i] = r->vector;
+    memcpy(row->cov[i], r->cov, sizeof r->cov);
+    for (size_t p = 0; p < job->plane_count; p++)
+        row->x[i * job->plane_count + p] = job_run_weight(job, r->run, p);
+}
+
+/* Mean amplitude of the readings with nothing mounted; else of the first; 1 where all are zero. */
+static double as_found(const struct model_row *row, const struct job *job)
+{
+    double sum = 0;
+    size_t bare = 0;
+    for (size_t i = 0; i < row->count; i++)
+        if (job_run_is_bare(job, row->runs[i])) {
+            sum += cabs(row->y[i]);
+            bare++;
+        }
+    double size = bare ? sum / (double)bare : row->count ? cabs(row->y[0]) : 1;
+    for (size_t i = 0; i < row->count && !(size > 0); i++)
+        size = cabs(row->y[i]);
+    return size > 0 ? size : 1;
+}
+
+static void set_target(struct model_row *row, const struct job *job)
+{
+    row->target = NAN;
+    row->in_aim = true;
+    if (!job->aim.targets)
+        return;
+    const struct job_target *t = &job->aim.targets[row->sensor];
+    row->in_aim = t->in_aim || !job->aim.named;
+    if (isnan(t->amplitude))
+        return;
+    enum quantity own = job->sensors[row->sensor].quantity;
+    double w = row->speed_rpm * PI / 30;
+    if (own == t->quantity)
+        row->target = t->amplitude;
+    else if (w > 0)
+        row->target = cabs(units_convert(t->amplitude, t->quantity, own, w));
+}
+
+/* Gathers the usable readings of a row; `all` gets the weights of every reading, usable or not. */
+static int gather(struct model *m, struct model_row *row, const struct model_reading *readings,
+                  size_t count)
+{
+    const struct job *job = m->job;
+    size_t planes = job->plane_count, every = 0;
+    double complex *all = calloc(count * planes + 1, sizeof *all);
+    if (!all || row_room(row, count, planes) != 0) {
+        free(all);
+        return MODEL_NO_MEMORY;
+    }
+    double speed = 0;
+    size_t timed = 0;
+    for (size_t i = 0; i < count; i++) {
+        const struct model_reading *r = &readings[i];
+        if (r->sensor != row->sensor || strcmp(r->condition, m->conditions[row->condition]) ||
+            !ordinary(&job->runs[r->run]))
+            continue;
+        for (size_t p = 0; p < planes; p++)
+            all[every * planes + p] = job_run_weight(job, r->run, p);
+        every++;
+        if (!r->use || !r->phase)
+            continue;
+        row_take(row, job, r);
+        if (r->speed_rpm > 0) {
+            speed += r->speed_rpm;
+            timed++;
+        }
+    }
+    row->speed_rpm = timed ? speed / (double)timed : job->service_rpm;
+    row->as_found = as_found(row, job);
+    set_target(row, job);
+    int could = regress_rank(every, planes, all);
+    int can = regress_rank(row->count, planes, row->x);
+    free(all);
+    if (could < 0 || can < 0)
+        return could == REGRESS_FAILED || can == REGRESS_FAILED ? MODEL_FAILED : MODEL_NO_MEMORY;
+    row->state = can == (int)planes + 1     ? MODEL_GOOD
+                 : could == (int)planes + 1 ? MODEL_LOST
+                                            : MODEL_SHORT;
+    return MODEL_OK;
+}
+
+static bool equal_weights(const struct model_row *row, size_t a, size_t b, size_t planes)
+{
+    for (size_t p = 0; p < planes; p++) {
+        double complex u = row->x[a * planes + p], v = row->x[b * planes + p];
+        if (cabs(u - v) > 1e-9 * (cabs(u) + cabs(v)))
+            return false;
+    }
+    return true;
+}
+
+/* Adds each group of equal weights of the row to the pool. */
+static int pool_row(struct repeat_pool *pool, const struct model_row *row, size_t planes)
+{
+    double complex *y = calloc(row->count + 1, sizeof *y);
+    double(*cov)[3] = calloc(row->count + 1, sizeof *cov);
+    bool *seen = calloc(row->count + 1, sizeof *seen);
+    int result = y && cov && seen ? MODEL_OK : MODEL_NO_MEMORY;
+    for (size_t i = 0; result == MODEL_OK && i < row->count; i++) {
+        size_t n = 0;
+        for (size_t j = i; j < row->count; j++)
+            if (!seen[j] && equal_weights(row, i, j, planes)) {
+                seen[j] = true;
+                y[n] = row->y[j];
+                memcpy(cov[n++], row->cov[j], sizeof cov[0]);
+            }
+        repeat_add(pool, y, (const double(*)[3])cov, n, row->as_found);
+    }
+    free(seen);
+    free(cov);
+    free(y);
+    return result;
+}
+
+static int fit_row(struct model *m, struct model_row *row)
+{
+    row->sigma = m->repeatability * row->as_found;
+    for (size_t i = 0; i < row->count; i++)
+        for (int k = 0; k < 3; k++) {
+            row->total[i][k] = row->cov[i][k] + (k == 1 ? 0 : row->sigma * row->sigma);
+            row->typical[k] += row->cov[i][k] / (double)row->count;
+        }
+    struct regress_data data = {row->count,
+                                m->job->plane_count,
+                                row->y,
+                                row->x,
+                                (const double(*)[3])row->total,
+                                row->as_found};
+    int result = regress_fit(&data, &row->posterior);
+    if (result != REGRESS_OK)
+        return result == REGRESS_NO_MEMORY ? MODEL_NO_MEMORY
+               : result == REGRESS_NAN     ? MODEL_NAN
+                                           : MODEL_FAILED;
+    row->posterior.dof = m->dof;
+    size_t at = 0;
+    row->misfit = regress_misfit(&data, &row->posterior, &at);
+    if (row->count > 0)
+        row->misfit_run = row->runs[at];
+    return MODEL_OK;
+}
+
+int model_init(struct model *m, const struct job *job, struct model_reading *readings, size_t count)
+{
+    memset(m, 0, sizeof *m);
+    m->job = job;
+    m->last_run = -1;
+    qsort(readings, count, sizeof *readings, by_run);
+    m->conditions = calloc(job->run_count + count + 1, sizeof *m->conditions);
+    m->rows = calloc((job->run_count + count + 1) * (job->sensor_count + 1), sizeof *m->rows);
+    int result = m->conditions && m->rows ? MODEL_OK : MODEL_NO_MEMORY;
+    for (size_t i = 0; i < count && result == MODEL_OK; i++) {
+        if (!ordinary(&job->runs[readings[i].run]))
+            continue;
+        add_condition(m, readings[i].condition);
+        if (readings[i].use && readings[i].phase && (int)readings[i].run > m->last_run)
+            m->last_run = (int)readings[i].run;
+    }
+    struct repeat_pool pool = {0};
+    for (size_t c = 0; c < m->condition_count; c++)
+        for (size_t s = 0; s < job->sensor_count && result == MODEL_OK; s++) {
+            struct model_row *row = &m->rows[m->row_count++];
+            row->condition = c;
+            row->sensor = s;
+            row->misfit = NAN;
+            result = gather(m, row, readings, count);
+            if (result == MODEL_OK)
+                result = pool_row(&pool, row, job->plane_count);
+        }
+    m->repeatability = repeat_estimate(&pool, job->aim.repeatability, &m->dof);
+    m->repeats = pool.dof;
+    for (size_t r = 0; r < m->row_count && result == MODEL_OK; r++)
+        result = fit_row(m, &m->rows[r]);
+    if (result != MODEL_OK)
+        model_release(m);
+    return result;
+}
+
+void model_release(struct model *m)
+{
+    for (size_t r = 0; r < m->row_count; r++) {
+        struct model_row *row = &m->rows[r];
+        posterior_release(&row->posterior);
+        free(row->runs);
+        free(row->y);
+        free(row->x);
+        free(row->cov);
+        free(row->total);
+    }
+    free(m->rows);
+    free(m->conditions);
+    memset(m, 0, sizeof *m);
+}
+
+bool model_is_bare(const struct model *m)
+{
+    for (size_t i = 0; i < m->job->run_count; i++)
+        if (!job_run_is_bare(m->job, i))
+            return false;
+    return true;
+}
+
+int model_rank_before(const struct model *m, size_t end)
+{
+    size_t planes = m->job->plane_count, n = 0;
+    double complex *x = calloc(end * planes + 1, sizeof *x);
+    if (!x)
+        return REGRESS_NO_MEMORY;
+    for (size_t i = 0; i < end; i++) {
+        if (!ordinary(&m->job->runs[i]))
+            continue;
+        for (size_t p = 0; p < planes; p++)
+            x[n * planes + p] = job_run_weight(m->job, i, p);
+        n++;
+    }
+    int rank = regress_rank(n, planes, x);
+    free(x);
+    return rank;
+}
+
+const double complex *model_find(const struct model_row *row, size_t run)
+{
+    for (size_t i = 0; i < row->count; i++)
+        if (row->runs[i] == run)
+            return &row->y[i];
+    return NULL;
+}

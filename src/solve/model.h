@@ -1,0 +1,80 @@
+/* model.h - the readings of a job as rows of regressions.
+ *
+ * A row is one sensor in one condition: its usable readings in the sheet's order of runs, the scatter
+ * they carry, and the posterior of its vibration and responses.
+ */
+#ifndef LOPSIDE_SOLVE_MODEL_H
+#define LOPSIDE_SOLVE_MODEL_H
+
+#include <complex.h>
+#include <stdbool.h>
+#include <stddef.h>
+
+#include "solve/posterior.h"
+#include "stream/job.h"
+
+struct model_reading {      /* what the stage hands over; any order */
+    size_t run, sensor;
+    char condition[NAME_ROOM];
+    double speed_rpm;       /* NaN: not known */
+    bool phase;             /* there is a vector */
+    bool use;               /* vet's ruling */
+    double complex vector;  /* SI peak, argument is lag */
+    double cov[3];          /* of the mean, widened */
+};
+
+enum model_state {
+    MODEL_GOOD,             /* the usable readings determine everything */
+    MODEL_LOST,             /* they would, had none been refused */
+    MODEL_SHORT             /* a run is missing */
+};
+
+struct model_row {
+    size_t condition, sensor;
+    bool in_aim;
+    enum model_state state;
+    size_t count;           /* usable readings */
+    size_t *runs;           /* owned, their runs in the sheet's order */
+    double complex *y, *x;  /* owned: readings; count x planes equivalent weights, kg */
+    double (*cov)[3];       /* owned: of each reading */
+    double (*total)[3];     /* owned: with the scatter from run to run */
+    double as_found;        /* SI peak amplitude with nothing added, as read; > 0 */
+    double speed_rpm;       /* mean of the usable readings; the service speed where unknown; or NaN */
+    double sigma;           /* SI, scatter from run to run per component */
+    double typical[3];      /* mean covariance of the readings */
+    double target;          /* SI peak in the sensor's own quantity; NaN: none */
+    struct posterior posterior; /* relative to as found; zeroed where nothing was read */
+    double misfit;          /* s.e.; NaN: no run is spare */
+    size_t misfit_run;
+};
+
+struct model {
+    const struct job *job;  /* borrowed */
+    char (*conditions)[NAME_ROOM]; /* owned; sheet's order */
+    size_t condition_count;
+    struct model_row *rows; /* owned; by condition, then sensor */
+    size_t row_count;
+    double repeatability;   /* fraction of the as-found amplitude per component */
+    double dof;             /* of it; INFINITY: from the sheet */
+    double repeats;         /* degrees of freedom that repeated runs gave */
+    int last_run;           /* last run of the sheet that has usable readings; -1: none */
+};
+
+enum model_error { MODEL_OK = 0, MODEL_NO_MEMORY = -1, MODEL_FAILED = -2, MODEL_NAN = -3 };
+
+/* Builds the rows and fits each. `readings` is borrowed for the call and sorted in place. */
+int model_init(struct model *model, const struct job *job, struct model_reading *readings,
+               size_t count) __attribute__((warn_unused_result));
+void model_release(struct model *model); /* safe on a zeroed struct */
+
+/* True where no run of the job carries a weight on any plane. */
+bool model_is_bare(const struct model *model);
+
+/* Rank of [1, weights] over the job's runs before run `end` (readings or not), roles left out. Negative:
+ * no memory. `unknowns` is that of a full one. */
+int model_rank_before(const struct model *model, size_t end) __attribute__((warn_unused_result));
+
+/* The reading of run `run` in a row, or NULL. */
+const double complex *model_find(const struct model_row *row, size_t run);
+
+#endif

@@ -1,0 +1,93 @@
+#include "solve/outlook.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/angle.h"
+#include "solve/correct.h"
+#include "solve/forecast.h"
+#include "solve/tolerance.h"
+
+/* One row: the next reading is the vibration, plus the scatter from run to run, plus what a
+ * reading of this row is usually off by. */
+static void forecast_row(const struct answer *a, const struct model_row *row,
+                         const double complex *total, struct answer_forecast *f)
+{
+    double cov[3], unused[3];
+    f->row = row;
+    f->before = posterior_predict(&row->posterior, a->mounted, unused);
+    f->after = posterior_predict(&row->posterior, total, cov);
+    cov[0] += row->sigma * row->sigma + row->typical[0];
+    cov[1] += row->typical[1];
+    cov[2] += row->sigma * row->sigma + row->typical[2];
+    f->range[0] = forecast_quantile(f->after, cov, a->model->dof, 0.025);
+    f->range[1] = forecast_quantile(f->after, cov, a->model->dof, 0.975);
+    f->chance = isnan(row->target) ? NAN : forecast_within(f->after, cov, a->model->dof, row->target);
+}
+
+/* Permissible residual of each plane, kg m; false where the sheet does not say enough. */
+static bool permissible(const struct job *job, size_t planes, double *out, char basis[120])
+{
+    double loads[2] = {0.5, 0.5}, shares[2] = {0.5, 0.5};
+    bool distances = job->span_m > 0 && !isnan(job->centre_m);
+    if (!(job->rotor_mass > 0) || !(job->service_rpm > 0) || planes == 0)
+        return false;
+    if (distances) {
+        tolerance_loads(job->span_m, job->centre_m, loads);
+        tolerance_shares(job->span_m, job->centre_m, job->support == SUPPORT_OVERHUNG, shares);
+    }
+    for (size_t p = 0; p < planes; p++) {
+        double load = planes == 1 ? 1 : planes == 2 ? fabs(loads[p]) : 1 / (double)planes;
+        double share = planes == 1 ? 1 : planes == 2 ? shares[p] : 1 / (double)planes;
+        if (job->aim.tolerance == TOLERANCE_API_4WN)
+            out[p] = tolerance_api_4wn(load * job->rotor_mass, job->service_rpm);
+        else if (job->grade > 0)
+            out[p] = share * tolerance_grade(job->grade, job->rotor_mass, job->service_rpm);
+        else
+            return false;
+    }
+    if (job->aim.tolerance == TOLERANCE_API_4WN)
+        snprintf(basis, 120, "API 4W/N; check the current edition");
+    else if (planes == 2)
+        snprintf(basis, 120, "ISO 21940-11 G%g, %s; limits of the shares from memory: check it",
+                 job->grade, distances ? "shared by the lever rule" : "equal halves");
+    else
+        snprintf(basis, 120, "ISO 21940-11 G%g%s", job->grade, planes > 2 ? ", equal shares" : "");
+    return true;
+}
+
+static void residual_plane(struct answer *a, size_t p, double limit)
+{
+    size_t n = 2 * a->planes;
+    const double *e = a->ellipse + 2 * p * n + 2 * p;
+    double cov[3] = {e[0], e[1], e[n + 1]}, radius = a->model->job->planes[p].radius_m;
+    double complex left = a->classical[p] - a->placed_weights[p];
+    a->residuals[p] = (struct answer_residual){
+        radius * cabs(a->classical[p]), radius * cabs(left),
+        radius * forecast_quantile(left, cov, INFINITY, 0.975), limit};
+}
+
+int outlook_fill(struct answer *a)
+{
+    double complex *total = calloc(a->planes + 1, sizeof *total);
+    double *limits = calloc(a->planes + 1, sizeof *limits);
+    if (!total || !limits) {
+        free(limits);
+        free(total);
+        return ANSWER_NO_MEMORY;
+    }
+    for (size_t p = 0; p < a->planes; p++)
+        total[p] = a->mounted[p] + a->placed_weights[p];
+    a->forecast_count = 0;
+    for (size_t r = 0; r < a->model->row_count; r++)
+        if (a->model->rows[r].state == MODEL_GOOD)
+            forecast_row(a, &a->model->rows[r], total, &a->forecasts[a->forecast_count++]);
+    a->has_residual = permissible(a->model->job, a->planes, limits, a->basis);
+    for (size_t p = 0; p < a->planes && a->has_residual; p++)
+        residual_plane(a, p, limits[p]);
+    free(limits);
+    free(total);
+    return ANSWER_OK;
+}

@@ -1,0 +1,57 @@
+#include "solve/ruling.h"
+
+bool ruling_counts(const struct model_row *row)
+{
+    return row->in_aim && row->state == MODEL_GOOD;
+}
+
+/* As found alone: a named sensor, or every sensor, without a usable reading is lost. */
+static struct ruling rule_bare(const struct model *m)
+{
+    struct ruling ruling = {RULING_TRIAL, NULL, false};
+    size_t usable = 0;
+    for (size_t r = 0; r < m->row_count; r++) {
+        const struct model_row *row = &m->rows[r];
+        if (row->in_aim && row->count > 0)
+            usable++;
+        else if (row->in_aim && m->job->aim.named)
+            return (struct ruling){RULING_REPEAT, row, true};
+    }
+    if (usable == 0 && m->row_count > 0)
+        ruling.kind = RULING_REPEAT;
+    return ruling;
+}
+
+struct ruling ruling_of(const struct model *m)
+{
+    if (model_is_bare(m))
+        return rule_bare(m);
+    struct ruling solve = {RULING_SOLVE, NULL, false};
+    const struct model_row *missing = NULL;
+    size_t good = 0;
+    for (size_t c = 0; c < m->condition_count; c++) {
+        size_t good_here = 0;
+        const struct model_row *lost = NULL;
+        for (size_t r = 0; r < m->row_count; r++) {
+            const struct model_row *row = &m->rows[r];
+            if (row->condition != c || !row->in_aim)
+                continue;
+            if (row->state == MODEL_GOOD)
+                good_here++;
+            else if (row->state == MODEL_SHORT)
+                missing = missing ? missing : row;
+            else if (m->job->aim.named)
+                return (struct ruling){RULING_REPEAT, row, true};
+            else
+                lost = lost ? lost : row;
+        }
+        if (good_here == 0 && lost)
+            return (struct ruling){RULING_REPEAT, lost, false};
+        good += good_here;
+    }
+    if (good == 0) {
+        solve.kind = m->row_count > 0 ? RULING_MISSING : RULING_REPEAT;
+        solve.row = missing;
+    }
+    return solve;
+}
