@@ -1,8 +1,572 @@
+/* vet.c - the stage `vet`: may these readings carry a correction? */
 #include "vet/vet.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/message.h"
+#include "base/options.h"
+#include "base/status.h"
+#include "stream/records.h"
+#include "stream/stream.h"
+#include "vet/across.h"
+#include "vet/facts.h"
+#include "vet/findings.h"
+#include "vet/limits.h"
+#include "vet/orders.h"
+#include "vet/ruling.h"
+#include "vet/within.h"
+
+/* Everything the stage holds. */
+struct vet {
+    struct stream stream;
+    struct line line;
+    struct limits limits;
+    struct findings findings;
+    struct vet_runs runs;
+    bool open;       /* the last run is still being read */
+    double *nothing; /* per sensor NaN: no as-found amplitude to refer to */
+    long refusals;
+    struct finding first; /* the first refusal */
+};
+
+static int malformed(const struct record *record, const char *why)
+{
+    message("malformed record: '%s' (%s)", record->kind, why);
+    return STATUS_USAGE;
+}
+
+static struct vet_run *current(struct vet *v, const char *run)
+{
+    struct vet_run *last = v->open ? &v->runs.items[v->runs.count - 1] : NULL;
+
+    return last && !strcmp(last->name, run) ? last : NULL;
+}
+
+static int foreign(const struct record *record, const char *run)
+{
+    message("record outside its run: '%s' (run '%s')", record->kind, run);
+    return STATUS_USAGE;
+}
+
+/* Makes room for one more run, all its readings absent; NULL: no memory. */
+static struct vet_run *new_run(struct vet *v)
+{
+    size_t sensors = v->stream.job.sensor_count;
+    struct vet_run *run;
+
+    if (v->runs.count == v->runs.room) {
+        size_t room = v->runs.room ? 2 * v->runs.room : 16;
+        struct vet_run *more = realloc(v->runs.items, room * sizeof *more);
+        if (!more)
+            return NULL;
+        v->runs.items = more;
+        v->runs.room = room;
+    }
+    run = &v->runs.items[v->runs.count];
+    *run = (struct vet_run){.index = -1};
+    run->readings = calloc(sensors + 1, sizeof *run->readings);
+    run->channels = calloc(sensors + 1, sizeof *run->channels);
+    if (!run->readings || !run->channels) {
+        free(run->readings);
+        free(run->channels);
+        return NULL;
+    }
+    v->runs.count++;
+    for (size_t i = 0; i < sensors; i++) {
+        struct vet_reading *r = &run->readings[i];
+        r->amplitude = r->two_x = r->half_order = r->neighbour = r->neighbour_order = NAN;
+        r->reason = -1;
+        run->channels[i].same_as = -1;
+    }
+    return run;
+}
+
+static int add_run(struct vet *v, const struct record *record)
+{
+    struct run_record r = {0};
+    struct vet_run *run;
+    const char *why = "";
+
+    if (run_parse(&r, &v->stream.job, record->json, &why))
+        return malformed(record, why);
+    run = new_run(v);
+    if (run && r.file_count) {
+        run->hashes = calloc(r.file_count, sizeof *run->hashes);
+        run->hash_count = run->hashes ? r.file_count : 0;
+    }
+    if (!run || run->hash_count != r.file_count) {
+        run_release(&r);
+        return message_no_memory();
+    }
+    memcpy(run->name, r.run, sizeof run->name);
+    memcpy(run->condition, r.condition, sizeof run->condition);
+    run->index = job_find_run(&v->stream.job, r.run);
+    run->hand = run->index >= 0 && v->stream.job.runs[run->index].hand_count > 0;
+    for (size_t i = 0; i < r.file_count; i++)
+        memcpy(run->hashes[i], r.files[i].sha256, sizeof run->hashes[i]);
+    v->open = true;
+    run_release(&r);
+    return STATUS_DONE;
+}
+
+static int add_channel(struct vet *v, const struct record *record)
+{
+    struct channel_record r;
+    struct vet_run *run;
+    const char *why = "";
+
+    if (channel_parse(&r, &v->stream.job, record->json, &why))
+        return malformed(record, why);
+    run = current(v, r.run);
+    if (!run)
+        return foreign(record, r.run);
+    if (r.sensor >= 0)
+        run->channels[r.sensor] =
+            (struct vet_channel){true, r.min, r.max, r.resolution, r.railed, r.samples, r.same_as};
+    return STATUS_DONE;
+}
+
+static int add_tacho(struct vet *v, const struct record *record)
+{
+    struct tacho_record r;
+    struct vet_run *run;
+    const char *why = "";
+
+    if (tacho_parse(&r, record->json, &why))
+        return malformed(record, why);
+    run = current(v, r.run);
+    if (!run)
+        return foreign(record, r.run);
+    run->has_tacho = true;
+    run->reference = r.reference;
+    run->marks = r.marks;
+    run->missed = r.missed;
+    run->extra = r.extra;
+    return STATUS_DONE;
+}
+
+static int add_spectrum(struct vet *v, const struct record *record)
+{
+    const struct job *job = &v->stream.job;
+    struct spectrum_record r = {0};
+    struct vet_run *run;
+    const char *why = "";
+
+    if (spectrum_parse(&r, job, record->json, &why))
+        return malformed(record, why);
+    run = current(v, r.run);
+    if (run) {
+        int derivatives =
+            (int)job->sensors[r.sensor].quantity - (int)job->sensors[r.sensor].show.quantity;
+        struct orders o = orders_of(r.orders, r.amplitude, r.count, derivatives);
+        struct vet_reading *to = &run->readings[r.sensor];
+        to->two_x = o.two_x;
+        to->half_order = o.half_order;
+        to->neighbour = o.neighbour;
+        to->neighbour_order = o.neighbour_order;
+    }
+    spectrum_release(&r);
+    return run ? STATUS_DONE : foreign(record, r.run);
+}
+
+static int add_reading(struct vet *v, const struct record *record)
+{
+    struct reading_record r;
+    struct vet_reading *to;
+    struct vet_run *run;
+    const char *why = "";
+
+    if (reading_parse(&r, &v->stream.job, record->json, &why))
+        return malformed(record, why);
+    run = current(v, r.run);
+    if (!run)
+        return foreign(record, r.run);
+    to = &run->readings[r.sensor];
+    if (to->present)
+        return malformed(record, "a second reading of a sensor in one run");
+    to->present = to->use = true;
+    to->has_phase = r.has_phase;
+    to->vector = r.vector;
+    to->amplitude = r.amplitude;
+    memcpy(to->cov, r.cov, sizeof to->cov);
+    to->blocks = r.blocks;
+    to->speed_rpm = r.speed_rpm;
+    to->amplitude_pct = r.steady.amplitude_pct;
+    to->phase_deg = r.steady.phase_deg;
+    to->drift_pct = r.steady.drift_pct;
+    to->speed_pct = r.steady.speed_pct;
+    to->set_aside = r.steady.set_aside;
+    to->turns = r.steady.turns;
+    to->overall_rms = r.overall.rms;
+    to->overall_quantity = r.overall.quantity;
+    return STATUS_DONE;
+}
+
+/* An unreadable recording, as `read` says. */
+static int add_finding(struct vet *v, const struct record *record)
+{
+    struct finding_record r;
+    struct vet_run *run;
+    const char *why = "";
+
+    if (finding_parse(&r, &v->stream.job, record->json, &why))
+        return malformed(record, why);
+    run = current(v, r.run);
+    if (run && r.verdict == VERDICT_REFUSE && !strcmp(r.check, "readable"))
+        run->unreadable = true;
+    return STATUS_DONE;
+}
+
+/* Notes what a refusal was for, on the readings that it judges. */
+static void note(struct vet *v, const struct finding *f)
+{
+    if (v->refusals++ == 0)
+        v->first = *f;
+    for (size_t i = 0; f->run >= 0 && i < v->stream.job.sensor_count; i++) {
+        struct vet_reading *r = &v->runs.items[f->run].readings[i];
+        if ((f->sensor < 0 || f->sensor == (int)i) && r->reason < 0)
+            r->reason = (int)f->check;
+    }
+}
+
+/* Writes the findings gathered so far and forgets them. */
+static int write_findings(struct vet *v)
+{
+    static const enum verdict verdicts[] = {VERDICT_OK, VERDICT_CAUTION, VERDICT_REFUSE};
+    int status = v->findings.failed ? message_no_memory() : STATUS_DONE;
+
+    for (size_t i = 0; status == STATUS_DONE && i < v->findings.count; i++) {
+        const struct finding *f = &v->findings.items[i];
+        const struct check_row *row = &v->limits.rows[f->check];
+        struct finding_record r = {.stage = "vet",
+                                   .verdict = verdicts[f->ruling],
+                                   .sensor = f->sensor,
+                                   .value = f->value,
+                                   .limit = f->limit};
+        strncpy(r.check, row->name, sizeof r.check - 1);
+        strncpy(r.unit, f->unit, sizeof r.unit - 1);
+        strncpy(r.basis, row->basis, sizeof r.basis - 1);
+        memcpy(r.text, f->text, sizeof r.text);
+        if (f->run >= 0)
+            memcpy(r.run, v->runs.items[f->run].name, sizeof r.run);
+        if (f->ruling == RULING_REFUSE)
+            note(v, f);
+        finding_print(&r, &v->stream.job, &v->line);
+        status = stream_write(&v->stream, &v->line);
+    }
+    findings_clear(&v->findings);
+    return status;
+}
+
+/* True where the run's vectors need no other run to be judged: a recording of an audit, or the one
+ * whose amplitude is the as-found amplitude of its condition. */
+static bool stands_alone(const struct vet *v, const struct vet_run *run)
+{
+    const struct job *job = &v->stream.job;
+
+    for (size_t r = 0; run->index >= 0 && r < (size_t)run->index; r++)
+        if (job_run_is_bare(job, r) && !job->runs[r].role[0] &&
+            !strcmp(job->runs[r].condition, run->condition))
+            return false;
+    return run->index < 0 || job_run_is_bare(job, (size_t)run->index);
+}
+
+/* Ends the run that is being read: its own findings stand behind its last record. */
+static int finish_run(struct vet *v)
+{
+    int position = (int)v->runs.count - 1;
+    struct vet_run *run = v->open ? &v->runs.items[position] : NULL;
+
+    v->open = false;
+    if (!run)
+        return STATUS_DONE;
+    within_run(run, position, &v->stream.job, &v->findings);
+    if (stands_alone(v, run))
+        within_vectors(run, position, v->nothing, &v->stream.job, &v->findings);
+    return write_findings(v);
+}
+
+static int take(struct vet *v, const struct record *record)
+{
+    const char *kind = record->kind;
+    int status = STATUS_DONE;
+
+    if (!strcmp(kind, "run")) {
+        status = finish_run(v);
+        if (status == STATUS_DONE)
+            status = add_run(v, record);
+    } else if (!strcmp(kind, "channel")) {
+        status = add_channel(v, record);
+    } else if (!strcmp(kind, "tacho")) {
+        status = add_tacho(v, record);
+    } else if (!strcmp(kind, "spectrum")) {
+        status = add_spectrum(v, record);
+    } else if (!strcmp(kind, "reading")) {
+        status = add_reading(v, record);
+    } else if (!strcmp(kind, "finding")) {
+        status = add_finding(v, record);
+    }
+    return status == STATUS_DONE ? stream_pass(&v->stream, record) : status;
+}
+
+/* Positions of the runs in the sheet's order, recordings of an audit behind; new, NULL: no memory.
+ */
+static size_t *sheet_order(const struct vet_runs *runs, const struct job *job)
+{
+    size_t *order = malloc((runs->count + 1) * sizeof *order), count = 0;
+
+    for (size_t r = 0; order && r < job->run_count; r++)
+        for (size_t k = 0; k < runs->count; k++)
+            if (runs->items[k].index == (int)r)
+                order[count++] = k;
+    for (size_t k = 0; order && k < runs->count; k++)
+        if (runs->items[k].index < 0)
+            order[count++] = k;
+    return order;
+}
+
+static int judge_vectors(struct vet *v, const size_t *order)
+{
+    const struct job *job = &v->stream.job;
+    double *as_found = malloc((job->sensor_count + 1) * sizeof *as_found);
+
+    if (!as_found)
+        return message_no_memory();
+    for (size_t k = 0; k < v->runs.count; k++) {
+        struct vet_run *run = &v->runs.items[order[k]];
+        if (stands_alone(v, run))
+            continue;
+        for (size_t i = 0; i < job->sensor_count; i++)
+            as_found[i] = across_as_found(&v->runs, order, job, run->condition, i);
+        within_vectors(run, (int)order[k], as_found, job, &v->findings);
+    }
+    free(as_found);
+    return STATUS_DONE;
+}
+
+static int write_vetted(struct vet *v, const size_t *order)
+{
+    int status = STATUS_DONE;
+
+    for (size_t k = 0; k < v->runs.count; k++) {
+        const struct vet_run *run = &v->runs.items[order[k]];
+        for (size_t i = 0; status == STATUS_DONE && i < v->stream.job.sensor_count; i++) {
+            const struct vet_reading *from = &run->readings[i];
+            struct vetted_record r = {.sensor = (int)i, .use = from->use};
+            if (!from->present)
+                continue;
+            memcpy(r.run, run->name, sizeof r.run);
+            memcpy(r.widen, from->widen, sizeof r.widen);
+            vetted_print(&r, &v->stream.job, &v->line);
+            status = stream_write(&v->stream, &v->line);
+        }
+    }
+    return status;
+}
+
+static bool is_expected(const struct job_run *run, size_t sensor)
+{
+    if (run->without && run->without[sensor])
+        return false;
+    for (size_t i = 0; i < run->hand_count; i++)
+        if (run->hand[i].sensor == sensor)
+            return true;
+    return run->hand_count == 0;
+}
+
+/* Fills what the ruling looks at; arrays as in struct ruling_set, rows in the order of `order`. */
+static size_t fill_set(const struct vet *v, const size_t *order, int *condition,
+                       double complex *weights, bool *expected, bool *usable, size_t *positions)
+{
+    const struct job *job = &v->stream.job;
+    size_t rows = 0;
+
+    for (size_t k = 0; k < v->runs.count; k++) {
+        const struct vet_run *run = &v->runs.items[order[k]];
+        if (run->index < 0 || job->runs[run->index].role[0])
+            continue;
+        condition[rows] = (int)rows;
+        for (size_t q = rows; q-- > 0;)
+            if (!strcmp(v->runs.items[positions[q]].condition, run->condition))
+                condition[rows] = condition[q];
+        for (size_t p = 0; p < job->plane_count; p++)
+            weights[rows * job->plane_count + p] = job_run_weight(job, (size_t)run->index, p);
+        for (size_t i = 0; i < job->sensor_count; i++) {
+            expected[rows * job->sensor_count + i] = is_expected(&job->runs[run->index], i);
+            usable[rows * job->sensor_count + i] = run->readings[i].present && run->readings[i].use;
+        }
+        positions[rows++] = order[k];
+    }
+    return rows;
+}
+
+/* The one line where the job goes on although something was refused. */
+static void say_goes_on(const struct vet *v)
+{
+    const struct finding *f = &v->first;
+    const struct vet_run *run = f->run >= 0 ? &v->runs.items[f->run] : NULL;
+
+    if (v->refusals == 0 || !run || run->index < 0)
+        return;
+    message("goes on without what it refused: '%s' (%s%s%s%s, refusal 1 of %ld)", run->name,
+            f->sensor >= 0 ? "sensor '" : "",
+            f->sensor >= 0 ? v->stream.job.sensors[f->sensor].name : "",
+            f->sensor >= 0 ? "': " : "", v->limits.rows[f->check].name, v->refusals);
+}
+
+/* The one line about what was lost. */
+static int say_lost(const struct vet *v, const struct vet_run *run, size_t sensor)
+{
+    int reason = run->readings[sensor].reason;
+
+    message("readings are not fit to balance on: '%s' (sensor '%s': %s)", run->name,
+            v->stream.job.sensors[sensor].name,
+            reason >= 0                     ? v->limits.rows[reason].name
+            : run->readings[sensor].present ? "refused"
+                                            : "no reading");
+    return STATUS_REFUSED;
+}
+
+/* STATUS_REFUSED where what is left cannot answer. An audit has nothing to answer. */
+static int conclude(const struct vet *v, const size_t *order)
+{
+    const struct job *job = &v->stream.job;
+    size_t n = v->runs.count + 1, run_lost = 0, sensor_lost = 0;
+    int *condition = calloc(n, sizeof *condition);
+    double complex *weights = calloc(n * (job->plane_count + 1), sizeof *weights);
+    bool *expected = calloc(n * (job->sensor_count + 1), sizeof *expected);
+    bool *usable = calloc(n * (job->sensor_count + 1), sizeof *usable);
+    bool *in_aim = calloc(job->sensor_count + 1, sizeof *in_aim);
+    size_t *positions = calloc(n, sizeof *positions);
+    int answer = -1, status = STATUS_DONE;
+
+    if (condition && weights && expected && usable && in_aim && positions) {
+        struct ruling_set set = {0,       job->sensor_count, job->plane_count, condition,
+                                 weights, expected,          usable,           in_aim};
+        set.run_count = fill_set(v, order, condition, weights, expected, usable, positions);
+        for (size_t i = 0; i < job->sensor_count; i++)
+            in_aim[i] = !job->aim.named || !job->aim.targets || job->aim.targets[i].in_aim;
+        answer = ruling_can_answer(&set, &run_lost, &sensor_lost);
+    }
+    if (answer < 0)
+        status = message_no_memory();
+    else if (answer == 0)
+        status = say_lost(v, &v->runs.items[positions[run_lost]], sensor_lost);
+    else
+        say_goes_on(v);
+    free(positions);
+    free(in_aim);
+    free(usable);
+    free(expected);
+    free(weights);
+    free(condition);
+    return status;
+}
+
+/* What rests on several runs, in front of `end`; *verdict receives the exit code it asks for. */
+static int finish_all(struct vet *v, int *verdict)
+{
+    size_t *order;
+    int status = finish_run(v);
+
+    if (status != STATUS_DONE)
+        return status;
+    order = sheet_order(&v->runs, &v->stream.job);
+    if (!order)
+        return message_no_memory();
+    status = judge_vectors(v, order);
+    if (status == STATUS_DONE && across_runs(&v->runs, order, &v->stream.job, &v->findings))
+        status = message_no_memory();
+    if (status == STATUS_DONE)
+        status = write_findings(v);
+    if (status == STATUS_DONE)
+        status = write_vetted(v, order);
+    if (status == STATUS_DONE)
+        status = stream_finish(&v->stream);
+    if (status == STATUS_DONE)
+        *verdict = conclude(v, order);
+    free(order);
+    return status;
+}
+
+static int begin(struct vet *v, const struct option_list *files)
+{
+    int status = stream_open(&v->stream, files->items, files->count, true);
+
+    if (status != STATUS_DONE)
+        return status;
+    limits_init(&v->limits, &v->stream.job);
+    findings_init(&v->findings, &v->limits);
+    v->nothing = malloc((v->stream.job.sensor_count + 1) * sizeof *v->nothing);
+    if (!v->nothing)
+        return message_no_memory();
+    for (size_t i = 0; i < v->stream.job.sensor_count; i++)
+        v->nothing[i] = NAN;
+    return STATUS_DONE;
+}
+
+static void release(struct vet *v)
+{
+    for (size_t k = 0; k < v->runs.count; k++) {
+        free(v->runs.items[k].hashes);
+        free(v->runs.items[k].readings);
+        free(v->runs.items[k].channels);
+    }
+    free(v->runs.items);
+    free(v->nothing);
+    findings_release(&v->findings);
+    line_release(&v->line);
+    stream_close(&v->stream);
+}
+
+static int loop(const struct option_list *files)
+{
+    struct vet v = {.line = LINE_INIT};
+    struct record record;
+    int verdict = STATUS_DONE;
+    int status = begin(&v, files);
+
+    while (status == STATUS_DONE && stream_next_tracked(&v.stream, &record))
+        status = take(&v, &record);
+    if (status == STATUS_DONE)
+        status = v.stream.status;
+    if (status == STATUS_DONE)
+        status = finish_all(&v, &verdict);
+    release(&v);
+    return status == STATUS_DONE ? verdict : status;
+}
 
 int stage_vet(int argc, char **argv)
 {
-    (void)argc;
-    (void)argv;
-    return 1;
+    static const struct option options[] = {{0}};
+    static const struct usage usage = {
+        "vet",
+        "[FILE...]",
+        "findings: may these readings carry a correction?",
+        options,
+        0,
+        (size_t)-1,
+        "Reads records from the files, one after another, or from standard input, and adds a "
+        "finding\n"
+        "for every check and its ruling on every reading. Exit code 4: a refusal leaves too "
+        "little\n"
+        "to answer the job. The limits of the checks stand in the sheet's section [limits].\n"};
+    struct option_list files = {0};
+    int status;
+
+    message_stage("vet");
+    switch (options_parse(&usage, argc, argv, &files)) {
+    case OPTIONS_STOP:
+        status = STATUS_DONE;
+        break;
+    case OPTIONS_GO:
+        status = loop(&files);
+        break;
+    default:
+        status = STATUS_USAGE;
+    }
+    option_list_release(&files);
+    return status;
 }

@@ -1,0 +1,366 @@
+#include "vet/across.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/angle.h"
+#include "sheet/units.h"
+#include "vet/ruling.h"
+#include "vet/within.h"
+
+static const double CHI2_99 = 9.21034; /* chi-squared with 2 degrees of freedom, 99 % */
+
+/* The k-th run of the sheet's order where it is an ordinary run of the job, else NULL. */
+static struct vet_run *ordinary(const struct vet_runs *runs, const size_t *order,
+                                const struct job *job, size_t k)
+{
+    struct vet_run *run = &runs->items[order[k]];
+
+    return run->index >= 0 && !job->runs[run->index].role[0] ? run : NULL;
+}
+
+static bool same_weights(const struct vet_run *a, const struct vet_run *b, const struct job *job,
+                         size_t *planes)
+{
+    size_t differ = 0;
+
+    for (size_t p = 0; p < job->plane_count; p++) {
+        double complex u = job_run_weight(job, (size_t)a->index, p);
+        double complex v = job_run_weight(job, (size_t)b->index, p);
+        differ += cabs(u - v) > 1e-9 * (cabs(u) + cabs(v)); /* beyond rounding of angles */
+    }
+    if (planes)
+        *planes = differ;
+    return differ == 0;
+}
+
+double across_as_found(const struct vet_runs *runs, const size_t *order, const struct job *job,
+                       const char *condition, size_t sensor)
+{
+    for (size_t k = 0; k < runs->count; k++) {
+        const struct vet_run *run = ordinary(runs, order, job, k);
+        if (run && !strcmp(run->condition, condition) && run->readings[sensor].present &&
+            job_run_is_bare(job, (size_t)run->index))
+            return run->readings[sensor].amplitude;
+    }
+    return NAN;
+}
+
+static bool share_file(const struct vet_run *a, const struct vet_run *b)
+{
+    for (size_t i = 0; i < a->hash_count; i++)
+        for (size_t j = 0; j < b->hash_count; j++)
+            if (a->hashes[i][0] && !strcmp(a->hashes[i], b->hashes[j]))
+                return true;
+    return false;
+}
+
+void across_same_recording(struct vet_runs *runs, const size_t *order, const struct job *job,
+                           struct findings *findings)
+{
+    for (size_t k = 0; k < runs->count; k++) {
+        struct vet_run *run = &runs->items[order[k]];
+        const struct vet_run *other = NULL;
+        enum ruling ruling;
+        if (run->index < 0 || run->hash_count == 0)
+            continue;
+        for (size_t m = 0; m < runs->count && !other; m++) {
+            const struct vet_run *seen = &runs->items[order[m]];
+            if (m != k && seen->index >= 0 && share_file(run, seen) &&
+                (m < k || !same_weights(run, seen, job, NULL)))
+                other = seen;
+        }
+        ruling = other ? findings_add(findings, CHECK_SAME_RECORDING, (int)order[k], -1, 1,
+                                      "run '%s' has the same recording (SHA-256)", other->name)
+                       : findings_add(findings, CHECK_SAME_RECORDING, (int)order[k], -1, 0,
+                                      "no other run has this recording");
+        if (ruling == RULING_REFUSE)
+            within_refuse(run, job);
+    }
+}
+
+/* Readings of the run: all, and those with phase. */
+static size_t count_phase(const struct vet_run *run, const struct job *job, size_t *phase)
+{
+    size_t present = 0;
+
+    *phase = 0;
+    for (size_t i = 0; i < job->sensor_count; i++) {
+        present += run->readings[i].present;
+        *phase += run->readings[i].present && run->readings[i].has_phase;
+    }
+    return present;
+}
+
+void across_phase_reference(struct vet_runs *runs, const size_t *order, const struct job *job,
+                            struct findings *findings)
+{
+    bool any = job->plane_count > 1; /* the amplitudes alone serve one plane only */
+    size_t phase;
+
+    for (size_t k = 0; k < runs->count; k++) {
+        const struct vet_run *run = ordinary(runs, order, job, k);
+        if (run && count_phase(run, job, &phase) > 0)
+            any = any || phase > 0;
+    }
+    for (size_t k = 0; k < runs->count; k++) {
+        struct vet_run *run = ordinary(runs, order, job, k);
+        if (!run || run->unreadable || count_phase(run, job, &phase) == phase)
+            continue;
+        for (size_t i = 0; i < job->sensor_count; i++) {
+            struct vet_reading *r = &run->readings[i];
+            enum ruling ruling = any ? RULING_REFUSE : RULING_CAUTION;
+            if (!r->present || r->has_phase)
+                continue;
+            ruling = findings_rule(findings, CHECK_PHASE_REFERENCE, ruling, (int)order[k], (int)i,
+                                   1, 0, "", "lag cannot be read: %s",
+                                   run->hand        ? "only an amplitude was noted"
+                                   : run->marks > 0 ? "the marks of a turn cannot be told apart"
+                                                    : "there are no tacho marks");
+            if (ruling == RULING_REFUSE)
+                r->use = false;
+        }
+    }
+}
+
+static double speed_of(const struct vet_run *run, const struct job *job)
+{
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (run->readings[i].present && run->readings[i].use)
+            return run->readings[i].speed_rpm;
+    return NAN;
+}
+
+static int ascending(const void *a, const void *b)
+{
+    double x = *(const double *)a, y = *(const double *)b;
+
+    return (x > y) - (x < y);
+}
+
+static double median(double *values, size_t count)
+{
+    qsort(values, count, sizeof *values, ascending);
+    return count % 2 ? values[count / 2] : 0.5 * (values[count / 2 - 1] + values[count / 2]);
+}
+
+/* Judges one condition's speeds once; true where a run was refused and the rest is to be judged
+ * again. `room` holds one value per run. */
+static bool match_once(struct vet_runs *runs, const size_t *order, const struct job *job,
+                       const char *condition, double *room, struct findings *findings)
+{
+    double least = INFINITY, most = -INFINITY, sum = 0, middle, furthest = -1, spread;
+    size_t count = 0, worst = 0;
+    enum ruling ruling;
+    double limit;
+
+    for (size_t k = 0; k < runs->count; k++) {
+        const struct vet_run *run = ordinary(runs, order, job, k);
+        double speed = run && !strcmp(run->condition, condition) ? speed_of(run, job) : NAN;
+        if (isnan(speed))
+            continue;
+        room[count++] = speed;
+        sum += speed;
+        least = fmin(least, speed);
+        most = fmax(most, speed);
+    }
+    if (count < 2)
+        return false;
+    middle = median(room, count);
+    for (size_t k = 0; k < runs->count; k++) {
+        const struct vet_run *run = ordinary(runs, order, job, k);
+        double speed = run && !strcmp(run->condition, condition) ? speed_of(run, job) : NAN;
+        if (fabs(speed - middle) >= furthest * (1 - 1e-12)) { /* of two alike the later */
+            furthest = fabs(speed - middle);
+            worst = order[k];
+        }
+    }
+    spread = 100 * (most - least) / (sum / (double)count);
+    ruling = limits_judge(findings->limits, CHECK_SPEED_MATCH, spread, &limit);
+    ruling =
+        findings_add(findings, CHECK_SPEED_MATCH, ruling == RULING_REFUSE ? (int)worst : -1, -1,
+                     spread, "runs of condition '%s' turned at %.0f to %.0f rpm, %.2g %% apart",
+                     condition, least, most, spread);
+    if (ruling == RULING_REFUSE)
+        within_refuse(&runs->items[worst], job);
+    return ruling == RULING_REFUSE;
+}
+
+/* True where run k is the first in order of its condition. */
+static bool first_of_condition(const struct vet_runs *runs, const size_t *order,
+                               const struct job *job, size_t k)
+{
+    const struct vet_run *run = ordinary(runs, order, job, k);
+
+    for (size_t m = 0; run && m < k; m++) {
+        const struct vet_run *seen = ordinary(runs, order, job, m);
+        if (seen && !strcmp(seen->condition, run->condition))
+            return false;
+    }
+    return run != NULL;
+}
+
+void across_speed_match(struct vet_runs *runs, const size_t *order, const struct job *job,
+                        struct findings *findings)
+{
+    double *room = malloc((runs->count + 1) * sizeof *room);
+
+    if (!room) {
+        findings->failed = true;
+        return;
+    }
+    for (size_t k = 0; k < runs->count; k++) {
+        if (!first_of_condition(runs, order, job, k))
+            continue;
+        while (match_once(runs, order, job, runs->items[order[k]].condition, room, findings))
+            continue;
+    }
+    free(room);
+}
+
+static bool usable(const struct vet_run *run, size_t sensor)
+{
+    const struct vet_reading *r = &run->readings[sensor];
+
+    return r->present && r->use && r->has_phase;
+}
+
+/* d' C^-1 d with C the sum of both covariances; infinite for a difference without any. */
+static double distance(double complex d, const double a[3], const double b[3])
+{
+    double re = a[0] + b[0], both = a[1] + b[1], im = a[2] + b[2];
+    double det = re * im - both * both, x = creal(d), y = cimag(d);
+
+    if (!(det > 0))
+        return cabs(d) > 0 ? INFINITY : 0;
+    return (im * x * x - 2 * both * x * y + re * y * y) / det;
+}
+
+/* Positions (in `members`) of the usable runs that repeat run k, itself first; 0 where an earlier
+ * run of the order does so already. */
+static size_t repeats_of(const struct vet_runs *runs, const size_t *order, const struct job *job,
+                         size_t k, size_t sensor, size_t *members)
+{
+    const struct vet_run *run = ordinary(runs, order, job, k);
+    size_t count = 0;
+
+    for (size_t m = 0; run && usable(run, sensor) && m < runs->count; m++) {
+        const struct vet_run *other = ordinary(runs, order, job, m);
+        if (!other || !usable(other, sensor) || strcmp(other->condition, run->condition) != 0 ||
+            !same_weights(run, other, job, NULL))
+            continue;
+        if (m < k)
+            return 0;
+        members[count++] = order[m];
+    }
+    return count;
+}
+
+static double complex median_vector(const struct vet_runs *runs, const size_t *members,
+                                    size_t count, size_t sensor, double *room)
+{
+    double re;
+
+    for (size_t i = 0; i < count; i++)
+        room[i] = creal(runs->items[members[i]].readings[sensor].vector);
+    re = median(room, count);
+    for (size_t i = 0; i < count; i++)
+        room[i] = cimag(runs->items[members[i]].readings[sensor].vector);
+    return CMPLX(re, median(room, count));
+}
+
+/* Compares a member with the other one (two) or the median (more); true where it is refused. */
+static bool judge_repeat(const struct vet_runs *runs, const size_t *members, size_t count,
+                         size_t which, size_t sensor, double complex middle, double as_found,
+                         struct findings *findings)
+{
+    const struct vet_run *run = &runs->items[members[which]];
+    const struct vet_run *other = &runs->items[members[which == 0]];
+    const struct vet_reading *r = &run->readings[sensor], *o = &other->readings[sensor];
+    double complex d = r->vector - (count == 2 ? o->vector : middle);
+    double scale = fmax(fmax(r->amplitude, o->amplitude), isnan(as_found) ? 0 : as_found);
+    double value = 100 * cabs(d) / scale, limit;
+    enum ruling ruling = limits_judge(findings->limits, CHECK_REPEAT, value, &limit);
+    bool beyond = distance(d, r->cov, o->cov) > CHI2_99;
+
+    if (!beyond) {
+        ruling = RULING_OK;
+        limit = findings->limits->rows[CHECK_REPEAT].caution;
+    }
+    if (count == 2 && which == 0 && ruling != RULING_REFUSE)
+        return false; /* one finding for the pair, unless both are refused */
+    ruling = findings_rule(findings, CHECK_REPEAT, ruling, (int)members[which], (int)sensor, value,
+                           limit, "%", "%s %.2g %% from %s%s%s%s",
+                           beyond ? "stands" : "within its own uncertainty stands", value,
+                           count == 2 ? "its repeat '" : "the median of its repeats",
+                           count == 2 ? other->name : "", count == 2 ? "'" : "", "");
+    return ruling == RULING_REFUSE;
+}
+
+static void repeat_sensor(struct vet_runs *runs, const size_t *order, const struct job *job,
+                          size_t sensor, size_t *members, double *room, struct findings *findings)
+{
+    for (size_t k = 0; k < runs->count; k++) {
+        size_t count = repeats_of(runs, order, job, k, sensor, members);
+        double complex middle;
+        double as_found;
+        if (count < 2)
+            continue;
+        middle = median_vector(runs, members, count, sensor, room);
+        as_found = across_as_found(runs, order, job, runs->items[order[k]].condition, sensor);
+        for (size_t i = 0; i < count; i++) /* room: who is refused, once all have been compared */
+            room[i] = judge_repeat(runs, members, count, i, sensor, middle, as_found, findings);
+        for (size_t i = 0; i < count; i++)
+            if (room[i] > 0)
+                runs->items[members[i]].readings[sensor].use = false;
+    }
+}
+
+void across_repeat(struct vet_runs *runs, const size_t *order, const struct job *job,
+                   struct findings *findings)
+{
+    size_t *members = malloc((runs->count + 1) * sizeof *members);
+    double *room = malloc((runs->count + 1) * sizeof *room);
+
+    if (!members || !room)
+        findings->failed = true;
+    for (size_t i = 0; members && room && i < job->sensor_count; i++)
+        repeat_sensor(runs, order, job, i, members, room, findings);
+    free(room);
+    free(members);
+}
+
+void across_low_level(struct vet_runs *runs, const size_t *order, const struct job *job,
+                      struct findings *findings)
+{
+    for (size_t k = 0; job->aim.targets && k < runs->count; k++) {
+        const struct vet_run *run = ordinary(runs, order, job, k);
+        if (!run || !job_run_is_bare(job, (size_t)run->index))
+            continue;
+        for (size_t i = 0; i < job->sensor_count; i++) {
+            const struct vet_reading *r = &run->readings[i];
+            const struct job_target *target = &job->aim.targets[i];
+            double size;
+            if (!r->present || !r->use || isnan(target->amplitude))
+                continue;
+            size = cabs(units_convert(r->amplitude, job->sensors[i].quantity, target->quantity,
+                                      2 * PI * r->speed_rpm / 60));
+            findings_add(findings, CHECK_LOW_LEVEL, (int)order[k], (int)i,
+                         size <= target->amplitude, "1x is %.3g %% of the target",
+                         100 * size / target->amplitude);
+        }
+    }
+}
+
+int across_runs(struct vet_runs *runs, const size_t *order, const struct job *job,
+                struct findings *findings)
+{
+    across_same_recording(runs, order, job, findings);
+    across_phase_reference(runs, order, job, findings);
+    across_speed_match(runs, order, job, findings);
+    across_repeat(runs, order, job, findings);
+    across_trial_effect(runs, order, job, findings);
+    across_low_level(runs, order, job, findings);
+    return findings->failed ? -1 : 0;
+}

@@ -1,0 +1,50 @@
+/* across.h - the checks that need several runs. */
+#ifndef LOPSIDE_VET_ACROSS_H
+#define LOPSIDE_VET_ACROSS_H
+
+#include "vet/facts.h"
+#include "vet/findings.h"
+
+/* All of them work on the runs that the job's sheet names (`index` >= 0); `order` (count of runs)
+ * holds their positions in the sheet's order, recordings of an audit last. Each adds findings and
+ * takes `use` off what it refuses; readings that are refused already are not compared. */
+
+/* The as-found amplitude of a sensor in a condition: of the first run in `order` without weights
+ * that has a reading of it, SI peak; NaN for none. */
+double across_as_found(const struct vet_runs *runs, const size_t *order, const struct job *job,
+                       const char *condition, size_t sensor);
+
+/* Two runs with one SHA-256: with equal weights the later one is refused, else both. */
+void across_same_recording(struct vet_runs *runs, const size_t *order, const struct job *job,
+                           struct findings *findings);
+
+/* Runs without phase are refused; where no run of a job with one plane has phase, a caution: the
+ * amplitudes alone may serve. A recording of an audit stands alone. */
+void across_phase_reference(struct vet_runs *runs, const size_t *order, const struct job *job,
+                            struct findings *findings);
+
+/* Per condition the spread of speed, (largest - smallest)/mean; as long as it refuses, the run
+ * furthest from the median is refused (of two alike the later). */
+void across_speed_match(struct vet_runs *runs, const size_t *order, const struct job *job,
+                        struct findings *findings);
+
+/* Runs of equal weights: the difference in % of the larger of reading and as-found amplitude,
+ * judged where it exceeds its own uncertainty (cov of both, 99 % point of chi-squared). Two that
+ * differ too much are both refused; of more, those too far from their median. */
+void across_repeat(struct vet_runs *runs, const size_t *order, const struct job *job,
+                   struct findings *findings);
+
+/* Per run with weights its effect, against the earlier run whose weights differ on the fewest
+ * planes. */
+void across_trial_effect(struct vet_runs *runs, const size_t *order, const struct job *job,
+                         struct findings *findings);
+
+/* As found already below the target. */
+void across_low_level(struct vet_runs *runs, const size_t *order, const struct job *job,
+                      struct findings *findings);
+
+/* All of the above in the order in which later ones build on earlier ones. 0; -1: no memory. */
+int across_runs(struct vet_runs *runs, const size_t *order, const struct job *job,
+                struct findings *findings) __attribute__((warn_unused_result));
+
+#endif

@@ -1,0 +1,290 @@
+#include "vet/within.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "base/angle.h"
+#include "sheet/units.h"
+
+static const double GRAVITY = 9.80665; /* m/s2, CGPM 1901 */
+static const double STEPS_LEAST =
+    2.5; /* a signal of three levels or fewer is the converter's own */
+
+static double larger(double a, double b)
+{
+    return b > a ? b : a; /* a where b is NaN */
+}
+
+void within_refuse(struct vet_run *run, const struct job *job)
+{
+    run->refused = true;
+    for (size_t i = 0; i < job->sensor_count; i++)
+        run->readings[i].use = false;
+}
+
+double within_force(const struct job_run *run, const struct job *job, double rpm)
+{
+    double w = 2 * PI * rpm / 60, most = 0;
+
+    for (size_t p = 0; p < job->plane_count; p++) {
+        double complex sum = 0;
+        for (size_t i = 0; i < run->weight_count; i++) {
+            const struct job_weight *g = &run->weights[i];
+            if (g->plane == p)
+                sum += angle_vector(g->mounted_mass * g->radius_m, g->angle_deg);
+        }
+        most = larger(most, cabs(sum) * w * w);
+    }
+    return most;
+}
+
+double within_journal_load(const struct job *job)
+{
+    double weight = job->rotor_mass * GRAVITY, a, b;
+
+    if (isnan(job->span_m) || isnan(job->centre_m) || !(job->span_m > 0))
+        return weight / 2;
+    b = fabs(weight * job->centre_m / job->span_m);
+    a = fabs(weight * (job->span_m - job->centre_m) / job->span_m);
+    return job->centre_m > 0 && job->centre_m < job->span_m ? fmin(a, b) : fmax(a, b);
+}
+
+/* The run's speed: of its first reading; NaN for none. */
+static double speed_of(const struct vet_run *run, const struct job *job)
+{
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (run->readings[i].present)
+            return run->readings[i].speed_rpm;
+    return NAN;
+}
+
+static void check_length(struct vet_run *run, int position, const struct job *job,
+                         struct findings *findings)
+{
+    long turns = 0;
+
+    if (run->hand || run->unreadable)
+        return;
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (run->readings[i].present && run->readings[i].turns > turns)
+            turns = run->readings[i].turns;
+    if (findings_add(findings, CHECK_LENGTH, position, -1, (double)turns, "%ld turns could be used",
+                     turns) == RULING_REFUSE)
+        within_refuse(run, job);
+}
+
+static void check_speed(struct vet_run *run, int position, const struct job *job,
+                        struct findings *findings)
+{
+    double speed = speed_of(run, job), spread = NAN, off;
+
+    if (isnan(speed))
+        return;
+    /* Readings of a coast-down are named "<condition> @ <speed>" and stand at other speeds. */
+    if (job->service_rpm > 0 && !strstr(run->condition, " @ ")) {
+        off = 100 * fabs(speed - job->service_rpm) / job->service_rpm;
+        if (findings_add(findings, CHECK_SERVICE_SPEED, position, -1, off,
+                         "turned at %.0f rpm, %.2g %% off the service speed of %.0f rpm", speed,
+                         off, job->service_rpm) == RULING_REFUSE)
+            within_refuse(run, job);
+    }
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (run->readings[i].present && !isnan(run->readings[i].speed_pct))
+            spread = isnan(spread) ? run->readings[i].speed_pct
+                                   : larger(spread, run->readings[i].speed_pct);
+    if (run->hand || isnan(spread))
+        return;
+    if (findings_add(findings, CHECK_SPEED_STEADY, position, -1, spread,
+                     "speed wandered by %.2g %% (standard deviation)", spread) == RULING_REFUSE)
+        within_refuse(run, job);
+}
+
+static void check_channel(struct vet_run *run, int position, size_t sensor, const struct job *job,
+                          struct findings *findings)
+{
+    const struct vet_channel *c = &run->channels[sensor];
+    int s = (int)sensor;
+    double steps = (c->max - c->min) / c->resolution; /* NaN for a constant: 0/0 */
+    bool dead = !(c->resolution > 0) || !(steps > STEPS_LEAST);
+    bool refuse;
+
+    refuse = findings_add(findings, CHECK_CLIPPING, position, s, (double)c->railed,
+                          "%lld of %lld samples stand at full scale or in held crests", c->railed,
+                          c->samples) == RULING_REFUSE;
+    if (c->same_as != -1)
+        refuse |=
+            findings_add(findings, CHECK_SENSOR_DEAD, position, s, 1,
+                         "the signal is the same as that of '%s'",
+                         c->same_as < 0 ? "tacho" : job->sensors[c->same_as].name) == RULING_REFUSE;
+    else if (dead)
+        refuse |= findings_add(findings, CHECK_SENSOR_DEAD, position, s, 1,
+                               c->resolution > 0 ? "no signal above the channel's resolution"
+                                                 : "the signal is constant") == RULING_REFUSE;
+    else
+        findings_add(findings, CHECK_SENSOR_DEAD, position, s, 0,
+                     "the signal lives, and no other channel has the same");
+    if (refuse)
+        run->readings[sensor].use = false;
+}
+
+/* Where a channel repeats another one, neither can be told to be the true one. */
+static void spread_same(struct vet_run *run, const struct job *job)
+{
+    for (size_t i = 0; i < job->sensor_count; i++) {
+        int other = run->channels[i].present ? run->channels[i].same_as : -1;
+        if (other >= 0 && run->channels[other].same_as == -1)
+            run->channels[other].same_as = (int)i;
+    }
+}
+
+static void check_tacho(struct vet_run *run, int position, const struct job *job,
+                        struct findings *findings)
+{
+    double all = (double)(run->marks + run->missed), share;
+
+    if (run->hand || !run->has_tacho || !(all > 0))
+        return;
+    share = 100 * (double)(run->missed + run->extra) / all;
+    if (findings_add(findings, CHECK_TACHO, position, -1, share,
+                     "%ld marks of %.0f missed and %ld extra, %.2g %%", run->missed, all,
+                     run->extra, share) == RULING_REFUSE)
+        within_refuse(run, job);
+}
+
+static void check_reference(struct vet_run *run, int position, const struct job *job,
+                            struct findings *findings)
+{
+    size_t present = 0, phase = 0;
+
+    for (size_t i = 0; i < job->sensor_count; i++) {
+        present += run->readings[i].present;
+        phase += run->readings[i].present && run->readings[i].has_phase;
+    }
+    if (present > 0 && phase == present)
+        findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 0,
+                     "lag is read from one mark a turn");
+    else if (run->index < 0 && !run->unreadable &&
+             findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 1,
+                          "lag cannot be read: %s",
+                          run->marks > 0 ? "the marks of a turn cannot be told apart"
+                                         : "there are no tacho marks") == RULING_REFUSE)
+        within_refuse(run, job);
+}
+
+static void check_force(struct vet_run *run, int position, const struct job *job,
+                        struct findings *findings)
+{
+    double load = within_journal_load(job), rpm = job->service_rpm, force, share;
+
+    if (run->index < 0 || job->runs[run->index].weight_count == 0)
+        return;
+    if (!(rpm > 0))
+        rpm = speed_of(run, job);
+    force = within_force(&job->runs[run->index], job, rpm);
+    share = 100 * force / load;
+    if (isnan(share))
+        return;
+    if (findings_add(findings, CHECK_WEIGHT_FORCE, position, -1, share,
+                     "the weights pull with %.3g N at %.0f rpm, %.2g %% of the static journal load",
+                     force, rpm, share) == RULING_REFUSE)
+        within_refuse(run, job);
+}
+
+void within_run(struct vet_run *run, int position, const struct job *job, struct findings *findings)
+{
+    if (run->unreadable && !findings->limits->rows[CHECK_READABLE].off)
+        within_refuse(run, job); /* the finding is read's own */
+    check_length(run, position, job, findings);
+    check_speed(run, position, job, findings);
+    spread_same(run, job);
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (run->channels[i].present)
+            check_channel(run, position, i, job, findings);
+    check_tacho(run, position, job, findings);
+    check_reference(run, position, job, findings);
+    check_force(run, position, job, findings);
+}
+
+static bool steadiness(const struct vet_reading *r, int position, int s, double share,
+                       struct findings *findings)
+{
+    bool refuse = false;
+    double value = r->amplitude_pct * share;
+
+    if (!isnan(value))
+        refuse |= findings_add(findings, CHECK_AMPLITUDE_STEADY, position, s, value,
+                               "block amplitudes scatter by %.2g %%, %ld of %ld blocks set aside",
+                               value, r->set_aside, r->blocks + r->set_aside) == RULING_REFUSE;
+    if (!isnan(r->phase_deg) && share > WITHIN_LAG_SHARE)
+        refuse |= findings_add(findings, CHECK_PHASE_STEADY, position, s, r->phase_deg,
+                               "block lags scatter by %.2g deg", r->phase_deg) == RULING_REFUSE;
+    return refuse;
+}
+
+static bool drift(struct vet_reading *r, int position, int s, double share,
+                  struct findings *findings)
+{
+    double value = r->drift_pct * share, size = r->drift_pct / 100 * r->amplitude;
+    enum ruling ruling;
+
+    if (isnan(value))
+        return false;
+    ruling = value > 0 ? findings_add(findings, CHECK_DRIFT, position, s, value,
+                                      "the vector moved by %.2g %% from start to end", value)
+                       : findings_add(findings, CHECK_DRIFT, position, s, value,
+                                      "no trend stands out from the scatter");
+    if (ruling != RULING_OK) {
+        r->widen[0] += size * size / 12;
+        r->widen[2] += size * size / 12;
+    }
+    return ruling == RULING_REFUSE;
+}
+
+/* Is it unbalance at all? Cautions only, on runs without weights. */
+static bool orders(const struct vet_reading *r, int position, int s, const struct job *job,
+                   struct findings *findings)
+{
+    double w = 2 * PI * r->speed_rpm / 60, one, share;
+    bool refuse = false;
+
+    one = cabs(units_convert(r->amplitude, job->sensors[s].quantity, r->overall_quantity, w));
+    share = 100 * one / sqrt(2) / r->overall_rms;
+    if (share > 100) /* both are estimates of the same */
+        share = 100;
+    if (!isnan(share))
+        refuse |= findings_add(findings, CHECK_ONE_X_SHARE, position, s, share,
+                               "1x is %.2g %% of the overall rms", share) == RULING_REFUSE;
+    if (!isnan(r->two_x))
+        refuse |= findings_add(findings, CHECK_TWO_X, position, s, r->two_x, "2x is %.2g %% of 1x",
+                               r->two_x) == RULING_REFUSE;
+    if (!isnan(r->half_order))
+        refuse |=
+            findings_add(findings, CHECK_HALF_ORDER, position, s, r->half_order,
+                         "the largest half order is %.2g %% of 1x", r->half_order) == RULING_REFUSE;
+    if (!isnan(r->neighbour))
+        refuse |=
+            findings_add(findings, CHECK_NEIGHBOUR, position, s, r->neighbour,
+                         "a line at %.1f Hz that does not turn with the shaft is %.2g %% of 1x",
+                         r->neighbour_order * r->speed_rpm / 60, r->neighbour) == RULING_REFUSE;
+    return refuse;
+}
+
+void within_vectors(struct vet_run *run, int position, const double *as_found,
+                    const struct job *job, struct findings *findings)
+{
+    bool bare = run->index < 0 || job_run_is_bare(job, (size_t)run->index);
+
+    for (size_t i = 0; i < job->sensor_count; i++) {
+        struct vet_reading *r = &run->readings[i];
+        double share = r->amplitude / larger(r->amplitude, as_found[i]);
+        bool refuse = false;
+        if (!r->present || run->hand)
+            continue;
+        refuse |= steadiness(r, position, (int)i, share, findings);
+        refuse |= drift(r, position, (int)i, share, findings);
+        if (bare)
+            refuse |= orders(r, position, (int)i, job, findings);
+        if (refuse)
+            r->use = false;
+    }
+}

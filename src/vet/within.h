@@ -1,0 +1,36 @@
+/* within.h - the checks that one run answers for itself. */
+#ifndef LOPSIDE_VET_WITHIN_H
+#define LOPSIDE_VET_WITHIN_H
+
+#include "vet/facts.h"
+#include "vet/findings.h"
+
+/* Percentages of a vector refer to the larger of the reading and the sensor's as-found amplitude in
+ * its condition; lag is judged only where the reading is at least this share of that (contract). */
+#define WITHIN_LAG_SHARE 0.2
+
+/* Checks of the recording itself: readable, length, service-speed, speed-steady, clipping,
+ * sensor-dead, tacho, phase-reference (where all readings have phase, or in an audit),
+ * weight-force. Adds findings about run `position` and takes `use` off the readings they refuse
+ * (all of them, and `refused`, where the run is judged). */
+void within_run(struct vet_run *run, int position, const struct job *job,
+                struct findings *findings);
+
+/* Checks of its vectors: amplitude-steady, phase-steady, drift, and on as-found and audited runs
+ * one-x-share, two-x, half-order, neighbour. as_found: SI peak amplitude per sensor, NaN where
+ * there is none. Also adds to `widen` what a drift that tripped leaves open: d^2/12 on each
+ * component, the variance along a straight path of length d. */
+void within_vectors(struct vet_run *run, int position, const double *as_found,
+                    const struct job *job, struct findings *findings);
+
+/* Takes `use` off all readings of the run. */
+void within_refuse(struct vet_run *run, const struct job *job);
+
+/* What a run's mounted weights pull with: the largest over the planes, N, at `rpm`. */
+double within_force(const struct job_run *run, const struct job *job, double rpm);
+
+/* The static journal load, N: half of the rotor's weight; with both distances the smaller of the
+ * two loads, or the larger where the centre of mass overhangs. NaN without a rotor mass. */
+double within_journal_load(const struct job *job);
+
+#endif
