@@ -1,0 +1,317 @@
+/* What the report makes of whole streams: order, rulings, exit codes, layout of the golden streams.
+ */
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+#include <cmocka.h>
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/status.h"
+#include "report/dossier.h"
+#include "report/phrase.h"
+#include "report/text.h"
+#include "report/tidy.h"
+#include "report/whole.h"
+
+struct loaded {
+    struct job job;
+    struct dossier dossier;
+    struct buffer job_line;
+};
+
+static void load_line(struct loaded *l, const char *line, size_t length)
+{
+    const char *why = "";
+    json_t *json = json_loadb(line, length, JSON_REJECT_DUPLICATES, NULL);
+    assert_non_null(json);
+    const char *kind = json_string_value(json_object_get(json, "kind"));
+    if (strcmp(kind, "job") == 0) {
+        assert_int_equal(job_parse(&l->job, json, &why), 0);
+        buffer_add(&l->job_line, line, length);
+    } else if (strcmp(kind, "end") != 0) {
+        assert_int_equal(dossier_add(&l->dossier, json, line, length, &why), 0);
+    }
+    json_decref(json);
+}
+
+/* The golden stream of that name. */
+static void load(struct loaded *l, const char *name)
+{
+    char path[512];
+    snprintf(path, sizeof path, GOLDEN "/%s.jsonl", name);
+    FILE *file = fopen(path, "r");
+    assert_non_null(file);
+    memset(l, 0, sizeof *l);
+    job_init(&l->job);
+    dossier_init(&l->dossier, &l->job);
+    l->dossier.keep_lines = true;
+    l->dossier.keep_traces = true;
+    char *line = NULL;
+    size_t room = 0;
+    ssize_t length;
+    while ((length = getline(&line, &room, file)) > 0)
+        load_line(l, line, (size_t)length);
+    free(line);
+    fclose(file);
+}
+
+static void unload(struct loaded *l)
+{
+    dossier_release(&l->dossier);
+    job_release(&l->job);
+    buffer_release(&l->job_line);
+}
+
+static void exit_codes(void **state)
+{
+    (void)state;
+    struct finding_record f[2] = {
+        {.stage = "solve", .check = "conditioning", .verdict = VERDICT_REFUSE},
+        {.stage = "vet", .check = "length", .verdict = VERDICT_REFUSE}};
+    struct placement_record p = {0};
+    struct correction_record c = {0};
+    struct dossier d;
+    dossier_init(&d, NULL);
+    d.findings.items = f;
+    d.placements.items = &p;
+    d.corrections.items = &c;
+    assert_int_equal(dossier_status(&d), STATUS_DONE);
+    d.findings.count = 2;
+    assert_int_equal(dossier_status(&d), STATUS_UNSOLVED);
+    d.corrections.count = 1; /* an ideal weight, but nothing that may be placed */
+    assert_int_equal(dossier_status(&d), STATUS_UNSOLVED);
+    d.placements.count = 1;
+    assert_int_equal(dossier_status(&d), STATUS_DONE);
+    strcpy(f[1].check, "readable");
+    assert_int_equal(dossier_status(&d), STATUS_RECORDING);
+    f[1].verdict = VERDICT_OK;
+    assert_int_equal(dossier_status(&d), STATUS_DONE);
+    /* Without solve's refusal the next step decides. */
+    static const struct {
+        const char *step;
+        size_t corrections;
+        int status;
+    } steps[] = {{"repeat", 0, STATUS_REFUSED}, {"repeat", 1, STATUS_DONE},
+                 {"trial", 0, STATUS_DONE},     {"done", 0, STATUS_DONE},
+                 {"trim", 1, STATUS_DONE},      {"correct", 1, STATUS_DONE}};
+    d.findings.count = d.placements.count = 0;
+    d.has_next = true;
+    for (size_t i = 0; i < sizeof steps / sizeof *steps; i++) {
+        strcpy(d.next.step, steps[i].step);
+        d.corrections.count = steps[i].corrections;
+        assert_int_equal(dossier_status(&d), steps[i].status);
+    }
+}
+
+static void runs_in_the_sheets_order(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    const struct dossier *d = &l.dossier;
+    static const char *const late[] = {"{\"kind\":\"run\",\"run\":\"zero\",\"condition\":"
+                                       "\"service\",\"weights\":[],\"files\":[],\"when\":null}"};
+    load_line(&l, late[0], strlen(late[0]));
+    /* Streams joined the other way round. */
+    struct dossier_run first = l.dossier.runs.items[0];
+    l.dossier.runs.items[0] = l.dossier.runs.items[1];
+    l.dossier.runs.items[1] = first;
+    for (size_t i = 0; i < 2; i++) {
+        struct dossier_reading item = l.dossier.readings.items[i];
+        l.dossier.readings.items[i] = l.dossier.readings.items[i + 2];
+        l.dossier.readings.items[i + 2] = item;
+    }
+    l.dossier.vetted.items[1].use = false; /* as-found, NDE-H */
+    l.dossier.vetted.items[1].widen[0] = 1;
+    dossier_close(&l.dossier);
+    assert_string_equal(d->runs.items[0].record.run, "as-found");
+    assert_string_equal(d->runs.items[1].record.run, "trial");
+    assert_string_equal(d->runs.items[2].record.run, "zero");
+    for (size_t i = 0; i < 4; i++) {
+        assert_string_equal(d->readings.items[i].reading.run, i < 2 ? "as-found" : "trial");
+        assert_int_equal(d->readings.items[i].reading.sensor, i % 2);
+        assert_int_equal(d->readings.items[i].use, i != 1);
+        assert_true(d->readings.items[i].judged);
+    }
+    double cov[3];
+    dossier_cov(&d->readings.items[1], cov);
+    assert_true(cov[0] > 1 && cov[2] < 1);
+    assert_int_equal(dossier_verdict(d, "as-found", 1), VERDICT_CAUTION);
+    assert_int_equal(dossier_verdict(d, "as-found", 0), VERDICT_OK);
+    assert_true(d->has_next && json_is_real(json_object_get(d->figures, "share_pct")));
+    unload(&l);
+}
+
+static void malformed_and_unknown(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    size_t lines = l.dossier.lines.count;
+    static const struct {
+        const char *text;
+        int result;
+    } cases[] = {
+        {"{\"kind\":\"horoscope\",\"x\":1}\n", 0},
+        {"{\"kind\":\"placement\",\"plane\":\"wheel\"}\n", -1},
+        {"{\"kind\":\"reading\",\"run\":\"x\",\"condition\":\"y\",\"sensor\":\"nobody\"}\n", -1},
+        {"{\"run\":\"x\"}\n", -1}};
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        const char *why = NULL;
+        json_t *json = json_loads(cases[i].text, 0, NULL);
+        assert_int_equal(dossier_add(&l.dossier, json, cases[i].text, strlen(cases[i].text), &why),
+                         cases[i].result);
+        assert_true((why != NULL) == (cases[i].result < 0));
+        json_decref(json);
+    }
+    struct dossier_line kept = l.dossier.lines.items[lines];
+    assert_memory_equal(l.dossier.text.bytes + kept.at, "{\"kind\":\"horoscope\",\"x\":1}",
+                        kept.length);
+    unload(&l);
+}
+
+/* The same place on the rotor is named by people as the sheet says: x against is 360 - x with
+ * rotation. */
+static void angles_name_their_sense(void **state)
+{
+    (void)state;
+    struct job job;
+    struct buffer out = BUFFER_INIT;
+    job_init(&job);
+    job.angles = SENSE_AGAINST;
+    phrase_angle(&out, &job, 40, NAN);
+    buffer_text(&out, "|");
+    job.angles = SENSE_WITH;
+    phrase_angle(&out, &job, 40, NAN);
+    buffer_text(&out, "|");
+    phrase_angle(&out, &job, 0, 12);
+    assert_string_equal(out.bytes,
+                        "40 deg against rotation|320 deg with rotation|0 deg with rotation");
+    buffer_release(&out);
+    job_release(&job);
+}
+
+static void assert_printable(const char *text, size_t most)
+{
+    size_t points = 0;
+    for (; *text; text++) {
+        unsigned char c = (unsigned char)*text;
+        assert_true(c == '\n' || (c >= 0x20 && c != 0x7f));
+        points = c == '\n' ? 0 : points + ((c & 0xc0) != 0x80);
+        assert_true(points <= most);
+    }
+}
+
+static const char *const golden[] = {"report-balance", "report-refused", "report-unsolved",
+                                     "report-trial",   "report-audit",   "report-nasty"};
+
+static void text_is_printable(void **state)
+{
+    (void)state;
+    for (size_t i = 0; i < sizeof golden / sizeof *golden; i++) {
+        struct loaded l;
+        struct buffer out = BUFFER_INIT;
+        load(&l, golden[i]);
+        dossier_close(&l.dossier);
+        text_write(&l.dossier, &out);
+        assert_int_equal(out.failed, 0);
+        assert_printable(out.bytes, 80);
+        buffer_release(&out);
+        unload(&l);
+    }
+}
+
+static void nothing_that_may_not_be_fitted_is_shown(void **state)
+{
+    (void)state;
+    static const char *const names[] = {"report-refused", "report-unsolved"};
+    for (size_t i = 0; i < 2; i++) {
+        struct loaded l;
+        struct buffer out = BUFFER_INIT;
+        load(&l, names[i]);
+        dossier_close(&l.dossier);
+        text_write(&l.dossier, &out);
+        const char *no = strstr(out.bytes, "NO CORRECTION"),
+                   *now = strstr(out.bytes, "WHAT TO DO NOW");
+        assert_true(no && now && no < now);
+        assert_null(strstr(out.bytes, "  fit "));
+        assert_null(strstr(out.bytes, "FORECAST"));
+        buffer_release(&out);
+        unload(&l);
+    }
+}
+
+static void json_keeps_every_byte(void **state)
+{
+    (void)state;
+    for (size_t i = 0; i < sizeof golden / sizeof *golden; i++) {
+        struct loaded l;
+        struct buffer out = BUFFER_INIT;
+        load(&l, golden[i]);
+        whole_write(&l.dossier, l.job_line.bytes, l.job_line.length, &out);
+        json_t *all = json_loads(out.bytes, JSON_REJECT_DUPLICATES, NULL);
+        assert_non_null(all);
+        size_t count = json_array_size(all);
+        const json_t *end = json_array_get(all, count - 1);
+        assert_int_equal(json_integer_value(json_object_get(end, "records")), count - 1);
+        assert_string_equal(json_string_value(json_object_get(json_array_get(all, 0), "kind")),
+                            "job");
+        for (size_t k = 0; k < l.dossier.lines.count; k++) {
+            json_t *line = json_loadb(l.dossier.text.bytes + l.dossier.lines.items[k].at,
+                                      l.dossier.lines.items[k].length, 0, NULL);
+            assert_true(json_equal(line, json_array_get(all, k + 1)));
+            json_decref(line);
+        }
+        json_decref(all);
+        buffer_release(&out);
+        unload(&l);
+    }
+}
+
+static size_t count(const char *text, const char *what)
+{
+    size_t n = 0;
+    for (; (text = strstr(text, what)); text++)
+        n++;
+    return n;
+}
+
+static void tables_have_their_rows(void **state)
+{
+    (void)state;
+    static const size_t rows[] = {4, 2, 1, 2, 2, 4}; /* counted in report-balance.jsonl by hand */
+    struct loaded l;
+    load(&l, "report-balance");
+    dossier_close(&l.dossier);
+    for (int what = TIDY_READINGS; what <= TIDY_FINDINGS; what++) {
+        struct buffer out = BUFFER_INIT;
+        tidy_write(&l.dossier, (enum tidy_what)what, &out);
+        assert_int_equal(count(out.bytes, "\r\n"), rows[what] + 1);
+        buffer_release(&out);
+    }
+    struct buffer out = BUFFER_INIT;
+    tidy_write(&l.dossier, TIDY_PLACEMENT, &out);
+    assert_non_null(strstr(out.bytes, "\r\nwheel,3,60,with rotation,60,g,50 10,590.9"));
+    buffer_release(&out);
+    unload(&l);
+}
+
+int main(void)
+{
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(exit_codes),
+        cmocka_unit_test(runs_in_the_sheets_order),
+        cmocka_unit_test(malformed_and_unknown),
+        cmocka_unit_test(angles_name_their_sense),
+        cmocka_unit_test(text_is_printable),
+        cmocka_unit_test(nothing_that_may_not_be_fitted_is_shown),
+        cmocka_unit_test(json_keeps_every_byte),
+        cmocka_unit_test(tables_have_their_rows),
+    };
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
