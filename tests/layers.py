@@ -1,0 +1,109 @@
+#!/usr/bin/python3
+"""layers.py SOURCE BUILD: holds the code to its layers.
+
+- a stage's folder includes only base/, stream/, sheet/ and itself
+- base includes base; stream includes base; sheet includes base and stream
+- kernels (a stage's files other than its stage file) see no stream, no options, and never print or exit
+- foo.c exports only foo_*, or functions of a struct, enum or kind of record that a header of its folder declares;
+  a stage file exports stage_* alone
+Prints one line per offence.
+"""
+import pathlib
+import re
+import subprocess
+import sys
+
+STAGES = ["read", "track", "average", "vet", "solve", "report"]
+BELOW = {"base": {"base"}, "stream": {"base", "stream"}, "sheet": {"base", "stream", "sheet"}}
+BELOW.update({stage: {"base", "stream", "sheet", stage} for stage in STAGES})
+# What a kernel must not call: these print or end the process.
+LOUD = {"printf", "fprintf", "vprintf", "vfprintf", "puts", "fputs", "putchar", "putc", "fputc", "perror",
+        "dprintf", "exit", "_exit", "_Exit", "quick_exit", "abort", "message", "message_no_memory", "stdout",
+        "stderr", "stream_write", "stream_pass", "sink_line", "sink_bytes"}
+# What a kernel must not include. Presentation works on records: there is no other array or struct to see.
+CLOSED = {"stream/stream.h", "stream/records.h", "stream/line.h", "base/options.h", "base/message.h"}
+CLOSED_REPORT = CLOSED - {"stream/records.h"}
+
+offences = []
+
+
+def offend(path, text):
+    offences.append(f"{path}: {text}")
+
+
+def includes(path):
+    return re.findall(r'^\s*#\s*include\s+"([^"]+)"', path.read_text(), re.M)
+
+
+def check_includes(source, folder, path):
+    stage_file = folder in STAGES and path.stem == folder
+    for name in includes(path):
+        parts = name.split("/")
+        where = parts[0] if len(parts) > 1 else folder
+        if folder in BELOW and where not in BELOW[folder]:
+            offend(path.relative_to(source), f"includes {name} of another layer")
+        closed = CLOSED_REPORT if folder == "report" else CLOSED
+        if folder in STAGES and not stage_file and name in closed:
+            offend(path.relative_to(source), f"is a kernel and includes {name}")
+
+
+def symbols(build, folder, stem):
+    """Two sets: exported and called names of the object file."""
+    objects = list(build.glob(f"src/{folder}/CMakeFiles/*/{stem}.c.o"))
+    if not objects:
+        return set(), set()
+    text = subprocess.run(["nm", str(objects[0])], check=True, capture_output=True, text=True).stdout
+    exported, called = set(), set()
+    for line in text.splitlines():
+        kind, name = line.split()[-2:]
+        if kind in "TDBRSGVW":
+            exported.add(name)
+        elif kind == "U":
+            called.add(name)
+    return {n for n in exported if not n.startswith("_")}, called
+
+
+def declared(folder_path):
+    """Names of structs and enums in the folder's headers; X_record declares X, too."""
+    names = set()
+    for header in folder_path.glob("*.h"):
+        for name in re.findall(r"\b(?:struct|enum|union)\s+(\w+)\s*\{", header.read_text()):
+            names |= {name, re.sub(r"_record$", "", name)}
+        names |= {n for n in re.findall(r"^struct (\w+);", header.read_text(), re.M)}
+        names |= set(re.findall(r"\b(\w+)_(?:print|parse)\(", header.read_text()))
+    return names
+
+
+def check_symbols(source, build, folder, path):
+    exported, called = symbols(build, folder, path.stem)
+    stage_file = folder in STAGES and path.stem == folder
+    name = path.relative_to(source)
+    if folder in STAGES and not stage_file:
+        for loud in sorted(called & LOUD):
+            offend(name, f"is a kernel and calls {loud}")
+    heads = {"stage"} if stage_file else {path.stem} | declared(path.parent)
+    if folder == "desk":
+        heads |= {"desk"}
+    for symbol in sorted(exported):
+        if not any(symbol == h or symbol.startswith(h + "_") for h in heads):
+            offend(name, f"exports {symbol}")
+    return bool(exported or called)
+
+
+def main():
+    source, build = pathlib.Path(sys.argv[1]), pathlib.Path(sys.argv[2])
+    seen = 0
+    for path in sorted((source / "src").glob("*/*.[ch]")):
+        folder = path.parent.name
+        check_includes(source, folder, path)
+        if path.suffix == ".c":
+            seen += check_symbols(source, build, folder, path)
+    for line in offences:
+        print(line)
+    if seen < len(STAGES):
+        print(f"only {seen} object files found under {build}")
+    return bool(offences) or seen < len(STAGES)
+
+
+if __name__ == "__main__":
+    sys.exit(main())
