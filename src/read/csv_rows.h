@@ -1,0 +1,58 @@
+/* csv_rows.h - the data rows of a text of separated columns, from bytes to numbers.
+ *
+ * libcsv cuts the text into cells; the wanted ones become doubles, the others are passed over. */
+#ifndef LOPSIDE_READ_CSV_ROWS_H
+#define LOPSIDE_READ_CSV_ROWS_H
+
+#include <csv.h>
+#include <stdbool.h>
+#include <stddef.h>
+
+#include "read/csv_layout.h"
+#include "read/even.h"
+#include "read/fault.h"
+
+#define CSV_ROWS_FEED_MOST 65536u /* bytes at a time, which bounds the memory */
+
+struct csv_rows {
+    double *values;          /* owned: rows that are ready, interleaved by slot */
+    size_t count;            /* of those rows */
+    size_t slots;            /* wanted columns */
+    /* all that follows is private */
+    struct csv_parser parser;
+    bool parser_ready;
+    int *slot_of;            /* per column: slot, or -1 */
+    size_t width, column;    /* of the layout; of the cell at hand */
+    size_t filled;           /* columns of the row at hand up to the last that is not empty */
+    size_t wanted;           /* wanted cells of the row at hand that were read */
+    size_t time_column;      /* SIZE_MAX: none */
+    double time_si;
+    struct even *even;       /* borrowed; NULL: no time column */
+    char decimal;
+    long line;               /* of the row at hand */
+    long empty_line;         /* of the first empty row since the last one with data; 0: none */
+    bool row_open;           /* cells came since the last end of line */
+    bool fresh;              /* no row ended since the last newline */
+    const char *path;        /* borrowed */
+    struct fault *fault;     /* borrowed */
+};
+
+/* `columns` (from 0, each once) get the slots in that order. `even` judges the time column, if the
+ * layout has one. `path`, `even` and `fault` are borrowed until the release. */
+int csv_rows_init(struct csv_rows *rows, const struct csv_layout *layout, const size_t *columns,
+                  size_t count, struct even *even, const char *path, struct fault *fault)
+    __attribute__((warn_unused_result));
+
+/* Takes the next bytes, at most CSV_ROWS_FEED_MOST, from the start of the data on. Rows that became
+ * complete stand in values[0..count*slots) until the next call. Faults, each with its line: a row with
+ * too few or too many cells, a cell that is no number, an empty line within the data, a time that is uneven,
+ * a cell of more than 1 MiB. */
+int csv_rows_feed(struct csv_rows *rows, const char *bytes, size_t length)
+    __attribute__((warn_unused_result));
+
+/* No more bytes: the last row may lack its newline. */
+int csv_rows_finish(struct csv_rows *rows) __attribute__((warn_unused_result));
+
+void csv_rows_release(struct csv_rows *rows);
+
+#endif

@@ -1,0 +1,58 @@
+#include "read/even.h"
+
+#include <math.h>
+
+/* Allowances, in steps of the grid, beyond what the printed resolution explains; common practice. A
+ * lost row is a step of 2; clocks that count in single precision err by less than a quarter. */
+#define STEP_MOST 0.25
+#define GRID_MOST 0.5
+
+static void note(struct even *even, struct decimal_grain grain)
+{
+    if (grain.fraction > even->fraction)
+        even->fraction = grain.fraction;
+    if (grain.significant > even->significant)
+        even->significant = grain.significant;
+}
+
+/* Resolution of a printed time, s: the coarser of a fixed number of decimals and a fixed number of significant
+ * digits. Zeros that were dropped at the end of one text are known from the others. */
+static double resolution(const struct even *even, double time)
+{
+    const double value = fabs(time / even->unit);
+    const double decimals = pow(10, -even->fraction);
+    const double digits =
+        value > 0 ? pow(10, floor(log10(value)) + 1 - even->significant) : decimals;
+    return even->unit * (digits > decimals ? digits : decimals);
+}
+
+void even_init(struct even *even, double first, double last, long long count, double unit,
+               struct decimal_grain first_grain, struct decimal_grain last_grain)
+{
+    *even = (struct even){.first = first, .unit = unit};
+    even->step = (last - first) / (double)(count - 1);
+    even->fraction = first_grain.fraction;
+    note(even, first_grain);
+    note(even, last_grain);
+}
+
+int even_next(struct even *even, double time, struct decimal_grain grain)
+{
+    note(even, grain);
+    const double fine = resolution(even, time);
+    const double before = even->last, coarse = fine > even->last_grain ? fine : even->last_grain;
+    const long long row = even->count++;
+    even->last = time;
+    even->last_grain = fine;
+    if (row > 0) {
+        const double step = time - before;
+        if (step < 0)
+            return EVEN_BACKWARDS;
+        if (fabs(step - even->step) > STEP_MOST * even->step + coarse)
+            return EVEN_GAP;
+    }
+    const double grid = even->first + (double)row * even->step;
+    if (fabs(time - grid) > GRID_MOST * even->step + 2 * coarse)
+        return EVEN_DRIFT;
+    return EVEN_DONE;
+}
