@@ -23,18 +23,6 @@ void shaft_restart(struct shaft *shaft)
     shaft->ended = false;
 }
 
-void shaft_push(struct shaft *shaft, double at, bool real)
-{
-    size_t place = (size_t)(shaft->next % SHAFT_ROOM);
-
-    shaft->at[place] = at;
-    shaft->real[place] = real;
-    shaft->next++;
-    if (shaft->next - shaft->first > SHAFT_ROOM) {
-        shaft->first++;
-    }
-}
-
 void shaft_end(struct shaft *shaft)
 {
     shaft->ended = true;
@@ -152,26 +140,48 @@ static bool knot_fit(const struct shaft *shaft, long m, size_t most, size_t term
     return true;
 }
 
-static struct shaft_knot knot_at(struct shaft *shaft, long m)
+/* Adds mark m, with its neighbours on both sides known, to the scatter. */
+static void judge(struct shaft *shaft, long m)
 {
-    struct shaft_knot smooth, exact;
-    double residual = NAN, unused;
-    bool inside = m - 5 >= shaft->first && m + 5 < shaft->next;
-    bool edge = m - 3 < shaft->first || m + 3 >= shaft->next;
-    bool fits = knot_fit(shaft, m, FIT_MOST, inside ? TERMS_MOST : 5, &smooth, &residual);
+    struct shaft_knot knot;
+    double residual;
 
-    if (fits && inside && shaft->real[m % SHAFT_ROOM] && !isnan(residual)) {
-        shaft->squares += residual * residual;
-        shaft->scattered++;
+    if (m - FIT_MOST / 2 < shaft->first || !shaft->real[m % SHAFT_ROOM] ||
+        !knot_fit(shaft, m, FIT_MOST, TERMS_MOST, &knot, &residual) || isnan(residual)) {
+        return;
     }
-    if (fits && shaft_jitter(shaft) > SMOOTH_FROM_DEG) {
-        return smooth;
+    shaft->squares += residual * residual;
+    shaft->scattered++;
+}
+
+static struct shaft_knot knot_at(const struct shaft *shaft, long m)
+{
+    struct shaft_knot knot;
+    double unused;
+    bool inside = m - FIT_MOST / 2 >= shaft->first && m + FIT_MOST / 2 < shaft->next;
+
+    if (shaft_jitter(shaft) > SMOOTH_FROM_DEG) {
+        /* towards the ends of a stretch a lower degree, which passes less scatter on */
+        if (knot_fit(shaft, m, FIT_MOST, inside ? TERMS_MOST : 5, &knot, &unused)) {
+            return knot;
+        }
+    } else if (knot_fit(shaft, m, TERMS_MOST, TERMS_MOST, &knot, &unused)) {
+        return knot;
     }
-    /* towards the ends of a stretch a lower degree, which passes less scatter on */
-    if (!knot_fit(shaft, m, edge ? 5 : 7, edge ? 5 : 7, &exact, &unused)) {
-        exact = (struct shaft_knot){mark_at(shaft, m), period_at(shaft, m), 0};
+    return (struct shaft_knot){mark_at(shaft, m), period_at(shaft, m), 0};
+}
+
+void shaft_push(struct shaft *shaft, double at, bool real)
+{
+    size_t place = (size_t)(shaft->next % SHAFT_ROOM);
+
+    shaft->at[place] = at;
+    shaft->real[place] = real;
+    shaft->next++;
+    judge(shaft, shaft->next - 1 - FIT_MOST / 2);
+    if (shaft->next - shaft->first > SHAFT_ROOM) {
+        shaft->first++;
     }
-    return exact;
 }
 
 static void join(const struct shaft_knot *a, const struct shaft_knot *b, struct shaft_turn *turn)
@@ -198,7 +208,9 @@ bool shaft_next(struct shaft *shaft, struct shaft_turn *turn)
 {
     long m = shaft->turn;
 
-    if (shaft->next - 1 < m + 1 + (shaft->ended ? 0 : SHAFT_AHEAD)) {
+    long ahead = shaft->ended ? 0 : m == 0 ? SHAFT_START : SHAFT_AHEAD;
+
+    if (shaft->next - 1 < m + 1 + ahead) {
         return false;
     }
     if (m == 0) {

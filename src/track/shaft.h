@@ -15,7 +15,8 @@
 #include <stddef.h>
 
 #define SHAFT_ROOM 64
-#define SHAFT_AHEAD 8 /* marks that must be known behind a turn before it comes out */
+#define SHAFT_AHEAD 8  /* marks that must be known behind a turn before it comes out, */
+#define SHAFT_START 20 /* and behind the first one, so that their scatter is known */
 
 /* One turn: time from t0 to t1 (samples), angle in turns c[1]*s + ... + c[5]*s^5, s = (t-t0)/(t1-t0). */
 struct shaft_turn {

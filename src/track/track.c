@@ -1,5 +1,6 @@
 #include "track/track.h"
 
+#include <math.h>
 #include <stdint.h>
 #include <stdlib.h>
 #include <string.h>
@@ -189,7 +190,7 @@ static int print_turns(const struct recording *rec, struct stream *stream, struc
 {
     const struct windows *windows = &rec->tracker.windows;
     struct turns_record record = {.count = windows->sensors};
-    bool reference = tracker_reference(&rec->tracker);
+    bool regular = tracker_regular(&rec->tracker), reference = tracker_reference(&rec->tracker);
     int status = STATUS_DONE;
 
     record.sensors = malloc((record.count + 1) * sizeof *record.sensors);
@@ -205,7 +206,7 @@ static int print_turns(const struct recording *rec, struct stream *stream, struc
             record.sensors[s++] = rec->sensors[c];
         }
     }
-    for (size_t b = 0; reference && status == STATUS_DONE && b < windows->count; b++) {
+    for (size_t b = 0; regular && status == STATUS_DONE && b < windows->count; b++) {
         const struct window_block *block = &windows->blocks[b];
 
         record.t_s = (block->from + block->to) / 2 / rec->wave.rate_hz;
@@ -213,6 +214,7 @@ static int print_turns(const struct recording *rec, struct stream *stream, struc
         record.speed_rpm = 60 * rec->wave.rate_hz * (double)block->turns / (block->to - block->from);
         for (size_t s = 0; s < windows->sensors; s++) {
             record.vectors[s] = window_vector(windows, b, s, &record.rest[s]);
+            record.vectors[s] = reference ? record.vectors[s] : CMPLX(NAN, NAN);
         }
         turns_print(&record, &stream->job, line);
         status = stream_write(stream, line);
@@ -234,6 +236,27 @@ static int print_tacho(const struct recording *rec, struct stream *stream, struc
     strcpy(record.run, rec->run);
     tacho_print(&record, line);
     return stream_write(stream, line);
+}
+
+static int print_spectra(const struct recording *rec, struct stream *stream, struct line *line)
+{
+    double orders[SPECTRUM_LINES], amplitude[SPECTRUM_LINES];
+    struct spectrum_record record = {.orders = orders, .amplitude = amplitude};
+    int status = STATUS_DONE;
+
+    strcpy(record.run, rec->run);
+    for (size_t c = 0, s = 0; status == STATUS_DONE && c < rec->wave.column_count; c++) {
+        if (rec->sensors[c] < 0) {
+            continue;
+        }
+        record.sensor = rec->sensors[c];
+        record.count = spectrum_lines(&rec->tracker.spectrum, s++, orders, amplitude);
+        if (record.count > 0 && tracker_regular(&rec->tracker)) {
+            spectrum_print(&record, &stream->job, line);
+            status = stream_write(stream, line);
+        }
+    }
+    return status;
 }
 
 static void drop(struct recording *rec)
@@ -268,6 +291,9 @@ static int finish(struct recording *rec, struct stream *stream)
     }
     if (status == STATUS_DONE) {
         status = print_tacho(rec, stream, &line);
+    }
+    if (status == STATUS_DONE) {
+        status = print_spectra(rec, stream, &line);
     }
     line_release(&line);
     drop(rec);

@@ -54,6 +54,7 @@ void tracker_release(struct tracker *tracker)
     free(tracker->sums);
     channel_pairs_release(&tracker->pairs);
     window_release(&tracker->windows);
+    spectrum_end(&tracker->spectrum);
     *tracker = (struct tracker){0};
 }
 
@@ -105,6 +106,16 @@ static void hold_release(struct tracker *tracker, double keep)
 
 /* ---- turns ---- */
 
+static void sum_spectrum(struct tracker *tracker, size_t from)
+{
+    for (size_t c = 0, s = 0; c < tracker->columns; c++) {
+        if ((int)c != tracker->tacho) {
+            spectrum_add(&tracker->spectrum, &tracker->weights, s++, plane(tracker, c) + from,
+                         tracker->offset[c]);
+        }
+    }
+}
+
 /* Sums the turn's samples, twice where windows rise or fall in it. */
 static void sum_turn(struct tracker *tracker, const struct shaft_turn *turn, bool ramps)
 {
@@ -117,6 +128,9 @@ static void sum_turn(struct tracker *tracker, const struct shaft_turn *turn, boo
         size_t from = (size_t)(i - tracker->start);
 
         vector_weigh(&tracker->weights, turn, (double)i, n);
+        if (spectrum_wants(&tracker->spectrum)) {
+            sum_spectrum(tracker, from);
+        }
         for (int pass = 0; pass < (ramps ? 2 : 1); pass++) {
             if (pass) {
                 vector_ramp(&tracker->weights);
@@ -142,6 +156,14 @@ static void note_speed(struct tracker *tracker, const struct shaft_turn *turn)
     tracker->time += turn->t1 - turn->t0;
 }
 
+/* The period is known: settle what depends on it. */
+static int first_turn(struct tracker *tracker, double period)
+{
+    tracker->windows.length = window_length(tracker->rate_hz, period, tracker->frames);
+    return spectrum_init(&tracker->spectrum, tracker->sensors, tracker->rate_hz, period,
+                         tracker->frames);
+}
+
 /* All turns that are ready. 0, or -1 when memory is out. */
 static int take_turns(struct tracker *tracker)
 {
@@ -153,15 +175,18 @@ static int take_turns(struct tracker *tracker)
             tracker->skipped = true; /* its samples are gone, or never came */
             continue;
         }
-        if (tracker->turns == 0) {
-            tracker->windows.length =
-                window_length(tracker->rate_hz, turn.t1 - turn.t0, tracker->frames);
+        if (tracker->turns == 0 && first_turn(tracker, turn.t1 - turn.t0)) {
+            return -1;
+        }
+        if (tracker->skipped) {
+            spectrum_break(&tracker->spectrum);
         }
         turn.first |= tracker->skipped;
         tracker->skipped = false;
         bool ramps = window_ramps(&tracker->windows, &turn);
 
         sum_turn(tracker, &turn, ramps);
+        spectrum_turn(&tracker->spectrum);
         note_speed(tracker, &turn);
         if (window_turn(&tracker->windows, &turn, tracker->sums,
                         tracker->sums + tracker->sensors)) {
@@ -359,11 +384,16 @@ int tracker_finish(struct tracker *tracker)
     return break_stretch(tracker);
 }
 
-bool tracker_reference(const struct tracker *tracker)
+bool tracker_regular(const struct tracker *tracker)
 {
     double jitter = shaft_jitter(&tracker->shaft);
 
     return tracker->windows.count > 0 && (isnan(jitter) || jitter < JITTER_MOST);
+}
+
+bool tracker_reference(const struct tracker *tracker)
+{
+    return tracker_regular(tracker);
 }
 
 double tracker_speed(const struct tracker *tracker)

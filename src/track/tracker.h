@@ -16,6 +16,7 @@
 #include "track/marks.h"
 #include "track/pulse.h"
 #include "track/shaft.h"
+#include "track/spectrum.h"
 #include "track/window.h"
 
 #define TRACKER_CHUNK 2048
@@ -49,6 +50,7 @@ struct tracker {
     struct shaft shaft;
     bool skipped;           /* the turn before was not usable: the next one begins a stretch */
     struct windows windows;
+    struct spectrum spectrum;
     struct channel *channels;     /* owned, per column */
     struct channel_pairs pairs;
     float *offset;                /* owned, per column: a rough mean that is taken off */
@@ -70,7 +72,10 @@ int tracker_add(struct tracker *tracker, const float *frames, size_t n)
 /* The recording is over: windows, channels and the counts are complete. */
 int tracker_finish(struct tracker *tracker) __attribute__((warn_unused_result));
 
-/* True where phase may be read: enough marks, and they form a regular sequence. */
+/* True where the marks form a regular sequence, so that there are a speed and turns. */
+bool tracker_regular(const struct tracker *tracker);
+
+/* True where phase may be read, too: a mark is the same place on the shaft every time. */
 bool tracker_reference(const struct tracker *tracker);
 
 double tracker_speed(const struct tracker *tracker);   /* mean, rpm; NaN: unknown */
