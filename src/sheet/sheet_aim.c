@@ -60,8 +60,7 @@ static void read_repeatability(struct sheet_parse *p, size_t section)
 {
     static const struct sheet_range SHARE = {0, 100, false, "0 to 100 %"};
     struct job_aim *aim = &p->sheet->job.aim;
-    double percent =
-        sheet_fields_measure(p, section, "repeatability", DIMENSION_PERCENT, &SHARE);
+    double percent = sheet_fields_measure(p, section, "repeatability", DIMENSION_PERCENT, &SHARE);
     aim->repeatability_given = !isnan(percent);
     if (aim->repeatability_given)
         aim->repeatability = percent / 100;
@@ -95,8 +94,8 @@ static void read_aim(struct sheet_parse *p)
         return;
     }
     read_targets(p, s);
-    job->aim.minimise = sheet_fields_choice(p, s, "minimise", MINIMISES, 0) == 1 ? MINIMISE_WORST
-                                                                                 : MINIMISE_TOTAL;
+    job->aim.minimise =
+        sheet_fields_choice(p, s, "minimise", MINIMISES, 0) == 1 ? MINIMISE_WORST : MINIMISE_TOTAL;
     job->aim.mounted = -1;
     if (mounted && !p->audit)
         job->aim.mounted = sheet_fields_run(p, mounted, mounted->value);

@@ -11,14 +11,17 @@
 
 #define LAYOUT_KEYS                                                                                \
     {"full scale", 0, NULL}, {"rate", 0, NULL}, {"time column", 0, NULL}, {"separator", 0, NULL},  \
-        {"decimal", 0, NULL}, {"skip", 0, NULL}
+        {"decimal", 0, NULL},                                                                      \
+    {                                                                                              \
+        "skip", 0, NULL                                                                            \
+    }
 
 static const struct sheet_key JOB[] = {
     {"title", 0, NULL}, {"angles", 0, NULL}, {"phase", 0, NULL}, {"units", 0, NULL}};
-static const struct sheet_key ROTOR[] = {
-    {"mass", 0, NULL},      {"service speed", 0, NULL}, {"rotation", 0, NULL},
-    {"seen from", 0, NULL}, {"grade", 0, NULL},         {"support", 0, NULL},
-    {"bearing span", 0, NULL}, {"mass centre", 0, NULL}};
+static const struct sheet_key ROTOR[] = {{"mass", 0, NULL},         {"service speed", 0, NULL},
+                                         {"rotation", 0, NULL},     {"seen from", 0, NULL},
+                                         {"grade", 0, NULL},        {"support", 0, NULL},
+                                         {"bearing span", 0, NULL}, {"mass centre", 0, NULL}};
 static const struct sheet_key RECORDING[] = {LAYOUT_KEYS};
 static const struct sheet_key TACHO[] = {
     {"channel", 0, NULL}, {"edge", 0, NULL}, {"marks", 0, NULL}, {"level", 0, NULL}};
@@ -27,47 +30,66 @@ static const struct sheet_key SENSOR[] = {{"channel", 0, NULL},
                                           {"scale", 0, NULL},
                                           {"show", 0, NULL},
                                           {"at", 0, NULL}};
-static const struct sheet_key PLANE[] = {
-    {"radius", 0, NULL},      {"positions", 0, NULL},
-    {"stock", 0, NULL},       {"pieces", 0, NULL},
-    {"most", 0, NULL},        {"most in all", 0, NULL},
-    {"taken", 0, NULL},       {"work", 0, NULL},
-    {"hole", SHEET_KEY_LATER, NULL},   {"density", SHEET_KEY_LATER, NULL},
-    {"depth", SHEET_KEY_LATER, NULL}};
-static const struct sheet_key RUN[] = {
-    {"file", SHEET_KEY_AGAIN, NULL},
-    {"when", 0, NULL},
-    {"weight", SHEET_KEY_SUBJECT | SHEET_KEY_AGAIN, NULL},
-    {"without", SHEET_KEY_SUBJECT, NULL},
-    {"channel", SHEET_KEY_SUBJECT, NULL},
-    {"scale", SHEET_KEY_SUBJECT, NULL},
-    {"speed", 0, NULL},
-    {"reading", SHEET_KEY_SUBJECT, NULL},
-    {"condition", 0, NULL},
-    {"role", SHEET_KEY_LATER, NULL},
-    {"speeds", SHEET_KEY_LATER, NULL},
-    LAYOUT_KEYS};
-static const struct sheet_key AIM[] = {{"target", 0, NULL},
-                                       {"target", SHEET_KEY_SUBJECT, NULL},
-                                       {"minimise", 0, NULL},
-                                       {"mounted", 0, NULL},
-                                       {"repeatability", 0, NULL},
-                                       {"responses", SHEET_KEY_LATER, NULL},
-                                       {"tolerance", 0, NULL},
-                                       {"zones", SHEET_KEY_LATER, NULL}};
+static const struct sheet_key PLANE[] = {{"radius", 0, NULL},
+                                         {"positions", 0, NULL},
+                                         {"stock", 0, NULL},
+                                         {"pieces", 0, NULL},
+                                         {"most", 0, NULL},
+                                         {"most in all", 0, NULL},
+                                         {"taken", 0, NULL},
+                                         {"work", 0, NULL},
+                                         {"hole", SHEET_KEY_LATER, NULL},
+                                         {"density", SHEET_KEY_LATER, NULL},
+                                         {"depth", SHEET_KEY_LATER, NULL}};
+static const struct sheet_key RUN[] = {{"file", SHEET_KEY_AGAIN, NULL},
+                                       {"when", 0, NULL},
+                                       {"weight", SHEET_KEY_SUBJECT | SHEET_KEY_AGAIN, NULL},
+                                       {"without", SHEET_KEY_SUBJECT, NULL},
+                                       {"channel", SHEET_KEY_SUBJECT, NULL},
+                                       {"scale", SHEET_KEY_SUBJECT, NULL},
+                                       {"speed", 0, NULL},
+                                       {"reading", SHEET_KEY_SUBJECT, NULL},
+                                       {"condition", 0, NULL},
+                                       {"role", SHEET_KEY_LATER, NULL},
+                                       {"speeds", SHEET_KEY_LATER, NULL},
+                                       LAYOUT_KEYS};
+static const struct sheet_key AIM[] = {
+    {"target", 0, NULL},        {"target", SHEET_KEY_SUBJECT, NULL},
+    {"minimise", 0, NULL},      {"mounted", 0, NULL},
+    {"repeatability", 0, NULL}, {"responses", SHEET_KEY_LATER, NULL},
+    {"tolerance", 0, NULL},     {"zones", SHEET_KEY_LATER, NULL}};
 /* The checks and the units of their figures. */
-static const struct sheet_key LIMITS[] = {
-    {"readable", 0, NULL},        {"same-recording", 0, NULL}, {"length", 0, "turns"},
-    {"service-speed", 0, "%"},    {"speed-steady", 0, "%"},    {"speed-match", 0, "%"},
-    {"amplitude-steady", 0, "%"}, {"phase-steady", 0, "deg"},  {"drift", 0, "%"},
-    {"beat", 0, "%"},             {"one-x-share", 0, "%"},     {"two-x", 0, "%"},
-    {"half-order", 0, "%"},       {"neighbour", 0, "%"},       {"clipping", 0, "samples"},
-    {"sensor-dead", 0, NULL},     {"tacho", 0, "%"},           {"phase-reference", 0, NULL},
-    {"repeat", 0, "%"},           {"trial-effect", 0, "%"},    {"weight-force", 0, "%"},
-    {"correction-force", 0, "%"}, {"tape-moved", 0, NULL},     {"sensor-swapped", 0, NULL},
-    {"sensor-turned", 0, NULL},   {"near-resonance", 0, "deg"}, {"low-level", 0, NULL},
-    {"linearity", 0, "s.e."},     {"conditioning", 0, ""},     {"lag-follows-weight", 0, "s.e."},
-    {"response-changed", 0, "s.e."}};
+static const struct sheet_key LIMITS[] = {{"readable", 0, NULL},
+                                          {"same-recording", 0, NULL},
+                                          {"length", 0, "turns"},
+                                          {"service-speed", 0, "%"},
+                                          {"speed-steady", 0, "%"},
+                                          {"speed-match", 0, "%"},
+                                          {"amplitude-steady", 0, "%"},
+                                          {"phase-steady", 0, "deg"},
+                                          {"drift", 0, "%"},
+                                          {"beat", 0, "%"},
+                                          {"one-x-share", 0, "%"},
+                                          {"two-x", 0, "%"},
+                                          {"half-order", 0, "%"},
+                                          {"neighbour", 0, "%"},
+                                          {"clipping", 0, "samples"},
+                                          {"sensor-dead", 0, NULL},
+                                          {"tacho", 0, "%"},
+                                          {"phase-reference", 0, NULL},
+                                          {"repeat", 0, "%"},
+                                          {"trial-effect", 0, "%"},
+                                          {"weight-force", 0, "%"},
+                                          {"correction-force", 0, "%"},
+                                          {"tape-moved", 0, NULL},
+                                          {"sensor-swapped", 0, NULL},
+                                          {"sensor-turned", 0, NULL},
+                                          {"near-resonance", 0, "deg"},
+                                          {"low-level", 0, NULL},
+                                          {"linearity", 0, "s.e."},
+                                          {"conditioning", 0, ""},
+                                          {"lag-follows-weight", 0, "s.e."},
+                                          {"response-changed", 0, "s.e."}};
 
 struct kind {
     const char *name;
@@ -254,6 +276,11 @@ static void tell_unknown_key(const struct sheet_entry *e, const struct kind *kin
 {
     const char *names[KEYS_MOST];
     char hint[80];
+    if (e->text[0] == ';') {
+        sheet_errors_add(errors, e->line, "a comment begins with '#', not with ';': '%.100s'",
+                         e->text);
+        return;
+    }
     for (size_t i = 0; i < kind->count; i++)
         names[i] = kind->keys[i].name;
     sheet_errors_add(errors, e->line, "unknown key in [%s]: '%.100s'%s", kind->name, e->text,

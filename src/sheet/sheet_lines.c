@@ -11,12 +11,12 @@
 struct reader {
     struct sheet_lines *lines;
     struct sheet_errors *errors;
-    char *at, *end;       /* what is left of the text */
-    int line;             /* number of the line last taken */
-    char *value;          /* where the value of the line fed begins, for quotes */
-    bool waiting;         /* a line was fed and its key has not come back */
-    bool skipping;        /* in a section whose header is wrong: its keys are not looked at */
-    bool opened;          /* a header was seen */
+    char *at, *end; /* what is left of the text */
+    int line;       /* number of the line last taken */
+    char *value;    /* where the value of the line fed begins, for quotes */
+    bool waiting;   /* a line was fed and its key has not come back */
+    bool skipping;  /* in a section whose header is wrong: its keys are not looked at */
+    bool opened;    /* a header was seen */
 };
 
 static bool is_blank(char c)
@@ -115,7 +115,8 @@ static void take_header(struct reader *reader, char *line)
     reader->opened = true;
     reader->skipping = true;
     if (!close) {
-        sheet_errors_add(reader->errors, reader->line, "section header without ']': '%.100s'", line);
+        sheet_errors_add(reader->errors, reader->line, "section header without ']': '%.100s'",
+                         line);
         return;
     }
     if (close[1]) {
@@ -131,8 +132,7 @@ static void take_header(struct reader *reader, char *line)
 static void miss_key(struct reader *reader)
 {
     if (reader->waiting)
-        sheet_errors_add(reader->errors, reader->line,
-                         "neither a section nor 'key = value'%s",
+        sheet_errors_add(reader->errors, reader->line, "neither a section nor 'key = value'%s",
                          reader->value && *reader->value == ';' ? "; a comment begins with '#'"
                                                                 : "");
     reader->waiting = false;
@@ -208,8 +208,8 @@ static bool add_entry(struct reader *reader, const char *key, char *value)
     if (!entries)
         return false;
     lines->entries = entries;
-    entries[count] = (struct sheet_entry){
-        strdup(key), strdup(value), lines->section_count - 1, reader->line, NULL, ""};
+    entries[count] = (struct sheet_entry){strdup(key),  strdup(value), lines->section_count - 1,
+                                          reader->line, NULL,          ""};
     if (!entries[count].text || !entries[count].value) {
         free(entries[count].text);
         free(entries[count].value);

@@ -37,7 +37,8 @@ static bool add_position(struct job_plane *plane, double against)
     return true;
 }
 
-/* ", numbered with rotation" behind "12 from 0 deg": +1 where numbers grow as the sheet's angles do. */
+/* ", numbered with rotation" behind "12 from 0 deg": +1 where numbers grow as the sheet's angles
+ * do. */
 static const char *take_numbering(const struct sheet_parse *p, const char **at, int *direction)
 {
     bool counted_with = p->sheet->job.angles == SENSE_WITH, with;
@@ -113,10 +114,9 @@ static void read_positions(struct sheet_parse *p, size_t section, struct job_pla
     char number[16], word[16];
     bool spread = sheet_values_take(&at, number, sizeof number) &&
                   sheet_values_take(&at, word, sizeof word) && !strcmp(word, "from");
-    const char *fault = spread ? spread_positions(p, e->value, plane)
-                        : strstr(e->value, "numbered")
-                            ? "a list is numbered as listed"
-                            : list_positions(p, e->value, plane);
+    const char *fault = spread                         ? spread_positions(p, e->value, plane)
+                        : strstr(e->value, "numbered") ? "a list is numbered as listed"
+                                                       : list_positions(p, e->value, plane);
     if (fault)
         sheet_fields_wrong(p, e, fault);
 }
@@ -148,8 +148,7 @@ static void read_stock(struct sheet_parse *p, size_t section, struct job_plane *
     for (size_t i = 0; plane->stock && !fault && i < count; i++) {
         fault = check_piece(plane, &items[i]);
         if (!fault)
-            plane->stock[plane->stock_count++] =
-                (struct job_piece){items[i].value, items[i].count};
+            plane->stock[plane->stock_count++] = (struct job_piece){items[i].value, items[i].count};
     }
     if (fault)
         sheet_fields_wrong(p, e, fault);

@@ -96,7 +96,8 @@ static const char *take_lag(const struct sheet_parse *p, const char **at, struct
     *lag = 0;
     hand->has_phase = sheet_values_word(at, "at");
     if (!hand->has_phase)
-        return sheet_values_end(*at) ? NULL : "text behind the amplitude, only 'at ANGLE deg' may follow";
+        return sheet_values_end(*at) ? NULL
+                                     : "text behind the amplitude, only 'at ANGLE deg' may follow";
     const char *fault = sheet_values_measure(at, DIMENSION_ANGLE, lag);
     if (fault)
         return fault;
@@ -144,8 +145,7 @@ static void read_hands(struct sheet_parse *p, const struct run_parts *run)
     size_t entries = p->lines.entry_count, given = 0;
     for (size_t i = 0; i < entries; i++)
         given += sheet_fields_is(&p->lines.entries[i], run->section, "reading");
-    run->job->speed_rpm =
-        sheet_fields_measure(p, run->section, "speed", DIMENSION_SPEED, &SPEED);
+    run->job->speed_rpm = sheet_fields_measure(p, run->section, "speed", DIMENSION_SPEED, &SPEED);
     const struct sheet_entry *speed = sheet_fields_find(p, run->section, "speed");
     if (given > 0 && !speed)
         sheet_fields_missing(p, run->section, "speed");

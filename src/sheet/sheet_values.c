@@ -23,7 +23,8 @@ static bool ends_word(char c)
     return c == '\0' || c == ' ' || c == '\t' || c == ',';
 }
 
-/* Length of the number at `text` and where its point is (its length, where it has none); 0: none. */
+/* Length of the number at `text` and where its point is (its length, where it has none); 0: none.
+ */
 static size_t number_length(const char *text, size_t *point)
 {
     size_t at = text[0] == '+' || text[0] == '-';
@@ -119,15 +120,15 @@ static const char *wrong_unit(enum dimension dimension)
 
 static const char *no_unit(enum dimension dimension)
 {
-    static const char *const CAUSES[] = {
-        [DIMENSION_MASS] = "no unit, wanted g, kg, oz or lb",
-        [DIMENSION_LENGTH] = "no unit, wanted mm, cm, m or in",
-        [DIMENSION_SPEED] = "no unit, wanted rpm",
-        [DIMENSION_RATE] = "no unit, wanted Hz or kHz",
-        [DIMENSION_VOLTAGE] = "no unit, wanted V or mV",
-        [DIMENSION_ANGLE] = "no unit, wanted deg",
-        [DIMENSION_PERCENT] = "no unit, wanted %",
-        [DIMENSION_VIBRATION] = "no unit, wanted g, m/s2, mm/s, in/s, um or mil"};
+    static const char *const CAUSES[] = {[DIMENSION_MASS] = "no unit, wanted g, kg, oz or lb",
+                                         [DIMENSION_LENGTH] = "no unit, wanted mm, cm, m or in",
+                                         [DIMENSION_SPEED] = "no unit, wanted rpm",
+                                         [DIMENSION_RATE] = "no unit, wanted Hz or kHz",
+                                         [DIMENSION_VOLTAGE] = "no unit, wanted V or mV",
+                                         [DIMENSION_ANGLE] = "no unit, wanted deg",
+                                         [DIMENSION_PERCENT] = "no unit, wanted %",
+                                         [DIMENSION_VIBRATION] =
+                                             "no unit, wanted g, m/s2, mm/s, in/s, um or mil"};
     return CAUSES[dimension];
 }
 

@@ -4,9 +4,9 @@
 #include <stdio.h>
 #include <string.h>
 
-#define INCH 0.0254            /* m, exact (1959) */
-#define POUND 0.45359237       /* kg, exact (1959) */
-#define GRAVITY 9.80665        /* m/s2, exact (CGPM 1901) */
+#define INCH 0.0254      /* m, exact (1959) */
+#define POUND 0.45359237 /* kg, exact (1959) */
+#define GRAVITY 9.80665  /* m/s2, exact (CGPM 1901) */
 #define SQRT_2 1.41421356237309504880
 
 struct unit {
@@ -16,22 +16,14 @@ struct unit {
 };
 
 static const struct unit UNITS[] = {
-    {DIMENSION_MASS, "g", 1e-3},
-    {DIMENSION_MASS, "kg", 1},
-    {DIMENSION_MASS, "mg", 1e-6},
-    {DIMENSION_MASS, "oz", POUND / 16},
-    {DIMENSION_MASS, "lb", POUND},
-    {DIMENSION_LENGTH, "mm", 1e-3},
-    {DIMENSION_LENGTH, "cm", 1e-2},
-    {DIMENSION_LENGTH, "m", 1},
-    {DIMENSION_LENGTH, "in", INCH},
-    {DIMENSION_SPEED, "rpm", 1},
-    {DIMENSION_RATE, "Hz", 1},
-    {DIMENSION_RATE, "kHz", 1e3},
-    {DIMENSION_VOLTAGE, "V", 1},
-    {DIMENSION_VOLTAGE, "mV", 1e-3},
-    {DIMENSION_ANGLE, "deg", 1},
-    {DIMENSION_PERCENT, "%", 1},
+    {DIMENSION_MASS, "g", 1e-3},    {DIMENSION_MASS, "kg", 1},
+    {DIMENSION_MASS, "mg", 1e-6},   {DIMENSION_MASS, "oz", POUND / 16},
+    {DIMENSION_MASS, "lb", POUND},  {DIMENSION_LENGTH, "mm", 1e-3},
+    {DIMENSION_LENGTH, "cm", 1e-2}, {DIMENSION_LENGTH, "m", 1},
+    {DIMENSION_LENGTH, "in", INCH}, {DIMENSION_SPEED, "rpm", 1},
+    {DIMENSION_RATE, "Hz", 1},      {DIMENSION_RATE, "kHz", 1e3},
+    {DIMENSION_VOLTAGE, "V", 1},    {DIMENSION_VOLTAGE, "mV", 1e-3},
+    {DIMENSION_ANGLE, "deg", 1},    {DIMENSION_PERCENT, "%", 1},
 };
 
 struct vibration {
