@@ -6,7 +6,7 @@
 
 #include "base/angle.h"
 #include "sheet/units.h"
-#include "vet/ruling.h"
+#include "vet/trials.h"
 #include "vet/within.h"
 
 static const double CHI2_99 = 9.21034; /* chi-squared with 2 degrees of freedom, 99 % */
@@ -360,7 +360,7 @@ int across_runs(struct vet_runs *runs, const size_t *order, const struct job *jo
     across_phase_reference(runs, order, job, findings);
     across_speed_match(runs, order, job, findings);
     across_repeat(runs, order, job, findings);
-    across_trial_effect(runs, order, job, findings);
+    trials_effect(runs, order, job, findings);
     across_low_level(runs, order, job, findings);
     return findings->failed ? -1 : 0;
 }

@@ -34,11 +34,6 @@ void across_speed_match(struct vet_runs *runs, const size_t *order, const struct
 void across_repeat(struct vet_runs *runs, const size_t *order, const struct job *job,
                    struct findings *findings);
 
-/* Per run with weights its effect, against the earlier run whose weights differ on the fewest
- * planes. */
-void across_trial_effect(struct vet_runs *runs, const size_t *order, const struct job *job,
-                         struct findings *findings);
-
 /* As found already below the target. */
 void across_low_level(struct vet_runs *runs, const size_t *order, const struct job *job,
                       struct findings *findings);

@@ -44,7 +44,7 @@ static void finish_text(struct finding *item, const struct check_row *row)
     size_t used = strlen(text), room = sizeof item->text;
 
     if (item->limit > 0)
-        used += (size_t)snprintf(text + used, room - used, " (limit %g%s%s)", item->limit,
+        used += (size_t)snprintf(text + used, room - used, ", limit %g%s%s", item->limit,
                                  item->unit[0] ? " " : "", item->unit);
     if (used < room && item->ruling != RULING_OK)
         snprintf(text + used, room - used, ": %s", row->advice);

@@ -1,10 +1,10 @@
-/* trials.c - across_trial_effect (across.h): did each trial weight do enough? */
-#include "vet/across.h"
+#include "vet/trials.h"
 
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
+#include "vet/across.h"
 #include "vet/effect.h"
 #include "vet/ruling.h"
 #include "vet/within.h"
@@ -150,8 +150,8 @@ static void judge(struct trials *t, size_t k)
         within_refuse(run, t->job);
 }
 
-void across_trial_effect(struct vet_runs *runs, const size_t *order, const struct job *job,
-                         struct findings *findings)
+void trials_effect(struct vet_runs *runs, const size_t *order, const struct job *job,
+                   struct findings *findings)
 {
     struct trials t = {runs, order, job, findings, NULL, NULL, NULL};
 
