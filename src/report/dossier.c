@@ -319,22 +319,55 @@ const char *dossier_plane(const struct dossier *dossier, int plane)
                : "";
 }
 
+/* A refusal by that stage and check; NULL: any. */
+static bool refused_by(const struct dossier *d, const char *stage, const char *check)
+{
+    for (size_t i = 0; i < d->findings.count; i++) {
+        const struct finding_record *f = &d->findings.items[i];
+        if (f->verdict == VERDICT_REFUSE && (!stage || strcmp(f->stage, stage) == 0) &&
+            (!check || strcmp(f->check, check) == 0))
+            return true;
+    }
+    return false;
+}
+
+static bool any_weight(const struct dossier *d)
+{
+    for (size_t i = 0; d->job && i < d->job->run_count; i++) {
+        if (!job_run_is_bare(d->job, i))
+            return true;
+    }
+    return false;
+}
+
+static bool any_reading_lost(const struct dossier *d)
+{
+    for (size_t i = 0; i < d->readings.count; i++) {
+        if (!d->readings.items[i].use)
+            return true;
+    }
+    return false;
+}
+
+int dossier_answer(const struct dossier *dossier)
+{
+    const struct dossier *d = dossier;
+    const char *step = d->has_next ? d->next.step : "";
+    if (d->placements.count > 0 || strcmp(step, "done") == 0)
+        return STATUS_DONE;
+    if (refused_by(d, "solve", "correction") || refused_by(d, "solve", "correction-force"))
+        return STATUS_UNSOLVED;
+    if (strcmp(step, "repeat") == 0) {
+        bool refused = any_reading_lost(d) || refused_by(d, "vet", NULL) ||
+                       refused_by(d, "solve", "linearity");
+        return refused ? STATUS_REFUSED : STATUS_UNSOLVED;
+    }
+    if (strcmp(step, "trial") == 0 && any_weight(d))
+        return STATUS_UNSOLVED;
+    return refused_by(d, "solve", NULL) ? STATUS_UNSOLVED : STATUS_DONE;
+}
+
 int dossier_status(const struct dossier *dossier)
 {
-    bool unreadable = false, unsolved = false;
-    for (size_t i = 0; i < dossier->findings.count; i++) {
-        const struct finding_record *f = &dossier->findings.items[i];
-        if (f->verdict != VERDICT_REFUSE)
-            continue;
-        unreadable = unreadable || strcmp(f->check, "readable") == 0;
-        unsolved = unsolved || strcmp(f->stage, "solve") == 0;
-    }
-    if (unreadable)
-        return STATUS_RECORDING;
-    if (dossier->placements.count > 0)
-        return STATUS_DONE;
-    if (unsolved)
-        return STATUS_UNSOLVED;
-    bool repeat = dossier->has_next && strcmp(dossier->next.step, "repeat") == 0;
-    return repeat && dossier->corrections.count == 0 ? STATUS_REFUSED : STATUS_DONE;
+    return refused_by(dossier, NULL, "readable") ? STATUS_RECORDING : dossier_answer(dossier);
 }

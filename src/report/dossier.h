@@ -92,8 +92,14 @@ enum verdict dossier_verdict(const struct dossier *dossier, const char *run, int
 const char *dossier_sensor(const struct dossier *dossier, int sensor);
 const char *dossier_plane(const struct dossier *dossier, int plane);
 
-/* The exit code that the records ask for (enum status): 3 where a recording could not be read; 0
- * with a placement; 5 where solve refused; 4 where the next step is to repeat; 0 otherwise. */
+/* What the records answer, as an exit code: 0, 4 (refused) or 5 (no correction). A placement is an
+ * answer, and so are the steps done, correct and trim. Solve's refusals by the checks `correction`
+ * and `correction-force` are 5. A trial step is 0 while no run of the sheet carries a weight, and 5
+ * (a run is missing, or the planes cannot be told apart) once one does. To repeat is 4 where a
+ * reading or a regression was refused, 5 where nothing was. */
+int dossier_answer(const struct dossier *dossier);
+
+/* The exit code of the report: 3 where a recording could not be read, else the answer's. */
 int dossier_status(const struct dossier *dossier);
 
 #endif

@@ -1,7 +1,9 @@
 #include "report/phrase.h"
 
 #include <math.h>
+#include <string.h>
 
+#include "base/angle.h"
 #include "report/shown.h"
 #include "sheet/units.h"
 
@@ -75,9 +77,21 @@ void phrase_weight_half(double mass, double angle_deg, const double cov[3], doub
     /* The weight is a vector like a reading's: along it the mass, across it the angle. The "show"
      * is plain SI. */
     static const struct show plain = {"m", QUANTITY_DISPLACEMENT, 1, DETECTION_PEAK};
-    double turned = angle_deg * 3.14159265358979323846 / 180;
+    double turned = angle_deg * PI / 180;
     double complex w = mass * cexp(I * turned);
     struct shown s = shown_vector(w, cov, QUANTITY_DISPLACEMENT, NAN, &plain, NAN);
     half[0] = s.half;
     half[1] = s.lag_half;
+}
+
+void phrase_sentence(struct buffer *out, const char *text)
+{
+    size_t length = strlen(text);
+    if (length == 0)
+        return;
+    char first = *text >= 'a' && *text <= 'z' ? (char)(*text - 'a' + 'A') : *text;
+    buffer_add(out, &first, 1);
+    buffer_text(out, text + 1);
+    if (!strchr(".!?", text[length - 1]))
+        buffer_text(out, ".");
 }

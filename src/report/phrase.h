@@ -27,4 +27,7 @@ void phrase_weights(struct buffer *out, const struct job *job, size_t run);
  * is zero. */
 void phrase_weight_half(double mass, double angle_deg, const double cov[3], double half[2]);
 
+/* `text` as a sentence: its first letter (ASCII) a capital, a full stop at its end. */
+void phrase_sentence(struct buffer *out, const char *text);
+
 #endif

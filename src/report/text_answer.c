@@ -24,6 +24,14 @@ static void put(struct buffer *out, size_t first, size_t rest, struct buffer *te
     buffer_release(text);
 }
 
+/* The next step's text as a sentence. */
+static void advice(const struct dossier *d, size_t indent, struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    phrase_sentence(&text, d->next.text);
+    put(out, indent, indent, &text);
+}
+
 static void relative_to(const struct dossier *d, const char *name, struct buffer *out)
 {
     int run = job_find_run(d->job, name);
@@ -111,13 +119,20 @@ static void placements(const struct dossier *d, struct buffer *out)
     doubts(d, out);
 }
 
-/* Why there is no correction: solve's refusals where it made some, else everybody's. */
+static bool is_reason(const struct finding_record *f, bool solve_only)
+{
+    return f->verdict == VERDICT_REFUSE && (!solve_only || strcmp(f->stage, "solve") == 0);
+}
+
+/* Why there is no correction: solve's refusals where it is 5, everybody's where it is 4. */
 static void reasons(const struct dossier *d, bool solve_only, struct buffer *out)
 {
-    for (size_t i = 0; i < d->findings.count; i++) {
+    for (size_t i = 0, listed = 0; i < d->findings.count; i++) {
         const struct finding_record *f = &d->findings.items[i];
-        if (f->verdict != VERDICT_REFUSE || (solve_only && strcmp(f->stage, "solve") != 0))
+        if (!is_reason(f, solve_only))
             continue;
+        if (listed++ == 0)
+            paper_say(out, 2, 2, "Why:");
         struct buffer text = BUFFER_INIT;
         buffer_format(&text, "- %s", f->check);
         if (f->run[0])
@@ -129,30 +144,15 @@ static void reasons(const struct dossier *d, bool solve_only, struct buffer *out
     }
 }
 
-static bool has_solve_refusal(const struct dossier *d)
+static void nothing(const struct dossier *d, bool refused, struct buffer *out)
 {
-    for (size_t i = 0; i < d->findings.count; i++) {
-        const struct finding_record *f = &d->findings.items[i];
-        if (f->verdict == VERDICT_REFUSE && strcmp(f->stage, "solve") == 0)
-            return true;
-    }
-    return false;
-}
-
-static void nothing(const struct dossier *d, int status, struct buffer *out)
-{
-    bool solved = has_solve_refusal(d);
-    if (status == STATUS_REFUSED)
-        paper_heading(out, "NO CORRECTION: the readings are not fit to balance on");
-    else if (solved)
-        paper_heading(out, "NO CORRECTION: none can be given from these runs");
-    else
-        paper_heading(out, "NO CORRECTION");
-    paper_say(out, 2, 2, "Do not fit a weight on the strength of these recordings. Why:");
-    reasons(d, solved && status != STATUS_REFUSED, out);
+    paper_heading(out, refused ? "NO CORRECTION: the readings are not fit to balance on"
+                               : "NO CORRECTION: none can be given from these runs");
+    paper_say(out, 2, 2, "Do not fit a correction weight on the strength of these recordings.");
+    reasons(d, !refused, out);
     paper_heading(out, "WHAT TO DO NOW");
     if (d->has_next)
-        paper_wrap(out, 2, 2, d->next.text);
+        advice(d, 2, out);
     else
         paper_wrap(out, 2, 2, "Mend what is listed above and record those runs again.");
 }
@@ -167,21 +167,20 @@ static void step_only(const struct dossier *d, struct buffer *out)
         paper_wrap(out, 2, 2,
                    "No answer is in this stream: it has not been through `lopside solve`.");
     if (d->has_next)
-        paper_wrap(out, 2, 2, d->next.text);
+        advice(d, 2, out);
 }
 
 void text_answer_now(const struct dossier *dossier, struct buffer *out)
 {
-    int status = dossier_status(dossier);
-    bool repeat = step_is(dossier, "repeat") && dossier->corrections.count == 0;
+    int answer = dossier_answer(dossier);
     if (dossier->placements.count > 0) {
         placements(dossier, out);
         if (dossier->has_next) {
             paper_heading(out, "NEXT");
-            paper_wrap(out, 2, 2, dossier->next.text);
+            advice(dossier, 2, out);
         }
-    } else if (status == STATUS_REFUSED || has_solve_refusal(dossier) || repeat) {
-        nothing(dossier, status, out);
+    } else if (answer != STATUS_DONE) {
+        nothing(dossier, answer == STATUS_REFUSED, out);
     } else {
         step_only(dossier, out);
     }

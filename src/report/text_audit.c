@@ -4,6 +4,7 @@
 #include <string.h>
 
 #include "report/paper.h"
+#include "report/phrase.h"
 #include "report/table.h"
 #include "report/text_readings.h"
 
@@ -40,8 +41,15 @@ void text_audit_summary(const struct dossier *dossier, struct buffer *out)
                   "%zu readings were not judged: the stream has not been through `lopside "
                   "vet`.",
                   open);
-    if (dossier->has_next)
-        paper_wrap(out, 2, 2, dossier->next.text);
+    if (dossier->has_next) {
+        struct buffer text = BUFFER_INIT;
+        phrase_sentence(&text, dossier->next.text);
+        if (text.failed)
+            out->failed = 1;
+        else
+            paper_wrap(out, 2, 2, text.bytes);
+        buffer_release(&text);
+    }
 }
 
 static void percent_cell(struct table *table, double value)

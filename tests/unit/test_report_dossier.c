@@ -70,41 +70,59 @@ static void unload(struct loaded *l)
 static void exit_codes(void **state)
 {
     (void)state;
-    struct finding_record f[2] = {
-        {.stage = "solve", .check = "conditioning", .verdict = VERDICT_REFUSE},
-        {.stage = "vet", .check = "length", .verdict = VERDICT_REFUSE}};
-    struct placement_record p = {0};
-    struct correction_record c = {0};
-    struct dossier d;
-    dossier_init(&d, NULL);
-    d.findings.items = f;
-    d.placements.items = &p;
-    d.corrections.items = &c;
-    assert_int_equal(dossier_status(&d), STATUS_DONE);
-    d.findings.count = 2;
-    assert_int_equal(dossier_status(&d), STATUS_UNSOLVED);
-    d.corrections.count = 1; /* an ideal weight, but nothing that may be placed */
-    assert_int_equal(dossier_status(&d), STATUS_UNSOLVED);
-    d.placements.count = 1;
-    assert_int_equal(dossier_status(&d), STATUS_DONE);
-    strcpy(f[1].check, "readable");
-    assert_int_equal(dossier_status(&d), STATUS_RECORDING);
-    f[1].verdict = VERDICT_OK;
-    assert_int_equal(dossier_status(&d), STATUS_DONE);
-    /* Without solve's refusal the next step decides. */
+    struct job_weight weight = {.mass = 0.06, .mounted_mass = 0.06, .radius_m = 0.4};
+    struct job_plane plane = {.name = "wheel", .radius_m = 0.4};
     static const struct {
-        const char *step;
-        size_t corrections;
+        const char *step, *stage, *check; /* the next step, and who refused what */
+        bool lost, trials;                /* a reading is not used; a run carries a weight */
+        size_t placements;
         int status;
-    } steps[] = {{"repeat", 0, STATUS_REFUSED}, {"repeat", 1, STATUS_DONE},
-                 {"trial", 0, STATUS_DONE},     {"done", 0, STATUS_DONE},
-                 {"trim", 1, STATUS_DONE},      {"correct", 1, STATUS_DONE}};
-    d.findings.count = d.placements.count = 0;
-    d.has_next = true;
-    for (size_t i = 0; i < sizeof steps / sizeof *steps; i++) {
-        strcpy(d.next.step, steps[i].step);
-        d.corrections.count = steps[i].corrections;
-        assert_int_equal(dossier_status(&d), steps[i].status);
+    } cases[] = {
+        {"trial", "", "", false, false, 0, STATUS_DONE},    /* as found alone */
+        {"trial", "", "", false, true, 0, STATUS_UNSOLVED}, /* a run is missing */
+        {"trial", "solve", "conditioning", false, true, 0, STATUS_UNSOLVED},
+        {"repeat", "solve", "conditioning", true, true, 0, STATUS_REFUSED}, /* a sensor was lost */
+        {"repeat", "vet", "length", true, true, 0, STATUS_REFUSED},
+        {"repeat", "solve", "linearity", false, true, 0, STATUS_REFUSED},
+        {"repeat", "solve", "correction-force", false, true, 0, STATUS_UNSOLVED},
+        {"repeat", "solve", "correction", true, true, 0, STATUS_UNSOLVED},
+        {"repeat", "", "", false, true, 0, STATUS_UNSOLVED},      /* nothing placed helps */
+        {"correct", "vet", "length", true, true, 2, STATUS_DONE}, /* it goes on without */
+        {"correct", "solve", "linearity", false, true, 2, STATUS_DONE},
+        {"correct", "", "", false, true, 0, STATUS_DONE},
+        {"trim", "", "", false, true, 1, STATUS_DONE},
+        {"done", "", "", false, true, 0, STATUS_DONE},
+        {"correct", "read", "readable", false, true, 2, STATUS_RECORDING},
+        {"repeat", "read", "readable", true, true, 0, STATUS_RECORDING},
+        {"", "vet", "length", true, true, 0, STATUS_DONE}, /* not solved: nothing was asked */
+        {"", "", "", false, false, 0, STATUS_DONE},
+    };
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        struct job_run run = {.name = "trial", .weights = &weight, .weight_count = cases[i].trials};
+        struct job job;
+        job_init(&job);
+        job.runs = &run;
+        job.planes = &plane;
+        job.run_count = job.plane_count = 1;
+        struct finding_record finding = {.verdict = VERDICT_REFUSE};
+        struct placement_record placement = {0};
+        struct dossier_reading reading = {.use = !cases[i].lost};
+        struct dossier d;
+        dossier_init(&d, &job);
+        d.has_next = cases[i].step[0] != '\0';
+        strcpy(d.next.step, cases[i].step);
+        strcpy(finding.stage, cases[i].stage);
+        strcpy(finding.check, cases[i].check);
+        d.findings.items = &finding;
+        d.findings.count = cases[i].stage[0] != '\0';
+        d.placements.items = &placement;
+        d.placements.count = cases[i].placements;
+        d.readings.items = &reading;
+        d.readings.count = 1;
+        assert_int_equal(dossier_status(&d), cases[i].status);
+        finding.verdict = VERDICT_CAUTION; /* a caution alone never refuses */
+        if (cases[i].placements > 0)
+            assert_int_equal(dossier_status(&d), STATUS_DONE);
     }
 }
 
