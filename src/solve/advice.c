@@ -286,19 +286,22 @@ void advice_repeat_step(const struct model *m, const struct ruling *ruling,
                  "no reading is fit to balance on: mend what the findings name and repeat the runs");
         return;
     }
-    const char *sensor = m->job->sensors[ruling->row->sensor].name;
-    const char *condition = m->conditions[ruling->row->condition];
+    const struct model_row *row = ruling->row;
+    const char *sensor = m->job->sensors[row->sensor].name;
+    const char *run = row->lost_run >= 0 ? m->job->runs[row->lost_run].name : "";
+    const char *condition = m->conditions[row->condition];
     if (ruling->named)
         snprintf(next->reason, sizeof next->reason,
-                 "refused readings of a sensor that the aim names: '%s' (%s)", sensor, condition);
+                 "refused readings of a sensor that the aim names: '%s' (run '%s', condition '%s')",
+                 sensor, run, condition);
     else
         snprintf(next->reason, sizeof next->reason,
-                 "refused readings of a run that the regression needs: '%s'", condition);
+                 "refused readings that the regression needs: '%s' (sensor '%s', condition '%s')", run,
+                 sensor, condition);
     snprintf(next->text, sizeof next->text,
-             "the readings left cannot carry a correction: mend what the findings refuse and repeat "
-             "those runs%s%s%s",
-             ruling->named ? ", with sensor '" : "", ruling->named ? sensor : "",
-             ruling->named ? "'" : "");
+             "the readings left cannot carry a correction: mend what the findings refuse, then repeat "
+             "run '%s' with sensor '%s' (condition '%s')",
+             run, sensor, condition);
 }
 
 void advice_missing_step(const struct model *m, const struct ruling *ruling,

@@ -113,8 +113,10 @@ static int gather(struct model *m, struct model_row *row, const struct model_rea
         for (size_t p = 0; p < planes; p++)
             all[every * planes + p] = job_run_weight(job, r->run, p);
         every++;
-        if (!r->use || !r->phase)
+        if (!r->use || !r->phase) {
+            row->lost_run = row->lost_run < 0 ? (int)r->run : row->lost_run;
             continue;
+        }
         row_take(row, job, r);
         if (r->speed_rpm > 0) {
             speed += r->speed_rpm;
@@ -218,6 +220,7 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
             row->condition = c;
             row->sensor = s;
             row->misfit = NAN;
+            row->lost_run = -1;
             result = gather(m, row, readings, count);
             if (result == MODEL_OK)
                 result = pool_row(&pool, row, job->plane_count);

@@ -46,6 +46,7 @@ struct model_row {
     struct posterior posterior; /* relative to as found; zeroed where nothing was read */
     double misfit;          /* s.e.; NaN: no run is spare */
     size_t misfit_run;
+    int lost_run;           /* the first run whose reading of this row was refused; -1: none */
 };
 
 struct model {

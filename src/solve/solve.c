@@ -341,8 +341,10 @@ static int judge_rows(struct solve *s, struct model *m)
         struct advice_finding f;
         if (!advice_linearity(m, &m->rows[i], &f))
             continue;
-        if (f.verdict == ADVICE_REFUSE)
+        if (f.verdict == ADVICE_REFUSE) {
             m->rows[i].state = MODEL_LOST;
+            m->rows[i].lost_run = f.run;
+        }
         status = write_finding(s, &f);
     }
     return status;
