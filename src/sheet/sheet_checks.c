@@ -45,10 +45,10 @@ static void need_in_job(struct sheet_parse *p, const char *key, const struct she
 
 static void check_job(struct sheet_parse *p)
 {
-    if (!p->audit) {
-        const struct sheet_entry *weight = first_entry(p, "weight", NULL);
-        need_in_job(p, "angles", weight ? weight : first_entry(p, "positions", has_numbers));
-    }
+    if (p->audit)
+        return; /* neither runs nor planes count there */
+    const struct sheet_entry *weight = first_entry(p, "weight", NULL);
+    need_in_job(p, "angles", weight ? weight : first_entry(p, "positions", has_numbers));
     need_in_job(p, "phase", first_entry(p, "reading", has_phase));
 }
 

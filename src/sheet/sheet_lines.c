@@ -154,14 +154,23 @@ static bool is_fit(struct reader *reader, const char *line)
     return true;
 }
 
+/* A section is empty where it holds no line at all, right or wrong. */
+static void count_line(struct reader *reader)
+{
+    if (reader->lines->section_count > 0 && !reader->skipping)
+        reader->lines->sections[reader->lines->section_count - 1].entries++;
+}
+
 /* inih's reader: the next line that holds a key. Headers, comments and blank lines stay here. */
 static char *feed(char *room, int size, void *stream)
 {
     struct reader *reader = stream;
     miss_key(reader);
     for (char *line; (line = next_line(reader));) {
-        if (!is_fit(reader, line))
+        if (!is_fit(reader, line)) {
+            count_line(reader);
             continue;
+        }
         line = clean(line);
         if (!*line)
             continue;
@@ -171,6 +180,7 @@ static char *feed(char *room, int size, void *stream)
         }
         if (reader->skipping)
             continue;
+        count_line(reader);
         size_t length = strlen(line);
         if (length + 2 > (size_t)size) { /* cannot be: SHEET_LINE_MOST is less */
             sheet_errors_add(reader->errors, reader->line, "line too long: '%.40s...'", line);
@@ -239,8 +249,9 @@ static int take(void *user, const char *section, const char *name, const char *v
         reader->errors->no_memory = true;
         return 1;
     }
-    reader->lines->sections[reader->lines->section_count - 1].entries++;
-    const char *fault = *copy ? unquote(copy) : "no value";
+    const char *fault = unquote(copy);
+    if (!fault && !copy[strspn(copy, BLANKS)])
+        fault = "no value";
     if (fault)
         sheet_errors_add(reader->errors, reader->line, "%s: '%.100s'", fault, name);
     else if (!add_entry(reader, name, copy))

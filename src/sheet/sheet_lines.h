@@ -25,7 +25,7 @@ struct sheet_section {
     int kind;       /* enum sheet_kind, filled by sheet_keys_check; -1: not usable */
     const char *name; /* borrowed from text: "DE-V" of [sensor DE-V]; "" */
     int line;
-    size_t entries; /* how many stand in it */
+    size_t entries; /* lines in it that are neither blank nor comment, right or wrong */
 };
 
 struct sheet_entry {

@@ -122,8 +122,9 @@ void sheet_machine_layout(struct sheet_parse *p, size_t s, struct sheet_layout *
         layout->full_scale = full_scale;
     if (!isnan(rate))
         layout->rate = rate;
-    if (sheet_fields_find(p, s, "time column"))
-        sheet_fields_text(p, s, "time column", layout->time_column, sizeof layout->time_column);
+    const struct sheet_entry *time = sheet_fields_find(p, s, "time column");
+    if (time)
+        sheet_sensors_channel(p, time, layout->time_column);
     if (separator >= 0)
         layout->separator = ",;\t"[separator];
     if (decimal >= 0)

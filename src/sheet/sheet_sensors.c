@@ -18,7 +18,7 @@ void sheet_sensors_channel(struct sheet_parse *p, const struct sheet_entry *entr
     if (strspn(entry->value, "0123456789") == length) {
         long number = length < 8 ? strtol(entry->value, NULL, 10) : CHANNEL_MOST + 1L;
         if (number < 1 || number > CHANNEL_MOST) {
-            sheet_fields_wrong(p, entry, "out of range (channels count from 1, at most 4096)");
+            sheet_fields_wrong(p, entry, "out of range (1 to 4096)");
             return;
         }
         snprintf(channel, NAME_ROOM, "%ld", number);
