@@ -81,8 +81,10 @@ static void held_add(struct channel_held *held, const float *x, size_t n, float 
         held_end(held);
         return;
     }
+    float own = sign * held->extreme;
+
     for (size_t i = 0; i < n; i++) {
-        if (sign * x[i] == held->extreme) {
+        if (x[i] == own) {
             held->run++;
         } else if (held->run) {
             held_end(held);

@@ -6,6 +6,9 @@
 /* How far from its expected time a mark may come, as a share of the period: a change of speed of a fifth
  * within a turn is more than a rotor with a flywheel's inertia does. */
 #define TOLERANCE 0.2
+#define TOLERANCE_LEAST 0.05 /* a pulse that comes by chance is then the mark's in one turn of ten */
+#define TOLERANCE_SPREADS 5  /* standard deviations of what the rhythm itself does */
+#define MEMORY 0.1           /* weight of the latest turn in the rhythm's own spread */
 
 void marks_init(struct marks *marks)
 {
@@ -13,12 +16,13 @@ void marks_init(struct marks *marks)
 }
 
 /* How many periods behind the last mark the pulse lies, 0 where it is on no mark's place. */
-static long place(double since, double period)
+static long place(double since, double period, double tolerance)
 {
     double turns = since / period;
     long n = lround(turns);
+    double allowed = tolerance * (1 + 0.5 * (double)(n - 1)); /* the speed may have drifted on */
 
-    return n >= 1 && fabs(turns - (double)n) <= TOLERANCE ? n : 0;
+    return n >= 1 && fabs(turns - (double)n) <= fmin(TOLERANCE, allowed) ? n : 0;
 }
 
 /* The pulse as a mark of this size: what is clearly the wider and taller one is the mark. */
@@ -43,7 +47,7 @@ static struct ballot follow(const struct pulse *pulses, size_t count, size_t sta
 
     ballot.size = size_of(&pulses[start]);
     for (size_t i = start + 1; i < count; i++) {
-        long n = place(pulses[i].at - last, current);
+        long n = place(pulses[i].at - last, current, TOLERANCE);
 
         if (n == 0) {
             ballot.score -= 1;
@@ -103,6 +107,11 @@ static size_t give(struct marks *marks, double at, long turns, struct mark *out)
     return n;
 }
 
+static double tolerance(const struct marks *marks)
+{
+    return fmin(TOLERANCE, fmax(TOLERANCE_LEAST, TOLERANCE_SPREADS * sqrt(marks->spread)));
+}
+
 /* The candidate becomes a mark. */
 static size_t commit(struct marks *marks, struct mark *out)
 {
@@ -111,8 +120,11 @@ static size_t commit(struct marks *marks, struct mark *out)
     }
     size_t n = give(marks, marks->candidate, marks->candidate_turns, out);
 
-    marks->period = 0.5 * marks->period + 0.5 * (marks->candidate - marks->last) /
-                                              (double)marks->candidate_turns;
+    double period = (marks->candidate - marks->last) / (double)marks->candidate_turns;
+    double off = period / marks->period - 1;
+
+    marks->spread += MEMORY * (off * off - marks->spread);
+    marks->period = 0.5 * (marks->period + period);
     marks->last = marks->candidate;
     marks->has_candidate = false;
     marks->strays = 0;
@@ -137,7 +149,7 @@ static size_t step(struct marks *marks, const struct pulse *pulse, struct mark *
         given = commit(marks, out);
         since = pulse->at - marks->last;
     }
-    long n = place(since, marks->period);
+    long n = place(since, marks->period, tolerance(marks));
 
     if (since > (MARKS_GAP + 0.5) * marks->period || (n == 0 && marks->strays > 8 && since > 3 * marks->period)) {
         *lost = true;
@@ -183,6 +195,7 @@ static size_t lock(struct marks *marks, struct mark *out)
     marks->voter_count = 0;
     marks->extra += (long)best.start;
     marks->period = best.period;
+    marks->spread = TOLERANCE / TOLERANCE_SPREADS * (TOLERANCE / TOLERANCE_SPREADS);
     marks->has_candidate = false;
     marks->strays = 0;
     given = give(marks, voters[best.start].at, 1, out);

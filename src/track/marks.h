@@ -26,6 +26,7 @@ struct marks {
     size_t voter_count;
     bool locked;
     double period, last;        /* samples; time of the last mark given out */
+    double spread;              /* mean square of how far periods were off, as a share */
     bool has_candidate;
     double candidate;           /* the pulse that may become the next mark */
     long candidate_turns;       /* how many periods it lies behind `last` */

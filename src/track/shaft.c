@@ -5,17 +5,13 @@
 
 /* Eleven marks, sixth degree: passes a wander of one cycle in ten turns to 1e-3 of itself and halves the
  * variance of the scatter (from the filter's frequency response). */
-#define FIT_MOST 11  /* marks of one fit */
+#define FIT_MOST SHAFT_FIT
 #define TERMS_MOST 7 /* coefficients of one fit */
 
 /* Marks that scatter more than this are smoothed. Interpolated scatter s (rad) shortens a vector by
  * s^2/2: 0.2 deg costs 6e-6 of it, so below that the exact curve is the better one. */
 #define SMOOTH_FROM_DEG 0.2
 
-void shaft_init(struct shaft *shaft)
-{
-    *shaft = (struct shaft){0};
-}
 
 void shaft_restart(struct shaft *shaft)
 {
@@ -35,10 +31,12 @@ static bool fit(const double *x, const double *y, size_t n, size_t terms, double
                 double *leverage)
 {
     double q[TERMS_MOST][FIT_MOST], r[TERMS_MOST][TERMS_MOST] = {{0}}, b[TERMS_MOST];
+    double power[FIT_MOST];
 
     for (size_t j = 0; j < terms; j++) {
         for (size_t i = 0; i < n; i++) {
-            q[j][i] = j == 0 ? 1 : pow(x[i], (double)j);
+            q[j][i] = j == 0 ? 1 : x[i] * power[i];
+            power[i] = q[j][i];
         }
         for (size_t k = 0; k < 2 * j; k++) {
             double dot = 0;
@@ -88,6 +86,34 @@ static bool fit(const double *x, const double *y, size_t n, size_t terms, double
     return true;
 }
 
+static void filter_init(struct shaft_filter *filter, long half)
+{
+    size_t n = (size_t)(2 * half + 1);
+    double x[FIT_MOST], y[FIT_MOST], c[TERMS_MOST];
+
+    filter->half = half;
+    for (size_t i = 0; i < n; i++) {
+        x[i] = (double)((long)i - half) / SHAFT_AHEAD;
+    }
+    for (size_t i = 0; i < n; i++) {
+        for (size_t k = 0; k < n; k++) {
+            y[k] = k == i;
+        }
+        if (fit(x, y, n, TERMS_MOST, c, &filter->leverage)) {
+            filter->value[i] = c[0];
+            filter->slope[i] = c[1] / SHAFT_AHEAD;
+            filter->bend[i] = 2 * c[2] / (SHAFT_AHEAD * SHAFT_AHEAD);
+        }
+    }
+}
+
+void shaft_init(struct shaft *shaft)
+{
+    *shaft = (struct shaft){0};
+    filter_init(&shaft->exact, TERMS_MOST / 2);
+    filter_init(&shaft->smooth, FIT_MOST / 2);
+}
+
 static double mark_at(const struct shaft *shaft, long m)
 {
     return shaft->at[m % SHAFT_ROOM];
@@ -121,6 +147,30 @@ static double period_at(const struct shaft *shaft, long m)
     return to > from ? (mark_at(shaft, to) - mark_at(shaft, from)) / (double)(to - from) : 1;
 }
 
+/* The same as knot_fit where no mark in the filter's reach is missing. */
+static bool knot_filter(const struct shaft *shaft, const struct shaft_filter *filter, long m,
+                        struct shaft_knot *knot)
+{
+    long half = filter->half;
+    double here = mark_at(shaft, m);
+
+    if (m - half < shaft->first || m + half >= shaft->next) {
+        return false;
+    }
+    *knot = (struct shaft_knot){here, 0, 0};
+    for (long k = -half; k <= half; k++) {
+        double off = mark_at(shaft, m + k) - here;
+
+        if (!shaft->real[(m + k) % SHAFT_ROOM]) {
+            return false;
+        }
+        knot->at += filter->value[k + half] * off;
+        knot->slope += filter->slope[k + half] * off;
+        knot->bend += filter->bend[k + half] * off;
+    }
+    return true;
+}
+
 /* Fits around mark m over `most` marks with `terms` powers; fewer where the marks are fewer. */
 static bool knot_fit(const struct shaft *shaft, long m, size_t most, size_t terms,
                      struct shaft_knot *knot, double *residual)
@@ -146,8 +196,13 @@ static void judge(struct shaft *shaft, long m)
     struct shaft_knot knot;
     double residual;
 
-    if (m - FIT_MOST / 2 < shaft->first || !shaft->real[m % SHAFT_ROOM] ||
-        !knot_fit(shaft, m, FIT_MOST, TERMS_MOST, &knot, &residual) || isnan(residual)) {
+    if (m < shaft->first || !shaft->real[m % SHAFT_ROOM]) {
+        return;
+    }
+    if (knot_filter(shaft, &shaft->smooth, m, &knot)) {
+        residual = (mark_at(shaft, m) - knot.at) / knot.slope / sqrt(1 - shaft->smooth.leverage);
+    } else if (m - FIT_MOST / 2 < shaft->first ||
+               !knot_fit(shaft, m, FIT_MOST, TERMS_MOST, &knot, &residual) || isnan(residual)) {
         return;
     }
     shaft->squares += residual * residual;
@@ -159,13 +214,14 @@ static struct shaft_knot knot_at(const struct shaft *shaft, long m)
     struct shaft_knot knot;
     double unused;
     bool inside = m - FIT_MOST / 2 >= shaft->first && m + FIT_MOST / 2 < shaft->next;
+    bool smooth = shaft_jitter(shaft) > SMOOTH_FROM_DEG;
 
-    if (shaft_jitter(shaft) > SMOOTH_FROM_DEG) {
-        /* towards the ends of a stretch a lower degree, which passes less scatter on */
-        if (knot_fit(shaft, m, FIT_MOST, inside ? TERMS_MOST : 5, &knot, &unused)) {
-            return knot;
-        }
-    } else if (knot_fit(shaft, m, TERMS_MOST, TERMS_MOST, &knot, &unused)) {
+    if (knot_filter(shaft, smooth ? &shaft->smooth : &shaft->exact, m, &knot)) {
+        return knot;
+    }
+    /* towards the ends of a stretch scatter is met by a lower degree, which passes less of it on */
+    if (knot_fit(shaft, m, smooth ? FIT_MOST : TERMS_MOST, smooth && !inside ? 5 : TERMS_MOST,
+                 &knot, &unused)) {
         return knot;
     }
     return (struct shaft_knot){mark_at(shaft, m), period_at(shaft, m), 0};

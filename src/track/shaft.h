@@ -29,7 +29,16 @@ struct shaft_knot { /* time of a mark, and its derivatives by turns */
     double at, slope, bend;
 };
 
+#define SHAFT_FIT 11 /* marks of one fit, at most */
+
+/* What a fit over evenly numbered marks m-half .. m+half comes to: three fixed sums over them. */
+struct shaft_filter {
+    double value[SHAFT_FIT], slope[SHAFT_FIT], bend[SHAFT_FIT], leverage;
+    long half;
+};
+
 struct shaft {
+    struct shaft_filter exact, smooth;
     double at[SHAFT_ROOM];
     bool real[SHAFT_ROOM];
     long first, next; /* numbers of the oldest mark remembered and of the one to come */
