@@ -14,6 +14,15 @@
 
 static int settle(struct place_hunt *hunt, size_t depth, const struct place_form *form);
 
+/* One row, one plane: J itself is the bound, wherever its centre. */
+static void aim_exactly(const struct place_form *form, struct place_aim *aim)
+{
+    aim->center = 0;
+    aim->base = creal(form->f[0]);
+    aim->slope = form->f[2];
+    aim->stiffness = creal(form->f[3]);
+}
+
 /* The lower bound on what is left as a function of this site's weight; see the header. */
 static int aim_at(struct place_hunt *hunt, size_t depth, const struct place_form *form,
                   struct place_aim *aim, double *bound)
@@ -107,6 +116,11 @@ static int settle(struct place_hunt *hunt, size_t depth, const struct place_form
     }
     struct place_aim aim;
     double bound;
+    if (depth + 1 == hunt->sites && form->rows == 1) {
+        aim_exactly(form, &aim);
+        place_scan_last(hunt, depth, &aim, form);
+        return 0;
+    }
     hunt->nodes -= RELAX_NODES;
     if (aim_at(hunt, depth, form, &aim, &bound) != 0) {
         return -1;

@@ -163,6 +163,19 @@ double place_region_least(const struct place_region *region, double complex g)
     return least;
 }
 
+bool place_region_holds(const struct place_region *region, double complex x)
+{
+    if (region->disc) {
+        return cabs(x) < region->radius;
+    }
+    for (size_t i = 0; i < region->count; i++) {
+        if (!(cross(region->corners[i], region->corners[(i + 1) % region->count], x) > 0)) {
+            return false;
+        }
+    }
+    return region->count > 2;
+}
+
 /* One basic solution: i and j carry the rest, those priced above 1 are full. */
 static bool split_by(const double complex *e, size_t count, double cap, double complex w, size_t i,
                      size_t j, double *m)

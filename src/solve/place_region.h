@@ -28,6 +28,9 @@ int place_region_polygon(struct place_region *region, const double complex *e, s
 /* The least Re(conj(g) x) over x in the region; 0 vectors give 0. */
 double place_region_least(const struct place_region *region, double complex g);
 
+/* Whether x lies inside; points and segments have no inside. */
+bool place_region_holds(const struct place_region *region, double complex x);
+
 /* Splits w into masses m[count] (kg, written) at the positions e with the least sum, 0 <= m_i <= cap,
  * at most two of them neither 0 nor cap (a basic solution of the linear programme). Returns whether that is
  * possible to 1e-9 of |w|. The two-position case is the usual split of a weight between two blades. */

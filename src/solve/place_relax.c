@@ -178,13 +178,19 @@ static double barrier_at(struct barrier *b, const double *y, double t)
         total -= log(t - value);
     }
     weights_at(b, y, b->w);
+    double rooms = 1; /* logarithms are dear: one for many edges */
     for (size_t e = 0; e < b->edges; e++) {
         double room = b->edge[e].limit - dot(b->edge[e].normal, b->w[b->edge[e].plane]);
         if (!(room > 0)) {
             return INFINITY;
         }
-        total -= log(room / b->edge[e].scale);
+        rooms *= room / b->edge[e].scale;
+        if (rooms < 1e-200 || rooms > 1e200) {
+            total -= log(rooms);
+            rooms = 1;
+        }
     }
+    total -= log(rooms);
     for (size_t q = 0; q < b->planes; q++) {
         double radius = b->region[q].radius;
         if (b->region[q].disc && radius > 0) {
@@ -275,7 +281,8 @@ static double newton_step(struct barrier *b)
         step[i] = -b->gradient[i];
         b->hessian[i * width + i] *= 1 + 1e-14;
     }
-    if (LAPACKE_dposv(LAPACK_ROW_MAJOR, 'L', (int)width, 1, b->hessian, (int)width, step, 1) != 0) {
+    if (LAPACKE_dposv_work(LAPACK_COL_MAJOR, 'L', (int)width, 1, b->hessian, (int)width, step,
+                           (int)width) != 0) {
         return 0;
     }
     double decrement = 0;
@@ -331,9 +338,44 @@ static void weigh_rows(struct barrier *b, double *lambda)
     }
 }
 
+/* One row whose free minimum lies inside every region: exact, and the common case. */
+static bool free_minimum(const struct place_form *form, const struct place_region *region,
+                         double complex *work, double complex *w, double *bound)
+{
+    size_t n = form->planes, m = n + 1;
+    for (size_t q = 0; q < n; q++) {
+        w[q] = -form->f[(q + 1) * m];
+        for (size_t p = 0; p < n; p++) {
+            work[p * n + q] = form->f[(q + 1) * m + p + 1];
+        }
+    }
+    if (LAPACKE_zposv_work(LAPACK_COL_MAJOR, 'L', (int)n, 1, work, (int)n, w, (int)n) != 0) {
+        return false;
+    }
+    for (size_t q = 0; q < n; q++) {
+        if (!place_region_holds(&region[q], w[q])) {
+            return false;
+        }
+    }
+    *bound = place_form_row(form, 0, w);
+    return isfinite(*bound);
+}
+
 int place_relax(const struct place_form *form, const struct place_region *region, double norm,
                 double complex *w, double *lambda, double *bound)
 {
+    if (form->rows == 1) {
+        double complex *work = malloc(form->planes * form->planes * sizeof *work);
+        if (work == NULL) {
+            return -1;
+        }
+        bool done = free_minimum(form, region, work, w, bound);
+        free(work);
+        if (done) {
+            lambda[0] = 1;
+            return 0;
+        }
+    }
     struct barrier b;
     struct place_form blend = {0};
     int result = -1;
