@@ -4,6 +4,7 @@
 #include <math.h>
 #include <sndfile.h>
 #include <stdint.h>
+#include <string.h>
 #include <sys/stat.h>
 #include <unistd.h>
 
@@ -105,6 +106,16 @@ static int check_format(const SF_INFO *info, const struct promise *promise, cons
     return STATUS_DONE;
 }
 
+/* UTF-16 text starts with the same bits as MPEG audio, which libsndfile's decoder reports on standard error. */
+static bool is_lossy_stream(int fd)
+{
+    unsigned char head[3];
+    if (pread(fd, head, sizeof head, 0) != (ssize_t)sizeof head)
+        return false;
+    return (head[0] == 0xFF && head[1] >= 0xE0) || (head[0] == 0xFE && head[1] == 0xFF) ||
+           memcmp(head, "ID3", 3) == 0;
+}
+
 int audio_open(struct audio *audio, const char *path, struct fault *fault)
 {
     *audio = (struct audio){.path = path};
@@ -115,6 +126,13 @@ int audio_open(struct audio *audio, const char *path, struct fault *fault)
     if (check_length(fd, path, &promise, fault) != STATUS_DONE) {
         close(fd);
         return fault->status;
+    }
+    if (is_lossy_stream(fd)) {
+        close(fd);
+        return fault_set(fault, STATUS_RECORDING,
+                         "the recording is UTF-16 text or in a coding that loses part of the "
+                         "signal: '%s'",
+                         path);
     }
     SF_INFO info = {0};
     SNDFILE *file = sf_open_fd(fd, SFM_READ, &info, 1);

@@ -104,6 +104,7 @@ static int measure_rate(struct csv_file *file, const char *head, size_t head_len
                          file->path);
     even_init(&file->even, first, last, file->frames, layout->time_si, first_grain, last_grain);
     file->rate_hz = (double)(file->frames - 1) / (last - first);
+    file->uncertainty = even_uncertainty(&file->even);
     return STATUS_DONE;
 }
 

@@ -18,6 +18,7 @@ struct csv_file {
     char *chunk;              /* private */
     size_t taken;             /* private: rows handed out of those that are ready */
     bool ended;               /* private */
+    double uncertainty;       /* of that rate, relative: how coarsely the times are printed */
     double rate_hz;           /* from the time column; NaN: there is none */
     long long frames;         /* rows of data */
     long long done;           /* rows handed out so far */

@@ -18,6 +18,7 @@ struct row { /* a line that is not empty, and how one pair of separator and deci
     size_t width;   /* cells up to the last that is not empty */
     size_t numbers; /* cells that are numbers */
     bool marked;    /* some number has a decimal mark or an exponent */
+    bool numeric;   /* it may be a row of data */
 };
 
 struct head { /* the first lines */
@@ -25,6 +26,7 @@ struct head { /* the first lines */
     struct row *rows; /* owned */
     size_t count;
     const char *path;
+    bool loose; /* half of a row's cells may be words: a clock, a remark */
 };
 
 struct guess { /* one way to read them */
@@ -101,19 +103,16 @@ static int look_at_rows(struct head *head, char separator, char decimal)
         row->marked = false;
         csv_parse(&parser, head->text + row->offset, row->length, look_at_cell, NULL, &look);
         csv_fini(&parser, look_at_cell, NULL, &look);
+        row->numeric = row->numbers > 0 && (head->loose ? 2 * row->numbers >= row->width
+                                                        : row->numbers == row->width);
     }
     csv_free(&parser);
     return 0;
 }
 
-static bool is_numeric(const struct row *row)
-{
-    return row->width > 0 && row->numbers == row->width;
-}
-
 static bool is_data(const struct row *row, size_t width)
 {
-    return is_numeric(row) && row->width == width;
+    return row->numeric && row->width == width;
 }
 
 /* The width that most rows of numbers have; 0: there are none. */
@@ -122,7 +121,7 @@ static size_t usual_width(const struct head *head)
     unsigned counts[WIDTH_MOST + 1] = {0};
     size_t best = 0;
     for (size_t i = 0; i < head->count; i++)
-        if (is_numeric(&head->rows[i]) && head->rows[i].width <= WIDTH_MOST)
+        if (head->rows[i].numeric && head->rows[i].width <= WIDTH_MOST)
             counts[head->rows[i].width]++;
     for (size_t w = 1; w <= WIDTH_MOST; w++)
         if (counts[w] > counts[best])
@@ -138,7 +137,7 @@ static size_t take_damaged(const struct head *head, size_t start, size_t width)
         const struct row *above = &rows[start - 1];
         const struct row *second = start > 1 ? &rows[start - 2] : NULL;
         const bool is_text = second && second->width == width && second->numbers == 0;
-        if (is_numeric(above))
+        if (above->numeric)
             start -= 1;
         else if (second && is_data(second, width))
             start -= 2;
@@ -369,7 +368,7 @@ static bool rises_evenly(const struct head *head, const struct guess *guess)
 static int find_time(const struct csv_layout *layout, const struct head *head,
                      const struct guess *guess, bool first_is_channel)
 {
-    for (size_t c = first_is_channel ? 1 : 0; c < layout->width; c++)
+    for (size_t c = 0; c < layout->width; c++)
         for (size_t r = 0; r < layout->name_rows; r++)
             if (csv_words_is_time(layout->names[r * layout->width + c]))
                 return (int)c;
@@ -437,7 +436,11 @@ static int fill(struct csv_layout *layout, struct head *head, const struct csv_w
                 struct fault *fault)
 {
     struct guess guess;
-    const int chosen = choose(head, wish, &guess);
+    int chosen = choose(head, wish, &guess);
+    if (chosen == 0 && guess.width == 0) {
+        head->loose = true;
+        chosen = choose(head, wish, &guess);
+    }
     if (chosen == -1)
         return fault_no_memory(fault);
     if (chosen == -2)

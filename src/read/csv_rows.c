@@ -17,15 +17,10 @@ static void *bounded_realloc(void *memory, size_t size)
 static void bad_cell(struct csv_rows *rows, const char *text, size_t length, int result)
 {
     const int shown = length > SHOWN_MOST ? SHOWN_MOST : (int)length;
-    if (length == 0)
-        fault_set(rows->fault, STATUS_RECORDING, "a cell is empty: '%s' (line %ld, column %zu)",
-                  rows->path, rows->line, rows->column + 1);
-    else
-        fault_set(rows->fault, STATUS_RECORDING, "%s, '%.*s%s': '%s' (line %ld, column %zu)",
-                  result == DECIMAL_OUT_OF_RANGE ? "a number is out of range"
-                                                 : "a cell is no number",
-                  shown, text, length > SHOWN_MOST ? "..." : "", rows->path, rows->line,
-                  rows->column + 1);
+    fault_set(rows->fault, STATUS_RECORDING, "%s, '%.*s%s': '%s' (line %ld, column %zu)",
+              result == DECIMAL_OUT_OF_RANGE ? "a number is out of range" : "a cell is no number",
+              shown, text, length > SHOWN_MOST ? "..." : "", rows->path, rows->line,
+              rows->column + 1);
 }
 
 static void take_time(struct csv_rows *rows, const char *text, size_t length, double value)
@@ -33,7 +28,6 @@ static void take_time(struct csv_rows *rows, const char *text, size_t length, do
     static const char *const what[] = {
         [EVEN_BACKWARDS] = "the time goes backwards",
         [EVEN_GAP] = "the time column has a gap or an uneven step",
-        [EVEN_DRIFT] = "the time column is uneven",
     };
     const int result = even_next(rows->even, value * rows->time_si,
                                  decimal_grain(text, length, rows->decimal));
@@ -57,12 +51,12 @@ static void on_cell(void *cell, size_t length, void *data)
         if (slot >= 0 || is_time) {
             double value = 0;
             const int result = decimal_parse(text, length, rows->decimal, &value);
+            if (length == 0 && rows->empty == 0)
+                rows->empty = column + 1;
             if (result != DECIMAL_DONE && length > 0)
                 bad_cell(rows, text, length, result);
-            else if (slot >= 0 && result == DECIMAL_DONE) {
+            else if (slot >= 0)
                 rows->values[rows->count * rows->slots + (size_t)slot] = value;
-                rows->wanted++;
-            }
             if (is_time && result == DECIMAL_DONE)
                 take_time(rows, text, length, value);
         }
@@ -85,9 +79,9 @@ static void end_row(struct csv_rows *rows)
         fault_set(rows->fault, STATUS_RECORDING,
                   "a row has %zu cells instead of %zu: '%s' (line %ld)", rows->filled, rows->width,
                   rows->path, rows->line);
-    } else if (rows->wanted != rows->slots) {
-        fault_set(rows->fault, STATUS_RECORDING, "a cell is empty: '%s' (line %ld)", rows->path,
-                  rows->line);
+    } else if (rows->empty) {
+        fault_set(rows->fault, STATUS_RECORDING, "a cell is empty: '%s' (line %ld, column %zu)",
+                  rows->path, rows->line, rows->empty);
     } else {
         rows->count++;
     }
@@ -104,7 +98,7 @@ static void on_end(int mark, void *data)
         rows->empty_line = rows->line;
     }
     rows->row_open = false;
-    rows->column = rows->filled = rows->wanted = 0;
+    rows->column = rows->filled = rows->empty = 0;
     if (mark == '\n') {
         rows->line++;
         rows->fresh = true;
@@ -121,6 +115,7 @@ int csv_rows_init(struct csv_rows *rows, const struct csv_layout *layout, const 
                               .even = even,
                               .decimal = layout->decimal,
                               .line = layout->data_line,
+                              .first_line = layout->data_line,
                               .fresh = true,
                               .path = path,
                               .fault = fault};
@@ -162,6 +157,9 @@ int csv_rows_finish(struct csv_rows *rows)
     rows->count = 0;
     if (csv_fini(&rows->parser, on_cell, on_end, rows) != 0)
         return fault_no_memory(rows->fault);
+    if (rows->even && rows->fault->status == STATUS_DONE && even_finish(rows->even) != EVEN_DONE)
+        fault_set(rows->fault, STATUS_RECORDING, "the time column is uneven: '%s' (line %ld)",
+                  rows->path, rows->first_line + (long)rows->even->drifted - 1);
     return rows->fault->status;
 }
 

@@ -24,12 +24,12 @@ struct csv_rows {
     int *slot_of;            /* per column: slot, or -1 */
     size_t width, column;    /* of the layout; of the cell at hand */
     size_t filled;           /* columns of the row at hand up to the last that is not empty */
-    size_t wanted;           /* wanted cells of the row at hand that were read */
+    size_t empty;            /* first wanted cell of the row that is empty, from 1; 0: none */
     size_t time_column;      /* SIZE_MAX: none */
     double time_si;
     struct even *even;       /* borrowed; NULL: no time column */
     char decimal;
-    long line;               /* of the row at hand */
+    long line, first_line;   /* of the row at hand; of the first */
     long empty_line;         /* of the first empty row since the last one with data; 0: none */
     bool row_open;           /* cells came since the last end of line */
     bool fresh;              /* no row ended since the last newline */

@@ -1,11 +1,14 @@
 #include "read/even.h"
 
 #include <math.h>
+#include <stdbool.h>
 
 /* Allowances, in steps of the grid, beyond what the printed resolution explains; common practice. A
  * lost row is a step of 2; clocks that count in single precision err by less than a quarter. */
 #define STEP_MOST 0.25
 #define GRID_MOST 0.5
+#define ALIKE 50        /* so many equal steps and then a longer one: rows were lost, not rounded */
+#define LONGER 1.9
 
 static void note(struct even *even, struct decimal_grain grain)
 {
@@ -13,6 +16,15 @@ static void note(struct even *even, struct decimal_grain grain)
         even->fraction = grain.fraction;
     if (grain.significant > even->significant)
         even->significant = grain.significant;
+}
+
+static bool breaks_row(struct even *even, double step)
+{
+    const bool alike = even->equal > 0 && fabs(step - even->usual) <= 1e-6 * even->step;
+    const bool lost = even->equal >= ALIKE && even->usual > 0 && step > LONGER * even->usual;
+    even->equal = alike ? even->equal + 1 : 1;
+    even->usual = step;
+    return lost;
 }
 
 /* Resolution of a printed time, s: the coarser of a fixed number of decimals and a fixed number of significant
@@ -31,6 +43,7 @@ void even_init(struct even *even, double first, double last, long long count, do
 {
     *even = (struct even){.first = first, .unit = unit};
     even->step = (last - first) / (double)(count - 1);
+    even->rows = count;
     even->fraction = first_grain.fraction;
     note(even, first_grain);
     note(even, last_grain);
@@ -50,9 +63,22 @@ int even_next(struct even *even, double time, struct decimal_grain grain)
             return EVEN_BACKWARDS;
         if (fabs(step - even->step) > STEP_MOST * even->step + coarse)
             return EVEN_GAP;
+        if (breaks_row(even, step))
+            return EVEN_GAP;
     }
     const double grid = even->first + (double)row * even->step;
-    if (fabs(time - grid) > GRID_MOST * even->step + 2 * coarse)
-        return EVEN_DRIFT;
+    if (even->drifted == 0 && fabs(time - grid) > GRID_MOST * even->step + 2 * coarse)
+        even->drifted = row + 1;
     return EVEN_DONE;
+}
+
+int even_finish(const struct even *even)
+{
+    return even->drifted ? EVEN_DRIFT : EVEN_DONE;
+}
+
+double even_uncertainty(const struct even *even)
+{
+    const double length = even->step * (double)(even->rows - 1);
+    return resolution(even, even->first + length) / length;
 }

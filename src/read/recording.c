@@ -10,6 +10,10 @@
 
 #define BUFFER_SAMPLES 32768u /* 128 KiB of float: stays in the second-level cache */
 
+/* Common practice, without a source. */
+#define RATES_MOST 0.01 /* a rate that was rounded in the sheet passes, another rate does not */
+#define COARSE 0.002    /* a relative error of the rate is one of the speed */
+
 struct recording_source {
     bool text;
     struct audio audio;
@@ -42,12 +46,18 @@ static int open_source(struct recording_source *source, const struct recording_w
         if (isnan(source->rate_hz) && isnan(rate))
             return fault_set(fault, STATUS_USAGE,
                              "no time column was found and the sheet gives no rate: '%s'", path);
-        /* 1 %: a rate that was rounded passes, another rate does not; common practice */
-        if (!isnan(source->rate_hz) && !isnan(rate) && fabs(source->rate_hz / rate - 1) > 0.01)
+        if (!isnan(source->rate_hz) && !isnan(rate) &&
+            fabs(source->rate_hz / rate - 1) > RATES_MOST + source->csv.uncertainty)
             return fault_set(fault, STATUS_RECORDING,
                              "the time column gives a rate of %.6g Hz and the sheet %.6g Hz: '%s'",
                              source->rate_hz, rate, path);
-        if (isnan(source->rate_hz))
+        const bool coarse = source->csv.uncertainty > COARSE;
+        if (coarse && isnan(rate))
+            return fault_set(fault, STATUS_RECORDING,
+                             "the time column gives the rate to %.1g %% only, state the rate in the "
+                             "sheet: '%s'",
+                             100 * source->csv.uncertainty, path);
+        if (isnan(source->rate_hz) || coarse)
             source->rate_hz = rate;
     } else {
         if (audio_open(&source->audio, path, fault) != STATUS_DONE)
