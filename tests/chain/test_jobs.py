@@ -14,9 +14,10 @@ FORMS = [("wav", 24), ("flac", 24), ("csv", 0), ("wav", 16), ("csv", 0), ("rf64"
 
 
 def separability(truth):
-    """Condition number of the true responses, columns scaled to unit length (NumPy)."""
+    """Condition number of the true responses, rows and columns scaled to unit length (NumPy)."""
     planes = list(truth["responses"].values())
     matrix = numpy.array([[chain.vector(s["vector"]) for s in p.values()] for p in planes]).T
+    matrix = matrix / numpy.linalg.norm(matrix, axis=1, keepdims=True)  # sensors measure different quantities
     return numpy.linalg.cond(matrix / numpy.linalg.norm(matrix, axis=0))
 
 
