@@ -195,6 +195,8 @@ int advice_corrected_run(const struct model *m)
     int run = m->job->aim.mounted >= 0 ? m->job->aim.mounted : m->last_run;
     if (run < 0 || job_run_is_bare(m->job, (size_t)run))
         return -1;
+    if (m->amplitudes && run < 4) /* as found and three trials come first */
+        return -1;
     int rank = model_rank_before(m, (size_t)run);
     if (rank < 0)
         return -2;
@@ -310,6 +312,17 @@ void advice_missing_step(const struct model *m, const struct ruling *ruling,
     const struct job *job = m->job;
     *next = (struct advice_next){.step = "trial"};
     bool known_first = ruling->row && ruling->row->posterior.known[0];
+    if (m->amplitudes) {
+        bool two = ruling->row && ruling->row->ambiguous;
+        snprintf(next->reason, sizeof next->reason,
+                 two ? "a run is missing: amplitudes alone leave more than one answer"
+                     : "a run is missing: without phase it takes as found and three trials");
+        snprintf(next->text, sizeof next->text,
+                 two ? "run with the trial weight at another angle, or with a phase reference"
+                     : "run with the trial weight at three angles, about 120 deg apart, or with a "
+                       "phase reference");
+        return;
+    }
     for (size_t p = 0; p < job->plane_count; p++)
         if (plane_is_bare(job, p)) {
             snprintf(next->reason, sizeof next->reason,
@@ -377,6 +390,9 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
                  "; a better placement is not ruled out, by %.2g %% of the expected vibration at most",
                  100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from)));
     length = strlen(next->text);
+    if (a->model->amplitudes)
+        length += (size_t)snprintf(next->text + length, sizeof next->text - length,
+                                   "; found from amplitudes alone, no lag is meant");
     for (size_t r = 0; r < a->model->row_count && length + 80 < sizeof next->text; r++) {
         const struct model_row *row = &a->model->rows[r];
         if (row->in_aim && row->state != MODEL_GOOD)

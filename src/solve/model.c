@@ -6,6 +6,7 @@
 
 #include "base/angle.h"
 #include "sheet/units.h"
+#include "solve/amplitude.h"
 #include "solve/regress.h"
 #include "solve/repeat.h"
 
@@ -52,7 +53,7 @@ static void row_take(struct model_row *row, const struct job *job, const struct 
 {
     size_t i = row->count++;
     row->runs[i] = r->run;
-    row->y[i] = r->vector;
+    row->y[i] = r->phase ? r->vector : r->amplitude;
     memcpy(row->cov[i], r->cov, sizeof r->cov);
     for (size_t p = 0; p < job->plane_count; p++)
         row->x[i * job->plane_count + p] = job_run_weight(job, r->run, p);
@@ -113,7 +114,7 @@ static int gather(struct model *m, struct model_row *row, const struct model_rea
         for (size_t p = 0; p < planes; p++)
             all[every * planes + p] = job_run_weight(job, r->run, p);
         every++;
-        if (!r->use || !r->phase) {
+        if (!r->use || r->phase == m->amplitudes) {
             row->lost_run = row->lost_run < 0 ? (int)r->run : row->lost_run;
             continue;
         }
@@ -170,6 +171,35 @@ static int pool_row(struct repeat_pool *pool, const struct model_row *row, size_
     return result;
 }
 
+/* The row from amplitudes alone: three trials and as found, or it is short. */
+static int fit_amplitudes(const struct model *m, struct model_row *row)
+{
+    double *real = calloc(2 * row->count + 1, sizeof *real);
+    int result = MODEL_OK;
+    if (!real)
+        return MODEL_NO_MEMORY;
+    for (size_t i = 0; i < row->count; i++) {
+        real[i] = creal(row->y[i]);
+        real[row->count + i] = row->total[i][0];
+    }
+    size_t which;
+    int error = amplitude_fit(row->count, real, row->x, real + row->count, row->as_found,
+                              &row->posterior, &row->misfit, &which);
+    free(real);
+    row->misfit_run = row->count > 0 ? row->runs[which] : 0;
+    if (error == AMPLITUDE_OK) {
+        row->state = MODEL_GOOD;
+        row->posterior.dof = m->dof;
+    } else if (error == AMPLITUDE_AMBIGUOUS) {
+        row->ambiguous = row->count >= 4;
+        row->state = row->ambiguous || row->lost_run < 0 ? MODEL_SHORT : MODEL_LOST;
+        result = posterior_init(&row->posterior, 2) == 0 ? MODEL_OK : MODEL_NO_MEMORY;
+    } else {
+        result = error == AMPLITUDE_NAN ? MODEL_NAN : MODEL_NO_MEMORY;
+    }
+    return result;
+}
+
 static int fit_row(struct model *m, struct model_row *row)
 {
     row->sigma = m->repeatability * row->as_found;
@@ -178,6 +208,8 @@ static int fit_row(struct model *m, struct model_row *row)
             row->total[i][k] = row->cov[i][k] + (k == 1 ? 0 : row->sigma * row->sigma);
             row->typical[k] += row->cov[i][k] / (double)row->count;
         }
+    if (m->amplitudes)
+        return fit_amplitudes(m, row);
     struct regress_data data = {row->count,
                                 m->job->plane_count,
                                 row->y,
@@ -197,6 +229,17 @@ static int fit_row(struct model *m, struct model_row *row)
     return MODEL_OK;
 }
 
+static bool amplitudes_only(const struct job *job, const struct model_reading *readings, size_t count)
+{
+    size_t usable = 0;
+    for (size_t i = 0; i < count; i++) {
+        if (readings[i].use && readings[i].phase)
+            return false;
+        usable += readings[i].use;
+    }
+    return usable > 0 && job->plane_count == 1;
+}
+
 int model_init(struct model *m, const struct job *job, struct model_reading *readings, size_t count)
 {
     memset(m, 0, sizeof *m);
@@ -206,11 +249,12 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
     m->conditions = calloc(job->run_count + count + 1, sizeof *m->conditions);
     m->rows = calloc((job->run_count + count + 1) * (job->sensor_count + 1), sizeof *m->rows);
     int result = m->conditions && m->rows ? MODEL_OK : MODEL_NO_MEMORY;
+    m->amplitudes = amplitudes_only(job, readings, count);
     for (size_t i = 0; i < count && result == MODEL_OK; i++) {
         if (!ordinary(&job->runs[readings[i].run]))
             continue;
         add_condition(m, readings[i].condition);
-        if (readings[i].use && readings[i].phase && (int)readings[i].run > m->last_run)
+        if (readings[i].use && readings[i].phase != m->amplitudes && (int)readings[i].run > m->last_run)
             m->last_run = (int)readings[i].run;
     }
     struct repeat_pool pool = {0};
@@ -222,7 +266,7 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
             row->misfit = NAN;
             row->lost_run = -1;
             result = gather(m, row, readings, count);
-            if (result == MODEL_OK)
+            if (result == MODEL_OK && !m->amplitudes)
                 result = pool_row(&pool, row, job->plane_count);
         }
     m->repeatability = repeat_estimate(&pool, job->aim.repeatability, &m->dof);

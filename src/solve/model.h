@@ -20,6 +20,7 @@ struct model_reading {      /* what the stage hands over; any order */
     bool phase;             /* there is a vector */
     bool use;               /* vet's ruling */
     double complex vector;  /* SI peak, argument is lag */
+    double amplitude;       /* SI peak, where there is no phase */
     double cov[3];          /* of the mean, widened */
 };
 
@@ -46,6 +47,7 @@ struct model_row {
     struct posterior posterior; /* relative to as found; zeroed where nothing was read */
     double misfit;          /* s.e.; NaN: no run is spare */
     size_t misfit_run;
+    bool ambiguous;         /* amplitudes alone leave more than one answer */
     int lost_run;           /* the first run whose reading of this row was refused; -1: none */
 };
 
@@ -58,6 +60,8 @@ struct model {
     double repeatability;   /* fraction of the as-found amplitude per component */
     double dof;             /* of it; INFINITY: from the sheet */
     double repeats;         /* degrees of freedom that repeated runs gave */
+    bool amplitudes;        /* no usable reading has phase, one plane: rows hold amplitudes and relative
+                               phases only (amplitude.h) */
     int last_run;           /* last run of the sheet that has usable readings; -1: none */
 };
 

@@ -61,7 +61,8 @@ static int take_reading(struct solve *s, const struct record *record)
                                   .sensor = (size_t)r.sensor,
                                   .speed_rpm = r.speed_rpm,
                                   .phase = r.has_phase,
-                                  .vector = r.has_phase ? r.vector : 0};
+                                  .vector = r.has_phase ? r.vector : 0,
+                                  .amplitude = r.amplitude};
     memcpy(own->condition, r.condition, sizeof own->condition);
     memcpy(own->cov, r.cov, sizeof own->cov);
     return STATUS_DONE;
@@ -130,7 +131,7 @@ static int put(struct solve *s)
 static int write_responses(struct solve *s, const struct model *m)
 {
     int status = STATUS_DONE;
-    for (size_t i = 0; i < m->row_count; i++) {
+    for (size_t i = 0; i < m->row_count && !m->amplitudes; i++) { /* their phase would be no phase */
         const struct model_row *row = &m->rows[i];
         for (size_t p = 0; p < m->job->plane_count && status == STATUS_DONE; p++) {
             if (row->count == 0 || !row->posterior.known[p + 1])
@@ -279,11 +280,11 @@ static void line_others(struct line *line, const struct answer *a)
     const struct job *job = a->model->job;
     const struct place_result *place = &a->placement;
     line_real(line, "gap", place->gap);
-    line_real(line, "of_nothing", sqrt(place->best.objective / place->nothing));
+    line_real(line, "of_nothing", sqrt(fmax(0, place->best.objective) / place->nothing));
     line_open(line, "others", '[');
     for (int k = 0; k < 2 && !isnan(place->next[k].objective); k++) {
         line_open(line, NULL, '{');
-        line_real(line, "of_nothing", sqrt(place->next[k].objective / place->nothing));
+        line_real(line, "of_nothing", sqrt(fmax(0, place->next[k].objective) / place->nothing));
         line_open(line, "items", '[');
         for (size_t i = 0; i < place->next[k].count; i++) {
             const struct place_item *item = &place->next[k].items[i];
