@@ -76,6 +76,11 @@ char *digits_half(char *text, double half, int place)
     return digits_at(text, ceil(half / step - HAIR) * step, place);
 }
 
+bool digits_half_counts(double half, int place)
+{
+    return half >= 0.01 * pow(10, place);
+}
+
 static int angle_place(double half_deg)
 {
     return half_deg >= 1 ? 0 : -1;

@@ -9,6 +9,7 @@
 #ifndef LOPSIDE_REPORT_DIGITS_H
 #define LOPSIDE_REPORT_DIGITS_H
 
+#include <stdbool.h>
 #include <stddef.h>
 
 #define DIGITS_MOST 4  /* significant digits; common practice for calibrated vibration channels */
@@ -27,6 +28,10 @@ char *digits_at(char *text, double value, int place);
 
 /* The half width itself, rounded up to 10^place of the number that it stands beside: "0.083". */
 char *digits_half(char *text, double half, int place);
+
+/* False where a half width is below a hundredth of the last place shown: it says nothing (NaN:
+ * false). */
+bool digits_half_counts(double half, int place);
 
 /* An angle in [0, 360): tenths of a degree where it is known to less than a degree, or not at all
  * known how well (then without a trailing ".0"); whole degrees otherwise. */

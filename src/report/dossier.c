@@ -343,7 +343,7 @@ static bool any_weight(const struct dossier *d)
 static bool any_reading_lost(const struct dossier *d)
 {
     for (size_t i = 0; i < d->readings.count; i++) {
-        if (!d->readings.items[i].use)
+        if (!d->readings.items[i].use || !d->readings.items[i].reading.has_phase)
             return true;
     }
     return false;

@@ -96,7 +96,7 @@ const char *dossier_plane(const struct dossier *dossier, int plane);
  * answer, and so are the steps done, correct and trim. Solve's refusals by the checks `correction`
  * and `correction-force` are 5. A trial step is 0 while no run of the sheet carries a weight, and 5
  * (a run is missing, or the planes cannot be told apart) once one does. To repeat is 4 where a
- * reading or a regression was refused, 5 where nothing was. */
+ * reading was refused or has no phase, or a regression was refused, 5 where nothing was. */
 int dossier_answer(const struct dossier *dossier);
 
 /* The exit code of the report: 3 where a recording could not be read, else the answer's. */

@@ -206,11 +206,12 @@ void text_answer_safety(const struct dossier *dossier, struct buffer *out)
 
 static void half_text(struct buffer *out, const struct job *job, double kg, const double half[2])
 {
-    if (!(half[0] > 0))
-        return;
     char mass[DIGITS_ROOM], angle[DIGITS_ROOM];
     double shown = shown_mass(job, kg), wide = shown_mass(job, half[0]);
-    digits_half(mass, wide, digits_place(shown, wide));
+    int place = digits_place(shown, wide);
+    if (!digits_half_counts(wide, place))
+        return;
+    digits_half(mass, wide, place);
     buffer_format(out, " (+/-%s %s", mass, shown_mass_unit(job));
     if (half[1] < 90)
         buffer_format(out, ", +/-%s deg)", digits_angle_half(angle, half[1]));
@@ -274,7 +275,9 @@ static void forecast_row(const struct dossier *d, const struct forecast_record *
         peaks[i] =
             shown_amplitude(peaks[i], NAN, sensor->quantity, f->speed_rpm, &sensor->show).amplitude;
     double half = (peaks[3] - peaks[2]) / 2;
-    int place = digits_place(fmax(peaks[1], half > 0 ? half : 0), half);
+    /* Never finer than four digits of what there is now: a forecast of nothing left is "0.000". */
+    int place = digits_place(peaks[1], half), coarse = digits_place(peaks[0], NAN);
+    place = place > coarse ? place : coarse;
     int first = digits_place(peaks[0], half);
     char before[DIGITS_ROOM], after[DIGITS_ROOM], low[DIGITS_ROOM], high[DIGITS_ROOM];
     char target[DIGITS_ROOM], chance[DIGITS_ROOM];

@@ -28,7 +28,8 @@ static void vector_cells(struct table *table, const struct shown *s, const char 
     char text[DIGITS_ROOM];
     int place = digits_place(s->amplitude, s->half);
     table_cell(table, "%s %s", digits_text(text, s->amplitude, s->half), unit);
-    table_cell(table, "%s", s->half > 0 ? digits_half(text, s->half, place) : "-");
+    table_cell(table, "%s",
+               digits_half_counts(s->half, place) ? digits_half(text, s->half, place) : "-");
     if (isnan(s->lag_deg)) {
         table_cell(table, "no phase");
         table_cell(table, "-");
@@ -37,7 +38,9 @@ static void vector_cells(struct table *table, const struct shown *s, const char 
         table_cell(table, "-");
     } else {
         table_cell(table, "%s deg", digits_angle(text, s->lag_deg, s->lag_half));
-        table_cell(table, "%s", s->lag_half > 0 ? digits_angle_half(text, s->lag_half) : "-");
+        table_cell(table, "%s",
+                   digits_half_counts(s->lag_half, -1) ? digits_angle_half(text, s->lag_half)
+                                                       : "-");
     }
 }
 
@@ -164,7 +167,7 @@ static void finding(const struct dossier *d, const struct finding_record *f, str
     if (f->sensor >= 0)
         buffer_format(&text, ", sensor '%s'", dossier_sensor(d, f->sensor));
     buffer_format(&text, ": %s", f->text);
-    if (isfinite(f->value) && isfinite(f->limit))
+    if (isfinite(f->value) && f->limit > 0 && isfinite(f->limit) && !strstr(f->text, "limit"))
         buffer_format(&text, " [%.3g against a limit of %.3g%s%s]", f->value, f->limit,
                       f->unit[0] ? " " : "", f->unit);
     if (text.failed)

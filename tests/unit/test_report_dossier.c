@@ -106,7 +106,7 @@ static void exit_codes(void **state)
         job.run_count = job.plane_count = 1;
         struct finding_record finding = {.verdict = VERDICT_REFUSE};
         struct placement_record placement = {0};
-        struct dossier_reading reading = {.use = !cases[i].lost};
+        struct dossier_reading reading = {.use = !cases[i].lost, .reading = {.has_phase = true}};
         struct dossier d;
         dossier_init(&d, &job);
         d.has_next = cases[i].step[0] != '\0';
@@ -120,6 +120,10 @@ static void exit_codes(void **state)
         d.readings.items = &reading;
         d.readings.count = 1;
         assert_int_equal(dossier_status(&d), cases[i].status);
+        reading.reading.has_phase = false; /* an amplitude alone is a reading that is lost */
+        if (strcmp(cases[i].step, "repeat") == 0 && cases[i].stage[0] == '\0')
+            assert_int_equal(dossier_status(&d), STATUS_REFUSED);
+        reading.reading.has_phase = true;
         finding.verdict = VERDICT_CAUTION; /* a caution alone never refuses */
         if (cases[i].placements > 0)
             assert_int_equal(dossier_status(&d), STATUS_DONE);
