@@ -10,9 +10,25 @@
 #define TOLERANCE_SPREADS 5  /* standard deviations of what the rhythm itself does */
 #define MEMORY 0.1           /* weight of the latest turn in the rhythm's own spread */
 
-void marks_init(struct marks *marks)
+#define TURNS_TO_VOTE 8
+
+/* How many times larger a pulse must be than its fellows: one of several marks that was made different; and
+ * for a single mark the tape against a scratch, where sampling alone makes widths of 4 and 5. */
+#define RATIO_MARKS 1.15
+#define RATIO_SCRATCH 1.4
+
+void marks_init(struct marks *marks, int per_turn)
 {
-    *marks = (struct marks){0};
+    memset(marks, 0, sizeof *marks);
+    marks->per_turn = per_turn > 1 ? per_turn : 1;
+    marks->quorum = MARKS_VOTERS;
+    if (TURNS_TO_VOTE * (size_t)marks->per_turn > marks->quorum) {
+        marks->quorum = TURNS_TO_VOTE * (size_t)marks->per_turn;
+    }
+    if (marks->quorum > MARKS_VOTERS_MOST) {
+        marks->quorum = MARKS_VOTERS_MOST;
+    }
+    marks->reference = marks->per_turn == 1;
 }
 
 /* How many periods behind the last mark the pulse lies, 0 where it is on no mark's place. */
@@ -23,14 +39,6 @@ static long place(double since, double period, double tolerance)
     double allowed = tolerance * (1 + 0.5 * (double)(n - 1)); /* the speed may have drifted on */
 
     return n >= 1 && fabs(turns - (double)n) <= fmin(TOLERANCE, allowed) ? n : 0;
-}
-
-/* The pulse as a mark of this size: what is clearly the wider and taller one is the mark. */
-static double size_of(const struct pulse *pulse)
-{
-    double width = pulse->high < pulse->low ? pulse->high : pulse->low;
-
-    return (pulse->top - pulse->bottom) * width;
 }
 
 struct ballot {
@@ -45,7 +53,7 @@ static struct ballot follow(const struct pulse *pulses, size_t count, size_t sta
     double last = pulses[start].at, current = period;
     size_t hits = 1;
 
-    ballot.size = size_of(&pulses[start]);
+    ballot.size = sieve_size(&pulses[start]);
     for (size_t i = start + 1; i < count; i++) {
         long n = place(pulses[i].at - last, current, TOLERANCE);
 
@@ -56,7 +64,7 @@ static struct ballot follow(const struct pulse *pulses, size_t count, size_t sta
         ballot.score += 1 - (double)(n - 1);
         current = 0.5 * current + 0.5 * (pulses[i].at - last) / (double)n;
         last = pulses[i].at;
-        ballot.size += size_of(&pulses[i]);
+        ballot.size += sieve_size(&pulses[i]);
         hits++;
     }
     ballot.size /= (double)hits;
@@ -91,6 +99,15 @@ static bool vote(const struct marks *marks, struct ballot *best)
     return found && (n < 4 || best->score > -0.25 * (double)n);
 }
 
+/* True for every mark, or for one of the equal ones of a turn. */
+static bool due(struct marks *marks)
+{
+    bool now = marks->reference || marks->slot == 0;
+
+    marks->slot = (marks->slot + 1) % marks->per_turn;
+    return now;
+}
+
 static size_t give(struct marks *marks, double at, long turns, struct mark *out)
 {
     size_t n = 0;
@@ -98,11 +115,15 @@ static size_t give(struct marks *marks, double at, long turns, struct mark *out)
     for (long k = 1; k < turns; k++) {
         double share = (double)k / (double)turns;
 
-        out[n++] = (struct mark){marks->last + share * (at - marks->last), false, false};
+        if (due(marks)) {
+            out[n++] = (struct mark){marks->last + share * (at - marks->last), false, false};
+        }
         marks->missed++;
     }
-    out[n++] = (struct mark){at, true, marks->breaks};
-    marks->breaks = false;
+    if (due(marks)) {
+        out[n++] = (struct mark){at, true, marks->breaks};
+        marks->breaks = false;
+    }
     marks->count++;
     return n;
 }
@@ -135,6 +156,7 @@ void marks_unlock(struct marks *marks)
 {
     marks->locked = false;
     marks->breaks = true;
+    marks->slot = 0;
     marks->voter_count = 0;
 }
 
@@ -175,12 +197,54 @@ static size_t step(struct marks *marks, const struct pulse *pulse, struct mark *
     return given;
 }
 
+/* Keeps the voters that pass the sieve. */
+static void sift_voters(struct marks *marks)
+{
+    size_t kept = 0;
+
+    for (size_t i = 0; i < marks->voter_count; i++) {
+        if (sieve_keeps(&marks->sieve, &marks->voters[i])) {
+            marks->voters[kept++] = marks->voters[i];
+        } else if (marks->per_turn == 1) {
+            marks->extra++;
+        }
+    }
+    marks->voter_count = kept;
+}
+
+/* Tells the pulses apart, once, when enough of them have come. */
+static void sift(struct marks *marks)
+{
+    bool several = marks->per_turn > 1, found = false;
+
+    if (marks->sifted) {
+        return;
+    }
+    marks->sifted = true;
+    if (several) {
+        found = sieve_find(&marks->sieve, marks->voters, marks->voter_count, marks->per_turn,
+                           RATIO_MARKS);
+        marks->reference = found;
+    } else {
+        /* a scratch that comes once a turn, or two of them, beside the single mark */
+        found = sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, 2,
+                                 RATIO_SCRATCH) ||
+                sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, 3,
+                                 RATIO_SCRATCH);
+    }
+    if (found) {
+        sift_voters(marks);
+    }
+}
+
 /* Locks on with the voters and runs them through; keeps waiting where they are irregular. */
 static size_t lock(struct marks *marks, struct mark *out)
 {
     struct ballot best;
+    struct pulse voters[MARKS_VOTERS_MOST];
+
+    sift(marks);
     size_t given = 0, count = marks->voter_count;
-    struct pulse voters[MARKS_VOTERS];
 
     if (!vote(marks, &best)) {
         size_t drop = (count + 1) / 2;
@@ -218,6 +282,10 @@ size_t marks_push(struct marks *marks, const struct pulse *pulse, struct mark *o
 {
     size_t given = 0;
 
+    if (marks->sifted && !sieve_keeps(&marks->sieve, pulse)) {
+        marks->extra += marks->per_turn == 1;
+        return 0;
+    }
     if (marks->locked) {
         bool lost;
 
@@ -228,7 +296,7 @@ size_t marks_push(struct marks *marks, const struct pulse *pulse, struct mark *o
         marks_unlock(marks);
     }
     marks->voters[marks->voter_count++] = *pulse;
-    if (marks->voter_count == MARKS_VOTERS) {
+    if (marks->voter_count >= (marks->sifted ? MARKS_VOTERS : marks->quorum)) {
         given += lock(marks, out + given);
     }
     return given;

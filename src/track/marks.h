@@ -10,10 +10,12 @@
 #include <stddef.h>
 
 #include "track/pulse.h"
+#include "track/sieve.h"
 
-#define MARKS_VOTERS 48 /* pulses that vote */
+#define MARKS_VOTERS 48 /* pulses that vote; more where there are several a turn, */
+#define MARKS_VOTERS_MOST 512 /* but never more than this */
 #define MARKS_GAP 6     /* turns that may be bridged */
-#define MARKS_ROOM ((MARKS_VOTERS + 2) * (MARKS_GAP + 1)) /* marks that one push can release */
+#define MARKS_ROOM ((MARKS_VOTERS_MOST + 2) * (MARKS_GAP + 1)) /* marks that one push can release */
 
 struct mark {
     double at;   /* samples */
@@ -22,8 +24,13 @@ struct mark {
 };
 
 struct marks {
-    struct pulse voters[MARKS_VOTERS];
-    size_t voter_count;
+    int per_turn;
+    bool reference;             /* the marks given out are one place on the shaft */
+    bool sifted;                /* it was tried to tell the pulses apart */
+    struct sieve sieve;
+    struct pulse voters[MARKS_VOTERS_MOST];
+    size_t voter_count, quorum;
+    long slot;                  /* of the next mark among those of a turn */
     bool locked;
     double period, last;        /* samples; time of the last mark given out */
     double spread;              /* mean square of how far periods were off, as a share */
@@ -35,7 +42,9 @@ struct marks {
     long count, missed, extra;  /* of the recording so far */
 };
 
-void marks_init(struct marks *marks);
+/* `per_turn`: pulses a turn, as the user states. With more than one, the one that can be told apart is
+ * the mark; where none can, every per_turn-th one is given out and `reference` is false. */
+void marks_init(struct marks *marks, int per_turn);
 
 /* Takes the next pulse; fills `out` (room for MARKS_ROOM) and returns how many marks came out. */
 size_t marks_push(struct marks *marks, const struct pulse *pulse, struct mark *out);

@@ -77,7 +77,8 @@ static int begin_tracker(struct recording *rec, const struct job *job)
     }
     if (status == STATUS_DONE) {
         struct tracker_set_up set_up = {rec->wave.rate_hz, rec->frames, columns, tacho, rail,
-                                        job->tacho_edge, job->tacho_level, job->service_rpm};
+                                        job->tacho_edge, job->tacho_marks,
+                                        job->tacho_level, job->service_rpm};
 
         failed = tracker_init(&rec->tracker, &set_up);
         status = failed ? message_no_memory() : STATUS_DONE;

@@ -27,7 +27,7 @@ int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
     }
     tracker->level_frames = fmin(tracker->level_frames, (double)tracker->most / 2);
     pulse_init(&tracker->finder, set_up->edge, set_up->level);
-    marks_init(&tracker->marks);
+    marks_init(&tracker->marks, set_up->marks);
     shaft_init(&tracker->shaft);
     window_init(&tracker->windows, tracker->sensors);
     tracker->planes = calloc(columns, sizeof *tracker->planes);
@@ -393,7 +393,7 @@ bool tracker_regular(const struct tracker *tracker)
 
 bool tracker_reference(const struct tracker *tracker)
 {
-    return tracker_regular(tracker);
+    return tracker_regular(tracker) && tracker->marks.reference;
 }
 
 double tracker_speed(const struct tracker *tracker)

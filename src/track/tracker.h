@@ -29,6 +29,7 @@ struct tracker_set_up {
     int tacho;          /* its column; -1: none */
     const double *rail; /* per column; NaN: unknown */
     int edge;           /* +1, -1 */
+    int marks;          /* pulses a turn */
     double level;       /* NaN: to be found */
     double service_rpm; /* NaN: unknown; a hint for how long to look for levels */
 };

@@ -90,7 +90,7 @@ static void track(struct tracker *tracker, const struct recipe *r, const float *
                   uint64_t *cuts)
 {
     double rail[2] = {NAN, NAN};
-    struct tracker_set_up set_up = {r->shaft.rate, (double)n, 2, 1, rail, r->edge, NAN, NAN};
+    struct tracker_set_up set_up = {r->shaft.rate, (double)n, 2, 1, rail, r->edge, 1, NAN, NAN};
 
     assert_int_equal(tracker_init(tracker, &set_up), 0);
     for (size_t i = 0; i < n;) {
