@@ -23,12 +23,22 @@ static void bad_cell(struct csv_rows *rows, const char *text, size_t length, int
               rows->column + 1);
 }
 
+static void empty_line(struct csv_rows *rows)
+{
+    fault_set(rows->fault, STATUS_RECORDING, "an empty line within the data: '%s' (line %ld)",
+              rows->path, rows->empty_line);
+}
+
 static void take_time(struct csv_rows *rows, const char *text, size_t length, double value)
 {
     static const char *const what[] = {
         [EVEN_BACKWARDS] = "the time goes backwards",
         [EVEN_GAP] = "the time column has a gap or an uneven step",
     };
+    if (rows->empty_line) { /* before the gap that it makes */
+        empty_line(rows);
+        return;
+    }
     const int result = even_next(rows->even, value * rows->time_si,
                                  decimal_grain(text, length, rows->decimal));
     if (result != EVEN_DONE)
@@ -73,8 +83,7 @@ static void end_row(struct csv_rows *rows)
         if (!rows->empty_line)
             rows->empty_line = rows->line;
     } else if (rows->empty_line) {
-        fault_set(rows->fault, STATUS_RECORDING, "an empty line within the data: '%s' (line %ld)",
-                  rows->path, rows->empty_line);
+        empty_line(rows);
     } else if (rows->filled != rows->width) {
         fault_set(rows->fault, STATUS_RECORDING,
                   "a row has %zu cells instead of %zu: '%s' (line %ld)", rows->filled, rows->width,
