@@ -8,6 +8,8 @@ enum { UNKNOWN, BELOW, ABOVE, ABOVE_FROM_START };
  * of up to 30 % peak to peak cannot fire twice; a ripple of a third of the mark's height stays out. */
 #define HYSTERESIS 0.15f
 
+#define SILENT 0.1f /* of the former span: below it is no pulse */
+
 void pulse_init(struct pulse_finder *finder, int edge, double level)
 {
     *finder = (struct pulse_finder){.sign = edge < 0 ? -1.0f : 1.0f, .level = level};
@@ -64,6 +66,20 @@ bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n)
     }
     set_levels(finder);
     finder->live = true;
+    return true;
+}
+
+bool pulse_renew(struct pulse_finder *finder, const float *x, size_t n)
+{
+    struct pulse_finder trial = *finder;
+
+    if (!pulse_levels(&trial, x, n) ||
+        trial.tops[0] - trial.bottoms[0] <
+            SILENT * (typical(finder->tops, 1.0f) - typical(finder->bottoms, -1.0f))) {
+        return false;
+    }
+    trial.state = UNKNOWN;
+    *finder = trial;
     return true;
 }
 

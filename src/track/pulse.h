@@ -45,6 +45,10 @@ void pulse_init(struct pulse_finder *finder, int edge, double level);
  * pulse_find finds nothing until a later call succeeds. */
 bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n);
 
+/* For when no pulse has come for long: takes the levels anew from the last n samples, unless what is there
+ * is less than a tenth of what the pulses were (a tacho that fell silent). */
+bool pulse_renew(struct pulse_finder *finder, const float *x, size_t n);
+
 /* Looks through x[0..n-1], whose first sample has the time `start`; `back` samples before x[0] can
  * still be read. `pulses` has room for n/2 + 1. Returns how many pulses ended in this chunk. */
 size_t pulse_find(struct pulse_finder *finder, const float *x, size_t n, size_t back, double start,

@@ -234,6 +234,20 @@ static int take_pulses(struct tracker *tracker, const struct pulse *pulses, size
     return 0;
 }
 
+/* No pulse for so long: perhaps the pulses became smaller than the levels allow. */
+static void listen(struct tracker *tracker)
+{
+    size_t n = (size_t)tracker->level_frames;
+
+    if (tracker->silent < tracker->level_frames) {
+        return;
+    }
+    n = n < tracker->searched ? n : tracker->searched;
+    tracker->silent = 0;
+    (void)pulse_renew(&tracker->finder,
+                      plane(tracker, (size_t)tracker->tacho) + tracker->searched - n, n);
+}
+
 /* Searches the frames that were not searched yet, chunk by chunk. */
 static int search(struct tracker *tracker)
 {
@@ -247,6 +261,8 @@ static int search(struct tracker *tracker)
                                   at, (double)tracker->start + (double)at, pulses);
 
         tracker->searched += n;
+        tracker->silent = count > 0 ? 0 : tracker->silent + (double)n;
+        listen(tracker);
         if (take_pulses(tracker, pulses, count)) {
             return -1;
         }

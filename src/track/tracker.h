@@ -46,6 +46,7 @@ struct tracker {
     size_t done;            /* of the frames held, those that went through tracker_chunk */
     size_t searched;        /* of the frames held, those searched for pulses */
     double level_frames;    /* frames to look at for the levels */
+    double silent;          /* frames searched since the last pulse */
     struct pulse_finder finder;
     struct marks marks;
     struct shaft shaft;

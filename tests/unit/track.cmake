@@ -1,2 +1,4 @@
 # unit tests of src/track
-lopside_unit_test(track_tracker SOURCES test_track_tracker.c LIBS lopside_track)
+foreach(test tracker tachos)
+  lopside_unit_test(track_${test} SOURCES test_track_${test}.c LIBS lopside_track)
+endforeach()
