@@ -124,6 +124,8 @@ struct job {
     enum sense angles;
     enum phase_sign phase;
     enum unit_system units;
+    bool audit;                 /* the runs are recordings named on the command line, each by itself;
+                                 * printed only where true */
     /* rotor */
     double rotor_mass;          /* kg, NaN: absent */
     double service_rpm;         /* NaN: absent */

@@ -310,6 +310,7 @@ int job_parse(struct job *job, const json_t *record, const char **why)
     job->angles = (enum sense)choice(&f, "angles", sense, 3);
     job->phase = (enum phase_sign)choice(&f, "phase", phase, 3);
     job->units = (enum unit_system)choice(&f, "units", units, 2);
+    job->audit = fields_boolean(&f, "audit", false);
     parse_rotor(job, &f);
     parse_tacho(job, &f);
     parse_sensors(job, &f);

@@ -217,6 +217,8 @@ int job_print(const struct job *job, struct buffer *out)
     line_text(&l, "angles", sense_names[job->angles]);
     line_text(&l, "phase", phase_names[job->phase]);
     line_text(&l, "units", unit_names[job->units]);
+    if (job->audit)
+        line_boolean(&l, "audit", true);
     print_rotor(job, &l);
     print_tacho(job, &l);
     print_sensors(job, &l);

@@ -102,8 +102,11 @@ static int add_run(struct vet *v, const struct record *record)
     }
     memcpy(run->name, r.run, sizeof run->name);
     memcpy(run->condition, r.condition, sizeof run->condition);
-    run->index = job_find_run(&v->stream.job, r.run);
-    run->hand = run->index >= 0 && v->stream.job.runs[run->index].hand_count > 0;
+    /* Recordings of an audit are not compared with each other, whatever the sheet holds. */
+    run->index = v->stream.job.audit || v->stream.job.plane_count == 0
+                     ? -1
+                     : job_find_run(&v->stream.job, r.run);
+    run->hand = r.job_run && r.job_run->hand_count > 0;
     for (size_t i = 0; i < r.file_count; i++)
         memcpy(run->hashes[i], r.files[i].sha256, sizeof run->hashes[i]);
     v->open = true;
