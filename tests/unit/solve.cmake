@@ -1,5 +1,5 @@
 # unit tests of src/solve
 lopside_unit_test(place SOURCES test_place.c test_place_brute.c LIBS lopside_solve)
-foreach(name regress forecast tolerance)
+foreach(name regress forecast tolerance answer)
   lopside_unit_test(solve_${name} SOURCES test_solve_${name}.c LIBS lopside_solve)
 endforeach()
