@@ -66,6 +66,9 @@ static int check_length(int fd, const char *path, struct promise *promise, struc
         return fault_set(fault, STATUS_RECORDING, "cannot read the recording: '%s'", path);
     if (!promise->known)
         return STATUS_DONE;
+    if (!promise->found)
+        return fault_set(fault, STATUS_RECORDING,
+                         "the header is damaged or cut short, it leads to no samples: '%s'", path);
     if (promise->open)
         return fault_set(fault, STATUS_RECORDING,
                          "the header gives no length, but %lld bytes of samples follow (a recorder "

@@ -149,16 +149,16 @@ static void tell_apart(char *const *paths, size_t count, char **full, struct nam
     for (size_t i = 0; i < count; i++)
         if (count_parts(paths[i]) > most)
             most = count_parts(paths[i]);
-    for (size_t parts = 0; parts <= most + 1; parts++) {
-        for (size_t i = 0; i < count; i++)
-            if (equal[i]) {
-                const bool last = parts > most;
-                candidate(paths[i], last ? 0 : parts, last, full[i], strlen(paths[i]) + 2);
-                clean(full[i]);
-            }
-        if (find_equal(sorted, full, count, equal) == 0)
-            break;
-    }
+    for (int ending = 0; ending <= 1; ending++)
+        for (size_t parts = 0; parts <= most; parts++) {
+            for (size_t i = 0; i < count; i++)
+                if (equal[i]) {
+                    candidate(paths[i], parts, ending != 0, full[i], strlen(paths[i]) + 2);
+                    clean(full[i]);
+                }
+            if (find_equal(sorted, full, count, equal) == 0)
+                return;
+        }
 }
 
 static bool is_taken(char (*names)[NAMES_ROOM], size_t before, const char *name)

@@ -57,6 +57,7 @@ struct chunks {
 
 static void settle(struct promise *promise, uint64_t promised, long long start, long long size)
 {
+    promise->found = true;
     promise->there = size > start ? size - start : 0;
     promise->open = promised == 0 && promise->there > 0;
     promise->promised = promised > INT64_MAX ? INT64_MAX : (long long)promised;

@@ -29,14 +29,14 @@ static void test_deeper_and_endings(void **unused)
 {
     (void)unused;
     char *const paths[] = {(char *)"p/a/fan.wav", (char *)"q/a/fan.wav", (char *)"z.wav",
-                           (char *)"z.csv", (char *)"same.wav", (char *)"same.wav"};
+                           (char *)"z.csv", (char *)"d/same.wav", (char *)"d/same.wav"};
     assert_int_equal(names_from_paths(paths, 6, names), 0);
     assert_string_equal(names[0], "p/a/fan");
     assert_string_equal(names[1], "q/a/fan");
     assert_string_equal(names[2], "z.wav");
     assert_string_equal(names[3], "z.csv");
-    assert_string_equal(names[4], "same.wav");
-    assert_string_equal(names[5], "same.wav~2");
+    assert_string_equal(names[4], "d/same.wav");
+    assert_string_equal(names[5], "d/same.wav~2");
 }
 
 static void test_forbidden(void **unused)
