@@ -179,6 +179,7 @@ static int add_line(struct dossier *d, const char *bytes, size_t length)
         return -2;
     while (length > 0 && (bytes[length - 1] == '\n' || bytes[length - 1] == '\r'))
         length--;
+    buffer_add(&d->text, ",\n", 2);
     *line = (struct dossier_line){d->text.length, length};
     buffer_add(&d->text, bytes, length);
     d->lines.count++;

@@ -58,7 +58,7 @@ struct dossier {
     DOSSIER_LIST(forecast_record) forecasts;
     DOSSIER_LIST(residual_record) residuals;
     DOSSIER_LIST(dossier_line) lines;
-    struct buffer text; /* of the lines */
+    struct buffer text; /* the lines, ",\n" before each: the middle of a JSON array */
     bool has_next;
     struct next_record next;
     json_t *figures; /* owned: the whole `next` record with the figures of its step; NULL: none */

@@ -40,21 +40,36 @@ static int write_out(const struct buffer *out)
 {
     if (out->failed)
         return message_no_memory();
-    size_t written = fwrite(out->bytes, 1, out->length, stdout);
+    size_t written = out->length ? fwrite(out->bytes, 1, out->length, stdout) : 0;
     if (written == out->length && fflush(stdout) == 0)
         return STATUS_DONE;
     message("cannot write: %s", strerror(errno));
     return STATUS_SYSTEM;
 }
 
+static int write_whole(const struct stream *stream, const struct dossier *dossier)
+{
+    struct buffer head = BUFFER_INIT, tail = BUFFER_INIT;
+    size_t length = 0;
+    const char *job = stream_job_line(stream, &length);
+    whole_head(job, length, &head);
+    whole_tail(dossier, &tail);
+    int status = write_out(&head);
+    if (status == STATUS_DONE)
+        status = write_out(&dossier->text);
+    if (status == STATUS_DONE)
+        status = write_out(&tail);
+    buffer_release(&head);
+    buffer_release(&tail);
+    return status;
+}
+
 static int render(const struct stream *stream, const struct dossier *dossier, int form, int what)
 {
     struct buffer out = BUFFER_INIT;
-    size_t length = 0;
-    const char *job = stream_job_line(stream, &length);
     if (form == FORM_JSON)
-        whole_write(dossier, job, length, &out);
-    else if (form == FORM_CSV)
+        return write_whole(stream, dossier);
+    if (form == FORM_CSV)
         tidy_write(dossier, what == WHAT_NOT_GIVEN ? TIDY_READINGS : (enum tidy_what)what, &out);
     else
         text_write(dossier, &out);

@@ -32,6 +32,14 @@ static void advice(const struct dossier *d, size_t indent, struct buffer *out)
     put(out, indent, indent, &text);
 }
 
+/* A trial weight is worth nothing without its angle. */
+static void note_angle(const struct dossier *d, struct buffer *out)
+{
+    if (step_is(d, "trial") && d->job->angles != SENSE_NONE)
+        paper_say(out, 2, 2, "Note each weight's mass and its angle from the mark, counted %s.",
+                  job_sense_text(d->job));
+}
+
 static void relative_to(const struct dossier *d, const char *name, struct buffer *out)
 {
     int run = job_find_run(d->job, name);
@@ -155,6 +163,7 @@ static void nothing(const struct dossier *d, bool refused, struct buffer *out)
         advice(d, 2, out);
     else
         paper_wrap(out, 2, 2, "Mend what is listed above and record those runs again.");
+    note_angle(d, out);
 }
 
 /* Neither a weight nor a refusal: a trial weight first, or nothing left to do. */
@@ -168,6 +177,7 @@ static void step_only(const struct dossier *d, struct buffer *out)
                    "No answer is in this stream: it has not been through `lopside solve`.");
     if (d->has_next)
         advice(d, 2, out);
+    note_angle(d, out);
 }
 
 void text_answer_now(const struct dossier *dossier, struct buffer *out)

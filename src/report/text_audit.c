@@ -41,7 +41,7 @@ void text_audit_summary(const struct dossier *dossier, struct buffer *out)
                   "%zu readings were not judged: the stream has not been through `lopside "
                   "vet`.",
                   open);
-    if (dossier->has_next) {
+    if (dossier->has_next && strcmp(dossier->next.step, "trial") != 0) {
         struct buffer text = BUFFER_INIT;
         phrase_sentence(&text, dossier->next.text);
         if (text.failed)
