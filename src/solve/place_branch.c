@@ -10,7 +10,7 @@
 #include "solve/place_scan.h"
 #include "solve/place_spread.h"
 
-#define RELAX_NODES 50 /* what one relaxation counts as: about that many looks at a node take as long */
+#define AIM_ACCURACY 1e-3 /* of the optimum: the bound holds whatever it is; sharper was slower */
 
 static int settle(struct place_hunt *hunt, size_t depth, const struct place_form *form);
 
@@ -39,7 +39,8 @@ static int aim_at(struct place_hunt *hunt, size_t depth, const struct place_form
     for (size_t q = 0; q < form->planes; q++) {
         region[q] = hunt->site[depth + q].region;
     }
-    if (place_relax(form, region, hunt->norm, w, lambda, bound) != 0) {
+    if (place_relax(form, region, hunt->norm, AIM_ACCURACY, place_kept_cutoff(hunt), w, lambda, bound) !=
+        0) {
         goto done;
     }
     place_form_blend(form, lambda, &blend);
@@ -76,7 +77,10 @@ static int settle_candidates(struct place_hunt *hunt, size_t depth, const struct
         }
         hunt->load[depth] = candidate->load;
         place_form_settle(form, candidate->load.w, &rest);
+        double lost = hunt->lost;
+        hunt->lost = INFINITY;
         result = settle(hunt, depth + 1, &rest);
+        hunt->lost = fmin(lost, fmax(hunt->lost, candidate->bound));
     }
     place_form_release(&rest);
     return result;
@@ -121,18 +125,23 @@ static int settle(struct place_hunt *hunt, size_t depth, const struct place_form
         place_scan_last(hunt, depth, &aim, form);
         return 0;
     }
-    hunt->nodes -= RELAX_NODES;
+    hunt->nodes -= place_relax_nodes(form);
     if (aim_at(hunt, depth, form, &aim, &bound) != 0) {
         return -1;
     }
     if (bound >= place_kept_cutoff(hunt)) {
         return 0;
     }
+    double lost = hunt->lost;
+    int result = 0;
+    hunt->lost = INFINITY;
     if (depth + 1 == hunt->sites) {
         place_scan_last(hunt, depth, &aim, form);
-        return 0;
+    } else {
+        result = settle_in_batches(hunt, depth, form, &aim);
     }
-    return settle_in_batches(hunt, depth, form, &aim);
+    hunt->lost = fmin(lost, fmax(hunt->lost, bound));
+    return result;
 }
 
 int place_branch(struct place_hunt *hunt)

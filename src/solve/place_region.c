@@ -7,20 +7,6 @@
 
 #include "base/angle.h"
 
-struct ranked {
-    double along; /* Re(conj(direction) e) */
-    size_t index;
-};
-
-static int by_along(const void *a, const void *b)
-{
-    const struct ranked *x = a, *y = b;
-    if (x->along != y->along) {
-        return x->along > y->along ? -1 : 1;
-    }
-    return x->index < y->index ? -1 : x->index > y->index;
-}
-
 static int by_value(const void *a, const void *b)
 {
     double x = *(const double *)a, y = *(const double *)b;
@@ -75,17 +61,24 @@ static size_t hull_of(double complex *points, size_t count, double size, double 
 
 /* The corner that lies furthest along a direction: the best positions are filled first. */
 static double complex furthest(const double complex *e, size_t count, double cap, double total,
-                               double complex direction, struct ranked *ranks)
+                               double complex direction, double *along)
 {
-    for (size_t i = 0; i < count; i++) {
-        ranks[i] = (struct ranked){creal(conj(direction) * e[i]), i};
-    }
-    qsort(ranks, count, sizeof *ranks, by_along);
     double complex sum = 0;
-    for (size_t i = 0; i < count && total > 0 && ranks[i].along > 0; i++) {
+    for (size_t i = 0; i < count; i++) {
+        along[i] = creal(conj(direction) * e[i]);
+    }
+    while (total > 0 && count > 0) {
+        size_t best = 0;
+        for (size_t i = 1; i < count; i++) {
+            best = along[i] > along[best] ? i : best;
+        }
+        if (along[best] <= 0) {
+            break;
+        }
         double m = fmin(cap, total);
-        sum += m * e[ranks[i].index];
+        sum += m * e[best];
         total -= m;
+        along[best] = -1;
     }
     return sum;
 }
@@ -122,9 +115,9 @@ int place_region_polygon(struct place_region *region, const double complex *e, s
     double *at = malloc((most + 1) * sizeof *at);
     double complex *points = malloc((most + count + 2) * sizeof *points);
     double complex *hull = malloc(2 * (most + count + 3) * sizeof *hull);
-    struct ranked *ranks = malloc((count + 1) * sizeof *ranks);
+    double *along = malloc((count + 1) * sizeof *along);
     int result = -1;
-    if (at != NULL && points != NULL && hull != NULL && ranks != NULL) {
+    if (at != NULL && points != NULL && hull != NULL && along != NULL) {
         size_t n = 0;
         points[n++] = 0;
         if (swaps) {
@@ -132,7 +125,7 @@ int place_region_polygon(struct place_region *region, const double complex *e, s
             for (size_t i = 0; i < turns; i++) {
                 double next = i + 1 < turns ? at[i + 1] : at[0] + 2 * PI;
                 double complex way = cexp(I * 0.5 * (at[i] + next));
-                points[n++] = furthest(e, count, cap, total, way, ranks);
+                points[n++] = furthest(e, count, cap, total, way, along);
             }
         } else {
             for (size_t i = 0; i < count; i++) {
@@ -144,7 +137,7 @@ int place_region_polygon(struct place_region *region, const double complex *e, s
         hull = NULL;
         result = 0;
     }
-    free(ranks);
+    free(along);
     free(hull);
     free(points);
     free(at);

@@ -12,11 +12,16 @@
 #include "solve/place_region.h"
 
 /* form: `planes` >= 1 planes, all with some curvature in some row; region[planes] borrowed.
- * norm: J units, > 0, the size against which accuracy counts (bound good to about 1e-11 norm).
+ * norm: J units, > 0, the size against which accuracy counts.
+ * accuracy: aimed at, as part of the optimum (0: about 1e-12 norm). enough: J units; ends early, with any
+ * point, once the bound is proven to reach it (INFINITY: never).
  * Writes w[planes] (inside the regions), lambda[rows] (>= 0, sum 1) and *bound.
  * Returns 0, or -1 when memory is short. */
 int place_relax(const struct place_form *form, const struct place_region *region, double norm,
-                double complex *w, double *lambda, double *bound)
+                double accuracy, double enough, double complex *w, double *lambda, double *bound)
     __attribute__((warn_unused_result));
+
+/* What one relaxation counts as in nodes of the search, so that their number bounds the time. */
+long place_relax_nodes(const struct place_form *form);
 
 #endif

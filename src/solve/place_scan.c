@@ -17,6 +17,7 @@ struct scan {
     size_t depth;
     const struct place_form *form;
     const struct place_sum *at[PLACE_PIECES_MOST];
+    double complex rest_low[PLACE_PIECES_MOST], rest_high[PLACE_PIECES_MOST]; /* of later parts' leaves */
     double limit;
     int failed;
 };
@@ -124,13 +125,17 @@ static void accept(struct scan *scan, double complex w, double bound)
 /* All sums of the leaves' points, part by part. */
 static void look_at_points(struct scan *scan, const uint32_t *node, size_t part, double complex w)
 {
+    scan->hunt->nodes -= part > 1;
     const struct place_sums *sums = scan->sums[part];
     const struct place_node *leaf = &sums->node[node[part]];
     for (uint32_t i = leaf->begin; i < leaf->end && !scan->failed; i++) {
         scan->at[part] = &sums->sum[i];
         double complex sum = w + sums->sum[i].w;
         if (part + 1 < scan->parts) {
-            look_at_points(scan, node, part + 1, sum);
+            double complex low = sum + scan->rest_low[part], high = sum + scan->rest_high[part];
+            if (bound_of(scan->aim, low, high) < scan->limit) {
+                look_at_points(scan, node, part + 1, sum);
+            }
             continue;
         }
         double bound = bound_of(scan->aim, sum, sum);
@@ -166,6 +171,7 @@ static void look(struct scan *scan, const uint32_t *node, double bound)
         return;
     }
     size_t split = scan->parts;
+    double complex low = 0, high = 0;
     double widest = -1;
     for (size_t p = 0; p < scan->parts; p++) {
         const struct place_node *box = &scan->sums[p]->node[node[p]];
@@ -177,6 +183,15 @@ static void look(struct scan *scan, const uint32_t *node, double bound)
         }
     }
     if (split == scan->parts) {
+        for (size_t p = scan->parts; p-- > 0;) {
+            const struct place_node *box = &scan->sums[p]->node[node[p]];
+            low += box->low;
+            high += box->high;
+            if (p > 0) {
+                scan->rest_low[p - 1] = low;
+                scan->rest_high[p - 1] = high;
+            }
+        }
         look_at_points(scan, node, 0, 0);
         return;
     }

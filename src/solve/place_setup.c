@@ -107,13 +107,10 @@ static bool matters(const struct place_problem *problem, size_t p)
 static int init_site(struct place_site *site, const struct place_problem *problem, size_t p)
 {
     const struct place_plane *plane = &problem->plane[p];
-    double far = FAR * sqrt(nothing_of(problem) / curvature(problem, p));
     *site = (struct place_site){.kind = kind_of(plane), .plane = p, .positions = plane->positions};
     if (site->kind == PLACE_PIECES && site->positions == 0) {
         site->positions = WHOLE_DEGREES;
     }
-    site->cap = fmin(plane->most, far);
-    site->total = fmin(plane->most_in_all, far);
     site->e = malloc((site->positions + 1) * sizeof *site->e);
     site->state = calloc(site->positions + 1, 1);
     if (site->e == NULL || site->state == NULL) {
@@ -147,6 +144,36 @@ static int init_form(struct place_hunt *hunt, const struct place_problem *proble
         }
     }
     return 0;
+}
+
+/* No weight of any use on site s is larger: where the rows' sum exceeds rows * nothing, the worst exceeds
+ * nothing, and both 0 and the weight lie in that ellipsoid, whose half-width is sqrt(rows * nothing / stiffness). */
+static int limit_site(struct place_hunt *hunt, const struct place_problem *problem, size_t s)
+{
+    struct place_site *site = &hunt->site[s];
+    struct place_form sum = {0};
+    size_t n = hunt->sites + 1;
+    if (place_form_init(&sum, hunt->sites, 1) != 0) {
+        return -1;
+    }
+    for (size_t r = 0; r < hunt->form.rows; r++) {
+        for (size_t i = 0; i < n * n; i++) {
+            /* Sites 0 and s change places. */
+            size_t a = i / n, b = i % n;
+            a = a == 1 ? s + 1 : a == s + 1 ? 1 : a;
+            b = b == 1 ? s + 1 : b == s + 1 ? 1 : b;
+            sum.f[i] += hunt->form.f[r * n * n + a * n + b];
+        }
+    }
+    double stiffness = place_form_stiffness(&sum);
+    double far = FAR * sqrt(hunt->norm / curvature(problem, site->plane));
+    if (stiffness > 0) {
+        far = fmin(far, 2 * sqrt((double)hunt->form.rows * hunt->norm / stiffness));
+    }
+    site->total = fmin(problem->plane[site->plane].most_in_all, PLACE_PIECES_MOST * far);
+    site->cap = fmin(problem->plane[site->plane].most, site->total);
+    place_form_release(&sum);
+    return stiffness < 0 ? -1 : 0;
 }
 
 static int init_kept(struct place_hunt *hunt)
@@ -190,7 +217,15 @@ int place_setup_init(struct place_hunt *hunt, const struct place_problem *proble
             }
         }
     }
-    return init_form(hunt, problem) != 0 || init_kept(hunt) != 0 ? -1 : 0;
+    if (init_form(hunt, problem) != 0 || init_kept(hunt) != 0) {
+        return -1;
+    }
+    for (size_t s = 0; s < hunt->sites; s++) {
+        if (limit_site(hunt, problem, s) != 0) {
+            return -1;
+        }
+    }
+    return 0;
 }
 
 /* The pieces are shared out over trees of equal or nearly equal depth. */
@@ -232,7 +267,7 @@ int place_setup_pieces(struct place_hunt *hunt, const struct place_problem *prob
         }
         place_region_release(&site->region);
         if (site->kind == PLACE_ANYWHERE || plane->positions == 0) {
-            double one = site->kind == PLACE_ANYWHERE ? fmin(site->cap, site->total) : total;
+            double one = site->kind == PLACE_ANYWHERE ? site->cap : total;
             place_region_disc(&site->region, one);
         } else if (place_region_polygon(&site->region, site->e, site->positions,
                                         fmin(site->cap, total), total) != 0) {

@@ -8,7 +8,6 @@
 #include "solve/place_kept.h"
 #include "solve/place_relax.h"
 
-#define RELAX_NODES 50 /* as in place_branch.c */
 #define FINE 1e-9      /* of norm: as in place_kept.c */
 #define CRUMB 1e-6     /* of a plane's mass: smaller parts are left out where that costs nothing */
 
@@ -129,6 +128,28 @@ static size_t heaviest_open(const struct place_site *site, const double *m)
 
 static int explore(struct place_hunt *hunt, size_t depth, const struct place_form *form);
 
+/* One piece: it stands on one side of the relaxed weight's direction or on the other. */
+static int take_sides(struct place_hunt *hunt, size_t depth, const struct place_form *form,
+                      struct place_site *site, double complex w)
+{
+    unsigned char *before = malloc(site->positions);
+    if (before == NULL) {
+        return -1;
+    }
+    int result = 0;
+    memcpy(before, site->state, site->positions);
+    for (int side = 0; side < 2 && result == 0; side++) {
+        for (size_t i = 0; i < site->positions; i++) {
+            bool left = cimag(conj(w) * site->e[i]) >= 0;
+            site->state[i] = before[i] == OPEN && left == (side == 0) ? OUT : before[i];
+        }
+        result = explore(hunt, depth, form);
+    }
+    memcpy(site->state, before, site->positions);
+    free(before);
+    return result;
+}
+
 static int decide(struct place_hunt *hunt, size_t depth, const struct place_form *form,
                   struct place_site *site, size_t position)
 {
@@ -141,13 +162,19 @@ static int decide(struct place_hunt *hunt, size_t depth, const struct place_form
     return result;
 }
 
-/* Offers the relaxed weights w[], as masses; tells where to split next (NULL: nowhere). */
+struct branch {
+    struct place_site *site; /* NULL: nothing left to decide */
+    size_t position;
+    bool sides;       /* by side of `w` rather than by position */
+    double complex w;
+};
+
+/* Offers the relaxed weights w[], as masses; tells where to split next. */
 static int use_relaxed(struct place_hunt *hunt, size_t depth, const struct place_form *form,
-                       double complex *w, struct place_site **split, size_t *position)
+                       double complex *w, struct branch *branch)
 {
     bool fits = true;
-    struct place_site *crowded = NULL, *open = NULL;
-    size_t crowded_at = 0, open_at = 0;
+    struct branch crowded = {0}, open = {0};
     for (size_t q = 0; q < form->planes; q++) {
         struct place_site *site = &hunt->site[depth + q];
         struct place_load *load = &hunt->load[depth + q];
@@ -170,14 +197,14 @@ static int use_relaxed(struct place_hunt *hunt, size_t depth, const struct place
         size_t at = heaviest_open(site, m);
         if (!possible || used(m, site->positions, least) > (size_t)site->pieces) {
             fits = false;
-            crowded = at == SIZE_MAX ? crowded : site;
-            crowded_at = at == SIZE_MAX ? crowded_at : at;
+            if (at != SIZE_MAX) {
+                crowded = (struct branch){site, at, possible && site->pieces == 1, w[q]};
+            }
         } else {
             load_masses(site, m, least, load);
         }
         if (at != SIZE_MAX && m[at] > least) {
-            open = site;
-            open_at = at;
+            open = (struct branch){site, at, false, w[q]};
         }
         free(m);
     }
@@ -187,11 +214,10 @@ static int use_relaxed(struct place_hunt *hunt, size_t depth, const struct place
         }
         place_kept_offer(hunt, place_form_worst(form, w, NULL));
     }
-    if (!fits && crowded == NULL) {
+    if (!fits && crowded.site == NULL) {
         hunt->lost = -INFINITY; /* the caller's bound is the honest one */
     }
-    *split = crowded != NULL ? crowded : open;
-    *position = crowded != NULL ? crowded_at : open_at;
+    *branch = crowded.site != NULL ? crowded : open;
     return 0;
 }
 
@@ -201,22 +227,21 @@ static int explore(struct place_hunt *hunt, size_t depth, const struct place_for
     struct place_region *region = calloc(n, sizeof *region);
     double complex *w = malloc(n * sizeof *w);
     double *lambda = malloc(form->rows * sizeof *lambda);
-    struct place_site *split = NULL;
-    size_t position = 0;
+    struct branch branch = {0};
     double bound = -INFINITY;
     int result = region == NULL || w == NULL || lambda == NULL ? -1 : 0;
     while (result == 0 && ready < n) {
         result = region_of(&hunt->site[depth + ready], &region[ready]);
         ready++;
     }
-    hunt->nodes -= RELAX_NODES;
-    if (result == 0) {
-        result = place_relax(form, region, hunt->norm, w, lambda, &bound);
-    }
+    hunt->nodes -= 3 * place_relax_nodes(form); /* with the polygons */
     double cutoff = place_kept_cutoff(hunt);
+    if (result == 0) {
+        result = place_relax(form, region, hunt->norm, 0, cutoff, w, lambda, &bound);
+    }
     if (result == 0 && bound < cutoff) {
         double lost = hunt->lost;
-        result = use_relaxed(hunt, depth, form, w, &split, &position);
+        result = use_relaxed(hunt, depth, form, w, &branch);
         hunt->lost = isinf(hunt->lost) && hunt->lost < 0 ? fmin(lost, bound) : hunt->lost;
     }
     for (size_t q = 0; q < ready; q++) {
@@ -225,14 +250,19 @@ static int explore(struct place_hunt *hunt, size_t depth, const struct place_for
     free(lambda);
     free(w);
     free(region);
-    if (result != 0 || split == NULL || bound >= place_kept_cutoff(hunt)) {
+    if (result != 0 || branch.site == NULL || bound >= place_kept_cutoff(hunt)) {
         return result;
     }
     if (hunt->nodes <= 0) {
         hunt->lost = fmin(hunt->lost, bound);
         return 0;
     }
-    return decide(hunt, depth, form, split, position);
+    double lost = hunt->lost;
+    hunt->lost = INFINITY;
+    result = branch.sides ? take_sides(hunt, depth, form, branch.site, branch.w)
+                          : decide(hunt, depth, form, branch.site, branch.position);
+    hunt->lost = fmin(lost, fmax(hunt->lost, bound));
+    return result;
 }
 
 int place_spread(struct place_hunt *hunt, size_t depth, const struct place_form *form)

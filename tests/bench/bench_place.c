@@ -1,7 +1,7 @@
 /* bench_place.c - the placement search on large problems: seconds, bound, gap.
  *
  * Rows are twice the planes, responses random; "near" means the ideal weights lie well within what the pieces reach, "far"
- * that they lie beyond. Usage: bench_place [CASE]; without a case all are run.
+ * that they lie beyond. Usage: bench_place [CASE [NODES]]; without a case all are run.
  */
 #include <math.h>
 #include <stdint.h>
@@ -59,7 +59,7 @@ static void fill(const struct bench *b, uint64_t *state, double complex *forms, 
     }
 }
 
-static void run(const struct bench *b)
+static void run(const struct bench *b, long nodes)
 {
     static const double masses[] = {0.005, 0.010, 0.015, 0.020, 0.030, 0.050};
     static const double odd[] = {0.0047, 0.0093, 0.0151, 0.0212, 0.0307, 0.0498};
@@ -81,7 +81,7 @@ static void run(const struct bench *b)
                 .pieces = b->pieces, .most = b->single ? 0.05 : INFINITY, .most_in_all = INFINITY, .sign = 1};
         }
         struct place_problem problem = {.planes = b->planes, .plane = plane, .rows = 2 * b->planes,
-            .forms = forms, .certain = certain, .worst = b->worst, .floor = 1e-4};
+            .forms = forms, .certain = certain, .worst = b->worst, .floor = 1e-4, .nodes = nodes};
         struct place_result result;
         struct timespec from, to;
         clock_gettime(CLOCK_MONOTONIC, &from);
@@ -124,7 +124,7 @@ int main(int argc, char **argv)
     };
     for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
         if (argc < 2 || strcmp(argv[1], cases[i].name) == 0) {
-            run(&cases[i]);
+            run(&cases[i], argc > 2 ? atol(argv[2]) : 0);
         }
     }
     return 0;
