@@ -35,6 +35,29 @@ static bool same_weights(const struct vet_run *a, const struct vet_run *b, const
     return differ == 0;
 }
 
+bool across_stands_alone(const struct vet_run *run, const struct job *job)
+{
+    for (size_t r = 0; run->index >= 0 && r < (size_t)run->index; r++)
+        if (job_run_is_bare(job, r) && !job->runs[r].role[0] &&
+            !strcmp(job->runs[r].condition, run->condition))
+            return false;
+    return run->index < 0 || job_run_is_bare(job, (size_t)run->index);
+}
+
+size_t *across_order(const struct vet_runs *runs, const struct job *job)
+{
+    size_t *order = malloc((runs->count + 1) * sizeof *order), count = 0;
+
+    for (size_t r = 0; order && r < job->run_count; r++)
+        for (size_t k = 0; k < runs->count; k++)
+            if (runs->items[k].index == (int)r)
+                order[count++] = k;
+    for (size_t k = 0; order && k < runs->count; k++)
+        if (runs->items[k].index < 0)
+            order[count++] = k;
+    return order;
+}
+
 double across_as_found(const struct vet_runs *runs, const size_t *order, const struct job *job,
                        const char *condition, size_t sensor)
 {
@@ -180,8 +203,8 @@ static bool match_once(struct vet_runs *runs, const size_t *order, const struct 
     ruling = limits_judge(findings->limits, CHECK_SPEED_MATCH, spread, &limit);
     ruling =
         findings_add(findings, CHECK_SPEED_MATCH, ruling == RULING_REFUSE ? (int)worst : -1, -1,
-                     spread, "runs of condition '%s' turned at %.0f to %.0f rpm, %.2g %% apart",
-                     condition, least, most, spread);
+                     spread, "runs of condition '%s' turned at %.0f to %.0f rpm, %g %% apart",
+                     condition, least, most, findings_figure(spread));
     if (ruling == RULING_REFUSE)
         within_refuse(&runs->items[worst], job);
     return ruling == RULING_REFUSE;
@@ -290,11 +313,11 @@ static bool judge_repeat(const struct vet_runs *runs, const size_t *members, siz
     }
     if (count == 2 && which == 0 && ruling != RULING_REFUSE)
         return false; /* one finding for the pair, unless both are refused */
-    ruling = findings_rule(findings, CHECK_REPEAT, ruling, (int)members[which], (int)sensor, value,
-                           limit, "%", "%s %.2g %% from %s%s%s%s",
-                           beyond ? "stands" : "within its own uncertainty stands", value,
-                           count == 2 ? "its repeat '" : "the median of its repeats",
-                           count == 2 ? other->name : "", count == 2 ? "'" : "", "");
+    ruling = findings_rule(
+        findings, CHECK_REPEAT, ruling, (int)members[which], (int)sensor, value, limit, "%",
+        "%s %g %% from %s%s%s%s", beyond ? "stands" : "within its own uncertainty stands",
+        findings_figure(value), count == 2 ? "its repeat '" : "the median of its repeats",
+        count == 2 ? other->name : "", count == 2 ? "'" : "", "");
     return ruling == RULING_REFUSE;
 }
 
@@ -347,8 +370,8 @@ void across_low_level(struct vet_runs *runs, const size_t *order, const struct j
             size = cabs(units_convert(r->amplitude, job->sensors[i].quantity, target->quantity,
                                       2 * PI * r->speed_rpm / 60));
             findings_add(findings, CHECK_LOW_LEVEL, (int)order[k], (int)i,
-                         size <= target->amplitude, "1x is %.3g %% of the target",
-                         100 * size / target->amplitude);
+                         size <= target->amplitude, "1x is %g %% of the target",
+                         findings_figure(100 * size / target->amplitude));
         }
     }
 }

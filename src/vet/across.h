@@ -9,6 +9,15 @@
  * holds their positions in the sheet's order, recordings of an audit last. Each adds findings and
  * takes `use` off what it refuses; readings that are refused already are not compared. */
 
+/* True where the run's vectors need no other run to be judged: a recording of an audit, or the run
+ * whose amplitude is the as-found amplitude of its condition, the first in the sheet without
+ * weights. */
+bool across_stands_alone(const struct vet_run *run, const struct job *job);
+
+/* Positions of the runs in the sheet's order, recordings of an audit behind; new, NULL: no memory.
+ */
+size_t *across_order(const struct vet_runs *runs, const struct job *job);
+
 /* The as-found amplitude of a sensor in a condition: of the first run in `order` without weights
  * that has a reading of it, SI peak; NaN for none. */
 double across_as_found(const struct vet_runs *runs, const size_t *order, const struct job *job,

@@ -7,6 +7,7 @@
 #include <stddef.h>
 
 #include "stream/job.h"
+#include "vet/beat.h"
 
 struct vet_reading { /* percentages of the reading's own amplitude; NaN: not known */
     bool present, has_phase;
@@ -21,8 +22,9 @@ struct vet_reading { /* percentages of the reading's own amplitude; NaN: not kno
     enum quantity overall_quantity;
     double two_x, half_order, neighbour; /* % of 1x in the quantity shown; NaN: no spectrum */
     double neighbour_order;
-    bool use;   /* the ruling */
-    int reason; /* the first check that refused it; -1: none */
+    struct beat beat; /* swing in SI; NaN: too few blocks */
+    bool use;         /* the ruling */
+    int reason;       /* the first check that refused it; -1: none */
     double widen[3];
 };
 

@@ -94,3 +94,12 @@ enum ruling findings_rule(struct findings *findings, enum check check, enum ruli
     va_end(arguments);
     return ruling;
 }
+
+double findings_figure(double value)
+{
+    double step = pow(10, floor(log10(fabs(value))) - 1);
+
+    if (!(step > 0.01)) /* with 0, whose logarithm is minus infinity */
+        step = 0.01;
+    return isfinite(value) ? round(value / step) * step : value;
+}

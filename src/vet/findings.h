@@ -40,4 +40,8 @@ enum ruling findings_rule(struct findings *findings, enum check check, enum ruli
                           int sensor, double value, double limit, const char *unit,
                           const char *format, ...) __attribute__((format(printf, 9, 10)));
 
+/* A figure as it is said: to two significant digits and no finer than 0.01, for printing with %g.
+ */
+double findings_figure(double value);
+
 #endif

@@ -143,9 +143,10 @@ static void judge(struct trials *t, size_t k)
                            ruling == RULING_CAUTION ? e.amplitude_pct : e.errors,
                            ruling == RULING_CAUTION ? row->caution : row->refuse,
                            ruling == RULING_CAUTION ? "%" : "s.e.",
-                           "against '%s' the amplitude changed by %.2g %% and the lag by %.2g deg, "
-                           "%.3g standard errors",
-                           before->name, e.amplitude_pct, e.lag_deg, e.errors);
+                           "against '%s' the amplitude changed by %g %% and the lag by %g deg, "
+                           "%g standard errors",
+                           before->name, findings_figure(e.amplitude_pct),
+                           findings_figure(e.lag_deg), findings_figure(e.errors));
     if (ruling == RULING_REFUSE)
         within_refuse(run, t->job);
 }

@@ -11,12 +11,20 @@
 #include "stream/records.h"
 #include "stream/stream.h"
 #include "vet/across.h"
+#include "vet/answer.h"
+#include "vet/beat.h"
 #include "vet/facts.h"
 #include "vet/findings.h"
 #include "vet/limits.h"
 #include "vet/orders.h"
-#include "vet/ruling.h"
 #include "vet/within.h"
+
+/* A sensor's blocks of one run, as far as the beat looks. */
+struct blocks {
+    double complex vectors[BEAT_COUNT_MOST];
+    double t[BEAT_COUNT_MOST];
+    size_t count;
+};
 
 /* Everything the stage holds. */
 struct vet {
@@ -25,8 +33,9 @@ struct vet {
     struct limits limits;
     struct findings findings;
     struct vet_runs runs;
-    bool open;       /* the last run is still being read */
-    double *nothing; /* per sensor NaN: no as-found amplitude to refer to */
+    bool open;             /* the last run is still being read */
+    double *nothing;       /* per sensor NaN: no as-found amplitude to refer to */
+    struct blocks *blocks; /* owned, per sensor: of the run that is being read */
     long refusals;
     struct finding first; /* the first refusal */
 };
@@ -112,6 +121,26 @@ static int add_run(struct vet *v, const struct record *record)
     v->open = true;
     run_release(&r);
     return STATUS_DONE;
+}
+
+static int add_turns(struct vet *v, const struct record *record)
+{
+    struct turns_record r = {0};
+    const char *why = "";
+    bool known;
+
+    if (turns_parse(&r, &v->stream.job, record->json, &why))
+        return malformed(record, why);
+    known = current(v, r.run) != NULL;
+    for (size_t i = 0; known && i < r.count; i++) {
+        struct blocks *b = &v->blocks[r.sensors[i]];
+        if (b->count == BEAT_COUNT_MOST || isnan(creal(r.vectors[i])))
+            continue;
+        b->vectors[b->count] = r.vectors[i];
+        b->t[b->count++] = r.t_s;
+    }
+    turns_release(&r);
+    return known ? STATUS_DONE : foreign(record, r.run);
 }
 
 static int add_channel(struct vet *v, const struct record *record)
@@ -263,19 +292,6 @@ static int write_findings(struct vet *v)
     return status;
 }
 
-/* True where the run's vectors need no other run to be judged: a recording of an audit, or the one
- * whose amplitude is the as-found amplitude of its condition. */
-static bool stands_alone(const struct vet *v, const struct vet_run *run)
-{
-    const struct job *job = &v->stream.job;
-
-    for (size_t r = 0; run->index >= 0 && r < (size_t)run->index; r++)
-        if (job_run_is_bare(job, r) && !job->runs[r].role[0] &&
-            !strcmp(job->runs[r].condition, run->condition))
-            return false;
-    return run->index < 0 || job_run_is_bare(job, (size_t)run->index);
-}
-
 /* Ends the run that is being read: its own findings stand behind its last record. */
 static int finish_run(struct vet *v)
 {
@@ -285,8 +301,13 @@ static int finish_run(struct vet *v)
     v->open = false;
     if (!run)
         return STATUS_DONE;
+    for (size_t i = 0; i < v->stream.job.sensor_count; i++) {
+        struct blocks *b = &v->blocks[i];
+        run->readings[i].beat = beat_of(b->vectors, b->t, b->count);
+        b->count = 0;
+    }
     within_run(run, position, &v->stream.job, &v->findings);
-    if (stands_alone(v, run))
+    if (across_stands_alone(run, &v->stream.job))
         within_vectors(run, position, v->nothing, &v->stream.job, &v->findings);
     return write_findings(v);
 }
@@ -300,6 +321,8 @@ static int take(struct vet *v, const struct record *record)
         status = finish_run(v);
         if (status == STATUS_DONE)
             status = add_run(v, record);
+    } else if (!strcmp(kind, "turns")) {
+        status = add_turns(v, record);
     } else if (!strcmp(kind, "channel")) {
         status = add_channel(v, record);
     } else if (!strcmp(kind, "tacho")) {
@@ -314,22 +337,6 @@ static int take(struct vet *v, const struct record *record)
     return status == STATUS_DONE ? stream_pass(&v->stream, record) : status;
 }
 
-/* Positions of the runs in the sheet's order, recordings of an audit behind; new, NULL: no memory.
- */
-static size_t *sheet_order(const struct vet_runs *runs, const struct job *job)
-{
-    size_t *order = malloc((runs->count + 1) * sizeof *order), count = 0;
-
-    for (size_t r = 0; order && r < job->run_count; r++)
-        for (size_t k = 0; k < runs->count; k++)
-            if (runs->items[k].index == (int)r)
-                order[count++] = k;
-    for (size_t k = 0; order && k < runs->count; k++)
-        if (runs->items[k].index < 0)
-            order[count++] = k;
-    return order;
-}
-
 static int judge_vectors(struct vet *v, const size_t *order)
 {
     const struct job *job = &v->stream.job;
@@ -339,7 +346,7 @@ static int judge_vectors(struct vet *v, const size_t *order)
         return message_no_memory();
     for (size_t k = 0; k < v->runs.count; k++) {
         struct vet_run *run = &v->runs.items[order[k]];
-        if (stands_alone(v, run))
+        if (across_stands_alone(run, &v->stream.job))
             continue;
         for (size_t i = 0; i < job->sensor_count; i++)
             as_found[i] = across_as_found(&v->runs, order, job, run->condition, i);
@@ -367,42 +374,6 @@ static int write_vetted(struct vet *v, const size_t *order)
         }
     }
     return status;
-}
-
-static bool is_expected(const struct job_run *run, size_t sensor)
-{
-    if (run->without && run->without[sensor])
-        return false;
-    for (size_t i = 0; i < run->hand_count; i++)
-        if (run->hand[i].sensor == sensor)
-            return true;
-    return run->hand_count == 0;
-}
-
-/* Fills what the ruling looks at; arrays as in struct ruling_set, rows in the order of `order`. */
-static size_t fill_set(const struct vet *v, const size_t *order, int *condition,
-                       double complex *weights, bool *expected, bool *usable, size_t *positions)
-{
-    const struct job *job = &v->stream.job;
-    size_t rows = 0;
-
-    for (size_t k = 0; k < v->runs.count; k++) {
-        const struct vet_run *run = &v->runs.items[order[k]];
-        if (run->index < 0 || job->runs[run->index].role[0])
-            continue;
-        condition[rows] = (int)rows;
-        for (size_t q = rows; q-- > 0;)
-            if (!strcmp(v->runs.items[positions[q]].condition, run->condition))
-                condition[rows] = condition[q];
-        for (size_t p = 0; p < job->plane_count; p++)
-            weights[rows * job->plane_count + p] = job_run_weight(job, (size_t)run->index, p);
-        for (size_t i = 0; i < job->sensor_count; i++) {
-            expected[rows * job->sensor_count + i] = is_expected(&job->runs[run->index], i);
-            usable[rows * job->sensor_count + i] = run->readings[i].present && run->readings[i].use;
-        }
-        positions[rows++] = order[k];
-    }
-    return rows;
 }
 
 /* The one line where the job goes on although something was refused. */
@@ -435,37 +406,17 @@ static int say_lost(const struct vet *v, const struct vet_run *run, size_t senso
 /* STATUS_REFUSED where what is left cannot answer. An audit has nothing to answer. */
 static int conclude(const struct vet *v, const size_t *order)
 {
-    const struct job *job = &v->stream.job;
-    size_t n = v->runs.count + 1, run_lost = 0, sensor_lost = 0;
-    int *condition = calloc(n, sizeof *condition);
-    double complex *weights = calloc(n * (job->plane_count + 1), sizeof *weights);
-    bool *expected = calloc(n * (job->sensor_count + 1), sizeof *expected);
-    bool *usable = calloc(n * (job->sensor_count + 1), sizeof *usable);
-    bool *in_aim = calloc(job->sensor_count + 1, sizeof *in_aim);
-    size_t *positions = calloc(n, sizeof *positions);
-    int answer = -1, status = STATUS_DONE;
+    size_t run_lost = 0, sensor_lost = 0;
 
-    if (condition && weights && expected && usable && in_aim && positions) {
-        struct ruling_set set = {0,       job->sensor_count, job->plane_count, condition,
-                                 weights, expected,          usable,           in_aim};
-        set.run_count = fill_set(v, order, condition, weights, expected, usable, positions);
-        for (size_t i = 0; i < job->sensor_count; i++)
-            in_aim[i] = !job->aim.named || !job->aim.targets || job->aim.targets[i].in_aim;
-        answer = ruling_can_answer(&set, &run_lost, &sensor_lost);
-    }
-    if (answer < 0)
-        status = message_no_memory();
-    else if (answer == 0)
-        status = say_lost(v, &v->runs.items[positions[run_lost]], sensor_lost);
-    else
+    switch (answer_possible(&v->runs, order, &v->stream.job, &run_lost, &sensor_lost)) {
+    case 1:
         say_goes_on(v);
-    free(positions);
-    free(in_aim);
-    free(usable);
-    free(expected);
-    free(weights);
-    free(condition);
-    return status;
+        return STATUS_DONE;
+    case 0:
+        return say_lost(v, &v->runs.items[run_lost], sensor_lost);
+    default:
+        return message_no_memory();
+    }
 }
 
 /* What rests on several runs, in front of `end`; *verdict receives the exit code it asks for. */
@@ -476,7 +427,7 @@ static int finish_all(struct vet *v, int *verdict)
 
     if (status != STATUS_DONE)
         return status;
-    order = sheet_order(&v->runs, &v->stream.job);
+    order = across_order(&v->runs, &v->stream.job);
     if (!order)
         return message_no_memory();
     status = judge_vectors(v, order);
@@ -503,7 +454,8 @@ static int begin(struct vet *v, const struct option_list *files)
     limits_init(&v->limits, &v->stream.job);
     findings_init(&v->findings, &v->limits);
     v->nothing = malloc((v->stream.job.sensor_count + 1) * sizeof *v->nothing);
-    if (!v->nothing)
+    v->blocks = calloc(v->stream.job.sensor_count + 1, sizeof *v->blocks);
+    if (!v->nothing || !v->blocks)
         return message_no_memory();
     for (size_t i = 0; i < v->stream.job.sensor_count; i++)
         v->nothing[i] = NAN;
@@ -518,6 +470,7 @@ static void release(struct vet *v)
         free(v->runs.items[k].channels);
     }
     free(v->runs.items);
+    free(v->blocks);
     free(v->nothing);
     findings_release(&v->findings);
     line_release(&v->line);

@@ -84,8 +84,8 @@ static void check_speed(struct vet_run *run, int position, const struct job *job
     if (job->service_rpm > 0 && !strstr(run->condition, " @ ")) {
         off = 100 * fabs(speed - job->service_rpm) / job->service_rpm;
         if (findings_add(findings, CHECK_SERVICE_SPEED, position, -1, off,
-                         "turned at %.0f rpm, %.2g %% off the service speed of %.0f rpm", speed,
-                         off, job->service_rpm) == RULING_REFUSE)
+                         "turned at %.0f rpm, %g %% off the service speed of %.0f rpm", speed,
+                         findings_figure(off), job->service_rpm) == RULING_REFUSE)
             within_refuse(run, job);
     }
     for (size_t i = 0; i < job->sensor_count; i++)
@@ -95,7 +95,8 @@ static void check_speed(struct vet_run *run, int position, const struct job *job
     if (run->hand || isnan(spread))
         return;
     if (findings_add(findings, CHECK_SPEED_STEADY, position, -1, spread,
-                     "speed wandered by %.2g %% (standard deviation)", spread) == RULING_REFUSE)
+                     "speed wandered by %g %% (standard deviation)",
+                     findings_figure(spread)) == RULING_REFUSE)
         within_refuse(run, job);
 }
 
@@ -146,8 +147,8 @@ static void check_tacho(struct vet_run *run, int position, const struct job *job
         return;
     share = 100 * (double)(run->missed + run->extra) / all;
     if (findings_add(findings, CHECK_TACHO, position, -1, share,
-                     "%ld marks of %.0f missed and %ld extra, %.2g %%", run->missed, all,
-                     run->extra, share) == RULING_REFUSE)
+                     "%ld marks of %.0f missed and %ld extra, %g %%", run->missed, all, run->extra,
+                     findings_figure(share)) == RULING_REFUSE)
         within_refuse(run, job);
 }
 
@@ -185,8 +186,8 @@ static void check_force(struct vet_run *run, int position, const struct job *job
     if (isnan(share))
         return;
     if (findings_add(findings, CHECK_WEIGHT_FORCE, position, -1, share,
-                     "the weights pull with %.3g N at %.0f rpm, %.2g %% of the static journal load",
-                     force, rpm, share) == RULING_REFUSE)
+                     "the weights pull with %.3g N at %.0f rpm, %g %% of the static journal load",
+                     force, rpm, findings_figure(share)) == RULING_REFUSE)
         within_refuse(run, job);
 }
 
@@ -213,11 +214,13 @@ static bool steadiness(const struct vet_reading *r, int position, int s, double 
 
     if (!isnan(value))
         refuse |= findings_add(findings, CHECK_AMPLITUDE_STEADY, position, s, value,
-                               "block amplitudes scatter by %.2g %%, %ld of %ld blocks set aside",
-                               value, r->set_aside, r->blocks + r->set_aside) == RULING_REFUSE;
+                               "block amplitudes scatter by %g %%, %ld of %ld blocks set aside",
+                               findings_figure(value), r->set_aside,
+                               r->blocks + r->set_aside) == RULING_REFUSE;
     if (!isnan(r->phase_deg) && share > WITHIN_LAG_SHARE)
         refuse |= findings_add(findings, CHECK_PHASE_STEADY, position, s, r->phase_deg,
-                               "block lags scatter by %.2g deg", r->phase_deg) == RULING_REFUSE;
+                               "block lags scatter by %g deg",
+                               findings_figure(r->phase_deg)) == RULING_REFUSE;
     return refuse;
 }
 
@@ -230,13 +233,36 @@ static bool drift(struct vet_reading *r, int position, int s, double share,
     if (isnan(value))
         return false;
     ruling = value > 0 ? findings_add(findings, CHECK_DRIFT, position, s, value,
-                                      "the vector moved by %.2g %% from start to end", value)
+                                      "the vector moved by %g %% from start to end",
+                                      findings_figure(value))
                        : findings_add(findings, CHECK_DRIFT, position, s, value,
                                       "no trend stands out from the scatter");
     if (ruling != RULING_OK) {
         r->widen[0] += size * size / 12;
         r->widen[2] += size * size / 12;
     }
+    return ruling == RULING_REFUSE;
+}
+
+static bool beats(struct vet_reading *r, int position, int s, double share,
+                  struct findings *findings)
+{
+    double value = 100 * r->beat.swing / r->amplitude * share, variance;
+    enum ruling ruling;
+
+    if (isnan(value))
+        return false;
+    ruling = value > 0
+                 ? findings_add(findings, CHECK_BEAT, position, s, value,
+                                "the vector swings by %g %% every %g s, as a line at %.2f Hz would "
+                                "make it",
+                                findings_figure(value), findings_figure(1 / fabs(r->beat.turning)),
+                                r->speed_rpm / 60 - r->beat.turning)
+                 : findings_add(findings, CHECK_BEAT, position, s, value,
+                                "no periodic swing stands out from the scatter");
+    variance = ruling == RULING_OK ? 0 : beat_variance(&r->beat);
+    r->widen[0] += variance;
+    r->widen[2] += variance;
     return ruling == RULING_REFUSE;
 }
 
@@ -252,20 +278,21 @@ static bool orders(const struct vet_reading *r, int position, int s, const struc
     if (share > 100) /* both are estimates of the same */
         share = 100;
     if (!isnan(share))
-        refuse |= findings_add(findings, CHECK_ONE_X_SHARE, position, s, share,
-                               "1x is %.2g %% of the overall rms", share) == RULING_REFUSE;
+        refuse |=
+            findings_add(findings, CHECK_ONE_X_SHARE, position, s, share,
+                         "1x is %g %% of the overall rms", findings_figure(share)) == RULING_REFUSE;
     if (!isnan(r->two_x))
-        refuse |= findings_add(findings, CHECK_TWO_X, position, s, r->two_x, "2x is %.2g %% of 1x",
-                               r->two_x) == RULING_REFUSE;
+        refuse |= findings_add(findings, CHECK_TWO_X, position, s, r->two_x, "2x is %g %% of 1x",
+                               findings_figure(r->two_x)) == RULING_REFUSE;
     if (!isnan(r->half_order))
-        refuse |=
-            findings_add(findings, CHECK_HALF_ORDER, position, s, r->half_order,
-                         "the largest half order is %.2g %% of 1x", r->half_order) == RULING_REFUSE;
+        refuse |= findings_add(findings, CHECK_HALF_ORDER, position, s, r->half_order,
+                               "the largest half order is %g %% of 1x",
+                               findings_figure(r->half_order)) == RULING_REFUSE;
     if (!isnan(r->neighbour))
-        refuse |=
-            findings_add(findings, CHECK_NEIGHBOUR, position, s, r->neighbour,
-                         "a line at %.1f Hz that does not turn with the shaft is %.2g %% of 1x",
-                         r->neighbour_order * r->speed_rpm / 60, r->neighbour) == RULING_REFUSE;
+        refuse |= findings_add(findings, CHECK_NEIGHBOUR, position, s, r->neighbour,
+                               "a line at %.1f Hz that does not turn with the shaft is %g %% of 1x",
+                               r->neighbour_order * r->speed_rpm / 60,
+                               findings_figure(r->neighbour)) == RULING_REFUSE;
     return refuse;
 }
 
@@ -282,6 +309,8 @@ void within_vectors(struct vet_run *run, int position, const double *as_found,
             continue;
         refuse |= steadiness(r, position, (int)i, share, findings);
         refuse |= drift(r, position, (int)i, share, findings);
+        if (r->has_phase)
+            refuse |= beats(r, position, (int)i, share, findings);
         if (bare)
             refuse |= orders(r, position, (int)i, job, findings);
         if (refuse)

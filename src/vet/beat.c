@@ -1,0 +1,98 @@
+#include "vet/beat.h"
+
+#include <math.h>
+
+#include "base/angle.h"
+
+static const double LEVEL = 0.001;     /* of the test */
+static const double PERIODS_LEAST = 3; /* fewer are a slow wander like any other */
+static const size_t COUNT_LEAST = 12;
+static const int OVERSAMPLING = 4; /* of the frequencies: loses 1 % of a line between two at most */
+
+struct straight {
+    double complex middle, slope;
+    double t_middle;
+};
+
+static struct straight fit(const double complex *vectors, const double *t, size_t count)
+{
+    struct straight line = {0};
+    double spread = 0;
+
+    for (size_t i = 0; i < count; i++) {
+        line.middle += vectors[i] / (double)count;
+        line.t_middle += t[i] / (double)count;
+    }
+    for (size_t i = 0; i < count; i++) {
+        double d = t[i] - line.t_middle;
+        line.slope += (vectors[i] - line.middle) * d;
+        spread += d * d;
+    }
+    line.slope /= spread;
+    return line;
+}
+
+static double complex rest(const struct straight *line, const double complex *vectors,
+                           const double *t, size_t i)
+{
+    return vectors[i] - line->middle - line->slope * (t[i] - line->t_middle);
+}
+
+/* The line at frequency f (Hz, either sign) in the rest, as an amplitude. */
+static double complex line_at(const struct straight *line, const double complex *vectors,
+                              const double *t, size_t count, double f)
+{
+    double complex sum = 0;
+
+    for (size_t i = 0; i < count; i++)
+        sum += rest(line, vectors, t, i) * cexp(-I * 2 * PI * f * t[i]);
+    return sum / (double)count;
+}
+
+struct beat beat_of(const double complex *vectors, const double *t, size_t count)
+{
+    struct beat beat = {NAN, NAN, NAN};
+    struct straight line;
+    double step, power = 0, most = 0, share, n;
+
+    if (count > BEAT_COUNT_MOST)
+        count = BEAT_COUNT_MOST;
+    n = (double)count;
+    if (count < COUNT_LEAST || !(t[count - 1] > t[0]))
+        return beat;
+    step = (t[count - 1] - t[0]) / (n - 1);
+    beat.duration = step * n;
+    line = fit(vectors, t, count);
+    for (size_t i = 0; i < count; i++)
+        power += pow(cabs(rest(&line, vectors, t, i)), 2) / n;
+    if (isnan(power))
+        return beat;
+    beat.swing = 0;
+    for (int k = -OVERSAMPLING * (int)count / 2; k <= OVERSAMPLING * (int)count / 2; k++) {
+        double f = k / (OVERSAMPLING * beat.duration), size;
+        if (fabs(f) * beat.duration < PERIODS_LEAST)
+            continue;
+        size = cabs(line_at(&line, vectors, t, count, f));
+        if (size > most) {
+            most = size;
+            beat.turning = f;
+        }
+    }
+    share = most * most / power;
+    /* No power at all: nothing swings (share is NaN). */
+    if (share > 0 && n * pow(1 - fmin(share, 1), n - 1) < LEVEL) {
+        double y = PI * beat.turning * step;
+        beat.swing = most * y / sin(y); /* |y| is pi/2 at most */
+    }
+    return beat;
+}
+
+double beat_variance(const struct beat *beat)
+{
+    double left;
+
+    if (!(beat->swing > 0))
+        return 0;
+    left = beat->swing / (PI * fabs(beat->turning) * beat->duration);
+    return left * left / 2;
+}
