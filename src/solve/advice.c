@@ -62,6 +62,22 @@ bool advice_linearity(const struct model *m, const struct model_row *row, struct
     return true;
 }
 
+/* A figure to so many digits, without an exponent. */
+struct figure {
+    char text[32];
+};
+
+static struct figure figure_of(double value, int digits)
+{
+    struct figure f;
+    double size = value == 0 || !isfinite(value) ? 1 : floor(log10(fabs(value)));
+    double unit = pow(10, size - digits + 1);
+    int decimals = digits - 1 - (int)size;
+    snprintf(f.text, sizeof f.text, "%.*f", decimals > 0 ? (decimals > 9 ? 9 : decimals) : 0,
+             round(value / unit) * unit);
+    return f;
+}
+
 static double weight_unit(const struct job *job, const char **name)
 {
     *name = job->units == UNITS_US ? "oz" : "g";
@@ -117,10 +133,10 @@ bool advice_conditioning(const struct answer *a, struct advice_finding *f)
     double apart = fabs(angle_wrap_180(angle_of(a->weak[second]) - angle_of(a->weak[first])));
     snprintf(f->text, sizeof f->text,
              "planes %s are hardly told apart%s; a run with trial weights on both, %.0f deg apart, "
-             "%.2g times the mass on '%s', would show the difference best",
+             "%s times the mass on '%s', would show the difference best",
              names,
              f->verdict == ADVICE_REFUSE ? "" : ", so the weights are kept moderate", apart,
-             cabs(a->weak[second]), job->planes[second].name);
+             figure_of(cabs(a->weak[second]), 2).text, job->planes[second].name);
     return true;
 }
 
@@ -146,8 +162,11 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
     if (l.off || !(job->rotor_mass > 0) || !(job->service_rpm > 0))
         return false;
     double load = journal_load(job, plane) * TRIAL_GRAVITY;
-    double force = trial_force(cabs(a->placed_weights[plane]), job->planes[plane].radius_m,
-                               job->service_rpm);
+    double mass = cabs(a->placed_weights[plane]); /* all of it together, or the most at one place */
+    for (size_t i = 0; i < a->placement.best.count; i++)
+        if (a->placement.best.items[i].plane == plane)
+            mass = fmax(mass, a->placement.best.items[i].mass);
+    double force = trial_force(mass, job->planes[plane].radius_m, job->service_rpm);
     if (!(load > 0))
         return false;
     *f = (struct advice_finding){.check = "correction-force",
@@ -157,9 +176,10 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
                                  .sensor = -1};
     judge(f, &l, 100 * force / load);
     snprintf(f->text, sizeof f->text,
-             "what is placed on '%s' pulls with %.2g N at service speed, %.2g %% of the static "
-             "journal load%s",
-             job->planes[plane].name, force, 100 * force / load,
+             "what is placed on '%s' pulls with %s N at service speed, %s %% of the static journal "
+             "load%s",
+             job->planes[plane].name, figure_of(force, 2).text,
+             figure_of(100 * force / load, 2).text,
              f->verdict == ADVICE_OK ? ""
                                      : "; check rotor mass, speed, radius and readings before it "
                                        "is fitted");
@@ -234,8 +254,8 @@ static size_t trial_words(const struct job *job, size_t p, const struct advice_t
     double kg = weight_unit(job, &unit);
     if (isnan(t->mass))
         return (size_t)snprintf(text, size, "'%s'", job->planes[p].name);
-    return (size_t)snprintf(text, size, "'%s' about %.3g %s (%.2g N)", job->planes[p].name,
-                            t->mass / kg, unit, t->force);
+    return (size_t)snprintf(text, size, "'%s' about %s %s (%s N)", job->planes[p].name,
+                            figure_of(t->mass / kg, 3).text, unit, figure_of(t->force, 2).text);
 }
 
 static bool plane_is_bare(const struct job *job, size_t p)
@@ -387,8 +407,11 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
     double gap = a->placement.gap, from = a->placement.nothing;
     if (gap > 0 && from > 0)
         snprintf(next->text + length, sizeof next->text - length,
-                 "; a better placement is not ruled out, by %.2g %% of the expected vibration at most",
-                 100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from)));
+                 "; a better placement is not ruled out, by %s %% of the expected vibration at most",
+                 figure_of(100 * (sqrt(a->placement.of_all / from) -
+                                  sqrt(fmax(0, a->placement.bound) / from)),
+                           2)
+                     .text);
     length = strlen(next->text);
     if (a->model->amplitudes)
         length += (size_t)snprintf(next->text + length, sizeof next->text - length,

@@ -43,7 +43,7 @@ bool advice_force(const struct answer *answer, size_t plane, struct advice_findi
 void advice_trials(const struct job *job, struct advice_trial *trials);
 
 /* The run up to which the machine has been corrected: aim.mounted, else the last with readings, if it
- * carries weights and the runs before it could already be solved; -1: no correction has run yet, -2: no
+ * carries weights and the runs of its condition before it could already be solved; -1: no correction has run yet, -2: no
  * memory. */
 int advice_corrected_run(const struct model *model) __attribute__((warn_unused_result));
 

@@ -309,7 +309,8 @@ int model_rank_before(const struct model *m, size_t end)
     if (!x)
         return REGRESS_NO_MEMORY;
     for (size_t i = 0; i < end; i++) {
-        if (!ordinary(&m->job->runs[i]))
+        if (!ordinary(&m->job->runs[i]) ||
+            strcmp(m->job->runs[i].condition, m->job->runs[end].condition) != 0)
             continue;
         for (size_t p = 0; p < planes; p++)
             x[n * planes + p] = job_run_weight(m->job, i, p);

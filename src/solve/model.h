@@ -75,8 +75,8 @@ void model_release(struct model *model); /* safe on a zeroed struct */
 /* True where no run of the job carries a weight on any plane. */
 bool model_is_bare(const struct model *model);
 
-/* Rank of [1, weights] over the job's runs before run `end` (readings or not), roles left out. Negative:
- * no memory. `unknowns` is that of a full one. */
+/* Rank of [1, weights] over the job's runs of the same condition before run `end` (readings or not), roles
+ * left out; planes + 1 is a full one. Negative: no memory. */
 int model_rank_before(const struct model *model, size_t end) __attribute__((warn_unused_result));
 
 /* The reading of run `run` in a row, or NULL. */

@@ -402,15 +402,16 @@ static int give_answer(struct solve *s, struct answer *a)
         advice_refused_step(&refused, &next);
         return write_next(s, &next, NULL, STATUS_UNSOLVED);
     }
+    bool trim = run >= 0 && run == a->model->job->aim.mounted; /* else everything comes off */
     if (!next.step && !answer_helps(a)) {
-        if (run < 0 || has_targets(a)) {
+        if (!trim || has_targets(a)) {
             advice_useless_step(a, &next);
             return write_next(s, &next, NULL, STATUS_UNSOLVED);
         }
         advice_done_step(a, run, false, &next);
     }
     if (!next.step)
-        advice_fit_step(a, run >= 0, &next);
+        advice_fit_step(a, trim, &next);
     status = kernel_status(outlook_fill(a));
     if (status == STATUS_DONE)
         status = write_corrections(s, a);
