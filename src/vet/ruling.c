@@ -41,14 +41,15 @@ size_t ruling_rank(double complex *m, size_t rows, size_t columns)
     return rank;
 }
 
-/* Rank of [1, weights] over the runs of a condition that `take` has for the sensor. */
-static size_t rank_for(const struct ruling_set *s, const bool *take, size_t sensor, int condition,
-                       double complex *room)
+/* Rank of [1, weights] over the runs of a condition that `take` has for the sensor, and run
+ * `extra`. */
+static size_t rank_for(const struct ruling_set *s, const bool *take, size_t extra, size_t sensor,
+                       int condition, double complex *room)
 {
     size_t columns = s->plane_count + 1, rows = 0;
 
     for (size_t r = 0; r < s->run_count; r++) {
-        if (s->condition[r] != condition || !take[r * s->sensor_count + sensor])
+        if (s->condition[r] != condition || (r != extra && !take[r * s->sensor_count + sensor]))
             continue;
         room[rows * columns] = 1;
         for (size_t p = 0; p < s->plane_count; p++) {
@@ -65,12 +66,15 @@ static size_t rank_for(const struct ruling_set *s, const bool *take, size_t sens
     return ruling_rank(room, rows, columns);
 }
 
-static bool keeps_rank(const struct ruling_set *s, size_t sensor, int condition,
-                       double complex *room)
+/* True where the sensor loses rank for want of run `run`: all that is expected would give more than
+ * what is usable, and this run some of it. */
+static bool is_missed(const struct ruling_set *s, size_t run, size_t sensor, double complex *room)
 {
-    size_t all = rank_for(s, s->expected, sensor, condition, room);
+    int condition = s->condition[run];
+    size_t left = rank_for(s, s->usable, s->run_count, sensor, condition, room);
 
-    return rank_for(s, s->usable, sensor, condition, room) >= all;
+    return left < rank_for(s, s->expected, s->run_count, sensor, condition, room) &&
+           left < rank_for(s, s->usable, run, sensor, condition, room);
 }
 
 int ruling_can_answer(const struct ruling_set *s, size_t *run_lost, size_t *sensor_lost)
@@ -83,8 +87,7 @@ int ruling_can_answer(const struct ruling_set *s, size_t *run_lost, size_t *sens
     for (size_t r = 0; answer == 1 && r < s->run_count; r++) {
         for (size_t i = 0; answer == 1 && i < s->sensor_count; i++) {
             size_t at = r * s->sensor_count + i;
-            if (!s->in_aim[i] || !s->expected[at] || s->usable[at] ||
-                keeps_rank(s, i, s->condition[r], room))
+            if (!s->in_aim[i] || !s->expected[at] || s->usable[at] || !is_missed(s, r, i, room))
                 continue;
             answer = 0;
             if (run_lost)

@@ -13,10 +13,9 @@
 #include <string.h>
 
 #include "vet/across.h"
-#include "vet/effect.h"
+#include "vet/answer.h"
+#include "vet/beat.h"
 #include "vet/limits.h"
-#include "vet/orders.h"
-#include "vet/ruling.h"
 #include "vet/trials.h"
 #include "vet/within.h"
 
@@ -486,21 +485,6 @@ static void repeats(void **state)
     assert_true(desk.readings[1][0].use && !desk.readings[2][0].use && desk.readings[3][0].use);
 }
 
-/* The standard error of a change: cov 2 and 2 in all, repeatability 1 per component of both
- * readings, hence sqrt(2 + 2 + 4) by the law of propagation of variances. */
-static void effects(void **state)
-{
-    static const double cov[3] = {1, 0, 1};
-    struct effect e = effect_of(10, cov, 10 + 8 * I, cov, 1);
-
-    (void)state;
-    near(e.errors, 8 / sqrt(8), 1e-12);
-    near(e.amplitude_pct, 100 * (sqrt(164) / 10 - 1), 1e-9);
-    near(e.lag_deg, atan2(8, 10) * 180 / 3.14159265358979, 1e-9);
-    near(effect_of(10, cov, 10, cov, 0).errors, 0, 0);
-    near(effect_of(cexp(I * 3.1), cov, cexp(-I * 3.1), cov, 0).lag_deg, 4.7662, 1e-4);
-}
-
 /* As-found amplitude A, repeatability 3 %: one standard error is 6 % of A. */
 static void trial_effects(void **state)
 {
@@ -578,30 +562,45 @@ static void share_of_one_x(void **state)
     assert_int_equal(ruled(CHECK_ONE_X_SHARE, 1, 1), -1);
 }
 
-/* Acceleration shown as velocity: a line at order n counts 1/n of its size against 1x. */
-static void lines_of_a_spectrum(void **state)
+static void a_beat_is_judged(void **state)
 {
-    double orders[160], amplitude[160] = {0};
-    struct orders o;
+    static const struct figure figures[] = {{CHECK_BEAT, 9.9, RULING_OK},
+                                            {CHECK_BEAT, 10.1, RULING_CAUTION},
+                                            {CHECK_BEAT, 39, RULING_CAUTION},
+                                            {CHECK_BEAT, 41, RULING_REFUSE}};
 
     (void)state;
-    for (int i = 0; i < 160; i++)
-        orders[i] = (i + 1) / 16.0;
-    amplitude[15] = 2;    /* 1x */
-    amplitude[31] = 1.6;  /* 2x */
-    amplitude[23] = 0.9;  /* 1.5x */
-    amplitude[26] = 0.6;  /* 1.6875x */
-    amplitude[27] = 0.45; /* 1.75x */
-    amplitude[3] = 50;    /* 0.25x: below half of 1x */
-    o = orders_of(orders, amplitude, 160, 0);
-    near(o.two_x, 80, 1e-9);
-    near(o.half_order, 45, 1e-9);
-    near(o.neighbour, 37.5, 1e-9); /* root of the sum of squares, 0.75 */
-    near(o.neighbour_order, 27 / 16.0, 1e-12);
-    o = orders_of(orders, amplitude, 160, -1);
-    near(o.two_x, 40, 1e-9);
-    near(o.half_order, 30, 1e-9);
-    assert_true(isnan(orders_of(orders, amplitude, 3, 0).two_x));
+    for (size_t i = 0; i < 4; i++) {
+        set_desk();
+        desk.readings[1][0].beat = (struct beat){figures[i].value / 100 * 7e-3, 0.2, 30};
+        vectors(1);
+        assert_int_equal(ruled(CHECK_BEAT, 1, 0), figures[i].expected);
+        assert_int_equal(desk.readings[1][0].use, figures[i].expected != RULING_REFUSE);
+        assert_int_equal(desk.readings[1][0].widen[0] > 0, figures[i].expected != RULING_OK);
+    }
+}
+
+static void the_whole_job_is_answered(void **state)
+{
+    size_t run = 9, sensor = 9;
+
+    (void)state;
+    set_desk();
+    assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
+    within_refuse(&desk.items[1], &desk.job); /* repeated */
+    assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
+    desk.readings[2][1].use = false;
+    assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 0);
+    assert_int_equal(run, 2);
+    assert_int_equal(sensor, 1);
+    desk.job.aim.named = true; /* the aim is on the other sensor */
+    desk.targets[1].in_aim = false;
+    assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
+    for (int r = 0; r < RUNS; r++) { /* an audit has nothing to answer */
+        desk.items[r].index = -1;
+        within_refuse(&desk.items[r], &desk.job);
+    }
+    assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
 }
 
 static void limits_of_the_sheet(void **state)
@@ -652,52 +651,6 @@ static void loads(void **state)
     assert_true(isnan(within_journal_load(&desk.job)));
 }
 
-static int answer(const bool *usable, const bool *in_aim)
-{
-    static const int condition[4] = {0, 0, 0, 0};
-    static const double complex weights[8] = {0, 0, 0.02, 0, 0, 0.02 * I, 0.02, 0};
-    bool expected[8];
-    struct ruling_set set = {4, 2, 2, condition, weights, expected, usable, in_aim};
-    size_t run = 9, sensor = 9;
-    int result;
-
-    for (int i = 0; i < 8; i++)
-        expected[i] = true;
-    result = ruling_can_answer(&set, &run, &sensor);
-    return result == 1 ? -1 : (int)(run * 2 + sensor); /* what was lost */
-}
-
-static void what_is_left(void **state)
-{
-    bool both[2] = {true, true}, first[2] = {true, false};
-    bool usable[8] = {1, 1, 1, 1, 1, 1, 1, 1};
-
-    (void)state;
-    assert_int_equal(answer(usable, both), -1);
-    usable[2] = usable[3] = false; /* trial A is repeated */
-    assert_int_equal(answer(usable, both), -1);
-    usable[7] = false; /* and its repeat lost for the second sensor */
-    assert_int_equal(answer(usable, both), 3);
-    assert_int_equal(answer(usable, first), -1);
-    usable[0] = false; /* as found, for the first */
-    assert_int_equal(answer(usable, first), 0);
-    usable[2] = true;
-    usable[0] = true;
-    usable[4] = false; /* the trial of plane 2 */
-    assert_int_equal(answer(usable, first), 4);
-}
-
-/* Complex weights: two runs whose weights are multiples of each other do not tell two planes apart.
- */
-static void ranks(void **state)
-{
-    double complex full[4] = {1, I, I, 1}, single[4] = {1, I, I, -1};
-
-    (void)state;
-    assert_int_equal(ruling_rank(full, 2, 2), 2);
-    assert_int_equal(ruling_rank(single, 2, 2), 1);
-}
-
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -711,16 +664,14 @@ int main(void)
         cmocka_unit_test(speeds_apart),
         cmocka_unit_test(lost_phase),
         cmocka_unit_test(repeats),
-        cmocka_unit_test(effects),
         cmocka_unit_test(trial_effects),
         cmocka_unit_test(a_second_trial_on_top),
         cmocka_unit_test(below_target),
         cmocka_unit_test(share_of_one_x),
-        cmocka_unit_test(lines_of_a_spectrum),
+        cmocka_unit_test(a_beat_is_judged),
+        cmocka_unit_test(the_whole_job_is_answered),
         cmocka_unit_test(limits_of_the_sheet),
         cmocka_unit_test(loads),
-        cmocka_unit_test(what_is_left),
-        cmocka_unit_test(ranks),
     };
     int failed = cmocka_run_group_tests(tests, NULL, NULL);
 

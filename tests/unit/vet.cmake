@@ -1,2 +1,3 @@
 # unit tests of src/vet
 lopside_unit_test(vet SOURCES test_vet.c LIBS lopside_vet)
+lopside_unit_test(vet_kernels SOURCES test_vet_kernels.c LIBS lopside_vet)
