@@ -103,13 +103,15 @@ static int check_format(const SF_INFO *info, const struct promise *promise, cons
     const int bytes = bytes_of(info->format);
     if (promise->known && bytes > 0 &&
         info->frames != promise->promised / ((long long)bytes * info->channels))
-        return fault_set(fault, STATUS_RECORDING,
-                         "the header contradicts itself, %lld frames and %lld bytes of samples: '%s'",
-                         (long long)info->frames, promise->promised, path);
+        return fault_set(
+            fault, STATUS_RECORDING,
+            "the header contradicts itself, %lld frames and %lld bytes of samples: '%s'",
+            (long long)info->frames, promise->promised, path);
     return STATUS_DONE;
 }
 
-/* UTF-16 text starts with the same bits as MPEG audio, which libsndfile's decoder reports on standard error. */
+/* UTF-16 text starts with the same bits as MPEG audio, which libsndfile's decoder reports on
+ * standard error. */
 static bool is_lossy_stream(int fd)
 {
     unsigned char head[3];
@@ -154,8 +156,7 @@ int audio_open(struct audio *audio, const char *path, struct fault *fault)
     return STATUS_DONE;
 }
 
-int audio_read(struct audio *audio, float *samples, size_t frames, size_t *got,
-               struct fault *fault)
+int audio_read(struct audio *audio, float *samples, size_t frames, size_t *got, struct fault *fault)
 {
     *got = 0;
     const long long left = audio->frames - audio->done;

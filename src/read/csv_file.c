@@ -65,8 +65,7 @@ static bool time_of(const struct csv_layout *layout, const char *row, size_t len
     csv_parse(&parser, row, length, find_cell, NULL, &find);
     csv_fini(&parser, find_cell, NULL, &find);
     csv_free(&parser);
-    if (!find.found ||
-        decimal_parse(find.text, find.length, layout->decimal, time) != DECIMAL_DONE)
+    if (!find.found || decimal_parse(find.text, find.length, layout->decimal, time) != DECIMAL_DONE)
         return false;
     *time *= layout->time_si;
     *grain = decimal_grain(find.text, find.length, layout->decimal);

@@ -10,18 +10,18 @@
 #include "read/fault.h"
 
 struct csv_file {
-    const char *path;         /* borrowed, for messages */
-    int fd;                   /* private */
+    const char *path; /* borrowed, for messages */
+    int fd;           /* private */
     struct csv_layout layout;
-    struct csv_rows rows;     /* private */
-    struct even even;         /* private */
-    char *chunk;              /* private */
-    size_t taken;             /* private: rows handed out of those that are ready */
-    bool ended;               /* private */
-    double uncertainty;       /* of that rate, relative: how coarsely the times are printed */
-    double rate_hz;           /* from the time column; NaN: there is none */
-    long long frames;         /* rows of data */
-    long long done;           /* rows handed out so far */
+    struct csv_rows rows; /* private */
+    struct even even;     /* private */
+    char *chunk;          /* private */
+    size_t taken;         /* private: rows handed out of those that are ready */
+    bool ended;           /* private */
+    double uncertainty;   /* of that rate, relative: how coarsely the times are printed */
+    double rate_hz;       /* from the time column; NaN: there is none */
+    long long frames;     /* rows of data */
+    long long done;       /* rows handed out so far */
 };
 
 /* Opens the text and finds its layout. `path` and `digest` (of the whole file) are borrowed. */
@@ -30,11 +30,12 @@ int csv_file_open(struct csv_file *file, const char *path, const struct csv_wish
     __attribute__((warn_unused_result));
 
 /* Says which columns are wanted, from 0, each once; then the rows can be read. */
-int csv_file_start(struct csv_file *file, const size_t *columns, size_t count,
-                   struct fault *fault) __attribute__((warn_unused_result));
+int csv_file_start(struct csv_file *file, const size_t *columns, size_t count, struct fault *fault)
+    __attribute__((warn_unused_result));
 
-/* Up to `frames` rows of the wanted columns, interleaved: a pointer that is valid until the next call. *got is
- * 0 at the end only. Faults: see csv_rows.h; also fewer or more rows than were counted. */
+/* Up to `frames` rows of the wanted columns, interleaved: a pointer that is valid until the next
+ * call. *got is 0 at the end only. Faults: see csv_rows.h; also fewer or more rows than were
+ * counted. */
 int csv_file_read(struct csv_file *file, size_t frames, const double **rows, size_t *got,
                   struct fault *fault) __attribute__((warn_unused_result));
 

@@ -103,8 +103,8 @@ static int look_at_rows(struct head *head, char separator, char decimal)
         row->marked = false;
         csv_parse(&parser, head->text + row->offset, row->length, look_at_cell, NULL, &look);
         csv_fini(&parser, look_at_cell, NULL, &look);
-        row->numeric = row->numbers > 0 && (head->loose ? 2 * row->numbers >= row->width
-                                                        : row->numbers == row->width);
+        row->numeric = row->numbers > 0 &&
+                       (head->loose ? 2 * row->numbers >= row->width : row->numbers == row->width);
     }
     csv_free(&parser);
     return 0;
@@ -158,9 +158,8 @@ static int try(struct head *head, char separator, char decimal, struct guess *gu
     const struct row *rows = head->rows;
     const size_t width = usual_width(head);
     size_t start = 0;
-    while (start < head->count &&
-           !(is_data(&rows[start], width) &&
-             (start + 1 == head->count || is_data(&rows[start + 1], width))))
+    while (start < head->count && !(is_data(&rows[start], width) &&
+                                    (start + 1 == head->count || is_data(&rows[start + 1], width))))
         start++;
     if (width == 0 || start == head->count)
         return 0;
@@ -177,8 +176,8 @@ static int try(struct head *head, char separator, char decimal, struct guess *gu
 
 /* ---- which way ---- */
 
-/* Commas between whole numbers may be decimal commas. A header of as many names tells, or a point. The
- * head was last looked at with the comma as separator. */
+/* Commas between whole numbers may be decimal commas. A header of as many names tells, or a point.
+ * The head was last looked at with the comma as separator. */
 static bool is_ambiguous(const struct head *head, const struct guess *guess)
 {
     if (guess->marked || guess->width < 2)
@@ -214,7 +213,8 @@ static int choose(struct head *head, const struct csv_wish *wish, struct guess *
                 return -1;
             const bool commas = separators[s] == ',';
             if (commas && decimals[d] == ',' && !guess.marked && !wish->separator)
-                continue; /* decimal commas between separating commas stand in quotes, or not at all */
+                continue; /* decimal commas between separating commas stand in quotes, or not at all
+                           */
             if (!better(&guess, best))
                 continue;
             *best = guess;
@@ -331,8 +331,8 @@ static struct first_cell first_cell(struct csv_parser *parser, const struct head
     return first;
 }
 
-/* Reads the first column of the data in the head as an even, rising row of times. A count in steps of 1 is
- * the number of the sample, not its time. */
+/* Reads the first column of the data in the head as an even, rising row of times. A count in steps
+ * of 1 is the number of the sample, not its time. */
 static bool rises_evenly(const struct head *head, const struct guess *guess)
 {
     const size_t rows = head->count - guess->start;
@@ -356,8 +356,7 @@ static bool rises_evenly(const struct head *head, const struct guess *guess)
         double time = 0;
         even = decimal_parse(c.text, c.length, guess->decimal, &time) == DECIMAL_DONE &&
                (i == 0 || time > before) &&
-               even_next(&grid, time, decimal_grain(c.text, c.length, guess->decimal)) ==
-                   EVEN_DONE;
+               even_next(&grid, time, decimal_grain(c.text, c.length, guess->decimal)) == EVEN_DONE;
         before = time;
     }
     csv_free(&parser);

@@ -20,14 +20,14 @@ struct csv_wish {
 
 struct csv_layout {
     char separator, decimal;
-    size_t data_offset;      /* of the first row of data, in bytes */
-    long data_line;          /* its line, from 1 */
-    size_t width;            /* columns, empty ones at the end of a row left out */
-    char **names;            /* owned: name_rows rows of `width` texts, outer blanks taken off */
+    size_t data_offset; /* of the first row of data, in bytes */
+    long data_line;     /* its line, from 1 */
+    size_t width;       /* columns, empty ones at the end of a row left out */
+    char **names;       /* owned: name_rows rows of `width` texts, outer blanks taken off */
     size_t name_rows;
     bool has_time;
-    size_t time_column;      /* from 0 */
-    double time_si;          /* seconds per unit of the time column */
+    size_t time_column; /* from 0 */
+    double time_si;     /* seconds per unit of the time column */
 };
 
 /* Finds the layout from the first bytes of a text; `whole` where they are all of it. `path` is for
@@ -36,7 +36,8 @@ int csv_layout_find(struct csv_layout *layout, const char *head, size_t length, 
                     const struct csv_wish *wish, const char *path, struct fault *fault)
     __attribute__((warn_unused_result));
 
-/* Index of the column with that name (with or without a unit in brackets behind it); -1: none, -2: several. */
+/* Index of the column with that name (with or without a unit in brackets behind it); -1: none, -2:
+ * several. */
 int csv_layout_column(const struct csv_layout *layout, const char *name);
 
 void csv_layout_release(struct csv_layout *layout);

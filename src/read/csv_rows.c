@@ -39,8 +39,8 @@ static void take_time(struct csv_rows *rows, const char *text, size_t length, do
         empty_line(rows);
         return;
     }
-    const int result = even_next(rows->even, value * rows->time_si,
-                                 decimal_grain(text, length, rows->decimal));
+    const int result =
+        even_next(rows->even, value * rows->time_si, decimal_grain(text, length, rows->decimal));
     if (result != EVEN_DONE)
         fault_set(rows->fault, STATUS_RECORDING, "%s at '%.*s': '%s' (line %ld, column %zu)",
                   what[result], length > SHOWN_MOST ? SHOWN_MOST : (int)length, text, rows->path,

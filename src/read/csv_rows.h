@@ -15,26 +15,26 @@
 #define CSV_ROWS_FEED_MOST 65536u /* bytes at a time, which bounds the memory */
 
 struct csv_rows {
-    double *values;          /* owned: rows that are ready, interleaved by slot */
-    size_t count;            /* of those rows */
-    size_t slots;            /* wanted columns */
+    double *values; /* owned: rows that are ready, interleaved by slot */
+    size_t count;   /* of those rows */
+    size_t slots;   /* wanted columns */
     /* all that follows is private */
     struct csv_parser parser;
     bool parser_ready;
-    int *slot_of;            /* per column: slot, or -1 */
-    size_t width, column;    /* of the layout; of the cell at hand */
-    size_t filled;           /* columns of the row at hand up to the last that is not empty */
-    size_t empty;            /* first wanted cell of the row that is empty, from 1; 0: none */
-    size_t time_column;      /* SIZE_MAX: none */
+    int *slot_of;         /* per column: slot, or -1 */
+    size_t width, column; /* of the layout; of the cell at hand */
+    size_t filled;        /* columns of the row at hand up to the last that is not empty */
+    size_t empty;         /* first wanted cell of the row that is empty, from 1; 0: none */
+    size_t time_column;   /* SIZE_MAX: none */
     double time_si;
-    struct even *even;       /* borrowed; NULL: no time column */
+    struct even *even; /* borrowed; NULL: no time column */
     char decimal;
-    long line, first_line;   /* of the row at hand; of the first */
-    long empty_line;         /* of the first empty row since the last one with data; 0: none */
-    bool row_open;           /* cells came since the last end of line */
-    bool fresh;              /* no row ended since the last newline */
-    const char *path;        /* borrowed */
-    struct fault *fault;     /* borrowed */
+    long line, first_line; /* of the row at hand; of the first */
+    long empty_line;       /* of the first empty row since the last one with data; 0: none */
+    bool row_open;         /* cells came since the last end of line */
+    bool fresh;            /* no row ended since the last newline */
+    const char *path;      /* borrowed */
+    struct fault *fault;   /* borrowed */
 };
 
 /* `columns` (from 0, each once) get the slots in that order. `even` judges the time column, if the
@@ -44,9 +44,9 @@ int csv_rows_init(struct csv_rows *rows, const struct csv_layout *layout, const 
     __attribute__((warn_unused_result));
 
 /* Takes the next bytes, at most CSV_ROWS_FEED_MOST, from the start of the data on. Rows that became
- * complete stand in values[0..count*slots) until the next call. Faults, each with its line: a row with
- * too few or too many cells, a cell that is no number, an empty line within the data, a time that is uneven,
- * a cell of more than 1 MiB. */
+ * complete stand in values[0..count*slots) until the next call. Faults, each with its line: a row
+ * with too few or too many cells, a cell that is no number, an empty line within the data, a time
+ * that is uneven, a cell of more than 1 MiB. */
 int csv_rows_feed(struct csv_rows *rows, const char *bytes, size_t length)
     __attribute__((warn_unused_result));
 

@@ -27,9 +27,10 @@ struct unit {
 };
 
 static const struct unit units[] = {
-    {"s", 1},         {"sec", 1},        {"secs", 1},    {"second", 1}, {"seconds", 1},
-    {"sekunden", 1},  {"ms", 1e-3},      {"msec", 1e-3}, {"us", 1e-6},  {"\xC2\xB5s", 1e-6},
-    {"\xCE\xBCs", 1e-6}, {"\xB5s", 1e-6}, {"ns", 1e-9},   {"min", 60},   {"h", 3600},
+    {"s", 1},       {"sec", 1},          {"secs", 1},         {"second", 1},
+    {"seconds", 1}, {"sekunden", 1},     {"ms", 1e-3},        {"msec", 1e-3},
+    {"us", 1e-6},   {"\xC2\xB5s", 1e-6}, {"\xCE\xBCs", 1e-6}, {"\xB5s", 1e-6},
+    {"ns", 1e-9},   {"min", 60},         {"h", 3600},
 };
 
 static double find_unit(const char *text, size_t length)

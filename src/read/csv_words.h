@@ -8,11 +8,12 @@
 /* True for "Time", "t", "time_ms", "Zeit [s]", ... */
 bool csv_words_is_time(const char *header);
 
-/* Seconds per unit, out of "ms", "[ms]", "(s)", ...; 0 where the text is empty, -1 for a unit that is no time. */
+/* Seconds per unit, out of "ms", "[ms]", "(s)", ...; 0 where the text is empty, -1 for a unit that
+ * is no time. */
 double csv_words_time_unit(const char *text);
 
-/* The same out of a whole header, "Time (ms)" or "time_ms": 0 where it names no unit, -1 where it names
- * in brackets one that is no time. */
+/* The same out of a whole header, "Time (ms)" or "time_ms": 0 where it names no unit, -1 where it
+ * names in brackets one that is no time. */
 double csv_words_header_unit(const char *header);
 
 /* True where `header` is `name`, perhaps with a unit in brackets behind it. `exact`: without. */

@@ -13,8 +13,8 @@
 #define TEXT_MOST 512           /* longer numbers are no measurement */
 
 struct parts {
-    uint64_t digits; /* the first DIGITS_MOST significant digits */
-    int exponent;    /* of ten, for `digits` */
+    uint64_t digits;      /* the first DIGITS_MOST significant digits */
+    int exponent;         /* of ten, for `digits` */
     bool negative, whole; /* whole: no digit was left out */
 };
 
@@ -98,11 +98,46 @@ static int slow(const char *text, size_t length, char point, double *value)
     return DECIMAL_DONE;
 }
 
+static const double powers[POWER_MOST + 1] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,  1e6,  1e7,
+                                              1e8,  1e9,  1e10, 1e11, 1e12, 1e13, 1e14, 1e15,
+                                              1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
+
+/* What nearly every cell is: at most 19 characters, a sign, digits and a point. False: not that. */
+static inline bool is_plain(const char *text, size_t length, char point, double *value)
+{
+    const char *p = text, *end = text + length;
+    if (length > DIGITS_MOST || length == 0)
+        return false;
+    const bool negative = *p == '-';
+    p += negative;
+    uint64_t digits = 0;
+    const char *first = p;
+    unsigned digit;
+    while (p < end && (digit = (unsigned char)(*p - '0')) < 10) {
+        digits = digits * 10 + digit;
+        p++;
+    }
+    ptrdiff_t count = p - first, behind = 0;
+    if (p < end && *p == point) {
+        first = ++p;
+        while (p < end && (digit = (unsigned char)(*p - '0')) < 10) {
+            digits = digits * 10 + digit;
+            p++;
+        }
+        behind = p - first;
+        count += behind;
+    }
+    if (p < end || count == 0 || digits > EXACT_MOST)
+        return false;
+    const double x = (double)(int64_t)digits / powers[behind];
+    *value = negative ? -x : x;
+    return true;
+}
+
 int decimal_parse(const char *text, size_t length, char point, double *value)
 {
-    static const double powers[POWER_MOST + 1] = {
-        1e0,  1e1,  1e2,  1e3,  1e4,  1e5,  1e6,  1e7,  1e8,  1e9,  1e10, 1e11,
-        1e12, 1e13, 1e14, 1e15, 1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
+    if (is_plain(text, length, point, value))
+        return DECIMAL_DONE;
     struct parts parts;
     if (!take_apart(text, text + length, point, &parts))
         return DECIMAL_NOT_A_NUMBER;

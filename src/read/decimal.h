@@ -11,11 +11,12 @@ enum decimal_result {
 };
 
 /* Reads the whole of text[0..length): sign, digits, at most one `point` ('.' or ','), exponent. No
- * blanks, no hexadecimal, no thousands separators; a digit is needed before the exponent. *value is the double
- * nearest to the text, as strtod gives in the C locale; it is set only for DECIMAL_DONE.
+ * blanks, no hexadecimal, no thousands separators; a digit is needed before the exponent. *value is
+ * the double nearest to the text, as strtod gives in the C locale; it is set only for DECIMAL_DONE.
  *
  * Digits up to 2^53 times a power of ten up to 10^22 take one correctly rounded operation: W. D.
- * Clinger, "How to read floating point numbers accurately", PLDI 1990, 92-101. Others go to strtod. */
+ * Clinger, "How to read floating point numbers accurately", PLDI 1990, 92-101. Others go to strtod.
+ */
 int decimal_parse(const char *text, size_t length, char point, double *value)
     __attribute__((warn_unused_result));
 

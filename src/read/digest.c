@@ -10,8 +10,8 @@
 #include <sys/stat.h>
 #include <unistd.h>
 
-#define CHUNK (256u * 1024u)  /* stays in the second-level cache */
-#define TEXT_PROBE 4096u      /* binary headers have a NUL within their first bytes */
+#define CHUNK (256u * 1024u) /* stays in the second-level cache */
+#define TEXT_PROBE 4096u     /* binary headers have a NUL within their first bytes */
 
 static void to_hex(const unsigned char *bytes, size_t length, char *hex)
 {

@@ -11,16 +11,16 @@
 /* Which state of which file: differs once a file was changed or replaced. */
 struct digest_mark {
     unsigned long long device, node;
-    long long size;            /* bytes */
+    long long size;                 /* bytes */
     long long seconds, nanoseconds; /* of its last change */
 };
 
 struct digest {
     char sha256[65];
     struct digest_mark mark;
-    bool text;                 /* no NUL byte in its first 4 KiB */
-    struct lines lines;        /* of a text */
-    struct fault fault;        /* unreadable, a directory, empty, changed: status not STATUS_DONE */
+    bool text;          /* no NUL byte in its first 4 KiB */
+    struct lines lines; /* of a text */
+    struct fault fault; /* unreadable, a directory, empty, changed: status not STATUS_DONE */
 };
 
 /* SHA-256 of bytes, as 64 hexadecimal digits. 0, or -1 when the library fails. */

@@ -7,15 +7,18 @@
  * lost row is a step of 2; clocks that count in single precision err by less than a quarter. */
 #define STEP_MOST 0.25
 #define GRID_MOST 0.5
-#define ALIKE 50        /* so many equal steps and then a longer one: rows were lost, not rounded */
+#define ALIKE 50 /* so many equal steps and then a longer one: rows were lost, not rounded */
 #define LONGER 1.9
 
 static void note(struct even *even, struct decimal_grain grain)
 {
+    if (grain.fraction <= even->fraction && grain.significant <= even->significant)
+        return;
     if (grain.fraction > even->fraction)
         even->fraction = grain.fraction;
     if (grain.significant > even->significant)
         even->significant = grain.significant;
+    even->low = even->high = 0; /* no decade is known */
 }
 
 static bool breaks_row(struct even *even, double step)
@@ -27,14 +30,22 @@ static bool breaks_row(struct even *even, double step)
     return lost;
 }
 
-/* Resolution of a printed time, s: the coarser of a fixed number of decimals and a fixed number of significant
- * digits. Zeros that were dropped at the end of one text are known from the others. */
-static double resolution(const struct even *even, double time)
+/* Resolution of a printed time, s: the coarser of a fixed number of decimals and a fixed number of
+ * significant digits. Zeros that were dropped at the end of one text are known from the others. */
+static double resolution(struct even *even, double time)
 {
     const double value = fabs(time / even->unit);
+    if (value >= even->low && value < even->high)
+        return even->fine;
     const double decimals = pow(10, -even->fraction);
-    const double digits =
-        value > 0 ? pow(10, floor(log10(value)) + 1 - even->significant) : decimals;
+    double digits = decimals;
+    if (value > 0) {
+        const double decade = floor(log10(value));
+        digits = pow(10, decade + 1 - even->significant);
+        even->low = pow(10, decade);
+        even->high = 10 * even->low;
+        even->fine = even->unit * (digits > decimals ? digits : decimals);
+    }
     return even->unit * (digits > decimals ? digits : decimals);
 }
 
@@ -77,7 +88,7 @@ int even_finish(const struct even *even)
     return even->drifted ? EVEN_DRIFT : EVEN_DONE;
 }
 
-double even_uncertainty(const struct even *even)
+double even_uncertainty(struct even *even)
 {
     const double length = even->step * (double)(even->rows - 1);
     return resolution(even, even->first + length) / length;

@@ -1,4 +1,5 @@
-/* fault.h - why a recording could not be read: an exit code and one line without the stage's name. */
+/* fault.h - why a recording could not be read: an exit code and one line without the stage's name.
+ */
 #ifndef LOPSIDE_READ_FAULT_H
 #define LOPSIDE_READ_FAULT_H
 

@@ -16,7 +16,10 @@ struct lines {
     bool filled;           /* private: the line at hand is not empty */
 };
 
-#define LINES_INIT {0}
+#define LINES_INIT                                                                                 \
+    {                                                                                              \
+        0                                                                                          \
+    }
 
 /* The next bytes of the text; it may be cut anywhere. */
 void lines_feed(struct lines *lines, const char *bytes, size_t length);

@@ -7,7 +7,8 @@
 #include <string.h>
 
 #define NAME_MOST (NAMES_ROOM - 1)
-#define HEAD 16 /* recordings are told apart by their endings more often than by their beginnings */
+#define HEAD 16 /* recordings are told apart by their endings more often than by their beginnings  \
+                 */
 
 /* Bytes of the well-formed UTF-8 character at p (RFC 3629), 0 if there is none. */
 static size_t character(const unsigned char *p)

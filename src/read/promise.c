@@ -46,13 +46,13 @@ static int fetch(int fd, long long offset, unsigned char *bytes, size_t length)
 
 /* How a family of containers writes its chunks. */
 struct chunks {
-    int id, length;        /* bytes of a chunk's name and of its size */
-    bool is_big;           /* byte order of the size */
-    bool inclusive;        /* the size counts the chunk's header */
+    int id, length; /* bytes of a chunk's name and of its size */
+    bool is_big;    /* byte order of the size */
+    bool inclusive; /* the size counts the chunk's header */
     int align;
-    int before;            /* bytes of the samples' chunk before the samples */
-    const char *samples;   /* name of the samples' chunk */
-    long long first;       /* offset of the first chunk */
+    int before;          /* bytes of the samples' chunk before the samples */
+    const char *samples; /* name of the samples' chunk */
+    long long first;     /* offset of the first chunk */
 };
 
 static void settle(struct promise *promise, uint64_t promised, long long start, long long size)
@@ -63,7 +63,8 @@ static void settle(struct promise *promise, uint64_t promised, long long start, 
     promise->promised = promised > INT64_MAX ? INT64_MAX : (long long)promised;
 }
 
-/* Walks the chunks to the samples. `wide`: RF64's 64-bit size of the samples is in its first chunk. */
+/* Walks the chunks to the samples. `wide`: RF64's 64-bit size of the samples is in its first chunk.
+ */
 static int walk(int fd, long long size, const struct chunks *how, bool wide,
                 struct promise *promise)
 {
@@ -75,8 +76,8 @@ static int walk(int fd, long long size, const struct chunks *how, bool wide,
         int got = fetch(fd, at, head, (size_t)head_size);
         if (got <= 0)
             return got;
-        uint64_t length = how->is_big ? big(head + how->id, how->length)
-                                      : little(head + how->id, how->length);
+        uint64_t length =
+            how->is_big ? big(head + how->id, how->length) : little(head + how->id, how->length);
         const bool unknown = how->length == 4 ? length == UNKNOWN_32 : length > INT64_MAX;
         if (how->inclusive && !unknown)
             length = length < (uint64_t)head_size ? 0 : length - (uint64_t)head_size;

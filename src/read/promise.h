@@ -15,7 +15,8 @@ struct promise {
     long long there;    /* bytes behind the start of the samples, up to the end of the file */
 };
 
-/* Reads the chunk headers of the file descriptor (seekable) of `size` bytes. Returns 0, or -1 for a read error. */
+/* Reads the chunk headers of the file descriptor (seekable) of `size` bytes. Returns 0, or -1 for a
+ * read error. */
 int promise_read(int fd, long long size, struct promise *promise)
     __attribute__((warn_unused_result));
 

@@ -21,21 +21,21 @@
 #error "samples in the stream are little-endian; this machine needs a swap before sink_bytes"
 #endif
 
-#define BLOCK_FRAMES 16384u              /* more gain nothing in speed */
-#define BLOCK_BYTES (512u * 1024u)       /* bounds the memory of many columns */
+#define BLOCK_FRAMES 16384u        /* more gain nothing in speed */
+#define BLOCK_BYTES (512u * 1024u) /* bounds the memory of many columns */
 #define COLUMN_BYTES (sizeof(float))
 
 struct stage {
     struct sheet sheet;
     bool audit;
-    bool *chosen;            /* per run */
-    char **paths;            /* of the files of the chosen runs, in order; openable from here */
+    bool *chosen; /* per run */
+    char **paths; /* of the files of the chosen runs, in order; openable from here */
     size_t path_count;
     struct digest_queue *queue;
     struct sink *sink;
     struct line line;
     float *block;
-    bool failed;             /* audit: some recording could not be read */
+    bool failed; /* audit: some recording could not be read */
 };
 
 /* ---- before the stream ---- */
@@ -91,8 +91,8 @@ static void release_runs(struct job_run *runs, struct sheet_run *layouts, size_t
 }
 
 /* A recording as a run of its own, laid out as [recording] says. 0 or -1. */
-static int adopt(const struct sheet *sheet, const char *path, const char *name,
-                 struct job_run *run, struct sheet_run *layout)
+static int adopt(const struct sheet *sheet, const char *path, const char *name, struct job_run *run,
+                 struct sheet_run *layout)
 {
     const size_t sensors = sheet->job.sensor_count;
     *run = (struct job_run){.condition = "service", .speed_rpm = NAN};
@@ -229,11 +229,11 @@ static void make_wish(const struct stage *stage, struct task *task, char *const 
             continue;
         const struct sheet_scale *scale = &run->scales[s];
         first = first || is_first_column(run->channels[s]);
-        task->columns[count++] = (struct recording_column){
-            .name = job->sensors[s].name,
-            .channel = run->channels[s],
-            .volts = scale->given,
-            .si = scale->given ? scale->si_per_volt : scale->si_per_unit};
+        task->columns[count++] =
+            (struct recording_column){.name = job->sensors[s].name,
+                                      .channel = run->channels[s],
+                                      .volts = scale->given,
+                                      .si = scale->given ? scale->si_per_volt : scale->si_per_unit};
     }
     if (job->has_tacho) {
         first = first || is_first_column(job->tacho_channel);
@@ -463,18 +463,21 @@ static void release(struct stage *stage)
 int stage_read(int argc, char **argv)
 {
     struct option_list runs = {0}, operands = {0};
-    const struct option options[] = {
-        {.name = "run", .type = OPTION_LIST, .unit = "NAME", .value = &runs,
-         .help = "read this run of the sheet only (may repeat)"},
-        {0}};
-    const struct usage usage = {
-        .stage = "read",
-        .operands = "SHEET [RECORDING...]",
-        .summary = "job sheet and recordings become one calibrated sample stream",
-        .options = options,
-        .least = 1,
-        .most = SIZE_MAX,
-        .details = "With recordings, the sheet's runs are ignored and each recording is a run of its own."};
+    const struct option options[] = {{.name = "run",
+                                      .type = OPTION_LIST,
+                                      .unit = "NAME",
+                                      .value = &runs,
+                                      .help = "read this run of the sheet only (may repeat)"},
+                                     {0}};
+    const struct usage usage = {.stage = "read",
+                                .operands = "SHEET [RECORDING...]",
+                                .summary =
+                                    "job sheet and recordings become one calibrated sample stream",
+                                .options = options,
+                                .least = 1,
+                                .most = SIZE_MAX,
+                                .details = "With recordings, the sheet's runs are ignored and each "
+                                           "recording is a run of its own."};
     struct stage stage = {.line = LINE_INIT};
     int status = STATUS_DONE;
     int result = options_parse(&usage, argc, argv, &operands);

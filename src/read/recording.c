@@ -24,9 +24,9 @@ struct recording_source {
     struct columns_route *routes; /* from: channel of the sound file, or slot of the text */
     double *gains;                /* beside the routes */
     size_t route_count;
-    size_t *columns;              /* text: wanted columns by slot */
+    size_t *columns; /* text: wanted columns by slot */
     size_t column_count;
-    float *buffer;                /* sound: BUFFER_SAMPLES, or one frame */
+    float *buffer; /* sound: BUFFER_SAMPLES, or one frame */
 };
 
 static int open_source(struct recording_source *source, const struct recording_wish *wish,
@@ -53,10 +53,11 @@ static int open_source(struct recording_source *source, const struct recording_w
                              source->rate_hz, rate, path);
         const bool coarse = source->csv.uncertainty > COARSE;
         if (coarse && isnan(rate))
-            return fault_set(fault, STATUS_RECORDING,
-                             "the time column gives the rate to %.1g %% only, state the rate in the "
-                             "sheet: '%s'",
-                             100 * source->csv.uncertainty, path);
+            return fault_set(
+                fault, STATUS_RECORDING,
+                "the time column gives the rate to %.1g %% only, state the rate in the "
+                "sheet: '%s'",
+                100 * source->csv.uncertainty, path);
         if (isnan(source->rate_hz) || coarse)
             source->rate_hz = rate;
     } else {
@@ -79,17 +80,20 @@ static int same_length_and_rate(const struct recording *recording, struct fault 
     char *const *paths = recording->wish->paths;
     for (size_t i = 1; i < recording->source_count; i++) {
         const struct recording_source *other = &recording->sources[i];
-        /* rates out of time columns are rounded: half a sample over the whole length is no difference */
+        /* rates out of time columns are rounded: half a sample over the whole length is no
+         * difference */
         if (fabs(first->rate_hz - other->rate_hz) * (double)first->frames > 0.5 * first->rate_hz)
-            return fault_set(fault, STATUS_RECORDING,
-                             "files of one run have different rates, %.9g Hz in '%s' and %.9g Hz in "
-                             "'%s'",
-                             first->rate_hz, paths[0], other->rate_hz, paths[i]);
+            return fault_set(
+                fault, STATUS_RECORDING,
+                "files of one run have different rates, %.9g Hz in '%s' and %.9g Hz in "
+                "'%s'",
+                first->rate_hz, paths[0], other->rate_hz, paths[i]);
         if (first->frames != other->frames)
-            return fault_set(fault, STATUS_RECORDING,
-                             "files of one run have different lengths, %lld frames in '%s' and %lld "
-                             "in '%s'",
-                             first->frames, paths[0], other->frames, paths[i]);
+            return fault_set(
+                fault, STATUS_RECORDING,
+                "files of one run have different lengths, %lld frames in '%s' and %lld "
+                "in '%s'",
+                first->frames, paths[0], other->frames, paths[i]);
     }
     return STATUS_DONE;
 }
@@ -116,11 +120,11 @@ static int find_number(const struct recording *recording, const struct recording
         *channel = number - s[i].base - 1;
         const int named = s[i].text ? csv_layout_column(&s[i].csv.layout, column->channel) : -1;
         if (named >= 0 && (size_t)named != *channel)
-            return fault_set(fault, STATUS_RECORDING,
-                             "channel %zu of '%s' may be column %zu or the one named so, column %d: "
-                             "'%s'",
-                             number, column->name, *channel + 1, named + 1,
-                             recording->wish->paths[i]);
+            return fault_set(
+                fault, STATUS_RECORDING,
+                "channel %zu of '%s' may be column %zu or the one named so, column %d: "
+                "'%s'",
+                number, column->name, *channel + 1, named + 1, recording->wish->paths[i]);
         return STATUS_DONE;
     }
     const struct recording_source *last = &s[recording->source_count - 1];

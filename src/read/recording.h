@@ -20,13 +20,13 @@ struct recording_column {
 };
 
 struct recording_wish {
-    char *const *paths;                /* at least one. Borrowed */
+    char *const *paths;                  /* at least one. Borrowed */
     const struct digest *const *digests; /* one a path, without faults. Borrowed */
     size_t path_count;
     const struct recording_column *columns; /* at least one. Borrowed during the call */
     size_t column_count;
-    double full_scale;                 /* V at digital full scale; NaN: not known */
-    double rate_hz;                    /* for a text without a time column; NaN: not known */
+    double full_scale; /* V at digital full scale; NaN: not known */
+    double rate_hz;    /* for a text without a time column; NaN: not known */
     struct csv_wish csv;
 };
 
@@ -35,21 +35,22 @@ struct recording_source; /* private: one file */
 struct recording {
     double rate_hz;
     long long frames;
-    double *rails;       /* owned: one a column, |SI| at full scale; NaN: not known */
+    double *rails; /* owned: one a column, |SI| at full scale; NaN: not known */
     size_t column_count;
-    struct recording_source *sources; /* private */
-    size_t source_count;              /* private */
-    bool whole_numbers;               /* private: nothing in it can be out of range */
+    struct recording_source *sources;  /* private */
+    size_t source_count;               /* private */
+    bool whole_numbers;                /* private: nothing in it can be out of range */
     const struct recording_wish *wish; /* borrowed */
 };
 
-/* Opens all files and finds all columns. STATUS_RECORDING: unreadable, cut short, a missing channel, different
- * rates or lengths; STATUS_USAGE: a calibration that the sheet lacks. `wish` is borrowed until the close. */
+/* Opens all files and finds all columns. STATUS_RECORDING: unreadable, cut short, a missing
+ * channel, different rates or lengths; STATUS_USAGE: a calibration that the sheet lacks. `wish` is
+ * borrowed until the close. */
 int recording_open(struct recording *recording, const struct recording_wish *wish,
                    struct fault *fault) __attribute__((warn_unused_result));
 
-/* Exactly min(frames, what is left) frames into samples[frames*column_count], interleaved. *got is 0 at the end,
- * after which the files were found complete and unchanged. */
+/* Exactly min(frames, what is left) frames into samples[frames*column_count], interleaved. *got is
+ * 0 at the end, after which the files were found complete and unchanged. */
 int recording_read(struct recording *recording, float *samples, size_t frames, size_t *got,
                    struct fault *fault) __attribute__((warn_unused_result));
 

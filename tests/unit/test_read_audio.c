@@ -1,5 +1,5 @@
-/* Sound files: exact values, and every way of being cut short. The files are written by libsndfile, or
- * byte by byte after the container's specification. */
+/* Sound files: exact values, and every way of being cut short. The files are written by libsndfile,
+ * or byte by byte after the container's specification. */
 #include <math.h>
 #include <setjmp.h>
 #include <stdarg.h>
@@ -52,8 +52,8 @@ static int read_sound(struct audio *audio, struct fault *fault)
     int status = audio_open(audio, path, fault);
     size_t got = 1, done = 0;
     while (status == STATUS_DONE && got > 0 && done <= FRAMES) {
-        status = audio_read(audio, back + done * CHANNELS, FRAMES - done < 617 ? FRAMES - done : 617,
-                            &got, fault);
+        status = audio_read(audio, back + done * CHANNELS,
+                            FRAMES - done < 617 ? FRAMES - done : 617, &got, fault);
         done += got;
         if (done == FRAMES)
             break;
@@ -131,7 +131,8 @@ static void put32(unsigned char *p, uint32_t value)
         p[i] = (unsigned char)(value >> (8 * i));
 }
 
-/* A canonical 16-bit WAV of one channel (RIFF specification, 1991): `data` bytes, header says `promised`. */
+/* A canonical 16-bit WAV of one channel (RIFF specification, 1991): `data` bytes, header says
+ * `promised`. */
 static void write_wav(uint32_t promised, size_t data)
 {
     unsigned char head[44] = "RIFF....WAVEfmt ....\1\0\1\0";
@@ -259,9 +260,9 @@ static void test_columns(void **unused)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_exact_values),     cmocka_unit_test(test_cut_files),
+        cmocka_unit_test(test_exact_values),          cmocka_unit_test(test_cut_files),
         cmocka_unit_test(test_header_without_length), cmocka_unit_test(test_floats_and_nan),
-        cmocka_unit_test(test_codings_that_lose), cmocka_unit_test(test_columns),
+        cmocka_unit_test(test_codings_that_lose),     cmocka_unit_test(test_columns),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -1,5 +1,5 @@
-/* Texts of columns in every dialect that instruments and spreadsheets write: the same numbers, printed
- * by the C library, must come back from each; and each damage is named with its line. */
+/* Texts of columns in every dialect that instruments and spreadsheets write: the same numbers,
+ * printed by the C library, must come back from each; and each damage is named with its line. */
 #include <math.h>
 #include <setjmp.h>
 #include <stdarg.h>
@@ -92,9 +92,14 @@ static void read_back(struct result *result, const char *first, const char *seco
     assert_non_null(queue);
     const struct digest *digest = digest_queue_wait(queue, 0);
     assert_int_equal(digest->fault.status, STATUS_DONE);
-    const struct recording_wish wish = {.paths = paths, .digests = &digest, .path_count = 1,
-                                        .columns = columns, .column_count = 2,
-                                        .full_scale = NAN, .rate_hz = rate, .csv = csv};
+    const struct recording_wish wish = {.paths = paths,
+                                        .digests = &digest,
+                                        .path_count = 1,
+                                        .columns = columns,
+                                        .column_count = 2,
+                                        .full_scale = NAN,
+                                        .rate_hz = rate,
+                                        .csv = csv};
     struct recording recording = {0};
     size_t got = 1;
     int status = recording_open(&recording, &wish, &result->fault);
@@ -257,14 +262,16 @@ static void test_guesses_are_refused(void **unused)
 {
     (void)unused;
     struct csv_wish wish = wish_found();
-    expect_fault("1,5,2,5\n1,6,2,6\n1,7,2,7\n", "1", "2", 100, wish, "separate columns or decimals");
+    expect_fault("1,5,2,5\n1,6,2,6\n1,7,2,7\n", "1", "2", 100, wish,
+                 "separate columns or decimals");
     expect_fault("a,b\n1,5,2,5\n1,6,2,6\n1,7,2,7\n", "a", "b", 100, wish, "columns or decimals");
     expect_fault("only words\nand more\n", "1", "2", 100, wish, "rows of numbers");
     expect_fault("a,a\n1.5,2.5\n1.6,2.6\n", "a", "2", 100, wish, "several columns");
     expect_fault("a,b\n1.5,2.5\n1.6,2.6\n", "c", "2", 100, wish, "no column is named 'c'");
     expect_fault("a,b\n1.5,2.5\n1.6,2.6\n", "1", "3", 100, wish, "no channel 3");
     expect_fault("a,b\r1.5,2.5\r1.6,2.6\r", "1", "2", 100, wish, "carriage return");
-    expect_fault("t,a,b\nlap,g,V\n0.1,1.5,2.5\n0.2,1.6,2.6\n", "2", "3", 100, wish, "unit of the time");
+    expect_fault("t,a,b\nlap,g,V\n0.1,1.5,2.5\n0.2,1.6,2.6\n", "2", "3", 100, wish,
+                 "unit of the time");
     expect_fault("t,a,b\n0.1,1.5,2.5\n0.2,1.6,2.6\n", "1", "3", NAN, wish, "time column");
     expect_fault("t,a,b\n0.1,1.5,2.5\n", "2", "3", NAN, wish, "only one row");
     wish.time_column = "q";

@@ -1,5 +1,5 @@
-/* Even times: what printing rounds passes, what was lost or moved does not. Grids are made here from their
- * definition, t = i/rate, and printed by the C library. */
+/* Even times: what printing rounds passes, what was lost or moved does not. Grids are made here
+ * from their definition, t = i/rate, and printed by the C library. */
 #include <math.h>
 #include <setjmp.h>
 #include <stdarg.h>

@@ -16,12 +16,15 @@ static void test_stems(void **unused)
 {
     (void)unused;
     char *const paths[] = {(char *)"a/fan.wav", (char *)"b/fan.wav", (char *)"/x/pump.1.flac",
-                           (char *)"L\xC3\xBC" "fter.csv", (char *)".hidden"};
+                           (char *)"L\xC3\xBC"
+                                   "fter.csv",
+                           (char *)".hidden"};
     assert_int_equal(names_from_paths(paths, 5, names), 0);
     assert_string_equal(names[0], "a/fan");
     assert_string_equal(names[1], "b/fan");
     assert_string_equal(names[2], "pump.1");
-    assert_string_equal(names[3], "L\xC3\xBC" "fter");
+    assert_string_equal(names[3], "L\xC3\xBC"
+                                  "fter");
     assert_string_equal(names[4], ".hidden");
 }
 
@@ -29,7 +32,7 @@ static void test_deeper_and_endings(void **unused)
 {
     (void)unused;
     char *const paths[] = {(char *)"p/a/fan.wav", (char *)"q/a/fan.wav", (char *)"z.wav",
-                           (char *)"z.csv", (char *)"d/same.wav", (char *)"d/same.wav"};
+                           (char *)"z.csv",       (char *)"d/same.wav",  (char *)"d/same.wav"};
     assert_int_equal(names_from_paths(paths, 6, names), 0);
     assert_string_equal(names[0], "p/a/fan");
     assert_string_equal(names[1], "q/a/fan");
@@ -42,7 +45,8 @@ static void test_deeper_and_endings(void **unused)
 static void test_forbidden(void **unused)
 {
     (void)unused;
-    char *const paths[] = {(char *)"a:b=c;d#e]f\n.wav", (char *)" x .wav", (char *)"bad\xFF\xC0.wav"};
+    char *const paths[] = {(char *)"a:b=c;d#e]f\n.wav", (char *)" x .wav",
+                           (char *)"bad\xFF\xC0.wav"};
     assert_int_equal(names_from_paths(paths, 3, names), 0);
     assert_string_equal(names[0], "a_b_c_d_e_f_");
     assert_string_equal(names[1], "_x_");
