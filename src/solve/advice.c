@@ -112,10 +112,11 @@ bool advice_conditioning(const struct answer *a, struct advice_finding *f)
     if (short_of_rows) {
         f->verdict = ADVICE_REFUSE;
         f->limit = l.refuse;
-        snprintf(f->text, sizeof f->text,
-                 "%zu planes cannot be told apart by %zu usable readings a run: %s; more sensors or "
-                 "another speed are needed",
-                 a->planes, a->rows, names);
+        snprintf(
+            f->text, sizeof f->text,
+            "%zu planes cannot be told apart by %zu usable readings a run: %s; more sensors or "
+            "another speed are needed",
+            a->planes, a->rows, names);
         return true;
     }
     if (f->verdict == ADVICE_OK) {
@@ -134,13 +135,13 @@ bool advice_conditioning(const struct answer *a, struct advice_finding *f)
     snprintf(f->text, sizeof f->text,
              "planes %s are hardly told apart%s; a run with trial weights on both, %.0f deg apart, "
              "%s times the mass on '%s', would show the difference best",
-             names,
-             f->verdict == ADVICE_REFUSE ? "" : ", so the weights are kept moderate", apart,
+             names, f->verdict == ADVICE_REFUSE ? "" : ", so the weights are kept moderate", apart,
              figure_of(cabs(a->weak[second]), 2).text, job->planes[second].name);
     return true;
 }
 
-/* Static load on the journal that carries plane `plane`, kg: half the weight unless distances tell. */
+/* Static load on the journal that carries plane `plane`, kg: half the weight unless distances tell.
+ */
 static double journal_load(const struct job *job, size_t plane)
 {
     double share[2] = {0.5, 0.5};
@@ -304,8 +305,9 @@ void advice_repeat_step(const struct model *m, const struct ruling *ruling,
     *next = (struct advice_next){.step = "repeat"};
     if (!ruling->row) {
         snprintf(next->reason, sizeof next->reason, "no reading is fit to balance on");
-        snprintf(next->text, sizeof next->text,
-                 "no reading is fit to balance on: mend what the findings name and repeat the runs");
+        snprintf(
+            next->text, sizeof next->text,
+            "no reading is fit to balance on: mend what the findings name and repeat the runs");
         return;
     }
     const struct model_row *row = ruling->row;
@@ -318,12 +320,13 @@ void advice_repeat_step(const struct model *m, const struct ruling *ruling,
                  sensor, run, condition);
     else
         snprintf(next->reason, sizeof next->reason,
-                 "refused readings that the regression needs: '%s' (sensor '%s', condition '%s')", run,
-                 sensor, condition);
-    snprintf(next->text, sizeof next->text,
-             "the readings left cannot carry a correction: mend what the findings refuse, then repeat "
-             "run '%s' with sensor '%s' (condition '%s')",
-             run, sensor, condition);
+                 "refused readings that the regression needs: '%s' (sensor '%s', condition '%s')",
+                 run, sensor, condition);
+    snprintf(
+        next->text, sizeof next->text,
+        "the readings left cannot carry a correction: mend what the findings refuse, then repeat "
+        "run '%s' with sensor '%s' (condition '%s')",
+        run, sensor, condition);
 }
 
 void advice_missing_step(const struct model *m, const struct ruling *ruling,
@@ -365,15 +368,16 @@ void advice_missing_step(const struct model *m, const struct ruling *ruling,
             length += (size_t)snprintf(names + length, sizeof names - length, "%s'%s'",
                                        length ? " and " : "", job->planes[p].name);
     snprintf(next->reason, sizeof next->reason,
-             "a run is missing: the weights on planes %s never change apart from each other", names);
-    snprintf(next->text, sizeof next->text,
-             "run with a trial weight on one of the planes %s alone", names);
+             "a run is missing: the weights on planes %s never change apart from each other",
+             names);
+    snprintf(next->text, sizeof next->text, "run with a trial weight on one of the planes %s alone",
+             names);
 }
 
 void advice_refused_step(const struct advice_finding *finding, struct advice_next *next)
 {
-    *next = (struct advice_next){
-        .step = strcmp(finding->check, "conditioning") ? "repeat" : "trial"};
+    *next =
+        (struct advice_next){.step = strcmp(finding->check, "conditioning") ? "repeat" : "trial"};
     snprintf(next->text, sizeof next->text, "%.390s", finding->text);
     snprintf(next->reason, sizeof next->reason, "no correction: %.280s", finding->text);
 }
@@ -406,12 +410,13 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
     size_t length = strlen(next->text);
     double gap = a->placement.gap, from = a->placement.nothing;
     if (gap > 0 && from > 0)
-        snprintf(next->text + length, sizeof next->text - length,
-                 "; a better placement is not ruled out, by %s %% of the expected vibration at most",
-                 figure_of(100 * (sqrt(a->placement.of_all / from) -
-                                  sqrt(fmax(0, a->placement.bound) / from)),
-                           2)
-                     .text);
+        snprintf(
+            next->text + length, sizeof next->text - length,
+            "; a better placement is not ruled out, by %s %% of the expected vibration at most",
+            figure_of(
+                100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from)),
+                2)
+                .text);
     length = strlen(next->text);
     if (a->model->amplitudes)
         length += (size_t)snprintf(next->text + length, sizeof next->text - length,

@@ -13,19 +13,19 @@ enum advice_verdict { ADVICE_OK, ADVICE_CAUTION, ADVICE_REFUSE };
 struct advice_finding {
     const char *check, *unit, *basis; /* static */
     enum advice_verdict verdict;
-    int run, sensor;                  /* -1: none */
+    int run, sensor; /* -1: none */
     double value, limit;
     char text[400];
 };
 
-struct advice_trial {                 /* of one plane */
-    double wanted, mass, force;       /* kg: by the rule, and from stock; N. NaN: not known */
+struct advice_trial {           /* of one plane */
+    double wanted, mass, force; /* kg: by the rule, and from stock; N. NaN: not known */
 };
 
 struct advice_next {
-    const char *step;                 /* static: "trial", "correct", "trim", "repeat", "done" */
+    const char *step; /* static: "trial", "correct", "trim", "repeat", "done" */
     char text[400];
-    char reason[300];                 /* for standard error where there is no answer; else "" */
+    char reason[300]; /* for standard error where there is no answer; else "" */
 };
 
 /* Misfit of a row where runs are spare. False: no figure, hence no finding. */
@@ -42,13 +42,13 @@ bool advice_force(const struct answer *answer, size_t plane, struct advice_findi
 /* Trial weights by the 10 % practice, one per plane. */
 void advice_trials(const struct job *job, struct advice_trial *trials);
 
-/* The run up to which the machine has been corrected: aim.mounted, else the last with readings, if it
- * carries weights and the runs of its condition before it could already be solved; -1: no correction has run yet, -2: no
- * memory. */
+/* The run up to which the machine has been corrected: aim.mounted, else the last with readings, if
+ * it carries weights and the runs of its condition before it could already be solved; -1: no
+ * correction has run yet, -2: no memory. */
 int advice_corrected_run(const struct model *model) __attribute__((warn_unused_result));
 
-/* True where that run's readings meet every target of the aim or, without targets, the residual meets
- * the tolerance (needs outlook_fill with nothing placed). */
+/* True where that run's readings meet every target of the aim or, without targets, the residual
+ * meets the tolerance (needs outlook_fill with nothing placed). */
 bool advice_is_done(const struct answer *answer, int run);
 
 /* The next step in each case. */

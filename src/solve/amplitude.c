@@ -6,11 +6,11 @@
 
 #include "base/angle.h"
 
-#define FEWEST 4     /* runs: three unknowns and one to tell mirrored answers apart */
-#define STEPS 60     /* of one descent */
-#define ANGLES 24    /* starts around the circle */
-#define SIZES 5      /* starts in the size of the response, a factor of two apart */
-#define FLOOR 1e-9   /* as in regress.c: nobody reads nine digits */
+#define FEWEST 4   /* runs: three unknowns and one to tell mirrored answers apart */
+#define STEPS 60   /* of one descent */
+#define ANGLES 24  /* starts around the circle */
+#define SIZES 5    /* starts in the size of the response, a factor of two apart */
+#define FLOOR 1e-9 /* as in regress.c: nobody reads nine digits */
 
 struct task {
     size_t count;
@@ -31,7 +31,8 @@ static double squares(const struct task *t, const double u[3], double normal[9],
     for (size_t i = 0; i < t->count; i++) {
         double complex w = t->w[i] / t->reach;
         double complex z = u[0] + CMPLX(u[1], u[2]) * w;
-        double size = cabs(z), sd = sqrt(fmax(t->variance[i] / (t->scale * t->scale), FLOOR * FLOOR));
+        double size = cabs(z),
+               sd = sqrt(fmax(t->variance[i] / (t->scale * t->scale), FLOOR * FLOOR));
         double r = (size - t->amplitude[i] / t->scale) / sd;
         sum += r * r;
         if (!normal || !(size > 0))
@@ -125,8 +126,8 @@ static void judge(const struct task *t, const double u[3], double least, double 
 {
     double most = -1, stated = 0;
     for (size_t i = 0; i < t->count; i++) {
-        double r = fabs(cabs(u[0] + CMPLX(u[1], u[2]) * t->w[i] / t->reach) -
-                        t->amplitude[i] / t->scale);
+        double r =
+            fabs(cabs(u[0] + CMPLX(u[1], u[2]) * t->w[i] / t->reach) - t->amplitude[i] / t->scale);
         stated = fmax(stated, t->variance[i]);
         if (r > most) {
             most = r;
@@ -138,8 +139,8 @@ static void judge(const struct task *t, const double u[3], double least, double 
 }
 
 int amplitude_fit(size_t count, const double *amplitude, const double complex *w,
-                  const double *variance, double scale, struct posterior *p,
-                  double *misfit, size_t *which)
+                  const double *variance, double scale, struct posterior *p, double *misfit,
+                  size_t *which)
 {
     struct task t = {count, amplitude, w, variance, scale, 0};
     double best[3], rival, sum = scale;

@@ -77,8 +77,8 @@ static void set_scales(struct answer *a)
         else if (s->quantity == s->show.quantity)
             a->scale[r] = 1;
         else
-            a->scale[r] = cabs(units_convert(1, s->quantity, s->show.quantity,
-                                             row->speed_rpm * PI / 30));
+            a->scale[r] =
+                cabs(units_convert(1, s->quantity, s->show.quantity, row->speed_rpm * PI / 30));
     }
 }
 
@@ -202,7 +202,8 @@ static double objective(const struct answer *a, const double complex *forms,
     return a->model->job->aim.minimise == MINIMISE_WORST ? most : sum;
 }
 
-/* The ideal weight itself as the placement, by the search's own rule for what is within the noise. */
+/* The ideal weight itself as the placement, by the search's own rule for what is within the noise.
+ */
 static int place_ideal(struct answer *a)
 {
     double complex *zero = calloc(a->planes + 1, sizeof *zero);
@@ -228,13 +229,13 @@ static int place_ideal(struct answer *a)
         double mass = cabs(a->weights[p]);
         if (!(mass > 0))
             continue;
-        best->items[best->count++] = (struct place_item){
-            .plane = p,
-            .position = -1,
-            .angle_deg = angle_of(remove ? -a->weights[p] : a->weights[p]),
-            .mass = mass,
-            .pieces = {mass},
-            .piece_count = 1};
+        best->items[best->count++] =
+            (struct place_item){.plane = p,
+                                .position = -1,
+                                .angle_deg = angle_of(remove ? -a->weights[p] : a->weights[p]),
+                                .mass = mass,
+                                .pieces = {mass},
+                                .piece_count = 1};
         best->pieces = 1;
     }
     return ANSWER_OK;
@@ -261,15 +262,10 @@ static int fill_plane(const struct job_plane *from, struct menu *menu, struct pl
         menu->counts[i] = from->stock[i].count;
     }
     int pieces = from->pieces > 0 ? from->pieces : 4; /* the sheet's default */
-    *to = (struct place_plane){menu->angles,
-                               free_positions,
-                               menu->masses,
-                               menu->counts,
-                               from->stock_count,
-                               pieces > PLACE_PIECES_MOST ? PLACE_PIECES_MOST : pieces,
-                               from->most,
-                               from->most_in_all,
-                               from->work == WORK_REMOVE ? -1 : 1};
+    *to = (struct place_plane){
+        menu->angles, free_positions,    menu->masses,
+        menu->counts, from->stock_count, pieces > PLACE_PIECES_MOST ? PLACE_PIECES_MOST : pieces,
+        from->most,   from->most_in_all, from->work == WORK_REMOVE ? -1 : 1};
     if (!from->any_position && free_positions == 0) { /* all taken: nothing may be put here */
         to->angles_deg = menu->angles;
         to->positions = 1;
@@ -287,9 +283,9 @@ static int place_by_search(struct answer *a)
     for (size_t p = 0; p < a->planes && result == ANSWER_OK; p++)
         result = fill_plane(&job->planes[p], &menus[p], &planes[p]);
     if (result == ANSWER_OK) {
-        struct place_problem problem = {a->planes,  planes,     a->rows,
-                                        a->forms,   a->certain, job->aim.minimise == MINIMISE_WORST,
-                                        a->floor,   0};
+        struct place_problem problem = {a->planes, planes,     a->rows,
+                                        a->forms,  a->certain, job->aim.minimise == MINIMISE_WORST,
+                                        a->floor,  0};
         int error = place_search(&problem, &a->placement);
         a->placed = error == PLACE_OK;
         result = error == PLACE_OK          ? ANSWER_OK

@@ -12,38 +12,38 @@
 struct answer_forecast {
     const struct model_row *row; /* borrowed */
     double complex before, after;
-    double range[2];             /* 95 % of the next reading, SI peak */
-    double chance;               /* NaN without a target */
+    double range[2]; /* 95 % of the next reading, SI peak */
+    double chance;   /* NaN without a target */
 };
 
-struct answer_residual {         /* kg m; NaN: not known */
+struct answer_residual { /* kg m; NaN: not known */
     double before, after, after_95, permissible;
 };
 
 struct answer {
-    const struct model *model;   /* borrowed */
-    size_t planes, rows;         /* rows: in the aim and good */
+    const struct model *model;    /* borrowed */
+    size_t planes, rows;          /* rows: in the aim and good */
     const struct model_row **row; /* owned array of borrowed rows */
-    struct posterior *posterior; /* owned: rows, relative to what is mounted */
-    double *scale;               /* owned: 1/SI, makes rows comparable */
-    double *se;                  /* owned: SI, root of the complex variance of a reading of the row */
-    double complex *mounted;     /* owned: planes, what stays on, kg */
-    double complex *weights;     /* owned: planes, the ideal weight to add, kg */
-    double complex *classical;   /* owned: planes, least squares */
-    double *ellipse;             /* owned: (2 planes)^2 covariance of `classical` */
-    double condition;            /* number; INFINITY where there are fewer rows than planes */
-    double complex *weak;        /* owned: planes, the pattern of weights seen least */
-    double complex *forms;       /* owned: rows x (planes+1)^2 */
-    double complex *certain;     /* owned: the same without what is not known */
-    double floor;                /* of the noise, J units (place.h) */
+    struct posterior *posterior;  /* owned: rows, relative to what is mounted */
+    double *scale;                /* owned: 1/SI, makes rows comparable */
+    double *se;                /* owned: SI, root of the complex variance of a reading of the row */
+    double complex *mounted;   /* owned: planes, what stays on, kg */
+    double complex *weights;   /* owned: planes, the ideal weight to add, kg */
+    double complex *classical; /* owned: planes, least squares */
+    double *ellipse;           /* owned: (2 planes)^2 covariance of `classical` */
+    double condition;          /* number; INFINITY where there are fewer rows than planes */
+    double complex *weak;      /* owned: planes, the pattern of weights seen least */
+    double complex *forms;     /* owned: rows x (planes+1)^2 */
+    double complex *certain;   /* owned: the same without what is not known */
+    double floor;              /* of the noise, J units (place.h) */
     struct place_result placement; /* owned */
     bool placed;
-    double complex *placed_weights; /* owned: planes */
+    double complex *placed_weights;    /* owned: planes */
     struct answer_forecast *forecasts; /* owned: one a good row of the model, aim or not */
     size_t forecast_count;
     struct answer_residual *residuals; /* owned: planes */
     bool has_residual;
-    char basis[120];             /* of the permissible residual */
+    char basis[120]; /* of the permissible residual */
 };
 
 enum answer_error { ANSWER_OK = 0, ANSWER_NO_MEMORY = -1, ANSWER_FAILED = -2 };
@@ -58,7 +58,8 @@ void answer_release(struct answer *answer); /* safe on a zeroed struct */
 /* The least-squares and the ideal weight. Needs a finite condition number. */
 int answer_correct(struct answer *answer) __attribute__((warn_unused_result));
 
-/* What to fit now: the ideal weight where every plane takes any mass at any angle, else the search. */
+/* What to fit now: the ideal weight where every plane takes any mass at any angle, else the search.
+ */
 int answer_place(struct answer *answer) __attribute__((warn_unused_result));
 
 /* True where something placed lowers the expected vibration beyond the noise. */

@@ -10,12 +10,12 @@
 
 /* The problem in scaled real unknowns v = [re, im] of each plane's weight, then t. */
 struct barrier {
-    size_t rows, n;        /* n = 2 planes */
-    double *h, *g, *c;     /* J_r = v'H_r v + 2 g_r'v + c_r */
-    double *value;         /* rows */
-    double *slope;         /* n: gradient of one row */
+    size_t rows, n;         /* n = 2 planes */
+    double *h, *g, *c;      /* J_r = v'H_r v + 2 g_r'v + c_r */
+    double *value;          /* rows */
+    double *slope;          /* n: gradient of one row */
     double *hessian, *step; /* (n+1)^2, n+1 */
-    double *trial;         /* n+1 */
+    double *trial;          /* n+1 */
     double tau;
 };
 

@@ -12,8 +12,8 @@ static int lapack_error(lapack_int info)
     return info == 0 ? CORRECT_OK : CORRECT_FAILED;
 }
 
-/* Least squares of a (rows x n, row-major, overwritten) w = b, columns brought to unit length first;
- * b has max(rows, n) places, its first n receive w. */
+/* Least squares of a (rows x n, row-major, overwritten) w = b, columns brought to unit length
+ * first; b has max(rows, n) places, its first n receive w. */
 static int solve_scaled(size_t rows, size_t n, double complex *a, double complex *b)
 {
     double *work = calloc(2 * n, sizeof *work);
@@ -142,8 +142,8 @@ done:
 }
 
 /* Column of the map from a row's unknown (its real part with unit 1, imaginary with unit I) to the
- * right-hand side of the normal equations: conj(A) times the change of the vibration, and the change of
- * conj(A) times the residual e. */
+ * right-hand side of the normal equations: conj(A) times the change of the vibration, and the
+ * change of conj(A) times the residual e. */
 static void row_column(const struct posterior *row, const double complex *w, size_t planes,
                        size_t j, double complex unit, double complex e, double complex *column)
 {
@@ -170,8 +170,8 @@ static void add_row(const struct posterior *row, const double complex *w, size_t
         for (size_t b = 0; b < n; b++)
             for (size_t i = 0; i < width; i++)
                 for (size_t j = 0; j < width; j++)
-                    total[a * n + b] += factor * map[a * width + i] * row->cov[i * width + j] *
-                                        map[b * width + j];
+                    total[a * n + b] +=
+                        factor * map[a * width + i] * row->cov[i * width + j] * map[b * width + j];
 }
 
 /* The second-order part: what the scatter `cov` of W adds through the variance of the responses. */
@@ -219,7 +219,8 @@ static int normal_inverse(const struct posterior *rows, const double *scale, siz
 }
 
 /* cov = inverse total inverse' (n x n each). */
-static void sandwich(const double *inverse, const double *total, size_t n, double *half, double *cov)
+static void sandwich(const double *inverse, const double *total, size_t n, double *half,
+                     double *cov)
 {
     memset(half, 0, n * n * sizeof *half);
     memset(cov, 0, n * n * sizeof *cov);

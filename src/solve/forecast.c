@@ -14,10 +14,10 @@ static double below(double x)
 
 /* In the frame of the mean: u along it, v across. */
 struct frame {
-    double mean;     /* |mean| */
-    double sd_v;     /* of v */
-    double slope;    /* of E[u | v] */
-    double sd_u;     /* of u given v */
+    double mean;  /* |mean| */
+    double sd_v;  /* of v */
+    double slope; /* of E[u | v] */
+    double sd_u;  /* of u given v */
 };
 
 static struct frame frame_of(double complex mean, const double cov[3])
@@ -68,7 +68,9 @@ double forecast_within(double complex mean, const double cov[3], double dof, dou
     double h = (high - low) / MIXTURE, sum = 0, total = 0;
     for (int i = 0; i <= MIXTURE; i++) {
         double y = low + i * h;
-        double weight = (i == 0 || i == MIXTURE ? 1 : i % 2 ? 4 : 2) *
+        double weight = (i == 0 || i == MIXTURE ? 1
+                         : i % 2                ? 4
+                                                : 2) *
                         exp(dof / 2 * (y - exp(y) + 1));
         total += weight;
         if (weight > 1e-14)

@@ -210,12 +210,9 @@ static int fit_row(struct model *m, struct model_row *row)
         }
     if (m->amplitudes)
         return fit_amplitudes(m, row);
-    struct regress_data data = {row->count,
-                                m->job->plane_count,
-                                row->y,
-                                row->x,
-                                (const double(*)[3])row->total,
-                                row->as_found};
+    struct regress_data data = {
+        row->count,   m->job->plane_count, row->y, row->x, (const double(*)[3])row->total,
+        row->as_found};
     int result = regress_fit(&data, &row->posterior);
     if (result != REGRESS_OK)
         return result == REGRESS_NO_MEMORY ? MODEL_NO_MEMORY
@@ -229,7 +226,8 @@ static int fit_row(struct model *m, struct model_row *row)
     return MODEL_OK;
 }
 
-static bool amplitudes_only(const struct job *job, const struct model_reading *readings, size_t count)
+static bool amplitudes_only(const struct job *job, const struct model_reading *readings,
+                            size_t count)
 {
     size_t usable = 0;
     for (size_t i = 0; i < count; i++) {
@@ -254,7 +252,8 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
         if (!ordinary(&job->runs[readings[i].run]))
             continue;
         add_condition(m, readings[i].condition);
-        if (readings[i].use && readings[i].phase != m->amplitudes && (int)readings[i].run > m->last_run)
+        if (readings[i].use && readings[i].phase != m->amplitudes &&
+            (int)readings[i].run > m->last_run)
             m->last_run = (int)readings[i].run;
     }
     struct repeat_pool pool = {0};

@@ -1,7 +1,7 @@
 /* model.h - the readings of a job as rows of regressions.
  *
- * A row is one sensor in one condition: its usable readings in the sheet's order of runs, the scatter
- * they carry, and the posterior of its vibration and responses.
+ * A row is one sensor in one condition: its usable readings in the sheet's order of runs, the
+ * scatter they carry, and the posterior of its vibration and responses.
  */
 #ifndef LOPSIDE_SOLVE_MODEL_H
 #define LOPSIDE_SOLVE_MODEL_H
@@ -13,56 +13,56 @@
 #include "solve/posterior.h"
 #include "stream/job.h"
 
-struct model_reading {      /* what the stage hands over; any order */
+struct model_reading { /* what the stage hands over; any order */
     size_t run, sensor;
     char condition[NAME_ROOM];
-    double speed_rpm;       /* NaN: not known */
-    bool phase;             /* there is a vector */
-    bool use;               /* vet's ruling */
-    double complex vector;  /* SI peak, argument is lag */
-    double amplitude;       /* SI peak, where there is no phase */
-    double cov[3];          /* of the mean, widened */
+    double speed_rpm;      /* NaN: not known */
+    bool phase;            /* there is a vector */
+    bool use;              /* vet's ruling */
+    double complex vector; /* SI peak, argument is lag */
+    double amplitude;      /* SI peak, where there is no phase */
+    double cov[3];         /* of the mean, widened */
 };
 
 enum model_state {
-    MODEL_GOOD,             /* the usable readings determine everything */
-    MODEL_LOST,             /* they would, had none been refused */
-    MODEL_SHORT             /* a run is missing */
+    MODEL_GOOD, /* the usable readings determine everything */
+    MODEL_LOST, /* they would, had none been refused */
+    MODEL_SHORT /* a run is missing */
 };
 
 struct model_row {
     size_t condition, sensor;
     bool in_aim;
     enum model_state state;
-    size_t count;           /* usable readings */
-    size_t *runs;           /* owned, their runs in the sheet's order */
-    double complex *y, *x;  /* owned: readings; count x planes equivalent weights, kg */
-    double (*cov)[3];       /* owned: of each reading */
-    double (*total)[3];     /* owned: with the scatter from run to run */
-    double as_found;        /* SI peak amplitude with nothing added, as read; > 0 */
-    double speed_rpm;       /* mean of the usable readings; the service speed where unknown; or NaN */
-    double sigma;           /* SI, scatter from run to run per component */
-    double typical[3];      /* mean covariance of the readings */
-    double target;          /* SI peak in the sensor's own quantity; NaN: none */
+    size_t count;          /* usable readings */
+    size_t *runs;          /* owned, their runs in the sheet's order */
+    double complex *y, *x; /* owned: readings; count x planes equivalent weights, kg */
+    double (*cov)[3];      /* owned: of each reading */
+    double (*total)[3];    /* owned: with the scatter from run to run */
+    double as_found;       /* SI peak amplitude with nothing added, as read; > 0 */
+    double speed_rpm;  /* mean of the usable readings; the service speed where unknown; or NaN */
+    double sigma;      /* SI, scatter from run to run per component */
+    double typical[3]; /* mean covariance of the readings */
+    double target;     /* SI peak in the sensor's own quantity; NaN: none */
     struct posterior posterior; /* relative to as found; zeroed where nothing was read */
-    double misfit;          /* s.e.; NaN: no run is spare */
+    double misfit;              /* s.e.; NaN: no run is spare */
     size_t misfit_run;
-    bool ambiguous;         /* amplitudes alone leave more than one answer */
-    int lost_run;           /* the first run whose reading of this row was refused; -1: none */
+    bool ambiguous; /* amplitudes alone leave more than one answer */
+    int lost_run;   /* the first run whose reading of this row was refused; -1: none */
 };
 
 struct model {
-    const struct job *job;  /* borrowed */
+    const struct job *job;         /* borrowed */
     char (*conditions)[NAME_ROOM]; /* owned; sheet's order */
     size_t condition_count;
     struct model_row *rows; /* owned; by condition, then sensor */
     size_t row_count;
-    double repeatability;   /* fraction of the as-found amplitude per component */
-    double dof;             /* of it; INFINITY: from the sheet */
-    double repeats;         /* degrees of freedom that repeated runs gave */
-    bool amplitudes;        /* no usable reading has phase, one plane: rows hold amplitudes and relative
-                               phases only (amplitude.h) */
-    int last_run;           /* last run of the sheet that has usable readings; -1: none */
+    double repeatability; /* fraction of the as-found amplitude per component */
+    double dof;           /* of it; INFINITY: from the sheet */
+    double repeats;       /* degrees of freedom that repeated runs gave */
+    bool amplitudes; /* no usable reading has phase, one plane: rows hold amplitudes and relative
+                        phases only (amplitude.h) */
+    int last_run;    /* last run of the sheet that has usable readings; -1: none */
 };
 
 enum model_error { MODEL_OK = 0, MODEL_NO_MEMORY = -1, MODEL_FAILED = -2, MODEL_NAN = -3 };
@@ -75,8 +75,8 @@ void model_release(struct model *model); /* safe on a zeroed struct */
 /* True where no run of the job carries a weight on any plane. */
 bool model_is_bare(const struct model *model);
 
-/* Rank of [1, weights] over the job's runs of the same condition before run `end` (readings or not), roles
- * left out; planes + 1 is a full one. Negative: no memory. */
+/* Rank of [1, weights] over the job's runs of the same condition before run `end` (readings or
+ * not), roles left out; planes + 1 is a full one. Negative: no memory. */
 int model_rank_before(const struct model *model, size_t end) __attribute__((warn_unused_result));
 
 /* The reading of run `run` in a row, or NULL. */

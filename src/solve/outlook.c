@@ -24,7 +24,8 @@ static void forecast_row(const struct answer *a, const struct model_row *row,
     cov[2] += row->sigma * row->sigma + row->typical[2];
     f->range[0] = forecast_quantile(f->after, cov, a->model->dof, 0.025);
     f->range[1] = forecast_quantile(f->after, cov, a->model->dof, 0.975);
-    f->chance = isnan(row->target) ? NAN : forecast_within(f->after, cov, a->model->dof, row->target);
+    f->chance =
+        isnan(row->target) ? NAN : forecast_within(f->after, cov, a->model->dof, row->target);
 }
 
 /* Permissible residual of each plane, kg m; false where the sheet does not say enough. */
@@ -64,9 +65,9 @@ static void residual_plane(struct answer *a, size_t p, double limit)
     const double *e = a->ellipse + 2 * p * n + 2 * p;
     double cov[3] = {e[0], e[1], e[n + 1]}, radius = a->model->job->planes[p].radius_m;
     double complex left = a->classical[p] - a->placed_weights[p];
-    a->residuals[p] = (struct answer_residual){
-        radius * cabs(a->classical[p]), radius * cabs(left),
-        radius * forecast_quantile(left, cov, INFINITY, 0.975), limit};
+    a->residuals[p] =
+        (struct answer_residual){radius * cabs(a->classical[p]), radius * cabs(left),
+                                 radius * forecast_quantile(left, cov, INFINITY, 0.975), limit};
 }
 
 int outlook_fill(struct answer *a)

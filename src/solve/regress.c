@@ -76,8 +76,8 @@ static int factors_init(struct factors *f, size_t count, size_t planes)
     f->rows = 2 * count;
     f->width = 2 * (planes + 1);
     f->least = f->rows < f->width ? f->rows : f->width;
-    size_t total = f->rows * f->width + f->rows + 2 * f->least + f->rows * f->least +
-                   f->width * f->width;
+    size_t total =
+        f->rows * f->width + f->rows + 2 * f->least + f->rows * f->least + f->width * f->width;
     f->m = calloc(total, sizeof *f->m);
     if (!f->m)
         return -1;
@@ -156,8 +156,8 @@ static void solve_factors(const struct factors *f, const double *length, struct 
             p->mean[k] += along * CMPLX(v[2 * k], v[2 * k + 1]) / length[k];
         for (size_t a = 0; a < f->width; a++)
             for (size_t c = 0; c < f->width; c++)
-                p->cov[a * f->width + c] += v[a] / length[a / 2] * v[c] / length[c / 2] /
-                                            (f->s[j] * f->s[j]);
+                p->cov[a * f->width + c] +=
+                    v[a] / length[a / 2] * v[c] / length[c / 2] / (f->s[j] * f->s[j]);
     }
 }
 

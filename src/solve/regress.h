@@ -1,9 +1,9 @@
 /* regress.h - the complex linear regression of one row: readings on [1, equivalent weights].
  *
- * y[i] = Z0 + sum_p A[p] x[i][p] + scatter, scatter of covariance cov[i]. The covariances need not be
- * circular, so the least squares is done on stacked real and imaginary parts (Goodman, ASME J. Eng.
- * Ind. 86 (1964) 273-279, for the complex unweighted form). LAPACK's singular value decomposition
- * does the algebra and judges the rank.
+ * y[i] = Z0 + sum_p A[p] x[i][p] + scatter, scatter of covariance cov[i]. The covariances need not
+ * be circular, so the least squares is done on stacked real and imaginary parts (Goodman, ASME J.
+ * Eng. Ind. 86 (1964) 273-279, for the complex unweighted form). LAPACK's singular value
+ * decomposition does the algebra and judges the rank.
  */
 #ifndef LOPSIDE_SOLVE_REGRESS_H
 #define LOPSIDE_SOLVE_REGRESS_H
@@ -15,14 +15,20 @@
 
 struct regress_data {
     size_t count, planes;
-    const double complex *y;  /* count readings, SI peak, argument is lag */
-    const double complex *x;  /* count x planes equivalent weights, kg; row-major */
-    const double (*cov)[3];   /* count: [var re, cov, var im] of each reading, scatter between runs included */
-    double scale;             /* SI, > 0: an amplitude of the row's size. Variances below (1e-9 scale)^2
-                                 count as that, so that exact readings weigh alike */
+    const double complex *y; /* count readings, SI peak, argument is lag */
+    const double complex *x; /* count x planes equivalent weights, kg; row-major */
+    const double (
+        *cov)[3]; /* count: [var re, cov, var im] of each reading, scatter between runs included */
+    double scale; /* SI, > 0: an amplitude of the row's size. Variances below (1e-9 scale)^2
+                     count as that, so that exact readings weigh alike */
 };
 
-enum regress_error { REGRESS_OK = 0, REGRESS_NO_MEMORY = -1, REGRESS_FAILED = -2, REGRESS_NAN = -3 };
+enum regress_error {
+    REGRESS_OK = 0,
+    REGRESS_NO_MEMORY = -1,
+    REGRESS_FAILED = -2,
+    REGRESS_NAN = -3
+};
 
 /* Fits the row. `p` (uninitialised) becomes the posterior under a flat prior, new; its dof is
  * infinite. With rank < unknowns the solution is the shortest one (columns at unit length) and

@@ -8,10 +8,10 @@
 #include "solve/model.h"
 
 enum ruling_kind {
-    RULING_TRIAL,    /* as found alone: a trial weight comes next */
-    RULING_SOLVE,    /* the rows in MODEL_GOOD carry a correction */
-    RULING_REPEAT,   /* refused readings are missing: exit 4 */
-    RULING_MISSING   /* a run is missing: exit 5 */
+    RULING_TRIAL,  /* as found alone: a trial weight comes next */
+    RULING_SOLVE,  /* the rows in MODEL_GOOD carry a correction */
+    RULING_REPEAT, /* refused readings are missing: exit 4 */
+    RULING_MISSING /* a run is missing: exit 5 */
 };
 
 struct ruling {
@@ -20,8 +20,9 @@ struct ruling {
     bool named;                  /* REPEAT: the row's sensor is named by the aim */
 };
 
-/* Lost: a sensor that the aim names, or every sensor of a condition (a run that the regression needs).
- * Otherwise the job goes on with what is left; rows that are not in the aim decide nothing. */
+/* Lost: a sensor that the aim names, or every sensor of a condition (a run that the regression
+ * needs). Otherwise the job goes on with what is left; rows that are not in the aim decide nothing.
+ */
 struct ruling ruling_of(const struct model *model);
 
 /* A row takes part in the correction. */

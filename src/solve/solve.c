@@ -1,4 +1,5 @@
-/* solve.c - the stage `solve`: readings become responses, weights, a placement and the next step. */
+/* solve.c - the stage `solve`: readings become responses, weights, a placement and the next step.
+ */
 #include "solve/solve.h"
 
 #include <math.h>
@@ -29,9 +30,9 @@ struct solve {
     struct stream stream;
     struct model_reading *readings; /* owned */
     size_t count, room;
-    struct ruled *ruled;            /* owned, runs x sensors */
+    struct ruled *ruled; /* owned, runs x sensors */
     struct line line;
-    int status;                     /* the exit code that the answer calls for */
+    int status; /* the exit code that the answer calls for */
 };
 
 /* ---- reading ---- */
@@ -131,7 +132,8 @@ static int put(struct solve *s)
 static int write_responses(struct solve *s, const struct model *m)
 {
     int status = STATUS_DONE;
-    for (size_t i = 0; i < m->row_count && !m->amplitudes; i++) { /* their phase would be no phase */
+    for (size_t i = 0; i < m->row_count && !m->amplitudes;
+         i++) { /* their phase would be no phase */
         const struct model_row *row = &m->rows[i];
         for (size_t p = 0; p < m->job->plane_count && status == STATUS_DONE; p++) {
             if (row->count == 0 || !row->posterior.known[p + 1])
@@ -245,7 +247,7 @@ static int write_outlook(struct solve *s, const struct answer *a)
     }
     for (size_t p = 0; p < a->planes && a->has_residual && status == STATUS_DONE; p++) {
         const struct answer_residual *from = &a->residuals[p];
-        struct residual_record r = {(int)p,          from->before,      from->after,
+        struct residual_record r = {(int)p,         from->before,      from->after,
                                     from->after_95, from->permissible, ""};
         snprintf(r.basis, sizeof r.basis, "%s", a->basis);
         residual_print(&r, &s->stream.job, &s->line);
@@ -527,7 +529,8 @@ int stage_solve(int argc, char **argv)
         options,
         0,
         (size_t)-1,
-        "Reads records from the files, one after another, or from standard input. Before `end` stand\n"
+        "Reads records from the files, one after another, or from standard input. Before `end` "
+        "stand\n"
         "the responses, findings, the ideal correction, what to fit now, a forecast of the next\n"
         "reading, the residual against the tolerance, and the next step. Exits 4 where refused\n"
         "readings are needed, 5 where no correction exists.\n"};

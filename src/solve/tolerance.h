@@ -1,7 +1,7 @@
 /* tolerance.h - permissible residual unbalance and its share per plane or bearing.
  *
- * The limits of the allocation and the API rule are given as they are commonly quoted; whoever accepts
- * a machine by them checks the current edition of the standard.
+ * The limits of the allocation and the API rule are given as they are commonly quoted; whoever
+ * accepts a machine by them checks the current edition of the standard.
  */
 #ifndef LOPSIDE_SOLVE_TOLERANCE_H
 #define LOPSIDE_SOLVE_TOLERANCE_H
@@ -12,12 +12,13 @@
  * rpm > 0. */
 double tolerance_grade(double grade_mm_s, double mass, double rpm);
 
-/* API 610/611/612/617/684: 4 W/N oz in with W lb, which is 6350 W/N g mm with W kg: kg m for one plane
- * whose journal carries `journal_load` kg. */
+/* API 610/611/612/617/684: 4 W/N oz in with W lb, which is 6350 W/N g mm with W kg: kg m for one
+ * plane whose journal carries `journal_load` kg. */
 double tolerance_api_4wn(double journal_load, double rpm);
 
-/* Static load of bearings A and B as fractions of the weight, by the lever rule: span > 0, centre of mass
- * at `centre` from A towards B (both m). An overhung mass gives one above 1 and one below 0. */
+/* Static load of bearings A and B as fractions of the weight, by the lever rule: span > 0, centre
+ * of mass at `centre` from A towards B (both m). An overhung mass gives one above 1 and one below
+ * 0. */
 void tolerance_loads(double span, double centre, double share[2]);
 
 /* ISO 21940-11 allocation to bearings A and B as fractions of U_per: lever rule on absolute

@@ -71,8 +71,8 @@ static void desk_run(struct desk *d, const char *name, double complex left, doub
     run->weights = d->weights[r];
     for (size_t p = 0; p < d->job.plane_count; p++)
         if (w[p] != 0)
-            run->weights[run->weight_count++] = (struct job_weight){
-                p, cabs(w[p]), 0.4, cabs(w[p]), angle_of(w[p]), 0};
+            run->weights[run->weight_count++] =
+                (struct job_weight){p, cabs(w[p]), 0.4, cabs(w[p]), angle_of(w[p]), 0};
     for (size_t s = 0; s < 2; s++) {
         struct model_reading *reading = &d->readings[d->count++];
         *reading = (struct model_reading){
@@ -233,8 +233,8 @@ static void test_remove(void **state)
     assert_int_equal(answer_correct(&a), ANSWER_OK);
     assert_int_equal(answer_place(&a), ANSWER_OK);
     assert_true(cabs(a.placed_weights[0] - want[0]) < 1e-6);
-    assert_true(fabs(angle_wrap_180(a.placement.best.items[0].angle_deg - angle_of(want[0]) - 180)) <
-                1e-3);
+    assert_true(
+        fabs(angle_wrap_180(a.placement.best.items[0].angle_deg - angle_of(want[0]) - 180)) < 1e-3);
     answer_release(&a);
     model_release(&d.model);
 }
@@ -303,8 +303,8 @@ static void test_planes_alike(void **state)
     d.job.aim.repeatability = 0.03;
     for (size_t s = 0; s < 2; s++) { /* the right trial acts as the left one, but for 15 % */
         double complex effect = d.readings[2 + s].vector - d.readings[s].vector;
-        d.readings[4 + s].vector = d.readings[s].vector +
-                                   effect * angle_vector(s ? 1.15 : 0.85, 170) * 0.05 / 0.06;
+        d.readings[4 + s].vector =
+            d.readings[s].vector + effect * angle_vector(s ? 1.15 : 0.85, 170) * 0.05 / 0.06;
     }
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
     assert_int_equal(answer_init(&a, &d.model), ANSWER_OK);
@@ -320,8 +320,8 @@ static void test_planes_alike(void **state)
     model_release(&d.model);
 }
 
-/* Constructed exact four-run set: 10 as found, influence 0.2 at 35 deg, trials of 50 at 0, 120 and 240:
- * correction 50 at 145. */
+/* Constructed exact four-run set: 10 as found, influence 0.2 at 35 deg, trials of 50 at 0, 120 and
+ * 240: correction 50 at 145. */
 static void test_four_runs(void **state)
 {
     (void)state;

@@ -29,9 +29,9 @@ static void test_circular_normal(void **state)
                                      {100, 101, 0.8401378870951451}};
     for (size_t i = 0; i < 4; i++)
         for (double deg = 0; deg < 360; deg += 77)
-            assert_true(fabs(forecast_within(angle_vector(rice[i][0], deg), circle, INFINITY,
-                                             rice[i][1]) -
-                             rice[i][2]) < 1e-5);
+            assert_true(
+                fabs(forecast_within(angle_vector(rice[i][0], deg), circle, INFINITY, rice[i][1]) -
+                     rice[i][2]) < 1e-5);
 }
 
 /* mean 2 - 1j, covariance [1.5 0.6; 0.6 0.8], radius 3: scipy.integrate.dblquad over
@@ -106,9 +106,8 @@ static void draw(uint64_t *seed, size_t planes, double effect, int repeats, stru
     for (size_t s = 0; s < SENSORS; s++) {
         truth[s][0] = angle_vector(1 + uniform(seed), 360 * uniform(seed));
         for (size_t p = 0; p < planes; p++)
-            truth[s][p + 1] = angle_vector(effect * 2 * SCATTER * cabs(truth[s][0]) *
-                                               (s == p ? 1 : 0.4),
-                                           360 * uniform(seed));
+            truth[s][p + 1] = angle_vector(
+                effect * 2 * SCATTER * cabs(truth[s][0]) * (s == p ? 1 : 0.4), 360 * uniform(seed));
         for (size_t i = 0; i < runs; i++) {
             y[s][i] = truth[s][0] + SCATTER * cabs(truth[s][0]) * normal(seed);
             for (size_t p = 0; p < planes; p++)
@@ -177,7 +176,8 @@ static double campaign(size_t planes, double least, double most, int repeats, do
     return (double)tally.held / tally.ranges;
 }
 
-/* The bars: forecasts hold 93-97 %; ellipses 93-97 % where the effect is large, 93 % or more below. */
+/* The bars: forecasts hold 93-97 %; ellipses 93-97 % where the effect is large, 93 % or more below.
+ */
 static void test_coverage(void **state)
 {
     (void)state;

@@ -21,8 +21,8 @@ static double complex at(double amplitude, double deg)
     return angle_vector(amplitude, deg);
 }
 
-static void assert_vector(double complex z, double amplitude, double deg, double amplitude_tolerance,
-                          double deg_tolerance)
+static void assert_vector(double complex z, double amplitude, double deg,
+                          double amplitude_tolerance, double deg_tolerance)
 {
     assert_true(fabs(cabs(z) - amplitude) < amplitude_tolerance);
     assert_true(fabs(angle_wrap_180(angle_of(z) - deg)) < deg_tolerance);
@@ -49,14 +49,15 @@ static double complex one_plane(double complex o, double complex w, double compl
     double complex form[4], ideal;
     posterior_forms(&p, 1, form, NULL);
     assert_int_equal(correct_quadratic(form, 1, &ideal), CORRECT_OK);
-    assert_true(cabs(ideal - answer) < 1e-6 * cabs(answer)); /* exact: both are the classical answer */
+    assert_true(cabs(ideal - answer) <
+                1e-6 * cabs(answer)); /* exact: both are the classical answer */
     posterior_release(&p);
     return answer;
 }
 
 /* R. B. McMillan, Rotating Machinery: Practical Solutions to Unbalance and Misalignment (Fairmont
- * Press), ch. 5: 3.5 mil at 60, with 5 oz 5.0 mil at 120. Printed: 79 deg, read off a protractor (its
- * tolerance is 3 deg); exact by arithmetic: 3.9378 oz, 77.00 deg from the trial weight. */
+ * Press), ch. 5: 3.5 mil at 60, with 5 oz 5.0 mil at 120. Printed: 79 deg, read off a protractor
+ * (its tolerance is 3 deg); exact by arithmetic: 3.9378 oz, 77.00 deg from the trial weight. */
 static void test_one_plane_mcmillan(void **state)
 {
     (void)state;
@@ -67,8 +68,8 @@ static void test_one_plane_mcmillan(void **state)
 }
 
 /* S. S. Rao, Mechanical Vibrations, ch. 9, unbalanced flywheel and grinding wheel (statements as
- * printed; answers by arithmetic: a printed web answer to the first, 6.491 g at 18.672 deg, leaves the
- * wheel unbalanced and must not come out). */
+ * printed; answers by arithmetic: a printed web answer to the first, 6.491 g at 18.672 deg, leaves
+ * the wheel unbalanced and must not come out). */
 static void test_one_plane_rao(void **state)
 {
     (void)state;
@@ -77,8 +78,8 @@ static void test_one_plane_rao(void **state)
     assert_vector(one_plane(at(0.2, 40), at(0.2, -65), at(0.5, 150)), 0.066815, 346.7, 1e-6, 0.05);
 }
 
-/* S. S. Rao, Mechanical Vibrations, ch. 9, two-plane turbine rotor: 10.0561 at 325.55 deg left, 5.8774
- * at 68.26 deg right (values from memory, recomputed independently). */
+/* S. S. Rao, Mechanical Vibrations, ch. 9, two-plane turbine rotor: 10.0561 at 325.55 deg
+ * left, 5.8774 at 68.26 deg right (values from memory, recomputed independently). */
 static void turbine(int sign, double complex left_stays, double complex w[2])
 {
     double complex x[6] = {0, 0, at(10, 270), 0, left_stays, at(12, 180)};
@@ -101,8 +102,8 @@ static void test_two_plane_turbine(void **state)
 }
 
 /* Negative controls, by algebra: lag read as lead mirrors the answer about the trial weights (angle
- * 2*trial - right); the same readings with the left weight stated as still on in the right run give left +
- * (W_L/W_R)*right: 5.387 at 314.02. */
+ * 2*trial - right); the same readings with the left weight stated as still on in the right run give
+ * left + (W_L/W_R)*right: 5.387 at 314.02. */
 static void test_two_plane_wrong_statements(void **state)
 {
     (void)state;
@@ -140,15 +141,15 @@ static void test_condition(void **state)
 
 /* A constructed set: three planes, four sensors at two speeds (amplitude, deg). */
 static const double responses[8][3][2] = {
-    {{0.42, 35}, {0.18, 80}, {0.11, 210}},   {{0.3, 60}, {0.37, 20}, {0.16, 300}},
-    {{0.12, 140}, {0.33, 345}, {0.39, 40}},  {{0.09, 250}, {0.21, 110}, {0.45, 15}},
-    {{0.65, 120}, {0.4, 150}, {0.25, 260}},  {{0.52, 100}, {0.58, 95}, {0.31, 10}},
-    {{0.28, 200}, {0.55, 70}, {0.6, 110}},   {{0.19, 310}, {0.36, 175}, {0.71, 90}}};
-static const double found[8][2] = {{31, 200}, {24, 150}, {28, 95},   {35, 40},
+    {{0.42, 35}, {0.18, 80}, {0.11, 210}},  {{0.3, 60}, {0.37, 20}, {0.16, 300}},
+    {{0.12, 140}, {0.33, 345}, {0.39, 40}}, {{0.09, 250}, {0.21, 110}, {0.45, 15}},
+    {{0.65, 120}, {0.4, 150}, {0.25, 260}}, {{0.52, 100}, {0.58, 95}, {0.31, 10}},
+    {{0.28, 200}, {0.55, 70}, {0.6, 110}},  {{0.19, 310}, {0.36, 175}, {0.71, 90}}};
+static const double found[8][2] = {{31, 200}, {24, 150}, {28, 95},  {35, 40},
                                    {52, 310}, {47, 255}, {60, 180}, {44, 120}};
-static const double exact[8][2] = {
-    {4.19183, 270.3724},   {3.450451, 6.2355},   {2.358297, 148.9274}, {9.10964, 138.6982},
-    {7.825742, 357.7551}, {2.703801, 100.6097}, {3.003722, 200.1432}, {14.671373, 208.9517}};
+static const double exact[8][2] = {{4.19183, 270.3724},  {3.450451, 6.2355},   {2.358297, 148.9274},
+                                   {9.10964, 138.6982},  {7.825742, 357.7551}, {2.703801, 100.6097},
+                                   {3.003722, 200.1432}, {14.671373, 208.9517}};
 
 static void known_rows(const double vibration[8][2], struct posterior rows[8])
 {
@@ -166,8 +167,8 @@ static void release_rows(struct posterior rows[8])
         posterior_release(&rows[r]);
 }
 
-/* Expected values: computed outside by normal equations in NumPy; method Goodman, ASME J. Eng. Ind. 86
- * (1964) 273-279. */
+/* Expected values: computed outside by normal equations in NumPy; method Goodman, ASME J. Eng. Ind.
+ * 86 (1964) 273-279. */
 static void test_least_squares_three_planes(void **state)
 {
     (void)state;
@@ -234,8 +235,8 @@ static void test_exact_recovery(void **state)
 static void test_angle_error(void **state)
 {
     (void)state;
-    static const double table[][2] = {{1, 0.0175},  {2, 0.0349},  {5, 0.0872},  {10, 0.1743},
-                                      {15, 0.2611}, {30, 0.5176}, {60, 1.0},    {90, 1.4142}};
+    static const double table[][2] = {{1, 0.0175},  {2, 0.0349},  {5, 0.0872}, {10, 0.1743},
+                                      {15, 0.2611}, {30, 0.5176}, {60, 1.0},   {90, 1.4142}};
     double complex y[2] = {at(7, 33), at(9, 120)}, x[2] = {0, at(4, 210)};
     struct posterior p = fit(2, 1, y, x);
     double complex w = one_plane(y[0], x[1], y[1]);
@@ -300,8 +301,8 @@ static void test_turning_turns_the_answer(void **state)
     assert_true(cabs(turned - w * at(1, 25)) < 1e-6);
 }
 
-/* Mixed exact and scattered readings: weights follow the variances (weighted mean, by hand: readings 1
- * and 2 of variance 1 and 3 give 1.25). */
+/* Mixed exact and scattered readings: weights follow the variances (weighted mean, by hand:
+ * readings 1 and 2 of variance 1 and 3 give 1.25). */
 static void test_weights_follow_variances(void **state)
 {
     (void)state;
@@ -315,7 +316,8 @@ static void test_weights_follow_variances(void **state)
     assert_true(fabs(creal(p.mean[0]) - 1.25) < 1e-12);
     posterior_marginal(&p, 0, own);
     assert_true(fabs(own[0] - 0.75) < 1e-12 && fabs(own[2] - 0.75) < 1e-12);
-    /* each residual over its standard error: |0.25|/sqrt(2 (1 - 0.75)) = |0.75|/sqrt(2 (3 - 0.75)) */
+    /* each residual over its standard error: |0.25|/sqrt(2 (1 - 0.75)) = |0.75|/sqrt(2 (3 - 0.75))
+     */
     assert_true(fabs(regress_misfit(&data, &p, &which) - 0.353553) < 1e-6);
     posterior_release(&p);
 }
@@ -337,7 +339,8 @@ static void test_covariances_need_not_be_circular(void **state)
 static void test_rank(void **state)
 {
     (void)state;
-    double complex x[8] = {0, 0, 1, 0, 0, 0, 2, 0}, y[4] = {1, 2, 1, 3}, both[6] = {0, 0, 1, 2, 2, 4};
+    double complex x[8] = {0, 0, 1, 0, 0, 0, 2, 0}, y[4] = {1, 2, 1, 3},
+                   both[6] = {0, 0, 1, 2, 2, 4};
     assert_int_equal(regress_rank(2, 2, x), 2);
     assert_int_equal(regress_rank(0, 2, x), 0);
     assert_int_equal(regress_rank(3, 2, both), 2);
@@ -352,9 +355,9 @@ static void test_rank(void **state)
     assert_int_equal(regress_fit(&data, &p), REGRESS_NAN);
 }
 
-/* Static and couple parts of the turbine answer: W_s = (L + R)/2, W_c = (L - R)/2 (identities; e.g. J. J.
- * Yu, ASME J. Eng. Gas Turbines Power 131(1), 2009, treats the relation): 5.2364 at 358.75, 6.3573 at
- * 298.75 (arithmetic). */
+/* Static and couple parts of the turbine answer: W_s = (L + R)/2, W_c = (L - R)/2 (identities; e.g.
+ * J. J. Yu, ASME J. Eng. Gas Turbines Power 131(1), 2009, treats the relation): 5.2364 at
+ * 358.75, 6.3573 at 298.75 (arithmetic). */
 static void test_static_and_couple(void **state)
 {
     (void)state;
@@ -364,8 +367,8 @@ static void test_static_and_couple(void **state)
     assert_vector((w[0] - w[1]) / 2, 6.3573, 298.75, 1e-4, 0.01);
 }
 
-/* Uncertain responses do not drive large weights: with variance v on A the least expected vibration of
- * one row is at -conj(A) Z0/(|A|^2 + v) (by differentiation). */
+/* Uncertain responses do not drive large weights: with variance v on A the least expected vibration
+ * of one row is at -conj(A) Z0/(|A|^2 + v) (by differentiation). */
 static void test_uncertain_response_shrinks(void **state)
 {
     (void)state;

@@ -10,12 +10,12 @@
 #include "solve/tolerance.h"
 #include "solve/trial.h"
 
-#define LB 0.45359237          /* kg, 1959 */
+#define LB 0.45359237            /* kg, 1959 */
 #define OZ_IN (LB / 16 * 0.0254) /* kg m */
-#define G_MM 1e-6              /* kg m */
+#define G_MM 1e-6                /* kg m */
 
-/* ISO 21940-11:2016; the constants 9549 (SI) and 6.015 (oz in per lb, rpm, mm/s) are also printed in
- * Energy-Tech magazine, article 18389, p. 4. */
+/* ISO 21940-11:2016; the constants 9549 (SI) and 6.015 (oz in per lb, rpm, mm/s) are also printed
+ * in Energy-Tech magazine, article 18389, p. 4. */
 static void test_constants(void **state)
 {
     (void)state;
@@ -23,8 +23,9 @@ static void test_constants(void **state)
     assert_true(fabs(tolerance_grade(1, LB, 1) / OZ_IN - 6.0153) < 1e-4);
 }
 
-/* ISO 21940-11 worked example, turbine rotor, grade method (figures from memory): 3600 kg, 3000 rpm,
- * G2.5, bearings 1500 and 900 mm from the centre of mass: 28.6e3 g mm, 10.7e3 at A, 17.9e3 at B. */
+/* ISO 21940-11 worked example, turbine rotor, grade method (figures from memory): 3600 kg, 3000
+ * rpm, G2.5, bearings 1500 and 900 mm from the centre of mass: 28.6e3 g mm, 10.7e3 at A, 17.9e3 at
+ * B. */
 static void test_turbine_example(void **state)
 {
     (void)state;
@@ -35,7 +36,8 @@ static void test_turbine_example(void **state)
     assert_true(fabs(u * share[1] - 17.9e3) < 0.1e3);
 }
 
-/* ISO 21940-11 limits of the allocation (from memory): 0.3..0.7 between bearings, 0.3..1.3 overhung. */
+/* ISO 21940-11 limits of the allocation (from memory): 0.3..0.7 between bearings, 0.3..1.3
+ * overhung. */
 static void test_allocation_limits(void **state)
 {
     (void)state;
@@ -61,7 +63,8 @@ static void test_api_and_iso_compared(void **state)
     assert_true(fabs(tolerance_grade(2.5, 1000 * LB, 15000) / OZ_IN - 1.0026) < 1e-3);
 }
 
-/* 4W/N oz in = 6350 W/N g mm (API 610/611/612/617/684); as a grade 0.665, derived in public discussion. */
+/* 4W/N oz in = 6350 W/N g mm (API 610/611/612/617/684); as a grade 0.665, derived in public
+ * discussion. */
 static void test_api_constant(void **state)
 {
     (void)state;
@@ -98,9 +101,12 @@ static void test_round(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_constants),         cmocka_unit_test(test_turbine_example),
-        cmocka_unit_test(test_allocation_limits), cmocka_unit_test(test_api_and_iso_compared),
-        cmocka_unit_test(test_api_constant),      cmocka_unit_test(test_trial),
+        cmocka_unit_test(test_constants),
+        cmocka_unit_test(test_turbine_example),
+        cmocka_unit_test(test_allocation_limits),
+        cmocka_unit_test(test_api_and_iso_compared),
+        cmocka_unit_test(test_api_constant),
+        cmocka_unit_test(test_trial),
         cmocka_unit_test(test_round),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
