@@ -19,6 +19,11 @@ void shaft_restart(struct shaft *shaft)
     shaft->ended = false;
 }
 
+void shaft_hurry(struct shaft *shaft)
+{
+    shaft->hurried = true;
+}
+
 void shaft_end(struct shaft *shaft)
 {
     shaft->ended = true;
@@ -264,7 +269,7 @@ bool shaft_next(struct shaft *shaft, struct shaft_turn *turn)
 {
     long m = shaft->turn;
 
-    long ahead = shaft->ended ? 0 : m == 0 ? SHAFT_START : SHAFT_AHEAD;
+    long ahead = shaft->ended ? 0 : shaft->hurried ? SHAFT_HURRIED : m == 0 ? SHAFT_START : SHAFT_AHEAD;
 
     if (shaft->next - 1 < m + 1 + ahead) {
         return false;

@@ -16,6 +16,7 @@
 
 #define SHAFT_ROOM 64
 #define SHAFT_AHEAD 8  /* marks that must be known behind a turn before it comes out, */
+#define SHAFT_HURRIED 3
 #define SHAFT_START 20 /* and behind the first one, so that their scatter is known */
 
 /* One turn: time from t0 to t1 (samples), angle in turns c[1]*s + ... + c[5]*s^5, s = (t-t0)/(t1-t0). */
@@ -43,7 +44,7 @@ struct shaft {
     bool real[SHAFT_ROOM];
     long first, next; /* numbers of the oldest mark remembered and of the one to come */
     long turn;        /* number of the turn to come out, relative to the stretch */
-    bool ended;
+    bool ended, hurried;
     struct shaft_knot knot; /* at the start of that turn */
     double squares;   /* of the scatter of marks about the smooth curve, turns^2 */
     long scattered;   /* how many marks that sum rests on */
@@ -54,6 +55,9 @@ void shaft_init(struct shaft *shaft);
 /* The next mark, later than the one before. `real` false: put in where a pulse was missing; its time is
  * only a first guess. Take all turns out before the next push. */
 void shaft_push(struct shaft *shaft, double at, bool real);
+
+/* For when little can be held: from now on turns come out SHAFT_HURRIED marks behind. */
+void shaft_hurry(struct shaft *shaft);
 
 /* No more marks in this stretch: the rest of the turns may come out. */
 void shaft_end(struct shaft *shaft);

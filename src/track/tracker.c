@@ -84,14 +84,14 @@ static int hold_grow(struct tracker *tracker)
     return 0;
 }
 
-/* Lets go of the frames before number `keep`, once that is worth moving the others. */
-static void hold_release(struct tracker *tracker, double keep)
+/* Lets go of the frames before number `keep`, once that is worth moving the others; `now`: in any case. */
+static void hold_release(struct tracker *tracker, double keep, bool now)
 {
     double gone = floor(keep) - (double)tracker->start;
     size_t count = gone > 0 ? (size_t)gone : 0;
 
     count = count < tracker->searched ? count : tracker->searched;
-    if (count < 4 * TRACKER_CHUNK || count < tracker->fill - count) {
+    if (!now && (count < 4 * TRACKER_CHUNK || count < tracker->fill - count)) {
         return;
     }
     for (size_t c = 0; c < tracker->columns; c++) {
@@ -278,12 +278,31 @@ static int relieve(struct tracker *tracker)
     if (!tracker->marks.locked) {
         return take_marks(tracker, marks, marks_hurry(&tracker->marks, marks));
     }
-    if (take_marks(tracker, marks, marks_finish(&tracker->marks, marks)) ||
-        break_stretch(tracker)) {
+    shaft_hurry(&tracker->shaft);
+    return take_turns(tracker);
+}
+
+/* Still too much: leave out what cannot be held until its angle is known. */
+static int give_up(struct tracker *tracker)
+{
+    struct mark marks[MARKS_ROOM];
+
+    if (tracker->marks.locked &&
+        (take_marks(tracker, marks, marks_finish(&tracker->marks, marks)) ||
+         break_stretch(tracker))) {
         return -1;
     }
     marks_unlock(&tracker->marks);
     return 0;
+}
+
+/* The first frame that may still be needed. */
+static double needed(const struct tracker *tracker)
+{
+    if (tracker->marks.locked && tracker->shaft.next > 0) {
+        return shaft_begin(&tracker->shaft) - KEEP;
+    }
+    return (double)tracker->start; /* marks may still come of it */
 }
 
 /* Works on the frames up to `done`. */
@@ -294,7 +313,7 @@ static int advance(struct tracker *tracker, bool last)
 
     if (tracker->tacho < 0) {
         tracker->searched = tracker->done;
-        hold_release(tracker, keep);
+        hold_release(tracker, keep, false);
         return 0;
     }
     if (!tracker->finder.live) {
@@ -304,22 +323,21 @@ static int advance(struct tracker *tracker, bool last)
         if (!pulse_levels(&tracker->finder, plane(tracker, (size_t)tracker->tacho),
                           tracker->done)) {
             tracker->searched = tracker->done; /* constant so far */
-            hold_release(tracker, keep - KEEP);
+            hold_release(tracker, keep - KEEP, false);
             return 0;
         }
     }
     if (search(tracker) || (full && relieve(tracker))) {
         return -1;
     }
-    keep -= KEEP;
-    if (tracker->marks.locked && tracker->shaft.next > 0) {
-        keep = fmin(keep, shaft_begin(&tracker->shaft) - KEEP);
-    } else if (!full) {
-        keep = (double)tracker->start; /* marks may still come of it */
-    } else {
+    keep = fmin(keep - KEEP, needed(tracker));
+    if (full && keep < (double)tracker->start + 2 * TRACKER_CHUNK) {
+        if (give_up(tracker)) {
+            return -1;
+        }
         keep = (double)tracker->start + (double)tracker->done / 2;
     }
-    hold_release(tracker, keep);
+    hold_release(tracker, keep, full);
     return 0;
 }
 

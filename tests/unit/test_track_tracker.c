@@ -217,6 +217,45 @@ static void test_nothing_there(void **unused)
     free(x);
 }
 
+/* A shaft so slow, or so many columns, that few turns can be held: bounded memory, and still the truth
+ * or nothing. */
+static void test_slow_shaft(void **unused)
+{
+    enum { COLUMNS = 64, PART = 1000 };
+    static float x[PART * COLUMNS];
+    double rail[COLUMNS];
+
+    (void)unused;
+    for (int c = 0; c < COLUMNS; c++) {
+        rail[c] = NAN;
+    }
+    for (long period = 2000; period < 60000; period *= 3) {
+        struct tracker_set_up set_up = {5000, 0, COLUMNS, 0, rail, 1, 1, NAN, NAN};
+        struct tracker tracker;
+        double rest;
+
+        assert_int_equal(tracker_init(&tracker, &set_up), 0);
+        for (long i = 0; i < 200000; i++) {
+            double theta = TAU * (double)(i % period) / (double)period;
+
+            x[i % PART * COLUMNS] = theta < 0.3 ? 5 : 0;
+            for (int c = 1; c < COLUMNS; c++) {
+                x[i % PART * COLUMNS + c] = (float)cos(theta);
+            }
+            if (i % PART == PART - 1) {
+                assert_int_equal(tracker_add(&tracker, x, PART), 0);
+                assert_true(tracker.room * COLUMNS * sizeof(float) <= (size_t)TRACKER_HOLD);
+            }
+        }
+        assert_int_equal(tracker_finish(&tracker), 0);
+        for (size_t b = 0; b < tracker.windows.count; b++) {
+            assert_vector(window_vector(&tracker.windows, b, 5, &rest), 1, 0, 0.1, 0.2);
+        }
+        assert_true(period > 10000 || tracker.windows.count > 2);
+        tracker_release(&tracker);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -224,7 +263,8 @@ int main(void)
         cmocka_unit_test(test_scaling_and_additions), cmocka_unit_test(test_delay_turns_lag),
         cmocka_unit_test(test_edge_and_polarity), cmocka_unit_test(test_efficiency),
         cmocka_unit_test(test_cuts), cmocka_unit_test(test_damaged_tacho),
-        cmocka_unit_test(test_few_samples), cmocka_unit_test(test_nothing_there)};
+        cmocka_unit_test(test_few_samples), cmocka_unit_test(test_nothing_there),
+        cmocka_unit_test(test_slow_shaft)};
 
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
