@@ -141,7 +141,8 @@ static int choose(const struct place_problem *problem, const struct place_hunt *
     if (uncertain_part(problem, hunt, of_all, &noise) != 0) {
         return PLACE_NO_MEMORY;
     }
-    noise = fmax(0.1 * noise, problem->floor); /* the design's "within the noise" */
+    /* The design's "within the noise", and never below what counts as equal. */
+    noise = fmax(fmax(0.1 * noise, problem->floor), PROVEN * hunt->norm);
     int k = 0;
     while (levels[k].kept[0].value - of_all->value > noise) {
         k++;

@@ -13,6 +13,12 @@
  * part at the best of all, or `floor` (sum or max over rows of (1 % of as found)^2), whichever is larger.
  * Nothing added (k = 0) is always a candidate.
  *
+ * The next best: second and third least J among all placements of at most as many pieces a plane as allowed
+ * the chosen one. Two placements differ when any piece or position differs; with any mass it is the set of
+ * positions that counts, so two planes of any angle and any mass have no next best. Ties in J (1e-12 of `nothing`)
+ * go to fewer pieces, then less mass, then the lowest plane, position, piece. A plane without
+ * influence on any row stays empty. With any mass, or pieces at any angle, 1e-9 of `nothing` counts as equal.
+ *
  * Determinism: the search is bounded by a number of nodes, never by time. When the bound is hit the
  * best so far is given with the gap that is left (gap > 0); gap == 0 is proof.
  */

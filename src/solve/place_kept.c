@@ -46,6 +46,17 @@ static void count_pieces(const struct place_hunt *hunt, const struct place_load 
     }
 }
 
+static double mass_of(const struct place_hunt *hunt, const struct place_load *load)
+{
+    double mass = 0;
+    for (size_t s = 0; s < hunt->sites; s++) {
+        for (size_t i = 0; i < PLACE_PIECES_MOST; i++) {
+            mass += load[s].item[i] != PLACE_NO_ITEM ? load[s].mass[i] : 0;
+        }
+    }
+    return mass;
+}
+
 void place_kept_offer(struct place_hunt *hunt, double value)
 {
     int all, largest;
@@ -59,7 +70,9 @@ void place_kept_offer(struct place_hunt *hunt, double value)
         }
         double excess = value - found->value;
         if (fabs(excess) <= TIE * hunt->norm) {
-            excess = all != found->pieces ? all - found->pieces : order;
+            double more = mass_of(hunt, hunt->load) - mass_of(hunt, found->load);
+            bool alike = fabs(more) <= 1e-9 * mass_of(hunt, found->load);
+            excess = all != found->pieces ? all - found->pieces : alike ? order : more;
         }
         if (excess < 0) {
             at = i;

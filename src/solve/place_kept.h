@@ -8,7 +8,7 @@
 double place_kept_cutoff(const struct place_hunt *hunt);
 
 /* Takes hunt->load (all sites) with value J in, if it is new and good enough. Order: J (to 1e-12 norm, then
- * fewest pieces, then lowest plane, position, piece). */
+ * fewest pieces, least mass, then lowest plane, position, piece). */
 void place_kept_offer(struct place_hunt *hunt, double value);
 
 #endif

@@ -325,6 +325,39 @@ static void weigh_rows(struct barrier *b, double *lambda)
     }
 }
 
+/* The minimum of row 0 without any limit: w and its value; false where there is none. */
+static bool free_minimum(const struct place_form *form, double complex *w, double *value)
+{
+    size_t n = form->planes, m = n + 1;
+    double complex work[n * n];
+    for (size_t q = 0; q < n; q++) {
+        w[q] = -form->f[(q + 1) * m];
+        for (size_t p = 0; p < n; p++) {
+            work[p * n + q] = form->f[(q + 1) * m + p + 1];
+        }
+    }
+    if (LAPACKE_zposv_work(LAPACK_COL_MAJOR, 'L', (int)n, 1, work, (int)n, w, (int)n) != 0) {
+        return false;
+    }
+    *value = place_form_row(form, 0, w);
+    return isfinite(*value);
+}
+
+/* One row whose free minimum lies inside every region: exact, and the common case. */
+static bool minimum_inside(const struct place_form *form, const struct place_region *region,
+                           double complex *w, double *bound)
+{
+    if (form->rows != 1 || !free_minimum(form, w, bound)) {
+        return false;
+    }
+    for (size_t q = 0; q < form->planes; q++) {
+        if (!place_region_holds(&region[q], w[q])) {
+            return false;
+        }
+    }
+    return true;
+}
+
 /* The point reached, its multipliers and what they prove. */
 static void conclude(struct barrier *b, const struct place_form *form, struct place_form *blend,
                      struct goal *goal)
@@ -336,6 +369,11 @@ static void conclude(struct barrier *b, const struct place_form *form, struct pl
     for (size_t q = 0; q < form->planes; q++) {
         double complex slope = place_form_slope(blend, goal->w, q);
         goal->bound += 2 * (place_region_least(&b->region[q], slope) - dot(slope, goal->w[q]));
+    }
+    double complex anywhere[form->planes];
+    double least;
+    if (free_minimum(blend, anywhere, &least)) {
+        goal->bound = fmax(goal->bound, least);
     }
 }
 
@@ -352,7 +390,7 @@ static void descend(struct barrier *b, const struct place_form *form, struct pla
         top = fmax(top, b->value[r]);
     }
     b->t = top * 1.1 + 0.1;
-    for (double gap = 0.3; gap > 1e-12; gap /= 12) {
+    for (double gap = 3 * b->t; gap > 1e-12; gap /= 12) {
         b->kappa = count / gap;
         for (int i = 0; i < 30 && newton_step(b) > 1e-3; i++) {
         }
@@ -369,43 +407,12 @@ static void descend(struct barrier *b, const struct place_form *form, struct pla
     conclude(b, form, blend, goal);
 }
 
-/* One row whose free minimum lies inside every region: exact, and the common case. */
-static bool free_minimum(const struct place_form *form, const struct place_region *region,
-                         double complex *work, double complex *w, double *bound)
-{
-    size_t n = form->planes, m = n + 1;
-    for (size_t q = 0; q < n; q++) {
-        w[q] = -form->f[(q + 1) * m];
-        for (size_t p = 0; p < n; p++) {
-            work[p * n + q] = form->f[(q + 1) * m + p + 1];
-        }
-    }
-    if (LAPACKE_zposv_work(LAPACK_COL_MAJOR, 'L', (int)n, 1, work, (int)n, w, (int)n) != 0) {
-        return false;
-    }
-    for (size_t q = 0; q < n; q++) {
-        if (!place_region_holds(&region[q], w[q])) {
-            return false;
-        }
-    }
-    *bound = place_form_row(form, 0, w);
-    return isfinite(*bound);
-}
-
 int place_relax(const struct place_form *form, const struct place_region *region, double norm,
                 double accuracy, double enough, double complex *w, double *lambda, double *bound)
 {
-    if (form->rows == 1) {
-        double complex *work = malloc(form->planes * form->planes * sizeof *work);
-        if (work == NULL) {
-            return -1;
-        }
-        bool done = free_minimum(form, region, work, w, bound);
-        free(work);
-        if (done) {
-            lambda[0] = 1;
-            return 0;
-        }
+    if (minimum_inside(form, region, w, bound)) {
+        lambda[0] = 1;
+        return 0;
     }
     struct barrier b;
     struct place_form blend = {0};

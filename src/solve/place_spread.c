@@ -171,7 +171,7 @@ struct branch {
 
 /* Offers the relaxed weights w[], as masses; tells where to split next. */
 static int use_relaxed(struct place_hunt *hunt, size_t depth, const struct place_form *form,
-                       double complex *w, struct branch *branch)
+                       double complex *w, struct branch *branch, double *value)
 {
     bool fits = true;
     struct branch crowded = {0}, open = {0};
@@ -212,10 +212,8 @@ static int use_relaxed(struct place_hunt *hunt, size_t depth, const struct place
         for (size_t q = 0; q < form->planes; q++) {
             w[q] = hunt->load[depth + q].w;
         }
-        place_kept_offer(hunt, place_form_worst(form, w, NULL));
-    }
-    if (!fits && crowded.site == NULL) {
-        hunt->lost = -INFINITY; /* the caller's bound is the honest one */
+        *value = place_form_worst(form, w, NULL);
+        place_kept_offer(hunt, *value);
     }
     *branch = crowded.site != NULL ? crowded : open;
     return 0;
@@ -240,9 +238,11 @@ static int explore(struct place_hunt *hunt, size_t depth, const struct place_for
         result = place_relax(form, region, hunt->norm, 0, cutoff, w, lambda, &bound);
     }
     if (result == 0 && bound < cutoff) {
-        double lost = hunt->lost;
-        result = use_relaxed(hunt, depth, form, w, &branch);
-        hunt->lost = isinf(hunt->lost) && hunt->lost < 0 ? fmin(lost, bound) : hunt->lost;
+        double value = INFINITY;
+        result = use_relaxed(hunt, depth, form, w, &branch, &value);
+        if (branch.site == NULL && value - bound > FINE * hunt->norm) {
+            hunt->lost = fmin(hunt->lost, bound); /* a relaxation that did not converge proves only this */
+        }
     }
     for (size_t q = 0; q < ready; q++) {
         place_region_release(&region[q]);
