@@ -329,11 +329,32 @@ void advice_repeat_step(const struct model *m, const struct ruling *ruling,
         run, sensor, condition);
 }
 
+/* True where the sheet has runs of which no reading came; they are named. */
+static bool list_absent(const struct model *m, struct advice_next *next)
+{
+    char names[200] = "";
+    size_t length = 0;
+    for (size_t i = 0; i < m->job->run_count && length + 50 < sizeof names; i++)
+        if (!m->present[i])
+            length += (size_t)snprintf(names + length, sizeof names - length, "%s'%s'",
+                                       length ? ", " : "", m->job->runs[i].name);
+    if (length == 0)
+        return false;
+    next->step = "repeat";
+    snprintf(next->reason, sizeof next->reason, "a run is missing, no reading of it came: %s",
+             names);
+    snprintf(next->text, sizeof next->text,
+             "the sheet has runs of which no reading came: add or repeat %s", names);
+    return true;
+}
+
 void advice_missing_step(const struct model *m, const struct ruling *ruling,
                          struct advice_next *next)
 {
     const struct job *job = m->job;
     *next = (struct advice_next){.step = "trial"};
+    if (list_absent(m, next))
+        return;
     bool known_first = ruling->row && ruling->row->posterior.known[0];
     if (m->amplitudes) {
         bool two = ruling->row && ruling->row->ambiguous;

@@ -246,9 +246,11 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
     qsort(readings, count, sizeof *readings, by_run);
     m->conditions = calloc(job->run_count + count + 1, sizeof *m->conditions);
     m->rows = calloc((job->run_count + count + 1) * (job->sensor_count + 1), sizeof *m->rows);
-    int result = m->conditions && m->rows ? MODEL_OK : MODEL_NO_MEMORY;
+    m->present = calloc(job->run_count + 1, sizeof *m->present);
+    int result = m->conditions && m->rows && m->present ? MODEL_OK : MODEL_NO_MEMORY;
     m->amplitudes = amplitudes_only(job, readings, count);
     for (size_t i = 0; i < count && result == MODEL_OK; i++) {
+        m->present[readings[i].run] = true;
         if (!ordinary(&job->runs[readings[i].run]))
             continue;
         add_condition(m, readings[i].condition);
@@ -288,6 +290,7 @@ void model_release(struct model *m)
         free(row->cov);
         free(row->total);
     }
+    free(m->present);
     free(m->rows);
     free(m->conditions);
     memset(m, 0, sizeof *m);

@@ -62,6 +62,7 @@ struct model {
     double repeats;       /* degrees of freedom that repeated runs gave */
     bool amplitudes; /* no usable reading has phase, one plane: rows hold amplitudes and relative
                         phases only (amplitude.h) */
+    bool *present;   /* owned, one per run: it has readings, usable or not */
     int last_run;    /* last run of the sheet that has usable readings; -1: none */
 };
 
