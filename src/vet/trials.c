@@ -1,6 +1,7 @@
 #include "vet/trials.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -135,18 +136,22 @@ static void judge(struct trials *t, size_t k)
     struct effect e = {0, 0, 0};
     int sensor = before ? strongest(t, run, before, &e, &weak) : -1;
     enum ruling ruling;
+    char errors[48];
 
     if (sensor < 0)
         return;
     ruling = e.errors < row->refuse ? RULING_REFUSE : weak ? RULING_CAUTION : RULING_OK;
+    if (isfinite(e.errors))
+        snprintf(errors, sizeof errors, "%g standard errors", findings_figure(e.errors));
+    else
+        snprintf(errors, sizeof errors, "exact readings"); /* by hand, with repeatability 0 % */
     ruling = findings_rule(t->findings, CHECK_TRIAL_EFFECT, ruling, (int)t->sequence[k], sensor,
                            ruling == RULING_CAUTION ? e.amplitude_pct : e.errors,
                            ruling == RULING_CAUTION ? row->caution : row->refuse,
                            ruling == RULING_CAUTION ? "%" : "s.e.",
-                           "against '%s' the amplitude changed by %g %% and the lag by %g deg, "
-                           "%g standard errors",
+                           "against '%s' the amplitude changed by %g %% and the lag by %g deg, %s",
                            before->name, findings_figure(e.amplitude_pct),
-                           findings_figure(e.lag_deg), findings_figure(e.errors));
+                           findings_figure(e.lag_deg), errors);
     if (ruling == RULING_REFUSE)
         within_refuse(run, t->job);
 }

@@ -162,8 +162,8 @@ static void check_reference(struct vet_run *run, int position, const struct job 
         phase += run->readings[i].present && run->readings[i].has_phase;
     }
     if (present > 0 && phase == present)
-        findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 0,
-                     "lag is read from one mark a turn");
+        findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 0, "%s",
+                     run->hand ? "lag was noted by hand" : "lag is read from one mark a turn");
     else if (run->index < 0 && !run->unreadable &&
              findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 1,
                           "lag cannot be read: %s",
