@@ -7,15 +7,19 @@
 typedef float lanes __attribute__((vector_size(16)));
 typedef int masks __attribute__((vector_size(16)));
 
-#define COARSE 64        /* steps between the extremes, below which flat crests are ordinary */
-#define SAME 0.99999     /* correlation: two sensors on one machine differ by more than that */
-#define STRIDE 61        /* frames: a prime, so that no common blade count or mains period locks to it */
+#define COARSE 64    /* steps between the extremes, below which flat crests are ordinary */
+#define SAME 0.99999 /* correlation: two sensors on one machine differ by more than that */
+#define STRIDE 61 /* frames: a prime, so that no common blade count or mains period locks to it */
 
 void channel_init(struct channel *channel, double rail)
 {
-    *channel = (struct channel){.rail = rail, .min = INFINITY, .max = -INFINITY, .step = INFINITY,
+    *channel = (struct channel){.rail = rail,
+                                .min = INFINITY,
+                                .max = -INFINITY,
+                                .step = INFINITY,
                                 .previous = NAN,
-                                .high = {.extreme = -INFINITY}, .low = {.extreme = -INFINITY}};
+                                .high = {.extreme = -INFINITY},
+                                .low = {.extreme = -INFINITY}};
 }
 
 /* a where mask, else b */

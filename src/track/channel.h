@@ -1,5 +1,5 @@
-/* channel.h - what a channel's samples say about the channel itself: range, resolution, clipping, and
- * whether two channels carry the same signal. Samples come in chunks; memory does not grow. */
+/* channel.h - what a channel's samples say about the channel itself: range, resolution, clipping,
+ * and whether two channels carry the same signal. Samples come in chunks; memory does not grow. */
 #ifndef LOPSIDE_TRACK_CHANNEL_H
 #define LOPSIDE_TRACK_CHANNEL_H
 
@@ -7,7 +7,7 @@
 
 struct channel_held { /* the largest value so far and how it is held */
     float extreme;
-    long run;         /* samples in a row that have it */
+    long run;             /* samples in a row that have it */
     long crests, samples; /* runs of CHANNEL_HOLD or more, and their samples */
 };
 
@@ -15,10 +15,10 @@ struct channel_held { /* the largest value so far and how it is held */
 #define CHANNEL_CRESTS 3 /* flat crests make a clipped channel */
 
 struct channel {
-    double rail;                    /* |value| at full scale; NaN: unknown */
-    float min, max, step;           /* step: smallest difference of neighbours; INFINITY: none yet */
-    float previous;                 /* last sample of the chunk before */
-    struct channel_held high, low;  /* low: of the negated signal */
+    double rail;                   /* |value| at full scale; NaN: unknown */
+    float min, max, step;          /* step: smallest difference of neighbours; INFINITY: none yet */
+    float previous;                /* last sample of the chunk before */
+    struct channel_held high, low; /* low: of the negated signal */
     long long at_rail, samples;
 };
 
@@ -36,15 +36,16 @@ double channel_resolution(const struct channel *channel);
 
 struct channel_pairs {
     size_t columns;
-    size_t stride;     /* every stride-th frame is looked at */
-    size_t skip;       /* frames until the next one */
+    size_t stride; /* every stride-th frame is looked at */
+    size_t skip;   /* frames until the next one */
     double count;
-    double *shift;     /* owned, per column: the first value, taken off */
-    double *sums;      /* owned: columns sums, then columns*columns sums of products */
+    double *shift; /* owned, per column: the first value, taken off */
+    double *sums;  /* owned: columns sums, then columns*columns sums of products */
 };
 
 /* 0, or -1 when memory is out. */
-int channel_pairs_init(struct channel_pairs *pairs, size_t columns) __attribute__((warn_unused_result));
+int channel_pairs_init(struct channel_pairs *pairs, size_t columns)
+    __attribute__((warn_unused_result));
 void channel_pairs_release(struct channel_pairs *pairs);
 
 /* n frames; planes[c] are the samples of column c. */

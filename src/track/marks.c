@@ -3,17 +3,19 @@
 #include <math.h>
 #include <string.h>
 
-/* How far from its expected time a mark may come, as a share of the period: a change of speed of a fifth
- * within a turn is more than a rotor with a flywheel's inertia does. */
+/* How far from its expected time a mark may come, as a share of the period: a change of speed of a
+ * fifth within a turn is more than a rotor with a flywheel's inertia does. */
 #define TOLERANCE 0.2
-#define TOLERANCE_LEAST 0.05 /* a pulse that comes by chance is then the mark's in one turn of ten */
-#define TOLERANCE_SPREADS 5  /* standard deviations of what the rhythm itself does */
-#define MEMORY 0.1           /* weight of the latest turn in the rhythm's own spread */
+#define TOLERANCE_LEAST                                                                            \
+    0.05                    /* a pulse that comes by chance is then the mark's in one turn of ten */
+#define TOLERANCE_SPREADS 5 /* standard deviations of what the rhythm itself does */
+#define MEMORY 0.1          /* weight of the latest turn in the rhythm's own spread */
 
 #define TURNS_TO_VOTE 8
 
-/* How many times larger a pulse must be than its fellows: one of several marks that was made different; and
- * for a single mark the tape against a scratch, where sampling alone makes widths of 4 and 5. */
+/* How many times larger a pulse must be than its fellows: one of several marks that was made
+ * different; and for a single mark the tape against a scratch, where sampling alone makes widths of
+ * 4 and 5. */
 #define RATIO_MARKS 1.15
 #define RATIO_SCRATCH 1.4
 
@@ -160,20 +162,23 @@ void marks_unlock(struct marks *marks)
     marks->voter_count = 0;
 }
 
-/* One pulse, once the period is known. Sets *lost where the rhythm is gone; the pulse is then not used. */
+/* One pulse, once the period is known. Sets *lost where the rhythm is gone; the pulse is then not
+ * used. */
 static size_t step(struct marks *marks, const struct pulse *pulse, struct mark *out, bool *lost)
 {
     size_t given = 0;
     double since = pulse->at - marks->last;
 
     *lost = false;
-    if (marks->has_candidate && since > ((double)marks->candidate_turns + TOLERANCE) * marks->period) {
+    if (marks->has_candidate &&
+        since > ((double)marks->candidate_turns + TOLERANCE) * marks->period) {
         given = commit(marks, out);
         since = pulse->at - marks->last;
     }
     long n = place(since, marks->period, tolerance(marks));
 
-    if (since > (MARKS_GAP + 0.5) * marks->period || (n == 0 && marks->strays > 8 && since > 3 * marks->period)) {
+    if (since > (MARKS_GAP + 0.5) * marks->period ||
+        (n == 0 && marks->strays > 8 && since > 3 * marks->period)) {
         *lost = true;
         return given;
     }
@@ -227,10 +232,9 @@ static void sift(struct marks *marks)
         marks->reference = found;
     } else {
         /* a scratch that comes once a turn, or two of them, beside the single mark */
-        found = sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, 2,
-                                 RATIO_SCRATCH) ||
-                sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, 3,
-                                 RATIO_SCRATCH);
+        found =
+            sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, 2, RATIO_SCRATCH) ||
+            sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, 3, RATIO_SCRATCH);
     }
     if (found) {
         sift_voters(marks);

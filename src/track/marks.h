@@ -1,8 +1,9 @@
 /* marks.h - pulses to marks: which pulses are the shaft's mark, which are missing, which are extra.
  *
  * The first pulses vote for a period and a start; from then on every mark is expected one period
- * after the one before, the pulse nearest to that is taken, others are set aside as extra, and marks
- * that did not come are put in. After a gap of more than MARKS_GAP turns the vote is taken anew. */
+ * after the one before, the pulse nearest to that is taken, others are set aside as extra, and
+ * marks that did not come are put in. After a gap of more than MARKS_GAP turns the vote is taken
+ * anew. */
 #ifndef LOPSIDE_TRACK_MARKS_H
 #define LOPSIDE_TRACK_MARKS_H
 
@@ -12,10 +13,11 @@
 #include "track/pulse.h"
 #include "track/sieve.h"
 
-#define MARKS_VOTERS 48 /* pulses that vote; more where there are several a turn, */
+#define MARKS_VOTERS 48       /* pulses that vote; more where there are several a turn, */
 #define MARKS_VOTERS_MOST 512 /* but never more than this */
-#define MARKS_GAP 6     /* turns that may be bridged */
-#define MARKS_ROOM ((MARKS_VOTERS_MOST + 2) * (MARKS_GAP + 1)) /* marks that one push can release */
+#define MARKS_GAP 6           /* turns that may be bridged */
+#define MARKS_ROOM ((MARKS_VOTERS_MOST + 2) * (MARKS_GAP + 1)) /* marks that one push can release  \
+                                                                */
 
 struct mark {
     double at;   /* samples */
@@ -25,25 +27,25 @@ struct mark {
 
 struct marks {
     int per_turn;
-    bool reference;             /* the marks given out are one place on the shaft */
-    bool sifted;                /* it was tried to tell the pulses apart */
+    bool reference; /* the marks given out are one place on the shaft */
+    bool sifted;    /* it was tried to tell the pulses apart */
     struct sieve sieve;
     struct pulse voters[MARKS_VOTERS_MOST];
     size_t voter_count, quorum;
-    long slot;                  /* of the next mark among those of a turn */
+    long slot; /* of the next mark among those of a turn */
     bool locked;
-    double period, last;        /* samples; time of the last mark given out */
-    double spread;              /* mean square of how far periods were off, as a share */
+    double period, last; /* samples; time of the last mark given out */
+    double spread;       /* mean square of how far periods were off, as a share */
     bool has_candidate;
-    double candidate;           /* the pulse that may become the next mark */
-    long candidate_turns;       /* how many periods it lies behind `last` */
-    long strays;                /* pulses set aside since the last mark */
-    bool breaks;                /* the next mark begins a new stretch */
-    long count, missed, extra;  /* of the recording so far */
+    double candidate;          /* the pulse that may become the next mark */
+    long candidate_turns;      /* how many periods it lies behind `last` */
+    long strays;               /* pulses set aside since the last mark */
+    bool breaks;               /* the next mark begins a new stretch */
+    long count, missed, extra; /* of the recording so far */
 };
 
-/* `per_turn`: pulses a turn, as the user states. With more than one, the one that can be told apart is
- * the mark; where none can, every per_turn-th one is given out and `reference` is false. */
+/* `per_turn`: pulses a turn, as the user states. With more than one, the one that can be told apart
+ * is the mark; where none can, every per_turn-th one is given out and `reference` is false. */
 void marks_init(struct marks *marks, int per_turn);
 
 /* Takes the next pulse; fills `out` (room for MARKS_ROOM) and returns how many marks came out. */

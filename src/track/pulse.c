@@ -4,8 +4,9 @@
 
 enum { UNKNOWN, BELOW, ABOVE, ABOVE_FROM_START };
 
-/* Half the hysteresis as a share of the span: common practice for comparators on tacho pulses. Noise
- * of up to 30 % peak to peak cannot fire twice; a ripple of a third of the mark's height stays out. */
+/* Half the hysteresis as a share of the span: common practice for comparators on tacho pulses.
+ * Noise of up to 30 % peak to peak cannot fire twice; a ripple of a third of the mark's height
+ * stays out. */
 #define HYSTERESIS 0.15f
 
 #define SILENT 0.1f /* of the former span: below it is no pulse */
@@ -37,8 +38,8 @@ static void set_levels(struct pulse_finder *finder)
     float top = typical(finder->tops, 1.0f), bottom = typical(finder->bottoms, -1.0f);
     float span = top - bottom;
 
-    finder->middle = isnan(finder->level) ? 0.5f * (top + bottom)
-                                          : finder->sign * (float)finder->level;
+    finder->middle =
+        isnan(finder->level) ? 0.5f * (top + bottom) : finder->sign * (float)finder->level;
     finder->above = finder->middle + HYSTERESIS * span;
     finder->below = finder->middle - HYSTERESIS * span;
     if (!isnan(finder->level)) { /* a level close to an extreme still has to work */
@@ -129,14 +130,17 @@ static double rise_time(const struct pulse_finder *finder, const float *x, size_
     if (k < first) {
         return (double)k + 1;
     }
-    return (double)k + crossing(x + k, finder->sign, finder->middle,
-                                k > first && k + 2 < (ptrdiff_t)n);
+    return (double)k +
+           crossing(x + k, finder->sign, finder->middle, k > first && k + 2 < (ptrdiff_t)n);
 }
 
 static struct pulse ended(struct pulse_finder *finder, double end)
 {
-    return (struct pulse){.at = finder->rose, .high = end - finder->rose, .low = finder->low,
-                          .top = finder->extreme, .bottom = finder->bottom};
+    return (struct pulse){.at = finder->rose,
+                          .high = end - finder->rose,
+                          .low = finder->low,
+                          .top = finder->extreme,
+                          .bottom = finder->bottom};
 }
 
 size_t pulse_find(struct pulse_finder *finder, const float *x, size_t n, size_t back, double start,

@@ -26,16 +26,16 @@ struct pulse {
 #define PULSE_MEMORY 8 /* pulses whose extremes set the level */
 
 struct pulse_finder {
-    float sign;                /* +1 rising edge, -1 falling */
-    double level;              /* NaN: found from the signal */
+    float sign;                 /* +1 rising edge, -1 falling */
+    double level;               /* NaN: found from the signal */
     float below, middle, above; /* levels of the comparator in the edge's direction */
     float tops[PULSE_MEMORY], bottoms[PULSE_MEMORY];
-    size_t turn;               /* next place in tops and bottoms */
-    int state;                 /* 0: not started, 1: below, 2: above, 3: above since the start */
-    float extreme, bottom;     /* running extreme of the state; the one of the state before */
-    double fell, rose;         /* when the signal went below, rose through the middle */
-    double low;                /* how long it was below before it rose */
-    bool live;                 /* levels are known */
+    size_t turn;           /* next place in tops and bottoms */
+    int state;             /* 0: not started, 1: below, 2: above, 3: above since the start */
+    float extreme, bottom; /* running extreme of the state; the one of the state before */
+    double fell, rose;     /* when the signal went below, rose through the middle */
+    double low;            /* how long it was below before it rose */
+    bool live;             /* levels are known */
 };
 
 /* `edge` +1 rising or -1 falling; `level` in the signal's unit, NaN to find it. */
@@ -45,8 +45,8 @@ void pulse_init(struct pulse_finder *finder, int edge, double level);
  * pulse_find finds nothing until a later call succeeds. */
 bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n);
 
-/* For when no pulse has come for long: takes the levels anew from the last n samples, unless what is there
- * is less than a tenth of what the pulses were (a tacho that fell silent). */
+/* For when no pulse has come for long: takes the levels anew from the last n samples, unless what
+ * is there is less than a tenth of what the pulses were (a tacho that fell silent). */
 bool pulse_renew(struct pulse_finder *finder, const float *x, size_t n);
 
 /* Looks through x[0..n-1], whose first sample has the time `start`; `back` samples before x[0] can

@@ -3,15 +3,14 @@
 #include <math.h>
 #include <string.h>
 
-/* Eleven marks, sixth degree: passes a wander of one cycle in ten turns to 1e-3 of itself and halves the
- * variance of the scatter (from the filter's frequency response). */
+/* Eleven marks, sixth degree: passes a wander of one cycle in ten turns to 1e-3 of itself and
+ * halves the variance of the scatter (from the filter's frequency response). */
 #define FIT_MOST SHAFT_FIT
 #define TERMS_MOST 7 /* coefficients of one fit */
 
 /* Marks that scatter more than this are smoothed. Interpolated scatter s (rad) shortens a vector by
  * s^2/2: 0.2 deg costs 6e-6 of it, so below that the exact curve is the better one. */
 #define SMOOTH_FROM_DEG 0.2
-
 
 void shaft_restart(struct shaft *shaft)
 {
@@ -269,7 +268,10 @@ bool shaft_next(struct shaft *shaft, struct shaft_turn *turn)
 {
     long m = shaft->turn;
 
-    long ahead = shaft->ended ? 0 : shaft->hurried ? SHAFT_HURRIED : m == 0 ? SHAFT_START : SHAFT_AHEAD;
+    long ahead = shaft->ended     ? 0
+                 : shaft->hurried ? SHAFT_HURRIED
+                 : m == 0         ? SHAFT_START
+                                  : SHAFT_AHEAD;
 
     if (shaft->next - 1 < m + 1 + ahead) {
         return false;

@@ -2,9 +2,9 @@
  *
  * Mark m passes at angle 2*pi*m. Time as a function of angle is fitted around every mark by a
  * polynomial over its neighbours (interpolation through seven marks; least squares over more, after
- * Savitzky & Golay, Anal. Chem. 36 (1964) 1627, where the marks scatter); value, slope and curvature
- * at the ends of a turn give the quintic that is the angle in between. With marks once a turn a
- * wander with a period of ten turns is followed to 1e-4 of itself.
+ * Savitzky & Golay, Anal. Chem. 36 (1964) 1627, where the marks scatter); value, slope and
+ * curvature at the ends of a turn give the quintic that is the angle in between. With marks once a
+ * turn a wander with a period of ten turns is followed to 1e-4 of itself.
  *
  * Marks go in one by one; turns come out when the marks behind them are known. At most
  * SHAFT_ROOM marks are remembered. */
@@ -15,11 +15,12 @@
 #include <stddef.h>
 
 #define SHAFT_ROOM 64
-#define SHAFT_AHEAD 8  /* marks that must be known behind a turn before it comes out, */
+#define SHAFT_AHEAD 8 /* marks that must be known behind a turn before it comes out, */
 #define SHAFT_HURRIED 3
 #define SHAFT_START 20 /* and behind the first one, so that their scatter is known */
 
-/* One turn: time from t0 to t1 (samples), angle in turns c[1]*s + ... + c[5]*s^5, s = (t-t0)/(t1-t0). */
+/* One turn: time from t0 to t1 (samples), angle in turns c[1]*s + ... + c[5]*s^5, s =
+ * (t-t0)/(t1-t0). */
 struct shaft_turn {
     double t0, t1;
     double c[6];
@@ -46,14 +47,14 @@ struct shaft {
     long turn;        /* number of the turn to come out, relative to the stretch */
     bool ended, hurried;
     struct shaft_knot knot; /* at the start of that turn */
-    double squares;   /* of the scatter of marks about the smooth curve, turns^2 */
-    long scattered;   /* how many marks that sum rests on */
+    double squares;         /* of the scatter of marks about the smooth curve, turns^2 */
+    long scattered;         /* how many marks that sum rests on */
 };
 
 void shaft_init(struct shaft *shaft);
 
-/* The next mark, later than the one before. `real` false: put in where a pulse was missing; its time is
- * only a first guess. Take all turns out before the next push. */
+/* The next mark, later than the one before. `real` false: put in where a pulse was missing; its
+ * time is only a first guess. Take all turns out before the next push. */
 void shaft_push(struct shaft *shaft, double at, bool real);
 
 /* For when little can be held: from now on turns come out SHAFT_HURRIED marks behind. */

@@ -3,8 +3,8 @@
 #include <math.h>
 #include <stdlib.h>
 
-#define WEIGHT 0.05    /* of the latest pulse in the running means */
-#define REGULAR 0.1    /* spread of the kept pulses' period, as a share of it, at most */
+#define WEIGHT 0.05 /* of the latest pulse in the running means */
+#define REGULAR 0.1 /* spread of the kept pulses' period, as a share of it, at most */
 
 double sieve_size(const struct pulse *pulse)
 {

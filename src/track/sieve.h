@@ -1,8 +1,8 @@
 /* sieve.h - which pulses are the one mark that can be told apart from the others of a turn.
  *
- * Among several pulses a turn one may be larger or smaller (height times width), or stand after a longer
- * or shorter gap. A sieve is a threshold on such a feature, taken relative to the recent pulses so
- * that growing pulses and changing speed do not matter. */
+ * Among several pulses a turn one may be larger or smaller (height times width), or stand after a
+ * longer or shorter gap. A sieve is a threshold on such a feature, taken relative to the recent
+ * pulses so that growing pulses and changing speed do not matter. */
 #ifndef LOPSIDE_TRACK_SIEVE_H
 #define LOPSIDE_TRACK_SIEVE_H
 
@@ -15,23 +15,23 @@ enum sieve_feature { SIEVE_OFF, SIEVE_SIZE, SIEVE_GAP };
 
 struct sieve {
     enum sieve_feature feature;
-    double sign, threshold;    /* kept: sign*value > sign*threshold */
-    double size, gap, last;    /* running means of the pulses, and the last one's time */
+    double sign, threshold; /* kept: sign*value > sign*threshold */
+    double size, gap, last; /* running means of the pulses, and the last one's time */
     long seen;
 };
 
 /* Height times width of a pulse, in whichever direction it is the shorter one. */
 double sieve_size(const struct pulse *pulse);
 
-/* Looks for a sieve that keeps one of `marks` pulses; the ones kept must come regularly. `ratio`: how
- * many times larger the one class must be than the other. Up to SIEVE_MOST pulses are looked at.
- * False: the pulses cannot be told apart. */
+/* Looks for a sieve that keeps one of `marks` pulses; the ones kept must come regularly. `ratio`:
+ * how many times larger the one class must be than the other. Up to SIEVE_MOST pulses are looked
+ * at. False: the pulses cannot be told apart. */
 #define SIEVE_MOST 512
 bool sieve_find(struct sieve *sieve, const struct pulse *pulses, size_t count, int marks,
                 double ratio);
 
-/* The same, but the kept ones must be the larger ones, and the others must come regularly, too, where
- * marks is 2: what is left out is a scratch that comes every turn, not chance. */
+/* The same, but the kept ones must be the larger ones, and the others must come regularly, too,
+ * where marks is 2: what is left out is a scratch that comes every turn, not chance. */
 bool sieve_find_large(struct sieve *sieve, const struct pulse *pulses, size_t count, int marks,
                       double ratio);
 

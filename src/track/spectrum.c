@@ -7,7 +7,8 @@
 
 #include "base/angle.h"
 
-#define TOP_HZ 1000.0         /* the upper end of ordinary broad-band vibration (ISO 20816-1: 10 to 1000 Hz) */
+#define TOP_HZ                                                                                     \
+    1000.0 /* the upper end of ordinary broad-band vibration (ISO 20816-1: 10 to 1000 Hz) */
 #define BYTES_MOST (4L << 20) /* for the grids of all sensors */
 
 static size_t power_of_two(double least)
@@ -35,7 +36,10 @@ int spectrum_init(struct spectrum *spectrum, size_t sensors, double rate_hz, dou
     }
     size_t n = turns * bins;
 
-    *spectrum = (struct spectrum){.sensors = sensors, .bins = bins, .turns = turns, .every = 1,
+    *spectrum = (struct spectrum){.sensors = sensors,
+                                  .bins = bins,
+                                  .turns = turns,
+                                  .every = 1,
                                   .top = fmin(top, 0.4 * (double)bins)};
     if (frames > 0) {
         spectrum->every = (long)ceil(frames / period / (double)turns / SPECTRUM_MOST);
@@ -46,9 +50,9 @@ int spectrum_init(struct spectrum *spectrum, size_t sensors, double rate_hz, dou
     spectrum->power = calloc(sensors * (n / 2 + 1) + 1, sizeof(double));
     spectrum->complex_out = calloc(n + 2, sizeof(double));
     if (spectrum->grid && spectrum->complex_out) {
-        spectrum->plan = fftw_plan_dft_r2c_1d((int)n, spectrum->grid,
-                                              (fftw_complex *)spectrum->complex_out,
-                                              FFTW_ESTIMATE | FFTW_UNALIGNED | FFTW_PRESERVE_INPUT);
+        spectrum->plan =
+            fftw_plan_dft_r2c_1d((int)n, spectrum->grid, (fftw_complex *)spectrum->complex_out,
+                                 FFTW_ESTIMATE | FFTW_UNALIGNED | FFTW_PRESERVE_INPUT);
     }
     if (!spectrum->share || !spectrum->power || !spectrum->plan) {
         spectrum_end(spectrum);
@@ -180,7 +184,8 @@ size_t spectrum_lines(const struct spectrum *spectrum, size_t sensor, double *or
     double step = fmax(1, ceil(above / (SPECTRUM_LINES - SPECTRUM_FINE * SPECTRUM_TURNS - 2)));
     double border = SPECTRUM_FINE + step;
 
-    for (size_t k = 1; spectrum->count > 0 && k < n / 2 && (double)k / turns <= spectrum->top; k++) {
+    for (size_t k = 1; spectrum->count > 0 && k < n / 2 && (double)k / turns <= spectrum->top;
+         k++) {
         double order = (double)k / turns, part = droop(order, spectrum->bins);
         double square = power[k] / (double)spectrum->count / (part * part);
 

@@ -1,8 +1,9 @@
 /* spectrum.h - the order spectrum of every sensor, averaged over stretches of whole turns.
  *
- * Samples are averaged into equal steps of shaft angle; a rectangular window over whole turns leaves every
- * order that is a multiple of the resolution in its own line, and the lines' powers add up to the
- * signal's (Parseval). At most SPECTRUM_MOST stretches, spread over the recording, are transformed. */
+ * Samples are averaged into equal steps of shaft angle; a rectangular window over whole turns
+ * leaves every order that is a multiple of the resolution in its own line, and the lines' powers
+ * add up to the signal's (Parseval). At most SPECTRUM_MOST stretches, spread over the recording,
+ * are transformed. */
 #ifndef LOPSIDE_TRACK_SPECTRUM_H
 #define LOPSIDE_TRACK_SPECTRUM_H
 
@@ -13,22 +14,23 @@
 
 #define SPECTRUM_TURNS 16  /* of one stretch: the resolution is 1/16 order */
 #define SPECTRUM_MOST 48   /* stretches */
-#define SPECTRUM_FINE 12   /* orders up to this come line by line, those above one order at a time */
+#define SPECTRUM_FINE 12   /* orders up to this come line by line, those above one order at a time \
+                            */
 #define SPECTRUM_LINES 400 /* room for the lines of one spectrum */
 
 struct spectrum {
-    size_t sensors, bins;   /* bins: steps of angle per turn */
-    size_t turns;           /* of a stretch; 0: not set up */
-    double top;             /* highest order that is given */
-    long every;             /* one stretch of that many is transformed */
-    long stretch;           /* counts them */
-    size_t turn;            /* within the stretch */
-    double *grid;           /* owned: sensors * turns * bins, sums of weighted samples */
-    double *share;          /* owned: turns * bins, the weights */
-    double *power;          /* owned: sensors * (turns*bins/2 + 1), sum of squared amplitudes */
-    double *complex_out;    /* owned, for the transform */
-    void *plan;             /* owned */
-    long count;             /* stretches transformed */
+    size_t sensors, bins; /* bins: steps of angle per turn */
+    size_t turns;         /* of a stretch; 0: not set up */
+    double top;           /* highest order that is given */
+    long every;           /* one stretch of that many is transformed */
+    long stretch;         /* counts them */
+    size_t turn;          /* within the stretch */
+    double *grid;         /* owned: sensors * turns * bins, sums of weighted samples */
+    double *share;        /* owned: turns * bins, the weights */
+    double *power;        /* owned: sensors * (turns*bins/2 + 1), sum of squared amplitudes */
+    double *complex_out;  /* owned, for the transform */
+    void *plan;           /* owned */
+    long count;           /* stretches transformed */
 };
 
 /* `period` (samples per turn) and `frames` (0: unknown) in samples. 0, or -1 when memory is out. */

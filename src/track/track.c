@@ -48,8 +48,8 @@ static int name_columns(struct recording *rec, const struct job *job, int *tacho
     for (size_t c = 0; c < rec->wave.column_count; c++) {
         const struct wave_column *column = &rec->wave.columns[c];
 
-        rec->sensors[c] = column->quantity == QUANTITY_TACHO ? -1
-                                                             : job_find_sensor(job, column->name);
+        rec->sensors[c] =
+            column->quantity == QUANTITY_TACHO ? -1 : job_find_sensor(job, column->name);
         if (column->quantity == QUANTITY_TACHO && *tacho < 0) {
             *tacho = (int)c;
         } else if (rec->sensors[c] < 0) {
@@ -76,9 +76,9 @@ static int begin_tracker(struct recording *rec, const struct job *job)
         rail[c] = rec->wave.columns[c].rail;
     }
     if (status == STATUS_DONE) {
-        struct tracker_set_up set_up = {rec->wave.rate_hz, rec->frames, columns, tacho, rail,
-                                        job->tacho_edge, job->tacho_marks,
-                                        job->tacho_level, job->service_rpm};
+        struct tracker_set_up set_up = {
+            rec->wave.rate_hz, rec->frames,      columns,          tacho,           rail,
+            job->tacho_edge,   job->tacho_marks, job->tacho_level, job->service_rpm};
 
         failed = tracker_init(&rec->tracker, &set_up);
         status = failed ? message_no_memory() : STATUS_DONE;
@@ -105,7 +105,8 @@ static int begin(struct recording *rec, struct stream *stream, const struct reco
 
 /* ---- its samples ---- */
 
-/* Hands whole frames to the tracker; `carry` keeps the floats of a frame that a piece ends within. */
+/* Hands whole frames to the tracker; `carry` keeps the floats of a frame that a piece ends within.
+ */
 static int feed(struct recording *rec, const float *x, size_t floats, float *carry, size_t *carried)
 {
     size_t columns = rec->wave.column_count;
@@ -171,14 +172,15 @@ static int print_channels(const struct recording *rec, struct stream *stream, st
     for (size_t c = 0; status == STATUS_DONE && c < rec->wave.column_count; c++) {
         const struct channel *channel = &rec->tracker.channels[c];
         int same = channel_pairs_same(&rec->tracker.pairs, c);
-        struct channel_record record = {.sensor = rec->sensors[c], .min = channel->min,
+        struct channel_record record = {.sensor = rec->sensors[c],
+                                        .min = channel->min,
                                         .max = channel->max,
                                         .resolution = channel_resolution(channel),
                                         .railed = channel_railed(channel),
                                         .samples = channel->samples,
-                                        .same_as = same < 0 ? -1
-                                                            : rec->sensors[same] < 0 ? -2
-                                                            : rec->sensors[same]};
+                                        .same_as = same < 0                 ? -1
+                                                   : rec->sensors[same] < 0 ? -2
+                                                                            : rec->sensors[same]};
 
         strcpy(record.run, rec->run);
         channel_print(&record, &stream->job, line);
@@ -212,7 +214,8 @@ static int print_turns(const struct recording *rec, struct stream *stream, struc
 
         record.t_s = (block->from + block->to) / 2 / rec->wave.rate_hz;
         record.turns = block->turns;
-        record.speed_rpm = 60 * rec->wave.rate_hz * (double)block->turns / (block->to - block->from);
+        record.speed_rpm =
+            60 * rec->wave.rate_hz * (double)block->turns / (block->to - block->from);
         for (size_t s = 0; s < windows->sensors; s++) {
             record.vectors[s] = window_vector(windows, b, s, &record.rest[s]);
             record.vectors[s] = reference ? record.vectors[s] : CMPLX(NAN, NAN);
@@ -227,7 +230,8 @@ static int print_turns(const struct recording *rec, struct stream *stream, struc
 static int print_tacho(const struct recording *rec, struct stream *stream, struct line *line)
 {
     const struct tracker *tracker = &rec->tracker;
-    struct tacho_record record = {.marks = tracker->marks.count, .missed = tracker->marks.missed,
+    struct tacho_record record = {.marks = tracker->marks.count,
+                                  .missed = tracker->marks.missed,
                                   .extra = tracker->marks.extra,
                                   .jitter_deg = shaft_jitter(&tracker->shaft),
                                   .speed_rpm = tracker_speed(tracker),
@@ -326,9 +330,13 @@ int stage_track(int argc, char **argv)
 {
     static const struct option options[] = {{.name = NULL}};
     static const struct usage usage = {
-        "track", "[FILE...]",
-        "samples become one vector per sensor per block of turns, and the tacho's health", options,
-        0, SIZE_MAX, NULL};
+        "track",
+        "[FILE...]",
+        "samples become one vector per sensor per block of turns, and the tacho's health",
+        options,
+        0,
+        SIZE_MAX,
+        NULL};
     struct option_list files = {0};
     struct stream stream;
     struct recording rec = {0};

@@ -4,26 +4,29 @@
 #include <stdlib.h>
 #include <string.h>
 
-#define LEVEL_SECONDS 2.0   /* looked at for the first levels: six turns at 180 rpm */
+#define LEVEL_SECONDS 2.0 /* looked at for the first levels: six turns at 180 rpm */
 #define LEVEL_TURNS 6.0
-#define JITTER_MOST 15.0    /* deg: marks at random within their tolerance scatter by 40 deg */
-#define KEEP 64             /* frames kept before the next turn, for edges and rounding */
+#define JITTER_MOST 15.0 /* deg: marks at random within their tolerance scatter by 40 deg */
+#define KEEP 64          /* frames kept before the next turn, for edges and rounding */
 
 int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
 {
     size_t columns = set_up->columns;
 
-    *tracker = (struct tracker){.rate_hz = set_up->rate_hz, .frames = set_up->frames,
-                                .columns = columns, .tacho = set_up->tacho,
-                                .sensors = columns - (set_up->tacho >= 0), .skipped = true};
+    *tracker = (struct tracker){.rate_hz = set_up->rate_hz,
+                                .frames = set_up->frames,
+                                .columns = columns,
+                                .tacho = set_up->tacho,
+                                .sensors = columns - (set_up->tacho >= 0),
+                                .skipped = true};
     tracker->most = (size_t)TRACKER_HOLD / (columns * sizeof(float));
     if (tracker->most < 4 * TRACKER_CHUNK) {
         tracker->most = 4 * TRACKER_CHUNK;
     }
     tracker->level_frames = LEVEL_SECONDS * set_up->rate_hz;
     if (set_up->service_rpm > 0) {
-        tracker->level_frames = fmax(tracker->level_frames,
-                                     LEVEL_TURNS * 60 / set_up->service_rpm * set_up->rate_hz);
+        tracker->level_frames =
+            fmax(tracker->level_frames, LEVEL_TURNS * 60 / set_up->service_rpm * set_up->rate_hz);
     }
     tracker->level_frames = fmin(tracker->level_frames, (double)tracker->most / 2);
     pulse_init(&tracker->finder, set_up->edge, set_up->level);
@@ -84,7 +87,8 @@ static int hold_grow(struct tracker *tracker)
     return 0;
 }
 
-/* Lets go of the frames before number `keep`, once that is worth moving the others; `now`: in any case. */
+/* Lets go of the frames before number `keep`, once that is worth moving the others; `now`: in any
+ * case. */
 static void hold_release(struct tracker *tracker, double keep, bool now)
 {
     double gone = floor(keep) - (double)tracker->start;
@@ -437,7 +441,7 @@ double tracker_speed(const struct tracker *tracker)
 
 double tracker_scatter(const struct tracker *tracker)
 {
-    return tracker->turns > 1 ? 60 * tracker->rate_hz *
-                                    sqrt(tracker->turn_squares / (tracker->turns - 1))
-                              : NAN;
+    return tracker->turns > 1
+               ? 60 * tracker->rate_hz * sqrt(tracker->turn_squares / (tracker->turns - 1))
+               : NAN;
 }

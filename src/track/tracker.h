@@ -1,8 +1,8 @@
 /* tracker.h - the samples of one recording to blocks of 1x vectors, streaming.
  *
  * Joins pulse, marks, shaft, vector and window: samples are held until the shaft angle over them is
- * known, which takes a few turns, and are then summed and let go. At most TRACKER_HOLD bytes of them are
- * held; a stretch without marks that is longer than this is left out.
+ * known, which takes a few turns, and are then summed and let go. At most TRACKER_HOLD bytes of
+ * them are held; a stretch without marks that is longer than this is left out.
  *
  * Samples are worked on in chunks of TRACKER_CHUNK frames counted from the recording's start,
  * whatever sizes they come in: the same samples give the same results. */
@@ -24,7 +24,7 @@
 
 struct tracker_set_up {
     double rate_hz;
-    double frames;      /* of the whole recording; 0: unknown */
+    double frames; /* of the whole recording; 0: unknown */
     size_t columns;
     int tacho;          /* its column; -1: none */
     const double *rail; /* per column; NaN: unknown */
@@ -38,28 +38,28 @@ struct tracker {
     double rate_hz, frames;
     size_t columns, sensors;
     int tacho;
-    float *data;            /* owned: columns planes of `room` frames */
-    const float **planes;   /* owned scratch: columns pointers */
-    size_t room, most;      /* frames per plane now and at most */
-    size_t fill;            /* frames held */
-    long long start;        /* number of the first frame held */
-    size_t done;            /* of the frames held, those that went through tracker_chunk */
-    size_t searched;        /* of the frames held, those searched for pulses */
-    double level_frames;    /* frames to look at for the levels */
-    double silent;          /* frames searched since the last pulse */
+    float *data;          /* owned: columns planes of `room` frames */
+    const float **planes; /* owned scratch: columns pointers */
+    size_t room, most;    /* frames per plane now and at most */
+    size_t fill;          /* frames held */
+    long long start;      /* number of the first frame held */
+    size_t done;          /* of the frames held, those that went through tracker_chunk */
+    size_t searched;      /* of the frames held, those searched for pulses */
+    double level_frames;  /* frames to look at for the levels */
+    double silent;        /* frames searched since the last pulse */
     struct pulse_finder finder;
     struct marks marks;
     struct shaft shaft;
-    bool skipped;           /* the turn before was not usable: the next one begins a stretch */
+    bool skipped; /* the turn before was not usable: the next one begins a stretch */
     struct windows windows;
     struct spectrum spectrum;
-    struct channel *channels;     /* owned, per column */
+    struct channel *channels; /* owned, per column */
     struct channel_pairs pairs;
-    float *offset;                /* owned, per column: a rough mean that is taken off */
-    struct vector_sums *sums;     /* owned scratch: 2 * sensors */
+    float *offset;            /* owned, per column: a rough mean that is taken off */
+    struct vector_sums *sums; /* owned scratch: 2 * sensors */
     struct vector_weights weights;
     double turns, turn_mean, turn_squares; /* of turn speeds, rev/sample (Welford 1962) */
-    double time;            /* that these turns took, samples */
+    double time;                           /* that these turns took, samples */
 };
 
 /* 0, or -1 when memory is out (nothing is kept). */

@@ -13,8 +13,8 @@ static lanes spread(double value)
     return (lanes){v, v, v, v};
 }
 
-/* sin and cos of pi*y for |y| <= 1/2 by their Taylor polynomials; the remainders at 1/2 are 6e-8 and
- * 7e-9, below the precision of the lanes. */
+/* sin and cos of pi*y for |y| <= 1/2 by their Taylor polynomials; the remainders at 1/2 are 6e-8
+ * and 7e-9, below the precision of the lanes. */
 static void half_angle(lanes y, lanes *sine, lanes *cosine)
 {
     const double p = PI * PI;

@@ -1,8 +1,8 @@
 /* vector.h - the sums over one turn from which 1x vectors are made.
  *
  * The samples of a turn are weighted with the angle each of them stands for, so that
- * sum x*exp(+j*theta) is the integral over the angle and DC and all harmonics fall out over whole turns.
- * Arithmetic is in lanes of single precision that are emptied into double every VECTOR_PIECE
+ * sum x*exp(+j*theta) is the integral over the angle and DC and all harmonics fall out over whole
+ * turns. Arithmetic is in lanes of single precision that are emptied into double every VECTOR_PIECE
  * samples; lane order is fixed, so that every machine type gives its own bytes again and again. */
 #ifndef LOPSIDE_TRACK_VECTOR_H
 #define LOPSIDE_TRACK_VECTOR_H
@@ -14,9 +14,9 @@
 #define VECTOR_PIECE 256 /* samples; a multiple of 8 */
 
 struct vector_sums {
-    double re, im;  /* of w*x*exp(+j*theta) */
-    double mean;    /* of w*x */
-    double square;  /* of w*x*x */
+    double re, im; /* of w*x*exp(+j*theta) */
+    double mean;   /* of w*x */
+    double square; /* of w*x*x */
 };
 
 /* Weights of a piece of a turn. */
@@ -26,7 +26,8 @@ struct vector_weights {
     size_t count; /* samples; the lanes behind it are zero up to a multiple of 4 */
 };
 
-/* The weights of `count` samples (at most VECTOR_PIECE), the first at time `start` within the turn. */
+/* The weights of `count` samples (at most VECTOR_PIECE), the first at time `start` within the turn.
+ */
 void vector_weigh(struct vector_weights *weights, const struct shaft_turn *turn, double start,
                   size_t count);
 

@@ -1,10 +1,11 @@
 /* window.h - turns to blocks of whole turns.
  *
- * A block of M turns has a window of M turns convolved with a Hann kernel of one turn: its transform
- * vanishes at every whole order but zero, so that neither a constant nor a harmonic leaks into 1x
- * (Harris, Proc. IEEE 66 (1978) 51-83, on windows and their leakage). Neighbours overlap in the one turn
- * in which the one falls and the other rises, and add up to one there: every sample counts once.
- * The last block of a stretch takes the turns that are left, or they go to the one before. */
+ * A block of M turns has a window of M turns convolved with a Hann kernel of one turn: its
+ * transform vanishes at every whole order but zero, so that neither a constant nor a harmonic leaks
+ * into 1x (Harris, Proc. IEEE 66 (1978) 51-83, on windows and their leakage). Neighbours overlap in
+ * the one turn in which the one falls and the other rises, and add up to one there: every sample
+ * counts once. The last block of a stretch takes the turns that are left, or they go to the one
+ * before. */
 #ifndef LOPSIDE_TRACK_WINDOW_H
 #define LOPSIDE_TRACK_WINDOW_H
 
@@ -28,17 +29,19 @@ struct windows {
     struct window_block *blocks; /* owned */
     struct vector_sums *sums;    /* owned, count * sensors */
     size_t count, room;
-    bool open;                   /* the last block is still being filled */
+    bool open; /* the last block is still being filled */
 };
 
-/* About a second of turns, at least four, shortened so that the recording gives sixteen blocks or more,
- * lengthened so that it gives two thousand at most. `period` and `frames` (0: unknown) in samples. */
+/* About a second of turns, at least four, shortened so that the recording gives sixteen blocks or
+ * more, lengthened so that it gives two thousand at most. `period` and `frames` (0: unknown) in
+ * samples. */
 long window_length(double rate_hz, double period, double frames);
 
 void window_init(struct windows *windows, size_t sensors);
 void window_release(struct windows *windows);
 
-/* True where the next turn is one in which windows rise or fall, so that its ramped sums are needed. */
+/* True where the next turn is one in which windows rise or fall, so that its ramped sums are
+ * needed. */
 bool window_ramps(const struct windows *windows, const struct shaft_turn *turn);
 
 /* Takes the sums of a turn, one per sensor; `ramped`: the same, weighted with vector_ramp, where

@@ -22,8 +22,7 @@ static float *one_part(void)
         double theta = TAU * (double)i / PERIOD;
 
         for (size_t c = 0; c + 1 < COLUMNS; c++) {
-            x[i * COLUMNS + c] =
-                (float)(cos(theta - (double)c) + 0.3 * signal_normal(&state));
+            x[i * COLUMNS + c] = (float)(cos(theta - (double)c) + 0.3 * signal_normal(&state));
         }
         x[i * COLUMNS + COLUMNS - 1] = i % PERIOD > 16 && i % PERIOD < 40 ? 5.0f : 0.0f;
     }
@@ -35,8 +34,8 @@ int main(int argc, char **argv)
     double million = argc > 1 ? atof(argv[1]) : 15.3;
     size_t parts = (size_t)(million * 1e6 / PART) + 1;
     double rail[COLUMNS] = {NAN, NAN, NAN, NAN};
-    struct tracker_set_up set_up = {12800, (double)(parts * PART), COLUMNS, COLUMNS - 1,
-                                    rail,  1, 1, NAN, NAN};
+    struct tracker_set_up set_up = {
+        12800, (double)(parts * PART), COLUMNS, COLUMNS - 1, rail, 1, 1, NAN, NAN};
     struct tracker tracker;
     struct timespec from, to;
     float *x = one_part();

@@ -79,7 +79,8 @@ static void test_marks_counts(void **unused)
 
 /* ---- shaft ---- */
 
-/* Times of marks 0.. of a shaft whose speed swings by 2 % in ten turns: Newton on the closed form. */
+/* Times of marks 0.. of a shaft whose speed swings by 2 % in ten turns: Newton on the closed form.
+ */
 static double mark_time(const struct signal *s, double turns)
 {
     double t = turns / s->rev;
@@ -174,8 +175,9 @@ static void test_vector_sums(void **unused)
     assert_float_equal(full.square, 9 + 2 + 0.5, 1e-5);
     vector_ramp(&weights);
     vector_add(&ramped, &weights, x + 1, 0);
-    /* The integrals of u - sin(2 pi u)/(2 pi) over the turn, alone, with cos and with sin, by parts; the sum
-     * begins a quarter of a sample off, which leaves 1/800 of the ramp's final step. */
+    /* The integrals of u - sin(2 pi u)/(2 pi) over the turn, alone, with cos and with sin, by
+     * parts; the sum begins a quarter of a sample off, which leaves 1/800 of the ramp's final step.
+     */
     struct vector_sums plain_ramp = {0};
     float one[200];
 
@@ -193,10 +195,10 @@ static void test_vector_sums(void **unused)
 static void test_window_length(void **unused)
 {
     (void)unused;
-    assert_int_equal(window_length(10000, 400, 0), 25);              /* a second */
+    assert_int_equal(window_length(10000, 400, 0), 25); /* a second */
     assert_int_equal(window_length(10000, 400, 1e6), 25);
-    assert_int_equal(window_length(10000, 400, 400 * 161), 10);      /* sixteen blocks */
-    assert_int_equal(window_length(10000, 400, 400 * 20), 4);        /* four turns at least */
+    assert_int_equal(window_length(10000, 400, 400 * 161), 10); /* sixteen blocks */
+    assert_int_equal(window_length(10000, 400, 400 * 20), 4);   /* four turns at least */
     assert_int_equal(window_length(1000, 1000, 0), 4);
     assert_int_equal(window_length(10000, 100, 100.0 * 1000000), 500); /* two thousand at most */
 }
@@ -214,8 +216,11 @@ static void test_window_turns(void **unused)
         window_init(&windows, 1);
         windows.length = 7;
         for (long k = 0; k < all; k++) {
-            struct shaft_turn turn = {.t0 = (double)k, .t1 = (double)k + 1, .c = {0, 1},
-                                      .first = k == 0, .last = k == all - 1};
+            struct shaft_turn turn = {.t0 = (double)k,
+                                      .t1 = (double)k + 1,
+                                      .c = {0, 1},
+                                      .first = k == 0,
+                                      .last = k == all - 1};
 
             assert_int_equal(window_turn(&windows, &turn, &one, &half), 0);
         }
@@ -352,11 +357,11 @@ static void test_spectrum(void **unused)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_pulse_times), cmocka_unit_test(test_pulse_nothing),
-        cmocka_unit_test(test_marks_counts), cmocka_unit_test(test_shaft_follows),
-        cmocka_unit_test(test_shaft_jitter), cmocka_unit_test(test_vector_sums),
+        cmocka_unit_test(test_pulse_times),   cmocka_unit_test(test_pulse_nothing),
+        cmocka_unit_test(test_marks_counts),  cmocka_unit_test(test_shaft_follows),
+        cmocka_unit_test(test_shaft_jitter),  cmocka_unit_test(test_vector_sums),
         cmocka_unit_test(test_window_length), cmocka_unit_test(test_window_turns),
-        cmocka_unit_test(test_channel), cmocka_unit_test(test_channel_pairs),
+        cmocka_unit_test(test_channel),       cmocka_unit_test(test_channel_pairs),
         cmocka_unit_test(test_spectrum)};
 
     return cmocka_run_group_tests(tests, NULL, NULL);

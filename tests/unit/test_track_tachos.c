@@ -1,5 +1,5 @@
-/* Tachos as they are in the field. Bounds: the vector within 1 % and 1 deg (the project's bar for damaged
- * tachos), tighter where nothing is lost. The truth is the geometry of the shaft. */
+/* Tachos as they are in the field. Bounds: the vector within 1 % and 1 deg (the project's bar for
+ * damaged tachos), tighter where nothing is lost. The truth is the geometry of the shaft. */
 #include "track_recipe.h"
 
 /* A smooth pulse at `at` turns, `width` turns wide in all, 1 at its middle. */
@@ -11,7 +11,8 @@ static double bump(double u, double at, double width)
     return fabs(a) < width / 2 ? 0.5 + 0.5 * cos(TAU * a / width) : 0;
 }
 
-/* Seconds to a lag that edge detection on a bump shifts by: the half height lies width/4 before the middle. */
+/* Seconds to a lag that edge detection on a bump shifts by: the half height lies width/4 before the
+ * middle. */
 static const double bump_edge = 0.25;
 
 static double slow_edges(const struct recipe *r, double t)
@@ -82,7 +83,8 @@ static double gap_tooth(const struct recipe *r, double t)
     return tooth == 9 ? 0 : 3 * bump(10 * u, 0.1, 0.4);
 }
 
-static void check(double (*tacho)(const struct recipe *, double), int marks, double percent, double deg)
+static void check(double (*tacho)(const struct recipe *, double), int marks, double percent,
+                  double deg)
 {
     struct recipe r = plain;
 
@@ -233,9 +235,9 @@ static void test_holes(void **unused)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_slow_edges), cmocka_unit_test(test_small_on_offset),
-        cmocka_unit_test(test_toothed), cmocka_unit_test(test_coupled),
-        cmocka_unit_test(test_scratch), cmocka_unit_test(test_growing),
+        cmocka_unit_test(test_slow_edges),    cmocka_unit_test(test_small_on_offset),
+        cmocka_unit_test(test_toothed),       cmocka_unit_test(test_coupled),
+        cmocka_unit_test(test_scratch),       cmocka_unit_test(test_growing),
         cmocka_unit_test(test_several_marks), cmocka_unit_test(test_same_mark),
         cmocka_unit_test(test_holes)};
 

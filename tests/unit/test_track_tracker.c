@@ -1,6 +1,6 @@
-/* Recordings from closed forms (track_signal.h) through the whole tracker. The truth is the geometry of
- * the tape and the formula of the vibration; bounds are the project's bars (bias 0.01 % and 0.01 deg,
- * efficiency 0.9; with damaged tachos 1 % and 1 deg). */
+/* Recordings from closed forms (track_signal.h) through the whole tracker. The truth is the
+ * geometry of the tape and the formula of the vibration; bounds are the project's bars (bias 0.01 %
+ * and 0.01 deg, efficiency 0.9; with damaged tachos 1 % and 1 deg). */
 #include "track_recipe.h"
 
 /* Harmonics to 10x, speed wander of 2 % with a period of ten turns: the hardest of the bar. */
@@ -80,8 +80,8 @@ static void test_delay_turns_lag(void **unused)
     assert_vector(measure(&r), 1, LAG + 30, 0.01, 0.02);
 }
 
-/* The trailing edge comes one tape later, so that every lag is smaller by the tape's 18 deg; a tape that is
- * darker than the shaft turns rising into falling. */
+/* The trailing edge comes one tape later, so that every lag is smaller by the tape's 18 deg; a tape
+ * that is darker than the shaft turns rising into falling. */
 static void test_edge_and_polarity(void **unused)
 {
     struct recipe r = plain;
@@ -119,7 +119,8 @@ static void test_efficiency(void **unused)
     if (!(bound / squares > 0.9)) {
         fail_msg("efficiency %.3f", bound / squares);
     }
-    assert_true(bound / squares < 1.2); /* better than the bound by more than chance: a wrong test */
+    assert_true(bound / squares <
+                1.2); /* better than the bound by more than chance: a wrong test */
 }
 
 static void test_cuts(void **unused)
@@ -139,7 +140,8 @@ static void test_cuts(void **unused)
     for (int k = 0; k < 5; k++) {
         track(&b, &r, x, n, &cuts);
         assert_int_equal(a.windows.count, b.windows.count);
-        assert_memory_equal(a.windows.sums, b.windows.sums, a.windows.count * sizeof *a.windows.sums);
+        assert_memory_equal(a.windows.sums, b.windows.sums,
+                            a.windows.count * sizeof *a.windows.sums);
         assert_memory_equal(a.windows.blocks, b.windows.blocks,
                             a.windows.count * sizeof *a.windows.blocks);
         assert_int_equal(a.marks.missed, b.marks.missed);
@@ -217,8 +219,8 @@ static void test_nothing_there(void **unused)
     free(x);
 }
 
-/* A shaft so slow, or so many columns, that few turns can be held: bounded memory, and still the truth
- * or nothing. */
+/* A shaft so slow, or so many columns, that few turns can be held: bounded memory, and still the
+ * truth or nothing. */
 static void test_slow_shaft(void **unused)
 {
     enum { COLUMNS = 64, PART = 1000 };
@@ -258,13 +260,17 @@ static void test_slow_shaft(void **unused)
 
 int main(void)
 {
-    const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_bias), cmocka_unit_test(test_each_block),
-        cmocka_unit_test(test_scaling_and_additions), cmocka_unit_test(test_delay_turns_lag),
-        cmocka_unit_test(test_edge_and_polarity), cmocka_unit_test(test_efficiency),
-        cmocka_unit_test(test_cuts), cmocka_unit_test(test_damaged_tacho),
-        cmocka_unit_test(test_few_samples), cmocka_unit_test(test_nothing_there),
-        cmocka_unit_test(test_slow_shaft)};
+    const struct CMUnitTest tests[] = {cmocka_unit_test(test_bias),
+                                       cmocka_unit_test(test_each_block),
+                                       cmocka_unit_test(test_scaling_and_additions),
+                                       cmocka_unit_test(test_delay_turns_lag),
+                                       cmocka_unit_test(test_edge_and_polarity),
+                                       cmocka_unit_test(test_efficiency),
+                                       cmocka_unit_test(test_cuts),
+                                       cmocka_unit_test(test_damaged_tacho),
+                                       cmocka_unit_test(test_few_samples),
+                                       cmocka_unit_test(test_nothing_there),
+                                       cmocka_unit_test(test_slow_shaft)};
 
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -22,17 +22,23 @@ struct recipe {
     struct signal shaft;
     double seconds;
     double amplitude, constant, second, harmonics, noise; /* of the vibration, and of the tacho: */
-    double high, low;       /* volts under the tape and elsewhere */
-    double lost, added;     /* share of pulses taken away, and put in at random places */
-    double delay;           /* of the vibration, turns */
+    double high, low;                                     /* volts under the tape and elsewhere */
+    double lost, added; /* share of pulses taken away, and put in at random places */
+    double delay;       /* of the vibration, turns */
     int edge, marks;
     uint64_t seed;
     double (*tacho)(const struct recipe *r, double t); /* instead of the tape; V */
 };
 
-static const struct recipe plain = {.shaft = {.rate = 6400, .rev = 24.7, .tape = 0.05, .phase = 0.3},
-                                    .seconds = 8, .amplitude = 1, .high = 4, .low = -1, .edge = 1,
-                                    .marks = 1, .seed = 88172645463325252ULL};
+static const struct recipe plain = {
+    .shaft = {.rate = 6400, .rev = 24.7, .tape = 0.05, .phase = 0.3},
+    .seconds = 8,
+    .amplitude = 1,
+    .high = 4,
+    .low = -1,
+    .edge = 1,
+    .marks = 1,
+    .seed = 88172645463325252ULL};
 
 /* True where pulse number `turn` is to be left out. */
 static inline int is_lost(const struct recipe *r, double turn)
@@ -89,10 +95,11 @@ static inline float *record(const struct recipe *r, size_t *n)
 }
 
 static inline void track(struct tracker *tracker, const struct recipe *r, const float *x, size_t n,
-                  uint64_t *cuts)
+                         uint64_t *cuts)
 {
     double rail[2] = {NAN, NAN};
-    struct tracker_set_up set_up = {r->shaft.rate, (double)n, 2, 1, rail, r->edge, r->marks, NAN, NAN};
+    struct tracker_set_up set_up = {r->shaft.rate, (double)n, 2,   1,  rail,
+                                    r->edge,       r->marks,  NAN, NAN};
 
     assert_int_equal(tracker_init(tracker, &set_up), 0);
     for (size_t i = 0; i < n;) {
@@ -137,15 +144,16 @@ static inline double complex measure(const struct recipe *r)
     return z;
 }
 
-static inline void assert_vector(double complex z, double amplitude, double lag, double percent, double deg)
+static inline void assert_vector(double complex z, double amplitude, double lag, double percent,
+                                 double deg)
 {
     double turn = (carg(z) / TAU * 360 - lag) / 360;
 
     if (!(fabs(cabs(z) / amplitude - 1) * 100 < percent) ||
         !(fabs(turn - round(turn)) * 360 < deg)) {
-        fail_msg("%.6f at %.4f deg, not %.6f at %.4f", cabs(z), carg(z) / TAU * 360, amplitude, lag);
+        fail_msg("%.6f at %.4f deg, not %.6f at %.4f", cabs(z), carg(z) / TAU * 360, amplitude,
+                 lag);
     }
 }
-
 
 #endif

@@ -1,6 +1,6 @@
-/* track_signal.h - test recordings from closed forms: a tape, a tacho and vibration on a shaft whose angle
- * is known analytically. Geometry only: the tacho is high while the tape (from angle 0 to its width) is in
- * front of it, and the vibration is sum a_k*cos(k*theta - lag_k). */
+/* track_signal.h - test recordings from closed forms: a tape, a tacho and vibration on a shaft
+ * whose angle is known analytically. Geometry only: the tacho is high while the tape (from angle 0
+ * to its width) is in front of it, and the vibration is sum a_k*cos(k*theta - lag_k). */
 #ifndef TRACK_SIGNAL_H
 #define TRACK_SIGNAL_H
 
@@ -11,12 +11,12 @@
 #define TAU 6.28318530717958647692
 
 struct signal {
-    double rate, rev;          /* Hz; mean rev/s */
+    double rate, rev;            /* Hz; mean rev/s */
     double wander, wander_turns; /* speed swing as a fraction, and its period in turns */
-    double sweep;              /* rev/s per s */
-    double tape;               /* tape width, turns */
-    double edge;               /* width of the slow edges, turns; 0: two samples */
-    double phase;              /* angle at time 0, turns */
+    double sweep;                /* rev/s per s */
+    double tape;                 /* tape width, turns */
+    double edge;                 /* width of the slow edges, turns; 0: two samples */
+    double phase;                /* angle at time 0, turns */
 };
 
 static inline double signal_turns(const struct signal *s, double t)
