@@ -119,8 +119,8 @@ class BadSound(Battery):
     def test_missing_channel(self):
         self.edit("channel = 2", "channel = 9", codes=[3], said="9")
 
-    def test_swapped_channels(self):
-        self.edit("channel = 3", "channel = 1", codes=[2, 3, 4], lines=None, said="")
+    def test_one_channel_for_two(self):
+        self.edit("channel = 3", "channel = 1", codes=[2], said="job.ini")
 
     def test_same_recording_twice(self):
         self.broken(lambda p: p.write_bytes((p.parent / "as-found.wav").read_bytes()), [4], None, said="same")
@@ -221,6 +221,23 @@ class BadText(Battery):
 
     def test_empty(self):
         self.lines(lambda rows: [])
+
+    def swapped(self, names):
+        """The first sensor's cable in the tacho's socket and the other way round, in the recordings named."""
+        with chain.folder() as where:
+            chain.simulate(small("csv"), where)
+            for name in names:
+                path = where / name
+                text = path.read_text("utf-8-sig")
+                self.assertEqual((text.count("A-H"), text.count("Tacho")), (1, 1))
+                path.write_text(text.replace("Tacho", "?").replace("A-H", "Tacho").replace("?", "A-H"))
+            self.refuse(where, (3, 4), None)
+
+    def test_swapped_in_one_run(self):
+        self.swapped(["trial-1.csv"])
+
+    def test_swapped_in_all_runs(self):
+        self.swapped(["as-found.csv", "trial-1.csv"])
 
     def test_header_only(self):
         self.lines(lambda rows: rows[:1])
