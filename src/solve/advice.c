@@ -7,6 +7,7 @@
 #include "base/angle.h"
 #include "solve/tolerance.h"
 #include "solve/trial.h"
+#include "solve/turn.h"
 
 struct limits {
     bool off;
@@ -59,6 +60,41 @@ bool advice_linearity(const struct model *m, const struct model_row *row, struct
                  "run '%s' does not fit the others: check its weights, their angles and radii, and "
                  "whether the machine or its speed changed",
                  run);
+    return true;
+}
+
+bool advice_turn(const struct model *m, size_t plane, struct advice_finding *f)
+{
+    struct limits l = limits_of(m->job, "lag-follows-weight", 3, INFINITY);
+    struct turn_figure worst = {0}, figure;
+    const struct model_row *row = NULL;
+    for (size_t r = 0; r < m->row_count && !m->amplitudes && !l.off; r++) {
+        const struct model_row *own = &m->rows[r];
+        if (turn_worst(own->count, m->job->plane_count, own->y, own->x,
+                       (const double(*)[3])own->total, plane, &figure) &&
+            (!row || figure.se > worst.se)) {
+            worst = figure;
+            row = own;
+        }
+    }
+    if (!row)
+        return false;
+    *f = (struct advice_finding){.check = "lag-follows-weight",
+                                 .unit = "s.e.",
+                                 .basis = "common practice",
+                                 .run = (int)row->runs[worst.to],
+                                 .sensor = (int)row->sensor};
+    judge(f, &l, worst.se);
+    bool mirrored = fabs(angle_wrap_180(worst.effect_deg + worst.weight_deg)) <
+                    0.5 * fabs(angle_wrap_180(worst.effect_deg - worst.weight_deg));
+    snprintf(f->text, sizeof f->text,
+             "from run '%s' the weight on '%s' turned by %.0f deg and its effect by %.0f deg%s",
+             m->job->runs[row->runs[worst.from]].name, m->job->planes[plane].name, worst.weight_deg,
+             worst.effect_deg,
+             f->verdict == ADVICE_OK ? ""
+             : mirrored ? ", as if angles or phase were counted the other way: check the sheet's "
+                          "`angles` and `phase`"
+                        : ": check the angles of the weights");
     return true;
 }
 

@@ -32,6 +32,10 @@ struct advice_next {
 bool advice_linearity(const struct model *model, const struct model_row *row,
                       struct advice_finding *finding);
 
+/* Turn of a plane's effect against the turn of its weight, over all rows. False: no two trials
+ * tell. */
+bool advice_turn(const struct model *model, size_t plane, struct advice_finding *finding);
+
 /* Condition number; names the planes that cannot be told apart and the run that would. False where
  * there is one plane only and nothing to say. */
 bool advice_conditioning(const struct answer *answer, struct advice_finding *finding);

@@ -350,6 +350,11 @@ static int judge_rows(struct solve *s, struct model *m)
         }
         status = write_finding(s, &f);
     }
+    for (size_t p = 0; p < m->job->plane_count && status == STATUS_DONE; p++) {
+        struct advice_finding f;
+        if (advice_turn(m, p, &f))
+            status = write_finding(s, &f);
+    }
     return status;
 }
 

@@ -292,6 +292,34 @@ static void test_linearity(void **state)
     model_release(&d.model);
 }
 
+/* A trial moved by 120 deg turns its effect by 120 deg of lag; with weights counted the wrong way
+ * round it turns by -120. */
+static void test_lag_follows_weight(void **state)
+{
+    (void)state;
+    struct desk d;
+    struct advice_finding f;
+    two_planes(&d);
+    d.job.aim.repeatability = 0.03;
+    assert_int_equal(desk_rule(&d), RULING_SOLVE);
+    assert_false(advice_turn(&d.model, 0, &f)); /* one trial a plane tells nothing */
+    model_release(&d.model);
+    desk_run(&d, "left turned", angle_vector(0.06, 150), 0);
+    assert_int_equal(desk_rule(&d), RULING_SOLVE);
+    assert_true(advice_turn(&d.model, 0, &f));
+    assert_false(advice_turn(&d.model, 1, &f));
+    assert_true(advice_turn(&d.model, 0, &f) && f.value < 1e-6);
+    assert_int_equal(f.verdict, ADVICE_OK);
+    model_release(&d.model);
+    for (int r = 1; r < 4; r++)
+        d.weights[r][0].angle_deg = 360 - d.weights[r][0].angle_deg;
+    assert_int_equal(desk_rule(&d), RULING_SOLVE);
+    assert_true(advice_turn(&d.model, 0, &f));
+    assert_int_equal(f.verdict, ADVICE_CAUTION);
+    assert_non_null(strstr(f.text, "the other way"));
+    model_release(&d.model);
+}
+
 /* Planes that are nearly alike: the answer stays moderate and the finding names the run to make. */
 static void test_planes_alike(void **state)
 {
@@ -360,6 +388,7 @@ int main(void)
         cmocka_unit_test(test_remove),
         cmocka_unit_test(test_after_the_correction),
         cmocka_unit_test(test_linearity),
+        cmocka_unit_test(test_lag_follows_weight),
         cmocka_unit_test(test_planes_alike),
         cmocka_unit_test(test_four_runs),
     };
