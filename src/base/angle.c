@@ -7,7 +7,7 @@ double angle_wrap_360(double deg)
     double r = fmod(deg, 360.0);
     if (r < 0)
         r += 360.0;
-    return r >= 360.0 ? 0.0 : r; /* -1e-17 + 360 rounds up */
+    return r >= 360.0 ? 0.0 : r + 0.0; /* -1e-17 + 360 rounds up; -0 becomes 0 */
 }
 
 double angle_wrap_180(double deg)

@@ -92,6 +92,7 @@ static void test_angles(void **state)
     assert_close(angle_wrap_360(-1e-17), 0, 0);
     assert_close(angle_wrap_180(181), -179, 1e-12);
     assert_close(angle_wrap_180(180), 180, 0);
+    assert_false(signbit(angle_wrap_360(-0.0)));
     assert_true(isnan(angle_wrap_360(NAN)));
     assert_close(angle_of(CMPLX(0, 2)), 90, 1e-12);
     assert_close(angle_of(0), 0, 0);
