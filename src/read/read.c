@@ -494,6 +494,7 @@ int stage_read(int argc, char **argv)
     status = read_sheet(&stage, operands.items[0]);
     if (status == STATUS_DONE && stage.audit)
         status = adopt_recordings(&stage, (char *const *)&operands.items[1], operands.count - 1);
+    stage.sheet.job.audit = stage.audit;
     if (status == STATUS_DONE)
         status = choose_runs(&stage, &runs);
     if (status == STATUS_DONE)

@@ -290,7 +290,7 @@ void dossier_cov(const struct dossier_reading *reading, double cov[3])
 
 bool dossier_is_audit(const struct dossier *dossier)
 {
-    return dossier->job->plane_count == 0;
+    return dossier->job->audit;
 }
 
 enum verdict dossier_verdict(const struct dossier *dossier, const char *run, int sensor)

@@ -469,7 +469,7 @@ static int conclude(struct solve *s)
 {
     struct model model;
     struct advice_next next;
-    if (s->stream.job.run_count == 0) /* an audit: nothing is to be balanced */
+    if (s->stream.job.audit || s->stream.job.run_count == 0) /* an audit: nothing is to be balanced */
         return STATUS_DONE;
     int status = kernel_status(model_init(&model, &s->stream.job, s->readings, s->count));
     if (status != STATUS_DONE)
