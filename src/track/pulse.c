@@ -9,6 +9,7 @@ enum { UNKNOWN, BELOW, ABOVE, ABOVE_FROM_START };
  * stays out. */
 #define HYSTERESIS 0.15f
 
+#define GROUP 16    /* samples looked at together where nothing happens */
 #define SILENT 0.1f /* of the former span: below it is no pulse */
 
 void pulse_init(struct pulse_finder *finder, int edge, double level)
@@ -143,6 +144,31 @@ static struct pulse ended(struct pulse_finder *finder, double end)
                           .bottom = finder->bottom};
 }
 
+/* Passes over whole groups of samples in which the state cannot change; returns where it stopped.
+ */
+static size_t pass_over(struct pulse_finder *finder, const float *x, size_t i, size_t n)
+{
+    while (i + GROUP <= n) {
+        float high = finder->sign * x[i], low = high;
+
+        for (size_t k = 1; k < GROUP; k++) {
+            float y = finder->sign * x[i + k];
+
+            high = y > high ? y : high;
+            low = y < low ? y : low;
+        }
+        if (finder->state == BELOW && high <= finder->above) {
+            finder->extreme = low < finder->extreme ? low : finder->extreme;
+        } else if (finder->state >= ABOVE && low >= finder->below) {
+            finder->extreme = high > finder->extreme ? high : finder->extreme;
+        } else {
+            break;
+        }
+        i += GROUP;
+    }
+    return i;
+}
+
 size_t pulse_find(struct pulse_finder *finder, const float *x, size_t n, size_t back, double start,
                   struct pulse *pulses)
 {
@@ -152,6 +178,10 @@ size_t pulse_find(struct pulse_finder *finder, const float *x, size_t n, size_t 
         return 0;
     }
     for (size_t i = 0; i < n; i++) {
+        i = i % GROUP == 0 ? pass_over(finder, x, i, n) : i;
+        if (i == n) {
+            break;
+        }
         float y = finder->sign * x[i];
 
         if (finder->state == UNKNOWN) {
