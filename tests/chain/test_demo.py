@@ -69,7 +69,7 @@ class Demo(unittest.TestCase):
         stream, z, truth = self.compare("fan", fan, files, ["DE-V", "DE-H"])
         (c,) = chain.kind(stream, "correction")
         # The textbook's formula for each sensor alone, mean of both as-found runs; position 3 is 60 deg
-        trial = chain.weight(0.050, 60)
+        trial = chain.weight(0.070, 60)
         for s in ("DE-V", "DE-H"):
             found = (z["as-found", s] + z["as-found again", s]) / 2
             alone = -found * trial / (z["trial", s] - found)
