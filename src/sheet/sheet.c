@@ -108,6 +108,7 @@ static void parse(struct sheet_parse *p, char *text, size_t length)
     sheet_planes_read(p);
     sheet_runs_read(p);
     sheet_aim_read(p);
+    sheet_responses_read(p);
     sheet_checks_cross(p);
 }
 

@@ -82,9 +82,73 @@ static void read_tolerance(struct sheet_parse *p, size_t section)
         sheet_fields_wrong(p, e, "needs the key 'service speed' in [rotor]");
 }
 
+/* The condition of a run, or of a coast-down of it: "hot @ 900 rpm". */
+static bool is_condition(const struct job *job, const char *name)
+{
+    for (size_t i = 0; i < job->run_count; i++) {
+        size_t length = strlen(job->runs[i].condition);
+        if (!strncmp(job->runs[i].condition, name, length) &&
+            (!name[length] || !strncmp(name + length, " @ ", 3)))
+            return true;
+    }
+    return false;
+}
+
+/* "importance hot = 2": once a condition. */
+static void read_importances(struct sheet_parse *p, size_t section)
+{
+    static const struct sheet_range FACTOR = {0, 1000, true, "more than 0, at most 1000"};
+    struct job *job = &p->sheet->job;
+    job->aim.importances = calloc(p->lines.entry_count + 1, sizeof *job->aim.importances);
+    if (!job->aim.importances) {
+        p->errors.no_memory = true;
+        return;
+    }
+    for (size_t i = 0; i < p->lines.entry_count; i++) {
+        const struct sheet_entry *e = &p->lines.entries[i];
+        if (!sheet_fields_is(e, section, "importance"))
+            continue;
+        double factor = NAN;
+        const char *at = e->value, *fault = sheet_values_number(&at, &factor);
+        if (!fault && !sheet_values_end(at))
+            fault = "text behind the value";
+        if (!fault && !p->audit && !is_condition(job, e->subject))
+            fault = "no run has that condition";
+        if (fault) {
+            sheet_fields_wrong(p, e, fault);
+            continue;
+        }
+        if (!sheet_fields_in(p, e, factor, &FACTOR) || strlen(e->subject) >= NAME_ROOM)
+            continue;
+        struct job_importance *own = &job->aim.importances[job->aim.importance_count++];
+        strcpy(own->condition, e->subject);
+        own->factor = factor;
+    }
+}
+
+/* "group 2 rigid": of ISO 20816-3. */
+static void read_zones(struct sheet_parse *p, size_t section)
+{
+    static const char *const ZONES[] = {"group 1 rigid", "group 1 flexible", "group 2 rigid",
+                                        "group 2 flexible", NULL};
+    int zone = sheet_fields_choice(p, section, "zones", ZONES, -1);
+    p->sheet->job.aim.zone_group = zone < 0 ? 0 : 1 + zone / 2;
+    p->sheet->job.aim.zone_flexible = zone >= 0 && zone % 2 == 1;
+}
+
+static void read_minimise(struct sheet_parse *p, size_t section)
+{
+    static const char *const MINIMISES[] = {"total", "worst", "static first", NULL};
+    struct job *job = &p->sheet->job;
+    job->aim.minimise =
+        (enum minimise)sheet_fields_choice(p, section, "minimise", MINIMISES, MINIMISE_TOTAL);
+    if (job->aim.minimise == MINIMISE_STATIC_FIRST && job->plane_count != 2 && !p->audit)
+        sheet_fields_wrong(p, sheet_fields_find(p, section, "minimise"),
+                           "static and couple parts need two planes");
+}
+
 static void read_aim(struct sheet_parse *p)
 {
-    static const char *const MINIMISES[] = {"total", "worst", NULL};
     struct job *job = &p->sheet->job;
     size_t s = sheet_fields_section(p, SHEET_AIM, "");
     const struct sheet_entry *mounted = sheet_fields_find(p, s, "mounted");
@@ -94,13 +158,14 @@ static void read_aim(struct sheet_parse *p)
         return;
     }
     read_targets(p, s);
-    job->aim.minimise =
-        sheet_fields_choice(p, s, "minimise", MINIMISES, 0) == 1 ? MINIMISE_WORST : MINIMISE_TOTAL;
+    read_minimise(p, s);
     job->aim.mounted = -1;
     if (mounted && !p->audit)
         job->aim.mounted = sheet_fields_run(p, mounted, mounted->value);
     read_repeatability(p, s);
     read_tolerance(p, s);
+    read_zones(p, s);
+    read_importances(p, s);
 }
 
 /* ---- [limits] ---- */

@@ -38,9 +38,9 @@ static const struct sheet_key PLANE[] = {{"radius", 0, NULL},
                                          {"most in all", 0, NULL},
                                          {"taken", 0, NULL},
                                          {"work", 0, NULL},
-                                         {"hole", SHEET_KEY_LATER, NULL},
-                                         {"density", SHEET_KEY_LATER, NULL},
-                                         {"depth", SHEET_KEY_LATER, NULL}};
+                                         {"hole", 0, NULL},
+                                         {"density", 0, NULL},
+                                         {"depth", 0, NULL}};
 static const struct sheet_key RUN[] = {{"file", SHEET_KEY_AGAIN, NULL},
                                        {"when", 0, NULL},
                                        {"weight", SHEET_KEY_SUBJECT | SHEET_KEY_AGAIN, NULL},
@@ -56,8 +56,9 @@ static const struct sheet_key RUN[] = {{"file", SHEET_KEY_AGAIN, NULL},
 static const struct sheet_key AIM[] = {
     {"target", 0, NULL},        {"target", SHEET_KEY_SUBJECT, NULL},
     {"minimise", 0, NULL},      {"mounted", 0, NULL},
-    {"repeatability", 0, NULL}, {"responses", SHEET_KEY_LATER, NULL},
-    {"tolerance", 0, NULL},     {"zones", SHEET_KEY_LATER, NULL}};
+    {"repeatability", 0, NULL}, {"responses", 0, NULL},
+    {"tolerance", 0, NULL},     {"zones", 0, NULL},
+    {"importance", SHEET_KEY_SUBJECT, NULL}};
 /* The checks and the units of their figures. */
 static const struct sheet_key LIMITS[] = {{"readable", 0, NULL},
                                           {"same-recording", 0, NULL},
@@ -294,7 +295,10 @@ static bool lacks_subject(const struct sheet_entry *e, const struct kind *kind, 
     if (!find_key(kind, word, true))
         return false;
     sheet_errors_add(errors, e->line, "a %s's name must stand behind the key: '%s'",
-                     !strcmp(word, "weight") ? "plane" : "sensor", word);
+                     !strcmp(word, "weight")       ? "plane"
+                     : !strcmp(word, "importance") ? "condition"
+                                                   : "sensor",
+                     word);
     return true;
 }
 

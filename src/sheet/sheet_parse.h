@@ -23,6 +23,7 @@ void sheet_sensors_read(struct sheet_parse *p);  /* [sensor NAME] */
 void sheet_planes_read(struct sheet_parse *p);   /* [plane NAME] */
 void sheet_runs_read(struct sheet_parse *p);     /* [run NAME] */
 void sheet_aim_read(struct sheet_parse *p);      /* [aim], [limits] */
+void sheet_responses_read(struct sheet_parse *p); /* the file of stored responses, [aim] read */
 void sheet_checks_cross(struct sheet_parse *p);  /* what concerns several sections */
 
 /* The layout's keys of one section over what `layout` holds already. */

@@ -15,6 +15,9 @@
 #define SAME_ANGLE 1e-6  /* deg: two positions nearer than this are one */
 
 static const struct sheet_range RADIUS = {0, 100, true, "more than 0, at most 100 m"};
+static const struct sheet_range DRILL = {0, 1, true, "more than 0, at most 1 m"};
+/* Above aerogels, below the densest metal (osmium, 22590 kg/m3: CRC Handbook). */
+static const struct sheet_range DENSITY = {1, 23000, false, "1 to 23000 kg/m3"};
 static const struct sheet_range PIECE = {0, 1e5, true, "more than 0, at most 100 t"};
 
 /* Items of the longest list; NULL with no_memory set. */
@@ -192,12 +195,35 @@ static void read_taken(struct sheet_parse *p, size_t section, struct job_plane *
         sheet_fields_wrong(p, e, fault);
 }
 
+/* The keys of a drill: `hole` with `density`, and `depth` for the deepest hole. */
+static void read_drill(struct sheet_parse *p, size_t section, struct job_plane *plane)
+{
+    static const char *const KEYS[] = {"hole", "density", "depth"};
+    for (size_t i = 0; i < 3; i++) {
+        const struct sheet_entry *e = sheet_fields_find(p, section, KEYS[i]);
+        if (e && plane->work != WORK_REMOVE)
+            sheet_fields_wrong(p, e, "only with 'work = remove'");
+    }
+    const struct sheet_entry *hole = sheet_fields_find(p, section, "hole");
+    const struct sheet_entry *density = sheet_fields_find(p, section, "density");
+    const struct sheet_entry *depth = sheet_fields_find(p, section, "depth");
+    plane->hole_m = sheet_fields_measure(p, section, "hole", DIMENSION_LENGTH, &DRILL);
+    plane->density = sheet_fields_measure(p, section, "density", DIMENSION_DENSITY, &DENSITY);
+    plane->depth_m = sheet_fields_measure(p, section, "depth", DIMENSION_LENGTH, &DRILL);
+    if (hole && !density)
+        sheet_fields_wrong(p, hole, "needs the key 'density', too");
+    if (!hole && density)
+        sheet_fields_wrong(p, density, "needs the key 'hole', too");
+    if (!hole && depth)
+        sheet_fields_wrong(p, depth, "needs the keys 'hole' and 'density', too");
+}
+
 static void read_work(struct sheet_parse *p, size_t section, struct job_plane *plane)
 {
     static const char *const WORKS[] = {"add", "remove", NULL};
-    plane->work = WORK_ADD;
-    if (sheet_fields_choice(p, section, "work", WORKS, 0) == 1)
-        sheet_fields_wrong(p, sheet_fields_find(p, section, "work"), "not supported yet");
+    plane->work =
+        sheet_fields_choice(p, section, "work", WORKS, 0) == 1 ? WORK_REMOVE : WORK_ADD;
+    read_drill(p, section, plane);
 }
 
 static void read_plane(struct sheet_parse *p, size_t section, struct job_plane *plane)

@@ -114,7 +114,8 @@ static const char *wrong_unit(enum dimension dimension)
         [DIMENSION_VOLTAGE] = "unit does not fit, wanted V or mV",
         [DIMENSION_ANGLE] = "unit does not fit, wanted deg",
         [DIMENSION_PERCENT] = "unit does not fit, wanted %",
-        [DIMENSION_VIBRATION] = "unit does not fit, wanted g, m/s2, mm/s, in/s, um or mil"};
+        [DIMENSION_VIBRATION] = "unit does not fit, wanted g, m/s2, mm/s, in/s, um or mil",
+        [DIMENSION_DENSITY] = "unit does not fit, wanted kg/m3, kg/dm3, g/cm3 or lb/in3"};
     return CAUSES[dimension];
 }
 
@@ -127,6 +128,8 @@ static const char *no_unit(enum dimension dimension)
                                          [DIMENSION_VOLTAGE] = "no unit, wanted V or mV",
                                          [DIMENSION_ANGLE] = "no unit, wanted deg",
                                          [DIMENSION_PERCENT] = "no unit, wanted %",
+                                         [DIMENSION_DENSITY] =
+                                             "no unit, wanted kg/m3, kg/dm3, g/cm3 or lb/in3",
                                          [DIMENSION_VIBRATION] =
                                              "no unit, wanted g, m/s2, mm/s, in/s, um or mil"};
     return CAUSES[dimension];

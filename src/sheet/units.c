@@ -24,6 +24,8 @@ static const struct unit UNITS[] = {
     {DIMENSION_RATE, "Hz", 1},      {DIMENSION_RATE, "kHz", 1e3},
     {DIMENSION_VOLTAGE, "V", 1},    {DIMENSION_VOLTAGE, "mV", 1e-3},
     {DIMENSION_ANGLE, "deg", 1},    {DIMENSION_PERCENT, "%", 1},
+    {DIMENSION_DENSITY, "kg/m3", 1},    {DIMENSION_DENSITY, "g/cm3", 1e3},
+    {DIMENSION_DENSITY, "kg/dm3", 1e3}, {DIMENSION_DENSITY, "lb/in3", POUND / (INCH * INCH * INCH)},
 };
 
 struct vibration {

@@ -19,7 +19,8 @@ enum dimension {
     DIMENSION_VOLTAGE,   /* V: V mV */
     DIMENSION_ANGLE,     /* deg */
     DIMENSION_PERCENT,   /* %, kept as the number before the sign */
-    DIMENSION_VIBRATION  /* see units_vibration */
+    DIMENSION_VIBRATION, /* see units_vibration */
+    DIMENSION_DENSITY    /* kg/m3: kg/m3 g/cm3 kg/dm3 lb/in3 */
 };
 
 /* SI value (see above) of one `unit` of that dimension, or 0 if there is no such unit. */

@@ -56,6 +56,8 @@ void job_release(struct job *job)
     free(job->planes);
     free(job->runs);
     free(job->aim.targets);
+    free(job->aim.importances);
+    free(job->responses);
     free(job->limits);
     job_init(job);
 }

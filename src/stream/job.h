@@ -24,7 +24,7 @@ enum phase_sign { PHASE_NONE, PHASE_LAG, PHASE_LEAD };           /* hand reading
 enum unit_system { UNITS_METRIC, UNITS_US };
 enum turning { TURNING_NONE, TURNING_CLOCKWISE, TURNING_COUNTER_CLOCKWISE };
 enum support { SUPPORT_NONE, SUPPORT_BETWEEN_BEARINGS, SUPPORT_OVERHUNG };
-enum minimise { MINIMISE_TOTAL, MINIMISE_WORST };
+enum minimise { MINIMISE_TOTAL, MINIMISE_WORST, MINIMISE_STATIC_FIRST };
 enum tolerance { TOLERANCE_NONE, TOLERANCE_GRADE, TOLERANCE_API_4WN };
 enum work { WORK_ADD, WORK_REMOVE };
 
@@ -66,6 +66,7 @@ struct job_plane {
     int pieces;               /* at most, on this plane */
     double most, most_in_all; /* kg; INFINITY: no limit. At one position; on the plane */
     enum work work;
+    double hole_m, density, depth_m; /* of a drill: diameter, kg/m3, deepest hole; not > 0: none */
 };
 
 struct job_weight {
@@ -103,6 +104,19 @@ struct job_target {
     bool in_aim;               /* false: the aim names other sensors only (see job_aim.named) */
 };
 
+struct job_importance {
+    char condition[NAME_ROOM];
+    double factor;             /* its vibration counts as so many times as large in the aim, > 0 */
+};
+
+struct job_response {          /* a stored `response`, of a sensor and plane of this job */
+    char condition[NAME_ROOM];
+    size_t sensor, plane;
+    double complex vector;     /* SI peak per kg at the plane's radius, argument is lag */
+    double cov[3];             /* var re, cov, var im */
+    double speed_rpm;          /* NaN: not known */
+};
+
 struct job_aim {
     struct job_target *targets; /* owned, one per sensor */
     bool named;                 /* some `target SENSOR` stands in the sheet without a `target` for all */
@@ -111,6 +125,10 @@ struct job_aim {
     double repeatability;       /* fraction of the as-found amplitude; default 0.03 */
     bool repeatability_given;
     enum tolerance tolerance;
+    int zone_group;             /* of ISO 20816-3: 1 or 2; 0: no zones asked for */
+    bool zone_flexible;         /* its support */
+    struct job_importance *importances; /* owned; conditions without one count as 1 */
+    size_t importance_count;
 };
 
 struct job_limit {
@@ -146,6 +164,7 @@ struct job {
     struct job_run *runs;       size_t run_count;
     struct job_aim aim;
     struct job_limit *limits;   size_t limit_count;
+    struct job_response *responses; size_t response_count; /* owned; stored ones that the sheet names */
 };
 
 void job_init(struct job *job);    /* all absent; NaN where the comments say so */

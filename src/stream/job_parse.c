@@ -168,6 +168,9 @@ static void parse_planes(struct job *job, struct fields *outer)
         p->most = limit_or_infinity(&f, "most");
         p->most_in_all = limit_or_infinity(&f, "most_in_all");
         p->work = (enum work)choice(&f, "work", works, 2);
+        p->hole_m = fields_real(&f, "hole_m");
+        p->density = fields_real(&f, "density");
+        p->depth_m = fields_real(&f, "depth_m");
         keep(outer, &f);
     }
 }
@@ -260,9 +263,35 @@ static void parse_targets(struct job *job, struct fields *f)
     }
 }
 
+static void parse_zones(struct job *job, struct fields *outer)
+{
+    const json_t *json = fields_object(outer, "zones");
+    if (!json)
+        return;
+    struct fields f = fields_of(json);
+    job->aim.zone_group = (int)fields_integer(&f, "group", 0);
+    job->aim.zone_flexible = fields_boolean(&f, "flexible", false);
+    if (job->aim.zone_group < 1 || job->aim.zone_group > 2)
+        fields_fail(&f, "a group of zones that this version does not know");
+    keep(outer, &f);
+}
+
+static void parse_importances(struct job *job, struct fields *outer)
+{
+    struct job_aim *aim = &job->aim;
+    const json_t *array = fields_array(outer, "importances");
+    aim->importances = new_items(outer, array, sizeof *aim->importances, &aim->importance_count);
+    for (size_t i = 0; i < aim->importance_count; i++) {
+        struct fields f = fields_of(json_array_get(array, i));
+        fields_name(&f, "condition", aim->importances[i].condition);
+        aim->importances[i].factor = fields_need_real(&f, "factor");
+        keep(outer, &f);
+    }
+}
+
 static void parse_aim(struct job *job, struct fields *outer)
 {
-    static const char *const minimise[] = {"total", "worst"};
+    static const char *const minimise[] = {"total", "worst", "static first"};
     static const char *const tolerance[] = {NULL, "grade", "API 4W/N"};
     const json_t *json = fields_object(outer, "aim");
     if (!json) {
@@ -272,7 +301,7 @@ static void parse_aim(struct job *job, struct fields *outer)
     struct fields f = fields_of(json);
     parse_targets(job, &f);
     job->aim.named = fields_boolean(&f, "named", false);
-    job->aim.minimise = (enum minimise)choice(&f, "minimise", minimise, 2);
+    job->aim.minimise = (enum minimise)choice(&f, "minimise", minimise, 3);
     const char *mounted = fields_text(&f, "mounted");
     job->aim.mounted = mounted[0] ? job_find_run(job, mounted) : -1;
     if (mounted[0] && job->aim.mounted < 0)
@@ -280,7 +309,29 @@ static void parse_aim(struct job *job, struct fields *outer)
     job->aim.repeatability = fields_need_real(&f, "repeatability");
     job->aim.repeatability_given = fields_boolean(&f, "repeatability_given", false);
     job->aim.tolerance = (enum tolerance)choice(&f, "tolerance", tolerance, 3);
+    parse_zones(job, &f);
+    parse_importances(job, &f);
     keep(outer, &f);
+}
+
+static void parse_responses(struct job *job, struct fields *outer)
+{
+    const json_t *array = fields_array(outer, "responses");
+    job->responses = new_items(outer, array, sizeof *job->responses, &job->response_count);
+    for (size_t i = 0; i < job->response_count; i++) {
+        struct job_response *r = &job->responses[i];
+        struct fields f = fields_of(json_array_get(array, i));
+        fields_name(&f, "condition", r->condition);
+        int sensor = fields_sensor(&f, "sensor", job), plane = fields_plane(&f, "plane", job);
+        r->sensor = sensor < 0 ? 0 : (size_t)sensor;
+        r->plane = plane < 0 ? 0 : (size_t)plane;
+        r->vector = fields_vector(&f, "vector");
+        fields_reals(&f, "cov", r->cov, 3);
+        r->speed_rpm = fields_real(&f, "speed_rpm");
+        keep(outer, &f);
+    }
+    if (outer->why) /* none of a sensor or plane that does not exist survives */
+        job->response_count = 0;
 }
 
 static void parse_limits(struct job *job, struct fields *outer)
@@ -318,6 +369,7 @@ int job_parse(struct job *job, const json_t *record, const char **why)
     parse_runs(job, &f);
     parse_aim(job, &f);
     parse_limits(job, &f);
+    parse_responses(job, &f);
     if (fields_done(&f, why) < 0)
         return !strcmp(*why, "no memory left") ? -2 : -1;
     return 0;

@@ -11,6 +11,7 @@ static const char *const phase_names[] = {NULL, "lag", "lead"};
 static const char *const unit_names[] = {"metric", "US"};
 static const char *const turning_names[] = {NULL, "clockwise", "counter-clockwise"};
 static const char *const support_names[] = {NULL, "between bearings", "overhung"};
+static const char *const minimise_names[] = {"total", "worst", "static first"};
 static const char *const tolerance_names[] = {NULL, "grade", "API 4W/N"};
 
 static const char *text_or_null(const char *text)
@@ -111,6 +112,11 @@ static void print_planes(const struct job *job, struct line *l)
         line_real(l, "most", p->most);
         line_real(l, "most_in_all", p->most_in_all);
         line_text(l, "work", p->work == WORK_REMOVE ? "remove" : "add");
+        if (p->hole_m > 0) {
+            line_real(l, "hole_m", p->hole_m);
+            line_real(l, "density", p->density);
+            line_real(l, "depth_m", p->depth_m);
+        }
         line_close(l, '}');
     }
     line_close(l, ']');
@@ -186,12 +192,48 @@ static void print_aim(const struct job *job, struct line *l)
     }
     line_close(l, ']');
     line_boolean(l, "named", a->named);
-    line_text(l, "minimise", a->minimise == MINIMISE_WORST ? "worst" : "total");
+    line_text(l, "minimise", minimise_names[a->minimise]);
     line_text(l, "mounted", a->mounted >= 0 ? job->runs[a->mounted].name : NULL);
     line_real(l, "repeatability", a->repeatability);
     line_boolean(l, "repeatability_given", a->repeatability_given);
     line_text(l, "tolerance", tolerance_names[a->tolerance]);
+    if (a->zone_group > 0) {
+        line_open(l, "zones", '{');
+        line_integer(l, "group", a->zone_group);
+        line_boolean(l, "flexible", a->zone_flexible);
+        line_close(l, '}');
+    }
+    if (a->importance_count > 0) {
+        line_open(l, "importances", '[');
+        for (size_t i = 0; i < a->importance_count; i++) {
+            line_open(l, NULL, '{');
+            line_text(l, "condition", a->importances[i].condition);
+            line_real(l, "factor", a->importances[i].factor);
+            line_close(l, '}');
+        }
+        line_close(l, ']');
+    }
     line_close(l, '}');
+}
+
+/* Stored responses, as the sheet's file has them; nothing where it names none. */
+static void print_responses(const struct job *job, struct line *l)
+{
+    if (job->response_count == 0)
+        return;
+    line_open(l, "responses", '[');
+    for (size_t i = 0; i < job->response_count; i++) {
+        const struct job_response *r = &job->responses[i];
+        line_open(l, NULL, '{');
+        line_text(l, "condition", r->condition);
+        line_text(l, "sensor", job->sensors[r->sensor].name);
+        line_text(l, "plane", job->planes[r->plane].name);
+        line_vector(l, "vector", r->vector);
+        line_covariance(l, "cov", r->cov);
+        line_real(l, "speed_rpm", r->speed_rpm);
+        line_close(l, '}');
+    }
+    line_close(l, ']');
 }
 
 static void print_limits(const struct job *job, struct line *l)
@@ -226,6 +268,7 @@ int job_print(const struct job *job, struct buffer *out)
     print_runs(job, &l);
     print_aim(job, &l);
     print_limits(job, &l);
+    print_responses(job, &l);
     line_end(&l);
     if (!l.text.failed)
         buffer_add(out, l.text.bytes, l.text.length);

@@ -211,6 +211,43 @@ static void test_aim(void **state)
     sheet_release(&sheet);
 }
 
+/* Steel of 7850 kg/m3 (any handbook), 12 mm drill. */
+static void test_drill(void **state)
+{
+    (void)state;
+    struct sheet sheet = swapped(SHEET_DESK_FULL, "work = add",
+                                 "work = remove\nhole = 12 mm\ndensity = 7.85 g/cm3\ndepth = 1 in");
+    const struct job_plane *plane = &sheet.job.planes[0];
+    assert_int_equal(plane->work, WORK_REMOVE);
+    near(plane->hole_m, 0.012, 1e-15);
+    near(plane->density, 7850, 1e-9);
+    near(plane->depth_m, 0.0254, 1e-15);
+    assert_false(sheet.job.planes[1].hole_m > 0);
+    sheet_release(&sheet);
+    sheet = swapped(SHEET_DESK_FULL, "work = add", "work = remove");
+    assert_int_equal(sheet.job.planes[0].work, WORK_REMOVE);
+    assert_false(sheet.job.planes[0].hole_m > 0);
+    sheet_release(&sheet);
+}
+
+static void test_more_aims(void **state)
+{
+    (void)state;
+    struct sheet sheet =
+        swapped(SHEET_DESK_FULL, "minimise = worst",
+                "minimise = static first\nzones = group 2 flexible\nimportance hot = 2.5\n"
+                "importance service @ 900 rpm = 0.5");
+    const struct job_aim *aim = &sheet.job.aim;
+    assert_int_equal(aim->minimise, MINIMISE_STATIC_FIRST);
+    assert_int_equal(aim->zone_group, 2);
+    assert_true(aim->zone_flexible);
+    assert_int_equal(aim->importance_count, 2);
+    assert_string_equal(aim->importances[0].condition, "hot");
+    near(aim->importances[0].factor, 2.5, 0);
+    assert_string_equal(aim->importances[1].condition, "service @ 900 rpm");
+    sheet_release(&sheet);
+}
+
 static void test_limits(void **state)
 {
     (void)state;
@@ -364,6 +401,7 @@ int main(void)
         cmocka_unit_test(test_hand),    cmocka_unit_test(test_aim),
         cmocka_unit_test(test_limits),  cmocka_unit_test(test_defaults),
         cmocka_unit_test(test_senses),  cmocka_unit_test(test_lists),
-        cmocka_unit_test(test_audit),   cmocka_unit_test(test_hand_only)};
+        cmocka_unit_test(test_audit),   cmocka_unit_test(test_hand_only),
+        cmocka_unit_test(test_drill),   cmocka_unit_test(test_more_aims)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
