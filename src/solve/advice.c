@@ -281,6 +281,25 @@ bool advice_is_done(const struct answer *a, int run)
     return true;
 }
 
+bool advice_is_final(const struct advice_finding *finding)
+{
+    return !strcmp(finding->check, "conditioning") || !strcmp(finding->check, "correction-force") ||
+           !strcmp(finding->check, "correction");
+}
+
+void advice_no_correction(const struct advice_next *next, struct advice_finding *f)
+{
+    *f = (struct advice_finding){.check = "correction",
+                                 .unit = "",
+                                 .basis = "",
+                                 .verdict = ADVICE_REFUSE,
+                                 .run = -1,
+                                 .sensor = -1,
+                                 .value = NAN,
+                                 .limit = NAN};
+    snprintf(f->text, sizeof f->text, "%s", next->reason);
+}
+
 /* ---- steps ---- */
 
 /* "'wheel' about 60 g (58 N)" for a plane; without a size just its name. */

@@ -55,6 +55,12 @@ int advice_corrected_run(const struct model *model) __attribute__((warn_unused_r
  * meets the tolerance (needs outlook_fill with nothing placed). */
 bool advice_is_done(const struct answer *answer, int run);
 
+/* True for a refusal that by itself says why there is no correction. */
+bool advice_is_final(const struct advice_finding *finding);
+
+/* The refusal `correction`: why no correction exists, out of the reason of the next step. */
+void advice_no_correction(const struct advice_next *next, struct advice_finding *finding);
+
 /* The next step in each case. */
 void advice_trial_step(const struct model *model, struct advice_next *next);
 void advice_repeat_step(const struct model *model, const struct ruling *ruling,

@@ -9,7 +9,7 @@
 #include "solve/place_branch.h"
 #include "solve/place_setup.h"
 
-#define NODES 8000000L /* about 4 s on one core of 2020 */
+#define NODES 6000000L /* about 3 s on one core of 2020: bench_place; 10 s on one that is shared by three */
 #define PROVEN 1e-9     /* of `nothing`: place.h */
 
 /* What was best with at most so many pieces a plane. */
@@ -159,9 +159,9 @@ static int choose(const struct place_problem *problem, const struct place_hunt *
     return PLACE_OK;
 }
 
-/* Level k may use half of the nodes that are left, the last one all of them. */
+/* Level k may use half of the nodes that are left, the last one all of them. *cut: one ran out. */
 static int hunt_levels(const struct place_problem *problem, struct place_hunt *hunt,
-                       struct level *levels, int most)
+                       struct level *levels, int most, bool *cut)
 {
     long left = problem->nodes > 0 ? problem->nodes : NODES;
     if (level_copy(&levels[0], hunt) != 0) {
@@ -174,6 +174,7 @@ static int hunt_levels(const struct place_problem *problem, struct place_hunt *h
             (hunt->sites > 0 && place_branch(hunt) != 0) || level_copy(&levels[k], hunt) != 0) {
             return -1;
         }
+        *cut = *cut || hunt->nodes <= 0;
         left -= share - (hunt->nodes > 0 ? hunt->nodes : 0);
     }
     return 0;
@@ -194,7 +195,7 @@ int place_search(const struct place_problem *problem, struct place_result *resul
             most = pieces > most ? pieces : most;
         }
         hunt.lost = INFINITY;
-        if (hunt_levels(problem, &hunt, levels, most) == 0) {
+        if (hunt_levels(problem, &hunt, levels, most, &result->cut) == 0) {
             code = choose(problem, &hunt, levels, most, result);
         }
         result->nothing = hunt.norm;

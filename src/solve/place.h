@@ -77,6 +77,8 @@ struct place_result {
     double of_all;              /* J of the best of all, whatever its number of pieces */
     double bound;               /* proven lower bound of J over all allowed placements */
     double gap;                 /* of_all - bound; 0: proven (to 1e-9 of `nothing`) */
+    bool cut;                   /* the node limit ended the search for some k: that no fewer pieces would
+                                   do, and the next best, are then not proven */
 };
 
 enum place_error { PLACE_OK = 0, PLACE_NO_MEMORY = -1, PLACE_BAD_PROBLEM = -2 };

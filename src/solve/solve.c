@@ -32,6 +32,7 @@ struct solve {
     size_t count, room;
     struct ruled *ruled; /* owned, runs x sensors */
     struct line line;
+    bool said;  /* a refusal of ours says already why there is no correction */
     int status; /* the exit code that the answer calls for */
 };
 
@@ -154,6 +155,7 @@ static int write_responses(struct solve *s, const struct model *m)
 static int write_finding(struct solve *s, const struct advice_finding *f)
 {
     static const enum verdict verdicts[] = {VERDICT_OK, VERDICT_CAUTION, VERDICT_REFUSE};
+    s->said = s->said || (f->verdict == ADVICE_REFUSE && advice_is_final(f));
     struct finding_record r = {.stage = "solve",
                                .verdict = verdicts[f->verdict],
                                .sensor = f->sensor,
@@ -310,6 +312,13 @@ static int write_next(struct solve *s, const struct advice_next *next, const str
                       int status)
 {
     struct next_record r;
+    if (status == STATUS_UNSOLVED && !s->said) {
+        struct advice_finding f;
+        advice_no_correction(next, &f);
+        int written = write_finding(s, &f);
+        if (written != STATUS_DONE)
+            return written;
+    }
     snprintf(r.step, sizeof r.step, "%s", next->step);
     snprintf(r.text, sizeof r.text, "%s", next->text);
     next_begin(&r, &s->line);
