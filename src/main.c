@@ -63,8 +63,7 @@ static int run_command(const struct command *command, int argc, char **argv)
 {
     message_stage(command->name);
     int status = command->run(argc, argv);
-    int flushed = finish_output();
-    return status == STATUS_DONE ? flushed : status;
+    return status == STATUS_DONE ? finish_output() : status; /* a failure has said its line */
 }
 
 static int help(int argc, char **argv)

@@ -282,6 +282,7 @@ void tacho_print(const struct tacho_record *r, struct line *line)
     line_real(line, "jitter_deg", r->jitter_deg);
     line_real(line, "speed_rpm", r->speed_rpm);
     line_boolean(line, "reference", r->reference);
+    line_boolean(line, "pulses", r->pulses);
     line_real(line, "scatter_rpm", r->scatter_rpm);
     line_end(line);
 }
@@ -297,6 +298,7 @@ int tacho_parse(struct tacho_record *r, const json_t *json, const char **why)
     r->jitter_deg = fields_real(&f, "jitter_deg");
     r->speed_rpm = fields_real(&f, "speed_rpm");
     r->reference = fields_boolean(&f, "reference", true);
+    r->pulses = fields_boolean(&f, "pulses", true);
     r->scatter_rpm = fields_real(&f, "scatter_rpm");
     return fields_done(&f, why);
 }

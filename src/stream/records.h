@@ -90,6 +90,7 @@ struct tacho_record {
     long marks, missed, extra; /* marks used; marks that had to be put in; pulses set aside */
     double jitter_deg;         /* standard deviation of marks about the smooth shaft angle */
     double speed_rpm;          /* mean over the run */
+    bool pulses;               /* the signal has pulses; false: it is spread as vibration is */
     bool reference;            /* phase may be read: one mark a turn, or one that can be told apart */
     double scatter_rpm;        /* standard deviation of turn speeds about the mean; slow and fast */
 };

@@ -236,7 +236,8 @@ static int print_tacho(const struct recording *rec, struct stream *stream, struc
                                   .jitter_deg = shaft_jitter(&tracker->shaft),
                                   .speed_rpm = tracker_speed(tracker),
                                   .scatter_rpm = tracker_scatter(tracker),
-                                  .reference = tracker_reference(tracker)};
+                                  .reference = tracker_reference(tracker),
+                                  .pulses = tracker_pulsed(tracker)};
 
     strcpy(record.run, rec->run);
     tacho_print(&record, line);

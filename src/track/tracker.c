@@ -31,6 +31,7 @@ int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
     tracker->level_frames = fmin(tracker->level_frames, (double)tracker->most / 2);
     pulse_init(&tracker->finder, set_up->edge, set_up->level);
     marks_init(&tracker->marks, set_up->marks);
+    shape_init(&tracker->shape);
     shaft_init(&tracker->shaft);
     window_init(&tracker->windows, tracker->sensors);
     tracker->planes = calloc(columns, sizeof *tracker->planes);
@@ -363,6 +364,9 @@ static int chunk(struct tracker *tracker, size_t n, bool last)
         channel_add(&tracker->channels[c], x, n);
         tracker->planes[c] = x;
     }
+    if (tracker->tacho >= 0) {
+        shape_add(&tracker->shape, tracker->planes[tracker->tacho], n);
+    }
     channel_pairs_add(&tracker->pairs, tracker->planes, n);
     tracker->done += n;
     return advance(tracker, last);
@@ -426,12 +430,18 @@ bool tracker_regular(const struct tracker *tracker)
 {
     double jitter = shaft_jitter(&tracker->shaft);
 
-    return tracker->windows.count > 0 && (isnan(jitter) || jitter < JITTER_MOST);
+    return tracker->windows.count > 0 && (isnan(jitter) || jitter < JITTER_MOST) &&
+           tracker_pulsed(tracker);
 }
 
 bool tracker_reference(const struct tracker *tracker)
 {
     return tracker_regular(tracker) && tracker->marks.reference;
+}
+
+bool tracker_pulsed(const struct tracker *tracker)
+{
+    return shape_pulsed(&tracker->shape);
 }
 
 double tracker_speed(const struct tracker *tracker)

@@ -16,6 +16,7 @@
 #include "track/marks.h"
 #include "track/pulse.h"
 #include "track/shaft.h"
+#include "track/shape.h"
 #include "track/spectrum.h"
 #include "track/window.h"
 
@@ -55,6 +56,7 @@ struct tracker {
     struct spectrum spectrum;
     struct channel *channels; /* owned, per column */
     struct channel_pairs pairs;
+    struct shape shape;       /* of the tacho */
     float *offset;            /* owned, per column: a rough mean that is taken off */
     struct vector_sums *sums; /* owned scratch: 2 * sensors */
     struct vector_weights weights;
@@ -79,6 +81,9 @@ bool tracker_regular(const struct tracker *tracker);
 
 /* True where phase may be read, too: a mark is the same place on the shaft every time. */
 bool tracker_reference(const struct tracker *tracker);
+
+/* Whether the tacho gives pulses at all, rather than vibration; see shape.h. */
+bool tracker_pulsed(const struct tracker *tracker);
 
 double tracker_speed(const struct tracker *tracker);   /* mean, rpm; NaN: unknown */
 double tracker_scatter(const struct tracker *tracker); /* standard deviation of turn speeds, rpm */

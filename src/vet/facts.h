@@ -44,6 +44,7 @@ struct vet_run {
     char (*hashes)[65]; /* owned: SHA-256 of its files */
     size_t hash_count;
     bool has_tacho, reference;
+    bool pulses;        /* of the tacho; false: its signal looks like vibration */
     long marks, missed, extra;
     struct vet_reading *readings; /* owned, one per sensor */
     struct vet_channel *channels; /* owned, one per sensor */

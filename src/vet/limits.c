@@ -43,7 +43,7 @@ static const struct check_row defaults[CHECK_COUNT] = {
     [CHECK_TACHO] = {"tacho", "%", 1, 25, +1, false, PRACTICE,
                      "check the tacho's aim, its tape and the trigger level"},
     [CHECK_PHASE_REFERENCE] = {"phase-reference", "", NAN, 0, +1, false, PRACTICE,
-                               "give the tacho one mark that can be told apart"},
+                               "check the tacho's channel, and give it one mark that can be told apart"},
     [CHECK_REPEAT] = {"repeat", "%", 10, 30, +1, false, PRACTICE,
                       "find what changed between the runs, and repeat both"},
     [CHECK_TRIAL_EFFECT] = {"trial-effect", "s.e.", 30, 5, -1, false, PRACTICE,

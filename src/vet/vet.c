@@ -173,6 +173,7 @@ static int add_tacho(struct vet *v, const struct record *record)
         return foreign(record, r.run);
     run->has_tacho = true;
     run->reference = r.reference;
+    run->pulses = r.pulses;
     run->marks = r.marks;
     run->missed = r.missed;
     run->extra = r.extra;

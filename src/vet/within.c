@@ -58,12 +58,21 @@ static double speed_of(const struct vet_run *run, const struct job *job)
     return NAN;
 }
 
+/* A recording that gave no reading at all: its tacho is to blame, whatever else there is to say. */
+static bool without_turns(const struct vet_run *run, const struct job *job)
+{
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (run->readings[i].present)
+            return false;
+    return run->has_tacho && !run->hand && !run->unreadable;
+}
+
 static void check_length(struct vet_run *run, int position, const struct job *job,
                          struct findings *findings)
 {
     long turns = 0;
 
-    if (run->hand || run->unreadable)
+    if (run->hand || run->unreadable || without_turns(run, job))
         return;
     for (size_t i = 0; i < job->sensor_count; i++)
         if (run->readings[i].present && run->readings[i].turns > turns)
@@ -160,6 +169,15 @@ static void check_reference(struct vet_run *run, int position, const struct job 
     for (size_t i = 0; i < job->sensor_count; i++) {
         present += run->readings[i].present;
         phase += run->readings[i].present && run->readings[i].has_phase;
+    }
+    if (without_turns(run, job)) {
+        if (findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 1,
+                         "there is no usable tacho: %s",
+                         !run->pulses       ? "its channel looks like vibration, not like pulses"
+                         : run->marks == 0 ? "its channel gave no mark"
+                                           : "too few marks follow one rhythm") == RULING_REFUSE)
+            within_refuse(run, job);
+        return;
     }
     if (present > 0 && phase == present)
         findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 0, "%s",
