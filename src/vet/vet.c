@@ -395,7 +395,13 @@ static void say_goes_on(const struct vet *v)
 static int say_lost(const struct vet *v, const struct vet_run *run, size_t sensor)
 {
     int reason = run->readings[sensor].reason;
+    const struct finding *f = &v->first;
 
+    if (v->refusals > 0 && reason >= 0 && f->run >= 0 && &v->runs.items[f->run] == run &&
+        (int)f->check == reason) { /* the finding itself says it best */
+        message("refused, %s: '%s' (%s)", f->text, run->name, v->limits.rows[reason].name);
+        return STATUS_REFUSED;
+    }
     message("readings are not fit to balance on: '%s' (sensor '%s': %s)", run->name,
             v->stream.job.sensors[sensor].name,
             reason >= 0                     ? v->limits.rows[reason].name

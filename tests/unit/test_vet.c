@@ -156,8 +156,13 @@ static void no_turns_at_all(void **state)
     (void)state;
     vet_desk_set();
     desk.readings[1][0].present = desk.readings[1][1].present = false;
+    desk.items[1].has_tacho = false;
     vet_desk_within(1);
     assert_int_equal(vet_desk_ruled(CHECK_LENGTH, 1, -1), RULING_REFUSE);
+    desk.items[1].has_tacho = true; /* then it is the tacho that is to blame, not the length */
+    vet_desk_within(1);
+    assert_int_equal(vet_desk_ruled(CHECK_LENGTH, 1, -1), -1);
+    assert_int_equal(vet_desk_ruled(CHECK_PHASE_REFERENCE, 1, -1), RULING_REFUSE);
     desk.items[1].hand = true; /* an instrument's readings have no turns to count */
     vet_desk_within(1);
     assert_int_equal(vet_desk_ruled(CHECK_LENGTH, 1, -1), -1);
