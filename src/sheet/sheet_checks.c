@@ -111,13 +111,20 @@ static const char *channel_of(const struct sheet_parse *p, size_t run, size_t se
     return p->sheet->runs[run].channels ? p->sheet->runs[run].channels[sensor] : "";
 }
 
+/* Two sensors on one channel: the one further down in the sheet is told. */
+static void tell_same(struct sheet_parse *p, size_t run, size_t sensor, size_t other)
+{
+    int line = channel_line(p, run, sensor), earlier = channel_line(p, run, other);
+    if (earlier < line || (earlier == line && other < sensor))
+        sheet_errors_add(&p->errors, line, "same channel as sensor '%.60s': '%.60s'",
+                         p->sheet->job.sensors[other].name, channel_of(p, run, sensor));
+}
+
 static void check_channel(struct sheet_parse *p, size_t run, size_t sensor)
 {
     const struct job *job = &p->sheet->job;
     const char *channel = channel_of(p, run, sensor);
-    int line = channel_line(p, run, sensor);
-    bool off = run < job->run_count && job->runs[run].without && job->runs[run].without[sensor];
-    if (off)
+    if (run < job->run_count && job->runs[run].without && job->runs[run].without[sensor])
         return;
     if (!channel[0]) {
         if (!sheet_fields_find(p, p->sensor_sections[sensor], "channel"))
@@ -125,15 +132,11 @@ static void check_channel(struct sheet_parse *p, size_t run, size_t sensor)
         return;
     }
     if (job->has_tacho && !strcmp(channel, job->tacho_channel))
-        sheet_errors_add(&p->errors, line, "same channel as the tacho: '%.60s'", channel);
-    for (size_t i = 0; i < job->sensor_count; i++) {
-        if (i == sensor || strcmp(channel, channel_of(p, run, i)))
-            continue;
-        int other = channel_line(p, run, i);
-        if (other < line || (other == line && i < sensor))
-            sheet_errors_add(&p->errors, line, "same channel as sensor '%.60s': '%.60s'",
-                             job->sensors[i].name, channel);
-    }
+        sheet_errors_add(&p->errors, channel_line(p, run, sensor),
+                         "same channel as the tacho: '%.60s'", channel);
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (i != sensor && !strcmp(channel, channel_of(p, run, i)))
+            tell_same(p, run, sensor, i);
 }
 
 static void check_channels(struct sheet_parse *p)

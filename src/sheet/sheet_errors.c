@@ -28,6 +28,12 @@ static bool make_room(struct sheet_errors *errors)
 
 void sheet_errors_add(struct sheet_errors *errors, int line, const char *format, ...)
 {
+    if (errors->count == SHEET_ERRORS_MOST)
+        return;
+    if (errors->count == SHEET_ERRORS_MOST - 1) {
+        line = 0;
+        format = "too many errors, of which these came first";
+    }
     char text[600]; /* a cause and one quoted text of at most 4 x 100 bytes */
     va_list arguments;
     va_start(arguments, format);

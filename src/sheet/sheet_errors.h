@@ -7,6 +7,9 @@
 
 #include "base/buffer.h"
 
+/* No sheet has so many mistakes: what has is something else, and not worth more. */
+#define SHEET_ERRORS_MOST 1000
+
 struct sheet_error {
     int line;   /* 0: the sheet as a whole */
     char *text; /* owned: "cause: 'name'" */
@@ -18,7 +21,8 @@ struct sheet_errors {
     bool no_memory; /* an allocation failed anywhere while reading the sheet */
 };
 
-/* Adds one; the same text on the same line only once. Where memory is out it sets no_memory. */
+/* Adds one; the same text on the same line only once. In place of the
+ * one at SHEET_ERRORS_MOST it says that there are too many; later ones are dropped. Where memory is out it sets no_memory. */
 void sheet_errors_add(struct sheet_errors *errors, int line, const char *format, ...)
     __attribute__((format(printf, 3, 4)));
 

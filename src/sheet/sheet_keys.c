@@ -30,17 +30,10 @@ static const struct sheet_key SENSOR[] = {{"channel", 0, NULL},
                                           {"scale", 0, NULL},
                                           {"show", 0, NULL},
                                           {"at", 0, NULL}};
-static const struct sheet_key PLANE[] = {{"radius", 0, NULL},
-                                         {"positions", 0, NULL},
-                                         {"stock", 0, NULL},
-                                         {"pieces", 0, NULL},
-                                         {"most", 0, NULL},
-                                         {"most in all", 0, NULL},
-                                         {"taken", 0, NULL},
-                                         {"work", 0, NULL},
-                                         {"hole", 0, NULL},
-                                         {"density", 0, NULL},
-                                         {"depth", 0, NULL}};
+static const struct sheet_key PLANE[] = {
+    {"radius", 0, NULL}, {"positions", 0, NULL},   {"stock", 0, NULL}, {"pieces", 0, NULL},
+    {"most", 0, NULL},   {"most in all", 0, NULL}, {"taken", 0, NULL}, {"work", 0, NULL},
+    {"hole", 0, NULL},   {"density", 0, NULL},     {"depth", 0, NULL}};
 static const struct sheet_key RUN[] = {{"file", SHEET_KEY_AGAIN, NULL},
                                        {"when", 0, NULL},
                                        {"weight", SHEET_KEY_SUBJECT | SHEET_KEY_AGAIN, NULL},
@@ -53,12 +46,15 @@ static const struct sheet_key RUN[] = {{"file", SHEET_KEY_AGAIN, NULL},
                                        {"role", SHEET_KEY_LATER, NULL},
                                        {"speeds", SHEET_KEY_LATER, NULL},
                                        LAYOUT_KEYS};
-static const struct sheet_key AIM[] = {
-    {"target", 0, NULL},        {"target", SHEET_KEY_SUBJECT, NULL},
-    {"minimise", 0, NULL},      {"mounted", 0, NULL},
-    {"repeatability", 0, NULL}, {"responses", 0, NULL},
-    {"tolerance", 0, NULL},     {"zones", 0, NULL},
-    {"importance", SHEET_KEY_SUBJECT, NULL}};
+static const struct sheet_key AIM[] = {{"target", 0, NULL},
+                                       {"target", SHEET_KEY_SUBJECT, NULL},
+                                       {"minimise", 0, NULL},
+                                       {"mounted", 0, NULL},
+                                       {"repeatability", 0, NULL},
+                                       {"responses", 0, NULL},
+                                       {"tolerance", 0, NULL},
+                                       {"zones", 0, NULL},
+                                       {"importance", SHEET_KEY_SUBJECT, NULL}};
 /* The checks and the units of their figures. */
 static const struct sheet_key LIMITS[] = {{"readable", 0, NULL},
                                           {"same-recording", 0, NULL},

@@ -221,8 +221,7 @@ static void read_drill(struct sheet_parse *p, size_t section, struct job_plane *
 static void read_work(struct sheet_parse *p, size_t section, struct job_plane *plane)
 {
     static const char *const WORKS[] = {"add", "remove", NULL};
-    plane->work =
-        sheet_fields_choice(p, section, "work", WORKS, 0) == 1 ? WORK_REMOVE : WORK_ADD;
+    plane->work = sheet_fields_choice(p, section, "work", WORKS, 0) == 1 ? WORK_REMOVE : WORK_ADD;
     read_drill(p, section, plane);
 }
 

@@ -121,17 +121,16 @@ static const char *wrong_unit(enum dimension dimension)
 
 static const char *no_unit(enum dimension dimension)
 {
-    static const char *const CAUSES[] = {[DIMENSION_MASS] = "no unit, wanted g, kg, oz or lb",
-                                         [DIMENSION_LENGTH] = "no unit, wanted mm, cm, m or in",
-                                         [DIMENSION_SPEED] = "no unit, wanted rpm",
-                                         [DIMENSION_RATE] = "no unit, wanted Hz or kHz",
-                                         [DIMENSION_VOLTAGE] = "no unit, wanted V or mV",
-                                         [DIMENSION_ANGLE] = "no unit, wanted deg",
-                                         [DIMENSION_PERCENT] = "no unit, wanted %",
-                                         [DIMENSION_DENSITY] =
-                                             "no unit, wanted kg/m3, kg/dm3, g/cm3 or lb/in3",
-                                         [DIMENSION_VIBRATION] =
-                                             "no unit, wanted g, m/s2, mm/s, in/s, um or mil"};
+    static const char *const CAUSES[] = {
+        [DIMENSION_MASS] = "no unit, wanted g, kg, oz or lb",
+        [DIMENSION_LENGTH] = "no unit, wanted mm, cm, m or in",
+        [DIMENSION_SPEED] = "no unit, wanted rpm",
+        [DIMENSION_RATE] = "no unit, wanted Hz or kHz",
+        [DIMENSION_VOLTAGE] = "no unit, wanted V or mV",
+        [DIMENSION_ANGLE] = "no unit, wanted deg",
+        [DIMENSION_PERCENT] = "no unit, wanted %",
+        [DIMENSION_DENSITY] = "no unit, wanted kg/m3, kg/dm3, g/cm3 or lb/in3",
+        [DIMENSION_VIBRATION] = "no unit, wanted g, m/s2, mm/s, in/s, um or mil"};
     return CAUSES[dimension];
 }
 

@@ -16,14 +16,14 @@ struct unit {
 };
 
 static const struct unit UNITS[] = {
-    {DIMENSION_MASS, "g", 1e-3},    {DIMENSION_MASS, "kg", 1},
-    {DIMENSION_MASS, "mg", 1e-6},   {DIMENSION_MASS, "oz", POUND / 16},
-    {DIMENSION_MASS, "lb", POUND},  {DIMENSION_LENGTH, "mm", 1e-3},
-    {DIMENSION_LENGTH, "cm", 1e-2}, {DIMENSION_LENGTH, "m", 1},
-    {DIMENSION_LENGTH, "in", INCH}, {DIMENSION_SPEED, "rpm", 1},
-    {DIMENSION_RATE, "Hz", 1},      {DIMENSION_RATE, "kHz", 1e3},
-    {DIMENSION_VOLTAGE, "V", 1},    {DIMENSION_VOLTAGE, "mV", 1e-3},
-    {DIMENSION_ANGLE, "deg", 1},    {DIMENSION_PERCENT, "%", 1},
+    {DIMENSION_MASS, "g", 1e-3},        {DIMENSION_MASS, "kg", 1},
+    {DIMENSION_MASS, "mg", 1e-6},       {DIMENSION_MASS, "oz", POUND / 16},
+    {DIMENSION_MASS, "lb", POUND},      {DIMENSION_LENGTH, "mm", 1e-3},
+    {DIMENSION_LENGTH, "cm", 1e-2},     {DIMENSION_LENGTH, "m", 1},
+    {DIMENSION_LENGTH, "in", INCH},     {DIMENSION_SPEED, "rpm", 1},
+    {DIMENSION_RATE, "Hz", 1},          {DIMENSION_RATE, "kHz", 1e3},
+    {DIMENSION_VOLTAGE, "V", 1},        {DIMENSION_VOLTAGE, "mV", 1e-3},
+    {DIMENSION_ANGLE, "deg", 1},        {DIMENSION_PERCENT, "%", 1},
     {DIMENSION_DENSITY, "kg/m3", 1},    {DIMENSION_DENSITY, "g/cm3", 1e3},
     {DIMENSION_DENSITY, "kg/dm3", 1e3}, {DIMENSION_DENSITY, "lb/in3", POUND / (INCH * INCH * INCH)},
 };

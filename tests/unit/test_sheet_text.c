@@ -195,6 +195,25 @@ static void test_too_long(void **state)
     free(text);
 }
 
+/* A file of lines that are none ends with a bounded list, and at once. */
+static void test_too_many_errors(void **state)
+{
+    (void)state;
+    struct sheet sheet;
+    struct buffer errors = BUFFER_INIT;
+    size_t length = 400000;
+    char *text = malloc(length);
+    assert_non_null(text);
+    for (size_t i = 0; i < length; i++)
+        text[i] = "x\n"[i % 2];
+    assert_int_equal(sheet_desk_read(&sheet, text, length, false, &errors), 1000);
+    assert_non_null(strstr(errors.bytes, "fan.ini: too many errors, of which these came first\n"));
+    assert_non_null(strstr(errors.bytes, "fan.ini:999: neither a section nor 'key = value'\n"));
+    assert_null(strstr(errors.bytes, "fan.ini:1000:"));
+    buffer_release(&errors);
+    free(text);
+}
+
 static void test_no_file(void **state)
 {
     (void)state;
@@ -297,6 +316,7 @@ int main(void)
                                        cmocka_unit_test(test_junk),
                                        cmocka_unit_test(test_too_long),
                                        cmocka_unit_test(test_no_file),
+                                       cmocka_unit_test(test_too_many_errors),
                                        cmocka_unit_test(test_locale),
                                        cmocka_unit_test(test_mutants)};
     return cmocka_run_group_tests(tests, NULL, NULL);
