@@ -164,6 +164,7 @@ static void fill_from_mean(struct reading_record *r, const struct mean *mean)
     r->amplitude = cabs(mean->vector);
     memcpy(r->cov, mean->cov, sizeof r->cov);
     r->blocks = (long)mean->used;
+    r->steady = steady_unknown();
     r->steady.amplitude_pct = 100 * mean->amplitude_sd / r->amplitude;
     r->steady.phase_deg = mean->phase_sd_deg;
     r->steady.resultant = mean->resultant;
@@ -230,7 +231,8 @@ static int reading_of_spectrum(struct reading_record *r, const struct track_of *
         return 1;
     for (size_t i = 0; i < s->count; i++)
         turns += s->turns[i];
-    r->steady = (struct steady){NAN, NAN, NAN, NAN, NAN, NAN, 0, lround(turns)};
+    r->steady = steady_unknown();
+    r->steady.turns = lround(turns);
     r->blocks = (long)s->count;
     return 0;
 }
@@ -299,7 +301,7 @@ static int hand_readings(const struct job_run *run, struct stream *stream, struc
                                    .has_phase = hand->has_phase,
                                    .vector = hand->has_phase ? hand->vector : NAN,
                                    .amplitude = hand->amplitude,
-                                   .steady = {NAN, NAN, NAN, NAN, NAN, NAN, 0, 0},
+                                   .steady = steady_unknown(),
                                    .overall = {.rms = NAN}};
         memcpy(r.run, run->name, sizeof r.run);
         memcpy(r.condition, run->condition, sizeof r.condition);

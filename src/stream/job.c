@@ -1,6 +1,7 @@
 #include "stream/job.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -51,6 +52,7 @@ void job_release(struct job *job)
         free(job->runs[i].weights);
         free(job->runs[i].hand);
         free(job->runs[i].without);
+        free(job->runs[i].speeds_rpm);
     }
     free(job->sensors);
     free(job->planes);
@@ -105,6 +107,17 @@ bool job_run_is_bare(const struct job *job, size_t run)
     for (size_t p = 0; p < job->plane_count; p++)
         total = fmax(total, cabs(job_run_weight(job, run, p)));
     return total <= 1e-12 * largest; /* rounding of weights that cancel */
+}
+
+void job_speed_condition(const char *condition, double speed_rpm, char to[NAME_ROOM])
+{
+    char text[32];
+    for (int decimals = 0; decimals <= 6; decimals++) {
+        snprintf(text, sizeof text, "%.*f", decimals, speed_rpm);
+        if (fabs(strtod(text, NULL) - speed_rpm) < 1e-6)
+            break;
+    }
+    snprintf(to, NAME_ROOM, "%.*s @ %s rpm", NAME_ROOM - 1, condition, text);
 }
 
 double job_sheet_angle(const struct job *job, double angle_deg)

@@ -88,7 +88,10 @@ struct job_hand { /* a reading taken by hand */
 struct job_run {
     char name[NAME_ROOM];
     char condition[NAME_ROOM]; /* default "service" */
-    char role[NAME_ROOM];      /* "" for an ordinary run; "runout", "coast-down" later */
+    char role[NAME_ROOM];      /* "" for an ordinary run; "runout": slow roll, its 1x vectors are what the
+                                * shaft's surface shows; "coast-down" */
+    double *speeds_rpm;        /* owned: of a coast-down, the speeds that get a reading; ascending */
+    size_t speed_count;        /* 0 for every other role */
     char when[NAME_ROOM];      /* as written, "" if absent */
     struct job_weight *weights; /* owned: all that is mounted, relative to as found */
     size_t weight_count;
@@ -189,6 +192,10 @@ int job_find_run(const struct job *job, const char *name);
 
 /* True where run `run` carries no weight at all (its net equivalent weights are all zero). */
 bool job_run_is_bare(const struct job *job, size_t run);
+
+/* The condition of a coast-down's reading at one of its speeds: "<condition> @ 900 rpm", the speed as a
+ * whole number or in its shortest decimal form (to 1e-6 rpm). The sheet sees to it that it fits. */
+void job_speed_condition(const char *condition, double speed_rpm, char to[NAME_ROOM]);
 
 /* The total equivalent weight of run `run` on plane `plane`: sum of mass*exp(j*angle), kg. */
 double complex job_run_weight(const struct job *job, size_t run, size_t plane);

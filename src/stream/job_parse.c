@@ -77,14 +77,15 @@ static void parse_tacho(struct job *job, struct fields *outer)
 
 static void parse_show(struct job_sensor *s, struct fields *f)
 {
-    static const char *const units[] = {"g", "m/s2", "mm/s", "in/s", "um", "mil",
-                                        "m/s", "m", "mm", "in"};
+    static const char *const units[] = {"g",   "m/s2", "mm/s", "in/s", "um",
+                                        "mil", "m/s",  "m",    "mm",   "in"};
     const char *text = fields_text(f, "show");
     const char *blank = strchr(text, ' ');
     int quantity = quantity_parse(fields_text(f, "show_quantity"));
     s->show.unit = NULL;
     for (size_t i = 0; blank && i < sizeof units / sizeof *units; i++)
-        if (strlen(units[i]) == (size_t)(blank - text) && !strncmp(units[i], text, strlen(units[i])))
+        if (strlen(units[i]) == (size_t)(blank - text) &&
+            !strncmp(units[i], text, strlen(units[i])))
             s->show.unit = units[i];
     int detection = -1;
     for (int d = 0; blank && d < 3; d++)
@@ -123,8 +124,8 @@ static void parse_positions(struct job_plane *p, struct fields *f)
 {
     const json_t *value = json_object_get(f->json, "positions");
     p->any_position = !json_is_array(value);
-    p->positions = new_items(f, p->any_position ? NULL : value, sizeof *p->positions,
-                             &p->position_count);
+    p->positions =
+        new_items(f, p->any_position ? NULL : value, sizeof *p->positions, &p->position_count);
     for (size_t i = 0; i < p->position_count; i++) {
         struct fields g = fields_of(json_array_get(value, i));
         p->positions[i].number = (int)fields_integer(&g, "number", 0);
@@ -210,6 +211,14 @@ static void parse_hand(const struct job *job, struct job_run *r, struct fields *
     }
 }
 
+static void parse_speeds(struct job_run *r, struct fields *f)
+{
+    r->speeds_rpm = fields_new_reals(f, "speeds_rpm", &r->speed_count);
+    for (size_t i = 0; i < r->speed_count; i++)
+        if (!(r->speeds_rpm[i] > (i ? r->speeds_rpm[i - 1] : 0)))
+            fields_fail(f, "the speeds of a coast-down do not ascend from zero");
+}
+
 static void parse_runs(struct job *job, struct fields *outer)
 {
     const json_t *array = fields_array(outer, "runs");
@@ -222,6 +231,7 @@ static void parse_runs(struct job *job, struct fields *outer)
         fields_copy(&f, "role", r->role, sizeof r->role);
         fields_copy(&f, "when", r->when, sizeof r->when);
         r->speed_rpm = fields_real(&f, "speed_rpm");
+        parse_speeds(r, &f);
         parse_weights(job, r, &f);
         parse_hand(job, r, &f);
         const json_t *without = fields_array(&f, "without");

@@ -163,6 +163,8 @@ static void print_runs(const struct job *job, struct line *l)
         line_text(l, "run", r->name);
         line_text(l, "condition", r->condition);
         line_text(l, "role", text_or_null(r->role));
+        if (r->speed_count > 0)
+            line_reals(l, "speeds_rpm", r->speeds_rpm, r->speed_count);
         line_text(l, "when", text_or_null(r->when));
         job_print_weights(job, r, l);
         line_real(l, "speed_rpm", r->speed_rpm);

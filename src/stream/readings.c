@@ -8,6 +8,22 @@
 
 static const char *const verdict_names[] = {"ok", "caution", "refuse"};
 
+struct steady steady_unknown(void)
+{
+    return (struct steady){.amplitude_pct = NAN,
+                           .phase_deg = NAN,
+                           .resultant = NAN,
+                           .drift_pct = NAN,
+                           .speed_pct = NAN,
+                           .independent = NAN,
+                           .beat_pct = NAN,
+                           .beat_s = NAN,
+                           .neighbour_hz = NAN,
+                           .step_pct = NAN,
+                           .step_s = NAN,
+                           .wander_pct = NAN};
+}
+
 static void print_steady(const struct steady *s, struct line *line)
 {
     line_open(line, "steady", '{');
@@ -19,6 +35,12 @@ static void print_steady(const struct steady *s, struct line *line)
     line_real(line, "independent", s->independent);
     line_integer(line, "set_aside", s->set_aside);
     line_integer(line, "turns", s->turns);
+    line_real(line, "beat_pct", s->beat_pct);
+    line_real(line, "beat_s", s->beat_s);
+    line_real(line, "neighbour_hz", s->neighbour_hz);
+    line_real(line, "step_pct", s->step_pct);
+    line_real(line, "step_s", s->step_s);
+    line_real(line, "wander_pct", s->wander_pct);
     line_close(line, '}');
 }
 
@@ -51,7 +73,7 @@ void reading_print(const struct reading_record *r, const struct job *job, struct
 static void parse_steady(struct steady *s, struct fields *outer)
 {
     const json_t *json = fields_object(outer, "steady");
-    *s = (struct steady){NAN, NAN, NAN, NAN, NAN, NAN, 0, 0};
+    *s = steady_unknown();
     if (!json)
         return;
     struct fields f = fields_of(json);
@@ -63,6 +85,12 @@ static void parse_steady(struct steady *s, struct fields *outer)
     s->independent = fields_real(&f, "independent");
     s->set_aside = (long)fields_integer(&f, "set_aside", 0);
     s->turns = (long)fields_integer(&f, "turns", 0);
+    s->beat_pct = fields_real(&f, "beat_pct");
+    s->beat_s = fields_real(&f, "beat_s");
+    s->neighbour_hz = fields_real(&f, "neighbour_hz");
+    s->step_pct = fields_real(&f, "step_pct");
+    s->step_s = fields_real(&f, "step_s");
+    s->wander_pct = fields_real(&f, "wander_pct");
     if (f.why)
         fields_fail(outer, f.why);
 }
@@ -109,6 +137,8 @@ void vetted_print(const struct vetted_record *r, const struct job *job, struct l
     line_begin(line, "vetted");
     line_text(line, "run", r->run);
     line_text(line, "sensor", job->sensors[r->sensor].name);
+    if (r->condition[0])
+        line_text(line, "condition", r->condition);
     line_boolean(line, "use", r->use);
     line_covariance(line, "widen", r->widen);
     line_end(line);
@@ -121,11 +151,18 @@ int vetted_parse(struct vetted_record *r, const struct job *job, const json_t *j
     *r = (struct vetted_record){0};
     fields_name(&f, "run", r->run);
     r->sensor = fields_sensor(&f, "sensor", job);
+    fields_copy(&f, "condition", r->condition, sizeof r->condition);
     if (!fields_has(&f, "use"))
         fields_fail(&f, "the ruling is missing");
     r->use = fields_boolean(&f, "use", false);
     fields_reals(&f, "widen", r->widen, 3);
     return fields_done(&f, why);
+}
+
+bool vetted_is_of(const struct vetted_record *v, const struct reading_record *r)
+{
+    return v->sensor == r->sensor && !strcmp(v->run, r->run) &&
+           (!v->condition[0] || !strcmp(v->condition, r->condition));
 }
 
 void finding_print(const struct finding_record *r, const struct job *job, struct line *line)

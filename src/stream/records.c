@@ -202,6 +202,14 @@ int channel_parse(struct channel_record *r, const struct job *job, const json_t 
     return fields_done(&f, why);
 }
 
+static bool turns_without_phase(const struct turns_record *r)
+{
+    for (size_t i = 0; r->amplitudes && i < r->count; i++)
+        if (!isnan(r->amplitudes[i]))
+            return true;
+    return false;
+}
+
 void turns_print(const struct turns_record *r, const struct job *job, struct line *line)
 {
     line_begin(line, "turns");
@@ -217,6 +225,12 @@ void turns_print(const struct turns_record *r, const struct job *job, struct lin
     for (size_t i = 0; i < r->count; i++)
         line_real(line, job->sensors[r->sensors[i]].name, r->rest[i]);
     line_close(line, '}');
+    if (turns_without_phase(r)) {
+        line_open(line, "amplitudes", '{');
+        for (size_t i = 0; i < r->count; i++)
+            line_real(line, job->sensors[r->sensors[i]].name, r->amplitudes[i]);
+        line_close(line, '}');
+    }
     line_end(line);
 }
 
@@ -225,8 +239,9 @@ static int turns_arrays(struct turns_record *r, size_t count)
     r->sensors = calloc(count + 1, sizeof *r->sensors);
     r->vectors = calloc(count + 1, sizeof *r->vectors);
     r->rest = calloc(count + 1, sizeof *r->rest);
+    r->amplitudes = calloc(count + 1, sizeof *r->amplitudes);
     r->count = count;
-    return r->sensors && r->vectors && r->rest ? 0 : -1;
+    return r->sensors && r->vectors && r->rest && r->amplitudes ? 0 : -1;
 }
 
 int turns_parse(struct turns_record *r, const struct job *job, const json_t *json, const char **why)
@@ -237,11 +252,13 @@ int turns_parse(struct turns_record *r, const struct job *job, const json_t *jso
     r->t_s = fields_need_real(&f, "t_s");
     r->turns = (long)fields_integer(&f, "turns", 0);
     r->speed_rpm = fields_need_real(&f, "speed_rpm");
-    const json_t *vectors = fields_object(&f, "vectors"), *rest = fields_object(&f, "rest");
+    const json_t *vectors = fields_object(&f, "vectors"), *rest = fields_object(&f, "rest"),
+                 *amplitudes = fields_object(&f, "amplitudes");
     size_t count = json_object_size(vectors);
     if (turns_arrays(r, count) < 0)
         fields_fail(&f, "no memory left");
-    struct fields v = fields_of(vectors ? vectors : json), e = fields_of(rest ? rest : json);
+    struct fields v = fields_of(vectors ? vectors : json), e = fields_of(rest ? rest : json),
+                  a = fields_of(amplitudes ? amplitudes : json);
     const char *name;
     json_t *value;
     size_t i = 0;
@@ -253,12 +270,15 @@ int turns_parse(struct turns_record *r, const struct job *job, const json_t *jso
         if (r->sensors[i] < 0)
             fields_fail(&f, "a sensor that the job does not name");
         r->vectors[i] = fields_vector(&v, name);
-        r->rest[i++] = fields_real(&e, name);
+        r->rest[i] = fields_real(&e, name);
+        r->amplitudes[i++] = amplitudes ? fields_real(&a, name) : NAN;
     }
     if (v.why)
         fields_fail(&f, v.why);
     if (e.why)
         fields_fail(&f, e.why);
+    if (a.why)
+        fields_fail(&f, a.why);
     if (f.why)
         turns_release(r);
     return fields_done(&f, why);
@@ -269,6 +289,7 @@ void turns_release(struct turns_record *r)
     free(r->sensors);
     free(r->vectors);
     free(r->rest);
+    free(r->amplitudes);
     *r = (struct turns_record){0};
 }
 
@@ -335,5 +356,62 @@ void spectrum_release(struct spectrum_record *r)
     free(r->orders);
     free(r->amplitude);
     r->orders = r->amplitude = NULL;
+    r->count = 0;
+}
+
+/* ---- curve ---- */
+
+void curve_print(const struct curve_record *r, const struct job *job, struct line *line)
+{
+    line_begin(line, "curve");
+    line_text(line, "run", r->run);
+    line_text(line, "sensor", job->sensors[r->sensor].name);
+    line_reals(line, "speed_rpm", r->speed_rpm, r->count);
+    line_open(line, "vector", '[');
+    for (size_t i = 0; i < r->count; i++)
+        line_vector(line, NULL, r->vectors[i]);
+    line_close(line, ']');
+    line_end(line);
+}
+
+static double complex curve_point(const json_t *point, struct fields *f)
+{
+    if (json_is_null(point))
+        return CMPLX(NAN, NAN);
+    if (json_array_size(point) != 2 || !json_is_number(json_array_get(point, 0)) ||
+        !json_is_number(json_array_get(point, 1))) {
+        fields_fail(f, "a vector is not two numbers");
+        return CMPLX(NAN, NAN);
+    }
+    return CMPLX(json_number_value(json_array_get(point, 0)),
+                 json_number_value(json_array_get(point, 1)));
+}
+
+int curve_parse(struct curve_record *r, const struct job *job, const json_t *json, const char **why)
+{
+    struct fields f = fields_of(json);
+    *r = (struct curve_record){0};
+    fields_name(&f, "run", r->run);
+    r->sensor = fields_sensor(&f, "sensor", job);
+    r->speed_rpm = fields_new_reals(&f, "speed_rpm", &r->count);
+    const json_t *points = fields_array(&f, "vector");
+    if (json_array_size(points) != r->count)
+        fields_fail(&f, "speeds and vectors differ in number");
+    r->vectors = f.why ? NULL : calloc(r->count + 1, sizeof *r->vectors);
+    if (!r->vectors)
+        fields_fail(&f, "no memory left");
+    for (size_t i = 0; r->vectors && i < r->count; i++)
+        r->vectors[i] = curve_point(json_array_get(points, i), &f);
+    if (f.why)
+        curve_release(r);
+    return fields_done(&f, why);
+}
+
+void curve_release(struct curve_record *r)
+{
+    free(r->speed_rpm);
+    free(r->vectors);
+    r->speed_rpm = NULL;
+    r->vectors = NULL;
     r->count = 0;
 }

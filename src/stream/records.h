@@ -79,6 +79,8 @@ struct turns_record {          /* one block of whole turns */
     int *sensors;              /* owned arrays, by position */
     double complex *vectors;   /* 1x, SI peak, argument is lag; NaN where there is no phase */
     double *rest;              /* rms of what is not 1x (the constant taken off), SI */
+    double *amplitudes;        /* owned; 1x amplitude, SI peak, where no mark carries phase: then `vectors`
+                                * are NaN and the line has an object `amplitudes`. NaN each, or NULL, otherwise */
 };
 void turns_print(const struct turns_record *r, const struct job *job, struct line *line);
 int turns_parse(struct turns_record *r, const struct job *job, const json_t *json,
@@ -109,6 +111,20 @@ int spectrum_parse(struct spectrum_record *r, const struct job *job, const json_
                    const char **why) __attribute__((warn_unused_result));
 void spectrum_release(struct spectrum_record *r);
 
+/* The 1x vector of a coast-down over speed, one record per sensor: a point per block, in order of time.
+ * The readings at the listed speeds are made of it by local fits (src/average/sweep.h). */
+struct curve_record {
+    char run[NAME_ROOM];
+    int sensor;
+    double *speed_rpm;          /* owned, as `vectors`; NaN vectors are printed null */
+    double complex *vectors;    /* SI peak, argument is lag */
+    size_t count;
+};
+void curve_print(const struct curve_record *r, const struct job *job, struct line *line);
+int curve_parse(struct curve_record *r, const struct job *job, const json_t *json, const char **why)
+    __attribute__((warn_unused_result));
+void curve_release(struct curve_record *r);
+
 struct steady {                 /* how steady a reading was; NaN: not known. Percentages of the mean amplitude */
     double amplitude_pct;       /* standard deviation of block amplitudes */
     double phase_deg;           /* circular standard deviation of block lags (Mardia & Jupp 2000) */
@@ -118,7 +134,18 @@ struct steady {                 /* how steady a reading was; NaN: not known. Per
     double independent;         /* effective number of independent blocks */
     long set_aside;             /* outlier blocks not used */
     long turns;                 /* turns used */
+    /* A swing of the block vectors with one period, slower than two blocks and faster than half the run.
+     * Everything faster is averaged away within a block or cannot be told from its alias; everything
+     * slower is drift or wander. */
+    double beat_pct;            /* its amplitude; 0 where not significant */
+    double beat_s;              /* its period; NaN where beat_pct is 0, as the next */
+    double neighbour_hz;        /* the frequency that makes it, where it is one beside 1x (the vector turns
+                                 * about its mean); NaN where the machine's own 1x swings, or not known */
+    double step_pct;            /* largest lasting jump of the mean; 0 where not significant */
+    double step_s;              /* when, s from the start of the recording; NaN where step_pct is 0 */
+    double wander_pct;          /* standard deviation of slow wander, both components; 0 where not significant */
 };
+struct steady steady_unknown(void); /* nothing known: NaN, no blocks set aside, no turns */
 
 struct overall {                /* of everything in a band, in the quantity that is shown */
     double rms;                 /* SI; NaN: none */
@@ -126,6 +153,14 @@ struct overall {                /* of everything in a band, in the quantity that
     double from_hz, to_hz;
 };
 
+/* A run has one reading per sensor, told apart by (run, sensor), but a coast-down has one per sensor and
+ * listed speed, told apart by (run, sensor, condition): its conditions are "<condition> @ 900 rpm"
+ * (job_speed_condition) and speed_rpm is the listed speed. A listed speed outside of what was
+ * recorded has no reading, but a finding of the stage `average` (check `coast-down`).
+ *
+ * The readings of a runout run (job_run.role) keep the run's own condition and are not corrected with
+ * anything; `average` takes them off nowhere, since runs may be averaged apart. `solve` subtracts the
+ * 1x vector of a runout run from the baseline of displacement sensors. */
 struct reading_record {
     char run[NAME_ROOM];
     char condition[NAME_ROOM];
@@ -145,6 +180,7 @@ int reading_parse(struct reading_record *r, const struct job *job, const json_t 
 
 struct vetted_record {
     char run[NAME_ROOM];
+    char condition[NAME_ROOM];  /* of a coast-down's reading, and printed only there; "" otherwise */
     int sensor;
     bool use;
     double widen[3];            /* like cov; added to it by solve */
@@ -153,10 +189,14 @@ void vetted_print(const struct vetted_record *r, const struct job *job, struct l
 int vetted_parse(struct vetted_record *r, const struct job *job, const json_t *json,
                  const char **why) __attribute__((warn_unused_result));
 
+/* True where the ruling is about that reading: run and sensor alike, and the condition where the
+ * ruling names one. */
+bool vetted_is_of(const struct vetted_record *v, const struct reading_record *r);
+
 enum verdict { VERDICT_OK, VERDICT_CAUTION, VERDICT_REFUSE };
 
 struct finding_record {
-    char stage[16];             /* "read", "vet", "solve" */
+    char stage[16];             /* "read", "average", "vet", "solve" */
     char check[NAME_ROOM];      /* as in the table of checks */
     enum verdict verdict;
     char run[NAME_ROOM];        /* "": not about one run (printed null) */
