@@ -107,7 +107,7 @@ class Demo(unittest.TestCase):
         script = pathlib.Path(__file__).resolve().parents[1] / "sim" / "demo.sh"
         with chain.folder() as where:
             subprocess.run([script, chain.SIMULATE, where], check=True, timeout=60)
-            for job in ("fan", "blower"):
+            for job in ("fan", "fan-after", "blower"):
                 names = sorted(p.name for p in (where / job).iterdir())
                 self.assertEqual(names, sorted(p.name for p in (chain.DATA / job).iterdir()))
                 self.assertEqual(filecmp.cmpfiles(where / job, chain.DATA / job, names, shallow=False)[0], names)
