@@ -43,8 +43,8 @@ static const struct sheet_key RUN[] = {{"file", SHEET_KEY_AGAIN, NULL},
                                        {"speed", 0, NULL},
                                        {"reading", SHEET_KEY_SUBJECT, NULL},
                                        {"condition", 0, NULL},
-                                       {"role", SHEET_KEY_LATER, NULL},
-                                       {"speeds", SHEET_KEY_LATER, NULL},
+                                       {"role", 0, NULL},
+                                       {"speeds", 0, NULL},
                                        LAYOUT_KEYS};
 static const struct sheet_key AIM[] = {{"target", 0, NULL},
                                        {"target", SHEET_KEY_SUBJECT, NULL},
@@ -311,10 +311,6 @@ static void classify_key(struct sheet_entry *e, const struct kind *kind,
         e->subject = e->text + length + strspn(e->text + length, " \t");
         if (!key && !(!e->text[length] && lacks_subject(e, kind, word, errors)))
             tell_unknown_key(e, kind, errors);
-    }
-    if (key && key->flags & SHEET_KEY_LATER) {
-        sheet_errors_add(errors, e->line, "not supported yet: '%s'", key->name);
-        return;
     }
     e->key = key;
 }

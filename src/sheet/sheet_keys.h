@@ -20,8 +20,7 @@ enum sheet_kind {
 
 enum sheet_key_flag {
     SHEET_KEY_SUBJECT = 1, /* a name stands behind it: `weight wheel` */
-    SHEET_KEY_AGAIN = 2,   /* may stand more than once */
-    SHEET_KEY_LATER = 4    /* known, and not supported yet */
+    SHEET_KEY_AGAIN = 2    /* may stand more than once */
 };
 
 struct sheet_key {

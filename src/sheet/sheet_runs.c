@@ -234,6 +234,69 @@ static void read_condition(struct sheet_parse *p, const struct run_parts *run)
         strcpy(run->job->condition, e->value);
 }
 
+/* ---- role ---- */
+
+#define SPEEDS_MOST 32 /* of a coast-down: each is a condition of its own */
+
+static int by_value(const void *a, const void *b)
+{
+    double x = ((const struct sheet_item *)a)->value, y = ((const struct sheet_item *)b)->value;
+    return (x > y) - (x < y);
+}
+
+/* The speeds of a coast-down, sorted; all of them must give a condition's name that fits. */
+static const char *take_speeds(struct job_run *job, const char *text)
+{
+    struct sheet_item items[SPEEDS_MOST];
+    char name[NAME_ROOM];
+    size_t count = 0;
+    const char *fault = sheet_values_list(text, DIMENSION_SPEED, false, items, SPEEDS_MOST, &count);
+    if (fault)
+        return fault;
+    qsort(items, count, sizeof *items, by_value);
+    for (size_t i = 0; i < count; i++) {
+        if (!(items[i].value > SPEED.min && items[i].value <= SPEED.max))
+            return "speed out of range (more than 0, at most 1e6 rpm)";
+        if (i > 0 && items[i].value - items[i - 1].value < 1e-3)
+            return "speed given twice";
+        if (!job_speed_condition(job->condition, items[i].value, name))
+            return "condition too long with a speed behind it (40 bytes in all)";
+        job->speeds_rpm[i] = items[i].value;
+    }
+    job->speed_count = count;
+    return NULL;
+}
+
+static void read_role(struct sheet_parse *p, const struct run_parts *run)
+{
+    static const char *const ROLES[] = {"runout", "coast-down", NULL};
+    const struct sheet_entry *speeds = sheet_fields_find(p, run->section, "speeds");
+    const struct sheet_entry *role = sheet_fields_find(p, run->section, "role");
+    int which = sheet_fields_choice(p, run->section, "role", ROLES, -1);
+    const char *fault = NULL;
+    if (which >= 0)
+        strcpy(run->job->role, ROLES[which]);
+    if (which != 1) {
+        if (speeds && (!role || which >= 0))
+            sheet_fields_wrong(p, speeds, "only with 'role = coast-down'");
+        return;
+    }
+    if (!speeds) {
+        sheet_fields_missing(p, run->section, "speeds");
+        return;
+    }
+    run->job->speeds_rpm = calloc(SPEEDS_MOST, sizeof *run->job->speeds_rpm);
+    if (!run->job->speeds_rpm) {
+        p->errors.no_memory = true;
+        return;
+    }
+    fault = take_speeds(run->job, speeds->value);
+    if (fault)
+        sheet_fields_wrong(p, speeds, fault);
+    else if (run->job->hand_count > 0)
+        sheet_fields_wrong(p, role, "needs a recording, readings by hand have no sweep");
+}
+
 static void read_entries(struct sheet_parse *p, const struct run_parts *run)
 {
     for (size_t i = 0; i < p->lines.entry_count; i++) {
@@ -267,6 +330,7 @@ static void read_run(struct sheet_parse *p, const struct run_parts *run)
     sheet_machine_layout(p, run->section, &run->sheet->layout);
     read_entries(p, run);
     read_hands(p, run);
+    read_role(p, run);
 }
 
 void sheet_runs_read(struct sheet_parse *p)

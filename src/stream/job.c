@@ -109,7 +109,7 @@ bool job_run_is_bare(const struct job *job, size_t run)
     return total <= 1e-12 * largest; /* rounding of weights that cancel */
 }
 
-void job_speed_condition(const char *condition, double speed_rpm, char to[NAME_ROOM])
+bool job_speed_condition(const char *condition, double speed_rpm, char to[NAME_ROOM])
 {
     char text[32];
     for (int decimals = 0; decimals <= 6; decimals++) {
@@ -117,7 +117,7 @@ void job_speed_condition(const char *condition, double speed_rpm, char to[NAME_R
         if (fabs(strtod(text, NULL) - speed_rpm) < 1e-6)
             break;
     }
-    snprintf(to, NAME_ROOM, "%.*s @ %s rpm", NAME_ROOM - 1, condition, text);
+    return snprintf(to, NAME_ROOM, "%.*s @ %s rpm", NAME_ROOM - 1, condition, text) < NAME_ROOM;
 }
 
 double job_sheet_angle(const struct job *job, double angle_deg)

@@ -194,8 +194,9 @@ int job_find_run(const struct job *job, const char *name);
 bool job_run_is_bare(const struct job *job, size_t run);
 
 /* The condition of a coast-down's reading at one of its speeds: "<condition> @ 900 rpm", the speed as a
- * whole number or in its shortest decimal form (to 1e-6 rpm). The sheet sees to it that it fits. */
-void job_speed_condition(const char *condition, double speed_rpm, char to[NAME_ROOM]);
+ * whole number or in its shortest decimal form (to 1e-6 rpm). False where it does not fit and is cut; the sheet sees to it
+ * that this never happens. */
+bool job_speed_condition(const char *condition, double speed_rpm, char to[NAME_ROOM]);
 
 /* The total equivalent weight of run `run` on plane `plane`: sum of mass*exp(j*angle), kg. */
 double complex job_run_weight(const struct job *job, size_t run, size_t plane);

@@ -393,9 +393,34 @@ static void test_hand_only(void **state)
     sheet_release(&sheet);
 }
 
+/* Roles of runs; the speeds of a coast-down in any order. */
+static void test_roles(void **state)
+{
+    (void)state;
+    char *text = sheet_desk_swap(SHEET_DESK_FULL, "when = 2025-03-14 10:40",
+                                 "role = coast-down\nspeeds = 1480, 900 1100.5 rpm");
+    char *both = sheet_desk_swap(text, "condition = hot", "condition = hot\nrole = runout");
+    struct sheet sheet;
+    struct buffer errors = BUFFER_INIT;
+    assert_int_equal(sheet_desk_read(&sheet, both, strlen(both), false, &errors), 0);
+    assert_string_equal(sheet.job.runs[1].role, "coast-down");
+    assert_int_equal(sheet.job.runs[1].speed_count, 3);
+    assert_true(sheet.job.runs[1].speeds_rpm[0] == 900);
+    assert_true(sheet.job.runs[1].speeds_rpm[1] == 1100.5);
+    assert_true(sheet.job.runs[1].speeds_rpm[2] == 1480);
+    assert_string_equal(sheet.job.runs[2].role, "runout");
+    assert_int_equal(sheet.job.runs[2].speed_count, 0);
+    assert_string_equal(sheet.job.runs[0].role, "");
+    sheet_release(&sheet);
+    buffer_release(&errors);
+    free(both);
+    free(text);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
+        cmocka_unit_test(test_roles),
         cmocka_unit_test(test_machine), cmocka_unit_test(test_sensors),
         cmocka_unit_test(test_planes),  cmocka_unit_test(test_runs),
         cmocka_unit_test(test_hand),    cmocka_unit_test(test_aim),

@@ -250,7 +250,7 @@ static void test_reading_round_trip(void **state)
     struct reading_record r = {.run = "a", .condition = "service", .sensor = 0, .speed_rpm = 1480,
                                .has_phase = true, .vector = CMPLX(1e-3, -2e-3),
                                .cov = {1e-12, -2e-13, 3e-12}, .blocks = 30,
-                               .steady = {1, 2, .99, 0, .1, 25, 1, 700},
+                               .steady = {1, 2, .99, 0, .1, 25, 1, 700, 8, 3.5, 24.5, 0, NAN, 1.5},
                                .overall = {NAN, QUANTITY_VELOCITY, 10, 1000}};
     struct reading_record again;
     struct line line = LINE_INIT;
@@ -259,9 +259,111 @@ static void test_reading_round_trip(void **state)
     assert_int_equal(reading_parse(&again, &job, json, &why), 0);
     assert_true(again.has_phase && again.vector == r.vector && again.cov[1] == r.cov[1]);
     assert_int_equal(again.steady.turns, 700);
+    assert_true(again.steady.beat_pct == 8 && again.steady.beat_s == 3.5);
+    assert_true(again.steady.neighbour_hz == 24.5 && again.steady.wander_pct == 1.5);
+    assert_true(again.steady.step_pct == 0 && isnan(again.steady.step_s));
     assert_true(isnan(again.overall.rms));
     json_object_set_new(json, "sensor", json_string("nobody"));
     assert_int_equal(reading_parse(&again, &job, json, &why), -1);
+    json_decref(json);
+    line_release(&line);
+    job_release(&job);
+}
+
+/* A coast-down: its speeds, names of conditions, curve, and rulings that name the condition. */
+static void test_coast_down_records(void **state)
+{
+    (void)state;
+    struct job job, again;
+    struct buffer text = BUFFER_INIT;
+    struct line line = LINE_INIT;
+    const char *why = NULL;
+    char name[NAME_ROOM];
+    job_init(&job);
+    job_init(&again);
+    json_t *json = json_loads(JOB, 0, NULL);
+    json_t *run = json_array_get(json_object_get(json, "runs"), 0);
+    json_object_set_new(run, "role", json_string("coast-down"));
+    json_object_set_new(run, "speeds_rpm", json_pack("[f,f]", 900.0, 1100.5));
+    assert_int_equal(job_parse(&job, json, &why), 0);
+    assert_int_equal(job_print(&job, &text), 0);
+    json_object_set_new(run, "speeds_rpm", json_pack("[f,f]", 900.0, 800.0));
+    assert_int_equal(job_parse(&again, json, &why), -1);
+    json_decref(json);
+    job_release(&again);
+    job_init(&again);
+    json = json_loadb(text.bytes, text.length, 0, NULL);
+    assert_int_equal(job_parse(&again, json, &why), 0);
+    assert_int_equal(again.runs[0].speed_count, 2);
+    assert_true(again.runs[0].speeds_rpm[1] == 1100.5);
+    json_decref(json);
+
+    assert_true(job_speed_condition("hot", 900, name));
+    assert_string_equal(name, "hot @ 900 rpm");
+    assert_true(job_speed_condition("hot", 1100.5, name));
+    assert_string_equal(name, "hot @ 1100.5 rpm");
+    assert_false(job_speed_condition("a condition with a name of thirty", 1100, name));
+
+    double speeds[2] = {1000, 900};
+    double complex vectors[2] = {CMPLX(1, -2), CMPLX(NAN, NAN)};
+    struct curve_record curve = {.run = "a", .speed_rpm = speeds, .vectors = vectors, .count = 2};
+    struct curve_record back;
+    curve_print(&curve, &job, &line);
+    json = json_loadb(line.text.bytes, line.text.length, 0, NULL);
+    assert_int_equal(curve_parse(&back, &job, json, &why), 0);
+    assert_true(back.count == 2 && back.speed_rpm[1] == 900 && back.vectors[0] == vectors[0]);
+    assert_true(isnan(creal(back.vectors[1])));
+    curve_release(&back);
+    json_array_append_new(json_object_get(json, "speed_rpm"), json_real(1));
+    assert_int_equal(curve_parse(&back, &job, json, &why), -1);
+    json_decref(json);
+    line_release(&line);
+
+    struct vetted_record v = {.run = "a", .condition = "hot @ 900 rpm", .use = true}, w;
+    struct reading_record r = {.run = "a", .condition = "hot @ 900 rpm"};
+    vetted_print(&v, &job, &line);
+    json = json_loadb(line.text.bytes, line.text.length, 0, NULL);
+    assert_int_equal(vetted_parse(&w, &job, json, &why), 0);
+    json_decref(json);
+    assert_string_equal(w.condition, v.condition);
+    assert_true(vetted_is_of(&w, &r));
+    strcpy(r.condition, "hot @ 800 rpm");
+    assert_false(vetted_is_of(&w, &r));
+    w.condition[0] = '\0';
+    assert_true(vetted_is_of(&w, &r));
+    line_release(&line);
+    buffer_release(&text);
+    job_release(&again);
+    job_release(&job);
+}
+
+/* Blocks without phase carry amplitudes instead of vectors. */
+static void test_blocks_without_phase(void **state)
+{
+    (void)state;
+    struct job job;
+    const char *why = NULL;
+    struct line line = LINE_INIT;
+    int sensor = 0;
+    double complex vector = CMPLX(NAN, NAN);
+    double rest = 1, amplitude = 3;
+    struct turns_record r = {.run = "a", .t_s = 1, .turns = 4, .speed_rpm = 900, .count = 1,
+                             .sensors = &sensor, .vectors = &vector, .rest = &rest,
+                             .amplitudes = &amplitude};
+    struct turns_record again;
+    job_init(&job);
+    json_t *json = json_loads(JOB, 0, NULL);
+    assert_int_equal(job_parse(&job, json, &why), 0);
+    json_decref(json);
+    turns_print(&r, &job, &line);
+    json = json_loadb(line.text.bytes, line.text.length, 0, NULL);
+    assert_int_equal(turns_parse(&again, &job, json, &why), 0);
+    assert_true(isnan(creal(again.vectors[0])) && again.amplitudes[0] == 3 && again.rest[0] == 1);
+    turns_release(&again);
+    json_object_del(json, "amplitudes");
+    assert_int_equal(turns_parse(&again, &job, json, &why), 0);
+    assert_true(isnan(again.amplitudes[0]));
+    turns_release(&again);
     json_decref(json);
     line_release(&line);
     job_release(&job);
@@ -274,6 +376,7 @@ int main(void)
         cmocka_unit_test(test_every_prefix_ends_early), cmocka_unit_test(test_samples_are_whole_and_aligned),
         cmocka_unit_test(test_job_round_trip),     cmocka_unit_test(test_sheet_angles),
         cmocka_unit_test(test_reals_and_strings),  cmocka_unit_test(test_reading_round_trip),
+        cmocka_unit_test(test_coast_down_records), cmocka_unit_test(test_blocks_without_phase),
     };
     quiet();
     cmocka_set_message_output(CM_OUTPUT_STDOUT);
