@@ -1,14 +1,20 @@
 #include "vet/across.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
 #include "base/angle.h"
 #include "sheet/units.h"
+#include "vet/moved.h"
+#include "vet/repeats.h"
 #include "vet/trials.h"
+#include "vet/when.h"
 #include "vet/within.h"
 
+/* Of the service speed: unbalance does there less than a sixteenth. Common practice. */
+static const double RUNOUT_SHARE_MOST = 0.25;
 static const double CHI2_99 = 9.21034; /* chi-squared with 2 degrees of freedom, 99 % */
 
 /* The k-th run of the sheet's order where it is an ordinary run of the job, else NULL. */
@@ -17,7 +23,7 @@ static struct vet_run *ordinary(const struct vet_runs *runs, const size_t *order
 {
     struct vet_run *run = &runs->items[order[k]];
 
-    return run->index >= 0 && !job->runs[run->index].role[0] ? run : NULL;
+    return run->index >= 0 && !facts_role(run, job)[0] ? run : NULL;
 }
 
 static bool same_weights(const struct vet_run *a, const struct vet_run *b, const struct job *job,
@@ -37,6 +43,8 @@ static bool same_weights(const struct vet_run *a, const struct vet_run *b, const
 
 bool across_stands_alone(const struct vet_run *run, const struct job *job)
 {
+    if (run->parent >= 0 || facts_role(run, job)[0])
+        return false;
     for (size_t r = 0; run->index >= 0 && r < (size_t)run->index; r++)
         if (job_run_is_bare(job, r) && !job->runs[r].role[0] &&
             !strcmp(job->runs[r].condition, run->condition))
@@ -147,14 +155,6 @@ void across_phase_reference(struct vet_runs *runs, const size_t *order, const st
     }
 }
 
-static double speed_of(const struct vet_run *run, const struct job *job)
-{
-    for (size_t i = 0; i < job->sensor_count; i++)
-        if (run->readings[i].present && run->readings[i].use)
-            return run->readings[i].speed_rpm;
-    return NAN;
-}
-
 static int ascending(const void *a, const void *b)
 {
     double x = *(const double *)a, y = *(const double *)b;
@@ -180,7 +180,8 @@ static bool match_once(struct vet_runs *runs, const size_t *order, const struct 
 
     for (size_t k = 0; k < runs->count; k++) {
         const struct vet_run *run = ordinary(runs, order, job, k);
-        double speed = run && !strcmp(run->condition, condition) ? speed_of(run, job) : NAN;
+        double speed =
+            run && !strcmp(run->condition, condition) ? facts_speed(run, job, true) : NAN;
         if (isnan(speed))
             continue;
         room[count++] = speed;
@@ -193,7 +194,8 @@ static bool match_once(struct vet_runs *runs, const size_t *order, const struct 
     middle = median(room, count);
     for (size_t k = 0; k < runs->count; k++) {
         const struct vet_run *run = ordinary(runs, order, job, k);
-        double speed = run && !strcmp(run->condition, condition) ? speed_of(run, job) : NAN;
+        double speed =
+            run && !strcmp(run->condition, condition) ? facts_speed(run, job, true) : NAN;
         if (fabs(speed - middle) >= furthest * (1 - 1e-12)) { /* of two alike the later */
             furthest = fabs(speed - middle);
             worst = order[k];
@@ -210,8 +212,7 @@ static bool match_once(struct vet_runs *runs, const size_t *order, const struct 
     return ruling == RULING_REFUSE;
 }
 
-/* True where run k is the first in order of its condition. */
-static bool first_of_condition(const struct vet_runs *runs, const size_t *order,
+bool across_first_of_condition(const struct vet_runs *runs, const size_t *order,
                                const struct job *job, size_t k)
 {
     const struct vet_run *run = ordinary(runs, order, job, k);
@@ -234,7 +235,7 @@ void across_speed_match(struct vet_runs *runs, const size_t *order, const struct
         return;
     }
     for (size_t k = 0; k < runs->count; k++) {
-        if (!first_of_condition(runs, order, job, k))
+        if (!across_first_of_condition(runs, order, job, k))
             continue;
         while (match_once(runs, order, job, runs->items[order[k]].condition, room, findings))
             continue;
@@ -260,9 +261,7 @@ static double distance(double complex d, const double a[3], const double b[3])
     return (im * x * x - 2 * both * x * y + re * y * y) / det;
 }
 
-/* Positions (in `members`) of the usable runs that repeat run k, itself first; 0 where an earlier
- * run of the order does so already. */
-static size_t repeats_of(const struct vet_runs *runs, const size_t *order, const struct job *job,
+size_t across_repeats_of(const struct vet_runs *runs, const size_t *order, const struct job *job,
                          size_t k, size_t sensor, size_t *members)
 {
     const struct vet_run *run = ordinary(runs, order, job, k);
@@ -293,11 +292,27 @@ static double complex median_vector(const struct vet_runs *runs, const size_t *m
     return CMPLX(re, median(room, count));
 }
 
-/* Compares a member with the other one (two) or the median (more); true where it is refused. */
-static bool judge_repeat(const struct vet_runs *runs, const size_t *members, size_t count,
-                         size_t which, size_t sensor, double complex middle, double as_found,
-                         struct findings *findings)
+/* ", 25 min before" where both runs tell when they were recorded, else nothing. */
+static void say_hours(const struct job *job, const struct vet_run *run, const struct vet_run *other,
+                      char *to, size_t room)
 {
+    double hours =
+        when_hours(job->runs[run->index].when) - when_hours(job->runs[other->index].when);
+
+    bool short_time = fabs(hours) < 2;
+
+    to[0] = '\0';
+    if (fabs(hours) > 0)
+        snprintf(to, room, ", %.0f %s %s", fabs(hours) * (short_time ? 60 : 1),
+                 short_time ? "min" : "h", hours > 0 ? "before" : "after");
+}
+
+/* Compares a member with the other one (two) or the median (more); true where it is refused. */
+static bool judge_repeat(const struct vet_runs *runs, const struct job *job, const size_t *members,
+                         size_t count, size_t which, size_t sensor, double complex middle,
+                         double as_found, struct findings *findings)
+{
+    char hours[40];
     const struct vet_run *run = &runs->items[members[which]];
     const struct vet_run *other = &runs->items[members[which == 0]];
     const struct vet_reading *r = &run->readings[sensor], *o = &other->readings[sensor];
@@ -313,11 +328,12 @@ static bool judge_repeat(const struct vet_runs *runs, const size_t *members, siz
     }
     if (count == 2 && which == 0 && ruling != RULING_REFUSE)
         return false; /* one finding for the pair, unless both are refused */
+    say_hours(job, run, other, hours, sizeof hours);
     ruling = findings_rule(
         findings, CHECK_REPEAT, ruling, (int)members[which], (int)sensor, value, limit, "%",
         "%s %g %% from %s%s%s%s", beyond ? "stands" : "within its own uncertainty stands",
         findings_figure(value), count == 2 ? "its repeat '" : "the median of its repeats",
-        count == 2 ? other->name : "", count == 2 ? "'" : "", "");
+        count == 2 ? other->name : "", count == 2 ? "'" : "", count == 2 ? hours : "");
     return ruling == RULING_REFUSE;
 }
 
@@ -325,7 +341,7 @@ static void repeat_sensor(struct vet_runs *runs, const size_t *order, const stru
                           size_t sensor, size_t *members, double *room, struct findings *findings)
 {
     for (size_t k = 0; k < runs->count; k++) {
-        size_t count = repeats_of(runs, order, job, k, sensor, members);
+        size_t count = across_repeats_of(runs, order, job, k, sensor, members);
         double complex middle;
         double as_found;
         if (count < 2)
@@ -333,7 +349,8 @@ static void repeat_sensor(struct vet_runs *runs, const size_t *order, const stru
         middle = median_vector(runs, members, count, sensor, room);
         as_found = across_as_found(runs, order, job, runs->items[order[k]].condition, sensor);
         for (size_t i = 0; i < count; i++) /* room: who is refused, once all have been compared */
-            room[i] = judge_repeat(runs, members, count, i, sensor, middle, as_found, findings);
+            room[i] =
+                judge_repeat(runs, job, members, count, i, sensor, middle, as_found, findings);
         for (size_t i = 0; i < count; i++)
             if (room[i] > 0)
                 runs->items[members[i]].readings[sensor].use = false;
@@ -376,12 +393,41 @@ void across_low_level(struct vet_runs *runs, const size_t *order, const struct j
     }
 }
 
+void across_runout(struct vet_runs *runs, const size_t *order, const struct job *job,
+                   struct findings *findings)
+{
+    double service = job->service_rpm;
+
+    for (size_t k = 0; !(service > 0) && k < runs->count; k++) {
+        const struct vet_run *run = ordinary(runs, order, job, k);
+        service = run ? facts_speed(run, job, false) : NAN;
+    }
+    for (size_t k = 0; k < runs->count; k++) {
+        struct vet_run *run = &runs->items[order[k]];
+        double speed = facts_speed(run, job, false), share = speed / service;
+        enum ruling ruling = share < RUNOUT_SHARE_MOST ? RULING_OK : RULING_REFUSE;
+        if (strcmp(facts_role(run, job), "runout") != 0 || isnan(share))
+            continue;
+        ruling = findings_rule(findings, CHECK_SERVICE_SPEED, ruling, (int)order[k], -1,
+                               100 * share, 100 * RUNOUT_SHARE_MOST, "%",
+                               "runout was taken at %.0f rpm, %g %% of the service speed%s", speed,
+                               findings_figure(100 * share),
+                               ruling == RULING_OK ? "" : ", where unbalance shows");
+        if (ruling == RULING_REFUSE)
+            within_refuse(run, job);
+    }
+}
+
 int across_runs(struct vet_runs *runs, const size_t *order, const struct job *job,
                 struct findings *findings)
 {
     across_same_recording(runs, order, job, findings);
     across_phase_reference(runs, order, job, findings);
+    across_runout(runs, order, job, findings);
     across_speed_match(runs, order, job, findings);
+    moved_check(runs, order, job, findings);
+    repeats_trend(runs, order, job, findings);
+    repeats_resonance(runs, order, job, findings);
     across_repeat(runs, order, job, findings);
     trials_effect(runs, order, job, findings);
     across_low_level(runs, order, job, findings);

@@ -23,6 +23,20 @@ size_t *across_order(const struct vet_runs *runs, const struct job *job);
 double across_as_found(const struct vet_runs *runs, const size_t *order, const struct job *job,
                        const char *condition, size_t sensor);
 
+/* True where the k-th run in `order` is an ordinary one and the first of its condition. */
+bool across_first_of_condition(const struct vet_runs *runs, const size_t *order,
+                               const struct job *job, size_t k);
+
+/* Positions (in `members`, room for all runs) of the usable runs that repeat the k-th of `order`,
+ * itself first; 0 where an earlier run of the order does so already. */
+size_t across_repeats_of(const struct vet_runs *runs, const size_t *order, const struct job *job,
+                         size_t k, size_t sensor, size_t *members);
+
+/* Runs of runout: refused (check `service-speed`) at a quarter of the service speed and more, or of
+ * the first ordinary run's where the sheet names none. */
+void across_runout(struct vet_runs *runs, const size_t *order, const struct job *job,
+                   struct findings *findings);
+
 /* Two runs with one SHA-256: with equal weights the later one is refused, else both. */
 void across_same_recording(struct vet_runs *runs, const size_t *order, const struct job *job,
                            struct findings *findings);
@@ -39,7 +53,8 @@ void across_speed_match(struct vet_runs *runs, const size_t *order, const struct
 
 /* Runs of equal weights: the difference in % of the larger of reading and as-found amplitude,
  * judged where it exceeds its own uncertainty (cov of both, 99 % point of chi-squared). Two that
- * differ too much are both refused; of more, those too far from their median. */
+ * differ too much are both refused; of more, those too far from their median. How long lies between
+ * two is said where both tell it. */
 void across_repeat(struct vet_runs *runs, const size_t *order, const struct job *job,
                    struct findings *findings);
 

@@ -24,7 +24,7 @@ static size_t fill_set(const struct vet_runs *runs, const size_t *order, const s
 
     for (size_t k = 0; k < runs->count; k++) {
         const struct vet_run *run = &runs->items[order[k]];
-        if (run->index < 0 || job->runs[run->index].role[0])
+        if (run->index < 0 || facts_role(run, job)[0])
             continue;
         condition[rows] = (int)rows;
         for (size_t q = rows; q-- > 0;)

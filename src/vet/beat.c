@@ -51,7 +51,7 @@ static double complex line_at(const struct straight *line, const double complex 
 
 struct beat beat_of(const double complex *vectors, const double *t, size_t count)
 {
-    struct beat beat = {NAN, NAN, NAN};
+    struct beat beat = {NAN, NAN, NAN, NAN};
     struct straight line;
     double step, power = 0, most = 0, share, n;
 
@@ -83,8 +83,19 @@ struct beat beat_of(const double complex *vectors, const double *t, size_t count
     if (share > 0 && n * pow(1 - fmin(share, 1), n - 1) < LEVEL) {
         double y = PI * beat.turning * step;
         beat.swing = most * y / sin(y); /* |y| is pi/2 at most */
+        beat.period = 1 / fabs(beat.turning);
     }
     return beat;
+}
+
+struct beat beat_join(const struct beat *measured, struct beat own)
+{
+    struct beat joined = *measured;
+
+    if (isnan(measured->swing) || !(own.duration > 0))
+        return own;
+    joined.duration = own.duration;
+    return joined;
 }
 
 double beat_variance(const struct beat *beat)
@@ -93,6 +104,6 @@ double beat_variance(const struct beat *beat)
 
     if (!(beat->swing > 0))
         return 0;
-    left = beat->swing / (PI * fabs(beat->turning) * beat->duration);
+    left = beat->swing * beat->period / (PI * beat->duration);
     return left * left / 2;
 }

@@ -9,7 +9,8 @@
 struct beat {
     double swing;    /* amplitude of the swing, in the unit of the vectors; 0: none stands out */
     double turning;  /* Hz: how fast the swing turns the vector; a line at frequency f does so with
-                        1x - f */
+                        1x - f; NaN: the swing does not turn one way, or it is not known which */
+    double period;   /* s */
     double duration; /* s, from the first block to the last, ends included */
 };
 
@@ -23,6 +24,9 @@ struct beat {
 struct beat beat_of(const double complex *vectors, const double *t, size_t count);
 
 #define BEAT_COUNT_MOST 512
+
+/* A beat that was measured elsewhere, with the duration of `own`; `own` where there is none. */
+struct beat beat_join(const struct beat *measured, struct beat own);
 
 /* What the swing leaves in the mean, as a variance per component: that of a turning vector's mean
  * over the run at a random start, at the worst ratio of period to run. 0 where there is no swing.

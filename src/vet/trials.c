@@ -42,8 +42,7 @@ static void bare_first(struct trials *t)
 
 static bool comparable(const struct trials *t, const struct vet_run *run, const char *condition)
 {
-    if (run->index < 0 || t->job->runs[run->index].role[0] ||
-        strcmp(run->condition, condition) != 0)
+    if (run->index < 0 || facts_role(run, t->job)[0] || strcmp(run->condition, condition) != 0)
         return false;
     for (size_t i = 0; i < t->job->sensor_count; i++)
         if (run->readings[i].present && run->readings[i].use && run->readings[i].has_phase)

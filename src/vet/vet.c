@@ -2,6 +2,7 @@
 #include "vet/vet.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -19,10 +20,10 @@
 #include "vet/orders.h"
 #include "vet/within.h"
 
-/* A sensor's blocks of one run, as far as the beat looks. */
+/* A sensor's blocks of one run, as far as the kernels look. */
 struct blocks {
     double complex vectors[BEAT_COUNT_MOST];
-    double t[BEAT_COUNT_MOST];
+    double t[BEAT_COUNT_MOST], speed[BEAT_COUNT_MOST];
     size_t count;
 };
 
@@ -33,9 +34,10 @@ struct vet {
     struct limits limits;
     struct findings findings;
     struct vet_runs runs;
-    bool open;             /* the last run is still being read */
-    double *nothing;       /* per sensor NaN: no as-found amplitude to refer to */
-    struct blocks *blocks; /* owned, per sensor: of the run that is being read */
+    int open;                    /* position of the run that is being read; -1: none */
+    double *nothing;             /* per sensor NaN: no as-found amplitude to refer to */
+    struct blocks *blocks;       /* owned, per sensor: of the run that is being read */
+    struct curve_record *curves; /* owned, per sensor: likewise, where it is a coast-down */
     long refusals;
     struct finding first; /* the first refusal */
 };
@@ -48,7 +50,7 @@ static int malformed(const struct record *record, const char *why)
 
 static struct vet_run *current(struct vet *v, const char *run)
 {
-    struct vet_run *last = v->open ? &v->runs.items[v->runs.count - 1] : NULL;
+    struct vet_run *last = v->open >= 0 ? &v->runs.items[v->open] : NULL;
 
     return last && !strcmp(last->name, run) ? last : NULL;
 }
@@ -59,39 +61,6 @@ static int foreign(const struct record *record, const char *run)
     return STATUS_USAGE;
 }
 
-/* Makes room for one more run, all its readings absent; NULL: no memory. */
-static struct vet_run *new_run(struct vet *v)
-{
-    size_t sensors = v->stream.job.sensor_count;
-    struct vet_run *run;
-
-    if (v->runs.count == v->runs.room) {
-        size_t room = v->runs.room ? 2 * v->runs.room : 16;
-        struct vet_run *more = realloc(v->runs.items, room * sizeof *more);
-        if (!more)
-            return NULL;
-        v->runs.items = more;
-        v->runs.room = room;
-    }
-    run = &v->runs.items[v->runs.count];
-    *run = (struct vet_run){.index = -1};
-    run->readings = calloc(sensors + 1, sizeof *run->readings);
-    run->channels = calloc(sensors + 1, sizeof *run->channels);
-    if (!run->readings || !run->channels) {
-        free(run->readings);
-        free(run->channels);
-        return NULL;
-    }
-    v->runs.count++;
-    for (size_t i = 0; i < sensors; i++) {
-        struct vet_reading *r = &run->readings[i];
-        r->amplitude = r->two_x = r->half_order = r->neighbour = r->neighbour_order = NAN;
-        r->reason = -1;
-        run->channels[i].same_as = -1;
-    }
-    return run;
-}
-
 static int add_run(struct vet *v, const struct record *record)
 {
     struct run_record r = {0};
@@ -100,7 +69,8 @@ static int add_run(struct vet *v, const struct record *record)
 
     if (run_parse(&r, &v->stream.job, record->json, &why))
         return malformed(record, why);
-    run = new_run(v);
+    v->open = facts_add(&v->runs, v->stream.job.sensor_count);
+    run = v->open >= 0 ? &v->runs.items[v->open] : NULL;
     if (run && r.file_count) {
         run->hashes = calloc(r.file_count, sizeof *run->hashes);
         run->hash_count = run->hashes ? r.file_count : 0;
@@ -118,7 +88,6 @@ static int add_run(struct vet *v, const struct record *record)
     run->hand = r.job_run && r.job_run->hand_count > 0;
     for (size_t i = 0; i < r.file_count; i++)
         memcpy(run->hashes[i], r.files[i].sha256, sizeof run->hashes[i]);
-    v->open = true;
     run_release(&r);
     return STATUS_DONE;
 }
@@ -126,21 +95,40 @@ static int add_run(struct vet *v, const struct record *record)
 static int add_turns(struct vet *v, const struct record *record)
 {
     struct turns_record r = {0};
+    struct vet_run *run;
     const char *why = "";
-    bool known;
 
     if (turns_parse(&r, &v->stream.job, record->json, &why))
         return malformed(record, why);
-    known = current(v, r.run) != NULL;
-    for (size_t i = 0; known && i < r.count; i++) {
+    run = current(v, r.run);
+    if (run)
+        run->turns_seen += r.turns;
+    for (size_t i = 0; run && i < r.count; i++) {
         struct blocks *b = &v->blocks[r.sensors[i]];
         if (b->count == BEAT_COUNT_MOST || isnan(creal(r.vectors[i])))
             continue;
         b->vectors[b->count] = r.vectors[i];
+        b->speed[b->count] = r.speed_rpm;
         b->t[b->count++] = r.t_s;
     }
     turns_release(&r);
-    return known ? STATUS_DONE : foreign(record, r.run);
+    return run ? STATUS_DONE : foreign(record, r.run);
+}
+
+static int add_curve(struct vet *v, const struct record *record)
+{
+    struct curve_record r = {0};
+    const char *why = "";
+
+    if (curve_parse(&r, &v->stream.job, record->json, &why))
+        return malformed(record, why);
+    if (!current(v, r.run)) {
+        curve_release(&r);
+        return foreign(record, r.run);
+    }
+    curve_release(&v->curves[r.sensor]);
+    v->curves[r.sensor] = r;
+    return STATUS_DONE;
 }
 
 static int add_channel(struct vet *v, const struct record *record)
@@ -204,19 +192,40 @@ static int add_spectrum(struct vet *v, const struct record *record)
     return run ? STATUS_DONE : foreign(record, r.run);
 }
 
+static void take_steady(struct vet_reading *to, const struct steady *steady)
+{
+    to->amplitude_pct = steady->amplitude_pct;
+    to->phase_deg = steady->phase_deg;
+    to->drift_pct = steady->drift_pct;
+    to->speed_pct = steady->speed_pct;
+    to->set_aside = steady->set_aside;
+    to->turns = steady->turns;
+    to->independent = steady->independent;
+    to->step_pct = steady->step_pct;
+    to->step_s = steady->step_s;
+    /* A beat that was measured on all blocks; turning as the neighbour does, where that is known.
+     */
+    to->beat =
+        (struct beat){steady->beat_pct / 100 * to->amplitude,
+                      isnan(steady->neighbour_hz) ? NAN : to->speed_rpm / 60 - steady->neighbour_hz,
+                      steady->beat_s, NAN};
+}
+
 static int add_reading(struct vet *v, const struct record *record)
 {
     struct reading_record r;
     struct vet_reading *to;
-    struct vet_run *run;
     const char *why = "";
+    int at;
 
     if (reading_parse(&r, &v->stream.job, record->json, &why))
         return malformed(record, why);
-    run = current(v, r.run);
-    if (!run)
+    if (!current(v, r.run))
         return foreign(record, r.run);
-    to = &run->readings[r.sensor];
+    at = facts_at_condition(&v->runs, v->open, r.condition, v->stream.job.sensor_count);
+    if (at < 0)
+        return message_no_memory();
+    to = &v->runs.items[at].readings[r.sensor];
     if (to->present)
         return malformed(record, "a second reading of a sensor in one run");
     to->present = to->use = true;
@@ -226,12 +235,7 @@ static int add_reading(struct vet *v, const struct record *record)
     memcpy(to->cov, r.cov, sizeof to->cov);
     to->blocks = r.blocks;
     to->speed_rpm = r.speed_rpm;
-    to->amplitude_pct = r.steady.amplitude_pct;
-    to->phase_deg = r.steady.phase_deg;
-    to->drift_pct = r.steady.drift_pct;
-    to->speed_pct = r.steady.speed_pct;
-    to->set_aside = r.steady.set_aside;
-    to->turns = r.steady.turns;
+    take_steady(to, &r.steady);
     to->overall_rms = r.overall.rms;
     to->overall_quantity = r.overall.quantity;
     return STATUS_DONE;
@@ -257,10 +261,13 @@ static void note(struct vet *v, const struct finding *f)
 {
     if (v->refusals++ == 0)
         v->first = *f;
-    for (size_t i = 0; f->run >= 0 && i < v->stream.job.sensor_count; i++) {
-        struct vet_reading *r = &v->runs.items[f->run].readings[i];
-        if ((f->sensor < 0 || f->sensor == (int)i) && r->reason < 0)
-            r->reason = (int)f->check;
+    for (size_t k = f->run < 0 ? v->runs.count : (size_t)f->run; k < v->runs.count; k++) {
+        struct vet_run *run = &v->runs.items[k];
+        if ((int)k != f->run && run->parent != f->run)
+            continue;
+        for (size_t i = 0; i < v->stream.job.sensor_count; i++)
+            if ((f->sensor < 0 || f->sensor == (int)i) && run->readings[i].reason < 0)
+                run->readings[i].reason = (int)f->check;
     }
 }
 
@@ -281,7 +288,11 @@ static int write_findings(struct vet *v)
         strncpy(r.check, row->name, sizeof r.check - 1);
         strncpy(r.unit, f->unit, sizeof r.unit - 1);
         strncpy(r.basis, row->basis, sizeof r.basis - 1);
-        memcpy(r.text, f->text, sizeof r.text);
+        if (f->run >= 0 && v->runs.items[f->run].parent >= 0) /* say which speed is meant */
+            snprintf(r.text, sizeof r.text, "%s: %.*s", v->runs.items[f->run].condition,
+                     (int)(sizeof r.text - NAME_ROOM - 2), f->text);
+        else
+            memcpy(r.text, f->text, sizeof r.text);
         if (f->run >= 0)
             memcpy(r.run, v->runs.items[f->run].name, sizeof r.run);
         if (f->ruling == RULING_REFUSE)
@@ -293,23 +304,41 @@ static int write_findings(struct vet *v)
     return status;
 }
 
+/* What blocks and curves tell, once all of the run has come. */
+static void judge_blocks(struct vet *v)
+{
+    struct vet_run *run = &v->runs.items[v->open];
+    const struct job *job = &v->stream.job;
+
+    for (size_t i = 0; i < job->sensor_count; i++) {
+        struct blocks *b = &v->blocks[i];
+        struct vet_reading *r = &run->readings[i];
+        r->beat = beat_join(&r->beat, beat_of(b->vectors, b->t, b->count));
+        r->resonance = resonance_of(b->vectors, b->speed, b->t, b->count);
+        b->count = 0;
+        for (size_t k = (size_t)v->open + 1; k < v->runs.count; k++) {
+            struct vet_reading *at = &v->runs.items[k].readings[i];
+            const struct curve_record *c = &v->curves[i];
+            if (at->present) /* what was made of the curve */
+                at->resonance = resonance_along(c->vectors, c->speed_rpm, c->count, at->speed_rpm);
+        }
+        curve_release(&v->curves[i]);
+    }
+}
+
 /* Ends the run that is being read: its own findings stand behind its last record. */
 static int finish_run(struct vet *v)
 {
-    int position = (int)v->runs.count - 1;
-    struct vet_run *run = v->open ? &v->runs.items[position] : NULL;
+    struct vet_run *run = v->open >= 0 ? &v->runs.items[v->open] : NULL;
 
-    v->open = false;
     if (!run)
         return STATUS_DONE;
-    for (size_t i = 0; i < v->stream.job.sensor_count; i++) {
-        struct blocks *b = &v->blocks[i];
-        run->readings[i].beat = beat_of(b->vectors, b->t, b->count);
-        b->count = 0;
-    }
-    within_run(run, position, &v->stream.job, &v->findings);
+    judge_blocks(v);
+    within_run(run, v->open, &v->stream.job, &v->findings);
+    facts_hand_down(&v->runs, v->open, v->stream.job.sensor_count);
     if (across_stands_alone(run, &v->stream.job))
-        within_vectors(run, position, v->nothing, &v->stream.job, &v->findings);
+        within_vectors(run, v->open, v->nothing, &v->stream.job, &v->findings);
+    v->open = -1;
     return write_findings(v);
 }
 
@@ -324,6 +353,8 @@ static int take(struct vet *v, const struct record *record)
             status = add_run(v, record);
     } else if (!strcmp(kind, "turns")) {
         status = add_turns(v, record);
+    } else if (!strcmp(kind, "curve")) {
+        status = add_curve(v, record);
     } else if (!strcmp(kind, "channel")) {
         status = add_channel(v, record);
     } else if (!strcmp(kind, "tacho")) {
@@ -369,6 +400,8 @@ static int write_vetted(struct vet *v, const size_t *order)
             if (!from->present)
                 continue;
             memcpy(r.run, run->name, sizeof r.run);
+            if (run->parent >= 0)
+                memcpy(r.condition, run->condition, sizeof r.condition);
             memcpy(r.widen, from->widen, sizeof r.widen);
             vetted_print(&r, &v->stream.job, &v->line);
             status = stream_write(&v->stream, &v->line);
@@ -462,7 +495,8 @@ static int begin(struct vet *v, const struct option_list *files)
     findings_init(&v->findings, &v->limits);
     v->nothing = malloc((v->stream.job.sensor_count + 1) * sizeof *v->nothing);
     v->blocks = calloc(v->stream.job.sensor_count + 1, sizeof *v->blocks);
-    if (!v->nothing || !v->blocks)
+    v->curves = calloc(v->stream.job.sensor_count + 1, sizeof *v->curves);
+    if (!v->nothing || !v->blocks || !v->curves)
         return message_no_memory();
     for (size_t i = 0; i < v->stream.job.sensor_count; i++)
         v->nothing[i] = NAN;
@@ -471,12 +505,10 @@ static int begin(struct vet *v, const struct option_list *files)
 
 static void release(struct vet *v)
 {
-    for (size_t k = 0; k < v->runs.count; k++) {
-        free(v->runs.items[k].hashes);
-        free(v->runs.items[k].readings);
-        free(v->runs.items[k].channels);
-    }
-    free(v->runs.items);
+    for (size_t i = 0; v->curves && i < v->stream.job.sensor_count; i++)
+        curve_release(&v->curves[i]);
+    free(v->curves);
+    facts_release(&v->runs);
     free(v->blocks);
     free(v->nothing);
     findings_release(&v->findings);
@@ -486,7 +518,7 @@ static void release(struct vet *v)
 
 static int loop(const struct option_list *files)
 {
-    struct vet v = {.line = LINE_INIT};
+    struct vet v = {.line = LINE_INIT, .open = -1};
     struct record record;
     int verdict = STATUS_DONE;
     int status = begin(&v, files);

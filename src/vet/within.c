@@ -1,6 +1,7 @@
 #include "vet/within.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "base/angle.h"
@@ -49,48 +50,59 @@ double within_journal_load(const struct job *job)
     return job->centre_m > 0 && job->centre_m < job->span_m ? fmin(a, b) : fmax(a, b);
 }
 
-/* The run's speed: of its first reading; NaN for none. */
-static double speed_of(const struct vet_run *run, const struct job *job)
-{
-    for (size_t i = 0; i < job->sensor_count; i++)
-        if (run->readings[i].present)
-            return run->readings[i].speed_rpm;
-    return NAN;
-}
-
 /* A recording that gave no reading at all: its tacho is to blame, whatever else there is to say. */
 static bool without_turns(const struct vet_run *run, const struct job *job)
 {
     for (size_t i = 0; i < job->sensor_count; i++)
         if (run->readings[i].present)
             return false;
-    return run->has_tacho && !run->hand && !run->unreadable;
+    return run->has_tacho && run->turns_seen == 0 && !run->hand && !run->unreadable;
+}
+
+static bool coasts(const struct vet_run *run, const struct job *job)
+{
+    return !strcmp(facts_role(run, job), "coast-down");
 }
 
 static void check_length(struct vet_run *run, int position, const struct job *job,
                          struct findings *findings)
 {
     long turns = 0;
+    double independent = NAN;
+    enum ruling ruling;
 
-    if (run->hand || run->unreadable || without_turns(run, job))
+    /* A coast-down passes each speed once: how far a reading can be trusted is in its covariance.
+     */
+    if (run->hand || run->unreadable || without_turns(run, job) || coasts(run, job))
         return;
-    for (size_t i = 0; i < job->sensor_count; i++)
-        if (run->readings[i].present && run->readings[i].turns > turns)
-            turns = run->readings[i].turns;
-    if (findings_add(findings, CHECK_LENGTH, position, -1, (double)turns, "%ld turns could be used",
-                     turns) == RULING_REFUSE)
+    for (size_t i = 0; i < job->sensor_count; i++) {
+        const struct vet_reading *r = &run->readings[i];
+        double share = r->independent / (double)r->blocks;
+        if (!r->present || r->turns < turns)
+            continue;
+        turns = r->turns;
+        if (share > 0)
+            independent =
+                fmin((double)turns * fmin(share, 1), isnan(independent) ? INFINITY : independent);
+    }
+    ruling = isnan(independent)
+                 ? findings_add(findings, CHECK_LENGTH, position, -1, (double)turns,
+                                "%ld turns could be used", turns)
+                 : findings_add(findings, CHECK_LENGTH, position, -1, (double)turns,
+                                "%ld turns could be used, worth about %g independent ones", turns,
+                                findings_figure(independent));
+    if (ruling == RULING_REFUSE)
         within_refuse(run, job);
 }
 
 static void check_speed(struct vet_run *run, int position, const struct job *job,
                         struct findings *findings)
 {
-    double speed = speed_of(run, job), spread = NAN, off;
+    double speed = facts_speed(run, job, false), spread = NAN, off;
 
     if (isnan(speed))
         return;
-    /* Readings of a coast-down are named "<condition> @ <speed>" and stand at other speeds. */
-    if (job->service_rpm > 0 && !strstr(run->condition, " @ ")) {
+    if (job->service_rpm > 0 && !facts_role(run, job)[0]) {
         off = 100 * fabs(speed - job->service_rpm) / job->service_rpm;
         if (findings_add(findings, CHECK_SERVICE_SPEED, position, -1, off,
                          "turned at %.0f rpm, %g %% off the service speed of %.0f rpm", speed,
@@ -173,9 +185,17 @@ static void check_reference(struct vet_run *run, int position, const struct job 
     if (without_turns(run, job)) {
         if (findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 1,
                          "there is no usable tacho: %s",
-                         !run->pulses       ? "its channel looks like vibration, not like pulses"
+                         !run->pulses      ? "its channel looks like vibration, not like pulses"
                          : run->marks == 0 ? "its channel gave no mark"
                                            : "too few marks follow one rhythm") == RULING_REFUSE)
+            within_refuse(run, job);
+        return;
+    }
+    if (coasts(run, job)) {
+        if (findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, !run->reference,
+                         run->reference ? "lag is read from one mark a turn"
+                                        : "lag cannot be read: the marks of a turn cannot be told "
+                                          "apart") == RULING_REFUSE)
             within_refuse(run, job);
         return;
     }
@@ -198,7 +218,7 @@ static void check_force(struct vet_run *run, int position, const struct job *job
     if (run->index < 0 || job->runs[run->index].weight_count == 0)
         return;
     if (!(rpm > 0))
-        rpm = speed_of(run, job);
+        rpm = facts_speed(run, job, false);
     force = within_force(&job->runs[run->index], job, rpm);
     share = 100 * force / load;
     if (isnan(share))
@@ -212,7 +232,9 @@ static void check_force(struct vet_run *run, int position, const struct job *job
 void within_run(struct vet_run *run, int position, const struct job *job, struct findings *findings)
 {
     if (run->unreadable && !findings->limits->rows[CHECK_READABLE].off)
-        within_refuse(run, job); /* the finding is read's own */
+        within_refuse(run, job);                   /* the finding is read's own */
+    for (size_t i = 0; i < job->sensor_count; i++) /* a coast-down hands on what is said of it */
+        run->readings[i].use = !run->refused;
     check_length(run, position, job, findings);
     check_speed(run, position, job, findings);
     spread_same(run, job);
@@ -242,19 +264,25 @@ static bool steadiness(const struct vet_reading *r, int position, int s, double 
     return refuse;
 }
 
+/* A lasting jump is a move from start to end as well. */
 static bool drift(struct vet_reading *r, int position, int s, double share,
                   struct findings *findings)
 {
-    double value = r->drift_pct * share, size = r->drift_pct / 100 * r->amplitude;
+    bool jumped = r->step_pct > larger(r->drift_pct, 0);
+    double percent = jumped ? r->step_pct : r->drift_pct;
+    double value = percent * share, size = percent / 100 * r->amplitude;
     enum ruling ruling;
 
     if (isnan(value))
         return false;
-    ruling = value > 0 ? findings_add(findings, CHECK_DRIFT, position, s, value,
-                                      "the vector moved by %g %% from start to end",
-                                      findings_figure(value))
-                       : findings_add(findings, CHECK_DRIFT, position, s, value,
-                                      "no trend stands out from the scatter");
+    ruling = jumped      ? findings_add(findings, CHECK_DRIFT, position, s, value,
+                                        "the vector jumped by %g %% at %g s and stayed",
+                                        findings_figure(value), findings_figure(r->step_s))
+             : value > 0 ? findings_add(findings, CHECK_DRIFT, position, s, value,
+                                        "the vector moved by %g %% from start to end",
+                                        findings_figure(value))
+                         : findings_add(findings, CHECK_DRIFT, position, s, value,
+                                        "no trend stands out from the scatter");
     if (ruling != RULING_OK) {
         r->widen[0] += size * size / 12;
         r->widen[2] += size * size / 12;
@@ -262,26 +290,55 @@ static bool drift(struct vet_reading *r, int position, int s, double share,
     return ruling == RULING_REFUSE;
 }
 
+static void say_neighbour(const struct vet_reading *r, char *to, size_t room)
+{
+    to[0] = '\0';
+    if (!isnan(r->beat.turning))
+        snprintf(to, room, ", as a line at %.2f Hz would make it",
+                 r->speed_rpm / 60 - r->beat.turning);
+}
+
 static bool beats(struct vet_reading *r, int position, int s, double share,
                   struct findings *findings)
 {
     double value = 100 * r->beat.swing / r->amplitude * share, variance;
     enum ruling ruling;
+    char neighbour[64];
 
     if (isnan(value))
         return false;
+    say_neighbour(r, neighbour, sizeof neighbour);
     ruling = value > 0
                  ? findings_add(findings, CHECK_BEAT, position, s, value,
-                                "the vector swings by %g %% every %g s, as a line at %.2f Hz would "
-                                "make it",
-                                findings_figure(value), findings_figure(1 / fabs(r->beat.turning)),
-                                r->speed_rpm / 60 - r->beat.turning)
+                                "the vector swings by %g %% every %g s%s", findings_figure(value),
+                                findings_figure(r->beat.period), neighbour)
                  : findings_add(findings, CHECK_BEAT, position, s, value,
                                 "no periodic swing stands out from the scatter");
     variance = ruling == RULING_OK ? 0 : beat_variance(&r->beat);
     r->widen[0] += variance;
     r->widen[2] += variance;
     return ruling == RULING_REFUSE;
+}
+
+/* Lag against speed, where lag counts at all. */
+static bool resonates(const struct vet_reading *r, int position, int s, double share,
+                      struct findings *findings)
+{
+    double caution = findings->limits->rows[CHECK_NEAR_RESONANCE].caution;
+    const struct resonance *found = &r->resonance;
+    bool out = resonance_stands_out(found);
+
+    if (!(share > WITHIN_LAG_SHARE) || isnan(found->slope))
+        return false;
+    if (!out && !(found->error < caution / 2)) {
+        findings_rule(findings, CHECK_NEAR_RESONANCE, RULING_OK, position, s, NAN, NAN, "",
+                      "the speed held too steady to tell how the lag turns with it");
+        return false;
+    }
+    return findings_add(findings, CHECK_NEAR_RESONANCE, position, s, out ? fabs(found->slope) : 0,
+                        "the lag turns by %g +- %g deg per %% of speed",
+                        findings_figure(found->slope),
+                        findings_figure(2 * found->error)) == RULING_REFUSE;
 }
 
 /* Is it unbalance at all? Cautions only, on runs without weights. */
@@ -317,7 +374,8 @@ static bool orders(const struct vet_reading *r, int position, int s, const struc
 void within_vectors(struct vet_run *run, int position, const double *as_found,
                     const struct job *job, struct findings *findings)
 {
-    bool bare = run->index < 0 || job_run_is_bare(job, (size_t)run->index);
+    bool bare =
+        run->index < 0 || (job_run_is_bare(job, (size_t)run->index) && !facts_role(run, job)[0]);
 
     for (size_t i = 0; i < job->sensor_count; i++) {
         struct vet_reading *r = &run->readings[i];
@@ -327,8 +385,10 @@ void within_vectors(struct vet_run *run, int position, const double *as_found,
             continue;
         refuse |= steadiness(r, position, (int)i, share, findings);
         refuse |= drift(r, position, (int)i, share, findings);
-        if (r->has_phase)
+        if (r->has_phase) {
             refuse |= beats(r, position, (int)i, share, findings);
+            refuse |= resonates(r, position, (int)i, share, findings);
+        }
         if (bare)
             refuse |= orders(r, position, (int)i, job, findings);
         if (refuse)

@@ -16,11 +16,11 @@
 void within_run(struct vet_run *run, int position, const struct job *job,
                 struct findings *findings);
 
-/* Checks of its vectors: amplitude-steady, phase-steady, drift, beat, and on as-found and audited
- * runs one-x-share, two-x, half-order, neighbour. as_found: SI peak amplitude per sensor, NaN where
- * there is none. Also adds to `widen` what a drift that tripped leaves open: d^2/12 on each
- * component, the variance along a straight path of length d; and what a beat that tripped does
- * (beat.h). */
+/* Checks of its vectors: amplitude-steady, phase-steady, drift, beat, near-resonance, and on
+ * as-found and audited runs one-x-share, two-x, half-order, neighbour. as_found: SI peak amplitude
+ * per sensor, NaN where there is none. Also adds to `widen` what a drift that tripped leaves open:
+ * d^2/12 on each component, the variance along a straight path of length d; and what a beat that
+ * tripped does (beat.h). */
 void within_vectors(struct vet_run *run, int position, const double *as_found,
                     const struct job *job, struct findings *findings);
 

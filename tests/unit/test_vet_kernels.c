@@ -129,7 +129,7 @@ static void beats(void **state)
  * two components. */
 static void what_a_beat_leaves(void **state)
 {
-    struct beat beat = {2, -0.25, 20};
+    struct beat beat = {2, -0.25, 4, 20};
 
     (void)state;
     near(beat_variance(&beat), pow(2 / (3.14159265358979 * 5), 2) / 2, 1e-12);

@@ -14,6 +14,10 @@ void vet_desk_reading(int run, int sensor, double complex vector)
                                                       .amplitude_pct = 1,
                                                       .phase_deg = 1,
                                                       .drift_pct = 0,
+                                                      .independent = NAN,
+                                                      .step_pct = NAN,
+                                                      .step_s = NAN,
+                                                      .resonance = {NAN, NAN},
                                                       .speed_pct = 0.1,
                                                       .turns = 600,
                                                       .overall_rms = NAN,
@@ -64,6 +68,7 @@ void vet_desk_set(void)
         strcpy(desk.items[r].condition, "service");
         memset(desk.hashes[r][0], 'a' + r, 64);
         desk.items[r].index = r;
+        desk.items[r].parent = -1;
         desk.items[r].has_tacho = desk.items[r].reference = true;
         desk.items[r].marks = 600;
         desk.items[r].hashes = desk.hashes[r];
