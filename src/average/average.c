@@ -2,11 +2,13 @@
 #include "average/average.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
 #include "average/mean.h"
 #include "average/overall.h"
+#include "average/sweep.h"
 #include "base/message.h"
 #include "base/options.h"
 #include "base/status.h"
@@ -16,9 +18,10 @@
 
 /* What one run has brought for one sensor. */
 struct track_of {
-    double complex *vectors; /* owned, as the three below; NaN where there is no phase */
+    double complex *vectors; /* owned, as the three below; NaN where there is nothing */
     double *turns, *t, *speed;
     size_t count, room;
+    bool amplitudes; /* the blocks brought amplitudes only; they stand in `vectors` */
     struct spectrum_record spectrum; /* owned; count 0: none */
 };
 
@@ -44,6 +47,7 @@ static void gather_clear(struct gather *g)
 {
     for (size_t i = 0; i < g->sensor_count; i++) {
         g->sensors[i].count = 0;
+        g->sensors[i].amplitudes = false;
         spectrum_release(&g->sensors[i].spectrum);
         g->sensors[i].spectrum = (struct spectrum_record){0};
     }
@@ -122,6 +126,10 @@ static int add_turns(struct gather *g, const struct record *record, const struct
             break;
         }
         s->vectors[s->count] = r.vectors[i];
+        if (isnan(creal(r.vectors[i])) && !isnan(r.amplitudes[i])) {
+            s->vectors[s->count] = r.amplitudes[i];
+            s->amplitudes = true;
+        }
         s->turns[s->count] = (double)r.turns;
         s->t[s->count] = r.t_s;
         s->speed[s->count++] = r.speed_rpm;
@@ -191,15 +199,21 @@ static void drop_empty(struct track_of *s)
         s->count = kept;
 }
 
-/* The reading of a sensor from its blocks: 0 made, 1 nothing to make it of, -1 no memory. */
-static int reading_of_blocks(struct reading_record *r, struct track_of *s, bool reference)
+static bool is_empty(const struct track_of *s) /* after drop_empty */
 {
+    return s->count == 0 || isnan(creal(s->vectors[0])) || isnan(cimag(s->vectors[0]));
+}
+
+/* The reading of a sensor from its blocks: 0 made, 1 nothing to make it of, -1 no memory. */
+static int reading_of_blocks(struct reading_record *r, struct track_of *s, bool marks)
+{
+    bool reference = marks && !s->amplitudes;
     struct mean mean;
     double *amplitudes;
     int result;
 
     drop_empty(s);
-    if (isnan(creal(s->vectors[0])) || isnan(cimag(s->vectors[0])))
+    if (is_empty(s))
         return 1;
     r->has_phase = reference;
     if (reference) {
@@ -262,13 +276,134 @@ static void fill_overall(struct reading_record *r, const struct track_of *s, con
                                  r->speed_rpm, sensor->quantity, sensor->show.quantity);
 }
 
-/* Writes the readings of the run gathered so far, and forgets it. */
-static int finish_run(struct gather *g, struct stream *stream, struct line *line)
+/* ---- coast-downs ---- */
+
+static int write_curve(const struct gather *g, int sensor, struct stream *stream, struct line *line)
+{
+    const struct track_of *s = &g->sensors[sensor];
+    struct curve_record r = {
+        .sensor = sensor, .speed_rpm = s->speed, .vectors = s->vectors, .count = s->count};
+
+    memcpy(r.run, g->run, sizeof r.run);
+    curve_print(&r, &stream->job, line);
+    return stream_write(stream, line);
+}
+
+/* Why a listed speed has no reading. */
+static int write_no_reading(const struct gather *g, double speed_rpm, const char *why,
+                            struct stream *stream, struct line *line)
+{
+    struct finding_record r = {.stage = "average",
+                               .check = "coast-down",
+                               .verdict = VERDICT_CAUTION,
+                               .sensor = -1,
+                               .value = speed_rpm,
+                               .limit = NAN,
+                               .unit = "rpm",
+                               .basis = "what was recorded"};
+
+    memcpy(r.run, g->run, sizeof r.run);
+    snprintf(r.text, sizeof r.text, "no reading at %.10g rpm: %s", speed_rpm, why);
+    finding_print(&r, &stream->job, line);
+    return stream_write(stream, line);
+}
+
+static void explain_no_reading(const struct track_of *s, enum sweep_result result, char *why,
+                               size_t room)
+{
+    double least = INFINITY, most = 0;
+
+    for (size_t k = 0; k < s->count; k++) {
+        least = fmin(least, s->speed[k]);
+        most = fmax(most, s->speed[k]);
+    }
+    if (result == SWEEP_SPARSE)
+        snprintf(why, room, "the run has only %zu blocks with a vector; record more of it",
+                 s->count);
+    else if (least <= most)
+        snprintf(why, room, "the run went from %.0f to %.0f rpm and not steadily through it", least,
+                 most);
+    else
+        snprintf(why, room, "the run has no blocks");
+}
+
+static int write_swept(const struct gather *g, int sensor, double speed_rpm,
+                       const struct sweep_fit *fit, struct stream *stream, struct line *line)
+{
+    struct reading_record r = {.sensor = sensor,
+                               .speed_rpm = speed_rpm,
+                               .has_phase = true,
+                               .vector = fit->vector,
+                               .amplitude = cabs(fit->vector),
+                               .cov = {fit->variance, 0, fit->variance},
+                               .blocks = (long)fit->used,
+                               .steady = steady_unknown(),
+                               .overall = {.rms = NAN}};
+
+    memcpy(r.run, g->run, sizeof r.run);
+    /* The sheet has seen to it that the name fits. */
+    (void)job_speed_condition(g->condition, speed_rpm, r.condition);
+    r.steady.turns = lround(fit->turns);
+    r.steady.independent = fit->freedom;
+    r.overall.quantity = stream->job.sensors[sensor].show.quantity;
+    reading_print(&r, &stream->job, line);
+    return stream_write(stream, line);
+}
+
+/* One listed speed, all sensors; `told` where the missing reading has been explained. */
+static int read_speed(struct gather *g, double speed_rpm, struct stream *stream, struct line *line)
+{
+    bool reference = !g->has_tacho || g->tacho.reference, told = false;
+    int status = STATUS_DONE;
+
+    for (size_t i = 0; status == STATUS_DONE && i < g->sensor_count; i++) {
+        struct track_of *s = &g->sensors[i];
+        struct sweep sweep = {s->t, s->speed, s->turns, s->vectors, s->count};
+        struct sweep_fit fit;
+        char why[200] = "its marks carry no phase; use one mark a turn";
+        bool phase = reference && !s->amplitudes && !is_empty(s);
+        int result = SWEEP_SPARSE;
+        if (s->count == 0)
+            continue;
+        if (phase)
+            result = sweep_at(&sweep, speed_rpm, &fit);
+        if (result < 0)
+            status = message_no_memory();
+        else if (result == SWEEP_MADE)
+            status = write_swept(g, (int)i, speed_rpm, &fit, stream, line);
+        else if (!told) {
+            if (phase)
+                explain_no_reading(s, (enum sweep_result)result, why, sizeof why);
+            status = write_no_reading(g, speed_rpm, why, stream, line);
+            told = true;
+        }
+    }
+    return status;
+}
+
+static int finish_coast_down(struct gather *g, const struct job_run *run, struct stream *stream,
+                             struct line *line)
+{
+    int status = STATUS_DONE;
+
+    for (size_t i = 0; status == STATUS_DONE && i < g->sensor_count; i++) {
+        drop_empty(&g->sensors[i]);
+        if (!is_empty(&g->sensors[i]) && !g->sensors[i].amplitudes)
+            status = write_curve(g, (int)i, stream, line);
+    }
+    for (size_t i = 0; status == STATUS_DONE && i < run->speed_count; i++)
+        status = read_speed(g, run->speeds_rpm[i], stream, line);
+    return status;
+}
+
+/* ---- the stage ---- */
+
+static int finish_steady(struct gather *g, struct stream *stream, struct line *line)
 {
     bool reference = !g->has_tacho || g->tacho.reference;
     int status = STATUS_DONE;
 
-    for (size_t i = 0; g->open && status == STATUS_DONE && i < g->sensor_count; i++) {
+    for (size_t i = 0; status == STATUS_DONE && i < g->sensor_count; i++) {
         struct track_of *s = &g->sensors[i];
         struct reading_record r = {.sensor = (int)i};
         int made = s->count ? reading_of_blocks(&r, s, reference) : 1;
@@ -285,6 +420,19 @@ static int finish_run(struct gather *g, struct stream *stream, struct line *line
         reading_print(&r, &stream->job, line);
         status = stream_write(stream, line);
     }
+    return status;
+}
+
+/* Writes the readings of the run gathered so far, and forgets it. */
+static int finish_run(struct gather *g, struct stream *stream, struct line *line)
+{
+    int index = g->open ? job_find_run(&stream->job, g->run) : -1, status = STATUS_DONE;
+    const struct job_run *run = index < 0 ? NULL : &stream->job.runs[index];
+
+    if (run && run->speed_count > 0)
+        status = finish_coast_down(g, run, stream, line);
+    else if (g->open)
+        status = finish_steady(g, stream, line);
     gather_clear(g);
     return status;
 }

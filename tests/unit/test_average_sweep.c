@@ -1,0 +1,149 @@
+/* Readings of a coast-down against the closed-form response of the simulated rotor, whose equations of
+ * motion are integrated right through a critical speed. */
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+#include <stdio.h>
+
+#include <cmocka.h>
+
+#include <math.h>
+#include <stdlib.h>
+
+#include "average/sweep.h"
+#include "sim/rng.h"
+#include "sim/rotor.h"
+
+#define PI_HERE 3.14159265358979323846
+#define RATE 2048.0
+#define BLOCKS 3000
+
+struct blocks {
+    double t[BLOCKS], speed[BLOCKS], turns[BLOCKS];
+    double complex z[BLOCKS];
+    size_t count;
+};
+
+/* A rotor with one critical speed near 1200 rpm and one above, on a softer and a stiffer axis. */
+static struct rotor machine(double rpm, double sweep, double damping)
+{
+    struct rotor r = {.direction = 1, .rpm = rpm, .sweep_rpm_s = sweep, .mode_count = 2,
+                      .sensor_count = 1};
+    r.modes[0] = (struct rotor_mode){20, 20.5, damping, 500, {1}, {0.9}};
+    r.modes[1] = (struct rotor_mode){55, 60, 0.04, 300, {1}, {-0.5}};
+    r.sensors[0] = (struct rotor_sensor){90, ROTOR_VELOCITY};
+    return r;
+}
+
+static const struct rotor_mass HEAVY = {0, 0.05, 0.4, 40};
+
+/* The mean of 2 x exp(j angle) over whole turns: the trapezoid in the angle. */
+static void demodulate(const struct rotor *r, const double *x, size_t n, long turns, double noise,
+                       struct rng *rng, struct blocks *out)
+{
+    double from = 0, last = 0, start_t = 0, before = 0;
+    double complex sum = 0, previous = 2 * x[0];
+
+    out->count = 0;
+    for (size_t i = 1; i < n; i++) {
+        double angle, t = (double)i / RATE;
+        rotor_turned(r, t, &angle, NULL, NULL);
+        double complex y = 2 * x[i] * cexp(I * angle);
+        double end = from + 2 * PI_HERE * (double)turns;
+        if (angle < end) {
+            sum += (y + previous) / 2 * (angle - last);
+        } else { /* the piece up to the end of the block, linearly */
+            double part = (end - last) / (angle - last);
+            double complex middle = previous + (y - previous) * part;
+            double end_t = before + part / RATE;
+            sum += (previous + middle) / 2 * (end - last);
+            out->t[out->count] = (start_t + end_t) / 2;
+            out->speed[out->count] = 60 * (double)turns / (end_t - start_t);
+            out->turns[out->count] = (double)turns;
+            out->z[out->count] = sum / (end - from);
+            if (noise > 0)
+                out->z[out->count] += noise * CMPLX(rng_normal(rng), rng_normal(rng));
+            out->count++;
+            sum = (middle + y) / 2 * (angle - end);
+            from = end;
+            start_t = end_t;
+        }
+        previous = y;
+        last = angle;
+        before = t;
+    }
+}
+
+static void record(double rpm, double sweep, double damping, double seconds, long turns,
+                   double noise, uint64_t seed, struct blocks *out)
+{
+    struct rotor r = machine(rpm, sweep, damping);
+    size_t n = (size_t)(seconds * RATE);
+    double *x = malloc(n * sizeof *x);
+    struct rng rng;
+
+    assert_non_null(x);
+    rng_init(&rng, seed);
+    rotor_run(&r, &HEAVY, 1, RATE, n, sweep != 0 ? 2 : 0, x);
+    demodulate(&r, x, n, turns, noise, &rng, out);
+    free(x);
+}
+
+/* The same rotor at a constant speed, without noise: the closed form of its steady state. */
+static double complex truth(double rpm, double damping)
+{
+    static struct blocks b;
+
+    record(rpm, 0, damping, 4, 16, 0, 1, &b);
+    assert_true(b.count >= 2);
+    return b.z[1];
+}
+
+static struct sweep_fit fit_of(const struct blocks *b, double rpm)
+{
+    struct sweep s = {b->t, b->speed, b->turns, b->z, b->count};
+    struct sweep_fit fit;
+
+    assert_int_equal(sweep_at(&s, rpm, &fit), SWEEP_MADE);
+    return fit;
+}
+
+static void compare(double start, double sweep, double damping, long turns)
+{
+    static const double SPEEDS[] = {900, 1100, 1160, 1200, 1240, 1300, 1450};
+    static struct blocks b;
+
+    record(start, sweep, damping, fabs((1560.0 - 840) / sweep), turns, 0, 1, &b);
+    for (size_t i = 0; i < sizeof SPEEDS / sizeof *SPEEDS; i++) {
+        double complex z = truth(SPEEDS[i], damping);
+        struct sweep_fit fit = fit_of(&b, SPEEDS[i]);
+        double size = cabs(fit.vector) / cabs(z) - 1, lag = carg(fit.vector / z) * 180 / PI_HERE;
+        if (getenv("LOPSIDE_SHOW"))
+            printf("%5.0f rpm/s damping %.2f %5.0f rpm: %+.2f %% %+.2f deg, s.e. %.2f %% (%zu blocks)\n",
+                   sweep, damping, SPEEDS[i], 100 * size, lag, 100 * sqrt(fit.variance) / cabs(z),
+                   fit.used);
+        if (!(fabs(size) < 0.02 && fabs(lag) < 2)) /* the bar: 2 % and 2 deg up to 20 rpm/s */
+            fail_msg("%g rpm/s, damping %g, %g rpm: %+.2f %% %+.2f deg", sweep, damping, SPEEDS[i],
+                     100 * size, lag);
+    }
+}
+
+static void follows_the_closed_form(void **state)
+{
+    (void)state;
+    compare(1560, -5, 0.05, 4);
+    compare(1560, -20, 0.05, 4);
+    compare(840, 20, 0.05, 4);
+    compare(1560, -10, 0.04, 8);
+    compare(1560, -5, 0.03, 4);
+}
+
+int main(void)
+{
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(follows_the_closed_form),
+    };
+    cmocka_set_message_output(CM_OUTPUT_STDOUT);
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
