@@ -9,40 +9,15 @@
 #include "solve/trial.h"
 #include "solve/turn.h"
 
-struct limits {
-    bool off;
-    double caution, refuse;
-};
-
-/* The sheet's limits of a check over the defaults. */
-static struct limits limits_of(const struct job *job, const char *check, double caution,
-                               double refuse)
-{
-    struct limits l = {false, caution, refuse};
-    for (size_t i = 0; i < job->limit_count; i++) {
-        if (strcmp(job->limits[i].check, check))
-            continue;
-        l.off = job->limits[i].off;
-        if (!isnan(job->limits[i].caution))
-            l.caution = job->limits[i].caution;
-        if (!isnan(job->limits[i].refuse))
-            l.refuse = job->limits[i].refuse;
-    }
-    return l;
-}
-
-static void judge(struct advice_finding *f, const struct limits *l, double value)
+static void judge(struct advice_finding *f, const struct judge_limits *l, double value)
 {
     f->value = value;
-    f->verdict = value >= l->refuse    ? ADVICE_REFUSE
-                 : value >= l->caution ? ADVICE_CAUTION
-                                       : ADVICE_OK;
-    f->limit = f->verdict == ADVICE_REFUSE ? l->refuse : l->caution;
+    f->verdict = judge_value(l, value, &f->limit);
 }
 
 bool advice_linearity(const struct model *m, const struct model_row *row, struct advice_finding *f)
 {
-    struct limits l = limits_of(m->job, "linearity", 3, 10);
+    struct judge_limits l = judge_limits_of(m->job, "linearity", 3, 10);
     if (l.off || isnan(row->misfit) || row->state != MODEL_GOOD)
         return false;
     *f = (struct advice_finding){.check = "linearity",
@@ -65,7 +40,7 @@ bool advice_linearity(const struct model *m, const struct model_row *row, struct
 
 bool advice_turn(const struct model *m, size_t plane, struct advice_finding *f)
 {
-    struct limits l = limits_of(m->job, "lag-follows-weight", 3, INFINITY);
+    struct judge_limits l = judge_limits_of(m->job, "lag-follows-weight", 3, INFINITY);
     struct turn_figure worst = {0}, figure;
     const struct model_row *row = NULL;
     for (size_t r = 0; r < m->row_count && !m->amplitudes && !l.off; r++) {
@@ -98,22 +73,6 @@ bool advice_turn(const struct model *m, size_t plane, struct advice_finding *f)
     return true;
 }
 
-/* A figure to so many digits, without an exponent. */
-struct figure {
-    char text[32];
-};
-
-static struct figure figure_of(double value, int digits)
-{
-    struct figure f;
-    double size = value == 0 || !isfinite(value) ? 1 : floor(log10(fabs(value)));
-    double unit = pow(10, size - digits + 1);
-    int decimals = digits - 1 - (int)size;
-    snprintf(f.text, sizeof f.text, "%.*f", decimals > 0 ? (decimals > 9 ? 9 : decimals) : 0,
-             round(value / unit) * unit);
-    return f;
-}
-
 static double weight_unit(const struct job *job, const char **name)
 {
     *name = job->units == UNITS_US ? "oz" : "g";
@@ -134,7 +93,7 @@ static void weak_planes(const struct answer *a, char *text, size_t size)
 bool advice_conditioning(const struct answer *a, struct advice_finding *f)
 {
     const struct job *job = a->model->job;
-    struct limits l = limits_of(job, "conditioning", 10, 100);
+    struct judge_limits l = judge_limits_of(job, "conditioning", 10, 100);
     bool short_of_rows = isinf(a->condition);
     if (a->planes < 2 && !short_of_rows)
         return false;
@@ -172,7 +131,7 @@ bool advice_conditioning(const struct answer *a, struct advice_finding *f)
              "planes %s are hardly told apart%s; a run with trial weights on both, %.0f deg apart, "
              "%s times the mass on '%s', would show the difference best",
              names, f->verdict == ADVICE_REFUSE ? "" : ", so the weights are kept moderate", apart,
-             figure_of(cabs(a->weak[second]), 2).text, job->planes[second].name);
+             judge_figure(cabs(a->weak[second]), 2).text, job->planes[second].name);
     return true;
 }
 
@@ -195,7 +154,7 @@ static double journal_load(const struct job *job, size_t plane)
 bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f)
 {
     const struct job *job = a->model->job;
-    struct limits l = limits_of(job, "correction-force", 15, 50);
+    struct judge_limits l = judge_limits_of(job, "correction-force", 15, 50);
     if (l.off || !(job->rotor_mass > 0) || !(job->service_rpm > 0))
         return false;
     double load = journal_load(job, plane) * TRIAL_GRAVITY;
@@ -215,8 +174,8 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
     snprintf(f->text, sizeof f->text,
              "what is placed on '%s' pulls with %s N at service speed, %s %% of the static journal "
              "load%s",
-             job->planes[plane].name, figure_of(force, 2).text,
-             figure_of(100 * force / load, 2).text,
+             job->planes[plane].name, judge_figure(force, 2).text,
+             judge_figure(100 * force / load, 2).text,
              f->verdict == ADVICE_OK ? ""
                                      : "; check rotor mass, speed, radius and readings before it "
                                        "is fitted");
@@ -311,7 +270,7 @@ static size_t trial_words(const struct job *job, size_t p, const struct advice_t
     if (isnan(t->mass))
         return (size_t)snprintf(text, size, "'%s'", job->planes[p].name);
     return (size_t)snprintf(text, size, "'%s' about %s %s (%s N)", job->planes[p].name,
-                            figure_of(t->mass / kg, 3).text, unit, figure_of(t->force, 2).text);
+                            judge_figure(t->mass / kg, 3).text, unit, judge_figure(t->force, 2).text);
 }
 
 static bool plane_is_bare(const struct job *job, size_t p)
@@ -323,15 +282,16 @@ static bool plane_is_bare(const struct job *job, size_t p)
 }
 
 /* Appends the trial weights of the planes that no run has tried yet. */
-static void list_trials(const struct job *job, struct advice_next *next)
+static void list_trials(const struct model *m, struct advice_next *next)
 {
+    const struct job *job = m->job;
     struct advice_trial trials[16];
     size_t length = strlen(next->text), count = 0;
     if (job->plane_count > 16)
         return;
     advice_trials(job, trials);
     for (size_t p = 0; p < job->plane_count && length + 80 < sizeof next->text; p++) {
-        if (!plane_is_bare(job, p))
+        if (!plane_is_bare(job, p) || m->held[p])
             continue;
         length += (size_t)snprintf(next->text + length, sizeof next->text - length, "%s",
                                    count++ ? ", " : ": ");
@@ -351,7 +311,7 @@ void advice_trial_step(const struct model *m, struct advice_next *next)
              : m->job->plane_count == 1
                  ? "run with a trial weight at any convenient position"
                  : "run with a trial weight, one plane at a time, at any convenient position");
-    list_trials(m->job, next);
+    list_trials(m, next);
 }
 
 void advice_repeat_step(const struct model *m, const struct ruling *ruling,
@@ -423,11 +383,11 @@ void advice_missing_step(const struct model *m, const struct ruling *ruling,
         return;
     }
     for (size_t p = 0; p < job->plane_count; p++)
-        if (plane_is_bare(job, p)) {
+        if (plane_is_bare(job, p) && !m->held[p]) {
             snprintf(next->reason, sizeof next->reason,
                      "a run is missing: none carries a weight on plane '%s'", job->planes[p].name);
             snprintf(next->text, sizeof next->text, "run with a trial weight on");
-            list_trials(job, next);
+            list_trials(m, next);
             return;
         }
     if (!known_first && (!ruling->row || ruling->row->count <= job->plane_count)) {
@@ -489,11 +449,17 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
         snprintf(
             next->text + length, sizeof next->text - length,
             "; a better placement is not ruled out, by %s %% of the expected vibration at most",
-            figure_of(
+            judge_figure(
                 100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from)),
                 2)
                 .text);
+    else if (a->placement.cut)
+        snprintf(next->text + length, sizeof next->text - length,
+                 "; that fewer pieces would not do as well is not proven");
     length = strlen(next->text);
+    if (a->static_only)
+        length += (size_t)snprintf(next->text + length, sizeof next->text - length,
+                                   "; the static part comes first, the couple after that run");
     if (a->model->amplitudes)
         length += (size_t)snprintf(next->text + length, sizeof next->text - length,
                                    "; found from amplitudes alone, no lag is meant");

@@ -6,13 +6,12 @@
 #include <stddef.h>
 
 #include "solve/answer.h"
+#include "solve/judge.h"
 #include "solve/ruling.h"
-
-enum advice_verdict { ADVICE_OK, ADVICE_CAUTION, ADVICE_REFUSE };
 
 struct advice_finding {
     const char *check, *unit, *basis; /* static */
-    enum advice_verdict verdict;
+    enum judge_verdict verdict;
     int run, sensor; /* -1: none */
     double value, limit;
     char text[400];

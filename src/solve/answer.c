@@ -9,6 +9,8 @@
 #include "sheet/units.h"
 #include "solve/chebyshev.h"
 #include "solve/correct.h"
+#include "solve/drill.h"
+#include "solve/parts.h"
 #include "solve/ruling.h"
 
 static int room(struct answer *a, size_t most)
@@ -20,6 +22,7 @@ static int room(struct answer *a, size_t most)
     a->se = calloc(most + 1, sizeof *a->se);
     a->mounted = calloc(q, sizeof *a->mounted);
     a->weights = calloc(q, sizeof *a->weights);
+    a->full = calloc(q, sizeof *a->full);
     a->classical = calloc(q, sizeof *a->classical);
     a->ellipse = calloc(4 * p * p + 1, sizeof *a->ellipse);
     a->weak = calloc(q, sizeof *a->weak);
@@ -29,7 +32,7 @@ static int room(struct answer *a, size_t most)
     a->forecasts = calloc(most + 1, sizeof *a->forecasts);
     a->residuals = calloc(q, sizeof *a->residuals);
     return a->row && a->posterior && a->scale && a->se && a->mounted && a->weights &&
-                   a->classical && a->ellipse && a->weak && a->forms && a->certain &&
+                   a->full && a->classical && a->ellipse && a->weak && a->forms && a->certain &&
                    a->placed_weights && a->forecasts && a->residuals
                ? ANSWER_OK
                : ANSWER_NO_MEMORY;
@@ -62,6 +65,16 @@ static bool shared_quantity(const struct answer *a)
     return true;
 }
 
+/* How many times a condition counts in the aim. */
+static double importance(const struct answer *a, size_t condition)
+{
+    const struct job_aim *aim = &a->model->job->aim;
+    for (size_t i = 0; i < aim->importance_count; i++)
+        if (!strcmp(aim->importances[i].condition, a->model->conditions[condition]))
+            return aim->importances[i].factor;
+    return 1;
+}
+
 static void set_scales(struct answer *a)
 {
     bool targets = false, shared = shared_quantity(a);
@@ -79,6 +92,7 @@ static void set_scales(struct answer *a)
         else
             a->scale[r] =
                 cabs(units_convert(1, s->quantity, s->show.quantity, row->speed_rpm * PI / 30));
+        a->scale[r] *= importance(a, row->condition);
     }
 }
 
@@ -142,6 +156,7 @@ void answer_release(struct answer *a)
     free(a->weak);
     free(a->ellipse);
     free(a->classical);
+    free(a->full);
     free(a->weights);
     free(a->mounted);
     free(a->se);
@@ -149,43 +164,6 @@ void answer_release(struct answer *a)
     free(a->posterior);
     free(a->row);
     memset(a, 0, sizeof *a);
-}
-
-int answer_correct(struct answer *a)
-{
-    size_t square = (a->planes + 1) * (a->planes + 1);
-    int result = correct_least_squares(a->posterior, a->scale, a->rows, a->planes, a->classical);
-    if (result == CORRECT_OK)
-        result = correct_covariance(a->posterior, a->scale, a->rows, a->planes, a->classical,
-                                    a->ellipse);
-    if (result != CORRECT_OK)
-        return result;
-    memcpy(a->weights, a->classical, a->planes * sizeof *a->weights);
-    double largest;
-    if (a->model->job->aim.minimise == MINIMISE_WORST)
-        return chebyshev_solve(a->forms, a->rows, a->planes, a->weights, &largest);
-    double complex *sum = calloc(square, sizeof *sum);
-    if (!sum)
-        return ANSWER_NO_MEMORY;
-    for (size_t r = 0; r < a->rows; r++)
-        for (size_t i = 0; i < square; i++)
-            sum[i] += a->forms[r * square + i];
-    result = correct_quadratic(sum, a->planes, a->weights);
-    free(sum);
-    return result;
-}
-
-/* ---- placement ---- */
-
-static bool ideal_fits(const struct answer *a)
-{
-    for (size_t p = 0; p < a->planes; p++) {
-        const struct job_plane *plane = &a->model->job->planes[p];
-        double mass = cabs(a->weights[p]);
-        if (!plane->any_position || plane->stock || mass > plane->most || mass > plane->most_in_all)
-            return false;
-    }
-    return true;
 }
 
 /* Sum or largest of the rows' forms at w. */
@@ -202,6 +180,94 @@ static double objective(const struct answer *a, const double complex *forms,
     return a->model->job->aim.minimise == MINIMISE_WORST ? most : sum;
 }
 
+/* The noise of the placement's rule (place.h) about w. */
+static double noise_at(const struct answer *a, const double complex *w)
+{
+    return fmax(a->floor, 0.1 * (objective(a, a->forms, w) - objective(a, a->certain, w)));
+}
+
+/* Minimises the rows' forms of `planes` unknowns as the aim says, from `w`. */
+static int minimise(const struct answer *a, const double complex *forms, size_t planes,
+                    double complex *w)
+{
+    size_t square = (planes + 1) * (planes + 1);
+    double largest;
+    if (a->model->job->aim.minimise == MINIMISE_WORST)
+        return chebyshev_solve(forms, a->rows, planes, w, &largest);
+    double complex *sum = calloc(square, sizeof *sum);
+    if (!sum)
+        return ANSWER_NO_MEMORY;
+    for (size_t r = 0; r < a->rows; r++)
+        for (size_t i = 0; i < square; i++)
+            sum[i] += forms[r * square + i];
+    int result = correct_quadratic(sum, planes, w);
+    free(sum);
+    return result;
+}
+
+/* The best static weight of two planes; it is all that is placed first, as long as it helps, where
+ * the aim says so. */
+static int correct_static(struct answer *a)
+{
+    double radius[2] = {a->model->job->planes[0].radius_m, a->model->job->planes[1].radius_m};
+    double complex *reduced = calloc(4 * a->rows + 1, sizeof *reduced);
+    if (!reduced)
+        return ANSWER_NO_MEMORY;
+    double complex couple, zero[2] = {0, 0};
+    parts_split(a->full, radius, &a->static_alone, &couple); /* where to begin */
+    parts_reduce(a->forms, a->rows, radius, reduced);
+    int result = minimise(a, reduced, 1, &a->static_alone);
+    free(reduced);
+    if (result != ANSWER_OK)
+        return result;
+    double complex alone[2] = {a->static_alone / radius[0], a->static_alone / radius[1]};
+    double nothing = objective(a, a->forms, zero), left = objective(a, a->forms, alone);
+    a->left_alone = sqrt(left / nothing);
+    a->left = sqrt(objective(a, a->forms, a->full) / nothing);
+    a->static_only = a->model->job->aim.minimise == MINIMISE_STATIC_FIRST &&
+                     nothing - left > noise_at(a, alone);
+    if (a->static_only)
+        memcpy(a->weights, alone, sizeof alone);
+    return ANSWER_OK;
+}
+
+int answer_correct(struct answer *a)
+{
+    int result = correct_least_squares(a->posterior, a->scale, a->rows, a->planes, a->classical);
+    if (result == CORRECT_OK)
+        result = correct_covariance(a->posterior, a->scale, a->rows, a->planes, a->classical,
+                                    a->ellipse);
+    if (result != CORRECT_OK)
+        return result;
+    memcpy(a->full, a->classical, a->planes * sizeof *a->full);
+    result = minimise(a, a->forms, a->planes, a->full);
+    memcpy(a->weights, a->full, a->planes * sizeof *a->weights);
+    if (result == ANSWER_OK && a->planes == 2)
+        result = correct_static(a);
+    return result;
+}
+
+/* ---- placement ---- */
+
+/* What may stand at one position of a plane, kg: the deepest hole is a limit, too. */
+static double most_at(const struct job_plane *plane)
+{
+    if (plane->work != WORK_REMOVE)
+        return plane->most;
+    return fmin(plane->most, drill_mass(plane->hole_m, plane->density, plane->depth_m));
+}
+
+static bool ideal_fits(const struct answer *a)
+{
+    for (size_t p = 0; p < a->planes; p++) {
+        const struct job_plane *plane = &a->model->job->planes[p];
+        double mass = cabs(a->weights[p]);
+        if (!plane->any_position || plane->stock || mass > most_at(plane) || mass > plane->most_in_all)
+            return false;
+    }
+    return true;
+}
+
 /* The ideal weight itself as the placement, by the search's own rule for what is within the noise.
  */
 static int place_ideal(struct answer *a)
@@ -215,7 +281,7 @@ static int place_ideal(struct answer *a)
         return ANSWER_NO_MEMORY;
     }
     double nothing = objective(a, a->forms, zero), least = objective(a, a->forms, a->weights);
-    double noise = fmax(a->floor, 0.1 * (least - objective(a, a->certain, a->weights)));
+    double noise = noise_at(a, a->weights);
     free(zero);
     a->placement.nothing = nothing;
     a->placement.of_all = a->placement.bound = least;
@@ -246,32 +312,68 @@ struct menu { /* one plane's lists for the search */
     int *counts;
 };
 
-static int fill_plane(const struct job_plane *from, struct menu *menu, struct place_plane *to)
+static bool menu_init(struct menu *menu, const struct job_plane *from)
 {
     menu->angles = calloc(from->position_count + 1, sizeof *menu->angles);
     menu->masses = calloc(from->stock_count + 1, sizeof *menu->masses);
     menu->counts = calloc(from->stock_count + 1, sizeof *menu->counts);
-    if (!menu->angles || !menu->masses || !menu->counts)
+    return menu->angles && menu->masses && menu->counts;
+}
+
+static void menu_release(struct menu *menu)
+{
+    free(menu->angles);
+    free(menu->masses);
+    free(menu->counts);
+}
+
+/* All positions are taken, or no piece may be used: nothing may be put here. */
+static void forbid(struct place_plane *to)
+{
+    to->positions = 1;
+    to->stock = 0;
+    to->most = to->most_in_all = 0;
+}
+
+static int fill_plane(const struct job_plane *from, struct menu *menu, struct place_plane *to)
+{
+    size_t free_positions = 0, stock = 0;
+    bool drilled = from->work == WORK_REMOVE && from->hole_m > 0 && from->depth_m > 0;
+    double deepest = drilled ? drill_mass(from->hole_m, from->density, from->depth_m) : INFINITY;
+    if (!menu_init(menu, from))
         return ANSWER_NO_MEMORY;
-    size_t free_positions = 0;
     for (size_t i = 0; !from->any_position && i < from->position_count; i++)
         if (!from->positions[i].taken)
             menu->angles[free_positions++] = from->positions[i].angle_deg;
     for (size_t i = 0; i < from->stock_count; i++) {
-        menu->masses[i] = from->stock[i].mass;
-        menu->counts[i] = from->stock[i].count;
+        if (from->stock[i].mass > deepest) /* each piece is one hole */
+            continue;
+        menu->masses[stock] = from->stock[i].mass;
+        menu->counts[stock++] = from->stock[i].count;
     }
     int pieces = from->pieces > 0 ? from->pieces : 4; /* the sheet's default */
     *to = (struct place_plane){
-        menu->angles, free_positions,    menu->masses,
-        menu->counts, from->stock_count, pieces > PLACE_PIECES_MOST ? PLACE_PIECES_MOST : pieces,
-        from->most,   from->most_in_all, from->work == WORK_REMOVE ? -1 : 1};
-    if (!from->any_position && free_positions == 0) { /* all taken: nothing may be put here */
-        to->angles_deg = menu->angles;
-        to->positions = 1;
-        to->most = to->most_in_all = 0;
-    }
+        .angles_deg = menu->angles,
+        .positions = free_positions,
+        .masses = menu->masses,
+        .counts = menu->counts,
+        .stock = stock,
+        .pieces = pieces > PLACE_PIECES_MOST ? PLACE_PIECES_MOST : pieces,
+        .most = from->stock_count ? from->most : most_at(from),
+        .most_in_all = from->most_in_all,
+        .sign = from->work == WORK_REMOVE ? -1 : 1};
+    if ((!from->any_position && free_positions == 0) || (from->stock_count > 0 && stock == 0))
+        forbid(to);
     return ANSWER_OK;
+}
+
+static int search(struct answer *a, const struct place_problem *problem)
+{
+    int error = place_search(problem, &a->placement);
+    a->placed = error == PLACE_OK;
+    return error == PLACE_OK          ? ANSWER_OK
+           : error == PLACE_NO_MEMORY ? ANSWER_NO_MEMORY
+                                      : ANSWER_FAILED;
 }
 
 static int place_by_search(struct answer *a)
@@ -283,34 +385,161 @@ static int place_by_search(struct answer *a)
     for (size_t p = 0; p < a->planes && result == ANSWER_OK; p++)
         result = fill_plane(&job->planes[p], &menus[p], &planes[p]);
     if (result == ANSWER_OK) {
-        struct place_problem problem = {a->planes, planes,     a->rows,
-                                        a->forms,  a->certain, job->aim.minimise == MINIMISE_WORST,
-                                        a->floor,  0};
-        int error = place_search(&problem, &a->placement);
-        a->placed = error == PLACE_OK;
-        result = error == PLACE_OK          ? ANSWER_OK
-                 : error == PLACE_NO_MEMORY ? ANSWER_NO_MEMORY
-                                            : ANSWER_FAILED;
+        struct place_problem problem = {.planes = a->planes,
+                                        .plane = planes,
+                                        .rows = a->rows,
+                                        .forms = a->forms,
+                                        .certain = a->certain,
+                                        .worst = job->aim.minimise == MINIMISE_WORST,
+                                        .floor = a->floor};
+        result = search(a, &problem);
     }
-    for (size_t p = 0; menus && p < a->planes; p++) {
-        free(menus[p].angles);
-        free(menus[p].masses);
-        free(menus[p].counts);
-    }
+    for (size_t p = 0; menus && p < a->planes; p++)
+        menu_release(&menus[p]);
     free(planes);
     free(menus);
     return result;
 }
 
+/* What both planes can hold alike, as one plane of the first one's masses; partner[i]: the free
+ * position of the second plane at the angle of position i. Pieces are alike where their unbalances
+ * are, to a part in a thousand. */
+static bool common_plane(const struct place_plane of[2], double ratio, struct menu *menu,
+                         size_t *partner, struct place_plane *to)
+{
+    size_t positions = 0, stock = 0;
+    for (size_t i = 0; i < of[0].positions; i++)
+        for (size_t j = 0; j < of[1].positions; j++)
+            if (fabs(angle_wrap_180(of[0].angles_deg[i] - of[1].angles_deg[j])) < 0.01) {
+                partner[positions] = j;
+                menu->angles[positions++] = of[0].angles_deg[i];
+                break;
+            }
+    for (size_t i = 0; i < of[0].stock; i++)
+        for (size_t j = 0; j < of[1].stock; j++)
+            if (fabs(of[1].masses[j] / (of[0].masses[i] * ratio) - 1) < 1e-3) {
+                menu->masses[stock] = of[0].masses[i];
+                int first = of[0].counts[i], second = of[1].counts[j];
+                menu->counts[stock++] = first < 0 || (second >= 0 && second < first) ? second : first;
+                break;
+            }
+    *to = of[0];
+    to->angles_deg = menu->angles;
+    to->masses = menu->masses;
+    to->counts = menu->counts;
+    to->positions = positions;
+    to->stock = stock;
+    to->pieces = of[1].pieces < of[0].pieces ? of[1].pieces : of[0].pieces;
+    to->most = fmin(of[0].most, of[1].most / ratio);
+    to->most_in_all = fmin(of[0].most_in_all, of[1].most_in_all / ratio);
+    return (of[0].positions > 0) == (of[1].positions > 0) &&
+           (positions > 0 || of[0].positions == 0) && (of[0].stock > 0) == (of[1].stock > 0) &&
+           (stock > 0 || of[0].stock == 0) && of[0].sign == of[1].sign && to->most_in_all > 0;
+}
+
+/* Position indices of the search's one plane become those of both planes. */
+static int spread_out(struct place_choice *choice, const struct place_plane of[2],
+                      const struct place_plane *common, const size_t *partner, double ratio)
+{
+    size_t n = choice->count;
+    struct place_item *items = realloc(choice->items, (2 * n + 1) * sizeof *items);
+    if (!items)
+        return ANSWER_NO_MEMORY;
+    choice->items = items;
+    for (size_t i = 0; i < n; i++) {
+        struct place_item *first = &items[i], *second = &items[n + i];
+        int at = first->position;
+        *second = *first;
+        second->plane = 1;
+        second->mass *= ratio;
+        for (size_t k = 0; k < second->piece_count; k++)
+            second->pieces[k] *= ratio;
+        for (size_t j = 0; at >= 0 && j < of[0].positions; j++)
+            if (of[0].angles_deg[j] == common->angles_deg[at])
+                first->position = (int)j;
+        if (at >= 0)
+            second->position = (int)partner[at];
+    }
+    choice->count = 2 * n;
+    return ANSWER_OK;
+}
+
+/* Equal unbalances at equal angles on both planes; nothing placed where that is not possible. */
+static int place_static(struct answer *a)
+{
+    const struct job_plane *from = a->model->job->planes;
+    double ratio = from[0].radius_m / from[1].radius_m, radius[2] = {1, 1 / ratio};
+    struct menu menus[3] = {{0}};
+    struct place_plane of[2], common;
+    size_t *partner = calloc(from[0].position_count + 1, sizeof *partner);
+    double complex *forms = calloc(8 * a->rows + 1, sizeof *forms);
+    int result = partner && forms && menu_init(&menus[2], &from[0]) ? ANSWER_OK : ANSWER_NO_MEMORY;
+    for (size_t p = 0; p < 2 && result == ANSWER_OK; p++)
+        result = fill_plane(&from[p], &menus[p], &of[p]);
+    if (result == ANSWER_OK && common_plane(of, ratio, &menus[2], partner, &common)) {
+        parts_reduce(a->forms, a->rows, radius, forms);
+        parts_reduce(a->certain, a->rows, radius, forms + 4 * a->rows);
+        struct place_problem problem = {.planes = 1,
+                                        .plane = &common,
+                                        .rows = a->rows,
+                                        .forms = forms,
+                                        .certain = forms + 4 * a->rows,
+                                        .floor = a->floor};
+        result = search(a, &problem);
+        struct place_choice *choices[3] = {&a->placement.best, &a->placement.next[0],
+                                           &a->placement.next[1]};
+        for (size_t i = 0; i < 3 && result == ANSWER_OK; i++)
+            result = spread_out(choices[i], of, &common, partner, ratio);
+    }
+    for (size_t p = 0; p < 3; p++)
+        menu_release(&menus[p]);
+    free(forms);
+    free(partner);
+    return result;
+}
+
+/* Static first; the whole answer where no static weight can be fitted that helps. */
+static int place_first(struct answer *a)
+{
+    int result = place_static(a);
+    if (result != ANSWER_OK || answer_helps(a))
+        return result;
+    if (a->placed)
+        place_release(&a->placement);
+    a->placed = a->static_only = false;
+    memcpy(a->weights, a->full, a->planes * sizeof *a->weights);
+    return ideal_fits(a) ? place_ideal(a) : place_by_search(a);
+}
+
 int answer_place(struct answer *a)
 {
-    int result = ideal_fits(a) ? place_ideal(a) : place_by_search(a);
+    int result = ideal_fits(a)    ? place_ideal(a)
+                 : a->static_only ? place_first(a)
+                                  : place_by_search(a);
     for (size_t i = 0; result == ANSWER_OK && i < a->placement.best.count; i++) {
         const struct place_item *item = &a->placement.best.items[i];
         double sign = a->model->job->planes[item->plane].work == WORK_REMOVE ? -1 : 1;
         a->placed_weights[item->plane] += angle_vector(sign * item->mass, item->angle_deg);
     }
     return result;
+}
+
+bool answer_corrected_by(const struct answer *a, int run, bool *as_good)
+{
+    double complex *w = calloc(2 * a->planes + 1, sizeof *w);
+    *as_good = false;
+    if (!w || run < 0) {
+        free(w);
+        return false;
+    }
+    double nothing = objective(a, a->forms, w + a->planes);
+    for (size_t p = 0; p < a->planes; p++)
+        w[p] = job_run_weight(a->model->job, (size_t)run, p) - a->mounted[p];
+    double now = objective(a, a->forms, w);
+    double best = objective(a, a->forms, a->placed_weights);
+    *as_good = now - best <= noise_at(a, a->placed_weights);
+    free(w);
+    return now < nothing / 4; /* half the amplitude: our choice, a trial rarely does as well */
 }
 
 bool answer_helps(const struct answer *a)

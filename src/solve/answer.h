@@ -9,11 +9,19 @@
 #include "solve/model.h"
 #include "solve/place.h"
 
+struct answer_zone { /* of ISO 20816-3; rms, SI */
+    bool given;
+    enum quantity quantity;
+    double before, after, limits[3];
+    bool overall; /* false: of 1x alone */
+};
+
 struct answer_forecast {
     const struct model_row *row; /* borrowed */
     double complex before, after;
     double range[2]; /* 95 % of the next reading, SI peak */
     double chance;   /* NaN without a target */
+    struct answer_zone zone;
 };
 
 struct answer_residual { /* kg m; NaN: not known */
@@ -29,6 +37,10 @@ struct answer {
     double *se;                /* owned: SI, root of the complex variance of a reading of the row */
     double complex *mounted;   /* owned: planes, what stays on, kg */
     double complex *weights;   /* owned: planes, the ideal weight to add, kg */
+    double complex *full;      /* owned: planes, the ideal weight without regard to what comes first */
+    bool static_only;          /* `weights` are the static part alone; the couple comes later */
+    double complex static_alone; /* kg m, two planes: the best of both planes alike */
+    double left_alone, left;   /* root of expected squared vibration over that of now; two planes */
     double complex *classical; /* owned: planes, least squares */
     double *ellipse;           /* owned: (2 planes)^2 covariance of `classical` */
     double condition;          /* number; INFINITY where there are fewer rows than planes */
@@ -61,6 +73,11 @@ int answer_correct(struct answer *answer) __attribute__((warn_unused_result));
 /* What to fit now: the ideal weight where every plane takes any mass at any angle, else the search.
  */
 int answer_place(struct answer *answer) __attribute__((warn_unused_result));
+
+/* Run `run` carries weights that were meant to correct: they leave less than half of the as-found
+ * vibration (aim.mounted unset: everything could come off). *as_good: what is placed beats them by no
+ * more than the noise. False: no memory, or no such run. */
+bool answer_corrected_by(const struct answer *answer, int run, bool *as_good);
 
 /* True where something placed lowers the expected vibration beyond the noise. */
 bool answer_helps(const struct answer *answer);

@@ -9,6 +9,7 @@
 #include "solve/amplitude.h"
 #include "solve/regress.h"
 #include "solve/repeat.h"
+#include "solve/stored.h"
 
 static int by_run(const void *a, const void *b)
 {
@@ -46,15 +47,25 @@ static int row_room(struct model_row *row, size_t count, size_t planes)
     row->x = calloc(count * planes + 1, sizeof *row->x);
     row->cov = calloc(count + 1, sizeof *row->cov);
     row->total = calloc(count + 1, sizeof *row->total);
-    return row->runs && row->y && row->x && row->cov && row->total ? 0 : -1;
+    row->stored = calloc(planes + 1, sizeof *row->stored);
+    row->overall = calloc(count + 1, sizeof *row->overall);
+    return row->runs && row->y && row->x && row->cov && row->total && row->stored &&
+                   row->overall
+               ? 0
+               : -1;
 }
 
-static void row_take(struct model_row *row, const struct job *job, const struct model_reading *r)
+static void row_take(struct model_row *row, const struct model *m, const struct model_reading *r)
 {
     size_t i = row->count++;
+    const struct job *job = m->job;
     row->runs[i] = r->run;
     row->y[i] = r->phase ? r->vector : r->amplitude;
+    if (row->runout)
+        row->y[i] -= m->runout[row->sensor].vector;
     memcpy(row->cov[i], r->cov, sizeof r->cov);
+    row->overall[i] = r->overall > 0 ? r->overall : NAN;
+    row->overall_quantity = r->overall_quantity;
     for (size_t p = 0; p < job->plane_count; p++)
         row->x[i * job->plane_count + p] = job_run_weight(job, r->run, p);
 }
@@ -106,6 +117,7 @@ static int gather(struct model *m, struct model_row *row, const struct model_rea
     }
     double speed = 0;
     size_t timed = 0;
+    row->runout = m->runout[row->sensor].count > 0 && !m->amplitudes;
     for (size_t i = 0; i < count; i++) {
         const struct model_reading *r = &readings[i];
         if (r->sensor != row->sensor || strcmp(r->condition, m->conditions[row->condition]) ||
@@ -118,7 +130,7 @@ static int gather(struct model *m, struct model_row *row, const struct model_rea
             row->lost_run = row->lost_run < 0 ? (int)r->run : row->lost_run;
             continue;
         }
-        row_take(row, job, r);
+        row_take(row, m, r);
         if (r->speed_rpm > 0) {
             speed += r->speed_rpm;
             timed++;
@@ -127,8 +139,9 @@ static int gather(struct model *m, struct model_row *row, const struct model_rea
     row->speed_rpm = timed ? speed / (double)timed : job->service_rpm;
     row->as_found = as_found(row, job);
     set_target(row, job);
-    int could = regress_rank(every, planes, all);
-    int can = regress_rank(row->count, planes, row->x);
+    stored_match(m, row);
+    int could = stored_rank(row, planes, every, all);
+    int can = stored_rank(row, planes, row->count, row->x);
     free(all);
     if (could < 0 || can < 0)
         return could == REGRESS_FAILED || can == REGRESS_FAILED ? MODEL_FAILED : MODEL_NO_MEMORY;
@@ -210,20 +223,41 @@ static int fit_row(struct model *m, struct model_row *row)
         }
     if (m->amplitudes)
         return fit_amplitudes(m, row);
-    struct regress_data data = {
-        row->count,   m->job->plane_count, row->y, row->x, (const double(*)[3])row->total,
-        row->as_found};
-    int result = regress_fit(&data, &row->posterior);
+    int result = stored_fit(row, m->job->plane_count);
     if (result != REGRESS_OK)
         return result == REGRESS_NO_MEMORY ? MODEL_NO_MEMORY
                : result == REGRESS_NAN     ? MODEL_NAN
                                            : MODEL_FAILED;
     row->posterior.dof = m->dof;
-    size_t at = 0;
-    row->misfit = regress_misfit(&data, &row->posterior, &at);
-    if (row->count > 0)
-        row->misfit_run = row->runs[at];
+    for (size_t p = 0; p < m->job->plane_count; p++)
+        m->held[p] = m->held[p] || row->stored[p];
+    if (row->runout) { /* one error that all readings share: Z0 has it, no response does */
+        const double *cov = m->runout[row->sensor].cov;
+        size_t width = 2 * row->posterior.unknowns;
+        row->posterior.cov[0] += cov[0];
+        row->posterior.cov[1] += cov[1];
+        row->posterior.cov[width] += cov[1];
+        row->posterior.cov[width + 1] += cov[2];
+    }
     return MODEL_OK;
+}
+
+/* The slow-roll vectors of displacement sensors: what the probe sees of the shaft's surface. */
+static void gather_runout(struct model *m, const struct model_reading *readings, size_t count)
+{
+    const struct job *job = m->job;
+    for (size_t i = 0; i < count; i++) {
+        const struct model_reading *r = &readings[i];
+        if (strcmp(job->runs[r->run].role, "runout") != 0 || !r->use || !r->phase ||
+            job->sensors[r->sensor].quantity != QUANTITY_DISPLACEMENT)
+            continue;
+        struct model_runout *o = &m->runout[r->sensor];
+        double n = (double)++o->count, keep = (n - 1) / n;
+        o->vector = keep * o->vector + r->vector / n;
+        o->speed_rpm = keep * o->speed_rpm + r->speed_rpm / n;
+        for (int k = 0; k < 3; k++)
+            o->cov[k] = keep * keep * o->cov[k] + r->cov[k] / (n * n);
+    }
 }
 
 static bool amplitudes_only(const struct job *job, const struct model_reading *readings,
@@ -231,6 +265,8 @@ static bool amplitudes_only(const struct job *job, const struct model_reading *r
 {
     size_t usable = 0;
     for (size_t i = 0; i < count; i++) {
+        if (!ordinary(&job->runs[readings[i].run]))
+            continue;
         if (readings[i].use && readings[i].phase)
             return false;
         usable += readings[i].use;
@@ -247,8 +283,13 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
     m->conditions = calloc(job->run_count + count + 1, sizeof *m->conditions);
     m->rows = calloc((job->run_count + count + 1) * (job->sensor_count + 1), sizeof *m->rows);
     m->present = calloc(job->run_count + 1, sizeof *m->present);
-    int result = m->conditions && m->rows && m->present ? MODEL_OK : MODEL_NO_MEMORY;
+    m->runout = calloc(job->sensor_count + 1, sizeof *m->runout);
+    m->held = calloc(job->plane_count + 1, sizeof *m->held);
+    int result = m->conditions && m->rows && m->present && m->runout && m->held ? MODEL_OK
+                                                                                : MODEL_NO_MEMORY;
     m->amplitudes = amplitudes_only(job, readings, count);
+    if (result == MODEL_OK)
+        gather_runout(m, readings, count);
     for (size_t i = 0; i < count && result == MODEL_OK; i++) {
         m->present[readings[i].run] = true;
         if (!ordinary(&job->runs[readings[i].run]))
@@ -264,7 +305,8 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
             struct model_row *row = &m->rows[m->row_count++];
             row->condition = c;
             row->sensor = s;
-            row->misfit = NAN;
+            row->misfit = row->changed = NAN;
+            row->changed_plane = -1;
             row->lost_run = -1;
             result = gather(m, row, readings, count);
             if (result == MODEL_OK && !m->amplitudes)
@@ -289,7 +331,11 @@ void model_release(struct model *m)
         free(row->x);
         free(row->cov);
         free(row->total);
+        free(row->stored);
+        free(row->overall);
     }
+    free(m->runout);
+    free(m->held);
     free(m->present);
     free(m->rows);
     free(m->conditions);
@@ -318,7 +364,7 @@ int model_rank_before(const struct model *m, size_t end)
             x[n * planes + p] = job_run_weight(m->job, i, p);
         n++;
     }
-    int rank = regress_rank(n, planes, x);
+    int rank = regress_rank(n, planes, x, m->held);
     free(x);
     return rank;
 }

@@ -22,12 +22,21 @@ struct model_reading { /* what the stage hands over; any order */
     double complex vector; /* SI peak, argument is lag */
     double amplitude;      /* SI peak, where there is no phase */
     double cov[3];         /* of the mean, widened */
+    double overall;        /* rms, SI, of everything in a band; NaN or 0: not known */
+    enum quantity overall_quantity;
 };
 
 enum model_state {
     MODEL_GOOD, /* the usable readings determine everything */
     MODEL_LOST, /* they would, had none been refused */
     MODEL_SHORT /* a run is missing */
+};
+
+enum model_stored {
+    MODEL_STORED_NONE,   /* there are none, or they could not be used */
+    MODEL_STORED_HELD,   /* they agree with the runs, or nothing tells */
+    MODEL_STORED_LEFT,   /* set aside: the runs alone tell all, and differ */
+    MODEL_STORED_WIDENED /* they differ from the runs, which cannot do without: taken as less sure */
 };
 
 struct model_row {
@@ -39,6 +48,8 @@ struct model_row {
     double complex *y, *x; /* owned: readings; count x planes equivalent weights, kg */
     double (*cov)[3];      /* owned: of each reading */
     double (*total)[3];    /* owned: with the scatter from run to run */
+    double *overall;       /* owned: rms, SI, of each reading's band; NaN: not known */
+    enum quantity overall_quantity;
     double as_found;       /* SI peak amplitude with nothing added, as read; > 0 */
     double speed_rpm;  /* mean of the usable readings; the service speed where unknown; or NaN */
     double sigma;      /* SI, scatter from run to run per component */
@@ -49,6 +60,19 @@ struct model_row {
     size_t misfit_run;
     bool ambiguous; /* amplitudes alone leave more than one answer */
     int lost_run;   /* the first run whose reading of this row was refused; -1: none */
+    const struct job_response **stored; /* owned array, planes; borrowed responses in use; NULL: none */
+    const struct job_response *apart;   /* borrowed: one of another speed, hence not used; or NULL */
+    double changed;    /* s.e. between stored and new; NaN: nothing to compare */
+    int changed_plane; /* whose response; -1: of no plane alone */
+    enum model_stored kept; /* what became of the stored responses */
+    bool runout;       /* the slow-roll vector is taken off the readings */
+};
+
+struct model_runout { /* of a sensor */
+    size_t count;          /* usable slow-roll readings */
+    double complex vector; /* their mean, SI peak */
+    double cov[3];         /* of it */
+    double speed_rpm;
 };
 
 struct model {
@@ -63,6 +87,8 @@ struct model {
     bool amplitudes; /* no usable reading has phase, one plane: rows hold amplitudes and relative
                         phases only (amplitude.h) */
     bool *present;   /* owned, one per run: it has readings, usable or not */
+    struct model_runout *runout; /* owned, one per sensor */
+    bool *held;      /* owned, planes: a stored response of that plane is in use in some row */
     int last_run;    /* last run of the sheet that has usable readings; -1: none */
 };
 

@@ -6,9 +6,11 @@
 #include <string.h>
 
 #include "base/angle.h"
+#include "sheet/units.h"
 #include "solve/correct.h"
 #include "solve/forecast.h"
 #include "solve/tolerance.h"
+#include "solve/zones.h"
 
 /* One row: the next reading is the vibration, plus the scatter from run to run, plus what a
  * reading of this row is usually off by. */
@@ -26,6 +28,49 @@ static void forecast_row(const struct answer *a, const struct model_row *row,
     f->range[1] = forecast_quantile(f->after, cov, a->model->dof, 0.975);
     f->chance =
         isnan(row->target) ? NAN : forecast_within(f->after, cov, a->model->dof, row->target);
+}
+
+/* Mean overall rms of the row's readings with what is mounted, and nothing else; NaN: none. */
+static double overall_now(const struct answer *a, const struct model_row *row)
+{
+    double sum = 0, n = 0;
+    for (size_t i = 0; i < row->count; i++) {
+        double off = 0, size = 0;
+        for (size_t p = 0; p < a->planes; p++) {
+            off = fmax(off, cabs(row->x[i * a->planes + p] - a->mounted[p]));
+            size = fmax(size, cabs(a->mounted[p]));
+        }
+        if (off <= 1e-9 * size && !isnan(row->overall[i])) {
+            sum += row->overall[i] * row->overall[i];
+            n++;
+        }
+    }
+    return n > 0 ? sqrt(sum / n) : NAN;
+}
+
+/* Zones are of parts that do not turn: a probe that measures displacement looks at the shaft. All
+ * but 1x stays as it is. */
+static void fill_zone(const struct answer *a, struct answer_forecast *f)
+{
+    const struct job *job = a->model->job;
+    const struct model_row *row = f->row;
+    const struct job_sensor *s = &job->sensors[row->sensor];
+    struct answer_zone *z = &f->zone;
+    double w = row->speed_rpm * PI / 30;
+    *z = (struct answer_zone){0};
+    if (job->aim.zone_group == 0 || s->quantity == QUANTITY_DISPLACEMENT || !(w > 0))
+        return;
+    double overall = overall_now(a, row);
+    z->overall = !isnan(overall) && row->overall_quantity != QUANTITY_ACCELERATION;
+    z->quantity = z->overall ? row->overall_quantity : QUANTITY_VELOCITY;
+    z->given = true;
+    double before = cabs(units_convert(f->before, s->quantity, z->quantity, w)) / sqrt(2);
+    double after = cabs(units_convert(f->after, s->quantity, z->quantity, w)) / sqrt(2);
+    double rest = z->overall ? fmax(0, overall * overall - before * before) : 0;
+    z->before = sqrt(rest + before * before);
+    z->after = sqrt(rest + after * after);
+    zones_limits(job->aim.zone_group, job->aim.zone_flexible, z->quantity == QUANTITY_DISPLACEMENT,
+                 z->limits);
 }
 
 /* Permissible residual of each plane, kg m; false where the sheet does not say enough. */
@@ -85,6 +130,8 @@ int outlook_fill(struct answer *a)
     for (size_t r = 0; r < a->model->row_count; r++)
         if (a->model->rows[r].state == MODEL_GOOD)
             forecast_row(a, &a->model->rows[r], total, &a->forecasts[a->forecast_count++]);
+    for (size_t i = 0; i < a->forecast_count; i++)
+        fill_zone(a, &a->forecasts[i]);
     a->has_residual = permissible(a->model->job, a->planes, limits, a->basis);
     for (size_t p = 0; p < a->planes && a->has_residual; p++)
         residual_plane(a, p, limits[p]);

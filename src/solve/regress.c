@@ -11,19 +11,34 @@
 /* Two weight patterns closer than this are one: weights are known to a few digits at best. */
 #define RANK_TOLERANCE 1e-6
 
-/* x[i] of the design with its leading one. */
-static double complex design(const double complex *x, size_t planes, size_t i, size_t k)
+/* The design with its leading one and a line for each prior, count x (planes + 1), row-major. New;
+ * NULL: no memory. */
+static double complex *design_new(const struct regress_data *d)
 {
-    return k == 0 ? 1 : x[i * planes + k - 1];
+    size_t width = d->planes + 1;
+    double complex *f = calloc((d->count + d->prior_count + 1) * width, sizeof *f);
+    for (size_t i = 0; f && i < d->count; i++) {
+        f[i * width] = 1;
+        for (size_t p = 0; p < d->planes; p++)
+            f[i * width + p + 1] = d->x[i * d->planes + p];
+    }
+    for (size_t j = 0; f && j < d->prior_count; j++) {
+        size_t plane = d->prior_plane[j];
+        double reach = 0, size = cabs(d->prior[j]);
+        for (size_t i = 0; i < d->count; i++)
+            reach = fmax(reach, cabs(d->x[i * d->planes + plane]));
+        f[(d->count + j) * width + plane + 1] = reach > 0 ? reach : size > 0 ? d->scale / size : 1;
+    }
+    return f;
 }
 
 /* Length of each column of the design; 1 for an empty one. */
-static void column_lengths(size_t count, size_t planes, const double complex *x, double *length)
+static void column_lengths(size_t rows, size_t width, const double complex *f, double *length)
 {
-    for (size_t k = 0; k <= planes; k++) {
+    for (size_t k = 0; k < width; k++) {
         double sum = 0;
-        for (size_t i = 0; i < count; i++)
-            sum = hypot(sum, cabs(design(x, planes, i, k)));
+        for (size_t i = 0; i < rows; i++)
+            sum = hypot(sum, cabs(f[i * width + k]));
         length[k] = sum > 0 ? sum : 1;
     }
 }
@@ -41,27 +56,42 @@ static void whitener(const double cov[3], double scale, double w[3])
     w[2] = 1 / l22;
 }
 
-/* The stacked real design, 2 count x 2 unknowns; whitened where data is not NULL, then with `b`. */
-static void stack(size_t count, size_t planes, const double complex *x, const double *length,
+/* Reading or prior i of the data as a value with its covariance. */
+static double complex value_of(const struct regress_data *d, const double complex *f, size_t i,
+                               double cov[3])
+{
+    if (i < d->count) {
+        memcpy(cov, d->cov[i], 3 * sizeof *cov);
+        return d->y[i];
+    }
+    size_t j = i - d->count;
+    double mass = creal(f[i * (d->planes + 1) + d->prior_plane[j] + 1]);
+    for (int k = 0; k < 3; k++)
+        cov[k] = mass * mass * d->prior_cov[j][k];
+    return mass * d->prior[j];
+}
+
+/* The stacked real design, 2 rows x 2 width; whitened where data is not NULL, then with `b`. */
+static void stack(size_t rows, size_t width, const double complex *f, const double *length,
                   const struct regress_data *data, double *m, double *b)
 {
-    size_t width = 2 * (planes + 1);
-    for (size_t i = 0; i < count; i++) {
-        double w[3] = {1, 0, 1};
+    for (size_t i = 0; i < rows; i++) {
+        double w[3] = {1, 0, 1}, cov[3];
+        double complex y = data ? value_of(data, f, i, cov) : 0;
         if (data)
-            whitener(data->cov[i], data->scale, w);
-        double *re = m + 2 * i * width, *im = re + width;
-        for (size_t k = 0; k <= planes; k++) {
-            double complex f = design(x, planes, i, k) / length[k];
-            double top[2] = {creal(f), -cimag(f)}, bottom[2] = {cimag(f), creal(f)};
+            whitener(cov, data->scale, w);
+        double *re = m + 4 * i * width, *im = re + 2 * width;
+        for (size_t k = 0; k < width; k++) {
+            double complex g = f[i * width + k] / length[k];
+            double top[2] = {creal(g), -cimag(g)}, bottom[2] = {cimag(g), creal(g)};
             for (size_t c = 0; c < 2; c++) {
                 re[2 * k + c] = w[0] * top[c];
                 im[2 * k + c] = w[1] * top[c] + w[2] * bottom[c];
             }
         }
         if (data && b) {
-            b[2 * i] = w[0] * creal(data->y[i]);
-            b[2 * i + 1] = w[1] * creal(data->y[i]) + w[2] * cimag(data->y[i]);
+            b[2 * i] = w[0] * creal(y);
+            b[2 * i + 1] = w[1] * creal(y) + w[2] * cimag(y);
         }
     }
 }
@@ -71,10 +101,10 @@ struct factors {
     size_t rows, width, least;
 };
 
-static int factors_init(struct factors *f, size_t count, size_t planes)
+static int factors_init(struct factors *f, size_t rows, size_t width)
 {
-    f->rows = 2 * count;
-    f->width = 2 * (planes + 1);
+    f->rows = 2 * rows;
+    f->width = 2 * width;
     f->least = f->rows < f->width ? f->rows : f->width;
     size_t total =
         f->rows * f->width + f->rows + 2 * f->least + f->rows * f->least + f->width * f->width;
@@ -107,20 +137,20 @@ static size_t count_rank(const struct factors *f)
     return rank / 2; /* real and imaginary part of each unknown share a value */
 }
 
-/* Rank of the bare design; with `known`, which unknowns it determines. */
-static int judge(size_t count, size_t planes, const double complex *x, const double *length,
+/* Rank of the bare design, rows x width; with `known`, which unknowns it determines. */
+static int judge(size_t rows, size_t width, const double complex *design, const double *length,
                  bool *known)
 {
     struct factors f;
-    if (count == 0)
+    if (rows == 0)
         return 0;
-    if (factors_init(&f, count, planes) != 0)
+    if (factors_init(&f, rows, width) != 0)
         return REGRESS_NO_MEMORY;
-    stack(count, planes, x, length, NULL, f.m, NULL);
+    stack(rows, width, design, length, NULL, f.m, NULL);
     int result = factorise(&f);
     if (result == REGRESS_OK) {
         size_t rank = count_rank(&f);
-        for (size_t k = 0; known && k <= planes; k++) {
+        for (size_t k = 0; known && k < width; k++) {
             double free_part = 0;
             for (size_t j = 2 * rank; j < f.width; j++)
                 free_part = hypot(free_part, f.vt[j * f.width + 2 * k]);
@@ -132,15 +162,28 @@ static int judge(size_t count, size_t planes, const double complex *x, const dou
     return result;
 }
 
-int regress_rank(size_t count, size_t planes, const double complex *x)
+int regress_rank(size_t count, size_t planes, const double complex *x, const bool *held)
 {
+    size_t kept = 0;
     double *length = calloc(planes + 1, sizeof *length);
-    if (!length)
-        return REGRESS_NO_MEMORY;
-    column_lengths(count, planes, x, length);
-    int rank = judge(count, planes, x, length, NULL);
+    double complex *f = calloc((count + 1) * (planes + 1), sizeof *f);
+    int rank = REGRESS_NO_MEMORY;
+    for (size_t p = 0; p < planes; p++)
+        kept += !(held && held[p]);
+    if (f && length) {
+        for (size_t i = 0; i < count; i++) {
+            double complex *to = f + i * (kept + 1);
+            *to++ = 1;
+            for (size_t p = 0; p < planes; p++)
+                if (!(held && held[p]))
+                    *to++ = x[i * planes + p];
+        }
+        column_lengths(count, kept + 1, f, length);
+        rank = judge(count, kept + 1, f, length, NULL);
+    }
+    free(f);
     free(length);
-    return rank;
+    return rank < 0 ? rank : rank + (int)(planes - kept);
 }
 
 /* Solution and covariance from the `rank` largest singular values. */
@@ -168,30 +211,35 @@ static bool has_nan(const struct regress_data *d)
         sum += creal(d->y[i]) + cimag(d->y[i]) + d->cov[i][0] + d->cov[i][1] + d->cov[i][2];
     for (size_t i = 0; i < d->count * d->planes; i++)
         sum += creal(d->x[i]) + cimag(d->x[i]);
+    for (size_t j = 0; j < d->prior_count; j++)
+        sum += creal(d->prior[j]) + cimag(d->prior[j]) + d->prior_cov[j][0] + d->prior_cov[j][1] +
+               d->prior_cov[j][2];
     return !isfinite(sum) || !(d->scale > 0);
 }
 
 int regress_fit(const struct regress_data *d, struct posterior *p)
 {
     struct factors f = {0};
+    size_t rows = d->count + d->prior_count, width = d->planes + 1;
     memset(p, 0, sizeof *p);
     if (has_nan(d))
         return REGRESS_NAN;
-    double *length = calloc(d->planes + 1, sizeof *length);
+    double *length = calloc(width, sizeof *length);
+    double complex *design = design_new(d);
     int result = REGRESS_NO_MEMORY;
-    if (!length || posterior_init(p, d->planes + 1) != 0)
+    if (!length || !design || posterior_init(p, width) != 0)
         goto done;
-    column_lengths(d->count, d->planes, d->x, length);
-    int rank = judge(d->count, d->planes, d->x, length, p->known);
+    column_lengths(rows, width, design, length);
+    int rank = judge(rows, width, design, length, p->known);
     if (rank < 0) {
         result = rank;
         goto done;
     }
     p->rank = (size_t)rank;
-    if (d->count > 0) {
-        if (factors_init(&f, d->count, d->planes) != 0)
+    if (rows > 0) {
+        if (factors_init(&f, rows, width) != 0)
             goto done;
-        stack(d->count, d->planes, d->x, length, d, f.m, f.b);
+        stack(rows, width, design, length, d, f.m, f.b);
         result = factorise(&f);
         if (result != REGRESS_OK)
             goto done;
@@ -200,6 +248,7 @@ int regress_fit(const struct regress_data *d, struct posterior *p)
     result = REGRESS_OK;
 done:
     free(f.m);
+    free(design);
     free(length);
     if (result != REGRESS_OK)
         posterior_release(p);

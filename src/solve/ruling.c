@@ -22,9 +22,18 @@ static struct ruling rule_bare(const struct model *m)
     return ruling;
 }
 
+/* True where stored responses carry a correction before any weight was tried. */
+static bool any_good(const struct model *m)
+{
+    for (size_t r = 0; r < m->row_count && m->job->plane_count > 0; r++)
+        if (ruling_counts(&m->rows[r]))
+            return true;
+    return false;
+}
+
 struct ruling ruling_of(const struct model *m)
 {
-    if (model_is_bare(m))
+    if (model_is_bare(m) && !any_good(m))
         return rule_bare(m);
     struct ruling solve = {RULING_SOLVE, NULL, false};
     const struct model_row *missing = NULL;

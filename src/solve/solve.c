@@ -13,30 +13,43 @@
 #include "base/status.h"
 #include "solve/advice.h"
 #include "solve/answer.h"
+#include "solve/drill.h"
+#include "solve/lookback.h"
 #include "solve/model.h"
+#include "solve/notes.h"
 #include "solve/outlook.h"
 #include "solve/ruling.h"
+#include "solve/parts.h"
 #include "solve/trial.h"
+#include "solve/zones.h"
+#include "stream/outcomes.h"
 #include "stream/records.h"
 #include "stream/stream.h"
-
-/* vet's ruling on the readings of one run and sensor. */
-struct ruled {
-    bool given, use;
-    double widen[3];
-};
 
 struct solve {
     struct stream stream;
     struct model_reading *readings; /* owned */
     size_t count, room;
-    struct ruled *ruled; /* owned, runs x sensors */
+    struct vetted_record *ruled; /* owned: vet's rulings, as they came */
+    size_t ruled_count, ruled_room;
     struct line line;
     bool said;  /* a refusal of ours says already why there is no correction */
     int status; /* the exit code that the answer calls for */
 };
 
 /* ---- reading ---- */
+
+/* Twice the room in an array; false: no memory. */
+static bool grow(void **items, size_t *room, size_t size)
+{
+    size_t wanted = *room ? 2 * *room : 64;
+    void *more = realloc(*items, wanted * size);
+    if (!more)
+        return false;
+    *items = more;
+    *room = wanted;
+    return true;
+}
 
 static int take_reading(struct solve *s, const struct record *record)
 {
@@ -50,21 +63,17 @@ static int take_reading(struct solve *s, const struct record *record)
     int run = job_find_run(job, r.run);
     if (run < 0 || r.sensor < 0) /* an audited recording: nothing to balance */
         return STATUS_DONE;
-    if (s->count == s->room) {
-        size_t room = s->room ? 2 * s->room : 64;
-        struct model_reading *more = realloc(s->readings, room * sizeof *more);
-        if (!more)
-            return message_no_memory();
-        s->readings = more;
-        s->room = room;
-    }
+    if (s->count == s->room && !grow((void **)&s->readings, &s->room, sizeof *s->readings))
+        return message_no_memory();
     struct model_reading *own = &s->readings[s->count++];
     *own = (struct model_reading){.run = (size_t)run,
                                   .sensor = (size_t)r.sensor,
                                   .speed_rpm = r.speed_rpm,
                                   .phase = r.has_phase,
                                   .vector = r.has_phase ? r.vector : 0,
-                                  .amplitude = r.amplitude};
+                                  .amplitude = r.amplitude,
+                                  .overall = r.overall.rms,
+                                  .overall_quantity = r.overall.quantity};
     memcpy(own->condition, r.condition, sizeof own->condition);
     memcpy(own->cov, r.cov, sizeof own->cov);
     return STATUS_DONE;
@@ -79,13 +88,12 @@ static int take_vetted(struct solve *s, const struct record *record)
         message("malformed record: %s (vetted)", why);
         return STATUS_USAGE;
     }
-    int run = job_find_run(job, r.run);
-    if (run < 0 || r.sensor < 0)
+    if (job_find_run(job, r.run) < 0 || r.sensor < 0)
         return STATUS_DONE;
-    struct ruled *ruled = &s->ruled[(size_t)run * job->sensor_count + (size_t)r.sensor];
-    ruled->given = true;
-    ruled->use = r.use;
-    memcpy(ruled->widen, r.widen, sizeof ruled->widen);
+    if (s->ruled_count == s->ruled_room &&
+        !grow((void **)&s->ruled, &s->ruled_room, sizeof *s->ruled))
+        return message_no_memory();
+    s->ruled[s->ruled_count++] = r;
     return STATUS_DONE;
 }
 
@@ -104,14 +112,27 @@ static int read_all(struct solve *s)
     return status == STATUS_DONE ? s->stream.status : status;
 }
 
+/* The ruling on a reading; a coast-down has one for each of its conditions. NULL: none. */
+static const struct vetted_record *ruling_on(const struct solve *s, const struct model_reading *r)
+{
+    const char *run = s->stream.job.runs[r->run].name;
+    for (size_t i = 0; i < s->ruled_count; i++) {
+        const struct vetted_record *v = &s->ruled[i];
+        if ((size_t)v->sensor == r->sensor && !strcmp(v->run, run) &&
+            (!v->condition[0] || !strcmp(v->condition, r->condition)))
+            return v;
+    }
+    return NULL;
+}
+
 /* Joins the rulings to the readings. */
 static int join(struct solve *s)
 {
     const struct job *job = &s->stream.job;
     for (size_t i = 0; i < s->count; i++) {
         struct model_reading *r = &s->readings[i];
-        const struct ruled *ruled = &s->ruled[r->run * job->sensor_count + r->sensor];
-        if (!ruled->given) {
+        const struct vetted_record *ruled = ruling_on(s, r);
+        if (!ruled) {
             message("no ruling on a reading, is `vet` missing in front: '%s' (sensor '%s')",
                     job->runs[r->run].name, job->sensors[r->sensor].name);
             return STATUS_USAGE;
@@ -124,6 +145,16 @@ static int join(struct solve *s)
 }
 
 /* ---- writing ---- */
+
+static int kernel_status(int error)
+{
+    if (error == 0)
+        return STATUS_DONE;
+    if (error == -1)
+        return message_no_memory();
+    message("the linear algebra failed on these readings");
+    return STATUS_SYSTEM;
+}
 
 static int put(struct solve *s)
 {
@@ -176,17 +207,25 @@ static const char *relative_to(const struct job *job)
     return job->aim.mounted >= 0 ? job->runs[job->aim.mounted].name : "as found";
 }
 
+static double signed_mass(const struct job_plane *plane, double mass)
+{
+    return plane->work == WORK_REMOVE ? -mass : mass;
+}
+
 static int write_corrections(struct solve *s, const struct answer *a)
 {
     int status = STATUS_DONE;
     size_t n = 2 * a->planes;
     for (size_t p = 0; p < a->planes && status == STATUS_DONE; p++) {
         const double *e = a->ellipse + 2 * p * n + 2 * p;
+        const struct job_plane *plane = &a->model->job->planes[p];
+        double sign = signed_mass(plane, 1); /* what is removed is negative, at its own place */
         struct correction_record r = {
             .plane = (int)p,
-            .mass = cabs(a->weights[p]),
-            .angle_deg = angle_of(a->weights[p]),
-            .least_squares = {cabs(a->classical[p]), angle_of(a->classical[p])},
+            .mass = signed_mass(plane, cabs(a->weights[p])),
+            .angle_deg = angle_of(sign * a->weights[p]),
+            .least_squares = {signed_mass(plane, cabs(a->classical[p])),
+                              angle_of(sign * a->classical[p])},
             .ellipse = {e[0], e[1], e[n + 1]}};
         snprintf(r.relative_to, sizeof r.relative_to, "%s", relative_to(&s->stream.job));
         correction_print(&r, &s->stream.job, &s->line);
@@ -204,11 +243,6 @@ static int position_number(const struct job_plane *plane, int k)
     return 0;
 }
 
-static double signed_mass(const struct job_plane *plane, double mass)
-{
-    return plane->work == WORK_REMOVE ? -mass : mass;
-}
-
 static int write_placements(struct solve *s, const struct answer *a)
 {
     int status = STATUS_DONE;
@@ -221,14 +255,51 @@ static int write_placements(struct solve *s, const struct answer *a)
                                      .angle_deg = item->angle_deg,
                                      .mass = signed_mass(plane, item->mass),
                                      .piece_count = item->piece_count};
-        for (size_t k = 0; k < item->piece_count; k++)
+        for (size_t k = 0; k < item->piece_count; k++) {
             r.pieces[k] = signed_mass(plane, item->pieces[k]);
+            r.depths_m[k] = drill_depth(plane->hole_m, plane->density, item->pieces[k]);
+        }
         r.force_n = trial_force(item->mass, plane->radius_m, job->service_rpm);
         snprintf(r.relative_to, sizeof r.relative_to, "%s", relative_to(job));
         placement_print(&r, job, &s->line);
         status = put(s);
     }
     return status;
+}
+
+static int write_zone(struct solve *s, const struct answer *a, const struct answer_forecast *f)
+{
+    struct advice_finding finding;
+    const struct answer_zone *z = &f->zone;
+    if (!notes_zone(a, f, &finding))
+        return STATUS_DONE;
+    struct zone_record r = {.sensor = f->row->sensor,
+                            .condition = a->model->conditions[f->row->condition],
+                            .quantity = z->quantity,
+                            .before = z->before,
+                            .after = z->after,
+                            .zone_before = zones_of(z->before, z->limits),
+                            .zone_after = zones_of(z->after, z->limits),
+                            .overall = z->overall,
+                            .basis = ZONES_BASIS};
+    memcpy(r.limits, z->limits, sizeof r.limits);
+    zone_print(&r, &s->stream.job, &s->line);
+    int status = put(s);
+    return status == STATUS_DONE ? write_finding(s, &finding) : status;
+}
+
+/* Static and couple part of the ideal weight of two planes. */
+static int write_parts(struct solve *s, const struct answer *a)
+{
+    const struct job_plane *planes = s->stream.job.planes;
+    if (a->planes != 2)
+        return STATUS_DONE;
+    double radius[2] = {planes[0].radius_m, planes[1].radius_m};
+    struct parts_record r = {
+        .static_alone = a->static_alone, .left_alone = a->left_alone, .left = a->left};
+    parts_split(a->full, radius, &r.static_part, &r.couple_part);
+    parts_print(&r, &s->stream.job, &s->line);
+    return put(s);
 }
 
 static int write_outlook(struct solve *s, const struct answer *a)
@@ -246,6 +317,8 @@ static int write_outlook(struct solve *s, const struct answer *a)
         memcpy(r.condition, a->model->conditions[f->row->condition], sizeof r.condition);
         forecast_print(&r, &s->stream.job, &s->line);
         status = put(s);
+        if (status == STATUS_DONE)
+            status = write_zone(s, a, f);
     }
     for (size_t p = 0; p < a->planes && a->has_residual && status == STATUS_DONE; p++) {
         const struct answer_residual *from = &a->residuals[p];
@@ -284,27 +357,65 @@ static void line_others(struct line *line, const struct answer *a)
     const struct job *job = a->model->job;
     const struct place_result *place = &a->placement;
     line_real(line, "gap", place->gap);
+    line_boolean(line, "fewest_proven", !place->cut);
     line_real(line, "of_nothing", sqrt(fmax(0, place->best.objective) / place->nothing));
     line_open(line, "others", '[');
     for (int k = 0; k < 2 && !isnan(place->next[k].objective); k++) {
-        line_open(line, NULL, '{');
-        line_real(line, "of_nothing", sqrt(fmax(0, place->next[k].objective) / place->nothing));
-        line_open(line, "items", '[');
-        for (size_t i = 0; i < place->next[k].count; i++) {
+        struct outcome_weight items[64];
+        size_t count = place->next[k].count < 64 ? place->next[k].count : 64;
+        for (size_t i = 0; i < count; i++) {
             const struct place_item *item = &place->next[k].items[i];
             const struct job_plane *plane = &job->planes[item->plane];
-            line_open(line, NULL, '{');
-            line_text(line, "plane", plane->name);
-            line_integer(line, "position", position_number(plane, item->position));
-            line_real(line, "angle_deg", item->angle_deg);
-            line_real(line, "sheet_deg", job_sheet_angle(job, item->angle_deg));
-            line_real(line, "mass", signed_mass(plane, item->mass));
-            line_close(line, '}');
+            items[i] = (struct outcome_weight){item->plane, position_number(plane, item->position),
+                                               signed_mass(plane, item->mass), item->angle_deg};
         }
-        line_close(line, ']');
+        line_open(line, NULL, '{');
+        line_real(line, "of_nothing", sqrt(fmax(0, place->next[k].objective) / place->nothing));
+        outcomes_weights(line, "items", job, items, count);
         line_close(line, '}');
     }
     line_close(line, ']');
+}
+
+/* Weights that are not zero, as they stand. */
+static void line_complex(struct line *line, const char *key, const struct job *job,
+                         const double complex *w)
+{
+    struct outcome_weight items[64];
+    size_t count = 0;
+    for (size_t p = 0; p < job->plane_count && count < 64; p++)
+        if (w[p] != 0) {
+            double sign = signed_mass(&job->planes[p], 1);
+            items[count++] =
+                (struct outcome_weight){p, 0, sign * cabs(w[p]), angle_of(sign * w[p])};
+        }
+    outcomes_weights(line, key, job, items, count);
+}
+
+/* The same answer with what is on taken off or left; and one weight a plane for all that is then on. */
+static void line_alternatives(struct line *line, const struct answer *a)
+{
+    const struct job *job = a->model->job;
+    int run = job->aim.mounted >= 0 ? job->aim.mounted : a->model->last_run;
+    if (run < 0 || job_run_is_bare(job, (size_t)run))
+        return;
+    double complex *w = calloc(a->planes + 1, sizeof *w);
+    if (!w) {
+        line->text.failed = 1;
+        return;
+    }
+    bool left = job->aim.mounted < 0; /* the other answer leaves them on */
+    for (size_t p = 0; p < a->planes; p++)
+        w[p] = a->weights[p] + a->mounted[p] - (left ? job_run_weight(job, (size_t)run, p) : 0);
+    line_open(line, "instead", '{');
+    line_text(line, "relative_to", left ? job->runs[run].name : "as found");
+    line_complex(line, "weights", job, w);
+    line_close(line, '}');
+    for (size_t p = 0; p < a->planes; p++)
+        w[p] = a->mounted[p] + a->placed_weights[p];
+    if (!left)
+        line_complex(line, "merged", job, w);
+    free(w);
 }
 
 /* The closing record, and the line on standard error where there is no answer. */
@@ -326,6 +437,8 @@ static int write_next(struct solve *s, const struct advice_next *next, const str
         line_trials(&s->line, &s->stream.job);
     if (a && a->placed && a->placement.best.count > 0)
         line_others(&s->line, a);
+    if (a)
+        line_alternatives(&s->line, a);
     line_end(&s->line);
     if (status != STATUS_DONE)
         message("%s", next->reason);
@@ -335,36 +448,64 @@ static int write_next(struct solve *s, const struct advice_next *next, const str
 
 /* ---- the answer ---- */
 
-static int kernel_status(int error)
-{
-    if (error == 0)
-        return STATUS_DONE;
-    if (error == -1)
-        return message_no_memory();
-    message("the linear algebra failed on these readings");
-    return STATUS_SYSTEM;
-}
-
 /* Findings about the rows; a refused row is lost to the correction. */
 static int judge_rows(struct solve *s, struct model *m)
 {
     int status = STATUS_DONE;
     for (size_t i = 0; i < m->row_count && status == STATUS_DONE; i++) {
-        struct advice_finding f;
-        if (!advice_linearity(m, &m->rows[i], &f))
-            continue;
-        if (f.verdict == ADVICE_REFUSE) {
-            m->rows[i].state = MODEL_LOST;
-            m->rows[i].lost_run = f.run;
+        struct advice_finding f[2];
+        size_t count = 0;
+        count += advice_linearity(m, &m->rows[i], &f[count]);
+        count += notes_stored(m, &m->rows[i], &f[count]);
+        for (size_t k = 0; k < count && status == STATUS_DONE; k++) {
+            if (f[k].verdict == ADVICE_REFUSE) {
+                m->rows[i].state = MODEL_LOST;
+                m->rows[i].lost_run = f[k].run;
+            }
+            status = write_finding(s, &f[k]);
         }
-        status = write_finding(s, &f);
     }
     for (size_t p = 0; p < m->job->plane_count && status == STATUS_DONE; p++) {
         struct advice_finding f;
         if (advice_turn(m, p, &f))
             status = write_finding(s, &f);
     }
+    for (size_t i = 0; i < m->job->sensor_count && status == STATUS_DONE; i++) {
+        struct advice_finding f;
+        if (notes_runout(m, i, &f))
+            status = write_finding(s, &f);
+    }
     return status;
+}
+
+/* The corrected run against what the runs before it predict: each row, and the worst as a finding. */
+static int write_lookback(struct solve *s, const struct model *m, int run)
+{
+    const struct model_row *worst = NULL;
+    struct lookback look;
+    double se = -1;
+    int status = STATUS_DONE;
+    for (size_t i = 0; run >= 0 && i < m->row_count && status == STATUS_DONE; i++) {
+        const struct model_row *row = &m->rows[i];
+        int found = m->amplitudes ? 0 : lookback_row(row, m->job->plane_count, (size_t)run, &look);
+        if (found < 0)
+            return kernel_status(found);
+        if (found == 0)
+            continue;
+        struct compared_record r = {(size_t)run,    row->sensor,   m->conditions[row->condition],
+                                    look.predicted, look.measured, look.se};
+        compared_print(&r, m->job, &s->line);
+        status = put(s);
+        if (look.se > se) {
+            se = look.se;
+            worst = row;
+        }
+    }
+    struct advice_finding f;
+    if (!worst || status != STATUS_DONE)
+        return status;
+    notes_prediction(m, worst, (size_t)run, se, &f);
+    return write_finding(s, &f);
 }
 
 /* Findings that can refuse the placement; `refused` gets the worst of them. */
@@ -405,7 +546,9 @@ static int give_answer(struct solve *s, struct answer *a)
     struct advice_next next = {0};
     struct advice_finding refused = {0};
     int run = advice_corrected_run(a->model);
-    int status = run == -2 ? message_no_memory() : kernel_status(answer_correct(a));
+    int status = run == -2 ? message_no_memory() : write_lookback(s, a->model, run);
+    if (status == STATUS_DONE)
+        status = kernel_status(answer_correct(a));
     if (status == STATUS_DONE)
         status = look_back(a, run, &next);
     if (status == STATUS_DONE && !next.step)
@@ -418,7 +561,10 @@ static int give_answer(struct solve *s, struct answer *a)
         advice_refused_step(&refused, &next);
         return write_next(s, &next, NULL, STATUS_UNSOLVED);
     }
-    bool trim = run >= 0 && run == a->model->job->aim.mounted; /* else everything comes off */
+    bool as_good, trim = run >= 0 && run == a->model->job->aim.mounted; /* else all comes off */
+    bool again = !trim && answer_corrected_by(a, run, &as_good);
+    if (!next.step && again && as_good && !has_targets(a))
+        advice_done_step(a, run, false, &next);
     if (!next.step && !answer_helps(a)) {
         if (!trim || has_targets(a)) {
             advice_useless_step(a, &next);
@@ -427,10 +573,12 @@ static int give_answer(struct solve *s, struct answer *a)
         advice_done_step(a, run, false, &next);
     }
     if (!next.step)
-        advice_fit_step(a, trim, &next);
+        advice_fit_step(a, trim || again, &next);
     status = kernel_status(outlook_fill(a));
     if (status == STATUS_DONE)
         status = write_corrections(s, a);
+    if (status == STATUS_DONE)
+        status = write_parts(s, a);
     if (status == STATUS_DONE && strcmp(next.step, "done") != 0)
         status = write_placements(s, a);
     if (status == STATUS_DONE)
@@ -518,8 +666,7 @@ static int run(const struct option_list *files)
         stream_close(&s.stream);
         return status;
     }
-    s.ruled = calloc(s.stream.job.run_count * s.stream.job.sensor_count + 1, sizeof *s.ruled);
-    status = s.ruled ? read_all(&s) : message_no_memory();
+    status = read_all(&s);
     if (status == STATUS_DONE)
         status = join(&s);
     if (status == STATUS_DONE)

@@ -82,6 +82,10 @@ void placement_print(const struct placement_record *r, const struct job *job, st
     print_angle(r->angle_deg, job, line);
     line_real(line, "mass", r->mass);
     line_reals(line, "pieces", r->pieces, r->piece_count);
+    if (r->piece_count > 0 && r->depths_m[0] > 0) {
+        line_real(line, "hole_m", job->planes[r->plane].hole_m);
+        line_reals(line, "depths_m", r->depths_m, r->piece_count);
+    }
     line_real(line, "force_n", r->force_n);
     line_text(line, "relative_to", r->relative_to);
     line_end(line);
@@ -103,6 +107,8 @@ int placement_parse(struct placement_record *r, const struct job *job, const jso
     }
     if (r->piece_count)
         fields_reals(&f, "pieces", r->pieces, r->piece_count);
+    if (r->piece_count && fields_has(&f, "depths_m"))
+        fields_reals(&f, "depths_m", r->depths_m, r->piece_count);
     r->force_n = fields_real(&f, "force_n");
     fields_copy(&f, "relative_to", r->relative_to, sizeof r->relative_to);
     return fields_done(&f, why);

@@ -241,6 +241,7 @@ struct placement_record {       /* what to fit now at one position of one plane 
     double mass;                /* kg, total at this position */
     double pieces[PIECES_MOST]; /* kg each */
     size_t piece_count;
+    double depths_m[PIECES_MOST]; /* of each piece's hole, removed with a drill; NaN, or 0: none */
     double force_n;             /* at service speed and the plane's radius; NaN: no speed known */
     char relative_to[NAME_ROOM];
 };

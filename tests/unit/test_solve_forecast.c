@@ -125,7 +125,8 @@ static void draw(uint64_t *seed, size_t planes, double effect, int repeats, stru
         double v = sigma * sigma / (scale[s] * scale[s]);
         for (size_t i = 0; i < runs; i++)
             memcpy(cov[i], (double[3]){v, 0, v}, sizeof cov[i]);
-        struct regress_data data = {runs, planes, y[s], x, (const double(*)[3])cov, 1 / scale[s]};
+        struct regress_data data = {.count = runs, .planes = planes, .y = y[s], .x = x,
+                                    .cov = (const double(*)[3])cov, .scale = 1 / scale[s]};
         assert_int_equal(regress_fit(&data, &rows[s]), REGRESS_OK);
         rows[s].dof = dof;
         posterior_forms(&rows[s], scale[s], form, NULL);

@@ -33,7 +33,7 @@ static struct posterior fit(size_t count, size_t planes, const double complex *y
                             const double complex *x)
 {
     static const double none[16][3] = {{0}};
-    struct regress_data data = {count, planes, y, x, none, cabs(y[0])};
+    struct regress_data data = {.count = count, .planes = planes, .y = y, .x = x, .cov = none, .scale = cabs(y[0])};
     struct posterior p;
     assert_int_equal(regress_fit(&data, &p), REGRESS_OK);
     return p;
@@ -308,7 +308,7 @@ static void test_weights_follow_variances(void **state)
     (void)state;
     double complex y[2] = {1, 2};
     static const double cov[2][3] = {{1, 0, 1}, {3, 0, 3}};
-    struct regress_data data = {2, 0, y, y, cov, 1};
+    struct regress_data data = {.count = 2, .planes = 0, .y = y, .x = y, .cov = cov, .scale = 1};
     struct posterior p;
     size_t which = 9;
     double own[3];
@@ -329,7 +329,7 @@ static void test_covariances_need_not_be_circular(void **state)
     (void)state;
     double complex y[2] = {CMPLX(5, -100), CMPLX(300, 7)};
     static const double cov[2][3] = {{1, 0, 1e8}, {1e8, 0, 1}};
-    struct regress_data data = {2, 0, y, y, cov, 1};
+    struct regress_data data = {.count = 2, .planes = 0, .y = y, .x = y, .cov = cov, .scale = 1};
     struct posterior p;
     assert_int_equal(regress_fit(&data, &p), REGRESS_OK);
     assert_true(cabs(p.mean[0] - CMPLX(5, 7)) < 1e-4);
@@ -341,9 +341,9 @@ static void test_rank(void **state)
     (void)state;
     double complex x[8] = {0, 0, 1, 0, 0, 0, 2, 0}, y[4] = {1, 2, 1, 3},
                    both[6] = {0, 0, 1, 2, 2, 4};
-    assert_int_equal(regress_rank(2, 2, x), 2);
-    assert_int_equal(regress_rank(0, 2, x), 0);
-    assert_int_equal(regress_rank(3, 2, both), 2);
+    assert_int_equal(regress_rank(2, 2, x, NULL), 2);
+    assert_int_equal(regress_rank(0, 2, x, NULL), 0);
+    assert_int_equal(regress_rank(3, 2, both, NULL), 2);
     struct posterior p = fit(4, 2, y, x); /* no run on plane 1 */
     assert_int_equal(p.rank, 2);
     assert_true(p.known[0] && p.known[1] && !p.known[2]);
@@ -351,7 +351,7 @@ static void test_rank(void **state)
     posterior_release(&p);
     y[0] = NAN;
     static const double none[4][3] = {{0}};
-    struct regress_data data = {4, 2, y, x, none, 1};
+    struct regress_data data = {.count = 4, .planes = 2, .y = y, .x = x, .cov = none, .scale = 1};
     assert_int_equal(regress_fit(&data, &p), REGRESS_NAN);
 }
 
@@ -406,6 +406,43 @@ static void test_repeat(void **state)
     assert_true(fabs(less.squares - 0.02) < 1e-12 && fabs(less.explained - 0.005) < 1e-12);
 }
 
+/* One reading and a prior of the same weight: the textbook's mean of two normal estimates, (a/va +
+ * b/vb)/(1/va + 1/vb), variance 1/(1/va + 1/vb). */
+static void test_prior(void **state)
+{
+    (void)state;
+    double complex y[2] = {at(8, 40), 0}, x[2] = {0, 0.05};
+    double complex seen = at(60, 200), stored = at(66, 205);
+    y[1] = y[0] + x[1] * seen;
+    static const double cov[2][3] = {{1e-12, 0, 1e-12}, {0.04, 0, 0.04}};
+    double per_kg = 0.04 / (0.05 * 0.05);
+    const double prior_cov[1][3] = {{per_kg / 3, 0, per_kg / 3}};
+    size_t plane = 0;
+    struct regress_data data = {.count = 2, .planes = 1, .y = y, .x = x, .cov = cov, .scale = 8,
+                                .prior_count = 1, .prior_plane = &plane, .prior = &stored,
+                                .prior_cov = prior_cov};
+    struct posterior p;
+    assert_int_equal(regress_fit(&data, &p), REGRESS_OK);
+    double complex wanted = (seen + 3 * stored) / 4;
+    assert_true(cabs(p.mean[1] - wanted) < 1e-6 * cabs(wanted));
+    double got[3];
+    posterior_marginal(&p, 1, got);
+    assert_true(fabs(got[0] / (per_kg / 4) - 1) < 1e-6 && fabs(got[2] / (per_kg / 4) - 1) < 1e-6);
+    posterior_release(&p);
+    /* as found alone: the prior is the answer, and nothing is left to find */
+    data.count = 1;
+    assert_int_equal(regress_fit(&data, &p), REGRESS_OK);
+    assert_int_equal(p.rank, 2);
+    assert_true(p.known[0] && p.known[1]);
+    assert_true(cabs(p.mean[1] - stored) < 1e-9 * cabs(stored));
+    assert_true(cabs(p.mean[0] - y[0]) < 1e-9);
+    posterior_release(&p);
+    const bool held[2] = {true, false};
+    const double complex bare[2] = {0, 0};
+    assert_int_equal(regress_rank(1, 2, bare, held), 2);
+    assert_int_equal(regress_rank(1, 2, bare, NULL), 1);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -426,6 +463,7 @@ int main(void)
         cmocka_unit_test(test_static_and_couple),
         cmocka_unit_test(test_uncertain_response_shrinks),
         cmocka_unit_test(test_repeat),
+        cmocka_unit_test(test_prior),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

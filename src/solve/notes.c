@@ -1,0 +1,151 @@
+#include "solve/notes.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "base/angle.h"
+#include "sheet/units.h"
+#include "solve/stored.h"
+#include "solve/zones.h"
+
+static const char *sensor_of(const struct model *m, const struct model_row *row)
+{
+    return m->job->sensors[row->sensor].name;
+}
+
+static void tell_changed(const struct model *m, const struct model_row *row,
+                         struct advice_finding *f)
+{
+    const char *sensor = sensor_of(m, row);
+    const char *then = row->kept == MODEL_STORED_LEFT
+                           ? "the stored ones of this sensor are left out"
+                           : "they are taken as less sure; a trial run would settle it";
+    if (row->kept != MODEL_STORED_LEFT && f->verdict == ADVICE_OK)
+        snprintf(f->text, sizeof f->text, "the stored responses of sensor '%s' fit the runs", sensor);
+    else if (row->changed_plane >= 0)
+        snprintf(f->text, sizeof f->text,
+                 "sensor '%s' responds to plane '%s' otherwise than stored, by more than both allow: "
+                 "something changed in the machine, its speed, mark or sensors; %s",
+                 sensor, m->job->planes[row->changed_plane].name, then);
+    else
+        snprintf(f->text, sizeof f->text,
+                 "run '%s' does not come out at sensor '%s' as the stored responses say: something "
+                 "changed in the machine, its speed, mark or sensors; %s",
+                 m->job->runs[row->misfit_run].name, sensor, then);
+}
+
+bool notes_stored(const struct model *m, const struct model_row *row, struct advice_finding *f)
+{
+    struct judge_limits l =
+        judge_limits_of(m->job, "response-changed", STORED_CHANGED, INFINITY);
+    if (l.off || (isnan(row->changed) && !row->apart))
+        return false;
+    *f = (struct advice_finding){.check = "response-changed",
+                                 .unit = "s.e.",
+                                 .basis = "common practice",
+                                 .run = -1,
+                                 .sensor = (int)row->sensor};
+    if (row->apart) {
+        f->verdict = ADVICE_CAUTION;
+        f->unit = "%";
+        f->value = 100 * fabs(row->apart->speed_rpm / row->speed_rpm - 1);
+        f->limit = 100 * STORED_SPEED_APART;
+        snprintf(f->text, sizeof f->text,
+                 "the stored responses of sensor '%s' are of %s rpm, the runs of %s rpm: not used",
+                 sensor_of(m, row), judge_figure(row->apart->speed_rpm, 4).text,
+                 judge_figure(row->speed_rpm, 4).text);
+        return true;
+    }
+    f->value = row->changed;
+    f->verdict = judge_value(&l, row->changed, &f->limit);
+    tell_changed(m, row, f);
+    return true;
+}
+
+/* "12 um pk-pk at a lag of 40 deg" as the sensor is shown. */
+static void vector_words(const struct job_sensor *s, double complex z, double rpm, char *text,
+                         size_t size)
+{
+    char unit[24];
+    double complex shown = units_convert(z, s->quantity, s->show.quantity, rpm * PI / 30);
+    if (isnan(creal(shown)))
+        snprintf(text, size, "%s m pk at a lag of %.0f deg", judge_figure(cabs(z), 3).text,
+                 angle_of(z));
+    else
+        snprintf(text, size, "%s %s at a lag of %.0f deg",
+                 judge_figure(units_shown(cabs(shown), &s->show), 3).text,
+                 units_show_text(&s->show, unit), angle_of(shown));
+}
+
+bool notes_runout(const struct model *m, size_t sensor, struct advice_finding *f)
+{
+    const struct model_runout *o = &m->runout[sensor];
+    const struct job_sensor *s = &m->job->sensors[sensor];
+    char words[100];
+    if (o->count == 0 || m->amplitudes)
+        return false;
+    *f = (struct advice_finding){.check = "runout",
+                                 .unit = "",
+                                 .basis = "common practice",
+                                 .run = -1,
+                                 .sensor = (int)sensor,
+                                 .value = NAN,
+                                 .limit = NAN};
+    vector_words(s, o->vector, o->speed_rpm, words, sizeof words);
+    snprintf(f->text, sizeof f->text,
+             "the slow-roll vector, %s, is taken off all readings of sensor '%s': correction and "
+             "forecast are of the vibration without runout",
+             words, s->name);
+    return true;
+}
+
+void notes_prediction(const struct model *m, const struct model_row *row, size_t run, double se,
+                      struct advice_finding *f)
+{
+    struct judge_limits l = judge_limits_of(m->job, "linearity", 3, INFINITY);
+    *f = (struct advice_finding){.check = "prediction",
+                                 .unit = "s.e.",
+                                 .basis = "common practice",
+                                 .run = (int)run,
+                                 .sensor = (int)row->sensor,
+                                 .value = se};
+    l.refuse = INFINITY; /* linearity refuses, where it must */
+    f->verdict = judge_value(&l, se, &f->limit);
+    if (f->verdict == ADVICE_OK)
+        snprintf(f->text, sizeof f->text,
+                 "run '%s' came out as the runs before it predict; sensor '%s' is furthest off",
+                 m->job->runs[run].name, sensor_of(m, row));
+    else
+        snprintf(f->text, sizeof f->text,
+                 "run '%s' did not come out at sensor '%s' as the runs before it predict: check that "
+                 "the weights, their angles and radii are as the sheet says, and whether the machine "
+                 "or its speed changed",
+                 m->job->runs[run].name, sensor_of(m, row));
+}
+
+bool notes_zone(const struct answer *a, const struct answer_forecast *fc, struct advice_finding *f)
+{
+    const struct answer_zone *z = &fc->zone;
+    if (!z->given)
+        return false;
+    char before = zones_of(z->before, z->limits), after = zones_of(z->after, z->limits);
+    bool length = z->quantity == QUANTITY_DISPLACEMENT;
+    double unit = length ? 1e-6 : 1e-3;
+    const char *name = length ? "um rms" : "mm/s rms";
+    *f = (struct advice_finding){.check = "zone",
+                                 .unit = name,
+                                 .basis = ZONES_BASIS,
+                                 .run = -1,
+                                 .sensor = (int)fc->row->sensor,
+                                 .value = z->after / unit,
+                                 .limit = z->limits[1] / unit};
+    f->verdict = after > 'B' ? ADVICE_CAUTION : ADVICE_OK;
+    snprintf(f->text, sizeof f->text,
+             "sensor '%s': %s %s, zone %c now; %s %s, zone %c expected after (group %d, %s%s)",
+             sensor_of(a->model, fc->row), judge_figure(z->before / unit, 2).text, name, before,
+             judge_figure(z->after / unit, 2).text, name, after, a->model->job->aim.zone_group,
+             a->model->job->aim.zone_flexible ? "flexible" : "rigid",
+             z->overall ? "" : "; of 1x alone, the overall vibration is not less");
+    return true;
+}

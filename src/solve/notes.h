@@ -1,0 +1,27 @@
+/* notes.h - findings beside the answer: stored responses, runout, a prediction that came true or not,
+ * vibration zones. Each gives false where there is nothing to say. */
+#ifndef LOPSIDE_SOLVE_NOTES_H
+#define LOPSIDE_SOLVE_NOTES_H
+
+#include <stdbool.h>
+#include <stddef.h>
+
+#include "solve/advice.h"
+#include "solve/answer.h"
+
+/* `response-changed`: the stored responses of a row against its runs. */
+bool notes_stored(const struct model *model, const struct model_row *row,
+                  struct advice_finding *finding);
+
+/* `runout`: the slow-roll vector that is taken off the readings of a sensor. */
+bool notes_runout(const struct model *model, size_t sensor, struct advice_finding *finding);
+
+/* `prediction`: a row's reading of run `run` lies `se` standard errors from what was predicted. */
+void notes_prediction(const struct model *model, const struct model_row *row, size_t run, double se,
+                      struct advice_finding *finding);
+
+/* `zone`: where the sensor's vibration lies, and where it is expected after. */
+bool notes_zone(const struct answer *answer, const struct answer_forecast *forecast,
+                struct advice_finding *finding);
+
+#endif
