@@ -97,16 +97,19 @@ static const char *name_of(const struct table *t, const struct vet_runs *runs, s
     return runs->items[t->positions[run]].name;
 }
 
-/* "in run 'x' (or 'y')", "from run 'x' on". */
-static void say_where(const struct table *t, const struct vet_runs *runs, const struct suspect *s,
-                      char *to, size_t room)
+/* "in run 'x' (or by 30 deg in 'y')", "from run 'x' on". */
+static void say_where(const struct table *t, const struct vet_runs *runs, enum suspects_kind kind,
+                      const struct suspect *s, char *to, size_t room)
 {
     bool onwards = s->onwards && s->run + 1 < t->count;
+    char other[96] = "", by[24] = "";
 
-    snprintf(to, room, "%s run '%s'%s%s%s%s", onwards ? "from" : "in", name_of(t, runs, s->run),
-             onwards ? " on" : "", s->ambiguous && s->other != s->run ? " (or '" : "",
-             s->ambiguous && s->other != s->run ? name_of(t, runs, s->other) : "",
-             s->ambiguous && s->other != s->run ? "')" : "");
+    if (kind != SUSPECTS_SWAP)
+        snprintf(by, sizeof by, "by %.0f deg ", s->other_deg);
+    if (s->ambiguous && s->other != s->run)
+        snprintf(other, sizeof other, " (or %sin '%s')", by, name_of(t, runs, s->other));
+    snprintf(to, room, "%s run '%s'%s%s", onwards ? "from" : "in", name_of(t, runs, s->run),
+             onwards ? " on" : "", other);
 }
 
 static void say_what(const struct job *job, enum suspects_kind kind, const struct suspect *s,
@@ -131,7 +134,7 @@ static void report(const struct table *t, const struct vet_runs *runs, const str
     static const char *const things[] = {"a shift of all lags", "an exchange of sensors",
                                          "a turned sensor"};
     enum check check = checks[kind];
-    char where[128], what[128];
+    char where[160], what[128];
 
     if (!s->spare) {
         findings_rule(findings, check, RULING_OK, -1, -1, NAN, NAN, "",
@@ -144,7 +147,7 @@ static void report(const struct table *t, const struct vet_runs *runs, const str
                       "", "the runs of condition '%s' do not call for %s", condition, things[kind]);
         return;
     }
-    say_where(t, runs, s, where, sizeof where);
+    say_where(t, runs, kind, s, where, sizeof where);
     say_what(job, kind, s, what, sizeof what);
     findings_add(findings, check, (int)t->positions[s->run],
                  kind == SUSPECTS_TURN ? (int)s->sensor : -1, s->better,

@@ -13,6 +13,8 @@ static const double TURN_LEAST =
 static const double AS_GOOD = 6; /* of chi-squared: the 95 % point with 2 degrees of freedom */
 static const double RANK_LEAST = 1e-9; /* rounding of weights scaled to 1 */
 
+static const double ROUNDING = 1e-6; /* of chi-squared */
+
 /* Room for one regression, and the residuals of every sensor. */
 struct bench {
     const struct suspects_set *set;
@@ -141,16 +143,18 @@ static void offer(struct search *search, double sum, double used, struct suspect
 {
     bool first = isnan(search->sum);
 
-    if (first || sum < search->sum) {
+    if (first || sum <= search->sum + ROUNDING) { /* of two alike the later */
         bool as_good = !first && search->sum - sum < AS_GOOD;
         candidate.ambiguous = as_good;
         candidate.other = as_good ? search->best.run : candidate.run;
+        candidate.other_deg = search->best.angle_deg;
         search->best = candidate;
         search->sum = sum;
         search->used = used;
     } else if (sum - search->sum < AS_GOOD && !search->best.ambiguous) {
         search->best.ambiguous = true;
         search->best.other = candidate.run;
+        search->best.other_deg = candidate.angle_deg;
     }
 }
 

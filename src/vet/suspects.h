@@ -30,6 +30,7 @@ struct suspect {
     bool onwards;        /* all runs from that one on; false: it alone */
     bool ambiguous;      /* another run, or the same of fewer or more runs, explains it as well */
     size_t other;        /* that run */
+    double other_deg;    /* and its angle */
 };
 
 /* Regression of each sensor's readings on [1, weights] (least squares, weighted by variance +
