@@ -7,6 +7,8 @@
 #include "base/message.h"
 #include "base/status.h"
 #include "desk/balance.h"
+#include "desk/check.h"
+#include "desk/new.h"
 #include "read/read.h"
 #include "report/report.h"
 #include "solve/solve.h"
@@ -27,6 +29,8 @@ static const struct command commands[] = {
     {"solve", stage_solve, "responses, correction, placement, forecast, the next step"},
     {"report", stage_report, "what people read: text, csv, json"},
     {"balance", desk_balance, "the six stages joined by pipes, from a sheet to a report"},
+    {"new", desk_new, "a first job sheet out of recordings and a few answers"},
+    {"check", desk_check, "is the sheet right, and what is on the channels?"},
     {NULL, NULL, NULL},
 };
 

@@ -1,0 +1,273 @@
+#include "desk/check.h"
+
+#include <math.h>
+#include <stdint.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <unistd.h>
+
+#include "base/message.h"
+#include "base/options.h"
+#include "base/status.h"
+#include "desk/look.h"
+#include "desk/wish.h"
+#include "sheet/sheet.h"
+#include "sheet/units.h"
+
+#define SPEED_OFF 0.1 /* the refusal of vet's check `service-speed` */
+
+struct check {
+    struct sheet sheet;
+    long remarks;
+    const char *mark, *plain; /* what begins and ends a remark on a terminal; else empty */
+    int status;               /* the first failure */
+};
+
+/* ---- words ---- */
+
+/* A text of the user's: no control character reaches a terminal. Padded to `width` characters. */
+static void print_text(const char *text, int width)
+{
+    for (const char *c = text; *c; c++) {
+        putchar((unsigned char)*c < 0x20 || *c == 0x7F ? '?' : *c);
+        width -= ((unsigned char)*c & 0xC0) != 0x80;
+    }
+    printf("%*s", width > 0 ? width : 0, "");
+}
+
+static void begin_remark(struct check *check, const char *name)
+{
+    printf("    %s! ", check->mark);
+    print_text(name, 0);
+    fputs(": ", stdout);
+    check->remarks++;
+}
+
+static void end_remark(const struct check *check)
+{
+    printf("%s\n", check->plain);
+}
+
+/* In what people read a column: its quantity's usual unit. */
+static struct show unit_of(const struct job *job, int sensor)
+{
+    static const char *const metric[] = {"g", "mm/s", "um"};
+    static const char *const us[] = {"g", "in/s", "mil"};
+    struct show show = {.unit = "", .si = 1};
+    if (sensor >= 0) {
+        const enum quantity quantity = job->sensors[sensor].quantity;
+        const char *const *units = job->units == UNITS_US ? us : metric;
+        if (quantity == QUANTITY_TACHO || !units_vibration(units[quantity], &show))
+            show = (struct show){.unit = "", .si = 1};
+    }
+    return show;
+}
+
+/* ---- one run ---- */
+
+static void remark_signal(struct check *check, const struct look *look, size_t c, const char *name,
+                          bool tacho, const struct recording_column *columns)
+{
+    const struct look_column *column = &look->columns[c];
+    if (!(column->resolution > 0)) {
+        begin_remark(check, name);
+        fputs("no signal, it never changes", stdout);
+        end_remark(check);
+    } else if (column->railed > 0 && !tacho) { /* pulses that are cut off are no worse */
+        begin_remark(check, name);
+        printf("%lld of %lld samples at full scale or held at an extreme", column->railed,
+               look->seen);
+        end_remark(check);
+    }
+    if (column->same_as >= 0) {
+        begin_remark(check, name);
+        fputs("the same signal as '", stdout);
+        print_text(columns[column->same_as].name, 0);
+        putchar('\'');
+        end_remark(check);
+    }
+}
+
+static void remark_tacho(struct check *check, const struct look_column *column)
+{
+    const double service = check->sheet.job.service_rpm;
+    if (!column->pulses) {
+        begin_remark(check, "tacho");
+        fputs("no regular pulses seen", stdout);
+        end_remark(check);
+    } else if (!column->reference) {
+        begin_remark(check, "tacho");
+        fputs("pulses that cannot be told apart: a speed, but no phase", stdout);
+        end_remark(check);
+    }
+    if (column->pulses && fabs(column->speed_rpm / service - 1) > SPEED_OFF) {
+        begin_remark(check, "tacho");
+        printf("%.0f rpm, and the service speed is %.0f rpm", column->speed_rpm, service);
+        end_remark(check);
+    }
+}
+
+static void print_column(const struct check *check, const struct wish *wish,
+                         const struct look *look, size_t c)
+{
+    const struct look_column *column = &look->columns[c];
+    const struct show unit = unit_of(&check->sheet.job, wish->sensors[c]);
+    const bool volts = wish->sensors[c] < 0 && !isnan(column->rail);
+    fputs("    ", stdout);
+    print_text(wish->columns[c].name, 16);
+    putchar(' ');
+    print_text(wish->columns[c].channel, 12);
+    printf(" %10.3g %10.3g", column->min / unit.si, column->max / unit.si);
+    if (isnan(column->rail))
+        printf(" %10s", "-");
+    else
+        printf(" %10.3g", column->rail / unit.si);
+    printf(" %s", volts ? "V" : unit.unit);
+    if (wish->sensors[c] < 0 && column->pulses)
+        printf("%s%.1f rpm", volts ? ", " : "", column->speed_rpm);
+    putchar('\n');
+}
+
+static void print_look(struct check *check, const struct wish *wish, const struct look *look)
+{
+    printf("  %.4g s at %.6g Hz", (double)look->frames / look->rate_hz, look->rate_hz);
+    if (look->seen < look->frames)
+        printf(", of which the first %.4g s are shown", (double)look->seen / look->rate_hz);
+    printf("\n    %-16s %-12s %10s %10s %10s\n", "column", "channel", "lowest", "highest",
+           "full scale");
+    for (size_t c = 0; c < look->count; c++)
+        print_column(check, wish, look, c);
+    for (size_t c = 0; c < look->count; c++)
+        remark_signal(check, look, c, wish->columns[c].name, wish->tacho == (int)c, wish->columns);
+    if (wish->tacho >= 0)
+        remark_tacho(check, &look->columns[wish->tacho]);
+}
+
+static void print_run_head(const struct check *check, size_t run, const char *path)
+{
+    if (path) {
+        fputs("\nrecording '", stdout);
+        print_text(path, 0);
+        puts("'");
+        return;
+    }
+    fputs("\nrun '", stdout);
+    print_text(check->sheet.job.runs[run].name, 0);
+    putchar('\'');
+    for (size_t f = 0; f < check->sheet.runs[run].file_count; f++) {
+        fputs(f ? ", " : ": ", stdout);
+        print_text(check->sheet.runs[run].files[f], 0);
+    }
+    puts(check->sheet.job.runs[run].hand_count > 0 ? ": by hand" : "");
+}
+
+/* Run `run` of the sheet, or the recording `path`. A failure is noted, and the next is looked at.
+ */
+static void check_run(struct check *check, size_t run, const char *path)
+{
+    const struct job *job = &check->sheet.job;
+    struct fault fault = {0};
+    struct wish wish;
+    struct look look = {0};
+    print_run_head(check, run, path);
+    if (!path && check->sheet.runs[run].file_count == 0)
+        return;
+    if (wish_init(&wish, &check->sheet, run, path) != 0)
+        fault_no_memory(&fault);
+    else if (wish.recording.column_count == 0)
+        fault_set(&fault, STATUS_USAGE, "no sensor and no tacho is on: '%s'", wish.paths[0]);
+    const struct look_tacho tacho = {.column = wish.tacho,
+                                     .edge = job->tacho_edge,
+                                     .marks = job->tacho_marks,
+                                     .level = job->tacho_level,
+                                     .service_rpm = job->service_rpm};
+    if (fault.status == STATUS_DONE &&
+        look_at(&look, &wish.recording, &tacho, &fault) == STATUS_DONE)
+        print_look(check, &wish, &look);
+    fflush(stdout); /* what is said stands behind the run's head */
+    if (fault.status != STATUS_DONE) {
+        message("%s", fault.text);
+        puts("  cannot be read");
+        check->status = check->status == STATUS_DONE ? fault.status : check->status;
+    }
+    look_release(&look);
+    wish_release(&wish);
+}
+
+/* ---- the sheet ---- */
+
+static int read_sheet(struct check *check, const char *path, bool audit)
+{
+    struct buffer errors = BUFFER_INIT;
+    int count = sheet_read(&check->sheet, path, audit, &errors);
+    int status = count == 0 ? STATUS_DONE : count > 0 ? STATUS_USAGE : message_no_memory();
+    for (char *line = errors.bytes; count > 0 && line && *line;) {
+        char *end = strchr(line, '\n');
+        if (end)
+            *end = '\0';
+        message("%s", line);
+        line = end ? end + 1 : NULL;
+    }
+    buffer_release(&errors);
+    return status;
+}
+
+static void print_count(size_t count, const char *what)
+{
+    printf(", %zu %s%s", count, what, count == 1 ? "" : "s");
+}
+
+static void print_sheet(const struct check *check)
+{
+    const struct job *job = &check->sheet.job;
+    print_text(job->title, 0);
+    fputs("\n  ", stdout);
+    print_text(check->sheet.path, 0);
+    fputs(": no mistake in the sheet", stdout);
+    print_count(job->sensor_count, "sensor");
+    print_count(job->plane_count, "plane");
+    print_count(job->run_count, "run");
+    puts(job->has_tacho ? "" : ", no tacho");
+}
+
+static void use_colour(struct check *check)
+{
+    const char *no = getenv("NO_COLOR"), *term = getenv("TERM");
+    const bool colour = isatty(STDOUT_FILENO) && !(no && *no) && term && strcmp(term, "dumb") != 0;
+    check->mark = colour ? "\033[1m" : "";
+    check->plain = colour ? "\033[0m" : "";
+}
+
+int desk_check(int argc, char **argv)
+{
+    static const struct option options[] = {{.name = NULL}};
+    static const struct usage usage = {
+        "check",
+        "SHEET [RECORDING...]",
+        "is the sheet right, are its files there, what is on their channels?",
+        options,
+        1,
+        SIZE_MAX,
+        "Shows rate, length, range and the tacho of every run, from the first 20 s of it.\n"
+        "With recordings, these are looked at in the place of the sheet's runs."};
+    struct option_list operands;
+    struct check check = {.status = STATUS_DONE};
+    int parsed = options_parse(&usage, argc, argv, &operands);
+    int status = parsed == OPTIONS_MISUSE ? STATUS_USAGE : STATUS_DONE;
+    if (parsed == OPTIONS_GO)
+        status = read_sheet(&check, operands.items[0], operands.count > 1);
+    if (parsed == OPTIONS_GO && status == STATUS_DONE) {
+        use_colour(&check);
+        print_sheet(&check);
+        for (size_t i = 1; i < operands.count; i++)
+            check_run(&check, 0, operands.items[i]);
+        for (size_t i = 0; operands.count == 1 && i < check.sheet.job.run_count; i++)
+            check_run(&check, i, NULL);
+        printf("\n%ld remark%s\n", check.remarks, check.remarks == 1 ? "" : "s");
+        status = check.status;
+    }
+    sheet_release(&check.sheet);
+    option_list_release(&operands);
+    return status;
+}

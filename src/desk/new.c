@@ -1,0 +1,355 @@
+#define _XOPEN_SOURCE 700 /* realpath */
+#include "desk/new.h"
+
+#include <errno.h>
+#include <fcntl.h>
+#include <math.h>
+#include <stdint.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <unistd.h>
+
+#include "base/buffer.h"
+#include "base/message.h"
+#include "base/options.h"
+#include "base/status.h"
+#include "desk/channels.h"
+#include "desk/outline.h"
+#include "read/names.h"
+#include "sheet/sheet.h"
+
+#define TYPED_ROOM 201 /* a title's length and the NUL */
+
+struct draft {
+    struct outline outline;
+    struct channels channels;
+    const char *output;            /* -o; NULL: standard output */
+    struct option_list recordings; /* as named */
+    struct option_list planes;
+    struct option_list weight_texts; /* RUN=WEIGHT or RUN:PLANE=WEIGHT */
+    char (*runs)[NAME_ROOM];         /* owned */
+    char **files;                    /* owned, as the sheet names them */
+    struct outline_weight *weights;  /* owned */
+    char **typed;                    /* owned answers */
+    size_t typed_count;
+};
+
+/* ---- what the options say ---- */
+
+static int find_name(const char *name, size_t length, const char *const *names, size_t count)
+{
+    for (size_t i = 0; i < count; i++)
+        if (strlen(names[i]) == length && !strncmp(names[i], name, length))
+            return (int)i;
+    return -1;
+}
+
+static int find_run(const struct draft *draft, const char *name, size_t length)
+{
+    for (size_t i = 0; i < draft->recordings.count; i++)
+        if (strlen(draft->runs[i]) == length && !strncmp(draft->runs[i], name, length))
+            return (int)i;
+    return -1;
+}
+
+/* "trial=60 g at position 2", "trial:left=60 g at position 2" */
+static int take_weight(struct draft *draft, const char *text)
+{
+    struct outline *outline = &draft->outline;
+    const size_t head = strcspn(text, "="), run = strcspn(text, ":=");
+    if (text[head] != '=' || !text[head + 1]) {
+        message("no weight of the form RUN=WEIGHT: '%s'", text);
+        return STATUS_USAGE;
+    }
+    const int r = find_run(draft, text, run);
+    const int p = run < head ? find_name(text + run + 1, head - run - 1, outline->planes,
+                                         outline->plane_count)
+                             : 0;
+    if (r < 0)
+        message("no run of that name: '%.*s' (runs are named after their recordings)", (int)run,
+                text);
+    else if (p < 0)
+        message("no plane of that name: '%.*s'", (int)(head - run - 1), text + run + 1);
+    else
+        draft->weights[outline->weight_count++] =
+            (struct outline_weight){(size_t)r, (size_t)p, text + head + 1};
+    return r < 0 || p < 0 ? STATUS_USAGE : STATUS_DONE;
+}
+
+/* "against" and "with" will do. */
+static int take_angles(struct outline_answers *answers)
+{
+    static const char *const senses[] = {"against rotation", "with rotation"};
+    const char *said = answers->angles;
+    if (!said || !*said)
+        return STATUS_DONE;
+    for (int i = 0; i < 2; i++)
+        if (!strncmp(said, senses[i], strlen(said))) {
+            answers->angles = senses[i];
+            return STATUS_DONE;
+        }
+    message("neither 'against rotation' nor 'with rotation': '%s'", said);
+    return STATUS_USAGE;
+}
+
+/* A recording's path as seen from the sheet's folder. New; NULL: no memory. */
+static char *path_from_sheet(const char *path, const char *output)
+{
+    const char *slash = output ? strrchr(output, '/') : NULL;
+    const size_t folder = slash ? (size_t)(slash - output) + 1 : 0;
+    char *full = NULL;
+    if (folder > 0 && path[0] != '/') {
+        if (!strncmp(path, output, folder))
+            return strdup(path + folder);
+        full = realpath(path, NULL);
+    }
+    return full ? full : strdup(path);
+}
+
+static int name_runs(struct draft *draft)
+{
+    const size_t count = draft->recordings.count;
+    draft->runs = calloc(count, sizeof *draft->runs);
+    draft->files = calloc(count, sizeof *draft->files);
+    if (!draft->runs || !draft->files ||
+        names_from_paths((char *const *)draft->recordings.items, count, draft->runs) != 0)
+        return message_no_memory();
+    for (size_t i = 0; i < count; i++) {
+        draft->files[i] = path_from_sheet(draft->recordings.items[i], draft->output);
+        if (!draft->files[i])
+            return message_no_memory();
+    }
+    draft->outline.runs = (const char(*)[NAME_ROOM])draft->runs;
+    draft->outline.files = (const char *const *)draft->files;
+    draft->outline.run_count = count;
+    return STATUS_DONE;
+}
+
+/* ---- questions, on terminals only ---- */
+
+/* A line typed in answer to a question on standard error; NULL: nothing was typed. */
+static const char *ask(struct draft *draft, const char *question)
+{
+    char line[TYPED_ROOM];
+    fprintf(stderr, "%s: ", question);
+    if (!fgets(line, sizeof line, stdin))
+        return NULL;
+    line[strcspn(line, "\n")] = '\0';
+    const char *text = line + strspn(line, " \t");
+    char *kept = *text ? strdup(text) : NULL;
+    if (kept)
+        draft->typed[draft->typed_count++] = kept;
+    return kept;
+}
+
+static bool any_sensor_without_unit(const struct draft *draft)
+{
+    for (size_t i = 0; i < draft->channels.count; i++)
+        if (draft->channels.items[i].use == CHANNELS_SENSOR && !*draft->channels.items[i].unit)
+            return true;
+    return false;
+}
+
+static bool has_tacho(const struct draft *draft)
+{
+    for (size_t i = 0; i < draft->channels.count; i++)
+        if (draft->channels.items[i].use == CHANNELS_TACHO)
+            return true;
+    return false;
+}
+
+static void ask_all(struct draft *draft)
+{
+    struct outline_answers *a = &draft->outline.answers;
+    const bool sound = !draft->channels.text, open = any_sensor_without_unit(draft);
+    const struct {
+        const char **answer;
+        bool wanted;
+        const char *question;
+    } questions[] = {
+        {&a->title, true, "Title of the job"},
+        {&a->angles, true, "Do angles of weights count 'against' or 'with' rotation"},
+        {&a->tacho, !has_tacho(draft), "Channel of the tacho (none: there is none)"},
+        {&a->unit, open, "What the sensors measure (g, m/s2, mm/s, in/s, um, mil)"},
+        {&a->scale, open, "Their scale (100 mV/g; empty: the recording is in that unit)"},
+        {&a->full_scale, sound, "Volts at digital full scale (10 V)"},
+        {&a->rate, !draft->channels.has_rate, "Rate of the recording (12800 Hz)"},
+        {&a->mass, true, "Mass of the rotor (340 kg)"},
+        {&a->speed, true, "Service speed (1480 rpm)"},
+        {&a->radius, true, "Radius where weights are fixed (410 mm)"},
+        {&a->positions, true, "Positions for weights (12 from 0 deg; empty: any angle)"},
+        {&a->stock, true, "Pieces at hand (10 20 50 g; empty: any mass)"},
+        {&a->target, true, "Target (1.8 mm/s rms)"}};
+    fputs("What is left empty stays open in the sheet, as a comment.\n", stderr);
+    for (size_t i = 0; i < sizeof questions / sizeof *questions; i++)
+        if (!*questions[i].answer && questions[i].wanted)
+            *questions[i].answer = ask(draft, questions[i].question);
+    for (size_t r = 0; draft->weight_texts.count == 0 && r < draft->recordings.count; r++) {
+        char question[160];
+        snprintf(question, sizeof question,
+                 "Weight mounted on plane '%s' in run '%s' (60 g at 30 deg; empty: none)",
+                 draft->outline.planes[0], draft->runs[r]);
+        const char *weight = ask(draft, question);
+        if (weight)
+            draft->weights[draft->outline.weight_count++] = (struct outline_weight){r, 0, weight};
+    }
+}
+
+static int answer(struct draft *draft)
+{
+    static const char *const plane[] = {"rotor"};
+    struct outline *outline = &draft->outline;
+    const size_t weights = draft->weight_texts.count + draft->recordings.count;
+    outline->channels = &draft->channels;
+    outline->planes = draft->planes.count ? draft->planes.items : plane;
+    outline->plane_count = draft->planes.count ? draft->planes.count : 1;
+    draft->weights = calloc(weights, sizeof *draft->weights);
+    draft->typed = calloc(weights + 16, sizeof *draft->typed);
+    if (!draft->weights || !draft->typed)
+        return message_no_memory();
+    outline->weights = draft->weights;
+    int status = STATUS_DONE;
+    for (size_t i = 0; i < draft->weight_texts.count; i++)
+        if (take_weight(draft, draft->weight_texts.items[i]) != STATUS_DONE)
+            status = STATUS_USAGE;
+    if (status == STATUS_DONE && isatty(STDIN_FILENO) && isatty(STDOUT_FILENO))
+        ask_all(draft);
+    return status == STATUS_DONE ? take_angles(&outline->answers) : status;
+}
+
+/* ---- the sheet ---- */
+
+static int write_file(const char *path, const struct buffer *text)
+{
+    int fd = open(path, O_WRONLY | O_CREAT | O_EXCL | O_CLOEXEC, 0666);
+    if (fd < 0 && errno == EEXIST) {
+        message("is there already, and stays as it is: '%s'", path);
+        return STATUS_USAGE;
+    }
+    FILE *file = fd < 0 ? NULL : fdopen(fd, "w");
+    bool good = file && fwrite(text->bytes, 1, text->length, file) == text->length;
+    good = file && fclose(file) == 0 && good;
+    if (good)
+        return STATUS_DONE;
+    message("cannot write: '%s' (%s)", path, strerror(errno));
+    if (fd >= 0)
+        unlink(path);
+    return STATUS_SYSTEM;
+}
+
+/* Says what the sheet still lacks, in the words of its reader. */
+static int say_open_ends(const char *path)
+{
+    struct sheet sheet = {0};
+    struct buffer errors = BUFFER_INIT;
+    const int count = sheet_read(&sheet, path, false, &errors);
+    if (count > 0) {
+        message("written, and to be completed: '%s'", path);
+        for (char *line = strtok(errors.bytes, "\n"); line; line = strtok(NULL, "\n"))
+            message("%s", line);
+    } else if (count == 0) {
+        message("written, and complete: '%s' (look at it with lopside check)", path);
+    }
+    buffer_release(&errors);
+    sheet_release(&sheet);
+    return count < 0 ? message_no_memory() : STATUS_DONE;
+}
+
+static int write_sheet(struct draft *draft)
+{
+    struct buffer text = BUFFER_INIT;
+    int status = STATUS_DONE;
+    outline_write(&draft->outline, &text);
+    if (text.failed)
+        status = message_no_memory();
+    else if (draft->output)
+        status = write_file(draft->output, &text);
+    else
+        fwrite(text.bytes, 1, text.length, stdout); /* checked when the program ends */
+    if (status == STATUS_DONE && draft->output)
+        status = say_open_ends(draft->output);
+    buffer_release(&text);
+    return status;
+}
+
+static int look_at_channels(struct draft *draft)
+{
+    struct fault fault = {0};
+    if (channels_find(&draft->channels, draft->recordings.items[0], &fault) != STATUS_DONE)
+        message("%s", fault.text);
+    return fault.status;
+}
+
+static void release(struct draft *draft)
+{
+    for (size_t i = 0; draft->files && i < draft->recordings.count; i++)
+        free(draft->files[i]);
+    for (size_t i = 0; i < draft->typed_count; i++)
+        free(draft->typed[i]);
+    free(draft->typed);
+    free(draft->weights);
+    free(draft->files);
+    free(draft->runs);
+    channels_release(&draft->channels);
+    option_list_release(&draft->weight_texts);
+    option_list_release(&draft->planes);
+    option_list_release(&draft->recordings);
+}
+
+#define TEXT(name, unit, help, value)                                                              \
+    {                                                                                              \
+        name, 0, OPTION_TEXT, unit, NULL, 0, 0, NULL, help, value                                  \
+    }
+
+int desk_new(int argc, char **argv)
+{
+    struct draft draft = {.output = NULL};
+    struct outline_answers *a = &draft.outline.answers;
+    const struct option options[] = {
+        {"output", 'o', OPTION_TEXT, "FILE", NULL, 0, 0, NULL,
+         "write the sheet there, if it is not there yet", &draft.output},
+        TEXT("title", "TEXT", "what the job is called", &a->title),
+        TEXT("angles", "SENSE", "how angles of weights count: against or with rotation",
+             &a->angles),
+        TEXT("tacho", "CHANNEL", "the once-per-turn channel, or none [found by its pulses]",
+             &a->tacho),
+        TEXT("unit", "UNIT", "what the sensors measure: g, mm/s, ...", &a->unit),
+        TEXT("scale", "SCALE", "of the sensors: '100 mV/g'", &a->scale),
+        TEXT("full-scale", "VOLTS", "at digital full scale: '10 V'", &a->full_scale),
+        TEXT("rate", "RATE", "of columns without a time: '12800 Hz'", &a->rate),
+        TEXT("mass", "MASS", "of the rotor: '340 kg'", &a->mass),
+        TEXT("speed", "SPEED", "in service: '1480 rpm'", &a->speed),
+        {"plane", 0, OPTION_LIST, "NAME", "rotor", 0, 0, NULL, "where weights go (may repeat)",
+         &draft.planes},
+        TEXT("radius", "LENGTH", "of the planes: '410 mm'", &a->radius),
+        TEXT("positions", "LIST", "on them: '12 from 0 deg'", &a->positions),
+        TEXT("stock", "PIECES", "at hand: '10 20 50 g'", &a->stock),
+        {"weight", 0, OPTION_LIST, "RUN=WEIGHT", NULL, 0, 0, NULL,
+         "mounted: 'trial=60 g at 30 deg', 'RUN:PLANE=...' (may repeat)", &draft.weight_texts},
+        TEXT("target", "LEVEL", "to be met: '1.8 mm/s rms'", &a->target),
+        {NULL, 0, OPTION_FLAG, NULL, NULL, 0, 0, NULL, NULL, NULL}};
+    const struct usage usage = {
+        "new",
+        "RECORDING...",
+        "a first job sheet out of recordings and a few answers",
+        options,
+        1,
+        SIZE_MAX,
+        "Each recording becomes a run, named after its file. What is not said stands in the sheet "
+        "as\n"
+        "a comment, to be completed. Asks for it where standard input and output are terminals."};
+    int parsed = options_parse(&usage, argc, argv, &draft.recordings);
+    int status = parsed == OPTIONS_MISUSE ? STATUS_USAGE : STATUS_DONE;
+    if (parsed == OPTIONS_GO) {
+        status = look_at_channels(&draft);
+        if (status == STATUS_DONE)
+            status = name_runs(&draft);
+        if (status == STATUS_DONE)
+            status = answer(&draft);
+        if (status == STATUS_DONE)
+            status = write_sheet(&draft);
+    }
+    release(&draft);
+    return status;
+}

@@ -1,0 +1,284 @@
+"""test_new.py - `new` and `check`: from recordings without a sheet to an answer, as a new user would go."""
+import os
+import pty
+import re
+import select
+import shutil
+import subprocess
+import time
+import unittest
+import wave
+
+import numpy
+
+import chain
+
+DEMO = (chain.DATA / "fan" / "job.ini").read_text()
+WEIGHT = re.search(r"weight wheel = (.+)", DEMO)[1]
+MASS = re.search(r"mass = (.+)", DEMO)[1]
+FAN = ["--angles", "against", "--mass", MASS, "--unit", "g", "--scale", "100 mV/g", "--full-scale", "10 V",
+       "--plane", "wheel", "--radius", "600 mm", "--positions", "12 from 0 deg", "--stock", "10 20 50 g",
+       "--weight", f"trial={WEIGHT}"]
+
+
+def write_wav(path, columns, rate=2560):
+    """Columns of [-1, 1) as 16-bit WAV."""
+    samples = numpy.round(numpy.column_stack(columns) * 32767).astype("<i2")
+    with wave.open(str(path), "wb") as f:
+        f.setnchannels(samples.shape[1])
+        f.setsampwidth(2)
+        f.setframerate(rate)
+        f.writeframes(samples.tobytes())
+
+
+def on_terminal(args, typed, cwd, env=None):
+    """Runs the program on a terminal; gives exit code and all that the terminal showed."""
+    pid, fd = pty.fork()
+    if pid == 0:
+        os.chdir(cwd)
+        os.environ.update(env or {})
+        os.execv(chain.LOPSIDE, [chain.LOPSIDE, *map(str, args)])
+    shown = b""
+    deadline = time.monotonic() + 60
+    lines = list(typed)
+    while time.monotonic() < deadline:
+        ready = select.select([fd], [], [], 0.5)[0]
+        if ready:
+            try:
+                got = os.read(fd, 4096)
+            except OSError:
+                break
+            if not got:
+                break
+            shown += got
+            while lines and shown.endswith(b": "):
+                os.write(fd, lines.pop(0).encode() + b"\n")
+                break
+    return os.waitstatus_to_exitcode(os.waitpid(pid, 0)[1]), shown.decode("utf-8", "replace")
+
+
+class New(unittest.TestCase):
+    def setUp(self):
+        box = chain.folder()
+        self.top = box.__enter__()
+        self.addCleanup(box.__exit__, None, None, None)
+
+    def put(self, job, *names):
+        for name in names:
+            shutil.copy(chain.DATA / job / name, self.top)
+
+    def sheet(self, *args, code=0):
+        done = chain.lopside("new", *args, cwd=self.top)
+        self.assertEqual(done.returncode, code, chain.complaint(done))
+        return done.stdout.decode()
+
+    def test_to_an_answer(self):
+        """The placement is that of the demo's own sheet, with the same two runs."""
+        self.put("fan", "as-found.wav", "trial.wav")
+        done = chain.lopside("new", "-o", "job.ini", *FAN, "--speed", "985 rpm", "--target", "1.8 mm/s rms",
+                             "as-found.wav", "trial.wav", cwd=self.top)
+        self.assertEqual(done.returncode, 0, chain.complaint(done))
+        self.assertIn("complete", chain.complaint(done))
+        self.assertEqual(chain.lopside("check", "job.ini", cwd=self.top).returncode, 0)
+        got = chain.solved(self.top / "job.ini")
+        runs = [s for s in re.split(r"(?m)^(?=\[)", DEMO) if not s.startswith("[run as-found again]")]
+        runs = [s for s in runs if not s.startswith("[run") or s.startswith(("[run as-found]", "[run trial]"))]
+        plain = "".join(runs).replace("pieces = 4\n", "").replace("grade = G6.3\n", "").replace("most = 150 g\n", "").replace("taken = 8\n", "")
+        (self.top / "demo.ini").write_text(plain)
+        demo = chain.solved(self.top / "demo.ini")
+        self.assertGreater(len(chain.kind(got, "placement")), 0)
+        keys = ("plane", "position", "angle_deg", "mass")
+        self.assertEqual([[p[k] for k in keys] for p in chain.kind(got, "placement")],
+                         [[p[k] for k in keys] for p in chain.kind(demo, "placement")])
+
+    def test_nothing_is_made_up(self):
+        self.put("fan", "as-found.wav")
+        text = self.sheet("as-found.wav")
+        live = [line.split("#")[0].strip() for line in text.splitlines() if line and not line.startswith("#")]
+        self.assertEqual([line for line in live if "=" in line],
+                         ["title = Untitled", "channel = 3", "channel = 1", "channel = 2", "file = as-found.wav"])
+        self.assertRegex(text, r"channel = 3 +# guessed")
+        (self.top / "job.ini").write_text(text)
+        done = chain.lopside("check", "job.ini", cwd=self.top)
+        self.assertEqual(done.returncode, 2)
+        self.assertIn("'unit'", chain.complaint(done))
+
+    def test_every_open_line_completes_the_sheet(self):
+        """The comments, uncommented, are a sheet that the program takes."""
+        for job, first in (("fan", "as-found.wav"), ("blower", "as-found.csv")):
+            self.put(job, first)
+            text = self.sheet(first)
+            lines = [re.sub(r"^# (?=\[|[a-z ]+ = |weight )", "", line) for line in text.splitlines()]
+            self.assertNotEqual(lines, text.splitlines())
+            (self.top / "all.ini").write_text("\n".join(lines))
+            done = chain.lopside("check", "all.ini", cwd=self.top)
+            self.assertEqual(chain.complaint(done), "", job)
+
+    def test_columns(self):
+        self.put("blower", "as-found.csv")
+        text = self.sheet("--rate", "2048 Hz", "as-found.csv")
+        for expected in ("[sensor Left H]", "channel = Right H", "unit = mm/s", "rate = 2048 Hz", "channel = Tacho"):
+            self.assertIn(expected, text)
+        rows = "\n".join(f"{i / 1000:.3f},{i % 7},{20 + i % 3},{i % 5}" for i in range(3000))
+        (self.top / "odd.csv").write_text("t,Brg [m/s²],Oil (°C),Brg # 2\n" + rows + "\n")
+        text = self.sheet("odd.csv")
+        self.assertIn("[sensor Brg]\nchannel = Brg\nunit = m/s2", text)
+        self.assertIn("left out, no vibration by its unit: column 'Oil'", text)
+        self.assertIn("[sensor Brg _ 2]\nchannel = 4\n", text)
+        self.assertNotIn("[sensor t]", text)
+
+    def test_tacho_is_told_or_left_open(self):
+        t = numpy.arange(25600) / 2560
+        pulses = ((t * 25) % 1 < 0.05) * 0.8
+        hum = 0.5 * numpy.sin(2 * numpy.pi * 25 * t)
+        noise = 0.1 * numpy.random.default_rng(1).standard_normal(len(t)).clip(-4, 4)
+        cases = {"last": ([hum, noise, pulses], "3"), "first": ([pulses, hum + noise], "1"),
+                 "noisy": ([hum, pulses + 0.3 * noise - 0.4], "2"), "none": ([hum, noise], None),
+                 "both": ([pulses, hum, numpy.roll(pulses, 30)], None)}
+        for name, (columns, channel) in cases.items():
+            write_wav(self.top / f"{name}.wav", columns)
+            text = self.sheet(f"{name}.wav")
+            found = re.search(r"(?m)^\[tacho\]\nchannel = (\S+)", text)
+            self.assertEqual(found and found[1], channel, name)
+            self.assertEqual("1500 rpm" in text, channel is not None)
+        self.assertIn("[tacho]\nchannel = 2", self.sheet("--tacho", "2", "both.wav"))
+        self.assertNotIn("tacho]", self.sheet("--tacho", "none", "both.wav"))
+
+    def test_files_are_named_from_the_sheet(self):
+        (self.top / "sub").mkdir()
+        self.put("fan", "as-found.wav")
+        shutil.copy(self.top / "as-found.wav", self.top / "sub" / "trial.wav")
+        self.sheet("-o", "sub/job.ini", "as-found.wav", "sub/trial.wav", *FAN)
+        text = (self.top / "sub" / "job.ini").read_text()
+        self.assertIn("file = trial.wav", text)
+        self.assertIn(f"file = {self.top.resolve()}/as-found.wav", text)
+        self.assertEqual(chain.lopside("check", "sub/job.ini", cwd=self.top).returncode, 0)
+
+    def test_misuse(self):
+        self.put("fan", "as-found.wav")
+        self.sheet(code=2)
+        self.sheet("--angles", "left", "as-found.wav", code=2)
+        self.sheet("--weight", "none=3 g", "as-found.wav", code=2)
+        self.sheet("--weight", "as-found:x=3 g", "as-found.wav", code=2)
+        self.sheet("--weight", "as-found", "as-found.wav", code=2)
+        self.sheet("gone.wav", code=3)
+        (self.top / "mine.ini").write_text("mine")
+        self.sheet("-o", "mine.ini", "as-found.wav", code=2)
+        self.assertEqual((self.top / "mine.ini").read_text(), "mine")
+        self.sheet("-o", "no/such/folder.ini", "as-found.wav", code=1)
+        with open("/dev/full", "wb") as full:
+            done = subprocess.run([chain.LOPSIDE, "new", self.top / "as-found.wav"], stdout=full,
+                                  stderr=subprocess.DEVNULL)
+        self.assertEqual(done.returncode, 1)
+
+    def test_asks_on_a_terminal_only(self):
+        self.put("fan", "as-found.wav", "trial.wav")
+        typed = ["Fan # 7", "against", "g", "100 mV/g", "10 V", MASS, "985 rpm", "600 mm", "12 from 0 deg",
+                 "10 20 50 g", "1.8 mm/s rms", "", WEIGHT]
+        code, shown = on_terminal(["new", "-o", "job.ini", "as-found.wav", "trial.wav"], typed, self.top)
+        self.assertEqual(code, 0, shown)
+        self.assertIn("written, and complete", shown)
+        text = (self.top / "job.ini").read_text()
+        self.assertIn('title = "Fan # 7"', text)
+        self.assertEqual(len(chain.kind(chain.solved(self.top / "job.ini"), "next")), 1)
+        code, shown = on_terminal(["check", "job.ini"], [], self.top, {"TERM": "xterm", "NO_COLOR": ""})
+        self.assertEqual(code, 0, shown)
+        self.assertNotIn("?", shown)
+
+
+class Check(unittest.TestCase):
+    def setUp(self):
+        New.setUp(self)
+
+    def check(self, *args, code=0):
+        done = chain.lopside("check", *args, cwd=self.top)
+        self.assertEqual(done.returncode, code, chain.complaint(done))
+        return done.stdout.decode(), chain.complaint(done)
+
+    def sheet(self, **also):
+        text = (chain.DATA / "fan" / "job.ini").read_text()
+        head = text[:text.index("[run ")]
+        for old, new in also.items():
+            head = head.replace(*new) if isinstance(new, tuple) else head
+        return head
+
+    def test_demo(self):
+        """Speeds and ranges against the recordings read by NumPy."""
+        for job in ("fan", "blower"):
+            said, complaint = self.check(chain.DATA / job / "job.ini")
+            self.assertEqual(complaint, "")
+            self.assertIn("0 remarks", said)
+            self.assertIn("no mistake in the sheet", said)
+        said, _ = self.check(chain.DATA / "fan" / "job.ini")
+        with wave.open(str(chain.DATA / "fan" / "as-found.wav")) as f:
+            rate, frames = f.getframerate(), f.getnframes()
+            x = numpy.frombuffer(f.readframes(20 * rate), "<i2").reshape(-1, 3) / 32768 * 10
+        self.assertIn(f"{frames / rate:.4g} s at {rate} Hz", said)
+        first = said.split("run 'as-found'")[1].split("run '")[0]
+        row = re.search(r"DE-V +1 +(\S+) +(\S+) +(\S+) g", first)
+        self.assertAlmostEqual(float(row[1]), x[:, 0].min() / 0.1, delta=5e-4)  # 100 mV/g
+        self.assertAlmostEqual(float(row[2]), x[:, 0].max() / 0.1, delta=5e-4)
+        self.assertEqual(float(row[3]), 100)
+        above = x[:, 2] > (x[:, 2].min() + x[:, 2].max()) / 2
+        edges = numpy.flatnonzero(~above[:-1] & above[1:])
+        speed = 60 * rate * (len(edges) - 1) / (edges[-1] - edges[0])
+        shown = float(re.search(r"([\d.]+) rpm", first)[1])
+        self.assertAlmostEqual(shown, speed, delta=0.2)  # rpm; marks to a sample here
+
+    def test_remarks(self):
+        t = numpy.arange(25600) / 2560
+        pulses = ((t * 985 / 60) % 1 < 0.05) * 0.5
+        hum = 0.1 * numpy.sin(2 * numpy.pi * 985 / 60 * t + 0.3)
+        noise = 0.02 * numpy.random.default_rng(2).standard_normal(len(t))
+        cases = {
+            "good": ([hum + noise, 0.5 * hum - noise[::-1], pulses], []),
+            "dead": ([hum + noise, 0 * hum, pulses], ["DE-H: no signal"]),
+            "same": ([hum + noise, hum + noise, pulses], ["DE-V: the same signal as 'DE-H'",
+                                                          "DE-H: the same signal as 'DE-V'"]),
+            "clip": ([(20 * (hum + noise)).clip(-1, 1), noise + hum, pulses], ["DE-V: ", "at full scale"]),
+            "mute": ([hum + noise, hum - noise[::-1], 0 * t], ["tacho: no signal", "tacho: no regular pulses"]),
+            "fast": ([hum + noise, hum - noise[::-1], ((t * 985 / 30) % 1 < 0.05) * 0.5],
+                     ["tacho: 1970 rpm, and the service speed is 985 rpm"]),
+        }
+        (self.top / "job.ini").write_text(self.sheet())
+        for name, (columns, expected) in cases.items():
+            write_wav(self.top / f"{name}.wav", columns)
+            said, complaint = self.check("job.ini", f"{name}.wav")
+            self.assertEqual(complaint, "")
+            self.assertEqual(bool(expected), "0 remarks" not in said, said)
+            for text in expected:
+                self.assertIn(text, said, name)
+
+    def test_failures(self):
+        (self.top / "job.ini").write_text(self.sheet())
+        shutil.copy(chain.DATA / "fan" / "trial.wav", self.top / "good.wav")
+        (self.top / "cut.wav").write_bytes((self.top / "good.wav").read_bytes()[:9999])
+        write_wav(self.top / "few.wav", [numpy.zeros(5000)])
+        said, complaint = self.check("job.ini", "cut.wav", "few.wav", "gone.wav", "good.wav", code=3)
+        self.assertEqual(len(complaint.splitlines()), 3)
+        self.assertEqual(said.count("cannot be read"), 3)
+        self.assertIn("985.", said)  # the good one is looked at all the same
+        (self.top / "bad.ini").write_text(self.sheet().replace("radius", "radios"))
+        said, complaint = self.check("bad.ini", code=2)
+        self.assertEqual(said, "")
+        self.assertIn("radios", complaint)
+        self.check(code=2)
+
+    def test_colour(self):
+        (self.top / "job.ini").write_text(self.sheet())
+        write_wav(self.top / "dead.wav", [numpy.zeros(5000)] * 3)
+        for env, coloured in (({"TERM": "xterm", "NO_COLOR": ""}, True), ({"TERM": "xterm", "NO_COLOR": "1"}, False),
+                              ({"TERM": "dumb", "NO_COLOR": ""}, False)):
+            code, shown = on_terminal(["check", "job.ini", "dead.wav"], [], self.top, env)
+            self.assertEqual((code, "\033[" in shown), (0, coloured), env)
+        self.assertNotIn("\033", self.check("job.ini", "dead.wav")[0])
+
+    def test_hostile_words(self):
+        text = self.sheet().replace("Grain dryer", "Grain\033[31m dryer")
+        (self.top / "job.ini").write_text(text + "[run a]\nfile = x\033]0;y.wav\n")
+        done = chain.lopside("check", "job.ini", cwd=self.top)
+        self.assertNotIn(b"\033", done.stdout + done.stderr)
+
+
+if __name__ == "__main__":
+    unittest.main()
