@@ -102,12 +102,14 @@ static void say_where(const struct table *t, const struct vet_runs *runs, enum s
                       const struct suspect *s, char *to, size_t room)
 {
     bool onwards = s->onwards && s->run + 1 < t->count;
+    bool other_onwards = s->other_onwards && s->other + 1 < t->count;
     char other[96] = "", by[24] = "";
 
     if (kind != SUSPECTS_SWAP)
         snprintf(by, sizeof by, "by %.0f deg ", s->other_deg);
     if (s->ambiguous && s->other != s->run)
-        snprintf(other, sizeof other, " (or %sin '%s')", by, name_of(t, runs, s->other));
+        snprintf(other, sizeof other, " (or %s%s '%s'%s)", by, other_onwards ? "from" : "in",
+                 name_of(t, runs, s->other), other_onwards ? " on" : "");
     snprintf(to, room, "%s run '%s'%s%s", onwards ? "from" : "in", name_of(t, runs, s->run),
              onwards ? " on" : "", other);
 }

@@ -148,6 +148,7 @@ static void offer(struct search *search, double sum, double used, struct suspect
         candidate.ambiguous = as_good;
         candidate.other = as_good ? search->best.run : candidate.run;
         candidate.other_deg = search->best.angle_deg;
+        candidate.other_onwards = search->best.onwards;
         search->best = candidate;
         search->sum = sum;
         search->used = used;
@@ -155,6 +156,7 @@ static void offer(struct search *search, double sum, double used, struct suspect
         search->best.ambiguous = true;
         search->best.other = candidate.run;
         search->best.other_deg = candidate.angle_deg;
+        search->best.other_onwards = candidate.onwards;
     }
 }
 

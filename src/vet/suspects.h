@@ -31,6 +31,7 @@ struct suspect {
     bool ambiguous;      /* another run, or the same of fewer or more runs, explains it as well */
     size_t other;        /* that run */
     double other_deg;    /* and its angle */
+    bool other_onwards;
 };
 
 /* Regression of each sensor's readings on [1, weights] (least squares, weighted by variance +

@@ -189,9 +189,11 @@ static void moved_on_the_desk(void **state)
         vet_desk_reading(3, i, desk.readings[1][i].vector * cexp(-I * TURN * 30 / 360));
     moved_check(&desk.runs, desk.order, &desk.job, &desk.findings);
     assert_int_equal(vet_desk_ruled(CHECK_TAPE_MOVED, -2, -1), RULING_CAUTION);
-    assert_non_null(strstr(desk.findings.items[0].text,
-                           "all lags had shifted by -30 deg in run "
-                           "'trial A again' (or by 30 deg in 'trial A')"));
+    /* from trial B on says the same: alone on its plane it fits whatever it shows */
+    if (!strstr(desk.findings.items[0].text,
+                "if all lags had shifted by -30 deg in run 'trial A again' "
+                "(or by -30 deg from 'trial B' on)"))
+        fail_msg("%s", desk.findings.items[0].text);
 
     vet_desk_set();
     vet_desk_reading(3, 1, -desk.readings[1][1].vector);
