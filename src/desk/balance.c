@@ -16,6 +16,7 @@
 #include "base/message.h"
 #include "base/options.h"
 #include "base/status.h"
+#include "desk/progress.h"
 #include "read/read.h"
 #include "report/report.h"
 #include "solve/solve.h"
@@ -144,10 +145,13 @@ static int start(struct chain *chain)
     return status;
 }
 
-/* Reads what all stages say until they have closed. */
-static void listen_to(struct chain *chain)
+/* Reads what all stages say until they have closed. How far it is stands on a terminal until
+ * `read` has ended: before the report begins. */
+static void listen_to(struct chain *chain, struct progress *progress)
 {
     for (;;) {
+        if (chain->links[0].said_fd < 0)
+            progress_end(progress);
         struct pollfd fds[STAGES];
         int open_count = 0;
         for (int i = 0; i < STAGES; i++) {
@@ -156,8 +160,12 @@ static void listen_to(struct chain *chain)
         }
         if (!open_count)
             return;
-        if (poll(fds, STAGES, -1) < 0 && errno != EINTR)
+        const int ready = poll(fds, STAGES, progress->shared ? PROGRESS_EVERY : -1);
+        if (ready < 0 && errno != EINTR)
             return;
+        progress_show(progress);
+        if (ready <= 0)
+            continue;
         for (int i = 0; i < STAGES; i++) {
             struct link *link = &chain->links[i];
             char bytes[4096];
@@ -251,6 +259,7 @@ int desk_balance(int argc, char **argv)
 {
     const char *form = NULL, *what = NULL;
     struct chain chain = {.output = NULL};
+    struct progress progress;
     const struct option options[] = {
         {"as", 0, OPTION_TEXT, "FORM", "text", 0, 0, NULL, "what the report is written as", &form},
         {"what", 0, OPTION_TEXT, "PART", NULL, 0, 0, NULL, "the part of it, for --as csv", &what},
@@ -268,8 +277,10 @@ int desk_balance(int argc, char **argv)
         status = open_output(&chain);
     if (parsed == OPTIONS_GO && status == STATUS_DONE) {
         prepare(&chain, (char *)operands.items[0], (char *)form, (char *)what);
+        progress_begin(&progress);
         status = start(&chain);
-        listen_to(&chain);
+        listen_to(&chain, &progress);
+        progress_end(&progress);
         wait_for(&chain);
         bool reader_left = died_of_pipe(&chain.links[STAGES - 1]);
         if (status == STATUS_DONE)

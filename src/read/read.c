@@ -5,6 +5,7 @@
 #include <stdint.h>
 #include <stdlib.h>
 #include <string.h>
+#include <sys/stat.h>
 #include <unistd.h>
 
 #include "base/message.h"
@@ -37,6 +38,24 @@ struct stage {
     float *block;
     bool failed; /* audit: some recording could not be read */
 };
+
+/* ---- how far it is ---- */
+
+static struct read_progress *watched; /* borrowed; NULL: nobody looks */
+
+void stage_read_watch(struct read_progress *progress)
+{
+    watched = progress;
+}
+
+static long long size_of(char *const *paths, size_t count)
+{
+    long long size = 0;
+    struct stat s;
+    for (size_t i = 0; i < count; i++)
+        size += stat(paths[i], &s) == 0 ? (long long)s.st_size : 0;
+    return size;
+}
 
 /* ---- before the stream ---- */
 
@@ -346,6 +365,9 @@ static int print_blocks(struct stage *stage, struct task *task, struct fault *fa
     const size_t columns = task->wish.column_count;
     const size_t most = block_frames(columns);
     const char *name = stage->sheet.job.runs[task->run].name;
+    const long long before = watched ? watched->done : 0;
+    const double size = watched ? (double)size_of(task->wish.paths, task->wish.path_count) : 0;
+    double frames = 0;
     int status = STATUS_DONE;
     while (status == STATUS_DONE) {
         size_t got = 0;
@@ -356,6 +378,9 @@ static int print_blocks(struct stage *stage, struct task *task, struct fault *fa
         status = sink_line(stage->sink, &stage->line);
         if (status == STATUS_DONE)
             status = sink_bytes(stage->sink, stage->block, got * columns * COLUMN_BYTES);
+        frames += (double)got;
+        if (watched)
+            watched->done = before + (long long)(size * frames / (double)task->recording.frames);
     }
     return status;
 }
@@ -437,6 +462,8 @@ static int stream_runs(struct stage *stage)
 {
     int status = STATUS_DONE;
     size_t path = 0;
+    if (watched)
+        watched->total = size_of(stage->paths, stage->path_count);
     for (size_t i = 0; status == STATUS_DONE && i < stage->sheet.job.run_count; i++) {
         if (!stage->chosen[i])
             continue;
