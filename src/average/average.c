@@ -166,8 +166,16 @@ static int add_spectrum(struct gather *g, const struct record *record, const str
     return status;
 }
 
+/* A length as a percentage of the amplitude; 0 and NaN as they are. */
+static double percentage(double size, double amplitude)
+{
+    return size > 0 ? 100 * size / amplitude : size;
+}
+
 static void fill_from_mean(struct reading_record *r, const struct mean *mean)
 {
+    const struct unsteady *u = &mean->unsteady;
+
     r->vector = r->has_phase ? mean->vector : NAN;
     r->amplitude = cabs(mean->vector);
     memcpy(r->cov, mean->cov, sizeof r->cov);
@@ -176,10 +184,15 @@ static void fill_from_mean(struct reading_record *r, const struct mean *mean)
     r->steady.amplitude_pct = 100 * mean->amplitude_sd / r->amplitude;
     r->steady.phase_deg = mean->phase_sd_deg;
     r->steady.resultant = mean->resultant;
-    r->steady.drift_pct = mean->drift > 0 ? 100 * mean->drift / r->amplitude : mean->drift;
+    r->steady.drift_pct = percentage(mean->drift, r->amplitude);
     r->steady.independent = mean->independent;
     r->steady.set_aside = mean->set_aside;
     r->steady.turns = lround(mean->turns);
+    r->steady.beat_pct = percentage(u->beat, r->amplitude);
+    r->steady.beat_s = u->beat_s;
+    r->steady.step_pct = percentage(u->step, r->amplitude);
+    r->steady.step_s = u->step_s;
+    r->steady.wander_pct = percentage(u->wander, r->amplitude);
 }
 
 /* Takes out the blocks that have no vector. */
@@ -205,7 +218,8 @@ static bool is_empty(const struct track_of *s) /* after drop_empty */
 }
 
 /* The reading of a sensor from its blocks: 0 made, 1 nothing to make it of, -1 no memory. */
-static int reading_of_blocks(struct reading_record *r, struct track_of *s, bool marks)
+static int reading_of_blocks(struct reading_record *r, struct track_of *s, bool marks,
+                             double *turning_hz)
 {
     bool reference = marks && !s->amplitudes;
     struct mean mean;
@@ -230,6 +244,7 @@ static int reading_of_blocks(struct reading_record *r, struct track_of *s, bool 
     if (result)
         return -1;
     fill_from_mean(r, &mean);
+    *turning_hz = mean.unsteady.turning_hz;
     return 0;
 }
 
@@ -406,7 +421,8 @@ static int finish_steady(struct gather *g, struct stream *stream, struct line *l
     for (size_t i = 0; status == STATUS_DONE && i < g->sensor_count; i++) {
         struct track_of *s = &g->sensors[i];
         struct reading_record r = {.sensor = (int)i};
-        int made = s->count ? reading_of_blocks(&r, s, reference) : 1;
+        double turning_hz = NAN;
+        int made = s->count ? reading_of_blocks(&r, s, reference, &turning_hz) : 1;
         if (made == 1 && s->count)
             made = reading_of_spectrum(&r, s);
         if (made < 0)
@@ -416,6 +432,7 @@ static int finish_steady(struct gather *g, struct stream *stream, struct line *l
         memcpy(r.run, g->run, sizeof r.run);
         memcpy(r.condition, g->condition, sizeof r.condition);
         fill_speed(&r, s, g);
+        r.steady.neighbour_hz = r.speed_rpm / 60 - turning_hz;
         fill_overall(&r, s, &stream->job);
         reading_print(&r, &stream->job, line);
         status = stream_write(stream, line);

@@ -6,8 +6,11 @@
 
 static const size_t COUNT_LEAST = 6;        /* with fewer a correlation says nothing */
 static const double CORRELATION_MOST = 0.9; /* (1+r)/(1-r) = 19: more, and the run has no mean */
-static const double LEVEL = 0.1;       /* of the cosine test; see tests/unit/test_average_mean.c */
-static const double CHI2_95 = 5.99146; /* chi-squared with 2 degrees of freedom, 95 % */
+static const double LEVEL = 0.1; /* of the cosine test; see tests/unit/test_average_mean.c */
+static const size_t WANDER_LEAST =
+    12; /* blocks; with fewer there is no slow part beside the line */
+static const double WANDER_LEVEL = 0.01; /* of the search for wander; common practice */
+static const double CHI2_95 = 5.99146;   /* chi-squared with 2 degrees of freedom, 95 % */
 
 double longrun_f_tail(double x, size_t a, size_t b)
 {
@@ -85,6 +88,26 @@ static double from_cosines(const double complex *vectors, size_t count, double p
         }
     }
     return factor;
+}
+
+double longrun_wander(const double complex *vectors, size_t count)
+{
+    double power = 0, low = 0, largest = 0;
+    size_t most = count < 128 ? 8 : 16, j = 1;
+
+    for (size_t i = 0; i < count; i++)
+        power += square(vectors[i]);
+    if (count < WANDER_LEAST || isnan(power))
+        return NAN;
+    for (size_t b = 2; b <= most && 2 * b <= count; b *= 2) {
+        size_t rest = count - 1 - b;
+        for (; j <= b; j++)
+            low += cosine_power(vectors, count, j);
+        double floor = fmax(power - low, 0) / (double)rest;
+        if (low > 0 && longrun_f_tail(low / (double)b / floor, b, rest) < WANDER_LEVEL)
+            largest = fmax(largest, low - (double)b * floor);
+    }
+    return sqrt(largest / (double)count);
 }
 
 double longrun_factor(const double complex *vectors, size_t count)

@@ -18,6 +18,12 @@
  * correlation does not. */
 double longrun_factor(const double complex *vectors, size_t count);
 
+/* Standard deviation, of both components together, of the slow part of `count` vectors whose mean and line
+ * have been taken off: the power of the first B = 2, 4, 8 (16) cosine sums beyond that of the rest, the largest
+ * that is significant at the 1 % level of F(2B, 2(n-1-B)). 0 where none is; NaN for fewer than 12 vectors or
+ * where one is NaN. */
+double longrun_wander(const double complex *vectors, size_t count);
+
 /* P(F > x) of Snedecor's F with 2a and 2b degrees of freedom, a and b whole and >= 1, x >= 0: the
  * finite sum of the incomplete beta function (Abramowitz & Stegun 1964, 26.6.4). */
 double longrun_f_tail(double x, size_t a, size_t b);

@@ -79,7 +79,7 @@ static void covariance_of_mean(const struct kept *k, struct mean *mean)
     mean->cov[2] = (im * weight + round) * scale;
 }
 
-static void steadiness(const struct kept *k, struct mean *mean)
+static int steadiness(const struct kept *k, struct mean *mean)
 {
     double n = (double)k->count, sum = 0, squares = 0;
     struct circular lags = circular_of_vectors(k->z, k->count);
@@ -94,6 +94,7 @@ static void steadiness(const struct kept *k, struct mean *mean)
     }
     mean->amplitude_sd = k->count > 1 ? sqrt(squares / (n - 1)) : NAN;
     mean->drift = trend_size(k->z, k->t, k->count);
+    return unsteady_of_blocks(k->z, k->t, k->count, &mean->unsteady);
 }
 
 int mean_of_blocks(const double complex *vectors, const double *turns, const double *t,
@@ -101,6 +102,7 @@ int mean_of_blocks(const double complex *vectors, const double *turns, const dou
 {
     struct kept kept;
     double complex sum = 0;
+    int result;
 
     if (count == 0)
         return -2;
@@ -114,9 +116,9 @@ int mean_of_blocks(const double complex *vectors, const double *turns, const dou
     }
     mean->vector = sum / mean->turns;
     covariance_of_mean(&kept, mean);
-    steadiness(&kept, mean);
+    result = steadiness(&kept, mean);
     free(kept.z);
-    return 0;
+    return result;
 }
 
 int mean_of_amplitudes(const double *amplitudes, const double *turns, const double *t, size_t count,
@@ -138,5 +140,6 @@ int mean_of_amplitudes(const double *amplitudes, const double *turns, const doub
     mean->cov[2] = mean->cov[0];
     mean->cov[1] = 0;
     mean->phase_sd_deg = mean->resultant = NAN;
+    mean->unsteady.turning_hz = NAN; /* real numbers turn both ways */
     return 0;
 }

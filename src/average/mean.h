@@ -5,6 +5,8 @@
 #include <complex.h>
 #include <stddef.h>
 
+#include "average/unsteady.h"
+
 struct mean {
     double complex vector; /* mean of the blocks used, weighted by their turns */
     double cov[3];         /* of the mean: var re, cov, var im */
@@ -17,6 +19,7 @@ struct mean {
     double resultant;      /* mean resultant length of their lags */
     double drift; /* size of the trend end to end (trend.h), 0 where not significant; NaN: < 4
                      blocks */
+    struct unsteady unsteady; /* beats, steps and wander of the blocks used */
 };
 
 /* The mean of `count` (>= 1) block vectors with their turns (> 0) and times t (s, ascending).
