@@ -21,7 +21,8 @@ static const size_t AROUND = 12; /* whole bins on each side whose median is the 
 static const size_t NEAR = 2;    /* of them, too near to the line */
 static const double SCALLOP =
     1.1; /* what a line can lose between two points of the padded spectrum (5 %) */
-static const int REFINE = 40; /* halvings of a golden section: 0.618^40 of a bin */
+static const double SLOWEST = 0.95; /* slower noise is a drift */
+static const int REFINE = 40;       /* halvings of a golden section: 0.618^40 of a bin */
 
 /* The blocks: time in units that keep the normal equations round. */
 struct series {
@@ -31,12 +32,12 @@ struct series {
     double middle, half, step; /* of t; step: median difference */
 };
 
-/* Least squares of mean, line, and both ways of turning at f. Returns what it leaves; NaN:
- * singular. */
-static double fit(const struct series *s, double f, double complex c[4])
+/* Least squares of mean, line, and both ways of turning at f. Returns what it leaves, NaN where it
+ * is singular; `slowness` is the lag-1 correlation of that. */
+static double fit(const struct series *s, double f, double complex c[4], double *slowness)
 {
-    double complex normal[16] = {0}, side[4] = {0};
-    double left = 0;
+    double complex normal[16] = {0}, side[4] = {0}, last = 0;
+    double left = 0, lagged = 0;
 
     for (size_t k = 0; k < s->count; k++) {
         double u = s->t[k] - s->middle;
@@ -55,9 +56,12 @@ static double fit(const struct series *s, double f, double complex c[4])
         double complex e = cexp(I * 2 * PI * f * u);
         e = s->z[k] - side[0] - side[1] * u / s->half - side[2] * e - side[3] * conj(e);
         left += creal(e * conj(e));
+        lagged += creal(e * conj(last));
+        last = e;
     }
     for (int i = 0; i < 4; i++)
         c[i] = side[i];
+    *slowness = left > 0 ? lagged / left : 0;
     return left;
 }
 
@@ -167,8 +171,9 @@ static double refine(const struct series *s, double f, double width)
 {
     double low = f - width, high = f + width, golden = (sqrt(5) - 1) / 2;
     double complex c[4];
+    double r;
     double a = high - golden * (high - low), b = low + golden * (high - low);
-    double at_a = fit(s, a, c), at_b = fit(s, b, c);
+    double at_a = fit(s, a, c, &r), at_b = fit(s, b, c, &r);
 
     for (int i = 0; i < REFINE; i++) {
         if (at_a < at_b) {
@@ -176,13 +181,13 @@ static double refine(const struct series *s, double f, double width)
             b = a;
             at_b = at_a;
             a = high - golden * (high - low);
-            at_a = fit(s, a, c);
+            at_a = fit(s, a, c, &r);
         } else {
             low = a;
             a = b;
             at_a = at_b;
             b = low + golden * (high - low);
-            at_b = fit(s, b, c);
+            at_b = fit(s, b, c, &r);
         }
     }
     return (low + high) / 2;
@@ -194,14 +199,26 @@ static double tail(double x, size_t b)
     return longrun_f_tail(x, 2, b);
 }
 
-/* True where a line that leaves `left` of `total` passes the first test; `scale` its gain. */
-static bool significant(double total, double left, double scale, size_t count)
+/* How much more power than on the average slow noise of lag-1 correlation r has at frequency f; at
+ * least 1. */
+static double redness(const struct series *s, double r, double f)
+{
+    r += 3 / (double)s->count; /* what fitting four terms has taken from it (Kendall 1954) */
+    if (!(r > 0))
+        return 1;
+    r = fmin(r, SLOWEST);
+    return fmax(1, (1 - r * r) / (1 - 2 * r * cos(2 * PI * f * s->step) + r * r));
+}
+
+/* True where a line whose power is `gain` over a rest of `left` passes the first test. */
+static bool significant(double gain, double left, size_t count)
 {
     size_t freedom = count - 4;
-    double gain = fmin((total - left) * scale, total);
-    double ratio = gain / 2 / ((total - gain) / (double)freedom);
 
-    return gain > 0 && (gain == total || tail(ratio, freedom) * 2 * (double)count <= LEVEL);
+    if (!(gain > 0))
+        return false;
+    return left <= 0 ||
+           tail(gain / 2 / (left / (double)freedom), freedom) * 2 * (double)count <= LEVEL;
 }
 
 static void judge(const struct series *s, const struct spectrum *p, double total, double *room,
@@ -211,17 +228,19 @@ static void judge(const struct series *s, const struct spectrum *p, double total
     double width = 1 / (s->step * (double)p->size), most = 0.5 / s->step;
     double f = (double)peak * width;
     double complex c[4] = {0};
-    double weakened, large, small;
+    double weakened, large, small, slow, gain;
 
     f = f < most ? f : most * (1 - 1e-6); /* at the very end both ways are one */
     swing->size = 0;
-    swing->residual = fit(s, f, c);
-    if (!significant(total, swing->residual, SCALLOP, s->count) || !stands_out(p, peak, room))
+    swing->residual = fit(s, f, c, &slow);
+    gain = fmin((total - swing->residual) * SCALLOP, total);
+    if (!significant(gain, total - gain, s->count) || !stands_out(p, peak, room))
         return;
     f = refine(s, f, width);
     f = f < most ? f : most * (1 - 1e-6);
-    swing->residual = fit(s, f, c);
-    if (!significant(total, swing->residual, 1, s->count))
+    swing->residual = fit(s, f, c, &slow);
+    gain = (total - swing->residual) / redness(s, slow, f);
+    if (!significant(gain, swing->residual, s->count))
         return;
     weakened = sin(PI * f * s->step) / (PI * f * s->step);
     large = fmax(cabs(c[2]), cabs(c[3]));

@@ -27,8 +27,9 @@ struct swing {
  * whole periods of it is nothing. A slower one is drift (trend.h), or wander (longrun.h).
  *
  * Significant where it passes two tests: the 0.1 % point of F(4, 2(n-4)) against everything that it leaves,
- * times the 2n frequencies looked at (R. A. Fisher, Proc. R. Soc. A 125 (1929) 54-59, in its sum-bounded form);
- * and the same level against the median of the spectrum around it, so that coloured noise has no beats.
+ * times the 2n frequencies looked at (R. A. Fisher, Proc. R. Soc. A 125 (1929) 54-59, in its sum-bounded form), the
+ * line's power divided by the shape of first-order noise with the lag-1 correlation that is left, so that slow
+ * noise has no beats; and the same level against the median of the spectrum around it.
  *
  * size is NaN for fewer than SWING_LEAST blocks, times that span more than four times their number of median
  * steps, and where a vector is NaN. Returns 0; -1 when memory is out. */
