@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "base/angle.h"
+#include "solve/drill.h"
 #include "solve/tolerance.h"
 #include "solve/trial.h"
 #include "solve/turn.h"
@@ -182,12 +183,29 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
     return true;
 }
 
+/* Expected size of the effect, from what is stored; relative to one another sensors of the same
+ * quantity are compared, the first quantity stored counts. */
+static void expect_effect(const struct job *job, size_t plane, struct advice_trial *t)
+{
+    for (size_t i = 0; i < job->response_count; i++) {
+        const struct job_response *r = &job->responses[i];
+        double effect = cabs(r->vector) * t->mass;
+        if (r->plane != plane ||
+            (t->sensor >= 0 &&
+             job->sensors[r->sensor].quantity != job->sensors[t->sensor].quantity) ||
+            !(effect > (t->sensor >= 0 ? t->effect : 0)))
+            continue;
+        t->sensor = (int)r->sensor;
+        t->effect = effect;
+    }
+}
+
 void advice_trials(const struct job *job, struct advice_trial *trials)
 {
     for (size_t p = 0; p < job->plane_count; p++) {
         const struct job_plane *plane = &job->planes[p];
         struct advice_trial *t = &trials[p];
-        *t = (struct advice_trial){NAN, NAN, NAN};
+        *t = (struct advice_trial){NAN, NAN, NAN, -1, NAN};
         if (!(job->rotor_mass > 0) || !(job->service_rpm > 0) || !(plane->radius_m > 0))
             continue;
         double masses[64];
@@ -203,6 +221,7 @@ void advice_trials(const struct job *job, struct advice_trial *trials)
         if (!(t->mass > 0))
             t->mass = NAN;
         t->force = trial_force(t->mass, plane->radius_m, job->service_rpm);
+        expect_effect(job, p, t);
     }
 }
 
@@ -431,6 +450,31 @@ void advice_useless_step(const struct answer *a, struct advice_next *next)
              limits ? "" : " by more than its noise");
 }
 
+/* Holes to drill: "; drill 'rim' at 40 deg with rotation: hole 12 mm, 18.2 mm deep". */
+static size_t list_holes(const struct answer *a, char *text, size_t size)
+{
+    const struct job *job = a->model->job;
+    size_t length = 0;
+    text[0] = '\0';
+    for (size_t i = 0; i < a->placement.best.count && length + 130 < size; i++) {
+        const struct place_item *item = &a->placement.best.items[i];
+        const struct job_plane *plane = &job->planes[item->plane];
+        if (plane->work != WORK_REMOVE || !(plane->hole_m > 0))
+            continue;
+        double angle = job_sheet_angle(job, item->angle_deg);
+        bool us = job->units == UNITS_US;
+        double unit = us ? 0.0254 : 1e-3;
+        for (size_t k = 0; k < item->piece_count && length + 130 < size; k++)
+            length += (size_t)snprintf(
+                text + length, size - length, "; drill '%s' at %.0f deg %s: hole %s %s, %s %s deep",
+                plane->name, angle, job_sense_text(job), judge_figure(plane->hole_m / unit, 3).text, us ? "in" : "mm",
+                judge_figure(drill_depth(plane->hole_m, plane->density, item->pieces[k]) / unit, 3)
+                    .text,
+                us ? "in" : "mm");
+    }
+    return length;
+}
+
 void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next)
 {
     const struct job *job = a->model->job;
@@ -457,6 +501,7 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
         snprintf(next->text + length, sizeof next->text - length,
                  "; that fewer pieces would not do as well is not proven");
     length = strlen(next->text);
+    length += list_holes(a, next->text + length, sizeof next->text - length);
     if (a->static_only)
         length += (size_t)snprintf(next->text + length, sizeof next->text - length,
                                    "; the static part comes first, the couple after that run");

@@ -346,6 +346,10 @@ static void line_trials(struct line *line, const struct job *job)
         line_real(line, "mass", trials[p].mass);
         line_real(line, "wanted_mass", trials[p].wanted);
         line_real(line, "force_n", trials[p].force);
+        if (trials[p].sensor >= 0) {
+            line_text(line, "sensor", job->sensors[trials[p].sensor].name);
+            line_real(line, "effect", trials[p].effect);
+        }
         line_close(line, '}');
     }
     line_close(line, ']');
