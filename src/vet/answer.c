@@ -54,8 +54,9 @@ int answer_possible(const struct vet_runs *runs, const size_t *order, const stru
     int answer = -1;
 
     if (condition && weights && expected && usable && in_aim && positions) {
-        struct ruling_set set = {0,       job->sensor_count, job->plane_count, condition,
-                                 weights, expected,          usable,           in_aim};
+        struct ruling_set set = {
+            0,      job->sensor_count, job->plane_count, condition, weights, expected, usable,
+            in_aim, job->aim.named};
         set.run_count = fill_set(runs, order, job, condition, weights, expected, usable, positions);
         for (size_t i = 0; i < job->sensor_count; i++)
             in_aim[i] = !job->aim.named || !job->aim.targets || job->aim.targets[i].in_aim;

@@ -77,25 +77,66 @@ static bool is_missed(const struct ruling_set *s, size_t run, size_t sensor, dou
            left < rank_for(s, s->usable, run, sensor, condition, room);
 }
 
+/* True where the sensor is lost in the condition; *run: the first that is missed. */
+static bool is_lost(const struct ruling_set *s, size_t sensor, int condition, size_t *run,
+                    double complex *room)
+{
+    for (*run = 0; *run < s->run_count; ++*run) {
+        size_t at = *run * s->sensor_count + sensor;
+        if (s->condition[*run] == condition && s->expected[at] && !s->usable[at] &&
+            is_missed(s, *run, sensor, room))
+            return true;
+    }
+    return false;
+}
+
+static bool is_expected_in(const struct ruling_set *s, size_t sensor, int condition)
+{
+    for (size_t r = 0; r < s->run_count; r++)
+        if (s->condition[r] == condition && s->expected[r * s->sensor_count + sensor])
+            return true;
+    return false;
+}
+
+/* True where the condition cannot answer; *run and *sensor: what is missed first. */
+static bool condition_lost(const struct ruling_set *s, int condition, size_t *run, size_t *sensor,
+                           double complex *room)
+{
+    size_t lost = 0, kept = 0, at;
+
+    *run = s->run_count;
+    for (size_t i = 0; i < s->sensor_count; i++) {
+        if (!s->in_aim[i] || !is_expected_in(s, i, condition))
+            continue;
+        if (!is_lost(s, i, condition, &at, room)) {
+            kept++;
+            continue;
+        }
+        lost++;
+        if (at < *run) {
+            *run = at;
+            *sensor = i;
+        }
+    }
+    return lost > 0 && (s->named || kept == 0);
+}
+
 int ruling_can_answer(const struct ruling_set *s, size_t *run_lost, size_t *sensor_lost)
 {
     double complex *room = malloc((s->run_count * (s->plane_count + 1) + 1) * sizeof *room);
-    int answer = 1;
+    size_t first = s->run_count, run, sensor = 0;
 
     if (!room)
         return -1;
-    for (size_t r = 0; answer == 1 && r < s->run_count; r++) {
-        for (size_t i = 0; answer == 1 && i < s->sensor_count; i++) {
-            size_t at = r * s->sensor_count + i;
-            if (!s->in_aim[i] || !s->expected[at] || s->usable[at] || !is_missed(s, r, i, room))
-                continue;
-            answer = 0;
-            if (run_lost)
-                *run_lost = r;
-            if (sensor_lost)
-                *sensor_lost = i;
-        }
+    for (size_t r = 0; r < s->run_count; r++) {
+        if (!condition_lost(s, s->condition[r], &run, &sensor, room) || run >= first)
+            continue;
+        first = run;
+        if (run_lost)
+            *run_lost = run;
+        if (sensor_lost)
+            *sensor_lost = sensor;
     }
     free(room);
-    return answer;
+    return first == s->run_count;
 }

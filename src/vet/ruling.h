@@ -14,13 +14,15 @@ struct ruling_set {
     const bool *expected; /* [run * sensor_count + sensor]: the sheet lets a reading be there */
     const bool *usable;   /* the same shape: it is there, and it is not refused */
     const bool *in_aim;   /* [sensor] */
+    bool named;           /* the aim names its sensors: none of them may be lost */
 };
 
-/* 1 where every sensor of the aim, in every condition that has expected readings, keeps with its
- * usable readings the rank of [1, weights] that all expected ones would give, so that no run the
- * regression needs is lost; 0 where one does not (`run_lost` and `sensor_lost`, may be NULL,
- * receive the first run, in their order, that is expected and not usable for such a sensor, and the
- * sensor); -1 when memory is out. A refused run whose weights a usable one repeats is no loss. */
+/* A sensor is lost in a condition where its usable readings give [1, weights] less rank than all
+ * expected ones would, so that a run the regression needs is missing. 1 where no sensor that the
+ * aim names is lost and, where it names none, no condition has lost all of its sensors: the job
+ * goes on without those that are; 0 otherwise (`run_lost` and `sensor_lost`, may be NULL, receive
+ * the first run, in their order, that is expected and missed, and the sensor); -1 when memory is
+ * out. A refused run whose weights a usable one repeats is no loss. */
 int ruling_can_answer(const struct ruling_set *set, size_t *run_lost, size_t *sensor_lost)
     __attribute__((warn_unused_result));
 

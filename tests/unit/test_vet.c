@@ -225,11 +225,13 @@ static void the_whole_job_is_answered(void **state)
     assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
     within_refuse(&desk.items[1], &desk.job); /* repeated */
     assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
-    desk.readings[2][1].use = false;
+    desk.readings[2][1].use = false; /* no sensor is named, and the other one is left */
+    assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
+    desk.job.aim.named = true;
     assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 0);
     assert_int_equal(run, 2);
     assert_int_equal(sensor, 1);
-    desk.job.aim.named = true; /* the aim is on the other sensor */
+    /* the aim is on the other sensor */
     desk.targets[1].in_aim = false;
     assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
     for (int r = 0; r < RUNS; r++) { /* an audit has nothing to answer */

@@ -137,12 +137,12 @@ static void what_a_beat_leaves(void **state)
     near(beat_variance(&beat), 0, 0);
 }
 
-static int answer(const bool *usable, const bool *in_aim)
+static int answer(const bool *usable, const bool *in_aim, bool named)
 {
     static const int condition[4] = {0, 0, 0, 0};
     static const double complex weights[8] = {0, 0, 0.02, 0, 0, 0.02 * I, 0.02, 0};
     bool expected[8];
-    struct ruling_set set = {4, 2, 2, condition, weights, expected, usable, in_aim};
+    struct ruling_set set = {4, 2, 2, condition, weights, expected, usable, in_aim, named};
     size_t run = 9, sensor = 9;
     int result;
 
@@ -158,18 +158,21 @@ static void what_is_left(void **state)
     bool usable[8] = {1, 1, 1, 1, 1, 1, 1, 1};
 
     (void)state;
-    assert_int_equal(answer(usable, both), -1);
+    assert_int_equal(answer(usable, both, true), -1);
     usable[2] = usable[3] = false; /* trial A is repeated */
-    assert_int_equal(answer(usable, both), -1);
+    assert_int_equal(answer(usable, both, true), -1);
     usable[7] = false; /* and its repeat lost for the second sensor */
-    assert_int_equal(answer(usable, both), 3);
-    assert_int_equal(answer(usable, first), -1);
-    usable[0] = false; /* as found, for the first */
-    assert_int_equal(answer(usable, first), 0);
+    assert_int_equal(answer(usable, both, true), 3);
+    assert_int_equal(answer(usable, first, true), -1);
+    assert_int_equal(answer(usable, both, false), -1); /* nobody named it: on without it */
+    usable[0] = false;                                 /* as found, for the first */
+    assert_int_equal(answer(usable, first, true), 0);
+    assert_int_equal(answer(usable, both, false), 0); /* now both are lost */
+    assert_int_equal(answer(usable, first, false), 0);
     usable[2] = true;
     usable[0] = true;
     usable[4] = false; /* the trial of plane 2 */
-    assert_int_equal(answer(usable, first), 4);
+    assert_int_equal(answer(usable, first, true), 4);
 }
 
 /* Complex weights: two runs whose weights are multiples of each other do not tell two planes apart.
