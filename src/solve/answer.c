@@ -231,6 +231,18 @@ static int correct_static(struct answer *a)
     return ANSWER_OK;
 }
 
+/* With few degrees of freedom a region of two components follows F: F(2, dof) at 95 % is dof/2
+ * (0.05^(-2/dof) - 1) in closed form. The ellipse is widened so that the normal's 5.9915 holds 95 %. */
+static void widen_ellipse(struct answer *a)
+{
+    double dof = a->model->dof;
+    if (isinf(dof))
+        return;
+    double factor = dof * (pow(0.05, -2 / dof) - 1) / 5.9915;
+    for (size_t i = 0; i < 4 * a->planes * a->planes; i++)
+        a->ellipse[i] *= factor;
+}
+
 int answer_correct(struct answer *a)
 {
     int result = correct_least_squares(a->posterior, a->scale, a->rows, a->planes, a->classical);
@@ -239,6 +251,7 @@ int answer_correct(struct answer *a)
                                     a->ellipse);
     if (result != CORRECT_OK)
         return result;
+    widen_ellipse(a);
     memcpy(a->full, a->classical, a->planes * sizeof *a->full);
     result = minimise(a, a->forms, a->planes, a->full);
     memcpy(a->weights, a->full, a->planes * sizeof *a->weights);

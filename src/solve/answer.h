@@ -42,7 +42,8 @@ struct answer {
     double complex static_alone; /* kg m, two planes: the best of both planes alike */
     double left_alone, left;   /* root of expected squared vibration over that of now; two planes */
     double complex *classical; /* owned: planes, least squares */
-    double *ellipse;           /* owned: (2 planes)^2 covariance of `classical` */
+    double *ellipse;           /* owned: (2 planes)^2 covariance of `classical`, widened where the
+                                  scatter is of few degrees of freedom: chi-square's 95 % then holds */
     double condition;          /* number; INFINITY where there are fewer rows than planes */
     double complex *weak;      /* owned: planes, the pattern of weights seen least */
     double complex *forms;     /* owned: rows x (planes+1)^2 */

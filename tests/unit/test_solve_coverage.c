@@ -7,7 +7,7 @@
 
 #include "solve_campaign.h"
 
-#define JOBS 36 /* of each kind */
+#define JOBS 24 /* of each kind */
 
 static struct solve_tally pooled(double least, double most)
 {
