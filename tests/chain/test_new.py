@@ -83,8 +83,7 @@ class New(unittest.TestCase):
         got = chain.solved(self.top / "job.ini")
         runs = [s for s in re.split(r"(?m)^(?=\[)", DEMO) if not s.startswith("[run as-found again]")]
         runs = [s for s in runs if not s.startswith("[run") or s.startswith(("[run as-found]", "[run trial]"))]
-        plain = re.sub(r"(?m)^(pieces|grade|most|taken) = .*
-", "", "".join(runs))
+        plain = re.sub(r"(?m)^(pieces|grade|most|taken) = .*\n", "", "".join(runs))
         (self.top / "demo.ini").write_text(plain)
         demo = chain.solved(self.top / "demo.ini")
         self.assertGreater(len(chain.kind(got, "placement")), 0)
