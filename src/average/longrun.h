@@ -10,10 +10,10 @@
  *
  * The larger of two estimates, both pooled over the two components:
  *  - the lag-1 correlation of the blocks, freed of its small-sample bias (M. G. Kendall, Biometrika
- *    41 (1954) 403-404), where it exceeds one standard error, as f = (1+r)/(1-r), widened by what F(2, 2 nu)
- *    is wider than chi-squared: r itself rests on few independent blocks. nu = n/(2 f), at least 1.5, was chosen by the
- *    simulation in tests/unit/test_average_mean.c, so that wander nearly as slow as the run (0.8 in 16
- *    blocks) is covered 90 times in 100, too;
+ *    41 (1954) 403-404), where it exceeds one standard error, as f = (1+r)/(1-r), widened by what
+ * F(2, 2 nu) is wider than chi-squared: r itself rests on few independent blocks. nu = n/(2 f), at
+ * least 1.5, was chosen by the simulation in tests/unit/test_average_mean.c, so that wander nearly
+ * as slow as the run (0.8 in 16 blocks) is covered 90 times in 100, too;
  *  - the mean power of the first B = 2, 4, 8 (16) cosine sums (E. Lazarus, D. J. Lewis, J. H.
  * Stock, M. W. Watson, J. Bus. Econ. Stat. 36 (2018) 541-559, "EWC"), where it exceeds the power of
  * the rest at the 10 % level of F(2B, 2(n-1-B)), widened by what F(2, 2B) is wider than
@@ -21,10 +21,10 @@
  * correlation does not. */
 double longrun_factor(const double complex *vectors, size_t count);
 
-/* Standard deviation, of both components together, of the slow part of `count` vectors whose mean and line
- * have been taken off: the power of the first B = 2, 4, 8 (16) cosine sums beyond that of the rest, the largest
- * that is significant at the 1 % level of F(2B, 2(n-1-B)). 0 where none is; NaN for fewer than 12 vectors or
- * where one is NaN. */
+/* Standard deviation, of both components together, of the slow part of `count` vectors whose mean
+ * and line have been taken off: the power of the first B = 2, 4, 8 (16) cosine sums beyond that of
+ * the rest, the largest that is significant at the 1 % level of F(2B, 2(n-1-B)). 0 where none is;
+ * NaN for fewer than 12 vectors or where one is NaN. */
 double longrun_wander(const double complex *vectors, size_t count);
 
 /* P(F > x) of Snedecor's F with 2a and 2b degrees of freedom, a and b whole and >= 1, x >= 0: the

@@ -15,8 +15,10 @@ static const double AGREE = 2;         /* standard errors: 95 % of a normal devi
 static const double GAP_MOST = 4;      /* blocks' own sweeps between w0 and the nearest block */
 static const double CHI2_95 = 5.99146; /* chi-squared with 2 degrees of freedom, 95 % */
 static const double CORRELATION_MOST = 0.9; /* as in longrun.c */
-static const double SINGULAR = 1e-9; /* of a pivot against the largest: rounding of the sums */
-static const double SECOND_TERM = 3; /* second over squared first term at a resonance's peak */
+static const size_t NOISE_BLOCKS = 48; /* nearest in speed that tell the noise of single blocks */
+static const double NOISE_LEAST = 8;   /* third differences, at least */
+static const double SINGULAR = 1e-9;   /* of a pivot against the largest: rounding of the sums */
+static const double SECOND_TERM = 3;   /* second over squared first term at a resonance's peak */
 static const double FREEDOM_LEAST =
     2; /* below, a scatter says nothing, and a multiple of it less */
 
@@ -27,6 +29,11 @@ struct point {
     double weight, turns;
     double complex z;
     size_t order; /* in time */
+};
+
+/* Scatter of single blocks as their third differences in time show it. */
+struct noise {
+    double variance, freedom; /* of a component; freedom 0: not known */
 };
 
 /* One local fit. */
@@ -79,6 +86,27 @@ static void set_points(const struct sweep *s, double speed_rpm, struct point *po
         p->order = k;
     }
     qsort(points, s->count, sizeof *points, by_distance);
+}
+
+/* From the blocks nearest in speed: a smooth curve has next to no third difference, and it
+ * multiplies white variance by 1 + 9 + 9 + 1. Its own correlation (15, 6 and 1 over 20) leaves
+ * 1/2.31 of the degrees of freedom. */
+static struct noise noise_near(const struct sweep *s, const struct point *points)
+{
+    double sum = 0, n = 0;
+
+    for (size_t k = 0; k < s->count && k < NOISE_BLOCKS; k++) {
+        const double complex *z = &s->vectors[points[k].order];
+        double complex d;
+        if (points[k].order < 3)
+            continue;
+        d = z[0] - 3 * z[-1] + 3 * z[-2] - z[-3];
+        sum += creal(d * conj(d));
+        n++;
+    }
+    if (n < NOISE_LEAST)
+        return (struct noise){0};
+    return (struct noise){sum / n / 40, n / 2.31};
 }
 
 /* True where blocks lie on both sides of w0 or reach it, the nearest not far. Points are sorted. */
@@ -185,7 +213,7 @@ static double slow_factor(const struct point *points, const double complex *resi
 }
 
 static bool fit_terms(struct point *points, size_t count, double w0, int terms,
-                      double complex *residuals, struct local *local)
+                      const struct noise *noise, double complex *residuals, struct local *local)
 {
     double complex c[3] = {0}, inverse[3][3] = {{0}}, spread = 0, mean_rate = 0;
     double h = set_weights(points, count), weights = 0, used = 0, squares = 0;
@@ -216,8 +244,13 @@ static bool fit_terms(struct point *points, size_t count, double w0, int terms,
         return false;
     double factor = slow_factor(points, residuals, count);
     double pieces = weights - used; /* as if each block counted by its weight */
+    double variance = squares / (2 * pieces) * factor;
     local->freedom = fmax(pieces / factor, FREEDOM_LEAST);
-    local->variance = squares / (2 * pieces) * creal(spread) * factor;
+    if (noise->freedom > 0 && noise->variance > variance) {
+        variance = noise->variance;
+        local->freedom = noise->freedom;
+    }
+    local->variance = variance * creal(spread);
     local->a = c[0];
     local->late = cabs(mean_rate / weights * (c[2] / (h * h) - c[0] / (w0 * w0)));
     local->used = count;
@@ -226,11 +259,11 @@ static bool fit_terms(struct point *points, size_t count, double w0, int terms,
 }
 
 /* The highest order that the points can carry. */
-static bool fit_local(struct point *points, size_t count, double w0, double complex *residuals,
-                      struct local *local)
+static bool fit_local(struct point *points, size_t count, double w0, const struct noise *noise,
+                      double complex *residuals, struct local *local)
 {
     for (int terms = 3; terms >= 1; terms--)
-        if (fit_terms(points, count, w0, terms, residuals, local))
+        if (fit_terms(points, count, w0, terms, noise, residuals, local))
             return true;
     return false;
 }
@@ -271,6 +304,7 @@ int sweep_at(const struct sweep *sweep, double speed_rpm, struct sweep_fit *fit)
     struct local tries[TRIES_MOST];
     size_t count = 0, reach = SWEEP_LEAST;
     struct point *points;
+    struct noise noise;
     double complex *residuals;
     int result = SWEEP_MADE;
 
@@ -281,11 +315,12 @@ int sweep_at(const struct sweep *sweep, double speed_rpm, struct sweep_fit *fit)
         return -1;
     residuals = (double complex *)(points + sweep->count);
     set_points(sweep, speed_rpm, points);
+    noise = noise_near(sweep, points);
     if (!is_inside(points, sweep->count))
         result = SWEEP_OUTSIDE;
     while (result == SWEEP_MADE && count < TRIES_MOST) {
         struct local *l = &tries[count];
-        bool good = fit_local(points, reach, speed_rpm * RPM, residuals, l);
+        bool good = fit_local(points, reach, speed_rpm * RPM, &noise, residuals, l);
         for (size_t i = 0; good && i < count; i++)
             good = agrees(l, &tries[i]);
         if (!good && count > 0)
