@@ -111,18 +111,26 @@ static int name_runs(struct draft *draft)
 {
     const size_t count = draft->recordings.count;
     draft->runs = calloc(count, sizeof *draft->runs);
-    draft->files = calloc(count, sizeof *draft->files);
-    if (!draft->runs || !draft->files ||
+    if (!draft->runs ||
         names_from_paths((char *const *)draft->recordings.items, count, draft->runs) != 0)
+        return message_no_memory();
+    draft->outline.runs = (const char(*)[NAME_ROOM])draft->runs;
+    draft->outline.run_count = count;
+    return STATUS_DONE;
+}
+
+static int name_files(struct draft *draft)
+{
+    const size_t count = draft->recordings.count;
+    draft->files = calloc(count, sizeof *draft->files);
+    if (!draft->files)
         return message_no_memory();
     for (size_t i = 0; i < count; i++) {
         draft->files[i] = path_from_sheet(draft->recordings.items[i], draft->output);
         if (!draft->files[i])
             return message_no_memory();
     }
-    draft->outline.runs = (const char(*)[NAME_ROOM])draft->runs;
     draft->outline.files = (const char *const *)draft->files;
-    draft->outline.run_count = count;
     return STATUS_DONE;
 }
 
@@ -168,6 +176,7 @@ static void ask_all(struct draft *draft)
         bool wanted;
         const char *question;
     } questions[] = {
+        {&draft->output, true, "File to write the sheet to (job.ini; empty: show it here)"},
         {&a->title, true, "Title of the job"},
         {&a->angles, true, "Do angles of weights count 'against' or 'with' rotation"},
         {&a->tacho, !has_tacho(draft), "Channel of the tacho (none: there is none)"},
@@ -347,6 +356,8 @@ int desk_new(int argc, char **argv)
             status = name_runs(&draft);
         if (status == STATUS_DONE)
             status = answer(&draft);
+        if (status == STATUS_DONE)
+            status = name_files(&draft);
         if (status == STATUS_DONE)
             status = write_sheet(&draft);
     }

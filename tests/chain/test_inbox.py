@@ -16,7 +16,7 @@ import chain
 
 INBOX = pathlib.Path(__file__).resolve().parents[2] / "scripts" / "inbox"
 KILLS = int(os.environ.get("INBOX_KILLS", "15"))
-JOBS = int(os.environ.get("INBOX_JOBS", "8"))
+JOBS = int(os.environ.get("INBOX_JOBS", "6"))
 RESULT = {".content", "report.html", "report.txt", "status", "stream.jsonl"}
 
 BY_HAND = """[job]
@@ -186,6 +186,27 @@ class Inbox(unittest.TestCase):
         self.assertEqual(status(self.outbox, "audit")[0], 3)
         self.assertIn("cut.wav", status(self.outbox, "audit")[1])
         self.assertEqual(set(result(self.outbox / "audit")), RESULT)  # the others are audited all the same
+
+    def test_links(self):
+        """A link to a file is a file; a linked folder is not entered, wherever it leads."""
+        job = put(self.inbox, "a", {})
+        (self.top / "sheet").write_text(BY_HAND.format(title="first"))
+        (job / "job.ini").symlink_to(self.top / "sheet")
+        (job / "all").symlink_to("/")
+        (job / "up").symlink_to("..")
+        (job / "broken").symlink_to("nowhere")
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 0)
+        self.assertEqual(run(self.inbox, self.outbox).stdout, "")
+        (self.top / "sheet").write_text(BY_HAND.format(title="second"))
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 0)
+        self.assertIn("second", (self.outbox / "a" / "report.txt").read_text())
+
+    def test_taken_back(self):
+        job = put(self.inbox, "a", {"job.ini": BY_HAND.format(title="x")})
+        back = self.program(f'rm -f "{job}/READY"; exec "$lopside" "$@"')
+        done = run(self.inbox, self.outbox, program=back)
+        self.assertEqual((done.returncode, done.stdout, results(self.outbox)), (0, "", {}))
+        self.clean()
 
     def test_refused(self):
         sheet = BY_HAND.format(title="x").replace("4.9 mm/s rms at 85", "7.2 mm/s rms at 143")  # no effect at all

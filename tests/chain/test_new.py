@@ -173,9 +173,9 @@ class New(unittest.TestCase):
 
     def test_asks_on_a_terminal_only(self):
         self.put("fan", "as-found.wav", "trial.wav")
-        typed = ["Fan # 7", "against", "g", "100 mV/g", "10 V", MASS, "985 rpm", "600 mm", "12 from 0 deg",
+        typed = ["job.ini", "Fan # 7", "against", "g", "100 mV/g", "10 V", MASS, "985 rpm", "600 mm", "12 from 0 deg",
                  "10 20 50 g", "1.8 mm/s rms", "", WEIGHT]
-        code, shown = on_terminal(["new", "-o", "job.ini", "as-found.wav", "trial.wav"], typed, self.top)
+        code, shown = on_terminal(["new", "as-found.wav", "trial.wav"], typed, self.top)
         self.assertEqual(code, 0, shown)
         self.assertIn("written, and complete", shown)
         text = (self.top / "job.ini").read_text()
