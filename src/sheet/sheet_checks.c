@@ -152,30 +152,10 @@ static void check_channels(struct sheet_parse *p)
         check_channel(p, job->run_count, sensor);
 }
 
-static void check_tacho(struct sheet_parse *p)
-{
-    const struct job *job = &p->sheet->job;
-    if (job->has_tacho)
-        return;
-    if (p->audit) {
-        sheet_errors_add(&p->errors, 1, "missing section: '[tacho]'");
-        return;
-    }
-    for (size_t run = 0; run < job->run_count; run++)
-        if (is_recorded(p, run)) {
-            const struct sheet_section *s = &p->lines.sections[p->run_sections[run]];
-            sheet_errors_add(&p->errors, s->line,
-                             "missing section '[tacho]', which recordings need: '[%.60s]'",
-                             s->text);
-            return;
-        }
-}
-
 void sheet_checks_cross(struct sheet_parse *p)
 {
     check_job(p);
     for (size_t run = 0; run < p->sheet->job.run_count; run++)
         check_run(p, run);
-    check_tacho(p);
     check_channels(p);
 }

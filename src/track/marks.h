@@ -16,8 +16,9 @@
 #define MARKS_VOTERS 48       /* pulses that vote; more where there are several a turn, */
 #define MARKS_VOTERS_MOST 512 /* but never more than this */
 #define MARKS_GAP 6           /* turns that may be bridged */
-#define MARKS_ROOM ((MARKS_VOTERS_MOST + 2) * (MARKS_GAP + 1)) /* marks that one push can release  \
-                                                                */
+#define MARKS_ROOM                                                                                 \
+    ((MARKS_VOTERS_MOST + 2) * (MARKS_GAP + 1)) /* marks that one push can release                 \
+                                                 */
 
 struct mark {
     double at;   /* samples */

@@ -2,10 +2,10 @@
 
 #include <math.h>
 
-#define STRIDE 7       /* samples; few pulses are shorter than that and none stands still against it */
-#define LEAST 64       /* samples that say anything about a shape */
-#define FLATTEST 1.3   /* kurtosis: two levels at about even duty have 1.0, a sine 1.5 */
-#define PEAKIEST 4     /* kurtosis: Gaussian noise has 3, pulses of a fifth of the turn 3.3 */
+#define STRIDE 7 /* samples; few pulses are shorter than that and none stands still against it */
+#define LEAST 64 /* samples that say anything about a shape */
+#define FLATTEST 1.3    /* kurtosis: two levels at about even duty have 1.0, a sine 1.5 */
+#define PEAKIEST 4      /* kurtosis: Gaussian noise has 3, pulses of a fifth of the turn 3.3 */
 #define MIDDLE_MOST 0.1 /* share of the samples; a sine has 0.22 */
 
 void shape_init(struct shape *shape)

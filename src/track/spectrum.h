@@ -12,9 +12,10 @@
 
 #include "track/vector.h"
 
-#define SPECTRUM_TURNS 16  /* of one stretch: the resolution is 1/16 order */
-#define SPECTRUM_MOST 48   /* stretches */
-#define SPECTRUM_FINE 12   /* orders up to this come line by line, those above one order at a time \
+#define SPECTRUM_TURNS 16 /* of one stretch: the resolution is 1/16 order */
+#define SPECTRUM_MOST 48  /* stretches */
+#define SPECTRUM_FINE                                                                              \
+    12                     /* orders up to this come line by line, those above one order at a time \
                             */
 #define SPECTRUM_LINES 400 /* room for the lines of one spectrum */
 

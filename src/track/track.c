@@ -2,6 +2,7 @@
 
 #include <math.h>
 #include <stdint.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -9,6 +10,7 @@
 #include "base/options.h"
 #include "stream/records.h"
 #include "stream/stream.h"
+#include "track/tone_line.h"
 #include "track/tracker.h"
 
 /* What is known of the recording that is passing through. */
@@ -17,6 +19,7 @@ struct recording {
     char run[NAME_ROOM];
     struct wave_record wave; /* owned while open */
     int *sensors;            /* owned: per column the sensor's index, -1 the tacho */
+    int *derivatives;        /* owned: per sensor present, what tone.h wants */
     struct tracker tracker;  /* owned while open */
     double frames, got;      /* promised by the run record (0: it says nothing), and seen */
 };
@@ -60,6 +63,26 @@ static int name_columns(struct recording *rec, const struct job *job, int *tacho
     return STATUS_DONE;
 }
 
+/* Sensors' quantities as the tracker counts them, in the order of their columns. */
+static void name_derivatives(struct recording *rec, const struct job *job)
+{
+    for (size_t c = 0, s = 0; c < rec->wave.column_count; c++) {
+        if (rec->sensors[c] >= 0) {
+            enum quantity quantity = job->sensors[rec->sensors[c]].quantity;
+
+            rec->derivatives[s++] =
+                (quantity == QUANTITY_ACCELERATION) - (quantity == QUANTITY_DISPLACEMENT);
+        }
+    }
+}
+
+static bool sweeps(const struct recording *rec, const struct job *job)
+{
+    int run = job_find_run(job, rec->run);
+
+    return run >= 0 && !strcmp(job->runs[run].role, "coast-down");
+}
+
 static int begin_tracker(struct recording *rec, const struct job *job)
 {
     size_t columns = rec->wave.column_count;
@@ -67,7 +90,8 @@ static int begin_tracker(struct recording *rec, const struct job *job)
     int tacho, status, failed;
 
     rec->sensors = malloc((columns + 1) * sizeof *rec->sensors);
-    if (!rec->sensors || !rail) {
+    rec->derivatives = calloc(columns + 1, sizeof *rec->derivatives);
+    if (!rec->sensors || !rec->derivatives || !rail) {
         free(rail);
         return message_no_memory();
     }
@@ -76,10 +100,19 @@ static int begin_tracker(struct recording *rec, const struct job *job)
         rail[c] = rec->wave.columns[c].rail;
     }
     if (status == STATUS_DONE) {
-        struct tracker_set_up set_up = {
-            rec->wave.rate_hz, rec->frames,      columns,          tacho,           rail,
-            job->tacho_edge,   job->tacho_marks, job->tacho_level, job->service_rpm};
+        struct tracker_set_up set_up = {rec->wave.rate_hz,
+                                        rec->frames,
+                                        columns,
+                                        tacho,
+                                        rail,
+                                        job->tacho_edge,
+                                        job->tacho_marks,
+                                        job->tacho_level,
+                                        job->service_rpm,
+                                        rec->derivatives,
+                                        sweeps(rec, job)};
 
+        name_derivatives(rec, job);
         failed = tracker_init(&rec->tracker, &set_up);
         status = failed ? message_no_memory() : STATUS_DONE;
     }
@@ -189,26 +222,36 @@ static int print_channels(const struct recording *rec, struct stream *stream, st
     return status;
 }
 
+/* A record with room for all sensors of the recording. */
+static int begin_turns(const struct recording *rec, struct turns_record *record)
+{
+    size_t count = rec->tracker.sensors;
+
+    *record = (struct turns_record){.count = count};
+    record->sensors = malloc((count + 1) * sizeof *record->sensors);
+    record->vectors = malloc((count + 1) * sizeof *record->vectors);
+    record->rest = malloc((count + 1) * sizeof *record->rest);
+    record->amplitudes = malloc((count + 1) * sizeof *record->amplitudes);
+    if (!record->sensors || !record->vectors || !record->rest || !record->amplitudes) {
+        turns_release(record);
+        return message_no_memory();
+    }
+    strcpy(record->run, rec->run);
+    for (size_t c = 0, s = 0; c < rec->wave.column_count; c++) {
+        if (rec->sensors[c] >= 0) {
+            record->sensors[s++] = rec->sensors[c];
+        }
+    }
+    return STATUS_DONE;
+}
+
 static int print_turns(const struct recording *rec, struct stream *stream, struct line *line)
 {
     const struct windows *windows = &rec->tracker.windows;
-    struct turns_record record = {.count = windows->sensors};
+    struct turns_record record;
     bool regular = tracker_regular(&rec->tracker), reference = tracker_reference(&rec->tracker);
-    int status = STATUS_DONE;
+    int status = begin_turns(rec, &record);
 
-    record.sensors = malloc((record.count + 1) * sizeof *record.sensors);
-    record.vectors = malloc((record.count + 1) * sizeof *record.vectors);
-    record.rest = malloc((record.count + 1) * sizeof *record.rest);
-    if (!record.sensors || !record.vectors || !record.rest) {
-        turns_release(&record);
-        return message_no_memory();
-    }
-    strcpy(record.run, rec->run);
-    for (size_t c = 0, s = 0; c < rec->wave.column_count; c++) {
-        if (rec->sensors[c] >= 0) {
-            record.sensors[s++] = rec->sensors[c];
-        }
-    }
     for (size_t b = 0; regular && status == STATUS_DONE && b < windows->count; b++) {
         const struct window_block *block = &windows->blocks[b];
 
@@ -218,6 +261,7 @@ static int print_turns(const struct recording *rec, struct stream *stream, struc
             60 * rec->wave.rate_hz * (double)block->turns / (block->to - block->from);
         for (size_t s = 0; s < windows->sensors; s++) {
             record.vectors[s] = window_vector(windows, b, s, &record.rest[s]);
+            record.amplitudes[s] = reference ? NAN : cabs(record.vectors[s]);
             record.vectors[s] = reference ? record.vectors[s] : CMPLX(NAN, NAN);
         }
         turns_print(&record, &stream->job, line);
@@ -225,6 +269,83 @@ static int print_turns(const struct recording *rec, struct stream *stream, struc
     }
     turns_release(&record);
     return status;
+}
+
+/* Without a tacho: amplitudes of the line that is taken for the shaft's. */
+static int print_tone(const struct recording *rec, struct stream *stream, struct line *line)
+{
+    const struct tone *tone = &rec->tracker.tone;
+    struct turns_record record;
+    int status = begin_turns(rec, &record);
+
+    for (size_t b = 0; status == STATUS_DONE && b < tone->block_count; b++) {
+        const struct tone_block *block = &tone->blocks[b];
+
+        record.t_s = (block->from + block->to) / 2 / rec->wave.rate_hz;
+        record.turns = lround(block->turns);
+        record.speed_rpm = 60 * block->hz;
+        for (size_t s = 0; s < record.count; s++) {
+            record.vectors[s] = CMPLX(NAN, NAN);
+            record.amplitudes[s] = tone->amplitude[b * tone->sensors + s];
+            record.rest[s] = tone->rest[b * tone->sensors + s];
+        }
+        turns_print(&record, &stream->job, line);
+        status = stream_write(stream, line);
+    }
+    turns_release(&record);
+    return status;
+}
+
+/* What the speed rests on, for people. */
+static int print_tone_finding(const struct recording *rec, struct stream *stream, struct line *line)
+{
+    const struct tone *tone = &rec->tracker.tone;
+    double speed = tone_speed(tone), sd = tone_scatter(tone) / sqrt((double)tone->block_count);
+    bool doubtful = tone->rival > 0;
+    struct finding_record record = {.stage = "track",
+                                    .check = "speed-from-spectrum",
+                                    .verdict = doubtful ? VERDICT_CAUTION : VERDICT_OK,
+                                    .sensor = -1,
+                                    .value = doubtful ? 100 * tone->rival : NAN,
+                                    .limit = doubtful ? 100 * TONE_LINE_RIVAL : NAN,
+                                    .unit = "%",
+                                    .basis = "common practice"};
+
+    if (!tone->found) {
+        return STATUS_DONE; /* vet says that there is neither tacho nor reading */
+    }
+    sd = fmax(isnan(sd) ? 0 : sd,
+              60 * tone->fine_hz / 10); /* a line's middle, to a fifth of a bin */
+    strcpy(record.run, rec->run);
+    if (doubtful) {
+        snprintf(
+            record.text, sizeof record.text,
+            "no tacho: the speed was read from the spectrum as %.4g rpm (standard deviation %.1g), "
+            "but another line at %.4g Hz has %.0f %% of its size: state the service speed and "
+            "make sure that it is this line",
+            speed, sd, tone->rival_hz, 100 * tone->rival);
+    } else {
+        snprintf(
+            record.text, sizeof record.text,
+            "no tacho: the speed was read from the spectrum as %.4g rpm (standard deviation %.1g); "
+            "amplitudes only",
+            speed, sd);
+    }
+    finding_print(&record, &stream->job, line);
+    return stream_write(stream, line);
+}
+
+static int print_tone_tacho(const struct recording *rec, struct stream *stream, struct line *line)
+{
+    const struct tone *tone = &rec->tracker.tone;
+    struct tacho_record record = {.jitter_deg = NAN,
+                                  .speed_rpm = tone_speed(tone),
+                                  .scatter_rpm = tone_scatter(tone),
+                                  .pulses = true};
+
+    strcpy(record.run, rec->run);
+    tacho_print(&record, line);
+    return stream_write(stream, line);
 }
 
 static int print_tacho(const struct recording *rec, struct stream *stream, struct line *line)
@@ -270,7 +391,8 @@ static void drop(struct recording *rec)
     tracker_release(&rec->tracker);
     wave_release(&rec->wave);
     free(rec->sensors);
-    rec->sensors = NULL;
+    free(rec->derivatives);
+    rec->sensors = rec->derivatives = NULL;
     rec->open = false;
 }
 
@@ -292,14 +414,16 @@ static int finish(struct recording *rec, struct stream *stream)
     if (status == STATUS_DONE) {
         status = print_channels(rec, stream, &line);
     }
+    bool tacho = rec->tracker.tacho >= 0;
+
     if (status == STATUS_DONE) {
-        status = print_turns(rec, stream, &line);
+        status = tacho ? print_turns(rec, stream, &line) : print_tone(rec, stream, &line);
     }
     if (status == STATUS_DONE) {
-        status = print_tacho(rec, stream, &line);
+        status = tacho ? print_tacho(rec, stream, &line) : print_tone_tacho(rec, stream, &line);
     }
     if (status == STATUS_DONE) {
-        status = print_spectra(rec, stream, &line);
+        status = tacho ? print_spectra(rec, stream, &line) : print_tone_finding(rec, stream, &line);
     }
     line_release(&line);
     drop(rec);

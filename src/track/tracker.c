@@ -9,6 +9,18 @@
 #define JITTER_MOST 15.0 /* deg: marks at random within their tolerance scatter by 40 deg */
 #define KEEP 64          /* frames kept before the next turn, for edges and rounding */
 
+static int begin_tone(struct tracker *tracker, const struct tracker_set_up *set_up)
+{
+    int *velocities = calloc(tracker->sensors + 1, sizeof *velocities);
+    struct tone_set_up tone = {set_up->rate_hz, set_up->frames, tracker->sensors,
+                               set_up->service_rpm,
+                               set_up->derivatives ? set_up->derivatives : velocities};
+    int failed = velocities ? tone_init(&tracker->tone, &tone) : -1;
+
+    free(velocities);
+    return failed;
+}
+
 int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
 {
     size_t columns = set_up->columns;
@@ -18,7 +30,8 @@ int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
                                 .columns = columns,
                                 .tacho = set_up->tacho,
                                 .sensors = columns - (set_up->tacho >= 0),
-                                .skipped = true};
+                                .skipped = true,
+                                .sweeps = set_up->sweeps};
     tracker->most = (size_t)TRACKER_HOLD / (columns * sizeof(float));
     if (tracker->most < 4 * TRACKER_CHUNK) {
         tracker->most = 4 * TRACKER_CHUNK;
@@ -39,6 +52,7 @@ int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
     tracker->offset = calloc(columns, sizeof *tracker->offset);
     tracker->sums = calloc(2 * tracker->sensors + 1, sizeof *tracker->sums);
     if (!tracker->planes || !tracker->channels || !tracker->offset || !tracker->sums ||
+        (tracker->tacho < 0 && begin_tone(tracker, set_up)) ||
         channel_pairs_init(&tracker->pairs, columns)) {
         tracker_release(tracker);
         return -1;
@@ -59,6 +73,7 @@ void tracker_release(struct tracker *tracker)
     channel_pairs_release(&tracker->pairs);
     window_release(&tracker->windows);
     spectrum_end(&tracker->spectrum);
+    tone_release(&tracker->tone);
     *tracker = (struct tracker){0};
 }
 
@@ -164,7 +179,8 @@ static void note_speed(struct tracker *tracker, const struct shaft_turn *turn)
 /* The period is known: settle what depends on it. */
 static int first_turn(struct tracker *tracker, double period)
 {
-    tracker->windows.length = window_length(tracker->rate_hz, period, tracker->frames);
+    tracker->windows.length =
+        window_length(tracker->rate_hz, period, tracker->frames, tracker->sweeps);
     return spectrum_init(&tracker->spectrum, tracker->sensors, tracker->rate_hz, period,
                          tracker->frames);
 }
@@ -366,6 +382,8 @@ static int chunk(struct tracker *tracker, size_t n, bool last)
     }
     if (tracker->tacho >= 0) {
         shape_add(&tracker->shape, tracker->planes[tracker->tacho], n);
+    } else if (tone_add(&tracker->tone, tracker->planes, n)) {
+        return -1;
     }
     channel_pairs_add(&tracker->pairs, tracker->planes, n);
     tracker->done += n;
@@ -414,8 +432,11 @@ int tracker_finish(struct tracker *tracker)
     if (rest > 0 && chunk(tracker, rest, true)) {
         return -1;
     }
-    if (tracker->tacho < 0 || (rest == 0 && tracker->done > 0 && advance(tracker, true))) {
-        return tracker->tacho < 0 ? 0 : -1;
+    if (tracker->tacho < 0) {
+        return tone_finish(&tracker->tone);
+    }
+    if (rest == 0 && tracker->done > 0 && advance(tracker, true)) {
+        return -1;
     }
     double end = (double)tracker->start + (double)tracker->fill;
 

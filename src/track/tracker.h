@@ -18,6 +18,7 @@
 #include "track/shaft.h"
 #include "track/shape.h"
 #include "track/spectrum.h"
+#include "track/tone.h"
 #include "track/window.h"
 
 #define TRACKER_CHUNK 2048
@@ -32,7 +33,11 @@ struct tracker_set_up {
     int edge;           /* +1, -1 */
     int marks;          /* pulses a turn */
     double level;       /* NaN: to be found */
-    double service_rpm; /* NaN: unknown; a hint for how long to look for levels */
+    double service_rpm; /* NaN: unknown; a hint for how long to look for levels, and without a tacho
+                         * for which line is the shaft's */
+    const int *derivatives; /* borrowed, per sensor, as in tone.h; NULL: all are velocities. Without
+                             * a tacho only */
+    bool sweeps;            /* the speed runs through a range: short blocks */
 };
 
 struct tracker {
@@ -56,7 +61,9 @@ struct tracker {
     struct spectrum spectrum;
     struct channel *channels; /* owned, per column */
     struct channel_pairs pairs;
-    struct shape shape;       /* of the tacho */
+    struct shape shape; /* of the tacho */
+    struct tone tone;   /* without a tacho */
+    bool sweeps;
     float *offset;            /* owned, per column: a rough mean that is taken off */
     struct vector_sums *sums; /* owned scratch: 2 * sensors */
     struct vector_weights weights;

@@ -6,10 +6,11 @@
 #define LEAST_TURNS 4
 #define LEAST_BLOCKS 16
 #define MOST_BLOCKS 2000
+#define SWEPT_S 0.25
 
-long window_length(double rate_hz, double period, double frames)
+long window_length(double rate_hz, double period, double frames, bool sweeps)
 {
-    double turns = rate_hz / period, all = frames / period - 1;
+    double turns = (sweeps ? SWEPT_S : 1) * rate_hz / period, all = frames / period - 1;
 
     if (frames > 0) {
         turns = fmin(turns, floor(all / LEAST_BLOCKS));

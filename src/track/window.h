@@ -33,9 +33,10 @@ struct windows {
 };
 
 /* About a second of turns, at least four, shortened so that the recording gives sixteen blocks or
- * more, lengthened so that it gives two thousand at most. `period` and `frames` (0: unknown) in
- * samples. */
-long window_length(double rate_hz, double period, double frames);
+ * more, lengthened so that it gives two thousand at most; a quarter of a second where the speed
+ * `sweeps` (at 20 rpm/s it changes by 5 rpm in it). `period` and `frames` (0: unknown) in samples.
+ */
+long window_length(double rate_hz, double period, double frames, bool sweeps);
 
 void window_init(struct windows *windows, size_t sensors);
 void window_release(struct windows *windows);

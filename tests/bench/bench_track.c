@@ -35,7 +35,7 @@ int main(int argc, char **argv)
     size_t parts = (size_t)(million * 1e6 / PART) + 1;
     double rail[COLUMNS] = {NAN, NAN, NAN, NAN};
     struct tracker_set_up set_up = {
-        12800, (double)(parts * PART), COLUMNS, COLUMNS - 1, rail, 1, 1, NAN, NAN};
+        12800, (double)(parts * PART), COLUMNS, COLUMNS - 1, rail, 1, 1, NAN, NAN, NULL, false};
     struct tracker tracker;
     struct timespec from, to;
     float *x = one_part();

@@ -313,7 +313,6 @@ static void test_all_at_once(void **state)
         "fan.ini:14: missing key in [plane w]: 'radius'\n"
         "fan.ini:15: a number is written with a decimal point, lists with blanks: "
         "'stock = 10,5 g'\n"
-        "fan.ini:16: missing section '[tacho]', which recordings need: '[run r]'\n"
         "fan.ini:18: no such plane: 'v'\n"
         "fan.ini:19: section given twice: '[run r]' (first in line 16)\n");
 }
@@ -351,7 +350,6 @@ static void test_audit(void **state)
     sheet_desk_expect("[sensor A]\nunit = g\n[sensor B]\nunit = g\nchannel = 1\n[sensor C]\nunit = "
                       "g\nchannel = 1\n",
                       true,
-                      "fan.ini:1: missing section: '[tacho]'\n"
                       "fan.ini:1: missing key in [sensor A]: 'channel'\n"
                       "fan.ini:8: same channel as sensor 'B': '1'\n");
 }

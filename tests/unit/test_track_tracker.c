@@ -232,7 +232,7 @@ static void test_slow_shaft(void **unused)
         rail[c] = NAN;
     }
     for (long period = 2000; period < 60000; period *= 3) {
-        struct tracker_set_up set_up = {5000, 0, COLUMNS, 0, rail, 1, 1, NAN, NAN};
+        struct tracker_set_up set_up = {5000, 0, COLUMNS, 0, rail, 1, 1, NAN, NAN, NULL, false};
         struct tracker tracker;
         double rest;
 

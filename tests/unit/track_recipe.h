@@ -99,7 +99,7 @@ static inline void track(struct tracker *tracker, const struct recipe *r, const 
 {
     double rail[2] = {NAN, NAN};
     struct tracker_set_up set_up = {r->shaft.rate, (double)n, 2,   1,  rail,
-                                    r->edge,       r->marks,  NAN, NAN};
+                                    r->edge,       r->marks,  NAN, NAN, NULL, false};
 
     assert_int_equal(tracker_init(tracker, &set_up), 0);
     for (size_t i = 0; i < n;) {
