@@ -69,13 +69,19 @@ size_t *across_order(const struct vet_runs *runs, const struct job *job)
 double across_as_found(const struct vet_runs *runs, const size_t *order, const struct job *job,
                        const char *condition, size_t sensor)
 {
+    double refused = NAN;
+
     for (size_t k = 0; k < runs->count; k++) {
         const struct vet_run *run = ordinary(runs, order, job, k);
-        if (run && !strcmp(run->condition, condition) && run->readings[sensor].present &&
-            job_run_is_bare(job, (size_t)run->index))
+        if (!run || strcmp(run->condition, condition) != 0 || !run->readings[sensor].present ||
+            !job_run_is_bare(job, (size_t)run->index))
+            continue;
+        if (run->readings[sensor].use)
             return run->readings[sensor].amplitude;
+        if (isnan(refused))
+            refused = run->readings[sensor].amplitude;
     }
-    return NAN;
+    return refused;
 }
 
 static bool share_file(const struct vet_run *a, const struct vet_run *b)
@@ -168,6 +174,12 @@ static double median(double *values, size_t count)
     return count % 2 ? values[count / 2] : 0.5 * (values[count / 2 - 1] + values[count / 2]);
 }
 
+/* Readings of coast-downs stand at the speed that was asked for. */
+static bool matched(const struct vet_run *run, const char *condition)
+{
+    return run && run->parent < 0 && !strcmp(run->condition, condition);
+}
+
 /* Judges one condition's speeds once; true where a run was refused and the rest is to be judged
  * again. `room` holds one value per run. */
 static bool match_once(struct vet_runs *runs, const size_t *order, const struct job *job,
@@ -180,8 +192,7 @@ static bool match_once(struct vet_runs *runs, const size_t *order, const struct 
 
     for (size_t k = 0; k < runs->count; k++) {
         const struct vet_run *run = ordinary(runs, order, job, k);
-        double speed =
-            run && !strcmp(run->condition, condition) ? facts_speed(run, job, true) : NAN;
+        double speed = matched(run, condition) ? facts_speed(run, job, true) : NAN;
         if (isnan(speed))
             continue;
         room[count++] = speed;
@@ -194,8 +205,7 @@ static bool match_once(struct vet_runs *runs, const size_t *order, const struct 
     middle = median(room, count);
     for (size_t k = 0; k < runs->count; k++) {
         const struct vet_run *run = ordinary(runs, order, job, k);
-        double speed =
-            run && !strcmp(run->condition, condition) ? facts_speed(run, job, true) : NAN;
+        double speed = matched(run, condition) ? facts_speed(run, job, true) : NAN;
         if (fabs(speed - middle) >= furthest * (1 - 1e-12)) { /* of two alike the later */
             furthest = fabs(speed - middle);
             worst = order[k];

@@ -19,7 +19,8 @@ bool across_stands_alone(const struct vet_run *run, const struct job *job);
 size_t *across_order(const struct vet_runs *runs, const struct job *job);
 
 /* The as-found amplitude of a sensor in a condition: of the first run in `order` without weights
- * that has a reading of it, SI peak; NaN for none. */
+ * whose reading of it is in use (what is clipped or dead is no measure for others), else of the
+ * first that has one; SI peak; NaN for none. */
 double across_as_found(const struct vet_runs *runs, const size_t *order, const struct job *job,
                        const char *condition, size_t sensor);
 

@@ -20,6 +20,7 @@ struct vet_reading { /* percentages of the reading's own amplitude; NaN: not kno
     double amplitude_pct, phase_deg, drift_pct, speed_pct;
     long set_aside, turns;
     double independent;      /* of the blocks, as many as really were */
+    double wander_pct;       /* of the mean, slow; part of amplitude_pct and phase_deg */
     double step_pct, step_s; /* largest lasting jump of the mean, and when */
     double overall_rms;      /* SI of overall_quantity */
     enum quantity overall_quantity;

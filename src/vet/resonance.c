@@ -5,7 +5,7 @@
 #include "base/angle.h"
 
 static const double ERRORS = 4.6; /* as the header says */
-static const size_t COUNT_LEAST = 12, COUNT_LEAST_WITHOUT_TIME = 5;
+static const size_t COUNT_LEAST = 12, COUNT_LEAST_WITHOUT_TIME = 4;
 static const double WANDER_LEAST = 1e-6; /* of the speed; below that it is a number repeated */
 
 static const double WINDOW =

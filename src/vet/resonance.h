@@ -18,7 +18,7 @@ struct resonance resonance_unknown(void);
  * while its speed creeps is not mistaken for it. The error allows for neighbouring residuals that
  * go together (M. S. Bartlett, J. R. Stat. Soc. 98 (1935) 536-543: the first-order correlations of
  * both series). Lags must stay within 180 deg of their mean. Unknown: fewer than 12 vectors with a
- * time, 5 without, a NaN, or a speed that stands still. */
+ * time, 4 without, a NaN, or a speed that stands still. */
 struct resonance resonance_of(const double complex *vectors, const double *speed, const double *t,
                               size_t count);
 
@@ -27,7 +27,7 @@ struct resonance resonance_of(const double complex *vectors, const double *speed
 struct resonance resonance_of_two(double complex a, double speed_a, double complex b,
                                   double speed_b, double variance);
 
-/* The same along a curve over speed (a coast-down), from its points within 3 % of `at`; NaN vectors
+/* The same along a curve over speed (a coast-down), from its points within 4 % of `at`; NaN vectors
  * are passed over. More than 256 points: the first ones. */
 struct resonance resonance_along(const double complex *vectors, const double *speed, size_t count,
                                  double at);

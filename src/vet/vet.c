@@ -201,6 +201,7 @@ static void take_steady(struct vet_reading *to, const struct steady *steady)
     to->set_aside = steady->set_aside;
     to->turns = steady->turns;
     to->independent = steady->independent;
+    to->wander_pct = steady->wander_pct;
     to->step_pct = steady->step_pct;
     to->step_s = steady->step_s;
     /* A beat that was measured on all blocks; turning as the neighbour does, where that is known.

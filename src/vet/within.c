@@ -224,8 +224,8 @@ static void check_force(struct vet_run *run, int position, const struct job *job
     if (isnan(share))
         return;
     if (findings_add(findings, CHECK_WEIGHT_FORCE, position, -1, share,
-                     "the weights pull with %.3g N at %.0f rpm, %g %% of the static journal load",
-                     force, rpm, findings_figure(share)) == RULING_REFUSE)
+                     "the weights pull with %g N at %.0f rpm, %g %% of the static journal load",
+                     findings_figure(force), rpm, findings_figure(share)) == RULING_REFUSE)
         within_refuse(run, job);
 }
 
@@ -251,12 +251,16 @@ static bool steadiness(const struct vet_reading *r, int position, int s, double 
 {
     bool refuse = false;
     double value = r->amplitude_pct * share;
+    char wander[64] = "";
 
+    if (r->wander_pct > 0)
+        snprintf(wander, sizeof wander, "; the vector wanders slowly by %g %%",
+                 findings_figure(r->wander_pct * share));
     if (!isnan(value))
         refuse |= findings_add(findings, CHECK_AMPLITUDE_STEADY, position, s, value,
-                               "block amplitudes scatter by %g %%, %ld of %ld blocks set aside",
-                               findings_figure(value), r->set_aside,
-                               r->blocks + r->set_aside) == RULING_REFUSE;
+                               "block amplitudes scatter by %g %%, %ld of %ld blocks set aside%s",
+                               findings_figure(value), r->set_aside, r->blocks + r->set_aside,
+                               wander) == RULING_REFUSE;
     if (!isnan(r->phase_deg) && share > WITHIN_LAG_SHARE)
         refuse |= findings_add(findings, CHECK_PHASE_STEADY, position, s, r->phase_deg,
                                "block lags scatter by %g deg",

@@ -179,12 +179,48 @@ class Across(unittest.TestCase):
             self.assertEqual(self.worst("service-speed", slow, run="slow"), verdict)
             self.assertEqual(self.worst("speed-match", slow), "ok")
 
+    def test_coast_down(self):
+        """Each listed speed is judged by itself: past a resonance at 1260 rpm the lag turns there, and nowhere else."""
+        role = ["role = coast-down", "speeds = 900 1280 1600 rpm"]
+        sensor = {"unit": "mm/s", "scale": "100 mV/(mm/s)", "v_per_unit": 0.1, "show": "mm/s rms", "white": 0.02}
+        sweep = {"rpm": 1700, "sweep_rpm_s": -15, "seconds": 60, "lines": role}
+        spec = {
+            "seed": 12, "title": "Coast-down", "angles": "against rotation",
+            "rotor": {"turning": "clockwise", "start_deg": 5, "rpm": 1700}, "tape": {"at_deg": 20, "width_deg": 14},
+            "tacho": {"at_deg": 135, "low_v": 0.4, "high_v": 4.6, "noise_v": 0.02},
+            "modes": [{"x_hz": 21.0, "y_hz": 26.5, "damping": 0.06, "mass_kg": 900, "planes": [1.0], "sensors": [0.9]}],
+            "heavy": [{"plane": 0, "mass_g": 40, "radius_mm": 600, "body_deg": 301}],
+            "sensors": [sensor | {"name": "H", "at_deg": 0}], "planes": [{"name": "wheel", "radius_mm": 600}],
+            "runs": [{"name": "coast", **sweep},
+                     {"name": "trial", **sweep, "weights": [{"plane": 0, "mass_g": 60, "angle_deg": 40}]}],
+            "recording": {"format": "wav", "bits": 16, "rate_hz": 2560, "seconds": 60, "full_scale_v": 10,
+                          "oversample": 2},
+            "sheet": {"recording": ["full scale = 10 V"], "rotor": ["mass = 900 kg", "service speed = 1700 rpm"]}}
+        with chain.folder() as where:
+            chain.simulate(spec, where)
+            averaged = chain.through(["read", "track", "average"], b"", read=[where / "job.ini"])
+        stream = chain.records(chain.through(["vet"], averaged))
+        turns = [(f["run"], f["text"].split(":")[0], f["verdict"]) for f in chain.kind(stream, "finding")
+                 if f["check"] == "near-resonance"]
+        self.assertEqual(turns, [(run, f"service @ {speed} rpm", "caution" if speed == 1280 else "ok")
+                                 for run in ("coast", "trial") for speed in (900, 1280, 1600)])
+        self.assertEqual([(v["run"], v["condition"], v["use"]) for v in chain.kind(stream, "vetted")],
+                         [(run, f"service @ {speed} rpm", True) for run in ("coast", "trial")
+                          for speed in (900, 1280, 1600)])
+        effects = [f for f in chain.kind(stream, "finding") if f["check"] == "trial-effect"]
+        self.assertEqual(len(effects), 3)
+        checks = {f["check"] for f in chain.kind(stream, "finding")}
+        self.assertFalse(checks & {"service-speed", "speed-steady", "speed-match", "length"})
+
     def test_limits_of_the_sheet(self):
         much = repeat(vectors=tuple(z * 1.2 for z in self.true(TRIAL)))
         self.assertEqual(self.worst("repeat", much), "caution")
         self.assertEqual(self.worst("repeat", much, extra=["[limits]", "repeat = 30 % 40 %"]), "ok")
         self.assertEqual(self.worst("repeat", much, extra=["[limits]", "repeat = 5 % 10 %"]), "refuse")
         self.assertIsNone(self.worst("repeat", much, extra=["[limits]", "repeat = none"]))
+        turned = repeat(tape_deg=35)
+        self.assertEqual(self.worst("tape-moved", turned, extra=["[limits]", "tape-moved = 2 3"]), "refuse")
+        self.assertIsNone(self.worst("tape-moved", turned, extra=["[limits]", "tape-moved = none"]))
 
     def balance(self, where):
         done = chain.lopside("balance", where / "job.ini", "--as", "json")

@@ -103,6 +103,22 @@ static void repeats(void **state)
     assert_true(desk.readings[1][0].use && !desk.readings[2][0].use && desk.readings[3][0].use);
 }
 
+/* What percentages refer to: a refused as-found reading only where there is no better one. */
+static void as_found(void **state)
+{
+    (void)state;
+    vet_desk_set();
+    desk.job_runs[3].weight_count = 0;
+    near(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0), 7e-3, 0);
+    desk.readings[0][0].use = false;
+    near(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0),
+         cabs(4.05 + 4 * I) * 1e-3, 1e-12);
+    near(across_as_found(&desk.runs, desk.order, &desk.job, "service", 1), 7e-3, 0);
+    desk.readings[3][0].use = false;
+    near(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0), 7e-3, 0);
+    assert_true(isnan(across_as_found(&desk.runs, desk.order, &desk.job, "hot", 0)));
+}
+
 /* As-found amplitude A, repeatability 3 %: one standard error is 6 % of A. */
 static void trial_effects(void **state)
 {
@@ -153,9 +169,13 @@ static void a_second_trial_on_top(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(one_recording_twice), cmocka_unit_test(speeds_apart),
-        cmocka_unit_test(lost_phase),          cmocka_unit_test(repeats),
-        cmocka_unit_test(trial_effects),       cmocka_unit_test(a_second_trial_on_top),
+        cmocka_unit_test(one_recording_twice),
+        cmocka_unit_test(speeds_apart),
+        cmocka_unit_test(lost_phase),
+        cmocka_unit_test(repeats),
+        cmocka_unit_test(as_found),
+        cmocka_unit_test(trial_effects),
+        cmocka_unit_test(a_second_trial_on_top),
     };
     int failed = cmocka_run_group_tests(tests, NULL, NULL);
 

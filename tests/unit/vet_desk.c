@@ -15,6 +15,7 @@ void vet_desk_reading(int run, int sensor, double complex vector)
                                                       .phase_deg = 1,
                                                       .drift_pct = 0,
                                                       .independent = NAN,
+                                                      .wander_pct = NAN,
                                                       .step_pct = NAN,
                                                       .step_s = NAN,
                                                       .resonance = {NAN, NAN},
