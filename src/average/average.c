@@ -6,6 +6,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "average/blocks.h"
 #include "average/mean.h"
 #include "average/overall.h"
 #include "average/sweep.h"
@@ -18,10 +19,7 @@
 
 /* What one run has brought for one sensor. */
 struct track_of {
-    double complex *vectors; /* owned, as the three below; NaN where there is nothing */
-    double *turns, *t, *speed;
-    size_t count, room;
-    bool amplitudes; /* the blocks brought amplitudes only; they stand in `vectors` */
+    struct blocks blocks;            /* owned */
     struct spectrum_record spectrum; /* owned; count 0: none */
 };
 
@@ -46,8 +44,7 @@ static int gather_init(struct gather *g, size_t sensor_count)
 static void gather_clear(struct gather *g)
 {
     for (size_t i = 0; i < g->sensor_count; i++) {
-        g->sensors[i].count = 0;
-        g->sensors[i].amplitudes = false;
+        blocks_clear(&g->sensors[i].blocks);
         spectrum_release(&g->sensors[i].spectrum);
         g->sensors[i].spectrum = (struct spectrum_record){0};
     }
@@ -59,12 +56,8 @@ static void gather_release(struct gather *g)
     if (!g->sensors)
         return;
     gather_clear(g);
-    for (size_t i = 0; i < g->sensor_count; i++) {
-        free(g->sensors[i].vectors);
-        free(g->sensors[i].turns);
-        free(g->sensors[i].t);
-        free(g->sensors[i].speed);
-    }
+    for (size_t i = 0; i < g->sensor_count; i++)
+        blocks_release(&g->sensors[i].blocks);
     free(g->sensors);
 }
 
@@ -82,32 +75,6 @@ static int foreign(const struct gather *g, const struct record *record, const ch
     return STATUS_USAGE;
 }
 
-static bool grow(double **values, size_t room)
-{
-    double *more = realloc(*values, room * sizeof **values);
-
-    if (more)
-        *values = more;
-    return more != NULL;
-}
-
-static bool track_room(struct track_of *s)
-{
-    size_t room = s->room ? 2 * s->room : 64;
-    double complex *more;
-
-    if (s->count < s->room)
-        return true;
-    more = realloc(s->vectors, room * sizeof *more);
-    if (!more)
-        return false;
-    s->vectors = more;
-    if (!grow(&s->turns, room) || !grow(&s->t, room) || !grow(&s->speed, room))
-        return false;
-    s->room = room;
-    return true;
-}
-
 static int add_turns(struct gather *g, const struct record *record, const struct job *job)
 {
     struct turns_record r = {0};
@@ -120,19 +87,14 @@ static int add_turns(struct gather *g, const struct record *record, const struct
     if (status == STATUS_DONE && r.turns < 1)
         status = malformed(record, "no turns");
     for (size_t i = 0; status == STATUS_DONE && i < r.count; i++) {
-        struct track_of *s = &g->sensors[r.sensors[i]];
-        if (!track_room(s)) {
-            status = message_no_memory();
-            break;
-        }
-        s->vectors[s->count] = r.vectors[i];
+        struct blocks *blocks = &g->sensors[r.sensors[i]].blocks;
+        struct block block = {r.vectors[i], (double)r.turns, r.t_s, r.speed_rpm};
         if (isnan(creal(r.vectors[i])) && !isnan(r.amplitudes[i])) {
-            s->vectors[s->count] = r.amplitudes[i];
-            s->amplitudes = true;
+            block.vector = r.amplitudes[i];
+            blocks->amplitudes = true;
         }
-        s->turns[s->count] = (double)r.turns;
-        s->t[s->count] = r.t_s;
-        s->speed[s->count++] = r.speed_rpm;
+        if (blocks_add(blocks, &block))
+            status = message_no_memory();
     }
     turns_release(&r);
     return status;
@@ -195,50 +157,30 @@ static void fill_from_mean(struct reading_record *r, const struct mean *mean)
     r->steady.wander_pct = percentage(u->wander, r->amplitude);
 }
 
-/* Takes out the blocks that have no vector. */
-static void drop_empty(struct track_of *s)
-{
-    size_t kept = 0;
-
-    for (size_t i = 0; i < s->count; i++) {
-        if (isnan(creal(s->vectors[i])) || isnan(cimag(s->vectors[i])))
-            continue;
-        s->vectors[kept] = s->vectors[i];
-        s->turns[kept] = s->turns[i];
-        s->t[kept] = s->t[i];
-        s->speed[kept++] = s->speed[i];
-    }
-    if (kept)
-        s->count = kept;
-}
-
-static bool is_empty(const struct track_of *s) /* after drop_empty */
-{
-    return s->count == 0 || isnan(creal(s->vectors[0])) || isnan(cimag(s->vectors[0]));
-}
-
 /* The reading of a sensor from its blocks: 0 made, 1 nothing to make it of, -1 no memory. */
 static int reading_of_blocks(struct reading_record *r, struct track_of *s, bool marks,
                              double *turning_hz)
 {
-    bool reference = marks && !s->amplitudes;
+    bool reference = marks && !s->blocks.amplitudes;
     struct mean mean;
     double *amplitudes;
     int result;
 
-    drop_empty(s);
-    if (is_empty(s))
+    blocks_drop_empty(&s->blocks);
+    if (blocks_empty(&s->blocks))
         return 1;
     r->has_phase = reference;
     if (reference) {
-        result = mean_of_blocks(s->vectors, s->turns, s->t, s->count, &mean);
+        result =
+            mean_of_blocks(s->blocks.vectors, s->blocks.turns, s->blocks.t, s->blocks.count, &mean);
     } else {
-        amplitudes = malloc(s->count * sizeof *amplitudes);
+        amplitudes = malloc(s->blocks.count * sizeof *amplitudes);
         if (!amplitudes)
             return -1;
-        for (size_t i = 0; i < s->count; i++)
-            amplitudes[i] = cabs(s->vectors[i]);
-        result = mean_of_amplitudes(amplitudes, s->turns, s->t, s->count, &mean);
+        for (size_t i = 0; i < s->blocks.count; i++)
+            amplitudes[i] = cabs(s->blocks.vectors[i]);
+        result =
+            mean_of_amplitudes(amplitudes, s->blocks.turns, s->blocks.t, s->blocks.count, &mean);
         free(amplitudes);
     }
     if (result)
@@ -258,27 +200,28 @@ static int reading_of_spectrum(struct reading_record *r, const struct track_of *
     r->amplitude = overall_one_x(s->spectrum.orders, s->spectrum.amplitude, s->spectrum.count);
     if (isnan(r->amplitude))
         return 1;
-    for (size_t i = 0; i < s->count; i++)
-        turns += s->turns[i];
+    for (size_t i = 0; i < s->blocks.count; i++)
+        turns += s->blocks.turns[i];
     r->steady = steady_unknown();
     r->steady.turns = lround(turns);
-    r->blocks = (long)s->count;
+    r->blocks = (long)s->blocks.count;
     return 0;
 }
 
 static void fill_speed(struct reading_record *r, const struct track_of *s, const struct gather *g)
 {
-    double n = (double)s->count, sum = 0, squares = 0;
+    double n = (double)s->blocks.count, sum = 0, squares = 0;
 
-    for (size_t i = 0; i < s->count; i++)
-        sum += s->speed[i];
-    for (size_t i = 0; i < s->count; i++)
-        squares += (s->speed[i] - sum / n) * (s->speed[i] - sum / n);
+    for (size_t i = 0; i < s->blocks.count; i++)
+        sum += s->blocks.speed[i];
+    for (size_t i = 0; i < s->blocks.count; i++)
+        squares += (s->blocks.speed[i] - sum / n) * (s->blocks.speed[i] - sum / n);
     r->speed_rpm = sum / n;
     if (g->has_tacho && g->tacho.speed_rpm > 0 && !isnan(g->tacho.scatter_rpm))
         r->steady.speed_pct = 100 * g->tacho.scatter_rpm / g->tacho.speed_rpm;
     else
-        r->steady.speed_pct = s->count > 1 ? 100 * sqrt(squares / (n - 1)) / r->speed_rpm : NAN;
+        r->steady.speed_pct =
+            s->blocks.count > 1 ? 100 * sqrt(squares / (n - 1)) / r->speed_rpm : NAN;
 }
 
 static void fill_overall(struct reading_record *r, const struct track_of *s, const struct job *job)
@@ -296,8 +239,10 @@ static void fill_overall(struct reading_record *r, const struct track_of *s, con
 static int write_curve(const struct gather *g, int sensor, struct stream *stream, struct line *line)
 {
     const struct track_of *s = &g->sensors[sensor];
-    struct curve_record r = {
-        .sensor = sensor, .speed_rpm = s->speed, .vectors = s->vectors, .count = s->count};
+    struct curve_record r = {.sensor = sensor,
+                             .speed_rpm = s->blocks.speed,
+                             .vectors = s->blocks.vectors,
+                             .count = s->blocks.count};
 
     memcpy(r.run, g->run, sizeof r.run);
     curve_print(&r, &stream->job, line);
@@ -328,13 +273,13 @@ static void explain_no_reading(const struct track_of *s, enum sweep_result resul
 {
     double least = INFINITY, most = 0;
 
-    for (size_t k = 0; k < s->count; k++) {
-        least = fmin(least, s->speed[k]);
-        most = fmax(most, s->speed[k]);
+    for (size_t k = 0; k < s->blocks.count; k++) {
+        least = fmin(least, s->blocks.speed[k]);
+        most = fmax(most, s->blocks.speed[k]);
     }
     if (result == SWEEP_SPARSE)
         snprintf(why, room, "the run has only %zu blocks with a vector; record more of it",
-                 s->count);
+                 s->blocks.count);
     else if (least <= most)
         snprintf(why, room, "the run went from %.0f to %.0f rpm and not steadily through it", least,
                  most);
@@ -373,12 +318,13 @@ static int read_speed(struct gather *g, double speed_rpm, struct stream *stream,
 
     for (size_t i = 0; status == STATUS_DONE && i < g->sensor_count; i++) {
         struct track_of *s = &g->sensors[i];
-        struct sweep sweep = {s->t, s->speed, s->turns, s->vectors, s->count};
+        struct sweep sweep = {s->blocks.t, s->blocks.speed, s->blocks.turns, s->blocks.vectors,
+                              s->blocks.count};
         struct sweep_fit fit;
         char why[200] = "its marks carry no phase; use one mark a turn";
-        bool phase = reference && !s->amplitudes && !is_empty(s);
+        bool phase = reference && !s->blocks.amplitudes && !blocks_empty(&s->blocks);
         int result = SWEEP_SPARSE;
-        if (s->count == 0)
+        if (s->blocks.count == 0)
             continue;
         if (phase)
             result = sweep_at(&sweep, speed_rpm, &fit);
@@ -402,8 +348,8 @@ static int finish_coast_down(struct gather *g, const struct job_run *run, struct
     int status = STATUS_DONE;
 
     for (size_t i = 0; status == STATUS_DONE && i < g->sensor_count; i++) {
-        drop_empty(&g->sensors[i]);
-        if (!is_empty(&g->sensors[i]) && !g->sensors[i].amplitudes)
+        blocks_drop_empty(&g->sensors[i].blocks);
+        if (!blocks_empty(&g->sensors[i].blocks) && !g->sensors[i].blocks.amplitudes)
             status = write_curve(g, (int)i, stream, line);
     }
     for (size_t i = 0; status == STATUS_DONE && i < run->speed_count; i++)
@@ -422,8 +368,8 @@ static int finish_steady(struct gather *g, struct stream *stream, struct line *l
         struct track_of *s = &g->sensors[i];
         struct reading_record r = {.sensor = (int)i};
         double turning_hz = NAN;
-        int made = s->count ? reading_of_blocks(&r, s, reference, &turning_hz) : 1;
-        if (made == 1 && s->count)
+        int made = s->blocks.count ? reading_of_blocks(&r, s, reference, &turning_hz) : 1;
+        if (made == 1 && s->blocks.count)
             made = reading_of_spectrum(&r, s);
         if (made < 0)
             status = message_no_memory();
@@ -443,6 +389,8 @@ static int finish_steady(struct gather *g, struct stream *stream, struct line *l
 /* Writes the readings of the run gathered so far, and forgets it. */
 static int finish_run(struct gather *g, struct stream *stream, struct line *line)
 {
+    for (size_t i = 0; i < g->sensor_count; i++)
+        blocks_end(&g->sensors[i].blocks);
     int index = g->open ? job_find_run(&stream->job, g->run) : -1, status = STATUS_DONE;
     const struct job_run *run = index < 0 ? NULL : &stream->job.runs[index];
 
