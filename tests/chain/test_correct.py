@@ -12,6 +12,7 @@ import numpy
 import scipy.optimize
 
 import chain
+import test_coast_down
 
 SENSES = [("against rotation", "lag"), ("with rotation", "lead")]
 DAY = "against rotation", "lag"
@@ -378,6 +379,41 @@ class Fitting(unittest.TestCase):
         self.assertEqual(chain.kind(probes, "zone"), [])  # probes look at the shaft
 
 
+    def test_the_couple_after_the_static_part(self):
+        """Static first until it no longer helps; then both planes as they want it, to what least squares says."""
+        planes = {"L": ["positions = 36 from 0 deg", "stock = 1 2 5 g"], "R": ["positions = 36 from 0 deg", "stock = 1 2 5 g"]}
+        aim = ["repeatability = 0 %", "minimise = static first"]
+        z = numpy.array([TURBINE[0][1][s] for s in "AB"])
+        a = numpy.array([[(TURBINE[r + 1][1][s] - TURBINE[0][1][s]) / chain.weight(*TURBINE[r + 1][2][0][1:])
+                          for r in range(2)] for s in "AB"])
+        first = stream_of(sheet(planes, TURBINE, aim))
+        self.assertIn("static part comes first", chain.kind(first, "next")[0]["text"])
+        on = [(p["plane"], p["mass"], p["sheet_deg"]) for p in chain.kind(first, "placement")]
+        w = numpy.array([sum(chain.weight(m, d) for n, m, d in on if n == name) for name in "LR"])
+        after = dict(zip("AB", (complex(v) for v in z + a @ w)))
+        second = stream_of(sheet(planes, [*TURBINE, ("static", after, on)], aim + ["mounted = static"]))
+        want = -numpy.linalg.solve(a, z) - w
+        got = corrections(second)
+        for name, v in zip("LR", want):
+            self.assertLess(abs(got[name] - v), 1e-6 * abs(v))
+        self.assertEqual(chain.kind(second, "next")[0]["step"], "trim")
+
+    def test_a_rotor_that_runs_down(self):
+        """Two recorded coast-downs through resonances: each listed speed is a condition, one weight serves all."""
+        spec = test_coast_down.machine(-12)
+        run = {"rpm": 1700, "sweep_rpm_s": -12, "seconds": 70, "lines": ["role = coast-down", "speeds = 1000 1100 1450 rpm"]}
+        spec["runs"] = [run | {"name": "found", "file": "found"},
+                        run | {"name": "trial", "file": "trial", "weights": [{"plane": 0, "mass_g": 50, "angle_deg": 70}]}]
+        with chain.folder() as where:
+            truth = chain.simulate(spec, where)["corrections"]["wheel"]
+            stream = chain.solved(where / "job.ini")
+        self.assertEqual(len(chain.kind(stream, "response")), 6)
+        got, want = corrections(stream)["wheel"], chain.weight(truth["mass"], truth["sheet_deg"])
+        self.assertLess(abs(got - want), 0.02 * abs(want))
+        for f in chain.kind(stream, "forecast"):
+            self.assertLess(abs(chain.vector(f["after"])), 0.05 * abs(chain.vector(f["before"])))
+
+
 class Without(unittest.TestCase):
     """No answer: the records say why, and `report` gives the same exit code."""
 
@@ -404,6 +440,12 @@ class Without(unittest.TestCase):
         truth = {"A": [10 + 0j, 1000 + 0j]}  # wants 10 g opposite the only position
         text = sheet({"P": ["positions = 0 deg", "stock = 10 g"]}, trials(truth, [("P", 0.01, 90)]))
         self.no_answer(text, 5, "correction")
+
+
+    def test_no_hole_is_shallow_enough(self):
+        truth = {"A": [10 + 0j, 1000 + 0j]}
+        planes = {"P": ["stock = 20 g", "work = remove", "hole = 10 mm", "density = 7850 kg/m3", "depth = 10 mm"]}  # 6 g
+        self.no_answer(sheet(planes, trials(truth, [("P", 0.01, 90)])), 5, "correction")
 
 
 if __name__ == "__main__":
