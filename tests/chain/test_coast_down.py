@@ -61,8 +61,27 @@ class CoastDown(unittest.TestCase):
     def test_down_slowly(self):
         self.follows(-10)
 
+    def test_down_quickly(self):
+        self.follows(-20)
+
     def test_up_quickly(self):
         self.follows(20)
+
+    def test_a_job_of_coast_downs_only(self):
+        """As found and with a trial weight, each a coast-down: every speed is a condition, the weight is shared."""
+        spec = machine(-10)
+        coast = spec["runs"][0]
+        spec["runs"] = [coast, coast | {"name": "trial", "weights": [{"plane": 0, "mass_g": 60, "angle_deg": 30}]}]
+        spec["planes"][0]["lines"] = ["positions = any"]
+        with chain.folder() as where:
+            truth = chain.simulate(spec, where)["corrections"]["wheel"]
+            stream = chain.solved(where / "job.ini")
+        (c,) = chain.kind(stream, "correction")
+        self.assertLess(abs(chain.weight(c["mass"], c["angle_deg"]) - chain.weight(truth["mass"], truth["angle_deg"])),
+                        0.02 * truth["mass"])
+        vetted = [(v["run"], v["condition"], v["sensor"]) for v in chain.kind(stream, "vetted")]
+        self.assertEqual(len(vetted), 2 * len(SPEEDS) * len(SENSORS))
+        self.assertEqual(len(set(vetted)), len(vetted))
 
     def test_curve_and_what_was_not_recorded(self):
         stream, _ = self.averaged(-15)
