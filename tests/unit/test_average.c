@@ -8,6 +8,7 @@
 
 #include <math.h>
 
+#include "average/blocks.h"
 #include "average/overall.h"
 #include "average/robust.h"
 #include "average/trend.h"
@@ -172,9 +173,72 @@ static void overalls(void **state)
     assert_true(isnan(overall_one_x(orders + 2, amplitude + 2, 2)));
 }
 
+/* More blocks than fit become coarser: no turn is lost, means are weighted by turns, times ascend. */
+static void many_blocks_are_packed(void **state)
+{
+    static const size_t counts[] = {1, BLOCKS_MOST - 1, BLOCKS_MOST, BLOCKS_MOST + 1, 3 * BLOCKS_MOST,
+                                    10 * BLOCKS_MOST + 7};
+
+    (void)state;
+    for (size_t c = 0; c < sizeof counts / sizeof *counts; c++) {
+        struct blocks b = {0};
+        double complex sum = 0, mean = 0;
+        double turns = 0, kept = 0;
+        seed = 8;
+        for (size_t i = 0; i < counts[c]; i++) {
+            struct block one = {normal(), 20 + (double)(i % 3), (double)i, 1200};
+            sum += one.vector * one.turns;
+            turns += one.turns;
+            assert_int_equal(blocks_add(&b, &one), 0);
+        }
+        blocks_end(&b);
+        assert_true(b.count > 0 && b.count <= BLOCKS_MOST);
+        assert_true(counts[c] > BLOCKS_MOST || b.count == counts[c]);
+        for (size_t i = 0; i < b.count; i++) {
+            mean += b.vectors[i] * b.turns[i];
+            kept += b.turns[i];
+            near(b.speed[i], 1200, 1e-9);
+            assert_true(i == 0 || b.t[i] > b.t[i - 1]);
+        }
+        /* at most less than half of a packed block, of 16, is dropped at the end */
+        assert_true(turns - kept <= (counts[c] > BLOCKS_MOST ? 8 * 22 : 0));
+        if (kept == turns)
+            assert_true(cabs(mean - sum) < 1e-9 * turns);
+        assert_false(blocks_empty(&b));
+        blocks_clear(&b);
+        assert_int_equal(b.count, 0);
+        blocks_release(&b);
+    }
+}
+
+/* A block without a vector counts for nothing beside one that has. */
+static void empty_blocks_are_dropped(void **state)
+{
+    struct blocks b = {0};
+
+    (void)state;
+    for (size_t i = 0; i < 2 * BLOCKS_MOST; i++) {
+        struct block one = {i % 2 ? CMPLX(1, 2) : CMPLX(NAN, NAN), 20, (double)i, 1200};
+        assert_int_equal(blocks_add(&b, &one), 0);
+    }
+    blocks_end(&b);
+    blocks_drop_empty(&b);
+    assert_int_equal(b.count, BLOCKS_MOST);
+    for (size_t i = 0; i < b.count; i++)
+        assert_true(b.vectors[i] == CMPLX(1, 2));
+    blocks_clear(&b);
+    struct block none = {CMPLX(NAN, NAN), 20, 1, 1200};
+    assert_int_equal(blocks_add(&b, &none), 0);
+    blocks_drop_empty(&b);
+    assert_true(b.count == 1 && blocks_empty(&b));
+    blocks_release(&b);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
+        cmocka_unit_test(many_blocks_are_packed),
+        cmocka_unit_test(empty_blocks_are_dropped),
         cmocka_unit_test(a_burst_is_set_aside),
         cmocka_unit_test(a_step_is_kept),
         cmocka_unit_test(steady_noise_is_kept),
