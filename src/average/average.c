@@ -6,10 +6,12 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "average/alias.h"
 #include "average/blocks.h"
 #include "average/mean.h"
 #include "average/overall.h"
 #include "average/sweep.h"
+#include "base/angle.h"
 #include "base/message.h"
 #include "base/options.h"
 #include "base/status.h"
@@ -234,6 +236,22 @@ static void fill_overall(struct reading_record *r, const struct track_of *s, con
                                  r->speed_rpm, sensor->quantity, sensor->show.quantity);
 }
 
+/* The frequency of what turns the vector about its mean. */
+static void fill_neighbour(struct reading_record *r, const struct track_of *s, double turning_hz)
+{
+    double speed_hz = r->speed_rpm / 60;
+    double block_s =
+        r->steady.turns > 0 ? (double)r->steady.turns / (double)r->blocks / speed_hz : NAN;
+    double x = PI * turning_hz * block_s;
+
+    if (isnan(turning_hz) || isnan(block_s))
+        return;
+    turning_hz = alias_turning(s->spectrum.orders, s->spectrum.amplitude, s->spectrum.count,
+                               speed_hz, block_s, turning_hz,
+                               r->steady.beat_pct / 100 * r->amplitude * fabs(sin(x) / x));
+    r->steady.neighbour_hz = speed_hz - turning_hz;
+}
+
 /* ---- coast-downs ---- */
 
 static int write_curve(const struct gather *g, int sensor, struct stream *stream, struct line *line)
@@ -378,7 +396,7 @@ static int finish_steady(struct gather *g, struct stream *stream, struct line *l
         memcpy(r.run, g->run, sizeof r.run);
         memcpy(r.condition, g->condition, sizeof r.condition);
         fill_speed(&r, s, g);
-        r.steady.neighbour_hz = r.speed_rpm / 60 - turning_hz;
+        fill_neighbour(&r, s, turning_hz);
         fill_overall(&r, s, &stream->job);
         reading_print(&r, &stream->job, line);
         status = stream_write(stream, line);
@@ -473,8 +491,11 @@ static int loop(const struct option_list *files)
     struct gather gather = {0};
     struct line line = LINE_INIT;
     struct record record;
+    static const char *const makes[] = {"reading", "curve", NULL};
     int status = stream_open(&stream, files->items, files->count, true);
 
+    if (status == STATUS_DONE)
+        stream_makes(&stream, makes);
     if (status == STATUS_DONE)
         status = gather_init(&gather, stream.job.sensor_count);
     while (status == STATUS_DONE && stream_next_tracked(&stream, &record))

@@ -69,6 +69,13 @@ class Unsteady(unittest.TestCase):
             self.assertAlmostEqual(steady["beat_pct"], 100 * 1.0 / amplitude, delta=0.05 * 100 / amplitude)
             self.assertEqual((steady["step_pct"], steady["step_s"]), (0, None))
 
+    def test_a_faster_beat_is_told_from_its_alias(self):
+        """Blocks of a second show 1.3 Hz as 0.3 Hz; the order spectrum has a line that only 1.3 Hz explains."""
+        for hz in (26.3, 22.7):
+            r, _ = self.neighbour(hz)
+            self.assertGreater(r["steady"]["beat_pct"], 1)
+            self.assertAlmostEqual(r["steady"]["neighbour_hz"], hz, delta=0.02)
+
     def test_far_away_it_is_no_beat(self):
         r, _ = self.neighbour(31.5)
         self.assertLess(r["steady"]["beat_pct"], 1)
