@@ -105,7 +105,7 @@ static struct cover cover_of(size_t n, enum noise kind, double r, int times)
     return (struct cover){100.0 * chi2 / times, 100.0 * hotelling / times};
 }
 
-/* White noise: 93..97 % with either region. A binomial standard error of 10,000 is 0.22 %. */
+/* White noise: 93..97 % with either region. A binomial standard error of 5,000 is 0.3 %. */
 static void covers_in_white_noise(void **state)
 {
     static const size_t counts[] = {16, 20, 30, 60};
@@ -113,7 +113,7 @@ static void covers_in_white_noise(void **state)
     (void)state;
     seed = 1;
     for (size_t i = 0; i < 4; i++) {
-        struct cover c = cover_of(counts[i], WHITE, 0, counts[i] == 16 ? 20000 : 10000);
+        struct cover c = cover_of(counts[i], WHITE, 0, counts[i] == 16 ? 16000 : 5000);
         print_message("white, %zu blocks: %.1f %% chi-squared, %.1f %% Hotelling\n", counts[i],
                       c.chi2, c.hotelling);
         assert_true(c.chi2 >= 93 && c.hotelling <= 97);
