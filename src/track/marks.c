@@ -43,6 +43,11 @@ static long place(double since, double period, double tolerance)
     return n >= 1 && fabs(turns - (double)n) <= fmin(TOLERANCE, allowed) ? n : 0;
 }
 
+/* Of several marks the one that is the zero must lead by this share of the voters, which are this
+ * many. */
+#define SURE 0.4
+#define SURE_VOTERS 8
+
 struct ballot {
     double period, score, size;
     size_t start;
@@ -97,6 +102,9 @@ static bool vote(const struct marks *marks, struct ballot *best)
                 found = true;
             }
         }
+    }
+    if (marks->sieve.feature != SIEVE_OFF && marks->per_turn > 1) { /* a zero must be sure */
+        return found && n >= SURE_VOTERS && best->score > SURE * (double)n;
     }
     return found && (n < 4 || best->score > -0.25 * (double)n);
 }
@@ -160,6 +168,7 @@ void marks_unlock(struct marks *marks)
     marks->breaks = true;
     marks->slot = 0;
     marks->voter_count = 0;
+    sieve_restart(&marks->sieve); /* what lies between is no gap between marks */
 }
 
 /* One pulse, once the period is known. Sets *lost where the rhythm is gone; the pulse is then not

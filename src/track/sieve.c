@@ -5,6 +5,13 @@
 
 #define WEIGHT 0.05 /* of the latest pulse in the running means */
 #define REGULAR 0.1 /* spread of the kept pulses' period, as a share of it, at most */
+#define EVEN 0.7    /* share of the intervals that must be even */
+#define EVEN_BY_CHANCE                                                                             \
+    0.55 /* of two equal pulses a turn a choice at random leaves half of them even */
+#define RATIO_DOUBT 1.06 /* classes this far apart may be told apart in another recording */
+#define TURN_LEAST                                                                                 \
+    0.6 /* a turn by the kept pulses against one by all of them, lost and added ones */
+#define TURN_MOST 1.5 /* included: half a turn and two turns lie outside */
 
 double sieve_size(const struct pulse *pulse)
 {
@@ -28,6 +35,11 @@ static double value_of(struct sieve *sieve, const struct pulse *pulse, enum siev
     } else if (feature == SIEVE_GAP && sieve->seen > 1) {
         value = gap / sieve->gap;
     }
+    if (sieve->seen > sieve->settle && gap > (double)(sieve->settle + 2) * sieve->gap) {
+        sieve_restart(
+            sieve); /* more than a turn without a pulse: a hole, not a gap between marks */
+        value = NAN;
+    }
     double weight = sieve->seen * WEIGHT > 1 ? WEIGHT : 1 / (double)(sieve->seen + 1);
 
     sieve->size = sieve->seen == 0 ? size : sieve->size + weight * (size - sieve->size);
@@ -43,7 +55,8 @@ bool sieve_keeps(struct sieve *sieve, const struct pulse *pulse)
 {
     double value = value_of(sieve, pulse, sieve->feature);
 
-    return sieve->feature == SIEVE_OFF || sieve->sign * value > sieve->sign * sieve->threshold;
+    return sieve->feature == SIEVE_OFF ||
+           (sieve->seen > sieve->settle && sieve->sign * value > sieve->sign * sieve->threshold);
 }
 
 static int ascending(const void *a, const void *b)
@@ -71,11 +84,26 @@ static bool split(const double *sorted, size_t n, int marks, double sign, double
     return widest > 0;
 }
 
-/* True where the pulses kept come at even intervals (their median, for most of them). */
-static bool regular(const struct sieve *sieve, const struct pulse *pulses, size_t count)
+/* The time of a turn from all pulses: the median of what `marks` of them take; 0: too few. */
+static double turn_of(const struct pulse *pulses, size_t count, int marks)
+{
+    double spans[SIEVE_MOST];
+    size_t k = (size_t)marks, n = count > k ? count - k : 0;
+
+    for (size_t i = 0; i < n; i++) {
+        spans[i] = pulses[i + k].at - pulses[i].at;
+    }
+    qsort(spans, n, sizeof *spans, ascending);
+    return n > 0 ? spans[n / 2] : 0;
+}
+
+/* The share of the kept pulses' intervals that are even (like their median), 0 where there are too
+ * few or the median is not the time that `marks` pulses take: then it is no turn. */
+static double evenness(const struct sieve *sieve, const struct pulse *pulses, size_t count,
+                       int marks)
 {
     struct sieve trial = *sieve;
-    double intervals[SIEVE_MOST], sorted[SIEVE_MOST], last = NAN;
+    double intervals[SIEVE_MOST], sorted[SIEVE_MOST], last = NAN, turn, median;
     size_t n = 0, even = 0;
 
     sieve_restart(&trial);
@@ -89,13 +117,18 @@ static bool regular(const struct sieve *sieve, const struct pulse *pulses, size_
         }
     }
     if (n < 3) {
-        return false;
+        return 0;
     }
     qsort(sorted, n, sizeof *sorted, ascending);
-    for (size_t i = 0; i < n; i++) {
-        even += fabs(intervals[i] / sorted[n / 2] - 1) < REGULAR;
+    median = sorted[n / 2];
+    turn = turn_of(pulses, count, marks);
+    if (!(median > TURN_LEAST * turn && median < TURN_MOST * turn)) {
+        return 0;
     }
-    return 10 * even >= 7 * n;
+    for (size_t i = 0; i < n; i++) {
+        even += fabs(intervals[i] / median - 1) < REGULAR;
+    }
+    return (double)even / (double)n;
 }
 
 static size_t values_of(struct sieve *trial, const struct pulse *pulses, size_t count, int marks,
@@ -114,6 +147,8 @@ static size_t values_of(struct sieve *trial, const struct pulse *pulses, size_t 
     return n;
 }
 
+/* Rules are tried in a fixed order, and a rule that might hold in another recording of the same
+ * shaft ends the search: the next one could name another mark. */
 bool sieve_find(struct sieve *sieve, const struct pulse *pulses, size_t count, int marks,
                 double ratio)
 {
@@ -121,16 +156,25 @@ bool sieve_find(struct sieve *sieve, const struct pulse *pulses, size_t count, i
 
     count = count < SIEVE_MOST ? count : SIEVE_MOST;
     for (int feature = SIEVE_SIZE; feature <= SIEVE_GAP; feature++) {
-        struct sieve trial = {.feature = (enum sieve_feature)feature};
+        struct sieve trial = {.feature = (enum sieve_feature)feature, .settle = marks};
         size_t n = values_of(&trial, pulses, count, marks, values);
 
         for (int side = 0; side < 2; side++) {
             trial.sign = side ? -1 : 1;
-            if (split(values, n, marks, trial.sign, ratio, &trial.threshold) &&
-                regular(&trial, pulses, count)) {
+            double even;
+            bool clear = split(values, n, marks, trial.sign, ratio, &trial.threshold);
+
+            if (!clear && !split(values, n, marks, trial.sign, RATIO_DOUBT, &trial.threshold)) {
+                continue;
+            }
+            even = evenness(&trial, pulses, count, marks);
+            if (clear && even >= EVEN) {
                 *sieve = trial;
                 sieve_restart(sieve);
                 return true;
+            }
+            if (even >= EVEN_BY_CHANCE || feature == SIEVE_GAP) {
+                return false;
             }
         }
     }
@@ -141,17 +185,18 @@ bool sieve_find_large(struct sieve *sieve, const struct pulse *pulses, size_t co
                       double ratio)
 {
     double values[SIEVE_MOST];
-    struct sieve trial = {.feature = SIEVE_SIZE, .sign = 1}, others;
+    struct sieve trial = {.feature = SIEVE_SIZE, .sign = 1, .settle = marks}, others;
 
     count = count < SIEVE_MOST ? count : SIEVE_MOST;
     size_t n = values_of(&trial, pulses, count, marks, values);
 
-    if (!split(values, n, marks, 1, ratio, &trial.threshold) || !regular(&trial, pulses, count)) {
+    if (!split(values, n, marks, 1, ratio, &trial.threshold) ||
+        evenness(&trial, pulses, count, marks) < EVEN) {
         return false;
     }
     others = trial;
     others.sign = -1;
-    if (marks == 2 && !regular(&others, pulses, count)) {
+    if (marks == 2 && evenness(&others, pulses, count, marks) < EVEN) {
         return false;
     }
     *sieve = trial;

@@ -476,8 +476,12 @@ int stage_track(int argc, char **argv)
     case OPTIONS_GO:
         break;
     }
+    static const char *const makes[] = {"channel", "turns", "tacho", "spectrum", NULL};
     int status = stream_open(&stream, files.items, files.count, true);
 
+    if (status == STATUS_DONE) {
+        stream_makes(&stream, makes);
+    }
     while (status == STATUS_DONE && stream_next(&stream, &record)) {
         status = take(&rec, &stream, &record);
     }
