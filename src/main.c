@@ -1,7 +1,9 @@
 /* main.c - names the stages in the order of the chain, and what stands around it. */
+#include <fcntl.h>
 #include <signal.h>
 #include <stdio.h>
 #include <string.h>
+#include <unistd.h>
 
 #include "average/average.h"
 #include "base/message.h"
@@ -89,6 +91,13 @@ int main(int argc, char **argv)
 {
     /* A closed pipe ends a stage as the shell expects, whatever the parent had set. */
     signal(SIGPIPE, SIG_DFL);
+    /* No file that is opened later may become standard input, output or error. */
+    int fd;
+    do {
+        fd = open("/dev/null", O_RDONLY); /* for reading, so that writing to a closed one still fails */
+    } while (fd >= 0 && fd <= STDERR_FILENO);
+    if (fd > STDERR_FILENO)
+        close(fd);
     if (argc < 2) {
         message("missing stage (see 'lopside help')");
         return STATUS_USAGE;

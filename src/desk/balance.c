@@ -1,3 +1,4 @@
+#define _XOPEN_SOURCE 700 /* realpath */
 #include "desk/balance.h"
 
 #include <errno.h>
@@ -40,52 +41,102 @@ struct link {
 struct chain {
     struct link links[STAGES];
     const char *output;  /* -o; NULL: standard output */
-    char *temporary;     /* owned name beside it */
+    char *target;        /* owned: where it leads, through links; NULL: a new file */
+    char *temporary;     /* owned name beside it; NULL: written to as it stands */
     int output_fd;
 };
 
 /* ---- the output file: whole or not at all ---- */
 
+/* What a signal that ends the program has to take away: the temporary file's name. */
+static char *volatile unfinished;
+
+static void take_away(int signal_number)
+{
+    if (unfinished)
+        unlink(unfinished);
+    signal(signal_number, SIG_DFL);
+    raise(signal_number);
+}
+
+static void watch_signals(bool on)
+{
+    static const int signals[] = {SIGINT, SIGTERM, SIGHUP};
+    for (size_t i = 0; i < sizeof signals / sizeof *signals; i++) {
+        struct sigaction action = {.sa_handler = on ? take_away : SIG_DFL};
+        struct sigaction before;
+        sigemptyset(&action.sa_mask);
+        if (sigaction(signals[i], NULL, &before) == 0 && before.sa_handler != SIG_IGN)
+            sigaction(signals[i], &action, NULL);
+    }
+}
+
+static int output_failure(const struct chain *chain)
+{
+    message("cannot write: '%s' (%s)", chain->output, strerror(errno));
+    return STATUS_SYSTEM;
+}
+
+/* A device or a pipe is written to as it stands; a file, or what a link names, is replaced whole. */
 static int open_output(struct chain *chain)
 {
+    struct stat what;
     chain->output_fd = STDOUT_FILENO;
     if (!chain->output)
         return STATUS_DONE;
-    size_t room = strlen(chain->output) + 16;
+    if (stat(chain->output, &what) == 0 && !S_ISREG(what.st_mode)) {
+        chain->output_fd = open(chain->output, O_WRONLY | O_CLOEXEC);
+        return chain->output_fd < 0 ? output_failure(chain) : STATUS_DONE;
+    }
+    chain->target = realpath(chain->output, NULL); /* NULL: a new file */
+    const char *target = chain->target ? chain->target : chain->output;
+    size_t room = strlen(target) + 16;
     chain->temporary = malloc(room);
     if (!chain->temporary)
         return message_no_memory();
-    snprintf(chain->temporary, room, "%s.XXXXXX", chain->output);
+    snprintf(chain->temporary, room, "%s.XXXXXX", target);
     chain->output_fd = mkstemp(chain->temporary);
     if (chain->output_fd < 0) {
-        message("cannot write: '%s' (%s)", chain->output, strerror(errno));
         free(chain->temporary);
         chain->temporary = NULL;
-        return STATUS_SYSTEM;
+        return output_failure(chain);
     }
+    unfinished = chain->temporary;
+    watch_signals(true);
     mode_t mask = umask(0); /* as any new file, not mkstemp's 0600 */
     umask(mask);
     (void)fchmod(chain->output_fd, 0666 & ~mask);
     return STATUS_DONE;
 }
 
+/* 0 once all of it is on disk and in its place; -1 with errno of the first failure. */
+static int put_in_place(struct chain *chain)
+{
+    int failed = fsync(chain->output_fd) < 0 ? errno : 0;
+    if (close(chain->output_fd) < 0 && !failed)
+        failed = errno;
+    if (!failed &&
+        rename(chain->temporary, chain->target ? chain->target : chain->output) < 0)
+        failed = errno;
+    errno = failed;
+    return failed ? -1 : 0;
+}
+
 /* Puts the file in its place where the report is whole, and takes it away otherwise. */
 static int close_output(struct chain *chain, int status)
 {
-    if (!chain->temporary)
-        return status;
     bool whole = status == STATUS_DONE || status == STATUS_REFUSED || status == STATUS_UNSOLVED;
-    bool kept = whole && fsync(chain->output_fd) == 0;
-    kept = close(chain->output_fd) == 0 && kept;
-    kept = kept && rename(chain->temporary, chain->output) == 0;
-    if (whole && !kept) {
-        message("cannot write: '%s' (%s)", chain->output, strerror(errno));
-        status = STATUS_SYSTEM;
+    if (chain->temporary && whole && put_in_place(chain) < 0) {
+        status = output_failure(chain);
+        whole = false;
     }
-    if (!kept)
+    if (chain->temporary && !whole)
         unlink(chain->temporary);
+    watch_signals(false);
+    unfinished = NULL;
     free(chain->temporary);
-    chain->temporary = NULL;
+    free(chain->target);
+    chain->temporary = chain->target = NULL;
     return status;
 }
 
@@ -93,6 +144,7 @@ static int close_output(struct chain *chain, int status)
 
 static void run_child(struct link *link, int in, int out, int said)
 {
+    watch_signals(false);
     dup2(in, STDIN_FILENO);
     dup2(out, STDOUT_FILENO);
     dup2(said, STDERR_FILENO);

@@ -40,7 +40,7 @@ int response_parse(struct response_record *r, const struct job *job, const json_
     r->sensor = fields_sensor(&f, "sensor", job);
     r->plane = fields_plane(&f, "plane", job);
     r->vector = fields_vector(&f, "vector");
-    fields_reals(&f, "cov", r->cov, 3);
+    fields_covariance(&f, "cov", r->cov);
     r->speed_rpm = fields_real(&f, "speed_rpm");
     return fields_done(&f, why);
 }
@@ -67,7 +67,7 @@ int correction_parse(struct correction_record *r, const struct job *job, const j
     r->angle_deg = fields_need_real(&f, "angle_deg");
     fields_copy(&f, "relative_to", r->relative_to, sizeof r->relative_to);
     fields_reals(&f, "least_squares", r->least_squares, 2);
-    fields_reals(&f, "ellipse", r->ellipse, 3);
+    fields_covariance(&f, "ellipse", r->ellipse);
     return fields_done(&f, why);
 }
 
@@ -97,7 +97,7 @@ int placement_parse(struct placement_record *r, const struct job *job, const jso
     struct fields f = fields_of(json);
     *r = (struct placement_record){0};
     r->plane = fields_plane(&f, "plane", job);
-    r->position = (int)fields_integer(&f, "position", 0);
+    r->position = fields_int(&f, "position", 0, 1000000, 0);
     r->angle_deg = fields_need_real(&f, "angle_deg");
     r->mass = fields_need_real(&f, "mass");
     r->piece_count = json_array_size(fields_array(&f, "pieces"));

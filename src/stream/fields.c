@@ -4,6 +4,8 @@
 #include <stdlib.h>
 #include <string.h>
 
+const char fields_no_memory[] = "no memory left";
+
 struct fields fields_of(const json_t *json)
 {
     return (struct fields){json, json_is_object(json) ? NULL : "not an object"};
@@ -65,6 +67,33 @@ long long fields_integer(struct fields *f, const char *key, long long fallback)
         return fallback;
     }
     return json_integer_value(value);
+}
+
+int fields_int(struct fields *f, const char *key, int least, int most, int fallback)
+{
+    long long value = fields_integer(f, key, fallback);
+    if (fields_has(f, key) && (value < least || value > most)) {
+        fields_fail(f, "a whole number is out of range");
+        return fallback;
+    }
+    return (int)value;
+}
+
+double fields_above_zero(struct fields *f, const char *key)
+{
+    double value = fields_need_real(f, key);
+    if (!(value > 0))
+        fields_fail(f, "a number that must be above zero is not");
+    return value;
+}
+
+void fields_covariance(struct fields *f, const char *key, double to[3])
+{
+    /* rounding of sums of squares; a covariance of exactly one line is legal */
+    const double slack = 1 + 1e-9;
+    fields_reals(f, key, to, 3);
+    if (!f->why && (!(to[0] >= 0) || !(to[2] >= 0) || to[1] * to[1] > slack * to[0] * to[2]))
+        fields_fail(f, "a covariance is none");
 }
 
 bool fields_boolean(struct fields *f, const char *key, bool fallback)
@@ -175,7 +204,7 @@ double *fields_new_reals(struct fields *f, const char *key, size_t *count)
         return NULL;
     double *values = malloc(*count * sizeof *values);
     if (!values) {
-        fields_fail(f, "no memory left");
+        fields_fail(f, fields_no_memory);
         *count = 0;
         return NULL;
     }

@@ -22,12 +22,20 @@ struct fields {
 
 struct fields fields_of(const json_t *json);
 int fields_done(const struct fields *f, const char **why); /* 0, or -1 with *why */
+
+/* The text of *why where it is memory and not the record that is to blame. */
+extern const char fields_no_memory[];
 void fields_fail(struct fields *f, const char *why);
 
 bool fields_has(const struct fields *f, const char *key);  /* present and not null */
 double fields_real(struct fields *f, const char *key);     /* null or absent: NaN; other type: error */
 double fields_need_real(struct fields *f, const char *key); /* must be a number */
 long long fields_integer(struct fields *f, const char *key, long long fallback);
+/* A whole number within [least, most], anything else is an error; null or absent: fallback. */
+int fields_int(struct fields *f, const char *key, int least, int most, int fallback);
+double fields_above_zero(struct fields *f, const char *key); /* must be a number above zero */
+/* [var re, cov, var im], a covariance: no negative variance, cov^2 <= product (to rounding). */
+void fields_covariance(struct fields *f, const char *key, double to[3]);
 bool fields_boolean(struct fields *f, const char *key, bool fallback);
 const char *fields_text(struct fields *f, const char *key); /* borrowed; null or absent: "" */
 /* Copies text into an array of `room` bytes; too long is an error. */

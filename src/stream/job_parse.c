@@ -7,6 +7,8 @@
 
 #include "stream/fields.h"
 
+#define PIECES_LIMIT 1000 /* no plane takes more; the placement search has its own bound */
+
 /* Index of the text among `count` names; absent: 0; unknown: an error. */
 static int choice(struct fields *f, const char *key, const char *const *names, int count)
 {
@@ -28,7 +30,7 @@ static void *new_items(struct fields *f, const json_t *array, size_t size, size_
         return NULL;
     void *items = calloc(*count, size);
     if (!items) {
-        fields_fail(f, "no memory left");
+        fields_fail(f, fields_no_memory);
         *count = 0;
     }
     return items;
@@ -61,17 +63,16 @@ static void parse_rotor(struct job *job, struct fields *outer)
 
 static void parse_tacho(struct job *job, struct fields *outer)
 {
+    static const char *const edges[] = {"rising", "falling"};
     const json_t *json = fields_object(outer, "tacho");
     job->has_tacho = json != NULL;
     if (!json)
         return;
     struct fields f = fields_of(json);
     fields_copy(&f, "channel", job->tacho_channel, sizeof job->tacho_channel);
-    job->tacho_edge = !strcmp(fields_text(&f, "edge"), "falling") ? -1 : 1;
-    job->tacho_marks = (int)fields_integer(&f, "marks", 1);
+    job->tacho_edge = choice(&f, "edge", edges, 2) ? -1 : 1;
+    job->tacho_marks = fields_int(&f, "marks", 1, 4096, 1);
     job->tacho_level = fields_real(&f, "level");
-    if (job->tacho_marks < 1 || job->tacho_marks > 4096)
-        fields_fail(&f, "marks a turn out of range");
     keep(outer, &f);
 }
 
@@ -123,12 +124,14 @@ static void parse_sensors(struct job *job, struct fields *outer)
 static void parse_positions(struct job_plane *p, struct fields *f)
 {
     const json_t *value = json_object_get(f->json, "positions");
-    p->any_position = !json_is_array(value);
+    p->any_position = json_is_string(value) && !strcmp(json_string_value(value), "any");
+    if (!p->any_position && !json_is_array(value))
+        fields_fail(f, "the positions of a plane are missing");
     p->positions =
         new_items(f, p->any_position ? NULL : value, sizeof *p->positions, &p->position_count);
     for (size_t i = 0; i < p->position_count; i++) {
         struct fields g = fields_of(json_array_get(value, i));
-        p->positions[i].number = (int)fields_integer(&g, "number", 0);
+        p->positions[i].number = fields_int(&g, "number", 1, 1000000, 0);
         p->positions[i].angle_deg = fields_need_real(&g, "angle_deg");
         p->positions[i].taken = fields_boolean(&g, "taken", false);
         keep(f, &g);
@@ -141,8 +144,8 @@ static void parse_stock(struct job_plane *p, struct fields *f)
     p->stock = new_items(f, array, sizeof *p->stock, &p->stock_count);
     for (size_t i = 0; i < p->stock_count; i++) {
         struct fields g = fields_of(json_array_get(array, i));
-        p->stock[i].mass = fields_need_real(&g, "mass");
-        p->stock[i].count = (int)fields_integer(&g, "count", -1);
+        p->stock[i].mass = fields_above_zero(&g, "mass");
+        p->stock[i].count = fields_int(&g, "count", 0, 1000000, -1);
         keep(f, &g);
     }
 }
@@ -162,10 +165,10 @@ static void parse_planes(struct job *job, struct fields *outer)
         struct job_plane *p = &job->planes[i];
         struct fields f = fields_of(json_array_get(array, i));
         fields_name(&f, "name", p->name);
-        p->radius_m = fields_need_real(&f, "radius_m");
+        p->radius_m = fields_above_zero(&f, "radius_m");
         parse_positions(p, &f);
         parse_stock(p, &f);
-        p->pieces = (int)fields_integer(&f, "pieces", 4);
+        p->pieces = fields_int(&f, "pieces", 1, PIECES_LIMIT, 4);
         p->most = limit_or_infinity(&f, "most");
         p->most_in_all = limit_or_infinity(&f, "most_in_all");
         p->work = (enum work)choice(&f, "work", works, 2);
@@ -188,8 +191,8 @@ static void parse_weights(const struct job *job, struct job_run *r, struct field
         w->mass = fields_need_real(&g, "mass");
         w->angle_deg = fields_need_real(&g, "angle_deg");
         w->mounted_mass = fields_need_real(&g, "mounted_mass");
-        w->radius_m = fields_need_real(&g, "radius_m");
-        w->position = (int)fields_integer(&g, "position", 0);
+        w->radius_m = fields_above_zero(&g, "radius_m");
+        w->position = fields_int(&g, "position", 0, 1000000, 0);
         keep(f, &g);
     }
     if (f->why) /* no weight with a plane that does not exist survives */
@@ -237,11 +240,13 @@ static void parse_runs(struct job *job, struct fields *outer)
         const json_t *without = fields_array(&f, "without");
         r->without = calloc(job->sensor_count + 1, sizeof *r->without);
         if (!r->without)
-            fields_fail(&f, "no memory left");
+            fields_fail(&f, fields_no_memory);
         for (size_t k = 0; r->without && k < json_array_size(without); k++) {
             const char *name = json_string_value(json_array_get(without, k));
             int sensor = name ? job_find_sensor(job, name) : -1;
-            if (sensor >= 0)
+            if (sensor < 0)
+                fields_fail(&f, "a sensor that the job does not name");
+            else
                 r->without[sensor] = true;
         }
         keep(outer, &f);
@@ -253,7 +258,7 @@ static void parse_targets(struct job *job, struct fields *f)
     const json_t *array = fields_array(f, "targets");
     job->aim.targets = calloc(job->sensor_count + 1, sizeof *job->aim.targets);
     if (!job->aim.targets) {
-        fields_fail(f, "no memory left");
+        fields_fail(f, fields_no_memory);
         return;
     }
     for (size_t s = 0; s < job->sensor_count; s++)
@@ -317,6 +322,8 @@ static void parse_aim(struct job *job, struct fields *outer)
     if (mounted[0] && job->aim.mounted < 0)
         fields_fail(&f, "the mounted run is not one of the runs");
     job->aim.repeatability = fields_need_real(&f, "repeatability");
+    if (!(job->aim.repeatability >= 0))
+        fields_fail(&f, "the repeatability is below zero");
     job->aim.repeatability_given = fields_boolean(&f, "repeatability_given", false);
     job->aim.tolerance = (enum tolerance)choice(&f, "tolerance", tolerance, 3);
     parse_zones(job, &f);
@@ -336,7 +343,7 @@ static void parse_responses(struct job *job, struct fields *outer)
         r->sensor = sensor < 0 ? 0 : (size_t)sensor;
         r->plane = plane < 0 ? 0 : (size_t)plane;
         r->vector = fields_vector(&f, "vector");
-        fields_reals(&f, "cov", r->cov, 3);
+        fields_covariance(&f, "cov", r->cov);
         r->speed_rpm = fields_real(&f, "speed_rpm");
         keep(outer, &f);
     }
@@ -356,6 +363,27 @@ static void parse_limits(struct job *job, struct fields *outer)
         job->limits[i].refuse = fields_real(&f, "refuse");
         keep(outer, &f);
     }
+}
+
+/* Names are unique, and nothing that needs the sense of angles goes without it. */
+static void check_whole(const struct job *job, struct fields *f)
+{
+    bool angles = false;
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (job_find_sensor(job, job->sensors[i].name) != (int)i)
+            fields_fail(f, "a sensor appears twice");
+    for (size_t i = 0; i < job->plane_count; i++) {
+        if (job_find_plane(job, job->planes[i].name) != (int)i)
+            fields_fail(f, "a plane appears twice");
+        angles = angles || job->planes[i].position_count > 0;
+    }
+    for (size_t i = 0; i < job->run_count; i++) {
+        if (job_find_run(job, job->runs[i].name) != (int)i)
+            fields_fail(f, "a run appears twice");
+        angles = angles || job->runs[i].weight_count > 0;
+    }
+    if (angles && !job->audit && job->angles == SENSE_NONE)
+        fields_fail(f, "the sense of angles is missing");
 }
 
 int job_parse(struct job *job, const json_t *record, const char **why)
@@ -380,7 +408,8 @@ int job_parse(struct job *job, const json_t *record, const char **why)
     parse_aim(job, &f);
     parse_limits(job, &f);
     parse_responses(job, &f);
+    check_whole(job, &f);
     if (fields_done(&f, why) < 0)
-        return !strcmp(*why, "no memory left") ? -2 : -1;
+        return *why == fields_no_memory ? -2 : -1;
     return 0;
 }

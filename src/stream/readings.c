@@ -113,6 +113,17 @@ static void parse_overall(struct overall *o, struct fields *outer)
         fields_fail(outer, f.why);
 }
 
+/* The run's condition, or that at a speed of its coast-down: "<condition> @ 900 rpm". */
+static bool is_condition_of(const struct job *job, const char *run, const char *condition)
+{
+    int index = job_find_run(job, run);
+    if (index < 0)
+        return true; /* a run that the job does not name is its reader's business */
+    size_t length = strlen(job->runs[index].condition);
+    return !strncmp(condition, job->runs[index].condition, length) &&
+           (!condition[length] || !strncmp(condition + length, " @ ", 3));
+}
+
 int reading_parse(struct reading_record *r, const struct job *job, const json_t *json,
                   const char **why)
 {
@@ -121,11 +132,13 @@ int reading_parse(struct reading_record *r, const struct job *job, const json_t 
     fields_name(&f, "run", r->run);
     fields_name(&f, "condition", r->condition);
     r->sensor = fields_sensor(&f, "sensor", job);
-    r->speed_rpm = fields_need_real(&f, "speed_rpm");
+    if (!f.why && !is_condition_of(job, r->run, r->condition))
+        fields_fail(&f, "the condition is not that of the run");
+    r->speed_rpm = fields_above_zero(&f, "speed_rpm");
     r->has_phase = fields_has(&f, "vector");
     r->vector = fields_vector(&f, "vector");
     r->amplitude = r->has_phase ? cabs(r->vector) : fields_need_real(&f, "amplitude");
-    fields_reals(&f, "cov", r->cov, 3);
+    fields_covariance(&f, "cov", r->cov);
     r->blocks = (long)fields_integer(&f, "blocks", 0);
     parse_steady(&r->steady, &f);
     parse_overall(&r->overall, &f);
@@ -155,7 +168,7 @@ int vetted_parse(struct vetted_record *r, const struct job *job, const json_t *j
     if (!fields_has(&f, "use"))
         fields_fail(&f, "the ruling is missing");
     r->use = fields_boolean(&f, "use", false);
-    fields_reals(&f, "widen", r->widen, 3);
+    fields_covariance(&f, "widen", r->widen);
     return fields_done(&f, why);
 }
 

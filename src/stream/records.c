@@ -47,7 +47,7 @@ static void parse_file(struct file_record *file, const json_t *json, struct fiel
     if (file->path)
         memcpy(file->path, path, strlen(path) + 1);
     else
-        fields_fail(&f, "no memory left");
+        fields_fail(&f, fields_no_memory);
     fields_copy(&f, "sha256", file->sha256, sizeof file->sha256);
     file->frames = fields_integer(&f, "frames", 0);
     file->rate_hz = fields_real(&f, "rate_hz");
@@ -68,7 +68,7 @@ int run_parse(struct run_record *r, const struct job *job, const json_t *json, c
     size_t count = json_array_size(files);
     r->files = count ? calloc(count, sizeof *r->files) : NULL;
     if (count && !r->files)
-        fields_fail(&f, "no memory left");
+        fields_fail(&f, fields_no_memory);
     r->file_count = r->files ? count : 0;
     for (size_t i = 0; i < r->file_count; i++)
         parse_file(&r->files[i], json_array_get(files, i), &f);
@@ -117,7 +117,7 @@ int wave_parse(struct wave_record *r, const json_t *json, const char **why)
         fields_fail(&f, "the number of columns is out of range");
     r->columns = f.why ? NULL : calloc(count, sizeof *r->columns);
     if (!r->columns)
-        fields_fail(&f, "no memory left");
+        fields_fail(&f, fields_no_memory);
     r->column_count = r->columns ? count : 0;
     for (size_t i = 0; i < r->column_count; i++) {
         struct fields g = fields_of(json_array_get(columns, i));
@@ -256,7 +256,7 @@ int turns_parse(struct turns_record *r, const struct job *job, const json_t *jso
                  *amplitudes = fields_object(&f, "amplitudes");
     size_t count = json_object_size(vectors);
     if (turns_arrays(r, count) < 0)
-        fields_fail(&f, "no memory left");
+        fields_fail(&f, fields_no_memory);
     struct fields v = fields_of(vectors ? vectors : json), e = fields_of(rest ? rest : json),
                   a = fields_of(amplitudes ? amplitudes : json);
     const char *name;
@@ -399,7 +399,7 @@ int curve_parse(struct curve_record *r, const struct job *job, const json_t *jso
         fields_fail(&f, "speeds and vectors differ in number");
     r->vectors = f.why ? NULL : calloc(r->count + 1, sizeof *r->vectors);
     if (!r->vectors)
-        fields_fail(&f, "no memory left");
+        fields_fail(&f, fields_no_memory);
     for (size_t i = 0; r->vectors && i < r->count; i++)
         r->vectors[i] = curve_point(json_array_get(points, i), &f);
     if (f.why)

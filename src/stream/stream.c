@@ -4,6 +4,7 @@
 #include <fcntl.h>
 #include <stdalign.h>
 #include <stdint.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 #include <unistd.h>
@@ -12,7 +13,8 @@
 #include "stream/fields.h"
 
 #define CHUNK (256 * 1024)               /* one read: the width of the pipes between the stages */
-#define LINE_MOST (16L * 1024 * 1024)    /* a longer record is refused: stages stay below 32 MiB */
+#define JOB_MOST (16u * 1024 * 1024) /* a job names every recording of an audit */
+#define LINE_MOST (256u * 1024)      /* any other record; parsed it stays far below 32 MiB */
 
 struct stream_state {
     const char *const *paths;
@@ -31,6 +33,8 @@ struct stream_state {
     size_t pending;            /* bytes of samples that follow */
     size_t columns;            /* of the last wave record */
     json_t *json;              /* of the current record */
+    json_t *seen;              /* keys of the records that may stand once only */
+    const char *const *makes;  /* kinds that the input must not hold; NULL: any may */
     struct sink *sink;         /* NULL: nothing is written */
 };
 
@@ -110,6 +114,12 @@ static int ended_early(const struct stream_state *s)
     return STATUS_SYSTEM;
 }
 
+static size_t line_most(const char *line, size_t have)
+{
+    static const char job[] = "{\"kind\":\"job\"";
+    return have >= sizeof job && !memcmp(line, job, sizeof job - 1) ? JOB_MOST : LINE_MOST;
+}
+
 /* The next line, newline included; *length 0 at a clean end of the current input. */
 static int next_line(struct stream_state *s, const char **line, size_t *length)
 {
@@ -118,17 +128,18 @@ static int next_line(struct stream_state *s, const char **line, size_t *length)
         const char *from = s->bytes + s->start;
         size_t have = s->fill - s->start;
         const char *newline = have > looked ? memchr(from + looked, '\n', have - looked) : NULL;
+        size_t whole = newline ? (size_t)(newline - from) + 1 : have;
+        if (whole > line_most(from, whole)) {
+            message("not a lopside stream: '%s' (line %lld is too long)", input_name(s),
+                    s->line_number + 1);
+            return STATUS_USAGE;
+        }
         if (newline) {
             *line = from;
             *length = (size_t)(newline - from) + 1;
             s->start += *length;
             s->line_number++;
             return STATUS_DONE;
-        }
-        if (have > LINE_MOST) {
-            message("not a lopside stream: '%s' (line %lld is too long)", input_name(s),
-                    s->line_number + 1);
-            return STATUS_USAGE;
         }
         if (s->eof) {
             *length = 0;
@@ -145,6 +156,8 @@ static int next_line(struct stream_state *s, const char **line, size_t *length)
 
 static int malformed(const struct stream_state *s, const char *why)
 {
+    if (why == fields_no_memory)
+        return message_no_memory();
     message("malformed record: '%s' (line %lld: %s)", input_name(s), s->line_number, why);
     return STATUS_USAGE;
 }
@@ -154,7 +167,8 @@ static int parse_line(struct stream_state *s, const char *line, size_t length, c
     json_error_t error;
     json_decref(s->json);
     s->json = json_loadb(line, length, JSON_REJECT_DUPLICATES, &error);
-    if (!s->json && json_error_code(&error) == json_error_out_of_memory)
+    /* jansson does not always say that memory is out; it says nothing then */
+    if (!s->json && (json_error_code(&error) == json_error_out_of_memory || !error.text[0]))
         return message_no_memory();
     *kind = json_string_value(json_object_get(s->json, "kind"));
     if (!*kind) {
@@ -232,6 +246,39 @@ static int take_run(struct stream_state *s)
     return STATUS_DONE;
 }
 
+/* What tells two records of a kind apart, where a second one would have to be believed or not. */
+static const struct {
+    const char *kind, *fields[3];
+} once[] = {
+    {"reading", {"run", "sensor", "condition"}},
+    {"vetted", {"run", "sensor", "condition"}},
+    {"tacho", {"run"}},
+    {"channel", {"run", "sensor"}},
+    {"spectrum", {"run", "sensor"}},
+    {"response", {"condition", "sensor", "plane"}},
+    {"correction", {"plane"}},
+    {"forecast", {"sensor", "condition"}},
+    {"next", {NULL}},
+};
+
+static int take_once(struct stream_state *s, size_t which)
+{
+    char key[256];
+    size_t used = (size_t)snprintf(key, sizeof key, "%s", once[which].kind);
+    for (size_t i = 0; i < 3 && once[which].fields[i]; i++) {
+        const char *text = json_string_value(json_object_get(s->json, once[which].fields[i]));
+        used += (size_t)snprintf(key + used, sizeof key - used, "\t%.50s", text ? text : "");
+    }
+    if (!s->seen)
+        s->seen = json_object();
+    if (!s->seen)
+        return message_no_memory();
+    if (json_object_get(s->seen, key))
+        return malformed(s, "the same thing is said twice");
+    return json_object_set_new_nocheck(s->seen, key, json_true()) < 0 ? message_no_memory()
+                                                                      : STATUS_DONE;
+}
+
 static int take_block(struct stream_state *s)
 {
     const json_t *frames = json_object_get(s->json, "frames");
@@ -253,6 +300,15 @@ static int take_other(struct stream_state *s, const char *kind)
         return STATUS_USAGE;
     }
     s->records++;
+    for (size_t i = 0; s->makes && s->makes[i]; i++)
+        if (!strcmp(kind, s->makes[i])) {
+            message("the input already holds what this stage makes: '%s' ('%s', line %lld)", kind,
+                    input_name(s), s->line_number);
+            return STATUS_USAGE;
+        }
+    for (size_t i = 0; i < sizeof once / sizeof *once; i++)
+        if (!strcmp(kind, once[i].kind))
+            return take_once(s, i);
     if (!strcmp(kind, "run"))
         return take_run(s);
     if (!strcmp(kind, "wave")) {
@@ -344,6 +400,11 @@ int stream_open(struct stream *stream, const char *const *paths, size_t path_cou
     return stream->status;
 }
 
+void stream_makes(struct stream *stream, const char *const *kinds)
+{
+    stream->state->makes = kinds;
+}
+
 bool stream_next(struct stream *stream, struct record *record)
 {
     while (stream->status == STATUS_DONE && stream->state->pending) { /* samples nobody fetched */
@@ -423,6 +484,7 @@ void stream_close(struct stream *stream)
         return;
     close_input(s);
     json_decref(s->json);
+    json_decref(s->seen);
     sink_free(s->sink);
     buffer_release(&s->job_line);
     free(s->runs);

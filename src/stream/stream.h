@@ -4,7 +4,8 @@
  * whole streams (job ... end). Checked here, once for all stages: the first record is a job of this
  * version; every `end` counts right; all job records are byte for byte the same; a run appears once;
  * no key is doubled in an object; nothing stands behind the last `end`. Violations print their one
- * line and give the right status: ended early 1, the others 2 (a read error 1).
+ * line and give the right status: ended early 1, the others 2 (a read error 1). So do a second ruling or
+ * reading on the same thing, a second answer, and an input that holds what the stage itself makes.
  *
  * Output: `stream_pass` copies a record's original bytes, `stream_write` prints an own one,
  * `stream_finish` writes `end` and checks that all of it arrived.
@@ -23,7 +24,8 @@
  *     if (status == STATUS_DONE) status = stream_finish(&stream);
  *     stream_close(&stream);
  *
- * Memory: one input buffer of 256 KiB plus the longest line (at most 16 MiB, longer is refused).
+ * Memory: one input buffer of 512 KiB, or twice the longest line. A record of more than 256 KiB is refused
+ * (parsed, a number takes up to twenty times its text), a job record of more than 16 MiB.
  */
 #ifndef LOPSIDE_STREAM_STREAM_H
 #define LOPSIDE_STREAM_STREAM_H
@@ -54,6 +56,10 @@ struct stream {
  * nothing is ever written. Returns a status; not STATUS_DONE: its line has been printed. */
 int stream_open(struct stream *stream, const char *const *paths, size_t path_count, bool output)
     __attribute__((warn_unused_result));
+
+/* What this stage makes: a NULL-terminated list of kinds (borrowed) that the input must not hold yet,
+ * since nobody could tell the two apart. To be called behind stream_open. */
+void stream_makes(struct stream *stream, const char *const *kinds);
 
 /* The next record other than job and end. `block` records are followed by samples that must be
  * fetched with stream_samples before the next call. False: the last `end` was read

@@ -110,6 +110,57 @@ static void test_broken_rules(void **state)
     assert_int_equal(count_text("{\"kind\":\"job\",\"lopside\":2}\n", &n), STATUS_USAGE);
 }
 
+/* What would have to be believed or not: a thing said twice, a sense left out, numbers that are none. */
+static void test_what_is_not_believed(void **state)
+{
+    (void)state;
+    static const char reading[] =
+        "{\"kind\":\"reading\",\"run\":\"a\",\"sensor\":\"DE-V\",\"condition\":\"service\"}\n";
+    static const struct {
+        const char *from, *to;
+    } changes[] = {
+        {"\"angles\":\"with rotation\"", "\"angles\":null"},
+        {"\"edge\":\"falling\"", "\"edge\":\"faling\""},
+        {"\"marks\":1", "\"marks\":4294967297"},
+        {"\"radius_m\":0.41", "\"radius_m\":-0.41"},
+        {"\"positions\":[{\"number\":1,\"angle_deg\":30,\"taken\":true}]", "\"positions\":\"twelve\""},
+        {"\"repeatability\":0.03", "\"repeatability\":-1"},
+        {"\"count\":4", "\"count\":4294967296"},
+        {"\"pieces\":3", "\"pieces\":-1"},
+        {"\"without\":[\"DE-V\"]", "\"without\":[\"DE-W\"]"},
+    };
+    char text[4096];
+    int n;
+    snprintf(text, sizeof text, JOB "%s{\"kind\":\"end\",\"records\":2}\n", reading);
+    assert_int_equal(count_text(text, &n), STATUS_DONE);
+    snprintf(text, sizeof text, JOB "%s%s{\"kind\":\"end\",\"records\":3}\n", reading, reading);
+    assert_int_equal(count_text(text, &n), STATUS_USAGE);
+    for (size_t i = 0; i < sizeof changes / sizeof *changes; i++) {
+        const char *at = strstr(JOB, changes[i].from);
+        assert_non_null(at);
+        snprintf(text, sizeof text, "%.*s%s%s{\"kind\":\"end\",\"records\":1}\n",
+                 (int)(at - JOB), JOB, changes[i].to, at + strlen(changes[i].from));
+        if (count_text(text, &n) != STATUS_USAGE)
+            fail_msg("believed: %s", changes[i].to);
+    }
+}
+
+static void test_long_records(void **state)
+{
+    (void)state;
+    size_t length = strlen(JOB), long_text = 300 * 1024;
+    char *bytes = malloc(length + long_text + 100);
+    int n;
+    assert_non_null(bytes);
+    memcpy(bytes, JOB, length);
+    size_t used = length + (size_t)sprintf(bytes + length, "{\"kind\":\"x\",\"a\":\"");
+    memset(bytes + used, 'a', long_text);
+    used += long_text;
+    used += (size_t)sprintf(bytes + used, "\"}\n{\"kind\":\"end\",\"records\":2}\n");
+    assert_int_equal(count(bytes, used, &n), STATUS_USAGE);
+    free(bytes);
+}
+
 /* A job, a wave and two blocks, the first behind a line of odd length so that floats lie unaligned. */
 static size_t sample_stream(char *bytes, size_t room)
 {
@@ -373,6 +424,7 @@ int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_whole_streams),      cmocka_unit_test(test_broken_rules),
+        cmocka_unit_test(test_what_is_not_believed), cmocka_unit_test(test_long_records),
         cmocka_unit_test(test_every_prefix_ends_early), cmocka_unit_test(test_samples_are_whole_and_aligned),
         cmocka_unit_test(test_job_round_trip),     cmocka_unit_test(test_sheet_angles),
         cmocka_unit_test(test_reals_and_strings),  cmocka_unit_test(test_reading_round_trip),
