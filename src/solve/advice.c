@@ -289,7 +289,8 @@ static size_t trial_words(const struct job *job, size_t p, const struct advice_t
     if (isnan(t->mass))
         return (size_t)snprintf(text, size, "'%s'", job->planes[p].name);
     return (size_t)snprintf(text, size, "'%s' about %s %s (%s N)", job->planes[p].name,
-                            judge_figure(t->mass / kg, 3).text, unit, judge_figure(t->force, 2).text);
+                            judge_figure(t->mass / kg, 3).text, unit,
+                            judge_figure(t->force, 2).text);
 }
 
 static bool plane_is_bare(const struct job *job, size_t p)
@@ -467,7 +468,8 @@ static size_t list_holes(const struct answer *a, char *text, size_t size)
         for (size_t k = 0; k < item->piece_count && length + 130 < size; k++)
             length += (size_t)snprintf(
                 text + length, size - length, "; drill '%s' at %.0f deg %s: hole %s %s, %s %s deep",
-                plane->name, angle, job_sense_text(job), judge_figure(plane->hole_m / unit, 3).text, us ? "in" : "mm",
+                plane->name, angle, job_sense_text(job), judge_figure(plane->hole_m / unit, 3).text,
+                us ? "in" : "mm",
                 judge_figure(drill_depth(plane->hole_m, plane->density, item->pieces[k]) / unit, 3)
                     .text,
                 us ? "in" : "mm");
@@ -475,18 +477,29 @@ static size_t list_holes(const struct answer *a, char *text, size_t size)
     return length;
 }
 
+static bool only_removal(const struct answer *a)
+{
+    for (size_t i = 0; i < a->placement.best.count; i++)
+        if (a->model->job->planes[a->placement.best.items[i].plane].work != WORK_REMOVE)
+            return false;
+    return a->placement.best.count > 0;
+}
+
 void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next)
 {
     const struct job *job = a->model->job;
     int mounted = job->aim.mounted;
     *next = (struct advice_next){.step = trim ? "trim" : "correct"};
+    const char *work = only_removal(a) ? "remove material as placed"
+                       : mounted >= 0  ? "add what is placed"
+                                       : "fit what is placed";
     if (mounted >= 0)
         snprintf(next->text, sizeof next->text,
-                 "add what is placed to the weights of run '%s', then run again",
-                 job->runs[mounted].name);
+                 "leave the weights of run '%s' on, %s, then run again", job->runs[mounted].name,
+                 work);
     else
         snprintf(next->text, sizeof next->text,
-                 "take everything off that was mounted, fit what is placed, then run again");
+                 "take everything off that was mounted, %s, then run again", work);
     size_t length = strlen(next->text);
     double gap = a->placement.gap, from = a->placement.nothing;
     if (gap > 0 && from > 0)

@@ -19,13 +19,14 @@ struct advice_finding {
 
 struct advice_trial {           /* of one plane */
     double wanted, mass, force; /* kg: by the rule, and from stock; N. NaN: not known */
-    int sensor;    /* a stored response says that this sensor will change most, whatever its speed; -1 */
+    int sensor; /* a stored response says that this sensor will change most, whatever its speed; -1
+                 */
     double effect; /* by so much, SI peak in its own quantity */
 };
 
 struct advice_next {
     const char *step; /* static: "trial", "correct", "trim", "repeat", "done" */
-    char text[400]; /* what a `next` record holds */
+    char text[400];   /* what a `next` record holds */
     char reason[300]; /* for standard error where there is no answer; else "" */
 };
 

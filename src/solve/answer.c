@@ -31,8 +31,8 @@ static int room(struct answer *a, size_t most)
     a->placed_weights = calloc(q, sizeof *a->placed_weights);
     a->forecasts = calloc(most + 1, sizeof *a->forecasts);
     a->residuals = calloc(q, sizeof *a->residuals);
-    return a->row && a->posterior && a->scale && a->se && a->mounted && a->weights &&
-                   a->full && a->classical && a->ellipse && a->weak && a->forms && a->certain &&
+    return a->row && a->posterior && a->scale && a->se && a->mounted && a->weights && a->full &&
+                   a->classical && a->ellipse && a->weak && a->forms && a->certain &&
                    a->placed_weights && a->forecasts && a->residuals
                ? ANSWER_OK
                : ANSWER_NO_MEMORY;
@@ -224,15 +224,16 @@ static int correct_static(struct answer *a)
     double nothing = objective(a, a->forms, zero), left = objective(a, a->forms, alone);
     a->left_alone = sqrt(left / nothing);
     a->left = sqrt(objective(a, a->forms, a->full) / nothing);
-    a->static_only = a->model->job->aim.minimise == MINIMISE_STATIC_FIRST &&
-                     nothing - left > noise_at(a, alone);
+    a->static_only =
+        a->model->job->aim.minimise == MINIMISE_STATIC_FIRST && nothing - left > noise_at(a, alone);
     if (a->static_only)
         memcpy(a->weights, alone, sizeof alone);
     return ANSWER_OK;
 }
 
 /* With few degrees of freedom a region of two components follows F: F(2, dof) at 95 % is dof/2
- * (0.05^(-2/dof) - 1) in closed form. The ellipse is widened so that the normal's 5.9915 holds 95 %. */
+ * (0.05^(-2/dof) - 1) in closed form. The ellipse is widened so that the normal's 5.9915 holds 95
+ * %. */
 static void widen_ellipse(struct answer *a)
 {
     double dof = a->model->dof;
@@ -275,7 +276,8 @@ static bool ideal_fits(const struct answer *a)
     for (size_t p = 0; p < a->planes; p++) {
         const struct job_plane *plane = &a->model->job->planes[p];
         double mass = cabs(a->weights[p]);
-        if (!plane->any_position || plane->stock || mass > most_at(plane) || mass > plane->most_in_all)
+        if (!plane->any_position || plane->stock || mass > most_at(plane) ||
+            mass > plane->most_in_all)
             return false;
     }
     return true;
@@ -365,16 +367,15 @@ static int fill_plane(const struct job_plane *from, struct menu *menu, struct pl
         menu->counts[stock++] = from->stock[i].count;
     }
     int pieces = from->pieces > 0 ? from->pieces : 4; /* the sheet's default */
-    *to = (struct place_plane){
-        .angles_deg = menu->angles,
-        .positions = free_positions,
-        .masses = menu->masses,
-        .counts = menu->counts,
-        .stock = stock,
-        .pieces = pieces > PLACE_PIECES_MOST ? PLACE_PIECES_MOST : pieces,
-        .most = from->stock_count ? from->most : most_at(from),
-        .most_in_all = from->most_in_all,
-        .sign = from->work == WORK_REMOVE ? -1 : 1};
+    *to = (struct place_plane){.angles_deg = menu->angles,
+                               .positions = free_positions,
+                               .masses = menu->masses,
+                               .counts = menu->counts,
+                               .stock = stock,
+                               .pieces = pieces > PLACE_PIECES_MOST ? PLACE_PIECES_MOST : pieces,
+                               .most = from->stock_count ? from->most : most_at(from),
+                               .most_in_all = from->most_in_all,
+                               .sign = from->work == WORK_REMOVE ? -1 : 1};
     if ((!from->any_position && free_positions == 0) || (from->stock_count > 0 && stock == 0))
         forbid(to);
     return ANSWER_OK;
@@ -433,7 +434,8 @@ static bool common_plane(const struct place_plane of[2], double ratio, struct me
             if (fabs(of[1].masses[j] / (of[0].masses[i] * ratio) - 1) < 1e-3) {
                 menu->masses[stock] = of[0].masses[i];
                 int first = of[0].counts[i], second = of[1].counts[j];
-                menu->counts[stock++] = first < 0 || (second >= 0 && second < first) ? second : first;
+                menu->counts[stock++] =
+                    first < 0 || (second >= 0 && second < first) ? second : first;
                 break;
             }
     *to = of[0];

@@ -34,11 +34,11 @@ struct answer {
     const struct model_row **row; /* owned array of borrowed rows */
     struct posterior *posterior;  /* owned: rows, relative to what is mounted */
     double *scale;                /* owned: 1/SI, makes rows comparable */
-    double *se;                /* owned: SI, root of the complex variance of a reading of the row */
-    double complex *mounted;   /* owned: planes, what stays on, kg */
-    double complex *weights;   /* owned: planes, the ideal weight to add, kg */
-    double complex *full;      /* owned: planes, the ideal weight without regard to what comes first */
-    bool static_only;          /* `weights` are the static part alone; the couple comes later */
+    double *se;              /* owned: SI, root of the complex variance of a reading of the row */
+    double complex *mounted; /* owned: planes, what stays on, kg */
+    double complex *weights; /* owned: planes, the ideal weight to add, kg */
+    double complex *full; /* owned: planes, the ideal weight without regard to what comes first */
+    bool static_only;     /* `weights` are the static part alone; the couple comes later */
     double complex static_alone; /* kg m, two planes: the best of both planes alike */
     double left_alone, left;   /* root of expected squared vibration over that of now; two planes */
     double complex *classical; /* owned: planes, least squares */
@@ -76,8 +76,8 @@ int answer_correct(struct answer *answer) __attribute__((warn_unused_result));
 int answer_place(struct answer *answer) __attribute__((warn_unused_result));
 
 /* Run `run` carries weights that were meant to correct: they leave less than half of the as-found
- * vibration (aim.mounted unset: everything could come off). *as_good: what is placed beats them by no
- * more than the noise. False: no memory, or no such run. */
+ * vibration (aim.mounted unset: everything could come off). *as_good: what is placed beats them by
+ * no more than the noise. False: no memory, or no such run. */
 bool answer_corrected_by(const struct answer *answer, int run, bool *as_good);
 
 /* True where something placed lowers the expected vibration beyond the noise. */

@@ -1,5 +1,5 @@
-/* drill.h - holes that take mass off: a flat-bottomed cylinder; what the drill's point takes besides
- * is not counted, so depth is that of the full diameter. */
+/* drill.h - holes that take mass off: a flat-bottomed cylinder; what the drill's point takes
+ * besides is not counted, so depth is that of the full diameter. */
 #ifndef LOPSIDE_SOLVE_DRILL_H
 #define LOPSIDE_SOLVE_DRILL_H
 

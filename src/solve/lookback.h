@@ -13,8 +13,9 @@ struct lookback {
                   and reading, scatter from run to run included */
 };
 
-/* 1 with `out` filled; 0 where the runs of the row before `run`, with the stored responses in use, do
- * not determine everything or the row has no reading of `run`; negative: an enum regress_error. */
+/* 1 with `out` filled; 0 where the runs of the row before `run`, with the stored responses in use,
+ * do not determine everything or the row has no reading of `run`; negative: an enum regress_error.
+ */
 int lookback_row(const struct model_row *row, size_t planes, size_t run, struct lookback *out)
     __attribute__((warn_unused_result));
 

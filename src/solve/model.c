@@ -49,8 +49,7 @@ static int row_room(struct model_row *row, size_t count, size_t planes)
     row->total = calloc(count + 1, sizeof *row->total);
     row->stored = calloc(planes + 1, sizeof *row->stored);
     row->overall = calloc(count + 1, sizeof *row->overall);
-    return row->runs && row->y && row->x && row->cov && row->total && row->stored &&
-                   row->overall
+    return row->runs && row->y && row->x && row->cov && row->total && row->stored && row->overall
                ? 0
                : -1;
 }
@@ -285,8 +284,8 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
     m->present = calloc(job->run_count + 1, sizeof *m->present);
     m->runout = calloc(job->sensor_count + 1, sizeof *m->runout);
     m->held = calloc(job->plane_count + 1, sizeof *m->held);
-    int result = m->conditions && m->rows && m->present && m->runout && m->held ? MODEL_OK
-                                                                                : MODEL_NO_MEMORY;
+    int result =
+        m->conditions && m->rows && m->present && m->runout && m->held ? MODEL_OK : MODEL_NO_MEMORY;
     m->amplitudes = amplitudes_only(job, readings, count);
     if (result == MODEL_OK)
         gather_runout(m, readings, count);

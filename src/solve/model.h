@@ -36,7 +36,8 @@ enum model_stored {
     MODEL_STORED_NONE,   /* there are none, or they could not be used */
     MODEL_STORED_HELD,   /* they agree with the runs, or nothing tells */
     MODEL_STORED_LEFT,   /* set aside: the runs alone tell all, and differ */
-    MODEL_STORED_WIDENED /* they differ from the runs, which cannot do without: taken as less sure */
+    MODEL_STORED_WIDENED /* they differ from the runs, which cannot do without: taken as less sure
+                          */
 };
 
 struct model_row {
@@ -50,7 +51,7 @@ struct model_row {
     double (*total)[3];    /* owned: with the scatter from run to run */
     double *overall;       /* owned: rms, SI, of each reading's band; NaN: not known */
     enum quantity overall_quantity;
-    double as_found;       /* SI peak amplitude with nothing added, as read; > 0 */
+    double as_found;   /* SI peak amplitude with nothing added, as read; > 0 */
     double speed_rpm;  /* mean of the usable readings; the service speed where unknown; or NaN */
     double sigma;      /* SI, scatter from run to run per component */
     double typical[3]; /* mean covariance of the readings */
@@ -60,15 +61,16 @@ struct model_row {
     size_t misfit_run;
     bool ambiguous; /* amplitudes alone leave more than one answer */
     int lost_run;   /* the first run whose reading of this row was refused; -1: none */
-    const struct job_response **stored; /* owned array, planes; borrowed responses in use; NULL: none */
-    const struct job_response *apart;   /* borrowed: one of another speed, hence not used; or NULL */
-    double changed;    /* s.e. between stored and new; NaN: nothing to compare */
-    int changed_plane; /* whose response; -1: of no plane alone */
-    enum model_stored kept; /* what became of the stored responses */
-    bool runout;       /* the slow-roll vector is taken off the readings */
+    const struct job_response *
+        *stored; /* owned array, planes; borrowed responses in use; NULL: none */
+    const struct job_response *apart; /* borrowed: one of another speed, hence not used; or NULL */
+    double changed;                   /* s.e. between stored and new; NaN: nothing to compare */
+    int changed_plane;                /* whose response; -1: of no plane alone */
+    enum model_stored kept;           /* what became of the stored responses */
+    bool runout;                      /* the slow-roll vector is taken off the readings */
 };
 
-struct model_runout { /* of a sensor */
+struct model_runout {      /* of a sensor */
     size_t count;          /* usable slow-roll readings */
     double complex vector; /* their mean, SI peak */
     double cov[3];         /* of it */
@@ -88,8 +90,8 @@ struct model {
                         phases only (amplitude.h) */
     bool *present;   /* owned, one per run: it has readings, usable or not */
     struct model_runout *runout; /* owned, one per sensor */
-    bool *held;      /* owned, planes: a stored response of that plane is in use in some row */
-    int last_run;    /* last run of the sheet that has usable readings; -1: none */
+    bool *held;   /* owned, planes: a stored response of that plane is in use in some row */
+    int last_run; /* last run of the sheet that has usable readings; -1: none */
 };
 
 enum model_error { MODEL_OK = 0, MODEL_NO_MEMORY = -1, MODEL_FAILED = -2, MODEL_NAN = -3 };

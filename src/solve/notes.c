@@ -22,12 +22,14 @@ static void tell_changed(const struct model *m, const struct model_row *row,
                            ? "the stored ones of this sensor are left out"
                            : "they are taken as less sure; a trial run would settle it";
     if (row->kept != MODEL_STORED_LEFT && f->verdict == ADVICE_OK)
-        snprintf(f->text, sizeof f->text, "the stored responses of sensor '%s' fit the runs", sensor);
+        snprintf(f->text, sizeof f->text, "the stored responses of sensor '%s' fit the runs",
+                 sensor);
     else if (row->changed_plane >= 0)
-        snprintf(f->text, sizeof f->text,
-                 "sensor '%s' responds to plane '%s' otherwise than stored, by more than both allow: "
-                 "something changed in the machine, its speed, mark or sensors; %s",
-                 sensor, m->job->planes[row->changed_plane].name, then);
+        snprintf(
+            f->text, sizeof f->text,
+            "sensor '%s' responds to plane '%s' otherwise than stored, by more than both allow: "
+            "something changed in the machine, its speed, mark or sensors; %s",
+            sensor, m->job->planes[row->changed_plane].name, then);
     else
         snprintf(f->text, sizeof f->text,
                  "run '%s' does not come out at sensor '%s' as the stored responses say: something "
@@ -37,8 +39,7 @@ static void tell_changed(const struct model *m, const struct model_row *row,
 
 bool notes_stored(const struct model *m, const struct model_row *row, struct advice_finding *f)
 {
-    struct judge_limits l =
-        judge_limits_of(m->job, "response-changed", STORED_CHANGED, INFINITY);
+    struct judge_limits l = judge_limits_of(m->job, "response-changed", STORED_CHANGED, INFINITY);
     if (l.off || (isnan(row->changed) && !row->apart))
         return false;
     *f = (struct advice_finding){.check = "response-changed",
@@ -117,11 +118,12 @@ void notes_prediction(const struct model *m, const struct model_row *row, size_t
                  "run '%s' came out as the runs before it predict; sensor '%s' is furthest off",
                  m->job->runs[run].name, sensor_of(m, row));
     else
-        snprintf(f->text, sizeof f->text,
-                 "run '%s' did not come out at sensor '%s' as the runs before it predict: check that "
-                 "the weights, their angles and radii are as the sheet says, and whether the machine "
-                 "or its speed changed",
-                 m->job->runs[run].name, sensor_of(m, row));
+        snprintf(
+            f->text, sizeof f->text,
+            "run '%s' did not come out at sensor '%s' as the runs before it predict: check that "
+            "the weights, their angles and radii are as the sheet says, and whether the machine "
+            "or its speed changed",
+            m->job->runs[run].name, sensor_of(m, row));
 }
 
 bool notes_zone(const struct answer *a, const struct answer_forecast *fc, struct advice_finding *f)

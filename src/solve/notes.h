@@ -1,5 +1,5 @@
-/* notes.h - findings beside the answer: stored responses, runout, a prediction that came true or not,
- * vibration zones. Each gives false where there is nothing to say. */
+/* notes.h - findings beside the answer: stored responses, runout, a prediction that came true or
+ * not, vibration zones. Each gives false where there is nothing to say. */
 #ifndef LOPSIDE_SOLVE_NOTES_H
 #define LOPSIDE_SOLVE_NOTES_H
 

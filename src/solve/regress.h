@@ -26,9 +26,9 @@ struct regress_data {
      * `prior_count` (0: none), no plane twice. A response enters as one more reading: of its effect
      * at the mass that the runs use. */
     size_t prior_count;
-    const size_t *prior_plane;       /* which response */
-    const double complex *prior;     /* SI per kg */
-    const double (*prior_cov)[3];    /* [var re, cov, var im], (SI per kg)^2 */
+    const size_t *prior_plane;    /* which response */
+    const double complex *prior;  /* SI per kg */
+    const double (*prior_cov)[3]; /* [var re, cov, var im], (SI per kg)^2 */
 };
 
 enum regress_error {
@@ -38,15 +38,15 @@ enum regress_error {
     REGRESS_NAN = -3
 };
 
-/* Fits the row. `p` (uninitialised) becomes the posterior, flat where there is no prior, new; its dof is
- * infinite. With rank < unknowns the solution is the shortest one (columns at unit length) and
- * known[] tells which unknowns it determines. */
+/* Fits the row. `p` (uninitialised) becomes the posterior, flat where there is no prior, new; its
+ * dof is infinite. With rank < unknowns the solution is the shortest one (columns at unit length)
+ * and known[] tells which unknowns it determines. */
 int regress_fit(const struct regress_data *data, struct posterior *p)
     __attribute__((warn_unused_result));
 
 /* Rank of [1, x] for these runs where the responses of planes with held[p] are known beforehand
- * (held NULL: none): those count as found; columns at unit length; singular values below 1e-6 of the largest
- * count as zero (a weight is not known to six digits). Negative: an error. */
+ * (held NULL: none): those count as found; columns at unit length; singular values below 1e-6 of
+ * the largest count as zero (a weight is not known to six digits). Negative: an error. */
 int regress_rank(size_t count, size_t planes, const double complex *x, const bool *held)
     __attribute__((warn_unused_result));
 

@@ -76,7 +76,8 @@ static void compare(struct model_row *row, const struct posterior *own, size_t p
             continue;
         posterior_marginal(own, p + 1, cov);
         double away = cabs(own->mean[p + 1] - r->vector);
-        double least = 1e-9 * cabs(r->vector); /* exact ones are known to nine digits, as readings are */
+        double least =
+            1e-9 * cabs(r->vector); /* exact ones are known to nine digits, as readings are */
         double se = sqrt(fmax(cov[0] + cov[2] + r->cov[0] + r->cov[2], least * least));
         if (se > 0 && !(away / se <= row->changed)) {
             row->changed = away / se;

@@ -8,7 +8,8 @@
  * refuses across the runs of a condition. */
 #define STORED_SPEED_APART 0.03
 
-/* Stored and new differ by more than both allow from so many standard errors on (design: checks). */
+/* Stored and new differ by more than both allow from so many standard errors on (design: checks).
+ */
 #define STORED_CHANGED 3.0
 
 /* Finds the job's responses of the row's condition and sensor; row->speed_rpm is set. Fills

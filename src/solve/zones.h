@@ -12,8 +12,8 @@
 #define ZONES_BASIS                                                                                \
     "ISO 20816-3; boundary A/B and displacements from memory: check the current edition"
 
-/* Boundaries A/B, B/C, C/D, rms, SI (m/s, or m with `displacement`): group 1 (above 300 kW) or 2 (15
- * to 300 kW). */
+/* Boundaries A/B, B/C, C/D, rms, SI (m/s, or m with `displacement`): group 1 (above 300 kW) or 2
+ * (15 to 300 kW). */
 void zones_limits(int group, bool flexible, bool displacement, double limits[3]);
 
 /* 'A' to 'D'; a value on a boundary lies in the better zone. '?' for NaN. */

@@ -67,7 +67,7 @@ void compared_print(const struct compared_record *r, const struct job *job, stru
 }
 
 void outcomes_weights(struct line *line, const char *key, const struct job *job,
-                     const struct outcome_weight *items, size_t count)
+                      const struct outcome_weight *items, size_t count)
 {
     line_open(line, key, '[');
     for (size_t i = 0; i < count; i++) {

@@ -15,11 +15,12 @@
 
 /* kind `parts`: the ideal weight of two planes as unbalance (kg m, argument against rotation). */
 struct parts_record {
-    double complex static_part;  /* on both planes alike */
-    double complex couple_part;  /* on the first plane; its opposite on the second */
-    double complex static_alone; /* the best that both planes alike can do, cross effects included */
-    double left_alone, left;     /* root of the expected squared vibration over that of now: with
-                                  * static_alone, with both parts */
+    double complex static_part; /* on both planes alike */
+    double complex couple_part; /* on the first plane; its opposite on the second */
+    double complex
+        static_alone;        /* the best that both planes alike can do, cross effects included */
+    double left_alone, left; /* root of the expected squared vibration over that of now: with
+                              * static_alone, with both parts */
 };
 void parts_print(const struct parts_record *r, const struct job *job, struct line *line);
 
@@ -28,10 +29,10 @@ struct zone_record {
     size_t sensor;
     const char *condition;
     enum quantity quantity;
-    double before, after;   /* rms, SI; after: expected */
+    double before, after; /* rms, SI; after: expected */
     char zone_before, zone_after;
-    double limits[3];       /* rms, SI */
-    bool overall;           /* false: of 1x alone, hence at least */
+    double limits[3]; /* rms, SI */
+    bool overall;     /* false: of 1x alone, hence at least */
     const char *basis;
 };
 void zone_print(const struct zone_record *r, const struct job *job, struct line *line);
@@ -47,13 +48,13 @@ void compared_print(const struct compared_record *r, const struct job *job, stru
 
 struct outcome_weight {
     size_t plane;
-    int position;   /* its number; 0: given by its angle alone */
-    double mass;    /* kg; negative: removed */
+    int position; /* its number; 0: given by its angle alone */
+    double mass;  /* kg; negative: removed */
     double angle_deg;
 };
 /* A list of weights under `key`: plane, position (null where 0), mass, angle_deg, sheet_deg, sense,
  * and the unbalance (kg m), for any other radius. */
 void outcomes_weights(struct line *line, const char *key, const struct job *job,
-                     const struct outcome_weight *items, size_t count);
+                      const struct outcome_weight *items, size_t count);
 
 #endif

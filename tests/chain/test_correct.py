@@ -147,7 +147,7 @@ class Ideal(unittest.TestCase):
     def test_worst_is_optimal_by_linear_programming(self):
         """The largest sensor against the bracket of a linear programme: a disc lies between two polygons."""
         corners = 360
-        for seed in range(6):
+        for seed in range(4):
             planes = 1 + seed % 2
             truth = drawn(100 + seed, 5, planes)
             names = ["L", "R"][:planes]
@@ -185,7 +185,7 @@ class Ideal(unittest.TestCase):
         draw = random.Random(5)
         noise = lambda: 0.02 * complex(draw.gauss(0, 1), draw.gauss(0, 1))
         ours, theirs, said = 0, 0, 0
-        for _ in range(10):
+        for _ in range(8):
             base = [1000, 900 * cmath.exp(0.4j)]
             truth = {s: [-(2 * b) * 0.02, b * (1 + d), b * (1 - d)] for s, b, d in zip("AB", base, (0.05, -0.05))}
             runs = [(n, {s: z + abs(truth[s][0]) * noise() for s, z in r.items()}, w)
@@ -200,7 +200,7 @@ class Ideal(unittest.TestCase):
             ours = max(ours, sum(abs(w) for w in corrections(stream).values()))
             theirs = max(theirs, sum(c["least_squares"][0] for c in chain.kind(stream, "correction")))
         self.assertLess(ours, 1.1 * 0.04)  # 2 x 20 g is what the sure part needs
-        self.assertGreaterEqual(said, 6)
+        self.assertGreaterEqual(said, 5)
         self.assertGreater(theirs, 1.5 * 0.04)  # else the case proves nothing
 
 

@@ -83,8 +83,8 @@ static void set_job(struct desk *d, size_t planes)
     }
 }
 
-/* Plane p is felt most by sensor p, at 40 % by the others; the standard error of a change is that of
- * two readings, 2 SCATTER of as found (root of the complex variance). */
+/* Plane p is felt most by sensor p, at 40 % by the others; the standard error of a change is that
+ * of two readings, 2 SCATTER of as found (root of the complex variance). */
 static void set_truth(struct desk *d, double effect, uint64_t *seed)
 {
     for (size_t s = 0; s < d->job.sensor_count; s++) {
@@ -136,10 +136,8 @@ static void store(struct desk *d, uint64_t *seed)
     for (size_t s = 0; s < d->job.sensor_count; s++) {
         struct job_response *r = &d->stored[d->job.response_count++];
         double variance = 2 * pow(SCATTER * cabs(d->truth[s][0]), 2);
-        *r = (struct job_response){.sensor = s,
-                                   .plane = p,
-                                   .cov = {variance, 0, variance},
-                                   .speed_rpm = RPM};
+        *r = (struct job_response){
+            .sensor = s, .plane = p, .cov = {variance, 0, variance}, .speed_rpm = RPM};
         strcpy(r->condition, "service");
         r->vector = d->truth[s][p + 1] + noise(d, s, seed) + noise(d, s, seed);
     }

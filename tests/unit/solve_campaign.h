@@ -1,4 +1,5 @@
-/* solve_campaign.h - jobs drawn from the model that the solver states, and how often what it says holds.
+/* solve_campaign.h - jobs drawn from the model that the solver states, and how often what it says
+ * holds.
  *
  * Shared by a slice in the unit tests and the full campaign of the bench.
  */
@@ -19,8 +20,8 @@ struct solve_campaign {
 };
 
 struct solve_tally {
-    int ranges, held;      /* forecasts of the next reading */
-    int ellipses, inside;  /* of the least-squares weight */
+    int ranges, held;     /* forecasts of the next reading */
+    int ellipses, inside; /* of the least-squares weight */
 };
 
 /* Draws the jobs, runs readings to forecast through the solver's kernels, adds to the tally. */

@@ -1,5 +1,6 @@
-/* A slice of bench_solve: what readings become, from the model to the forecast, holds as often as it says.
- * Bars of the pooled slice: 93 to 97 %; the seeds are fixed, so that the slice is the same everywhere. */
+/* A slice of bench_solve: what readings become, from the model to the forecast, holds as often as
+ * it says. Bars of the pooled slice: 93 to 97 %; the seeds are fixed, so that the slice is the same
+ * everywhere. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -14,8 +15,13 @@ static struct solve_tally pooled(double least, double most)
     struct solve_tally t = {0};
     for (size_t planes = 1; planes <= 3; planes++)
         for (int kind = 0; kind < 3; kind++) {
-            struct solve_campaign c = {planes, least, most,           kind == 1 ? 2 : 0,
-                                       kind == 2, JOBS,  70 * planes + (size_t)kind};
+            struct solve_campaign c = {planes,
+                                       least,
+                                       most,
+                                       kind == 1 ? 2 : 0,
+                                       kind == 2,
+                                       JOBS,
+                                       70 * planes + (size_t)kind};
             solve_campaign_run(&c, &t);
         }
     print_message("ranges %d of %d, ellipses %d of %d\n", t.held, t.ranges, t.inside, t.ellipses);

@@ -1,4 +1,5 @@
-/* What stands beside the answer: zones, holes, static and couple parts, stored responses, runout. */
+/* What stands beside the answer: zones, holes, static and couple parts, stored responses, runout.
+ */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -24,9 +25,9 @@ static void near(double got, double wanted, double tolerance)
         fail_msg("got %.17g, wanted %.17g +- %.3g", got, wanted, tolerance);
 }
 
-/* ISO 20816-3:2022 (10816-3:2009): B/C and C/D as a fan maker prints them after DIN ISO 10816-3; A/B and
- * displacement from memory. Consistency: velocity over displacement is one crossover frequency a row,
- * about 12.5 Hz for group 1 and 10 Hz for group 2. */
+/* ISO 20816-3:2022 (10816-3:2009): B/C and C/D as a fan maker prints them after DIN ISO 10816-3;
+ * A/B and displacement from memory. Consistency: velocity over displacement is one crossover
+ * frequency a row, about 12.5 Hz for group 1 and 10 Hz for group 2. */
 static void test_zones(void **state)
 {
     (void)state;
@@ -62,8 +63,8 @@ static void test_drill(void **state)
 }
 
 /* The published two-plane turbine rotor (S. S. Rao, Mechanical Vibrations, ch. 9; from memory):
- * 10.0561 g at 325.55 deg and 5.8774 g at 68.26 deg are 5.2364 g at 358.75 deg on both and 6.3573 g at
- * 298.75 deg as a couple (identities of J. J. Yu, 2009). */
+ * 10.0561 g at 325.55 deg and 5.8774 g at 68.26 deg are 5.2364 g at 358.75 deg on both and 6.3573 g
+ * at 298.75 deg as a couple (identities of J. J. Yu, 2009). */
 static void test_parts(void **state)
 {
     (void)state;
@@ -193,7 +194,8 @@ static void test_stored_of_another_speed(void **state)
     model_release(&d.model);
 }
 
-/* The runs tell all: where the stored response differs, it is set aside, and the answer is theirs. */
+/* The runs tell all: where the stored response differs, it is set aside, and the answer is theirs.
+ */
 static void test_stored_that_changed(void **state)
 {
     (void)state;
@@ -206,7 +208,8 @@ static void test_stored_that_changed(void **state)
     struct model_row *row = desk_fit(&d);
     assert_int_equal(row->kept, MODEL_STORED_LEFT);
     assert_int_equal(row->changed_plane, 0);
-    /* distance 1e-3 sqrt 2 over the root of the complex variances: new 4 (0.02 80e-6)^2 / 0.1^2, stored 2e-10 */
+    /* distance 1e-3 sqrt 2 over the root of the complex variances: new 4 (0.02 80e-6)^2 / 0.1^2,
+     * stored 2e-10 */
     double se = sqrt(4 * pow(0.02 * 80e-6 / 0.1, 2) + 2e-10);
     near(row->changed, 1e-3 * sqrt(2) / se, 1e-6 * row->changed);
     near(cabs(row->posterior.mean[1] - EFFECT), 0, 1e-12);
@@ -224,8 +227,8 @@ static void test_stored_that_changed(void **state)
     model_release(&d.model);
 }
 
-/* What three runs predict for the fourth, and how far off it is: scatter of the reading (2 (0.02 80e-6)^2)
- * and of the prediction. */
+/* What three runs predict for the fourth, and how far off it is: scatter of the reading (2 (0.02
+ * 80e-6)^2) and of the prediction. */
 static void test_lookback(void **state)
 {
     (void)state;
@@ -261,7 +264,8 @@ static void test_runout(void **state)
     assert_true(row->runout);
     near(cabs(row->posterior.mean[0] - angle_vector(80e-6, 30)), 0, 1e-12);
     near(cabs(row->posterior.mean[1] - EFFECT), 0, 1e-12);
-    near(row->posterior.cov[0], pow(row->sigma, 2) + 4e-12, 1e-20); /* one error for all: Z0 has it */
+    near(row->posterior.cov[0], pow(row->sigma, 2) + 4e-12,
+         1e-20); /* one error for all: Z0 has it */
     assert_true(notes_runout(&d.model, 0, &f));
     assert_non_null(strstr(f.text, "15.0 um pk at a lag of 250 deg"));
     model_release(&d.model);
