@@ -14,8 +14,9 @@
 #include "sheet/units.h"
 
 #define CHANNELS_MOST 64 /* more are not looked at one by one */
-#define RATE_STAND_IN                                                                              \
-    1e3 /* Hz, where the rate is not known: pulses are found in any unit of time */
+#define COARSE 0.002     /* as in `read`, which wants to be told a rate that is less certain */
+/* Hz, where the rate is not known: pulses are found in any unit of time. */
+#define RATE_STAND_IN 1e3
 
 /* ---- words ---- */
 
@@ -139,7 +140,8 @@ static int list_text(struct channels *channels, const char *path, const struct d
     if (csv_file_open(&file, path, &wish, digest, fault) == STATUS_DONE &&
         make_items(channels, file.layout.width, fault) == STATUS_DONE) {
         channels->text = true;
-        channels->has_rate = !isnan(file.rate_hz);
+        channels->has_rate = !isnan(file.rate_hz) && file.uncertainty <= COARSE;
+        channels->coarse_hz = channels->has_rate ? NAN : file.rate_hz;
         for (size_t i = 0; i < channels->count; i++)
             take_header(channels, &file.layout, i);
         if (file.layout.has_time)
@@ -222,12 +224,15 @@ static void look_for_tacho(struct channels *channels, const char *path)
                                                    .si = 1};
         index[count++] = i;
     }
+    const double rate = channels->has_rate           ? NAN
+                        : isnan(channels->coarse_hz) ? RATE_STAND_IN
+                                                     : channels->coarse_hz;
     const struct recording_wish wish = {.paths = paths,
                                         .path_count = 1,
                                         .columns = columns,
                                         .column_count = count,
                                         .full_scale = NAN,
-                                        .rate_hz = channels->has_rate ? NAN : RATE_STAND_IN,
+                                        .rate_hz = rate,
                                         .csv = {.skip = -1, .time_column = ""}};
     const struct look_tacho tacho = {
         .column = LOOK_EACH, .edge = 1, .marks = 1, .level = NAN, .service_rpm = NAN};
@@ -245,7 +250,7 @@ static void look_for_tacho(struct channels *channels, const char *path)
 
 int channels_find(struct channels *channels, const char *path, struct fault *fault)
 {
-    *channels = (struct channels){.speed_rpm = NAN};
+    *channels = (struct channels){.speed_rpm = NAN, .coarse_hz = NAN};
     if (list(channels, path, fault) == STATUS_DONE)
         look_for_tacho(channels, path);
     else
@@ -256,5 +261,5 @@ int channels_find(struct channels *channels, const char *path, struct fault *fau
 void channels_release(struct channels *channels)
 {
     free(channels->items);
-    *channels = (struct channels){.speed_rpm = NAN};
+    *channels = (struct channels){.speed_rpm = NAN, .coarse_hz = NAN};
 }

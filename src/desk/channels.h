@@ -27,7 +27,8 @@ struct channels {
     struct channels_one *items; /* owned */
     size_t count;
     bool text;        /* a text of columns; else a sound file */
-    bool has_rate;    /* the file tells its rate */
+    bool has_rate;    /* the file tells its rate, */
+    double coarse_hz; /* or its time column does, but not finely enough; NaN: neither */
     double speed_rpm; /* by the tacho's pulses; NaN: unknown */
 };
 

@@ -95,13 +95,18 @@ static void add_recording(const struct outline *o, struct buffer *text)
 {
     const bool sound = !o->channels->text;
     const char *value = sound ? o->answers.full_scale : o->answers.rate;
-    if (!sound && o->channels->has_rate)
+    char about[80];
+    if (!sound && o->channels->has_rate && !is_known(value))
         return;
+    snprintf(about, sizeof about, "there is no time column");
+    if (!isnan(o->channels->coarse_hz))
+        snprintf(about, sizeof about, "the time column says only: about %.4g Hz",
+                 o->channels->coarse_hz);
     add_section(text, "recording", NULL, !is_known(value));
     if (sound)
         add(text, "full scale", value, "10 V", "volts at digital full scale");
     else
-        add(text, "rate", value, "12800 Hz", "there is no time column");
+        add(text, "rate", value, "12800 Hz", o->channels->has_rate ? NULL : about);
 }
 
 static bool is_tacho(const struct outline *o, const struct channels_one *one)

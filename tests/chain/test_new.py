@@ -127,6 +127,16 @@ class New(unittest.TestCase):
         self.assertIn("[sensor Brg _ 2]\nchannel = 4\n", text)
         self.assertNotIn("[sensor t]", text)
 
+    def test_rate_of_a_short_time_column(self):
+        """Times in ms over 0.3 s tell the rate to 0.3 %: `read` wants it said, and so the sheet asks for it."""
+        rows = "".join(f"{i / 1000:.3f};{i % 7};{(i % 20 == 0) * 3}\n" for i in range(300))
+        (self.top / "short.csv").write_text("t;V [mm/s];Pulse\n" + rows)
+        text = self.sheet("short.csv")
+        self.assertRegex(text, r"# rate = 12800 Hz +# the time column says only: about 1000 Hz")
+        self.assertRegex(text, r"channel = Pulse +# guessed: it alone has regular pulses")
+        self.sheet("-o", "job.ini", "--rate", "1 kHz", "--angles", "with", "--radius", "1 m", "short.csv")
+        self.assertEqual(chain.complaint(chain.lopside("check", "job.ini", cwd=self.top)), "")
+
     def test_tacho_is_told_or_left_open(self):
         t = numpy.arange(25600) / 2560
         pulses = ((t * 25) % 1 < 0.05) * 0.8
