@@ -6,7 +6,6 @@
 
 static const size_t COUNT_LEAST = 6;        /* with fewer a correlation says nothing */
 static const double CORRELATION_MOST = 0.9; /* (1+r)/(1-r) = 19: more, and the run has no mean */
-static const double FREEDOM_SHARE = 0.5, FREEDOM_LEAST = 1.5; /* see the header */
 static const double LEVEL = 0.1; /* of the cosine test; see tests/unit/test_average_mean.c */
 static const size_t WANDER_LEAST =
     12; /* blocks; with fewer there is no slow part beside the line */
@@ -44,11 +43,11 @@ static double square(double complex z)
     return creal(z) * creal(z) + cimag(z) * cimag(z);
 }
 
-/* (1+r)/(1-r) of the lag-1 correlation, widened; `power` is the sum of squared deviations. */
+/* (1+r)/(1-r) of the lag-1 correlation; `power` is the sum of squared deviations. */
 static double from_correlation(const double complex *vectors, size_t count, double complex middle,
                                double power)
 {
-    double n = (double)count, sum = 0, r, factor, freedom;
+    double n = (double)count, sum = 0, r;
 
     for (size_t i = 1; i < count; i++)
         sum += creal((vectors[i] - middle) * conj(vectors[i - 1] - middle));
@@ -57,11 +56,7 @@ static double from_correlation(const double complex *vectors, size_t count, doub
         return 1;
     if (r > CORRELATION_MOST)
         r = CORRELATION_MOST;
-    factor = (1 + r) / (1 - r);
-    freedom = FREEDOM_SHARE * n / factor;
-    if (freedom < FREEDOM_LEAST)
-        freedom = FREEDOM_LEAST;
-    return factor * 2 * longrun_f2_point(0.05, freedom) / CHI2_95;
+    return (1 + r) / (1 - r);
 }
 
 /* The power in cosine sum j = 1, 2 ...; those of all j < count add up to the whole. */

@@ -10,10 +10,10 @@
  *
  * The larger of two estimates, both pooled over the two components:
  *  - the lag-1 correlation of the blocks, freed of its small-sample bias (M. G. Kendall, Biometrika
- *    41 (1954) 403-404), where it exceeds one standard error, as f = (1+r)/(1-r), widened by what
- * F(2, 2 nu) is wider than chi-squared: r itself rests on few independent blocks. nu = n/(2 f), at
- * least 1.5, was chosen by the simulation in tests/unit/test_average_mean.c, so that wander nearly
- * as slow as the run (0.8 in 16 blocks) is covered 90 times in 100, too;
+ *    41 (1954) 403-404), where it exceeds one standard error, as
+ *    (1+r)/(1-r). Wander nearly as slow as the run (r = 0.8 in 16 blocks) is covered 83 times in
+ * 100 only; widening it for the few independent blocks would cover it 90 times, but then readings
+ * of ordinary runs with a slight swing are held for so uncertain that corrections shrink;
  *  - the mean power of the first B = 2, 4, 8 (16) cosine sums (E. Lazarus, D. J. Lewis, J. H.
  * Stock, M. W. Watson, J. Bus. Econ. Stat. 36 (2018) 541-559, "EWC"), where it exceeds the power of
  * the rest at the 10 % level of F(2B, 2(n-1-B)), widened by what F(2, 2B) is wider than
