@@ -79,6 +79,35 @@ double forecast_within(double complex mean, const double cov[3], double dof, dou
     return fmin(1, sum / total);
 }
 
+/* The radius between low and high: bisection to come near, then the Illinois variant of regula
+ * falsi (Dowell & Jarratt, BIT 11 (1971) 168-174). */
+static double root_between(double complex mean, const double cov[3], double dof, double p,
+                           double low, double high)
+{
+    double spread = sqrt(cov[0] + cov[2]), x = high;
+    double at_low = forecast_within(mean, cov, dof, low) - p;
+    double at_high = forecast_within(mean, cov, dof, high) - p;
+    int side = 0;
+    for (int i = 0; i < 60 && high - low > 1e-7 * spread; i++) {
+        x = i < 6 ? 0.5 * (low + high) : (low * at_high - high * at_low) / (at_high - at_low);
+        double at = forecast_within(mean, cov, dof, x) - p;
+        if (fabs(at) < 1e-9)
+            break;
+        if (at < 0) {
+            low = x;
+            at_low = at;
+            at_high *= side < 0 ? 0.5 : 1;
+            side = -1;
+        } else {
+            high = x;
+            at_high = at;
+            at_low *= side > 0 ? 0.5 : 1;
+            side = 1;
+        }
+    }
+    return x;
+}
+
 double forecast_quantile(double complex mean, const double cov[3], double dof, double p)
 {
     double spread = sqrt(cov[0] + cov[2]), low = 0, high = cabs(mean) + 4 * spread;
@@ -89,12 +118,5 @@ double forecast_quantile(double complex mean, const double cov[3], double dof, d
     while (forecast_within(mean, cov, dof, high) < p && high < 1e6 * (cabs(mean) + spread))
         high *= 2;
     low = fmax(0, cabs(mean) - 40 * spread);
-    for (int i = 0; i < 60 && high - low > 1e-7 * spread; i++) {
-        double middle = 0.5 * (low + high);
-        if (forecast_within(mean, cov, dof, middle) < p)
-            low = middle;
-        else
-            high = middle;
-    }
-    return 0.5 * (low + high);
+    return root_between(mean, cov, dof, p, low, high);
 }

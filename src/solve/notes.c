@@ -126,6 +126,27 @@ void notes_prediction(const struct model *m, const struct model_row *row, size_t
             m->job->runs[run].name, sensor_of(m, row));
 }
 
+void notes_speed(const struct job *job, const struct slope_match *match, struct advice_finding *f)
+{
+    const struct job_sensor *s = &job->sensors[match->sensor];
+    double w = match->rpm * PI / 30;
+    double shown = cabs(units_convert(match->largest, s->quantity, s->show.quantity, w));
+    char unit[24];
+    *f = (struct advice_finding){.check = "speed-corrected",
+                                 .unit = "",
+                                 .basis = "common practice",
+                                 .run = -1,
+                                 .sensor = (int)match->sensor,
+                                 .value = NAN,
+                                 .limit = NAN};
+    snprintf(
+        f->text, sizeof f->text,
+        "condition '%s': the readings of sensor '%s' are brought to %s rpm by their slope over "
+        "speed within the runs, by %s %s at most; what that costs is in the ranges",
+        match->condition, s->name, judge_figure(match->rpm, 5).text,
+        judge_figure(units_shown(shown, &s->show), 2).text, units_show_text(&s->show, unit));
+}
+
 bool notes_zone(const struct answer *a, const struct answer_forecast *fc, struct advice_finding *f)
 {
     const struct answer_zone *z = &fc->zone;

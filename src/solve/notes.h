@@ -8,6 +8,7 @@
 
 #include "solve/advice.h"
 #include "solve/answer.h"
+#include "solve/slope.h"
 
 /* `response-changed`: the stored responses of a row against its runs. */
 bool notes_stored(const struct model *model, const struct model_row *row,
@@ -19,6 +20,10 @@ bool notes_runout(const struct model *model, size_t sensor, struct advice_findin
 /* `prediction`: a row's reading of run `run` lies `se` standard errors from what was predicted. */
 void notes_prediction(const struct model *model, const struct model_row *row, size_t run, double se,
                       struct advice_finding *finding);
+
+/* `speed-corrected`: readings brought to one speed by the slope within the runs. */
+void notes_speed(const struct job *job, const struct slope_match *match,
+                 struct advice_finding *finding);
 
 /* `zone`: where the sensor's vibration lies, and where it is expected after. */
 bool notes_zone(const struct answer *answer, const struct answer_forecast *forecast,

@@ -32,6 +32,9 @@ struct solve {
     size_t count, room;
     struct vetted_record *ruled; /* owned: vet's rulings, as they came */
     size_t ruled_count, ruled_room;
+    struct slope *slopes; /* owned, runs x sensors: vectors over speed within the runs */
+    struct slope_match *matches; /* owned: readings that were brought to one speed */
+    size_t match_count, match_room;
     struct line line;
     bool said;  /* a refusal of ours says already why there is no correction */
     int status; /* the exit code that the answer calls for */
@@ -97,6 +100,25 @@ static int take_vetted(struct solve *s, const struct record *record)
     return STATUS_DONE;
 }
 
+/* Blocks of a run tell how its vectors follow the speed. */
+static int take_turns(struct solve *s, const struct record *record)
+{
+    struct turns_record r;
+    const char *why;
+    const struct job *job = &s->stream.job;
+    if (turns_parse(&r, job, record->json, &why) != 0) {
+        message("malformed record: %s (turns)", why);
+        return STATUS_USAGE;
+    }
+    int run = job_find_run(job, r.run);
+    for (size_t i = 0; run >= 0 && i < r.count; i++)
+        if (r.sensors[i] >= 0)
+            slope_add(&s->slopes[(size_t)run * job->sensor_count + (size_t)r.sensors[i]],
+                      r.speed_rpm, r.vectors[i]);
+    turns_release(&r);
+    return STATUS_DONE;
+}
+
 static int read_all(struct solve *s)
 {
     struct record record;
@@ -106,6 +128,8 @@ static int read_all(struct solve *s)
             status = take_reading(s, &record);
         else if (!strcmp(record.kind, "vetted"))
             status = take_vetted(s, &record);
+        else if (!strcmp(record.kind, "turns"))
+            status = take_turns(s, &record);
         if (status == STATUS_DONE)
             status = stream_pass(&s->stream, &record);
     }
@@ -140,6 +164,26 @@ static int join(struct solve *s)
         r->use = ruled->use;
         for (int k = 0; k < 3; k++)
             r->cov[k] += ruled->widen[k];
+    }
+    return STATUS_DONE;
+}
+
+/* Readings of slightly different speeds become readings of one, where that helps. */
+static int bring_speeds(struct solve *s)
+{
+    const struct job *job = &s->stream.job;
+    for (size_t i = 0; i < s->count; i++) {
+        const struct model_reading *r = &s->readings[i];
+        bool first = true; /* once a sensor and condition */
+        for (size_t k = 0; k < i && first; k++)
+            first = s->readings[k].sensor != r->sensor ||
+                    strcmp(s->readings[k].condition, r->condition) != 0;
+        if (s->match_count == s->match_room &&
+            !grow((void **)&s->matches, &s->match_room, sizeof *s->matches))
+            return message_no_memory();
+        if (first && slope_bring(job, s->readings, s->count, s->slopes, r->sensor, r->condition,
+                                 &s->matches[s->match_count]))
+            s->match_count++;
     }
     return STATUS_DONE;
 }
@@ -632,7 +676,14 @@ static int conclude(struct solve *s)
     struct advice_next next;
     if (s->stream.job.audit || s->stream.job.run_count == 0) /* an audit: nothing is to be balanced */
         return STATUS_DONE;
-    int status = kernel_status(model_init(&model, &s->stream.job, s->readings, s->count));
+    int status = bring_speeds(s);
+    for (size_t i = 0; i < s->match_count && status == STATUS_DONE; i++) {
+        struct advice_finding f;
+        notes_speed(&s->stream.job, &s->matches[i], &f);
+        status = write_finding(s, &f);
+    }
+    if (status == STATUS_DONE)
+        status = kernel_status(model_init(&model, &s->stream.job, s->readings, s->count));
     if (status != STATUS_DONE)
         return status;
     status = write_responses(s, &model);
@@ -664,13 +715,17 @@ static int conclude(struct solve *s)
 
 static int run(const struct option_list *files)
 {
+    static const char *const makes[] = {"response", "correction", "placement", "forecast",
+                                        "residual", "next",       NULL};
     struct solve s = {.line = LINE_INIT};
     int status = stream_open(&s.stream, files->items, files->count, true);
     if (status != STATUS_DONE) {
         stream_close(&s.stream);
         return status;
     }
-    status = read_all(&s);
+    stream_makes(&s.stream, makes);
+    s.slopes = calloc(s.stream.job.run_count * s.stream.job.sensor_count + 1, sizeof *s.slopes);
+    status = s.slopes ? read_all(&s) : message_no_memory();
     if (status == STATUS_DONE)
         status = join(&s);
     if (status == STATUS_DONE)
@@ -679,6 +734,8 @@ static int run(const struct option_list *files)
         status = stream_finish(&s.stream);
     line_release(&s.line);
     free(s.ruled);
+    free(s.slopes);
+    free(s.matches);
     free(s.readings);
     stream_close(&s.stream);
     return status == STATUS_DONE ? s.status : status;

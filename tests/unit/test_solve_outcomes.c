@@ -16,6 +16,7 @@
 #include "solve/model.h"
 #include "solve/notes.h"
 #include "solve/parts.h"
+#include "solve/slope.h"
 #include "solve/stored.h"
 #include "solve/zones.h"
 
@@ -276,6 +277,62 @@ static void test_runout(void **state)
     model_release(&d.model);
 }
 
+/* A straight line over speed, exact: y = 2 + 3j + (0.5 - 0.25j)(n - 1000); residual variance by
+ * hand where two values of opposite sign stand about it. */
+static void test_slope(void **state)
+{
+    (void)state;
+    struct slope s = {0};
+    double complex shift;
+    double variance;
+    for (int i = 0; i < 20; i++) {
+        double rpm = 1000 + (i % 5), off = i % 2 ? 0.1 : -0.1;
+        slope_add(&s, rpm, CMPLX(2, 3) + CMPLX(0.5, -0.25) * (rpm - 1000) + off);
+        if (i == 14)
+            assert_false(
+                slope_shift(&s, 1000, 1001, &shift, &variance)); /* 15 blocks are too few */
+    }
+    slope_add(&s, NAN, 1);
+    slope_add(&s, 1000, NAN);
+    assert_int_equal(s.count, 20);
+    assert_true(slope_shift(&s, 1002, 1004, &shift, &variance));
+    /* each speed comes twice with +0.1 and twice with -0.1: the line is exact, the residual 20 x
+     * 0.01 */
+    near(cabs(shift - 2 * CMPLX(0.5, -0.25)), 0, 1e-12);
+    near(variance, 4 * (20 * 0.01 / 18) / 40 * 4, 1e-12); /* sxx = 4 (4 + 1 + 0 + 1 + 4) = 40 */
+    assert_false(
+        slope_shift(&s, 1002, 1006.1, &shift, &variance)); /* further than the range of 4 rpm */
+}
+
+static void test_slope_bring(void **state)
+{
+    (void)state;
+    struct desk d;
+    struct slope slopes[3] = {{0}};
+    struct slope_match match;
+    desk_init(&d);
+    for (int r = 0; r < 3; r++) {
+        desk_run(&d, "", 0, 0, 0);
+        d.readings[r].speed_rpm = 1000 + r;
+        d.readings[r].vector = CMPLX(1, 0.1 * r);
+        for (int i = 0; i < 40; i++)
+            slope_add(&slopes[r], 998 + r + i % 5, CMPLX(1, 0.1 * (r + i % 5 - 2)));
+    }
+    assert_true(slope_bring(&d.job, d.readings, 3, slopes, 0, "service", &match));
+    near(match.rpm, 1001, 1e-9);
+    near(match.largest, 0.1, 1e-9);
+    for (int r = 0; r < 3; r++) {
+        near(cabs(d.readings[r].vector - CMPLX(1, 0.1)), 0, 1e-9);
+        near(d.readings[r].speed_rpm, 1001, 1e-9);
+    }
+    assert_false(
+        slope_bring(&d.job, d.readings, 3, slopes, 0, "service", &match)); /* nothing is left */
+    d.readings[2].speed_rpm = 1008; /* too far for one of them: then for none */
+    assert_false(slope_bring(&d.job, d.readings, 3, slopes, 0, "service", &match));
+    near(cabs(d.readings[0].vector - CMPLX(1, 0.1)), 0, 1e-9);
+    assert_false(slope_bring(&d.job, d.readings, 3, slopes, 0, "hot", &match));
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -288,6 +345,8 @@ int main(void)
         cmocka_unit_test(test_stored_that_changed),
         cmocka_unit_test(test_lookback),
         cmocka_unit_test(test_runout),
+        cmocka_unit_test(test_slope),
+        cmocka_unit_test(test_slope_bring),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
