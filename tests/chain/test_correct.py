@@ -13,6 +13,7 @@ import scipy.optimize
 
 import chain
 import test_coast_down
+import test_textbook
 
 SENSES = [("against rotation", "lag"), ("with rotation", "lead")]
 DAY = "against rotation", "lag"
@@ -134,6 +135,33 @@ class Ideal(unittest.TestCase):
             (c,) = chain.kind(stream_of(sheet({"P": []}, runs, angles=angles, phase=phase)), "correction")
             self.assertAlmostEqual(c["mass"], 0.05, delta=1e-6)
             self.assertAlmostEqual(chain.turn(c["sheet_deg"], 145), 0, delta=0.01)
+
+    def test_published_sets_counted_the_other_way(self):
+        """Three planes, eight sensors (test_textbook has where they come from), with rotation and lead: the same figures."""
+        cases = [(test_textbook.FOUND, [], [(31.12991, 331.092), (61.59819, 331.161), (73.35355, 221.289)]),
+                 (test_textbook.EXACT, [], [(12, 40), (7, 200), (15, 310)]),
+                 (test_textbook.FOUND, ["minimise = worst"], [(24.2644, 336.656), (67.9784, 330.966), (67.5743, 225.042)])]
+        for found, aim, want in cases:
+            text = test_textbook.three_planes(found, aim)
+            text = text.replace("angles = against rotation", "angles = with rotation").replace("phase = lag", "phase = lead")
+            got = corrections(stream_of(text))
+            for p, (mass, deg) in enumerate(want):
+                w = chain.weight(mass / 1000, deg)
+                self.assertLess(abs(got[f"P{p + 1}"] - w), 1e-4 * abs(w) * (10 if aim else 1))
+
+    def test_a_weight_at_the_wrong_angle(self):
+        """The right mass d degrees off leaves 2 sin(d/2) of the vibration (well-known table); beyond 60 deg it harms."""
+        truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}
+        mass, deg = polar(-truth["A"][0] / truth["A"][1])
+        for d, left in ((5, 0.0872), (15, 0.2611), (30, 0.5176), (-30, 0.5176), (50, 0.8452), (65, None), (90, None)):
+            text = sheet({"P": [f"positions = {deg + d:.12g} deg", f"stock = {mass * 1000:.12g} g", "pieces = 1"]},
+                         trials(truth, [("P", 0.02, 30)]))
+            stream = stream_of(text, 5 if left is None else 0)
+            if left is None:
+                self.assertEqual(chain.kind(stream, "placement"), [])
+                continue
+            (f,) = chain.kind(stream, "forecast")
+            self.assertAlmostEqual(abs(chain.vector(f["after"])) / abs(chain.vector(f["before"])), left, delta=6e-5)
 
     def test_total_is_least_squares(self):
         for seed in range(4):
