@@ -11,6 +11,11 @@
 #define TOLERANCE_SPREADS 5 /* standard deviations of what the rhythm itself does */
 #define MEMORY 0.1          /* weight of the latest turn in the rhythm's own spread */
 
+/* A rhythm of which about half is not there is a wrong one; a bridged gap of six turns reaches
+ * 0.36. */
+#define ABSENT_MOST 0.45
+#define ABSENT_MEMORY 0.05
+
 #define TURNS_TO_VOTE 8
 
 /* How many times larger a pulse must be than its fellows: one of several marks that was made
@@ -49,26 +54,44 @@ static long place(double since, double period, double tolerance)
 #define SURE_VOTERS 8
 
 struct ballot {
-    double period, score, size;
+    double period, score, size, tolerance;
     size_t start;
 };
 
-/* Follows the voters from `start` with a first period and counts how well that goes. */
-static struct ballot follow(const struct pulse *pulses, size_t count, size_t start, double period)
+/* Of the pulses from i on that may be the same mark, the one nearest to where it is expected. */
+static size_t nearest(const struct pulse *pulses, size_t count, size_t i, double last,
+                      double period, double tolerance)
 {
-    struct ballot ballot = {period, -(double)start, 0, start};
+    long n = place(pulses[i].at - last, period, tolerance);
+    double expected = last + (double)n * period;
+
+    while (i + 1 < count && place(pulses[i + 1].at - last, period, tolerance) == n &&
+           fabs(pulses[i + 1].at - expected) < fabs(pulses[i].at - expected)) {
+        i++;
+    }
+    return i;
+}
+
+/* Follows the voters from `start` with a first period and counts how well that goes. */
+static struct ballot follow(const struct pulse *pulses, size_t count, size_t start, double period,
+                            double tolerance)
+{
+    struct ballot ballot = {period, -(double)start, 0, tolerance, start};
     double last = pulses[start].at, current = period;
     size_t hits = 1;
 
     ballot.size = sieve_size(&pulses[start]);
     for (size_t i = start + 1; i < count; i++) {
-        long n = place(pulses[i].at - last, current, TOLERANCE);
+        long n = place(pulses[i].at - last, current, tolerance);
 
         if (n == 0) {
             ballot.score -= 1;
             continue;
         }
-        ballot.score += 1 - (double)(n - 1);
+        size_t best = nearest(pulses, count, i, last, current, tolerance);
+
+        ballot.score += 1 - (double)(n - 1) - (double)(best - i);
+        i = best;
         current = 0.5 * current + 0.5 * (pulses[i].at - last) / (double)n;
         last = pulses[i].at;
         ballot.size += sieve_size(&pulses[i]);
@@ -95,11 +118,14 @@ static bool vote(const struct marks *marks, struct ballot *best)
 
     for (size_t start = 0; start < 6 && start + 1 < n; start++) {
         for (size_t next = start + 1; next < start + 4 && next < n; next++) {
-            struct ballot ballot = follow(p, n, start, p[next].at - p[start].at);
+            for (int k = 0; k < 2; k++) {
+                struct ballot ballot =
+                    follow(p, n, start, p[next].at - p[start].at, k ? TOLERANCE : TOLERANCE / 2);
 
-            if (!found || better(&ballot, best)) {
-                *best = ballot;
-                found = true;
+                if (!found || better(&ballot, best)) {
+                    *best = ballot;
+                    found = true;
+                }
             }
         }
     }
@@ -155,6 +181,10 @@ static size_t commit(struct marks *marks, struct mark *out)
     double off = period / marks->period - 1;
 
     marks->spread += MEMORY * (off * off - marks->spread);
+    for (long k = 1; k < marks->candidate_turns; k++) {
+        marks->absent += ABSENT_MEMORY * (1 - marks->absent);
+    }
+    marks->absent -= ABSENT_MEMORY * marks->absent;
     marks->period = 0.5 * (marks->period + period);
     marks->last = marks->candidate;
     marks->has_candidate = false;
@@ -186,7 +216,7 @@ static size_t step(struct marks *marks, const struct pulse *pulse, struct mark *
     }
     long n = place(since, marks->period, tolerance(marks));
 
-    if (since > (MARKS_GAP + 0.5) * marks->period ||
+    if (marks->absent > ABSENT_MOST || since > (MARKS_GAP + 0.5) * marks->period ||
         (n == 0 && marks->strays > 8 && since > 3 * marks->period)) {
         *lost = true;
         return given;
@@ -272,7 +302,8 @@ static size_t lock(struct marks *marks, struct mark *out)
     marks->voter_count = 0;
     marks->extra += (long)best.start;
     marks->period = best.period;
-    marks->spread = TOLERANCE / TOLERANCE_SPREADS * (TOLERANCE / TOLERANCE_SPREADS);
+    marks->spread = best.tolerance / TOLERANCE_SPREADS * (best.tolerance / TOLERANCE_SPREADS);
+    marks->absent = 0;
     marks->has_candidate = false;
     marks->strays = 0;
     given = give(marks, voters[best.start].at, 1, out);

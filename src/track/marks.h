@@ -37,6 +37,7 @@ struct marks {
     bool locked;
     double period, last; /* samples; time of the last mark given out */
     double spread;       /* mean square of how far periods were off, as a share */
+    double absent;       /* running share of the marks that did not come */
     bool has_candidate;
     double candidate;          /* the pulse that may become the next mark */
     long candidate_turns;      /* how many periods it lies behind `last` */

@@ -135,6 +135,24 @@ static double rise_time(const struct pulse_finder *finder, const float *x, size_
            crossing(x + k, finder->sign, finder->middle, k > first && k + 2 < (ptrdiff_t)n);
 }
 
+/* The signal fell at x[i]: where did it pass the middle? By a straight line: only widths rest on
+ * it. */
+static double fall_time(const struct pulse_finder *finder, const float *x, size_t i, size_t back)
+{
+    ptrdiff_t k = (ptrdiff_t)i, first = -(ptrdiff_t)back;
+
+    while (k > first && finder->sign * x[k - 1] < finder->middle) {
+        k--;
+    }
+    if (k == first) {
+        return (double)k;
+    }
+    double before = finder->sign * x[k - 1] - finder->middle,
+           after = finder->sign * x[k] - finder->middle;
+
+    return (double)k - 1 + (before > after ? before / (before - after) : 1);
+}
+
 static struct pulse ended(struct pulse_finder *finder, double end)
 {
     return (struct pulse){.at = finder->rose,
@@ -195,11 +213,11 @@ size_t pulse_find(struct pulse_finder *finder, const float *x, size_t n, size_t 
             finder->extreme = y;
             finder->state = ABOVE;
         } else if (finder->state >= ABOVE && y < finder->below) {
+            finder->fell = start + fall_time(finder, x, i, back);
             if (finder->state == ABOVE) {
-                pulses[count++] = ended(finder, start + (double)i);
+                pulses[count++] = ended(finder, finder->fell);
                 learn(finder, finder->extreme, finder->bottom);
             }
-            finder->fell = start + (double)i;
             finder->extreme = y;
             finder->state = BELOW;
         } else if (finder->state == BELOW ? y < finder->extreme : y > finder->extreme) {

@@ -6,8 +6,9 @@
 #include <stdbool.h>
 #include <stddef.h>
 
-#define TONE_LINE_RIVAL 0.5 /* amplitude that makes another line a rival: common sense, no source  \
-                             */
+#define TONE_LINE_RIVAL                                                                            \
+    0.5 /* amplitude that makes another line a rival: common sense, no source                      \
+         */
 
 struct tone_line {
     double hz;

@@ -452,7 +452,7 @@ bool tracker_regular(const struct tracker *tracker)
     double jitter = shaft_jitter(&tracker->shaft);
 
     return tracker->windows.count > 0 && (isnan(jitter) || jitter < JITTER_MOST) &&
-           tracker_pulsed(tracker);
+           tracker->marks.missed <= tracker->marks.count && tracker_pulsed(tracker);
 }
 
 bool tracker_reference(const struct tracker *tracker)

@@ -201,7 +201,8 @@ static void test_window_length(void **unused)
     assert_int_equal(window_length(10000, 400, 400 * 20, false), 4);   /* four turns at least */
     assert_int_equal(window_length(1000, 1000, 0, false), 4);
     assert_int_equal(window_length(10000, 200, 0, true), 13); /* a quarter of a second */
-    assert_int_equal(window_length(10000, 100, 100.0 * 1000000, false), 500); /* two thousand at most */
+    assert_int_equal(window_length(10000, 100, 100.0 * 1000000, false),
+                     500); /* two thousand at most */
 }
 
 /* Every number of turns: whole blocks, the rest in the last one, one turn lost to the two ends. */

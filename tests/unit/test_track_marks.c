@@ -113,7 +113,7 @@ static void tally(const struct wheel *w, int runs, double seconds, int *phased, 
              * and between holes the turns to average over are few */
             double off = cabs(mean(&tracker) - cexp(I * LAG / 360 * TAU));
 
-            bad = bad || off > (holes > 0 ? 0.1 : 0.02);
+            bad = bad || off > (holes > 0 || lost > 0.05 ? 0.1 : 0.02);
             *wrong += bad;
         }
         tracker_release(&tracker);

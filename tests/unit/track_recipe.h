@@ -82,8 +82,15 @@ static inline float *record(const struct recipe *r, size_t *n)
         double v = r->constant + r->amplitude * cos(theta - LAG / 360 * TAU) +
                    r->second * cos(2 * theta - 1);
 
+        double c = cos(theta - 0.3), before = c,
+               now = 2 * c * c - 1; /* cos(k*(theta - 0.3)), k = 1, 2 */
+
         for (int k = 3; r->harmonics > 0 && k <= 10; k++) {
-            v += r->harmonics * cos(k * theta - 0.3 * k);
+            double next = 2 * c * now - before;
+
+            before = now;
+            now = next;
+            v += r->harmonics * now;
         }
         if (r->noise > 0) {
             v += r->noise * signal_normal(&state);
@@ -98,8 +105,8 @@ static inline void track(struct tracker *tracker, const struct recipe *r, const 
                          uint64_t *cuts)
 {
     double rail[2] = {NAN, NAN};
-    struct tracker_set_up set_up = {r->shaft.rate, (double)n, 2,   1,  rail,
-                                    r->edge,       r->marks,  NAN, NAN, NULL, false};
+    struct tracker_set_up set_up = {r->shaft.rate, (double)n, 2,   1,    rail, r->edge,
+                                    r->marks,      NAN,       NAN, NULL, false};
 
     assert_int_equal(tracker_init(tracker, &set_up), 0);
     for (size_t i = 0; i < n;) {
