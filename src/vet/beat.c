@@ -7,6 +7,7 @@
 static const double LEVEL = 0.001;     /* of the test */
 static const double PERIODS_LEAST = 3; /* fewer are a slow wander like any other */
 static const size_t COUNT_LEAST = 12;
+static const double REST_MARGIN = 1.3; /* for blocks that one of the two has set aside */
 static const int OVERSAMPLING = 4; /* of the frequencies: loses 1 % of a line between two at most */
 
 struct straight {
@@ -51,7 +52,7 @@ static double complex line_at(const struct straight *line, const double complex 
 
 struct beat beat_of(const double complex *vectors, const double *t, size_t count)
 {
-    struct beat beat = {NAN, NAN, NAN, NAN};
+    struct beat beat = {NAN, NAN, NAN, NAN, NAN, NAN};
     struct straight line;
     double step, power = 0, most = 0, share, n;
 
@@ -62,12 +63,14 @@ struct beat beat_of(const double complex *vectors, const double *t, size_t count
         return beat;
     step = (t[count - 1] - t[0]) / (n - 1);
     beat.duration = step * n;
+    beat.step = step;
     line = fit(vectors, t, count);
     for (size_t i = 0; i < count; i++)
         power += pow(cabs(rest(&line, vectors, t, i)), 2) / n;
     if (isnan(power))
         return beat;
     beat.swing = 0;
+    beat.rest = sqrt(power);
     for (int k = -OVERSAMPLING * (int)count / 2; k <= OVERSAMPLING * (int)count / 2; k++) {
         double f = k / (OVERSAMPLING * beat.duration), size;
         if (fabs(f) * beat.duration < PERIODS_LEAST)
@@ -92,7 +95,12 @@ struct beat beat_join(const struct beat *measured, struct beat own)
 {
     struct beat joined = *measured;
 
+    double y = PI * own.step / measured->period;
+
     if (isnan(measured->swing) || !(own.duration > 0))
+        return own;
+    /* Of a swing to and fro the root mean square is 0.71 of its size. */
+    if (measured->swing * fabs(sin(y) / y) / sqrt(2) > REST_MARGIN * own.rest)
         return own;
     joined.duration = own.duration;
     return joined;

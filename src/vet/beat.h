@@ -12,6 +12,8 @@ struct beat {
                         1x - f; NaN: the swing does not turn one way, or it is not known which */
     double period;   /* s */
     double duration; /* s, from the first block to the last, ends included */
+    double step;     /* s, a block */
+    double rest;     /* root mean square of the vectors, mean and trend taken off */
 };
 
 /* The largest line in `count` block vectors at times t (s, ascending, about evenly spaced), their
@@ -25,7 +27,9 @@ struct beat beat_of(const double complex *vectors, const double *t, size_t count
 
 #define BEAT_COUNT_MOST 512
 
-/* A beat that was measured elsewhere, with the duration of `own`; `own` where there is none. */
+/* A beat that was measured elsewhere, with the duration of `own`; `own` where there is none, and
+ * where the block vectors do not scatter enough for it, averaging over a block allowed for (a swing
+ * of two blocks a period can be any size in a fit of both its senses). */
 struct beat beat_join(const struct beat *measured, struct beat own);
 
 /* What the swing leaves in the mean, as a variance per component: that of a turning vector's mean

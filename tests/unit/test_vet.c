@@ -208,7 +208,8 @@ static void a_beat_is_judged(void **state)
     (void)state;
     for (size_t i = 0; i < 4; i++) {
         vet_desk_set();
-        desk.readings[1][0].beat = (struct beat){figures[i].value / 100 * 7e-3, 0.2, 5, 30};
+        desk.readings[1][0].beat =
+            (struct beat){figures[i].value / 100 * 7e-3, 0.2, 5, 30, 1, 7e-3};
         vet_desk_vectors(1);
         assert_int_equal(vet_desk_ruled(CHECK_BEAT, 1, 0), figures[i].expected);
         assert_int_equal(desk.readings[1][0].use, figures[i].expected != RULING_REFUSE);

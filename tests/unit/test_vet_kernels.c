@@ -129,12 +129,30 @@ static void beats(void **state)
  * two components. */
 static void what_a_beat_leaves(void **state)
 {
-    struct beat beat = {2, -0.25, 4, 20};
+    struct beat beat = {2, -0.25, 4, 20, 1, 1.5};
 
     (void)state;
     near(beat_variance(&beat), pow(2 / (3.14159265358979 * 5), 2) / 2, 1e-12);
     beat.swing = 0;
     near(beat_variance(&beat), 0, 0);
+}
+
+/* A swing to and fro of size 2 has the root mean square 1.41, less what a block averages away. */
+static void a_beat_from_elsewhere(void **state)
+{
+    struct beat own = {0, NAN, NAN, 20, 1, 1.3}, measured = {2, NAN, 8, NAN, NAN, NAN};
+
+    (void)state;
+    near(beat_join(&measured, own).swing, 2, 0);
+    near(beat_join(&measured, own).duration, 20, 0);
+    own.rest = 0.5; /* the blocks do not scatter that much */
+    near(beat_join(&measured, own).swing, 0, 0);
+    own.rest = 1.3;
+    measured.swing = NAN;
+    near(beat_join(&measured, own).swing, 0, 0);
+    measured.swing = 0; /* looked for, and not found */
+    own.swing = 1;
+    near(beat_join(&measured, own).swing, 0, 0);
 }
 
 static int answer(const bool *usable, const bool *in_aim, bool named)
@@ -189,9 +207,13 @@ static void ranks(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(effects),      cmocka_unit_test(lines_of_a_spectrum),
-        cmocka_unit_test(beats),        cmocka_unit_test(what_a_beat_leaves),
-        cmocka_unit_test(what_is_left), cmocka_unit_test(ranks),
+        cmocka_unit_test(effects),
+        cmocka_unit_test(lines_of_a_spectrum),
+        cmocka_unit_test(beats),
+        cmocka_unit_test(what_a_beat_leaves),
+        cmocka_unit_test(a_beat_from_elsewhere),
+        cmocka_unit_test(what_is_left),
+        cmocka_unit_test(ranks),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
