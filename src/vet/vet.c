@@ -206,10 +206,13 @@ static void take_steady(struct vet_reading *to, const struct steady *steady)
     to->step_s = steady->step_s;
     /* A beat that was measured on all blocks; turning as the neighbour does, where that is known.
      */
-    to->beat =
-        (struct beat){steady->beat_pct / 100 * to->amplitude,
-                      isnan(steady->neighbour_hz) ? NAN : to->speed_rpm / 60 - steady->neighbour_hz,
-                      steady->beat_s, NAN};
+    to->beat = (struct beat){
+        .swing = steady->beat_pct / 100 * to->amplitude,
+        .turning = isnan(steady->neighbour_hz) ? NAN : to->speed_rpm / 60 - steady->neighbour_hz,
+        .period = steady->beat_s,
+        .duration = NAN,
+        .step = NAN,
+        .rest = NAN};
 }
 
 static int add_reading(struct vet *v, const struct record *record)
