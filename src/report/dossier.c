@@ -19,12 +19,15 @@ void dossier_release(struct dossier *dossier)
         turns_release(&dossier->turns.items[i]);
     for (size_t i = 0; i < dossier->spectra.count; i++)
         spectrum_release(&dossier->spectra.items[i]);
+    for (size_t i = 0; i < dossier->curves.count; i++)
+        curve_release(&dossier->curves.items[i]);
     free(dossier->runs.items);
     free(dossier->readings.items);
     free(dossier->tachos.items);
     free(dossier->channels.items);
     free(dossier->turns.items);
     free(dossier->spectra.items);
+    free(dossier->curves.items);
     free(dossier->vetted.items);
     free(dossier->findings.items);
     free(dossier->responses.items);
@@ -119,6 +122,14 @@ static int add_spectrum(struct dossier *d, const json_t *json, const char **why)
     ADD(d->spectra, r, spectrum_parse(r, d->job, json, why));
 }
 
+static int add_curve(struct dossier *d, const json_t *json, const char **why)
+{
+    struct curve_record *r;
+    if (!d->keep_traces)
+        return 0;
+    ADD(d->curves, r, curve_parse(r, d->job, json, why));
+}
+
 static int add_vetted(struct dossier *d, const json_t *json, const char **why)
 {
     struct vetted_record *r;
@@ -193,20 +204,11 @@ int dossier_add(struct dossier *dossier, const json_t *json, const char *bytes, 
         const char *kind;
         int (*add)(struct dossier *, const json_t *, const char **);
     } kinds[] = {
-        {"run", add_run},
-        {"reading", add_reading},
-        {"tacho", add_tacho},
-        {"channel", add_channel},
-        {"turns", add_turns},
-        {"spectrum", add_spectrum},
-        {"vetted", add_vetted},
-        {"finding", add_finding},
-        {"response", add_response},
-        {"correction", add_correction},
-        {"placement", add_placement},
-        {"forecast", add_forecast},
-        {"residual", add_residual},
-        {"next", add_next},
+        {"run", add_run},           {"reading", add_reading},       {"tacho", add_tacho},
+        {"channel", add_channel},   {"turns", add_turns},           {"spectrum", add_spectrum},
+        {"curve", add_curve},       {"vetted", add_vetted},         {"finding", add_finding},
+        {"response", add_response}, {"correction", add_correction}, {"placement", add_placement},
+        {"forecast", add_forecast}, {"residual", add_residual},     {"next", add_next},
     };
     const char *kind = json_string_value(json_object_get(json, "kind"));
     if (!kind) {
@@ -251,7 +253,7 @@ static void judge(struct dossier *d, const struct vetted_record *vetted)
 {
     for (size_t i = 0; i < d->readings.count; i++) {
         struct dossier_reading *item = &d->readings.items[i];
-        if (item->reading.sensor != vetted->sensor || strcmp(item->reading.run, vetted->run) != 0)
+        if (!vetted_is_of(vetted, &item->reading))
             continue;
         item->judged = true;
         item->use = item->use && vetted->use;

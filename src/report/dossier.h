@@ -42,7 +42,7 @@ struct dossier_line { /* one record's original bytes, without its newline, in `t
 struct dossier {
     const struct job *job; /* borrowed */
     bool keep_lines;       /* set before the first record: keep the original bytes */
-    bool keep_traces;      /* set before: keep turns and spectra, for drawings */
+    bool keep_traces;      /* set before: keep turns, spectra and curves, for drawings */
 
     DOSSIER_LIST(dossier_run) runs;         /* the sheet's order, then that of arrival */
     DOSSIER_LIST(dossier_reading) readings; /* by run, then as they came */
@@ -50,6 +50,7 @@ struct dossier {
     DOSSIER_LIST(channel_record) channels;
     DOSSIER_LIST(turns_record) turns;
     DOSSIER_LIST(spectrum_record) spectra;
+    DOSSIER_LIST(curve_record) curves;
     DOSSIER_LIST(vetted_record) vetted;
     DOSSIER_LIST(finding_record) findings;
     DOSSIER_LIST(response_record) responses;

@@ -8,6 +8,8 @@
 #include "base/options.h"
 #include "base/status.h"
 #include "report/dossier.h"
+#include "report/draw.h"
+#include "report/html.h"
 #include "report/text.h"
 #include "report/tidy.h"
 #include "report/whole.h"
@@ -69,7 +71,13 @@ static int render(const struct stream *stream, const struct dossier *dossier, in
     struct buffer out = BUFFER_INIT;
     if (form == FORM_JSON)
         return write_whole(stream, dossier);
-    if (form == FORM_CSV)
+    size_t length = 0;
+    const char *job = stream_job_line(stream, &length);
+    if (form == FORM_HTML)
+        html_write(dossier, job, length, &out);
+    else if (form == FORM_SVG)
+        draw_file(dossier, (enum draw_what)what, &out);
+    else if (form == FORM_CSV)
         tidy_write(dossier, what == WHAT_NOT_GIVEN ? TIDY_READINGS : (enum tidy_what)what, &out);
     else
         text_write(dossier, &out);
@@ -78,27 +86,43 @@ static int render(const struct stream *stream, const struct dossier *dossier, in
     return status;
 }
 
-static int validate(int form, int what)
+static int find(const char *const *names, const char *name)
 {
-    int status = STATUS_DONE;
-    if (form == FORM_HTML || form == FORM_SVG) {
-        message("this version makes no such report: '%s' (--as text, csv or json)", forms[form]);
-        status = STATUS_USAGE;
+    for (int i = 0; names[i]; i++) {
+        if (strcmp(names[i], name) == 0)
+            return i;
     }
-    if (what != WHAT_NOT_GIVEN && form != FORM_CSV) {
-        message("--what chooses a table, so it needs --as csv: '%s'", tidy_names[what]);
-        status = STATUS_USAGE;
+    return WHAT_NOT_GIVEN;
+}
+
+/* Turns --what into the index of the form's own list. */
+static int validate(int form, const char *name, int *what)
+{
+    if (form != FORM_CSV && form != FORM_SVG) {
+        if (!name)
+            return STATUS_DONE;
+        message("--what chooses a table or a picture, so it needs --as csv or svg: '%s'", name);
+        return STATUS_USAGE;
     }
-    return status;
+    if (!name && form == FORM_SVG) {
+        message("a picture must be named: --what polar, plane, time, spectrum or speed");
+        return STATUS_USAGE;
+    }
+    *what = name ? find(form == FORM_CSV ? tidy_names : draw_names, name) : WHAT_NOT_GIVEN;
+    if (!name || *what != WHAT_NOT_GIVEN)
+        return STATUS_DONE;
+    message("no such %s: '%s'", form == FORM_CSV ? "table" : "picture", name);
+    return STATUS_USAGE;
 }
 
 int stage_report(int argc, char **argv)
 {
     int form = FORM_TEXT, what = WHAT_NOT_GIVEN;
+    const char *name = NULL;
     const struct option options[] = {
         {"as", 0, OPTION_CHOICE, "FORM", "text", 0, 0, forms, "what to make", &form},
-        {"what", 0, OPTION_CHOICE, "TABLE", "readings", 0, 0, tidy_names, "the table of --as csv",
-         &what},
+        {"what", 0, OPTION_TEXT, "NAME", NULL, 0, 0, NULL,
+         "the table of --as csv, or the picture of --as svg", &name},
         {0},
     };
     const struct usage usage = {
@@ -125,13 +149,14 @@ int stage_report(int argc, char **argv)
     case OPTIONS_GO:
         break;
     }
-    status = validate(form, what);
+    status = validate(form, name, &what);
     if (status != STATUS_DONE) {
         option_list_release(&files);
         return status;
     }
     dossier_init(&dossier, &stream.job);
     dossier.keep_lines = form == FORM_JSON;
+    dossier.keep_traces = form == FORM_HTML || form == FORM_SVG;
     status = stream_open(&stream, files.items, files.count, false);
     if (status == STATUS_DONE)
         status = collect(&stream, &dossier);

@@ -62,7 +62,7 @@ static bool is_removed(const struct dossier *d, const struct placement_record *p
 
 /* Pieces in stock have their nominal mass; where any mass may be cut, the ideal weight's 95 % half
  * width (kg) says to which digit it deserves to be. NaN: nominal. */
-static double free_half(const struct dossier *d, int plane)
+double text_answer_free_half(const struct dossier *d, int plane)
 {
     if (plane < 0 || (size_t)plane >= d->job->plane_count || d->job->planes[plane].stock_count > 0)
         return NAN;
@@ -89,7 +89,7 @@ static void placement(const struct dossier *d, size_t number, const struct place
 
     text = (struct buffer)BUFFER_INIT;
     buffer_text(&text, removed ? "remove " : "fit ");
-    phrase_mass(&text, d->job, fabs(p->mass), free_half(d, p->plane));
+    phrase_mass(&text, d->job, fabs(p->mass), text_answer_free_half(d, p->plane));
     if (!removed) {
         buffer_text(&text, " ");
         phrase_pieces(&text, d->job, p->pieces, p->piece_count);
@@ -196,22 +196,24 @@ void text_answer_now(const struct dossier *dossier, struct buffer *out)
     }
 }
 
+const char *const text_answer_cautions[] = {
+    "Isolate and lock out the drive before anybody reaches into the machine.",
+    "Each fixing must hold its weight's force, and more at overspeed: it grows with the square "
+    "of speed.",
+    "Nobody stands in the plane of rotation at the start.",
+    "Agree beforehand at which vibration the start is broken off.",
+    "Never balance over a crack, a rub, looseness or build-up: find and mend it first.",
+    "Local codes and the site's licensed engineer decide.",
+    NULL,
+};
+
 void text_answer_safety(const struct dossier *dossier, struct buffer *out)
 {
-    static const char *const cautions[] = {
-        "Isolate and lock out the drive before anybody reaches into the machine.",
-        "Each fixing must hold its weight's force, and more at overspeed: it grows with the square "
-        "of speed.",
-        "Nobody stands in the plane of rotation at the start.",
-        "Agree beforehand at which vibration the start is broken off.",
-        "Never balance over a crack, a rub, looseness or build-up: find and mend it first.",
-        "Local codes and the site's licensed engineer decide.",
-    };
     if (dossier->placements.count == 0 && !step_is(dossier, "trial"))
         return;
     paper_heading(out, "BEFORE FITTING");
-    for (size_t i = 0; i < sizeof cautions / sizeof *cautions; i++)
-        paper_say(out, 2, 4, "- %s", cautions[i]);
+    for (size_t i = 0; text_answer_cautions[i]; i++)
+        paper_say(out, 2, 4, "- %s", text_answer_cautions[i]);
 }
 
 static void half_text(struct buffer *out, const struct job *job, double kg, const double half[2])
@@ -301,7 +303,7 @@ static void forecast_row(const struct dossier *d, const struct forecast_record *
     table_cell(table, "%s", digits_chance(chance, f->chance));
 }
 
-void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
+void text_answer_forecast_table(const struct dossier *dossier, struct table *table)
 {
     static const struct table_column columns[] = {
         {"sensor", false, true},
@@ -312,13 +314,18 @@ void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
         {"target", true, false},
         {"chance", true, false},
     };
+    bool single = one_condition(dossier);
+    table_init(table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < dossier->forecasts.count; i++)
+        forecast_row(dossier, &dossier->forecasts.items[i], single, table);
+}
+
+void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
+{
+    struct table table;
     if (dossier->forecasts.count == 0)
         return;
-    struct table table;
-    bool single = one_condition(dossier);
-    table_init(&table, columns, sizeof columns / sizeof *columns);
-    for (size_t i = 0; i < dossier->forecasts.count; i++)
-        forecast_row(dossier, &dossier->forecasts.items[i], single, &table);
+    text_answer_forecast_table(dossier, &table);
     paper_heading(out, dossier->placements.count > 0
                            ? "FORECAST: 1x amplitudes with the weights above fitted"
                            : "FORECAST: 1x amplitudes with nothing fitted");
@@ -335,30 +342,35 @@ static const char *within(const struct residual_record *r)
     return isnan(r->after_95) || r->after_95 <= r->permissible ? "met" : "met, not surely";
 }
 
-void text_answer_tolerance(const struct dossier *dossier, struct buffer *out)
+void text_answer_tolerance_table(const struct dossier *dossier, struct table *table)
 {
     static const struct table_column columns[] = {
         {"plane", false, true},      {"unit", false, false},      {"before", true, false},
         {"after", true, false},      {"95 % below", true, false}, {"permissible", true, false},
         {"tolerance", false, false},
     };
-    if (dossier->residuals.count == 0)
-        return;
-    struct table table;
-    table_init(&table, columns, sizeof columns / sizeof *columns);
+    table_init(table, columns, sizeof columns / sizeof *columns);
     for (size_t i = 0; i < dossier->residuals.count; i++) {
         const struct residual_record *r = &dossier->residuals.items[i];
         double half = shown_unbalance(dossier->job, r->after_95 - r->after);
         double values[4] = {r->before, r->after, r->after_95, r->permissible};
-        table_cell(&table, "%s", dossier_plane(dossier, r->plane));
-        table_cell(&table, "%s", shown_unbalance_unit(dossier->job));
+        table_cell(table, "%s", dossier_plane(dossier, r->plane));
+        table_cell(table, "%s", shown_unbalance_unit(dossier->job));
         for (int v = 0; v < 4; v++) {
             char text[DIGITS_ROOM];
             double value = shown_unbalance(dossier->job, values[v]);
-            table_cell(&table, "%s", digits_text(text, value, v < 3 ? half : NAN));
+            table_cell(table, "%s", digits_text(text, value, v < 3 ? half : NAN));
         }
-        table_cell(&table, "%s", within(r));
+        table_cell(table, "%s", within(r));
     }
+}
+
+void text_answer_tolerance(const struct dossier *dossier, struct buffer *out)
+{
+    struct table table;
+    if (dossier->residuals.count == 0)
+        return;
+    text_answer_tolerance_table(dossier, &table);
     paper_heading(out, "TOLERANCE: estimated residual unbalance");
     table_print(&table, 2, out);
     if (dossier->residuals.items[0].basis[0])

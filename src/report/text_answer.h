@@ -4,6 +4,7 @@
 
 #include "base/buffer.h"
 #include "report/dossier.h"
+#include "report/table.h"
 
 void text_answer_now(const struct dossier *dossier,
                      struct buffer *out); /* WHAT TO DO NOW, or why not */
@@ -12,5 +13,15 @@ void text_answer_safety(const struct dossier *dossier,
 void text_answer_ideal(const struct dossier *dossier, struct buffer *out); /* corrections */
 void text_answer_forecast(const struct dossier *dossier, struct buffer *out);
 void text_answer_tolerance(const struct dossier *dossier, struct buffer *out);
+
+/* What must be said wherever a weight is to be fitted; NULL at the end. */
+extern const char *const text_answer_cautions[];
+
+/* 95 % half width (kg) to which a placed mass is worth stating; NaN: pieces, nominal. */
+double text_answer_free_half(const struct dossier *d, int plane);
+
+/* The tables alone, to be printed and released by the caller. */
+void text_answer_forecast_table(const struct dossier *dossier, struct table *table);
+void text_answer_tolerance_table(const struct dossier *dossier, struct table *table);
 
 #endif

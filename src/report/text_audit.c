@@ -91,22 +91,27 @@ static void unreadable_row(const struct finding_record *f, struct table *table)
     table_cell(table, "UNREAD");
 }
 
-void text_audit_table(const struct dossier *dossier, struct buffer *out)
+void text_audit_rows(const struct dossier *dossier, struct table *table)
 {
     static const struct table_column columns[] = {
         {"recording", false, true},    {"sensor", false, true}, {"rpm", true, false},
         {"1x amplitude", true, false}, {"lag", true, false},    {"sd%", true, false},
         {"deg", true, false},          {"drift", true, false},  {"verdict", false, false},
     };
-    struct table table;
-    table_init(&table, columns, sizeof columns / sizeof *columns);
-    table.gap = 1;
+    table_init(table, columns, sizeof columns / sizeof *columns);
+    table->gap = 1;
     for (size_t i = 0; i < dossier->readings.count; i++)
-        audit_row(dossier, &dossier->readings.items[i], &table);
+        audit_row(dossier, &dossier->readings.items[i], table);
     for (size_t i = 0; i < dossier->findings.count; i++) {
         if (is_unreadable(&dossier->findings.items[i]))
-            unreadable_row(&dossier->findings.items[i], &table);
+            unreadable_row(&dossier->findings.items[i], table);
     }
+}
+
+void text_audit_table(const struct dossier *dossier, struct buffer *out)
+{
+    struct table table;
+    text_audit_rows(dossier, &table);
     if (table.cell_count > 0) {
         paper_heading(out, "READINGS");
         paper_say(

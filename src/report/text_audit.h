@@ -5,8 +5,11 @@
 
 #include "base/buffer.h"
 #include "report/dossier.h"
+#include "report/table.h"
 
 void text_audit_summary(const struct dossier *dossier, struct buffer *out);
+/* The table alone, to be printed and released by the caller. */
+void text_audit_rows(const struct dossier *dossier, struct table *table);
 void text_audit_table(const struct dossier *dossier, struct buffer *out);
 
 #endif

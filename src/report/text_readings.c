@@ -67,36 +67,39 @@ static bool same_group(const struct dossier_reading *a, const struct dossier_rea
            strcmp(a->reading.condition, b->reading.condition) == 0;
 }
 
-static void group_heading(const struct dossier *d, const struct reading_record *r,
-                          struct buffer *out)
+void text_readings_group_heading(const struct dossier *d, const struct reading_record *r,
+                                 struct buffer *text)
 {
-    struct buffer text = BUFFER_INIT;
     char speed[DIGITS_ROOM];
     int run = job_find_run(d->job, r->run);
-    buffer_format(&text, "Run '%s': ", r->run);
+    buffer_format(text, "Run '%s': ", r->run);
     if (run >= 0) {
-        phrase_weights(&text, d->job, (size_t)run);
-        buffer_text(&text, "; ");
+        phrase_weights(text, d->job, (size_t)run);
+        buffer_text(text, "; ");
     }
-    buffer_format(&text, "%s rpm", shown_speed(speed, r->speed_rpm));
+    buffer_format(text, "%s rpm", shown_speed(speed, r->speed_rpm));
     if (strcmp(r->condition, "service") != 0)
-        buffer_format(&text, "; condition '%s'", r->condition);
+        buffer_format(text, "; condition '%s'", r->condition);
     if (run >= 0 && d->job->runs[run].when[0])
-        buffer_format(&text, "; %s", d->job->runs[run].when);
-    if (text.failed)
-        out->failed = 1;
-    else
-        paper_wrap(out, 2, 4, text.bytes);
-    buffer_release(&text);
+        buffer_format(text, "; %s", d->job->runs[run].when);
 }
 
-void text_readings_all(const struct dossier *dossier, struct buffer *out)
+size_t text_readings_group(const struct dossier *dossier, size_t i, struct table *table)
 {
     static const struct table_column columns[] = {
         {"sensor", false, true}, {"1x amplitude", true, false}, {"+/-", true, false},
         {"lag", true, false},    {"+/-", true, false},          {"turns/blocks", true, false},
         {"use", false, false},
     };
+    const struct dossier_reading *first = &dossier->readings.items[i];
+    table_init(table, columns, sizeof columns / sizeof *columns);
+    for (; i < dossier->readings.count && same_group(first, &dossier->readings.items[i]); i++)
+        reading_row(dossier, &dossier->readings.items[i], table);
+    return i;
+}
+
+void text_readings_all(const struct dossier *dossier, struct buffer *out)
+{
     if (dossier->readings.count == 0)
         return;
     paper_heading(out, "READINGS");
@@ -105,12 +108,15 @@ void text_readings_all(const struct dossier *dossier, struct buffer *out)
               "peak. +/- is the 95 %% half width of one reading; what differs from run to "
               "run is not in it.");
     for (size_t i = 0; i < dossier->readings.count;) {
-        const struct dossier_reading *first = &dossier->readings.items[i];
         struct table table;
-        table_init(&table, columns, sizeof columns / sizeof *columns);
-        for (; i < dossier->readings.count && same_group(first, &dossier->readings.items[i]); i++)
-            reading_row(dossier, &dossier->readings.items[i], &table);
-        group_heading(dossier, &first->reading, out);
+        struct buffer text = BUFFER_INIT;
+        text_readings_group_heading(dossier, &dossier->readings.items[i].reading, &text);
+        if (text.failed)
+            out->failed = 1;
+        else
+            paper_wrap(out, 2, 4, text.bytes);
+        buffer_release(&text);
+        i = text_readings_group(dossier, i, &table);
         table_print(&table, 4, out);
         table_release(&table);
     }
@@ -135,25 +141,33 @@ static void response_row(const struct dossier *d, const struct response_record *
     vector_cells(table, &s, unit);
 }
 
-void text_readings_responses(const struct dossier *dossier, struct buffer *out)
+double text_readings_response_table(const struct dossier *dossier, struct table *table)
 {
     static const struct table_column columns[] = {
         {"sensor", false, true},       {"plane", false, true}, {"condition", false, true},
         {"1x amplitude", true, false}, {"+/-", true, false},   {"lag", true, false},
         {"+/-", true, false},
     };
-    if (dossier->responses.count == 0)
-        return;
     bool us = dossier->job->units == UNITS_US;
     double mass = us ? 0.45359237 / 16 : 0.1; /* kg: one ounce, or 100 g */
-    struct table table;
-    table_init(&table, columns, sizeof columns / sizeof *columns);
+    table_init(table, columns, sizeof columns / sizeof *columns);
     for (size_t i = 0; i < dossier->responses.count; i++)
-        response_row(dossier, &dossier->responses.items[i], mass, &table);
+        response_row(dossier, &dossier->responses.items[i], mass, table);
+    return mass;
+}
+
+void text_readings_responses(const struct dossier *dossier, struct buffer *out)
+{
+    struct table table;
+    struct buffer mass = BUFFER_INIT;
+    if (dossier->responses.count == 0)
+        return;
+    phrase_mass(&mass, dossier->job, text_readings_response_table(dossier, &table), NAN);
     paper_heading(out, "RESPONSES");
     paper_say(out, 2, 2,
               "What %s at the mark (0 deg %s) at the plane's radius adds to the vibration.",
-              us ? "1 oz" : "100 g", job_sense_text(dossier->job));
+              mass.failed ? "" : mass.bytes, job_sense_text(dossier->job));
+    buffer_release(&mass);
     table_print(&table, 2, out);
     table_release(&table);
 }

@@ -37,7 +37,7 @@ foreach(name balance refused unsolved trial audit nasty)
     endif()
   endforeach()
 endforeach()
-foreach(arguments "--as;html" "--as;svg" "--what;readings" "--as;csv;--what;nothing")
+foreach(arguments "--as;svg" "--as;svg;--what;readings" "--what;readings" "--as;csv;--what;nothing")
   execute_process(COMMAND "${LOPSIDE}" report ${arguments} "${GOLDEN}/report-balance.jsonl"
                   OUTPUT_VARIABLE printed ERROR_VARIABLE said RESULT_VARIABLE code)
   if(NOT code EQUAL 2 OR NOT "${printed}" STREQUAL "" OR NOT said MATCHES "^lopside report: [^\n]*\n$")

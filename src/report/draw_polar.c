@@ -1,0 +1,231 @@
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "base/angle.h"
+#include "report/draw.h"
+#include "report/shown.h"
+#include "report/text_readings.h"
+#include "sheet/units.h"
+
+#define WIDE 430.0
+#define MIDDLE_X 215.0
+#define MIDDLE_Y 190.0
+#define RIM 150.0
+#define LINE 15.0 /* of the legend */
+
+struct polar {
+    const struct dossier *d;
+    const struct job_sensor *sensor;
+    size_t index;
+    const char *condition;
+    double scale; /* pixels per shown unit */
+    double most;  /* shown units at the rim */
+    struct buffer *out;
+};
+
+static bool is_here(const struct polar *p, const struct dossier_reading *r)
+{
+    return (size_t)r->reading.sensor == p->index && r->reading.has_phase &&
+           strcmp(r->reading.condition, p->condition) == 0;
+}
+
+static bool forecast_here(const struct polar *p, const struct forecast_record *f)
+{
+    return f->sensor == (int)p->index && strcmp(f->condition, p->condition) == 0;
+}
+
+static struct svg_point place(const struct polar *p, double complex z, double rpm)
+{
+    struct shown s = shown_vector(z, NULL, p->sensor->quantity, rpm, &p->sensor->show, NAN);
+    return draw_plane_at(p->d->job, MIDDLE_X, MIDDLE_Y, s.amplitude * p->scale, s.lag_deg);
+}
+
+static double peak(const struct polar *p, double amplitude, double rpm)
+{
+    return shown_amplitude(amplitude, NAN, p->sensor->quantity, rpm, &p->sensor->show).amplitude;
+}
+
+/* 1, 2 or 5 times a power of ten, at least `most`. */
+static double rim(double most)
+{
+    double power = pow(10, floor(log10(most)));
+    double steps[] = {1, 1.5, 2, 3, 4, 5, 6, 8, 10};
+    for (size_t i = 0; i < sizeof steps / sizeof *steps; i++) {
+        if (steps[i] * power >= most)
+            return steps[i] * power;
+    }
+    return 10 * power;
+}
+
+static void measure(struct polar *p)
+{
+    double most = 0;
+    for (size_t i = 0; i < p->d->readings.count; i++) {
+        const struct reading_record *r = &p->d->readings.items[i].reading;
+        if (is_here(p, &p->d->readings.items[i]))
+            most = fmax(most, peak(p, r->amplitude, r->speed_rpm));
+    }
+    for (size_t i = 0; i < p->d->forecasts.count; i++) {
+        const struct forecast_record *f = &p->d->forecasts.items[i];
+        if (forecast_here(p, f)) {
+            most = fmax(most, peak(p, fmax(cabs(f->before), cabs(f->after)), f->speed_rpm));
+            most = fmax(most, peak(p, isfinite(f->after_95[1]) ? f->after_95[1] : 0, f->speed_rpm));
+        }
+    }
+    p->most = most > 0 ? rim(1.05 * most) : 1;
+    p->scale = RIM / p->most;
+}
+
+static void web(const struct polar *p)
+{
+    char text[DIGITS_ROOM], unit[24];
+    for (int i = 1; i <= 4; i++) {
+        svg_circle(p->out, i == 4 ? "axis" : "thin", MIDDLE_X, MIDDLE_Y, RIM * i / 4);
+        struct svg_point at = draw_plane_at(p->d->job, MIDDLE_X, MIDDLE_Y, RIM * i / 4, 15);
+        svg_text(p->out, "small", "middle", at.x, at.y, "%s",
+                 digits_text(text, p->most * i / 4, NAN));
+    }
+    for (int lag = 0; lag < 360; lag += 30) {
+        struct svg_point end = draw_plane_at(p->d->job, MIDDLE_X, MIDDLE_Y, RIM, lag);
+        struct svg_point name = draw_plane_at(p->d->job, MIDDLE_X, MIDDLE_Y, RIM + 17, lag);
+        svg_line(p->out, "thin", MIDDLE_X, MIDDLE_Y, end.x, end.y);
+        svg_text(p->out, "small", "middle", name.x, name.y + 4, "%d", lag);
+    }
+    svg_text(p->out, "bold", "start", 6, 14, "%s", p->sensor->name);
+    svg_text(p->out, "small", "end", WIDE - 6, 14, "1x, %s; angle: lag, deg",
+             units_show_text(&p->sensor->show, unit));
+}
+
+/* Squared radius, in standard deviations, of the 95 % region of a mean of two components whose
+ * covariance has `freedom` degrees of freedom: Hotelling (1931), T2 = 2v/(v-1) F(2, v-1), with the
+ * closed form of F's quantile for 2 degrees in the numerator. Not known, or many: -2 ln 0.05. Fewer
+ * than 2 count as 2. */
+static double region_square(double freedom)
+{
+    const double alpha = 0.05;
+    if (!(freedom > 0) || freedom > 1e6)
+        return -2 * log(alpha);
+    double v = fmax(freedom, 2);
+    return v * (pow(alpha, -2 / (v - 1)) - 1);
+}
+
+static void region(const struct polar *p, const struct dossier_reading *item)
+{
+    const struct reading_record *r = &item->reading;
+    double cov[3];
+    struct svg_point points[48];
+    dossier_cov(item, cov);
+    if (!(cov[0] > 0) || !(cov[2] > 0))
+        return;
+    double a = sqrt(cov[0]), b = cov[1] / a, c = sqrt(fmax(0, cov[2] - b * b));
+    double k = sqrt(region_square(r->steady.independent - 1));
+    for (int i = 0; i < 48; i++) {
+        double u = cos(2 * PI * i / 48), v = sin(2 * PI * i / 48);
+        points[i] = place(p, r->vector + k * CMPLX(a * u, b * u + c * v), r->speed_rpm);
+    }
+    buffer_text(p->out, "<g data-what=\"region\">");
+    svg_path(p->out, "region", points, 48, 1);
+    buffer_text(p->out, "</g>\n");
+}
+
+static bool is_bare(const struct polar *p, const char *run)
+{
+    int index = job_find_run(p->d->job, run);
+    return index < 0 || job_run_is_bare(p->d->job, (size_t)index);
+}
+
+static void point(const struct polar *p, const struct dossier_reading *item, int number)
+{
+    const struct reading_record *r = &item->reading;
+    struct svg_point at = place(p, r->vector, r->speed_rpm);
+    buffer_text(p->out, "<g data-what=\"reading\" data-run=\"");
+    svg_escape(p->out, r->run);
+    buffer_text(p->out, "\">");
+    if (is_bare(p, r->run))
+        svg_circle(p->out, item->use ? "now" : "moved", at.x, at.y, 4);
+    else
+        svg_square(p->out, "moved", at.x, at.y, 4);
+    svg_text(p->out, "bold", "start", at.x + 7, at.y + (number % 2 ? -5 : 13), "%d", number);
+    buffer_text(p->out, "</g>\n");
+}
+
+static void legend(const struct polar *p, const struct dossier_reading *item, int number, double y)
+{
+    struct shown s = text_readings_shown(p->d, item);
+    char amplitude[DIGITS_ROOM], lag[DIGITS_ROOM], unit[24];
+    svg_text(p->out, "small", "start", 14, y, "%d  %s: %s %s at %s deg lag%s%s", number,
+             item->reading.run, digits_text(amplitude, s.amplitude, s.half),
+             units_show_text(&p->sensor->show, unit), digits_angle(lag, s.lag_deg, s.lag_half),
+             is_bare(p, item->reading.run) ? "" : " (weights on)", item->use ? "" : " REFUSED");
+}
+
+static void forecast(const struct polar *p, const struct forecast_record *f)
+{
+    struct svg_point path[2] = {place(p, f->before, f->speed_rpm),
+                                place(p, f->after, f->speed_rpm)};
+    for (size_t i = 0; i < p->d->readings.count; i++) {
+        const struct reading_record *r = &p->d->readings.items[i].reading;
+        if (!is_here(p, &p->d->readings.items[i]) || is_bare(p, r->run))
+            continue;
+        struct svg_point to = place(p, r->vector, r->speed_rpm);
+        svg_line(p->out, "trial", path[0].x, path[0].y, to.x, to.y);
+    }
+    svg_path(p->out, "to", path, 2, 0);
+    svg_circle(p->out, "range", MIDDLE_X, MIDDLE_Y,
+               peak(p, f->after_95[1], f->speed_rpm) * p->scale);
+    double target = peak(p, f->target, f->speed_rpm) * p->scale;
+    if (target <= RIM)
+        svg_circle(p->out, "target", MIDDLE_X, MIDDLE_Y, target);
+    svg_diamond(p->out, "left", path[1].x, path[1].y, 5);
+}
+
+bool draw_polar_begins(const struct dossier *d, size_t i)
+{
+    const struct reading_record *r = &d->readings.items[i].reading;
+    for (size_t k = 0; k < i; k++) {
+        const struct reading_record *o = &d->readings.items[k].reading;
+        if (o->has_phase && o->sensor == r->sensor && strcmp(o->condition, r->condition) == 0)
+            return false;
+    }
+    return r->has_phase;
+}
+
+double draw_polar(const struct dossier *d, size_t sensor, const char *condition, double y,
+                  struct buffer *out)
+{
+    struct polar p = {d, &d->job->sensors[sensor], sensor, condition, 1, 1, out};
+    int count = 0, number = 0;
+    char label[200];
+    for (size_t i = 0; i < d->readings.count; i++)
+        count += is_here(&p, &d->readings.items[i]);
+    double below = MIDDLE_Y + RIM + 40, high = below + LINE * (count + 4);
+    snprintf(label, sizeof label, "Polar plot of the 1x vectors of %s", p.sensor->name);
+    measure(&p);
+    svg_begin(out, y, WIDE, high, label);
+    web(&p);
+    for (size_t i = 0; i < d->readings.count; i++) {
+        if (is_here(&p, &d->readings.items[i]))
+            region(&p, &d->readings.items[i]);
+    }
+    for (size_t i = 0; i < d->forecasts.count; i++) {
+        if (forecast_here(&p, &d->forecasts.items[i]))
+            forecast(&p, &d->forecasts.items[i]);
+    }
+    for (size_t i = 0; i < d->readings.count; i++) {
+        if (!is_here(&p, &d->readings.items[i]))
+            continue;
+        point(&p, &d->readings.items[i], ++number);
+        legend(&p, &d->readings.items[i], number, below + LINE * (number - 1));
+    }
+    below += LINE * count;
+    svg_text(out, "small", "start", 14, below,
+             "dot: no weights; square: weights on; diamond: forecast; shaded: 95 %% region");
+    svg_text(out, "small", "start", 14, below + LINE,
+             "dashed: effect of weights; solid: to the forecast");
+    svg_text(out, "small", "start", 14, below + 2 * LINE,
+             "dotted ring: 95 %% of next readings; dash-dot ring: target");
+    svg_text(out, "small", "start", 14, below + 3 * LINE, "condition: %s", condition);
+    svg_end(out);
+    return high;
+}

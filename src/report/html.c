@@ -1,0 +1,244 @@
+#include "report/html.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "report/draw.h"
+#include "report/html_answer.h"
+#include "report/html_part.h"
+#include "report/phrase.h"
+#include "report/text_answer.h"
+#include "report/text_audit.h"
+#include "report/text_others.h"
+#include "report/text_readings.h"
+
+static const char page_style[] =
+    "@page{margin:14mm}*{box-sizing:border-box}"
+    "body{font:15px/1.4 sans-serif;color:#111;background:#fff;margin:0 auto;padding:12px;"
+    "max-width:1000px;overflow-wrap:anywhere}"
+    "h1{font-size:1.5em;margin:.2em 0}h3{font-size:1em;margin:.8em 0 "
+    ".2em;break-after:avoid}h2{font-size:1.15em;border-bottom:2px solid #111;"
+    "margin:1.4em 0 .5em;break-after:avoid}"
+    ".answer{border:3px solid #111;padding:4px 14px;margin:10px 0}.answer h2{border:0;margin:.4em "
+    "0}"
+    ".warn{font-weight:bold;border-left:8px double #d55e00;padding-left:8px}"
+    ".wide{overflow-x:auto;max-width:100%}table{border-collapse:collapse;margin:.4em 0;"
+    "font-size:.9em}th,td{padding:2px 8px;border-bottom:1px solid #bbb;text-align:left;"
+    "overflow-wrap:normal}th{border-bottom:1.5px solid #111}.r{text-align:right}"
+    ".pictures{display:flex;flex-wrap:wrap;gap:8px}.pictures "
+    "svg{max-width:100%;height:auto}.pictures svg,tr,li{break-inside:avoid}"
+    "pre{white-space:pre-wrap;font-size:.75em;border:1px solid #bbb;padding:6px}.note{color:#333;"
+    "font-size:.9em}@media print{body{padding:0;max-width:none;font-size:10pt}"
+    ".wide{overflow:visible}}";
+
+static void head(const struct dossier *d, struct buffer *out)
+{
+    const char *title = d->job->title[0] ? d->job->title : "(no title)";
+    buffer_text(out, "<!DOCTYPE html>\n<html lang=\"en\"><head><meta charset=\"utf-8\">\n"
+                     "<meta name=\"viewport\" content=\"width=device-width,initial-scale=1\">\n"
+                     "<link rel=\"icon\" href=\"data:,\">\n<title>");
+    svg_escape(out, title);
+    buffer_format(out, "</title>\n<style>%s%s</style></head><body>\n<h1>", page_style, svg_style());
+    svg_escape(out, title);
+    buffer_format(out, "</h1>\n<p>%s",
+                  dossier_is_audit(d) ? "Audit of recordings" : "Balance report");
+    char number[DIGITS_ROOM];
+    bool us = d->job->units == UNITS_US;
+    if (isfinite(d->job->rotor_mass))
+        buffer_format(out, "; rotor %s %s",
+                      digits_text(number, d->job->rotor_mass / (us ? 0.45359237 : 1), NAN),
+                      us ? "lb" : "kg");
+    if (isfinite(d->job->service_rpm))
+        buffer_format(out, "; service speed %s rpm", shown_speed(number, d->job->service_rpm));
+    if (isfinite(d->job->grade))
+        buffer_format(out, "; grade G%s", digits_text(number, d->job->grade, NAN));
+    buffer_text(out, ".</p>\n");
+}
+
+static void forecast(const struct dossier *d, struct buffer *out)
+{
+    struct table table;
+    if (d->forecasts.count > 0) {
+        html_part_heading(out, d->placements.count > 0
+                                   ? "Forecast: 1x amplitudes with these weights fitted"
+                                   : "Forecast: 1x amplitudes with nothing fitted");
+        text_answer_forecast_table(d, &table);
+        html_part_table(out, &table);
+    }
+    if (d->residuals.count > 0) {
+        html_part_heading(out, "Tolerance: estimated residual unbalance");
+        text_answer_tolerance_table(d, &table);
+        html_part_table(out, &table);
+        html_part_say(out, "note", "Basis: %s.", d->residuals.items[0].basis);
+    }
+}
+
+/* The parts that are prose already, as the text report has them. */
+static void as_text(const struct dossier *d, void (*write)(const struct dossier *, struct buffer *),
+                    const char *heading, struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    write(d, &text);
+    if (text.length > 0 || text.failed) {
+        html_part_heading(out, heading);
+        const char *line = text.bytes && !text.failed ? text.bytes : "";
+        line += strspn(line, "\n");
+        line += strcspn(line, "\n"); /* the text's own heading */
+        line += strspn(line, "\n");
+        if (text.failed)
+            out->failed = 1;
+        buffer_text(out, "<pre>");
+        for (; *line; line += strcspn(line, "\n"), line += *line == '\n') {
+            size_t length = strcspn(line, "\n");
+            char *copy = strndup(line, length);
+            if (!copy) {
+                out->failed = 1;
+                break;
+            }
+            svg_escape(out, copy);
+            buffer_text(out, "\n");
+            free(copy);
+        }
+        buffer_text(out, "</pre>\n");
+    }
+    buffer_release(&text);
+}
+
+static void readings(const struct dossier *d, struct buffer *out)
+{
+    struct table table;
+    if (d->readings.count == 0)
+        return;
+    html_part_heading(out, "Readings");
+    html_part_say(out, "note",
+                  "Phase is lag: how far the shaft turns from the mark to the vibration's peak. "
+                  "+/- is the 95 %% half width of one reading; what differs from run to run is "
+                  "not in it.");
+    for (size_t i = 0; i < d->readings.count;) {
+        struct buffer text = BUFFER_INIT;
+        text_readings_group_heading(d, &d->readings.items[i].reading, &text);
+        html_part_take(out, "h3", &text);
+        i = text_readings_group(d, i, &table);
+        html_part_table(out, &table);
+    }
+    html_part_say(out, "note",
+                  "In the polar plots lag grows against rotation from the top, seen "
+                  "as the planes are.");
+    buffer_text(out, "<div class=\"pictures\">\n");
+    for (size_t i = 0; i < d->readings.count; i++) {
+        const struct reading_record *r = &d->readings.items[i].reading;
+        if (draw_polar_begins(d, i))
+            draw_polar(d, (size_t)r->sensor, r->condition, 0, out);
+    }
+    buffer_text(out, "</div>\n");
+    if (d->responses.count == 0)
+        return;
+    struct buffer mass = BUFFER_INIT;
+    html_part_heading(out, "Responses");
+    phrase_mass(&mass, d->job, text_readings_response_table(d, &table), NAN);
+    html_part_say(out, "note", "What %s at the mark (0 deg %s) adds at the plane's radius.",
+                  mass.bytes ? mass.bytes : "", job_sense_text(d->job));
+    buffer_release(&mass);
+    html_part_table(out, &table);
+}
+
+static void checks(const struct dossier *d, struct buffer *out)
+{
+    static const struct table_column columns[] = {{"check", false, true},  {"run", false, true},
+                                                  {"sensor", false, true}, {"verdict", false, true},
+                                                  {"value", true, false},  {"limit", true, false},
+                                                  {"unit", false, false},  {"basis", false, true}};
+    static const char *const verdicts[] = {"ok", "caution", "REFUSED"};
+    struct table table;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < d->findings.count; i++) {
+        const struct finding_record *f = &d->findings.items[i];
+        table_cell(&table, "%s", f->check);
+        table_cell(&table, "%s", f->run);
+        table_cell(&table, "%s", dossier_sensor(d, f->sensor));
+        table_cell(&table, "%s", verdicts[f->verdict]);
+        table_cell(&table, isfinite(f->value) ? "%.3g" : "-", f->value);
+        table_cell(&table, isfinite(f->limit) ? "%.3g" : "-", f->limit);
+        table_cell(&table, "%s", f->unit);
+        table_cell(&table, "%s", f->basis);
+    }
+    if (table.cell_count > 0)
+        html_part_heading(out, "Every check that was made");
+    html_part_table(out, &table);
+}
+
+static void evidence(const struct dossier *d, bool small, struct buffer *out)
+{
+    html_part_heading(out, small ? "Lag over time, recording by recording"
+                                 : "Evidence: over time, order spectra");
+    buffer_text(out, "<div class=\"pictures\">\n");
+    for (size_t r = 0; r < d->runs.count; r++) {
+        for (size_t s = 0; s < d->job->sensor_count; s++)
+            draw_lines_time(d, r, s, small, 0, out);
+    }
+    for (size_t i = 0; !small && i < d->spectra.count; i++)
+        draw_lines_spectrum(d, i, 0, out);
+    buffer_text(out, "</div>\n");
+    if (d->curves.count > 0)
+        html_part_heading(out, "Coast-down");
+    buffer_text(out, "<div class=\"pictures\">\n");
+    for (size_t i = 0; i < d->curves.count; i++)
+        draw_lines_speed(d, i, 0, out);
+    buffer_text(out, "</div>\n");
+}
+
+static void provenance(const struct dossier *d, const char *job, size_t length, struct buffer *out)
+{
+    html_part_heading(out, "Made from");
+    for (size_t i = 0; i < d->runs.count; i++) {
+        const struct run_record *run = &d->runs.items[i].record;
+        if (run->file_count == 0)
+            html_part_say(out, "note", "Run '%s': readings by hand.", run->run);
+        for (size_t f = 0; f < run->file_count; f++)
+            html_part_say(out, "note", "Run '%s': %s, %lld frames at %.10g Hz, SHA-256 %s",
+                          run->run, run->files[f].path, run->files[f].frames, run->files[f].rate_hz,
+                          run->files[f].sha256);
+    }
+    html_part_say(out, "note", "By lopside " LOPSIDE_VERSION ". All settings of the job:");
+    char *line = strndup(job, length);
+    if (!line) {
+        out->failed = 1;
+        return;
+    }
+    line[strcspn(line, "\r\n")] = '\0';
+    buffer_text(out, "<pre>");
+    svg_escape(out, line);
+    buffer_text(out, "</pre>\n");
+    free(line);
+}
+
+void html_write(const struct dossier *dossier, const char *job, size_t length, struct buffer *out)
+{
+    const struct dossier *d = dossier;
+    bool audit = dossier_is_audit(d);
+    head(d, out);
+    if (audit) {
+        struct table table;
+        as_text(d, text_audit_summary, "Can these readings be trusted?", out);
+        html_part_heading(out, "Readings");
+        html_part_say(out, "note",
+                      "Phase is lag, in degrees. sd%% and deg: standard deviation of "
+                      "the blocks of a recording, amplitude in %% and lag in degrees. "
+                      "drift: trend over the recording, %%.");
+        text_audit_rows(d, &table);
+        html_part_table(out, &table);
+    } else {
+        html_answer_write(d, out);
+        forecast(d, out);
+        as_text(d, text_answer_ideal, "Ideal weight", out);
+        as_text(d, text_others_write, "Otherwise", out);
+        readings(d, out);
+    }
+    as_text(d, text_readings_findings, "Findings", out);
+    evidence(d, audit, out);
+    if (!audit)
+        checks(d, out);
+    provenance(d, job, length, out);
+    buffer_text(out, "</body></html>\n");
+}
