@@ -24,12 +24,6 @@ struct recording {
     double frames, got;      /* promised by the run record (0: it says nothing), and seen */
 };
 
-static int malformed(const struct record *record, const char *why)
-{
-    message("malformed record: '%s' (%s)", record->kind, why);
-    return STATUS_USAGE;
-}
-
 /* ---- a recording begins ---- */
 
 static int note_run(struct recording *rec, struct stream *stream, const struct record *record)
@@ -38,7 +32,7 @@ static int note_run(struct recording *rec, struct stream *stream, const struct r
     const char *why = "";
 
     if (run_parse(&run, &stream->job, record->json, &why)) {
-        return malformed(record, why);
+        return record_malformed(record, why);
     }
     rec->frames = run.file_count > 0 ? (double)run.files[0].frames : 0;
     run_release(&run);
@@ -126,10 +120,10 @@ static int begin(struct recording *rec, struct stream *stream, const struct reco
     const char *why = "";
 
     if (wave_parse(&rec->wave, record->json, &why)) {
-        return malformed(record, why);
+        return record_malformed(record, why);
     }
     if (!(rec->wave.rate_hz > 0) || rec->wave.column_count == 0) {
-        return malformed(record, "no rate, or no columns");
+        return record_malformed(record, "no rate, or no columns");
     }
     strcpy(rec->run, rec->wave.run);
     rec->got = 0;
@@ -171,10 +165,10 @@ static int samples(struct recording *rec, struct stream *stream, const struct re
     size_t frame = rec->wave.column_count * sizeof(float);
 
     if (block_parse(run, &frames, record->json, &why)) {
-        return malformed(record, why);
+        return record_malformed(record, why);
     }
     if (!rec->open || strcmp(run, rec->run)) {
-        return malformed(record, "no wave record before it");
+        return record_malformed(record, "no wave record before it");
     }
     float *carry = malloc(frame); /* a frame that is cut by the input buffer's end */
     size_t carried = 0, left = (size_t)frames * frame;

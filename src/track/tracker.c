@@ -7,6 +7,7 @@
 #define LEVEL_SECONDS 2.0 /* looked at for the first levels: six turns at 180 rpm */
 #define LEVEL_TURNS 6.0
 #define JITTER_MOST 15.0 /* deg: marks at random within their tolerance scatter by 40 deg */
+#define FEW_MARKS 20     /* as many turns as `length` wants at least */
 #define KEEP 64          /* frames kept before the next turn, for edges and rounding */
 
 static int begin_tone(struct tracker *tracker, const struct tracker_set_up *set_up)
@@ -447,12 +448,24 @@ int tracker_finish(struct tracker *tracker)
     return break_stretch(tracker);
 }
 
+/* Few marks that nothing speaks for but themselves must be nearly whole; and a rhythm is none that
+ * needs more marks put in than came, or leaves out more than three for each (a turn has at most so
+ * many scratches). */
+static bool believable(const struct marks *marks, double jitter)
+{
+    long wrong = marks->missed + marks->extra;
+
+    if (isnan(jitter) || marks->count < FEW_MARKS) {
+        return 4 * wrong <= marks->count;
+    }
+    return jitter < JITTER_MOST && marks->missed <= marks->count &&
+           marks->extra <= 3 * marks->count;
+}
+
 bool tracker_regular(const struct tracker *tracker)
 {
-    double jitter = shaft_jitter(&tracker->shaft);
-
-    return tracker->windows.count > 0 && (isnan(jitter) || jitter < JITTER_MOST) &&
-           tracker->marks.missed <= tracker->marks.count && tracker_pulsed(tracker);
+    return tracker->windows.count > 0 && tracker_pulsed(tracker) &&
+           believable(&tracker->marks, shaft_jitter(&tracker->shaft));
 }
 
 bool tracker_reference(const struct tracker *tracker)

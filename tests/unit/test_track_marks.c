@@ -5,6 +5,14 @@
 
 #include "track_recipe.h"
 
+#ifdef __SANITIZE_ADDRESS__ /* several times slower */
+#define RUNS 5
+#define PER_RATIO 2
+#else
+#define RUNS 30
+#define PER_RATIO 8
+#endif
+
 struct mark_on_shaft {
     double at, width, height;
 };
@@ -143,13 +151,13 @@ static void damaged(double share, double hole, int least)
     for (size_t w = 0; w < 4; w++) {
         lost = added = share;
         holes = hole;
-        tally(all[w], 30, 6, &phased, &wrong);
+        tally(all[w], RUNS, 6, &phased, &wrong);
         if (getenv("TRACK_TABLE")) {
-            printf("wheel %zu, lost and added %g, holes of %g: %d of 30 with phase, %d wrong\n", w,
-                   share, hole, phased, wrong);
+            printf("wheel %zu, lost and added %g, holes of %g: %d with phase, %d wrong\n", w, share,
+                   hole, phased, wrong);
         }
         assert_int_equal(wrong, 0);
-        assert_true(phased >= least);
+        assert_true(RUNS < 30 || phased >= least);
     }
 }
 
@@ -174,7 +182,7 @@ static void test_crossed(void **unused)
     for (double ratio = 1; ratio < 1.8; ratio += 0.02) {
         int zero = 0, other = 0;
 
-        for (int k = 0; k < 8; k++) {
+        for (int k = 0; k < PER_RATIO; k++) {
             struct wheel w = crossed;
             struct recipe r = plain;
             struct tracker tracker;
@@ -208,7 +216,7 @@ static void test_crossed(void **unused)
         gaps += zero;
         sizes += other;
     }
-    assert_true(gaps > 8 && sizes > 8);
+    assert_true(gaps > PER_RATIO && sizes > PER_RATIO);
 }
 
 int main(void)
