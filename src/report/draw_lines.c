@@ -191,26 +191,37 @@ double draw_lines_speed(const struct dossier *d, size_t curve, double y, struct 
     return high;
 }
 
-/* The largest amplitude of each column of pixels, over the last four decades below the largest. */
-static void spectrum_trace(const struct spectrum_record *r, double most, double top, double high,
-                           struct buffer *out)
+/* Index of the first point that stands for a band (half an order or more from the one before), not
+ * for a line: its amplitude is that of all within the band, and must not look like a rise. */
+static size_t bands_from(const struct spectrum_record *r)
 {
-    enum { COLUMNS = 405 };
-    struct svg_point points[COLUMNS];
-    double largest[COLUMNS] = {0}, last = r->orders[r->count - 1];
-    for (size_t i = 0; i < r->count; i++) {
-        int c = (int)(r->orders[i] / last * (COLUMNS - 1));
-        if (c >= 0 && c < COLUMNS && r->amplitude[i] > largest[c])
-            largest[c] = r->amplitude[i];
+    for (size_t i = 1; i < r->count; i++) {
+        if (r->orders[i] - r->orders[i - 1] >= 0.5)
+            return i;
     }
-    size_t count = 0;
-    for (int c = 0; c < COLUMNS; c++) {
-        if (!(largest[c] > 0))
-            continue;
-        double decades = fmax(-4, log10(largest[c] / most));
-        points[count++] = (struct svg_point){LEFT + c, top - high * decades / 4};
+    return r->count;
+}
+
+/* Points first to end over the last four decades below the largest; dots where they are few. */
+static void spectrum_trace(const struct spectrum_record *r, size_t first, size_t end, double most,
+                           double top, double high, bool dots, struct buffer *out)
+{
+    double last = r->orders[r->count - 1];
+    struct svg_point *points = calloc(end - first + 1, sizeof *points);
+    if (!points) {
+        out->failed = 1;
+        return;
     }
-    svg_path(out, "trace", points, count, 0);
+    for (size_t i = first; i < end; i++) {
+        double decades = r->amplitude[i] > 0 ? fmax(-4, log10(r->amplitude[i] / most)) : -4;
+        points[i - first] = (struct svg_point){LEFT + r->orders[i] / last * (RIGHT - LEFT),
+                                               top - high * decades / 4};
+        if (dots)
+            svg_circle(out, "moved", points[i - first].x, points[i - first].y, 2);
+    }
+    if (!dots)
+        svg_path(out, "trace", points, end - first, 0);
+    free(points);
 }
 
 double draw_lines_spectrum(const struct dossier *d, size_t spectrum, double y, struct buffer *out)
@@ -239,9 +250,12 @@ double draw_lines_spectrum(const struct dossier *d, size_t spectrum, double y, s
         svg_line(out, "thin", x, top, x, top + high);
         svg_text(out, "small", "middle", x, top + high + 13, "%.0fx", order);
     }
-    spectrum_trace(r, most, top, high, out);
-    svg_text(out, "small", "middle", (LEFT + RIGHT) / 2, 163, "order; amplitude in %s, log scale",
-             units[d->job->sensors[r->sensor].quantity]);
+    size_t bands = bands_from(r);
+    spectrum_trace(r, 0, bands, most, top, high, false, out);
+    spectrum_trace(r, bands, r->count, most, top, high, true, out);
+    svg_text(out, "small", "middle", (LEFT + RIGHT) / 2, 163, "order; amplitude in %s, log scale%s",
+             units[d->job->sensors[r->sensor].quantity],
+             bands < r->count ? "; circles: all within a wide band" : "");
     svg_end(out);
     return 170;
 }

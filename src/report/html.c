@@ -29,7 +29,8 @@ static const char page_style[] =
     ".pictures{display:flex;flex-wrap:wrap;gap:8px}.pictures "
     "svg{max-width:100%;height:auto}.pictures svg,tr,li{break-inside:avoid}"
     "pre{white-space:pre-wrap;font-size:.75em;border:1px solid #bbb;padding:6px}.note{color:#333;"
-    "font-size:.9em}@media print{body{padding:0;max-width:none;font-size:10pt}"
+    "font-size:.9em}@media(max-width:500px){th,td{padding:2px 3px;font-size:11px}}@media "
+    "print{body{padding:0;max-width:none;font-size:10pt}"
     ".wide{overflow:visible}}";
 
 static void head(const struct dossier *d, struct buffer *out)

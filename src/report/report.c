@@ -29,10 +29,8 @@ static int collect(struct stream *stream, struct dossier *dossier)
         int result = dossier_add(dossier, record.json, record.bytes, record.length, &why);
         if (result == -2)
             return message_no_memory();
-        if (result != 0) {
-            message("malformed record: '%s' (%s)", record.kind, why);
-            return STATUS_USAGE;
-        }
+        if (result != 0)
+            return record_malformed(&record, why);
     }
     dossier_close(dossier);
     return stream->status;
