@@ -63,12 +63,6 @@ static void gather_release(struct gather *g)
     free(g->sensors);
 }
 
-static int malformed(const struct record *record, const char *why)
-{
-    message("malformed record: '%s' (%s)", record->kind, why);
-    return STATUS_USAGE;
-}
-
 static int foreign(const struct gather *g, const struct record *record, const char *run)
 {
     if (g->open && !strcmp(g->run, run))
@@ -84,10 +78,10 @@ static int add_turns(struct gather *g, const struct record *record, const struct
     int status = STATUS_DONE;
 
     if (turns_parse(&r, job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     status = foreign(g, record, r.run);
     if (status == STATUS_DONE && r.turns < 1)
-        status = malformed(record, "no turns");
+        status = record_malformed(record, "no turns");
     for (size_t i = 0; status == STATUS_DONE && i < r.count; i++) {
         struct blocks *blocks = &g->sensors[r.sensors[i]].blocks;
         struct block block = {r.vectors[i], (double)r.turns, r.t_s, r.speed_rpm};
@@ -107,7 +101,7 @@ static int add_tacho(struct gather *g, const struct record *record)
     const char *why = "";
 
     if (tacho_parse(&g->tacho, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     g->has_tacho = true;
     return foreign(g, record, g->tacho.run);
 }
@@ -119,7 +113,7 @@ static int add_spectrum(struct gather *g, const struct record *record, const str
     int status;
 
     if (spectrum_parse(&r, job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     status = foreign(g, record, r.run);
     if (status == STATUS_DONE) {
         spectrum_release(&g->sensors[r.sensor].spectrum);
@@ -451,7 +445,7 @@ static int begin_run(struct gather *g, struct stream *stream, const struct recor
     const char *why = "";
 
     if (run_parse(&r, &stream->job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     memcpy(g->run, r.run, sizeof g->run);
     memcpy(g->condition, r.condition, sizeof g->condition);
     g->open = true;

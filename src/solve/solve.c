@@ -59,10 +59,8 @@ static int take_reading(struct solve *s, const struct record *record)
     struct reading_record r;
     const char *why;
     const struct job *job = &s->stream.job;
-    if (reading_parse(&r, job, record->json, &why) != 0) {
-        message("malformed record: %s (reading)", why);
-        return STATUS_USAGE;
-    }
+    if (reading_parse(&r, job, record->json, &why) != 0)
+        return record_malformed(record, why);
     int run = job_find_run(job, r.run);
     if (run < 0 || r.sensor < 0) /* an audited recording: nothing to balance */
         return STATUS_DONE;
@@ -87,10 +85,8 @@ static int take_vetted(struct solve *s, const struct record *record)
     struct vetted_record r;
     const char *why;
     const struct job *job = &s->stream.job;
-    if (vetted_parse(&r, job, record->json, &why) != 0) {
-        message("malformed record: %s (vetted)", why);
-        return STATUS_USAGE;
-    }
+    if (vetted_parse(&r, job, record->json, &why) != 0)
+        return record_malformed(record, why);
     if (job_find_run(job, r.run) < 0 || r.sensor < 0)
         return STATUS_DONE;
     if (s->ruled_count == s->ruled_room &&
@@ -106,10 +102,8 @@ static int take_turns(struct solve *s, const struct record *record)
     struct turns_record r;
     const char *why;
     const struct job *job = &s->stream.job;
-    if (turns_parse(&r, job, record->json, &why) != 0) {
-        message("malformed record: %s (turns)", why);
-        return STATUS_USAGE;
-    }
+    if (turns_parse(&r, job, record->json, &why) != 0)
+        return record_malformed(record, why);
     int run = job_find_run(job, r.run);
     for (size_t i = 0; run >= 0 && i < r.count; i++)
         if (r.sensors[i] >= 0)

@@ -154,12 +154,21 @@ static int next_line(struct stream_state *s, const char **line, size_t *length)
 
 /* ---- records ---- */
 
-static int malformed(const struct stream_state *s, const char *why)
+int record_malformed(const struct record *record, const char *why)
 {
     if (why == fields_no_memory)
         return message_no_memory();
-    message("malformed record: '%s' (line %lld: %s)", input_name(s), s->line_number, why);
+    message("malformed record: '%s' (%s; '%s', line %lld)", record->kind, why, record->input,
+            record->line);
     return STATUS_USAGE;
+}
+
+static int malformed(const struct stream_state *s, const char *why)
+{
+    const struct record record = {.kind = json_string_value(json_object_get(s->json, "kind")),
+                                  .input = input_name(s),
+                                  .line = s->line_number};
+    return record_malformed(&record, why);
 }
 
 static int parse_line(struct stream_state *s, const char *line, size_t length, const char **kind)
@@ -356,6 +365,8 @@ static int advance(struct stream *stream, struct record *record)
             return status;
         record->json = s->json;
         record->bytes = line;
+        record->input = input_name(s);
+        record->line = s->line_number;
         record->length = length;
         if (!strcmp(record->kind, "job")) {
             bool first = !s->any;
@@ -469,11 +480,6 @@ int stream_write(struct stream *stream, struct line *line)
 int stream_finish(struct stream *stream)
 {
     return sink_finish(stream->state->sink);
-}
-
-int stream_malformed(struct stream *stream, const char *why)
-{
-    return stream->status = malformed(stream->state, why);
 }
 
 void stream_close(struct stream *stream)

@@ -43,6 +43,8 @@ struct record {
     json_t *json;      /* borrowed: valid until the next stream_next */
     const char *bytes; /* the original line with its newline; valid until the next stream_next */
     size_t length;
+    const char *input; /* where it stands, for messages: a file's name, borrowed; and its line */
+    long long line;
 };
 
 struct stream {
@@ -83,8 +85,9 @@ int stream_pass(struct stream *stream, const struct record *record)
 /* Writes a finished line as an own record and clears it. Fails if memory ran out while building it. */
 int stream_write(struct stream *stream, struct line *line) __attribute__((warn_unused_result));
 
-/* Says "malformed record" with the place of the current record and `why` (from X_parse); gives 2. */
-int stream_malformed(struct stream *stream, const char *why);
+/* Says "malformed record" with its kind, why (from X_parse) and its place; gives 2. Where memory is to
+ * blame (fields_no_memory) it says that and gives 1. */
+int record_malformed(const struct record *record, const char *why);
 
 /* Writes `end`, flushes, checks that everything arrived. */
 int stream_finish(struct stream *stream) __attribute__((warn_unused_result));

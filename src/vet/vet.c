@@ -42,12 +42,6 @@ struct vet {
     struct finding first; /* the first refusal */
 };
 
-static int malformed(const struct record *record, const char *why)
-{
-    message("malformed record: '%s' (%s)", record->kind, why);
-    return STATUS_USAGE;
-}
-
 static struct vet_run *current(struct vet *v, const char *run)
 {
     struct vet_run *last = v->open >= 0 ? &v->runs.items[v->open] : NULL;
@@ -68,7 +62,7 @@ static int add_run(struct vet *v, const struct record *record)
     const char *why = "";
 
     if (run_parse(&r, &v->stream.job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     v->open = facts_add(&v->runs, v->stream.job.sensor_count);
     run = v->open >= 0 ? &v->runs.items[v->open] : NULL;
     if (run && r.file_count) {
@@ -99,7 +93,7 @@ static int add_turns(struct vet *v, const struct record *record)
     const char *why = "";
 
     if (turns_parse(&r, &v->stream.job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     run = current(v, r.run);
     if (run)
         run->turns_seen += r.turns;
@@ -121,7 +115,7 @@ static int add_curve(struct vet *v, const struct record *record)
     const char *why = "";
 
     if (curve_parse(&r, &v->stream.job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     if (!current(v, r.run)) {
         curve_release(&r);
         return foreign(record, r.run);
@@ -138,7 +132,7 @@ static int add_channel(struct vet *v, const struct record *record)
     const char *why = "";
 
     if (channel_parse(&r, &v->stream.job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     run = current(v, r.run);
     if (!run)
         return foreign(record, r.run);
@@ -155,7 +149,7 @@ static int add_tacho(struct vet *v, const struct record *record)
     const char *why = "";
 
     if (tacho_parse(&r, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     run = current(v, r.run);
     if (!run)
         return foreign(record, r.run);
@@ -176,7 +170,7 @@ static int add_spectrum(struct vet *v, const struct record *record)
     const char *why = "";
 
     if (spectrum_parse(&r, job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     run = current(v, r.run);
     if (run) {
         int derivatives =
@@ -223,7 +217,7 @@ static int add_reading(struct vet *v, const struct record *record)
     int at;
 
     if (reading_parse(&r, &v->stream.job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     if (!current(v, r.run))
         return foreign(record, r.run);
     at = facts_at_condition(&v->runs, v->open, r.condition, v->stream.job.sensor_count);
@@ -231,7 +225,7 @@ static int add_reading(struct vet *v, const struct record *record)
         return message_no_memory();
     to = &v->runs.items[at].readings[r.sensor];
     if (to->present)
-        return malformed(record, "a second reading of a sensor in one run");
+        return record_malformed(record, "a second reading of a sensor in one run");
     to->present = to->use = true;
     to->has_phase = r.has_phase;
     to->vector = r.vector;
@@ -253,7 +247,7 @@ static int add_finding(struct vet *v, const struct record *record)
     const char *why = "";
 
     if (finding_parse(&r, &v->stream.job, record->json, &why))
-        return malformed(record, why);
+        return record_malformed(record, why);
     run = current(v, r.run);
     if (run && r.verdict == VERDICT_REFUSE && !strcmp(r.check, "readable"))
         run->unreadable = true;
@@ -491,10 +485,12 @@ static int finish_all(struct vet *v, int *verdict)
 
 static int begin(struct vet *v, const struct option_list *files)
 {
+    static const char *const makes[] = {"vetted", NULL};
     int status = stream_open(&v->stream, files->items, files->count, true);
 
     if (status != STATUS_DONE)
         return status;
+    stream_makes(&v->stream, makes);
     limits_init(&v->limits, &v->stream.job);
     findings_init(&v->findings, &v->limits);
     v->nothing = malloc((v->stream.job.sensor_count + 1) * sizeof *v->nothing);
