@@ -9,7 +9,7 @@
 #include "solve/place_branch.h"
 #include "solve/place_setup.h"
 
-#define NODES 6000000L /* about 3 s on one core of 2020: bench_place; 10 s on one that is shared by three */
+#define NODES 4000000L /* at most 3 s of one core of 2020 (bench_place), 10 s where it is shared by four */
 #define PROVEN 1e-9     /* of `nothing`: place.h */
 
 /* What was best with at most so many pieces a plane. */
