@@ -149,6 +149,26 @@ class Track(unittest.TestCase):
         self.assertAlmostEqual(finding["value"], 75, delta=3)
         self.assertIn("37.3 Hz", finding["text"])
 
+    def test_weight_without_a_tacho(self):
+        """As found and three trials, from recordings alone: Z = Z0 + A W, of which only sizes are seen."""
+        t = numpy.arange(8 * RATE) / RATE
+        draw = numpy.random.default_rng(8)
+        found, response = chain.weight(6e-3, 200), chain.weight(0.08e-3, 77)  # m/s, m/s per g
+        want = -found / response
+        sheet = SHEET.format(tacho="").replace("[run r]\nfile = r.wav\n", "")
+        with chain.folder() as where:
+            for k, (mass, angle) in enumerate([(0, 0), (40, 0), (40, 120), (40, 240)]):
+                z = found + response * chain.weight(mass, angle)
+                theta = 2 * math.pi * 24.6 * (1 + 0.001 * k) * t + draw.uniform(0, 6)
+                x = abs(z) * numpy.cos(theta) + 0.5e-3 * numpy.cos(2 * theta) + 0.3e-3 * draw.standard_normal(t.size)
+                write(where, [x * 100], "")
+                (where / "r.wav").rename(where / f"r{k}.wav")
+                sheet += f"[run r{k}]\nfile = r{k}.wav\n" + (f"weight w = {mass} g at {angle} deg\n" if mass else "")
+            (where / "job.ini").write_text(sheet)
+            (correction,) = chain.kind(chain.solved(where / "job.ini"), "correction")
+        got = chain.weight(1000 * correction["mass"], correction["angle_deg"])
+        self.assertLess(abs(got - want), 0.03 * abs(want))  # the project's bar for simulated jobs
+
     def test_equal_marks(self):
         """Speed and amplitudes, but no phase."""
         t = numpy.arange(10 * RATE) / RATE
