@@ -19,6 +19,7 @@ struct answer_zone { /* of ISO 20816-3; rms, SI */
 struct answer_forecast {
     const struct model_row *row; /* borrowed */
     double complex before, after;
+    double variance; /* complex, of the next reading about `after` */
     double range[2]; /* 95 % of the next reading, SI peak */
     double chance;   /* NaN without a target */
     struct answer_zone zone;

@@ -24,6 +24,7 @@ static void forecast_row(const struct answer *a, const struct model_row *row,
     cov[0] += row->sigma * row->sigma + row->typical[0];
     cov[1] += row->typical[1];
     cov[2] += row->sigma * row->sigma + row->typical[2];
+    f->variance = cov[0] + cov[2];
     f->range[0] = forecast_quantile(f->after, cov, a->model->dof, 0.025);
     f->range[1] = forecast_quantile(f->after, cov, a->model->dof, 0.975);
     f->chance =
@@ -65,7 +66,9 @@ static void fill_zone(const struct answer *a, struct answer_forecast *f)
     z->quantity = z->overall ? row->overall_quantity : QUANTITY_VELOCITY;
     z->given = true;
     double before = cabs(units_convert(f->before, s->quantity, z->quantity, w)) / sqrt(2);
-    double after = cabs(units_convert(f->after, s->quantity, z->quantity, w)) / sqrt(2);
+    double size =
+        sqrt(creal(f->after * conj(f->after)) + f->variance); /* expected, not the mean's */
+    double after = cabs(units_convert(size, s->quantity, z->quantity, w)) / sqrt(2);
     double rest = z->overall ? fmax(0, overall * overall - before * before) : 0;
     z->before = sqrt(rest + before * before);
     z->after = sqrt(rest + after * after);
