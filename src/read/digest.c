@@ -74,89 +74,130 @@ static int system_fault(struct fault *fault, const char *what, const char *path)
     return fault_set(fault, STATUS_RECORDING, "%s, %s: '%s'", what, why, path);
 }
 
-/* Everything of the open file through the hash and the line count. */
-static int pour(int fd, const char *path, EVP_MD_CTX *context, struct digest *digest,
+/* Everything of the open file, or its first chunk alone, through `feed`, from the start. */
+static int pour(int fd, const char *path, struct digest *digest, bool whole,
+                bool (*feed)(struct digest *, void *, const char *, size_t), void *context,
                 const atomic_bool *stop)
 {
     char *chunk = malloc(CHUNK);
     if (!chunk)
         return fault_no_memory(&digest->fault);
     int status = STATUS_DONE;
-    long long total = 0;
-    digest->text = true;
+    off_t total = 0;
     while (status == STATUS_DONE && !atomic_load(stop)) {
-        ssize_t got = read(fd, chunk, CHUNK);
+        ssize_t got = pread(fd, chunk, CHUNK, total);
         if (got < 0 && errno == EINTR)
             continue;
         if (got < 0)
             status = system_fault(&digest->fault, "cannot read the recording", path);
         if (got <= 0)
             break;
-        if (total == 0) {
-            size_t probe = (size_t)got < TEXT_PROBE ? (size_t)got : TEXT_PROBE;
-            digest->text = memchr(chunk, '\0', probe) == NULL;
-        }
-        if (digest->text)
-            lines_feed(&digest->lines, chunk, (size_t)got);
-        if (!EVP_DigestUpdate(context, chunk, (size_t)got))
+        if (!feed(digest, context, chunk, (size_t)got))
             status = fault_set(&digest->fault, STATUS_SYSTEM, "cannot hash: '%s'", path);
         total += got;
+        if (!whole)
+            break;
     }
-    lines_finish(&digest->lines);
     free(chunk);
-    if (status == STATUS_DONE && total != digest->mark.size && !atomic_load(stop))
+    if (status == STATUS_DONE && whole && total != digest->mark.size && !atomic_load(stop))
         status = fault_set(&digest->fault, STATUS_RECORDING,
                            "the recording changed while it was read: '%s'", path);
     return status;
 }
 
-static void take(const char *path, struct digest *digest, const atomic_bool *stop)
+static bool feed_probe(struct digest *digest, void *context, const char *bytes, size_t length)
+{
+    (void)context;
+    digest->text = memchr(bytes, '\0', length < TEXT_PROBE ? length : TEXT_PROBE) == NULL;
+    return true;
+}
+
+static bool feed_lines(struct digest *digest, void *context, const char *bytes, size_t length)
+{
+    (void)context;
+    lines_feed(&digest->lines, bytes, length);
+    return true;
+}
+
+static bool feed_hash(struct digest *digest, void *context, const char *bytes, size_t length)
+{
+    (void)digest;
+    return EVP_DigestUpdate(context, bytes, length) == 1;
+}
+
+/* What decoding wants to know before it starts; a text is counted, which is quick. The open file, or -1. */
+static int scan(const char *path, struct digest *digest, const atomic_bool *stop)
 {
     if (digest_mark(path, &digest->mark, &digest->fault) != STATUS_DONE)
-        return;
+        return -1;
     if (digest->mark.size == 0) {
         fault_set(&digest->fault, STATUS_RECORDING, "the recording is empty: '%s'", path);
-        return;
+        return -1;
     }
     int fd = open(path, O_RDONLY | O_CLOEXEC | O_NONBLOCK);
     if (fd < 0) {
         system_fault(&digest->fault, "cannot open the recording", path);
-        return;
+        return -1;
     }
+    int status = pour(fd, path, digest, false, feed_probe, NULL, stop);
+    if (status == STATUS_DONE && digest->text)
+        status = pour(fd, path, digest, true, feed_lines, NULL, stop);
+    lines_finish(&digest->lines);
+    if (status == STATUS_DONE)
+        return fd;
+    close(fd);
+    return -1;
+}
+
+/* The hash of the open file; what goes wrong is in `fault`, which becomes the digest's with it. */
+static void hash(int fd, const char *path, struct digest *digest, const atomic_bool *stop)
+{
     unsigned char sum[EVP_MAX_MD_SIZE];
     unsigned int size = 0;
     EVP_MD_CTX *context = EVP_MD_CTX_new();
     if (!context || !EVP_DigestInit_ex(context, EVP_sha256(), NULL))
         fault_no_memory(&digest->fault);
-    else if (pour(fd, path, context, digest, stop) == STATUS_DONE) {
+    else if (pour(fd, path, digest, true, feed_hash, context, stop) == STATUS_DONE) {
         if (EVP_DigestFinal_ex(context, sum, &size) && size == 32)
             to_hex(sum, size, digest->sha256);
         else
             fault_set(&digest->fault, STATUS_SYSTEM, "cannot hash: '%s'", path);
     }
     EVP_MD_CTX_free(context);
-    close(fd);
 }
 
 struct digest_queue {
     char *const *paths;
+    struct digest *scanned; /* as they are handed out before the hash */
     struct digest *digests;
-    size_t count, done;
+    size_t count, looked_over, done;
     pthread_t thread;
     pthread_mutex_t lock;
     pthread_cond_t progress;
     atomic_bool stop;
 };
 
+static void advance(struct digest_queue *queue, size_t *counter, size_t value)
+{
+    pthread_mutex_lock(&queue->lock);
+    *counter = value;
+    pthread_cond_signal(&queue->progress);
+    pthread_mutex_unlock(&queue->lock);
+}
+
 static void *work(void *argument)
 {
     struct digest_queue *queue = argument;
     for (size_t i = 0; i < queue->count && !atomic_load(&queue->stop); i++) {
-        take(queue->paths[i], &queue->digests[i], &queue->stop);
-        pthread_mutex_lock(&queue->lock);
-        queue->done = i + 1;
-        pthread_cond_signal(&queue->progress);
-        pthread_mutex_unlock(&queue->lock);
+        struct digest *digest = &queue->digests[i];
+        const int fd = scan(queue->paths[i], digest, &queue->stop);
+        queue->scanned[i] = *digest;
+        advance(queue, &queue->looked_over, i + 1);
+        if (fd >= 0) {
+            hash(fd, queue->paths[i], digest, &queue->stop);
+            close(fd);
+        }
+        advance(queue, &queue->done, i + 1);
     }
     return NULL;
 }
@@ -170,10 +211,11 @@ struct digest_queue *digest_queue_new(char *const *paths, size_t count)
     queue->count = count;
     atomic_init(&queue->stop, false);
     queue->digests = calloc(count ? count : 1, sizeof *queue->digests);
-    if (!queue->digests)
+    queue->scanned = calloc(count ? count : 1, sizeof *queue->scanned);
+    if (!queue->digests || !queue->scanned)
         goto no_digests;
     if (pthread_mutex_init(&queue->lock, NULL) != 0)
-        goto no_lock;
+        goto no_digests;
     if (pthread_cond_init(&queue->progress, NULL) != 0)
         goto no_progress;
     if (pthread_create(&queue->thread, NULL, work, queue) != 0)
@@ -184,19 +226,38 @@ no_thread:
     pthread_cond_destroy(&queue->progress);
 no_progress:
     pthread_mutex_destroy(&queue->lock);
-no_lock:
-    free(queue->digests);
 no_digests:
+    free(queue->scanned);
+    free(queue->digests);
     free(queue);
     return NULL;
 }
 
-const struct digest *digest_queue_wait(struct digest_queue *queue, size_t index)
+static void wait_for(struct digest_queue *queue, const size_t *counter, size_t index)
 {
     pthread_mutex_lock(&queue->lock);
-    while (queue->done <= index)
+    while (*counter <= index)
         pthread_cond_wait(&queue->progress, &queue->lock);
     pthread_mutex_unlock(&queue->lock);
+}
+
+const struct digest *digest_queue_scanned(struct digest_queue *queue, size_t index)
+{
+    wait_for(queue, &queue->looked_over, index);
+    return &queue->scanned[index];
+}
+
+bool digest_queue_ready(struct digest_queue *queue, size_t index)
+{
+    pthread_mutex_lock(&queue->lock);
+    const bool ready = queue->done > index;
+    pthread_mutex_unlock(&queue->lock);
+    return ready;
+}
+
+const struct digest *digest_queue_wait(struct digest_queue *queue, size_t index)
+{
+    wait_for(queue, &queue->done, index);
     return &queue->digests[index];
 }
 
@@ -208,6 +269,7 @@ void digest_queue_free(struct digest_queue *queue)
     pthread_join(queue->thread, NULL);
     pthread_cond_destroy(&queue->progress);
     pthread_mutex_destroy(&queue->lock);
+    free(queue->scanned);
     free(queue->digests);
     free(queue);
 }

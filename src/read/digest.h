@@ -38,7 +38,14 @@ struct digest_queue;
 /* `paths` and the strings are borrowed until the free. NULL: no memory, or no thread. */
 struct digest_queue *digest_queue_new(char *const *paths, size_t count);
 
-/* Waits until file `index` is done. The result is borrowed until the free. */
+/* Waits until file `index` was looked over: mark, text and lines stand, the hash does not yet. The
+ * result is borrowed until the free; its fault may still come with the hash. */
+const struct digest *digest_queue_scanned(struct digest_queue *queue, size_t index);
+
+/* Whether file `index` is hashed by now, too. */
+bool digest_queue_ready(struct digest_queue *queue, size_t index);
+
+/* Waits until file `index` is hashed. The result is borrowed until the free. */
 const struct digest *digest_queue_wait(struct digest_queue *queue, size_t index);
 
 /* Ends the thread, if need be in the middle of a file. NULL is fine. */

@@ -25,6 +25,7 @@
 #define BLOCK_FRAMES 16384u        /* more gain nothing in speed */
 #define BLOCK_BYTES (512u * 1024u) /* bounds the memory of many columns */
 #define COLUMN_BYTES (sizeof(float))
+#define HELD_BYTES (8u * 1024u * 1024u) /* decoded ahead of the hash; a text's is there by then */
 
 struct stage {
     struct sheet sheet;
@@ -36,6 +37,7 @@ struct stage {
     struct sink *sink;
     struct line line;
     float *block;
+    float *held; /* HELD_BYTES: samples that wait for the hashes, which come before them in the stream */
     bool failed; /* audit: some recording could not be read */
 };
 
@@ -226,9 +228,10 @@ static int list_paths(struct stage *stage)
 struct task { /* one run while it is read */
     size_t run;
     struct recording_column *columns;
-    const struct digest **digests;
+    const struct digest **digests, **hashed; /* what decoding rests on; the same with their hashes */
     struct recording_wish wish;
     struct recording recording;
+    size_t held; /* frames */
 };
 
 static bool is_first_column(const char *channel)
@@ -273,14 +276,27 @@ static void make_wish(const struct stage *stage, struct task *task, char *const 
                                                  .first_is_channel = first}};
 }
 
-static int wait_for_digests(const struct stage *stage, struct task *task, size_t first_path,
-                            struct fault *fault)
+/* What decoding needs to know of the files; their hashes come while it goes on. */
+static int wait_for_scans(const struct stage *stage, struct task *task, size_t first_path,
+                          struct fault *fault)
 {
     for (size_t f = 0; f < task->wish.path_count; f++) {
-        task->digests[f] = digest_queue_wait(stage->queue, first_path + f);
+        task->digests[f] = digest_queue_scanned(stage->queue, first_path + f);
         if (task->digests[f]->fault.status != STATUS_DONE)
             return fault_set(fault, task->digests[f]->fault.status, "%s",
                              task->digests[f]->fault.text);
+    }
+    return STATUS_DONE;
+}
+
+static int wait_for_hashes(const struct stage *stage, struct task *task, size_t first_path,
+                           struct fault *fault)
+{
+    for (size_t f = 0; f < task->wish.path_count; f++) {
+        task->hashed[f] = digest_queue_wait(stage->queue, first_path + f);
+        if (task->hashed[f]->fault.status != STATUS_DONE)
+            return fault_set(fault, task->hashed[f]->fault.status, "%s",
+                             task->hashed[f]->fault.text);
     }
     return STATUS_DONE;
 }
@@ -307,7 +323,7 @@ static int print_run(struct stage *stage, size_t run, const struct task *task)
                 continue;
             }
             names_make_utf8(file->path);
-            memcpy(file->sha256, task->digests[f]->sha256, sizeof file->sha256);
+            memcpy(file->sha256, task->hashed[f]->sha256, sizeof file->sha256);
             file->frames = task->recording.frames;
             file->rate_hz = task->recording.rate_hz;
         }
@@ -359,25 +375,61 @@ static size_t block_room(size_t columns)
     return columns * COLUMN_BYTES > BLOCK_BYTES ? columns * COLUMN_BYTES : BLOCK_BYTES;
 }
 
-/* The samples. A fault of the recording is in `fault`; the return value is the sink's status. */
+/* One block of samples. */
+static int print_block(struct stage *stage, const struct task *task, const float *samples,
+                       size_t frames)
+{
+    block_print(stage->sheet.job.runs[task->run].name, (long)frames, &stage->line);
+    int status = sink_line(stage->sink, &stage->line);
+    if (status == STATUS_DONE)
+        status = sink_bytes(stage->sink, samples,
+                            frames * task->wish.column_count * COLUMN_BYTES);
+    return status;
+}
+
+/* Decodes into the held blocks until the hashes stand, the room or the recording ends. */
+static void hold_blocks(struct stage *stage, struct task *task, size_t last_path,
+                        struct fault *fault)
+{
+    const size_t columns = task->wish.column_count, most = block_frames(columns);
+    const size_t room = HELD_BYTES / (columns * COLUMN_BYTES);
+    while (task->held + most <= room && fault->status == STATUS_DONE &&
+           !digest_queue_ready(stage->queue, last_path)) {
+        size_t got = 0;
+        if (recording_read(&task->recording, stage->held + task->held * columns, most, &got,
+                           fault) != STATUS_DONE ||
+            got == 0)
+            break;
+        task->held += got;
+    }
+}
+
+static int print_held(struct stage *stage, const struct task *task)
+{
+    const size_t columns = task->wish.column_count, most = block_frames(columns);
+    int status = STATUS_DONE;
+    for (size_t at = 0; at < task->held && status == STATUS_DONE; at += most) {
+        const size_t frames = task->held - at < most ? task->held - at : most;
+        status = print_block(stage, task, stage->held + at * columns, frames);
+    }
+    return status;
+}
+
+/* The samples that are not held. A fault of the recording is in `fault`; the return value is the sink's
+ * status. */
 static int print_blocks(struct stage *stage, struct task *task, struct fault *fault)
 {
-    const size_t columns = task->wish.column_count;
-    const size_t most = block_frames(columns);
-    const char *name = stage->sheet.job.runs[task->run].name;
+    const size_t most = block_frames(task->wish.column_count);
     const long long before = watched ? watched->done : 0;
     const double size = watched ? (double)size_of(task->wish.paths, task->wish.path_count) : 0;
-    double frames = 0;
+    double frames = (double)task->held;
     int status = STATUS_DONE;
     while (status == STATUS_DONE) {
         size_t got = 0;
         if (recording_read(&task->recording, stage->block, most, &got, fault) != STATUS_DONE ||
             got == 0)
             break;
-        block_print(name, (long)got, &stage->line);
-        status = sink_line(stage->sink, &stage->line);
-        if (status == STATUS_DONE)
-            status = sink_bytes(stage->sink, stage->block, got * columns * COLUMN_BYTES);
+        status = print_block(stage, task, stage->block, got);
         frames += (double)got;
         if (watched)
             watched->done = before + (long long)(size * frames / (double)task->recording.frames);
@@ -407,6 +459,24 @@ static int give_up(struct stage *stage, size_t run, struct fault *fault)
 
 _Static_assert(FAULT_ROOM <= sizeof((struct finding_record *)0)->text, "a reason fits a finding");
 
+/* An open recording: its records and samples. What goes wrong before a sample was written ends it there. */
+static int stream_samples_of(struct stage *stage, struct task *task, size_t first_path,
+                             struct fault *fault)
+{
+    hold_blocks(stage, task, first_path + task->wish.path_count - 1, fault);
+    if (fault->status != STATUS_DONE ||
+        wait_for_hashes(stage, task, first_path, fault) != STATUS_DONE)
+        return STATUS_DONE;
+    int status = print_run(stage, task->run, task);
+    if (status == STATUS_DONE)
+        status = print_wave(stage, task);
+    if (status == STATUS_DONE)
+        status = print_held(stage, task);
+    if (status == STATUS_DONE)
+        status = print_blocks(stage, task, fault);
+    return status;
+}
+
 static int stream_run(struct stage *stage, size_t run, size_t first_path)
 {
     const size_t sensors = stage->sheet.job.sensor_count;
@@ -416,7 +486,8 @@ static int stream_run(struct stage *stage, size_t run, size_t first_path)
     int status = STATUS_DONE;
     task.columns = calloc(sensors + 1, sizeof *task.columns);
     task.digests = calloc(files, sizeof *task.digests);
-    if (!task.columns || !task.digests) {
+    task.hashed = calloc(files, sizeof *task.hashed);
+    if (!task.columns || !task.digests || !task.hashed) {
         status = message_no_memory();
         goto out;
     }
@@ -424,18 +495,14 @@ static int stream_run(struct stage *stage, size_t run, size_t first_path)
     if (task.wish.column_count == 0)
         fault_set(&fault, STATUS_USAGE, "no sensor and no tacho is on in run '%s'",
                   stage->sheet.job.runs[run].name);
-    else if (wait_for_digests(stage, &task, first_path, &fault) == STATUS_DONE &&
-             recording_open(&task.recording, &task.wish, &fault) == STATUS_DONE) {
-        status = print_run(stage, run, &task);
-        if (status == STATUS_DONE)
-            status = print_wave(stage, &task);
-        if (status == STATUS_DONE)
-            status = print_blocks(stage, &task, &fault);
-    }
+    else if (wait_for_scans(stage, &task, first_path, &fault) == STATUS_DONE &&
+             recording_open(&task.recording, &task.wish, &fault) == STATUS_DONE)
+        status = stream_samples_of(stage, &task, first_path, &fault);
     if (status == STATUS_DONE && fault.status != STATUS_DONE)
         status = give_up(stage, run, &fault);
     recording_close(&task.recording);
 out:
+    free(task.hashed);
     free(task.digests);
     free(task.columns);
     return status;
@@ -448,9 +515,10 @@ static int open_stream(struct stage *stage)
     const size_t columns = stage->sheet.job.sensor_count + 1;
     stage->sink = sink_new(STDOUT_FILENO);
     stage->block = malloc(block_room(columns));
+    stage->held = stage->path_count > 0 ? malloc(HELD_BYTES) : NULL;
     if (stage->path_count > 0)
         stage->queue = digest_queue_new(stage->paths, stage->path_count);
-    if (!stage->sink || !stage->block || (stage->path_count > 0 && !stage->queue))
+    if (!stage->sink || !stage->block || (stage->path_count > 0 && (!stage->queue || !stage->held)))
         return message_no_memory();
     buffer_clear(&stage->line.text);
     if (job_print(&stage->sheet.job, &stage->line.text) != 0)
@@ -477,6 +545,7 @@ static int stream_runs(struct stage *stage)
 static void release(struct stage *stage)
 {
     digest_queue_free(stage->queue);
+    free(stage->held);
     free(stage->block);
     line_release(&stage->line);
     sink_free(stage->sink);
