@@ -39,20 +39,36 @@ static double complex rest(const struct straight *line, const double complex *ve
     return vectors[i] - line->middle - line->slope * (t[i] - line->t_middle);
 }
 
-/* The line at frequency f (Hz, either sign) in the rest, as an amplitude. */
-static double complex line_at(const struct straight *line, const double complex *vectors,
-                              const double *t, size_t count, double f)
-{
-    double complex sum = 0;
+struct phasor { /* of one block: its rest, turned back by the frequency at hand and by one step of it */
+    double re, im, step_re, step_im;
+};
 
-    for (size_t i = 0; i < count; i++)
-        sum += rest(line, vectors, t, i) * cexp(-I * 2 * PI * f * t[i]);
-    return sum / (double)count;
+static struct phasor phasor_at(double complex rest, double t, double f, double step)
+{
+    double complex z = rest * cexp(-I * 2 * PI * f * t), turn = cexp(-I * 2 * PI * step * t);
+
+    return (struct phasor){creal(z), cimag(z), creal(turn), cimag(turn)};
+}
+
+/* The line at the frequency at hand, as an amplitude; every phasor moves on to the next frequency. */
+static double next_line(struct phasor *phasors, size_t count)
+{
+    double re = 0, im = 0;
+
+    for (size_t i = 0; i < count; i++) {
+        struct phasor p = phasors[i];
+        re += p.re;
+        im += p.im;
+        phasors[i].re = p.re * p.step_re - p.im * p.step_im;
+        phasors[i].im = p.re * p.step_im + p.im * p.step_re;
+    }
+    return hypot(re, im) / (double)count;
 }
 
 struct beat beat_of(const double complex *vectors, const double *t, size_t count)
 {
     struct beat beat = {NAN, NAN, NAN, NAN, NAN, NAN};
+    struct phasor phasors[BEAT_COUNT_MOST];
     struct straight line;
     double step, power = 0, most = 0, share, n;
 
@@ -71,12 +87,13 @@ struct beat beat_of(const double complex *vectors, const double *t, size_t count
         return beat;
     beat.swing = 0;
     beat.rest = sqrt(power);
-    for (int k = -OVERSAMPLING * (int)count / 2; k <= OVERSAMPLING * (int)count / 2; k++) {
-        double f = k / (OVERSAMPLING * beat.duration), size;
-        if (fabs(f) * beat.duration < PERIODS_LEAST)
-            continue;
-        size = cabs(line_at(&line, vectors, t, count, f));
-        if (size > most) {
+    const int last = OVERSAMPLING * (int)count / 2;
+    const double fine = 1 / (OVERSAMPLING * beat.duration);
+    for (size_t i = 0; i < count; i++)
+        phasors[i] = phasor_at(rest(&line, vectors, t, i), t[i] - line.t_middle, -last * fine, fine);
+    for (int k = -last; k <= last; k++) {
+        double f = k * fine, size = next_line(phasors, count);
+        if (fabs(f) * beat.duration >= PERIODS_LEAST && size > most) {
             most = size;
             beat.turning = f;
         }
