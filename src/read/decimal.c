@@ -102,6 +102,22 @@ static const double powers[POWER_MOST + 1] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,
                                               1e8,  1e9,  1e10, 1e11, 1e12, 1e13, 1e14, 1e15,
                                               1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
 
+/* Digits from p on, appended to *digits; two at a time, which halves the chain of multiplications. */
+static inline const char *take_digits(const char *p, const char *end, uint64_t *digits)
+{
+    unsigned first, second;
+    while (end - p >= 2 && (first = (unsigned char)(p[0] - '0')) < 10 &&
+           (second = (unsigned char)(p[1] - '0')) < 10) {
+        *digits = *digits * 100 + (first * 10 + second);
+        p += 2;
+    }
+    if (p < end && (first = (unsigned char)(*p - '0')) < 10) {
+        *digits = *digits * 10 + first;
+        p++;
+    }
+    return p;
+}
+
 /* What nearly every cell is: at most 19 characters, a sign, digits and a point. False: not that. */
 static inline bool is_plain(const char *text, size_t length, char point, double *value)
 {
@@ -112,18 +128,11 @@ static inline bool is_plain(const char *text, size_t length, char point, double 
     p += negative;
     uint64_t digits = 0;
     const char *first = p;
-    unsigned digit;
-    while (p < end && (digit = (unsigned char)(*p - '0')) < 10) {
-        digits = digits * 10 + digit;
-        p++;
-    }
+    p = take_digits(p, end, &digits);
     ptrdiff_t count = p - first, behind = 0;
     if (p < end && *p == point) {
         first = ++p;
-        while (p < end && (digit = (unsigned char)(*p - '0')) < 10) {
-            digits = digits * 10 + digit;
-            p++;
-        }
+        p = take_digits(p, end, &digits);
         behind = p - first;
         count += behind;
     }
