@@ -7,7 +7,7 @@
 #include "report/shown.h"
 #include "sheet/units.h"
 
-#define WIDE 470.0
+#define WIDE 480.0
 #define LEFT 58.0
 #define RIGHT 462.0
 

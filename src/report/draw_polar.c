@@ -13,6 +13,7 @@
 #define MIDDLE_Y 190.0
 #define RIM 150.0
 #define LINE 15.0 /* of the legend */
+#define NAMES_MOST 64
 
 struct polar {
     const struct dossier *d;
@@ -22,6 +23,8 @@ struct polar {
     double scale; /* pixels per shown unit */
     double most;  /* shown units at the rim */
     struct buffer *out;
+    struct svg_point names[NAMES_MOST]; /* middles of the numbers written so far */
+    size_t name_count;
 };
 
 static bool is_here(const struct polar *p, const struct dossier_reading *r)
@@ -135,19 +138,61 @@ static bool is_bare(const struct polar *p, const char *run)
     return index < 0 || job_run_is_bare(p->d->job, (size_t)index);
 }
 
-static void point(const struct polar *p, const struct dossier_reading *item, int number)
+/* True where a number with its middle at `at` would cover no point and no other number. */
+static bool is_clear(const struct polar *p, struct svg_point at)
+{
+    if (at.x < 8 || at.x > WIDE - 8 || at.y < 24 || at.y > MIDDLE_Y + RIM + 30)
+        return false;
+    for (size_t i = 0; i < p->name_count; i++) {
+        if (fabs(at.x - p->names[i].x) < 17 && fabs(at.y - p->names[i].y) < 14)
+            return false;
+    }
+    for (size_t i = 0; i < p->d->readings.count; i++) {
+        const struct reading_record *r = &p->d->readings.items[i].reading;
+        if (!is_here(p, &p->d->readings.items[i]))
+            continue;
+        struct svg_point other = place(p, r->vector, r->speed_rpm);
+        if (fabs(at.x - other.x) < 10 && fabs(at.y - other.y) < 10)
+            return false;
+    }
+    return true;
+}
+
+/* Where a point's number goes: outwards from the plot's middle if that is clear, else turned from
+ * there to either side, else further away. */
+static struct svg_point name_at(const struct polar *p, struct svg_point at)
+{
+    double outwards = atan2(at.y - MIDDLE_Y, at.x - MIDDLE_X);
+    for (double far = 14; far < 80; far += 8) {
+        for (int i = 0; i < 12; i++) {
+            double angle = outwards + PI / 6 * (i % 2 ? -(i + 1) / 2 : i / 2);
+            struct svg_point name = {at.x + far * cos(angle), at.y + far * sin(angle)};
+            if (is_clear(p, name))
+                return name;
+        }
+    }
+    return (struct svg_point){at.x + 14, at.y};
+}
+
+static void point(struct polar *p, const struct dossier_reading *item, int number)
 {
     const struct reading_record *r = &item->reading;
-    struct svg_point at = place(p, r->vector, r->speed_rpm);
+    struct svg_point at = place(p, r->vector, r->speed_rpm), name = name_at(p, at);
     buffer_text(p->out, "<g data-what=\"reading\" data-run=\"");
     svg_escape(p->out, r->run);
     buffer_text(p->out, "\">");
+    double far = hypot(name.x - at.x, name.y - at.y);
+    if (far > 18)
+        svg_line(p->out, "thin", at.x, at.y, name.x + 8 / far * (at.x - name.x),
+                 name.y + 8 / far * (at.y - name.y));
     if (is_bare(p, r->run))
         svg_circle(p->out, item->use ? "now" : "moved", at.x, at.y, 4);
     else
         svg_square(p->out, "moved", at.x, at.y, 4);
-    svg_text(p->out, "bold", "start", at.x + 7, at.y + (number % 2 ? -5 : 13), "%d", number);
+    svg_text(p->out, "bold", "middle", name.x, name.y + 4, "%d", number);
     buffer_text(p->out, "</g>\n");
+    if (p->name_count < NAMES_MOST)
+        p->names[p->name_count++] = name;
 }
 
 static void legend(const struct polar *p, const struct dossier_reading *item, int number, double y)
@@ -194,7 +239,11 @@ bool draw_polar_begins(const struct dossier *d, size_t i)
 double draw_polar(const struct dossier *d, size_t sensor, const char *condition, double y,
                   struct buffer *out)
 {
-    struct polar p = {d, &d->job->sensors[sensor], sensor, condition, 1, 1, out};
+    struct polar p = {.d = d,
+                      .sensor = &d->job->sensors[sensor],
+                      .index = sensor,
+                      .condition = condition,
+                      .out = out};
     int count = 0, number = 0;
     char label[200];
     for (size_t i = 0; i < d->readings.count; i++)
