@@ -120,8 +120,8 @@ int stage_report(int argc, char **argv)
     const struct option options[] = {
         {"as", 0, OPTION_CHOICE, "FORM", "text", 0, 0, forms, "what to make", &form},
         {"what", 0, OPTION_TEXT, "NAME", NULL, 0, 0, NULL,
-         "the table of csv or the picture of svg: readings, responses, correction, placement, forecast, findings, "
-         "or the picture of svg, polar, plane, time, spectrum, speed", &name},
+         "the table of csv or the picture of svg: readings, responses, correction, placement, "
+         "forecast, findings, polar, plane, time, spectrum, speed", &name},
         {0},
     };
     const struct usage usage = {
