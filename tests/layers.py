@@ -3,9 +3,10 @@
 
 - a stage's folder includes only base/, stream/, sheet/ and itself
 - base includes base; stream includes base; sheet includes base and stream
-- kernels (a stage's files other than its stage file) see no stream, no options, and never print or exit
+- a stage's files are its stage file <stage>.c and, where that would grow too long, <stage>_*.c beside it
+- kernels (all other files of its folder) see no stream, no options, and never print or exit
 - foo.c exports only foo_*, or functions of a struct, enum or kind of record that a header of its folder declares;
-  a stage file exports stage_* alone
+  <stage>.c exports stage_* alone, <stage>_part.c only <stage>_part_*
 Prints one line per offence.
 """
 import pathlib
@@ -31,19 +32,25 @@ def offend(path, text):
     offences.append(f"{path}: {text}")
 
 
+def is_stage_file(folder, path):
+    """<stage>.c or .h, or <stage>_*: these see records and print."""
+    return folder in STAGES and (path.stem == folder or path.stem.startswith(folder + "_"))
+
+
 def includes(path):
     return re.findall(r'^\s*#\s*include\s+"([^"]+)"', path.read_text(), re.M)
 
 
 def check_includes(source, folder, path):
-    stage_file = folder in STAGES and path.stem == folder
+    stage_file = is_stage_file(folder, path)
     for name in includes(path):
         parts = name.split("/")
         where = parts[0] if len(parts) > 1 else folder
         if folder in BELOW and where not in BELOW[folder]:
             offend(path.relative_to(source), f"includes {name} of another layer")
         closed = CLOSED_REPORT if folder == "report" else CLOSED
-        if folder in STAGES and not stage_file and name in closed:
+        own_stage = where == folder and is_stage_file(folder, pathlib.Path(parts[-1]))
+        if folder in STAGES and not stage_file and (name in closed or own_stage):
             offend(path.relative_to(source), f"is a kernel and includes {name}")
 
 
@@ -76,12 +83,15 @@ def declared(folder_path):
 
 def check_symbols(source, build, folder, path):
     exported, called = symbols(build, folder, path.stem)
-    stage_file = folder in STAGES and path.stem == folder
+    stage_file = is_stage_file(folder, path)
     name = path.relative_to(source)
     if folder in STAGES and not stage_file:
         for loud in sorted(called & LOUD):
             offend(name, f"is a kernel and calls {loud}")
-    heads = {"stage"} if stage_file else {path.stem} | declared(path.parent)
+    if stage_file:
+        heads = {"stage"} if path.stem == folder else {path.stem}
+    else:
+        heads = {path.stem} | declared(path.parent)
     if folder == "desk":
         heads |= {"desk"}
     for symbol in sorted(exported):
