@@ -35,9 +35,13 @@ void dossier_release(struct dossier *dossier)
     free(dossier->placements.items);
     free(dossier->forecasts.items);
     free(dossier->residuals.items);
+    free(dossier->parts.items);
+    free(dossier->zones.items);
+    free(dossier->compared.items);
     free(dossier->lines.items);
     buffer_release(&dossier->text);
     json_decref(dossier->figures);
+    json_decref(dossier->extras);
     dossier_init(dossier, NULL);
 }
 
@@ -172,6 +176,41 @@ static int add_residual(struct dossier *d, const json_t *json, const char **why)
     ADD(d->residuals, r, residual_parse(r, d->job, json, why));
 }
 
+/* For pages, the same as it is in the stream. */
+static int add_extra(struct dossier *d, const json_t *json)
+{
+    if (!d->keep_traces)
+        return 0;
+    if (!d->extras)
+        d->extras = json_array();
+    json_t *copy = json_deep_copy(json);
+    return d->extras && copy && json_array_append_new(d->extras, copy) == 0 ? 0 : -2;
+}
+
+static int add_parts(struct dossier *d, const json_t *json, const char **why)
+{
+    struct parts_record *r;
+    if (add_extra(d, json) != 0)
+        return -2;
+    ADD(d->parts, r, parts_parse(r, d->job, json, why));
+}
+
+static int add_zone(struct dossier *d, const json_t *json, const char **why)
+{
+    struct zone_record *r;
+    if (add_extra(d, json) != 0)
+        return -2;
+    ADD(d->zones, r, zone_parse(r, d->job, json, why));
+}
+
+static int add_compared(struct dossier *d, const json_t *json, const char **why)
+{
+    struct compared_record *r;
+    if (add_extra(d, json) != 0)
+        return -2;
+    ADD(d->compared, r, compared_parse(r, d->job, json, why));
+}
+
 static int add_next(struct dossier *d, const json_t *json, const char **why)
 {
     int result = next_parse(&d->next, json, why);
@@ -204,11 +243,24 @@ int dossier_add(struct dossier *dossier, const json_t *json, const char *bytes, 
         const char *kind;
         int (*add)(struct dossier *, const json_t *, const char **);
     } kinds[] = {
-        {"run", add_run},           {"reading", add_reading},       {"tacho", add_tacho},
-        {"channel", add_channel},   {"turns", add_turns},           {"spectrum", add_spectrum},
-        {"curve", add_curve},       {"vetted", add_vetted},         {"finding", add_finding},
-        {"response", add_response}, {"correction", add_correction}, {"placement", add_placement},
-        {"forecast", add_forecast}, {"residual", add_residual},     {"next", add_next},
+        {"run", add_run},
+        {"reading", add_reading},
+        {"tacho", add_tacho},
+        {"channel", add_channel},
+        {"turns", add_turns},
+        {"spectrum", add_spectrum},
+        {"curve", add_curve},
+        {"vetted", add_vetted},
+        {"finding", add_finding},
+        {"response", add_response},
+        {"correction", add_correction},
+        {"placement", add_placement},
+        {"forecast", add_forecast},
+        {"residual", add_residual},
+        {"next", add_next},
+        {"parts", add_parts},
+        {"zone", add_zone},
+        {"compared", add_compared},
     };
     const char *kind = json_string_value(json_object_get(json, "kind"));
     if (!kind) {

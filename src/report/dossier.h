@@ -12,6 +12,7 @@
 #include <stddef.h>
 
 #include "base/buffer.h"
+#include "stream/outcomes.h"
 #include "stream/records.h"
 
 /* A reading together with vet's ruling on it. */
@@ -58,10 +59,15 @@ struct dossier {
     DOSSIER_LIST(placement_record) placements;
     DOSSIER_LIST(forecast_record) forecasts;
     DOSSIER_LIST(residual_record) residuals;
+    DOSSIER_LIST(parts_record) parts; /* one, of jobs with two planes */
+    DOSSIER_LIST(zone_record) zones;
+    DOSSIER_LIST(compared_record) compared; /* a corrected run against what was predicted */
     DOSSIER_LIST(dossier_line) lines;
     struct buffer text; /* the lines, ",\n" before each: the middle of a JSON array */
     bool has_next;
     struct next_record next;
+    json_t *extras;  /* owned: array of the records `parts`, `zone`, `compared` as they are, where
+                      * traces are kept; NULL: none */
     json_t *figures; /* owned: the whole `next` record with the figures of its step; NULL: none */
 };
 

@@ -237,8 +237,12 @@ int solve_records_finding(struct solve_records *s, const struct advice_finding *
 int solve_records_compared(struct solve_records *s, const struct model *m,
                            const struct model_row *row, int run, const struct lookback *look)
 {
-    struct compared_record r = {(size_t)run,     row->sensor,    m->conditions[row->condition],
-                                look->predicted, look->measured, look->se};
+    struct compared_record r = {.run = run,
+                                .sensor = (int)row->sensor,
+                                .predicted = look->predicted,
+                                .measured = look->measured,
+                                .se = look->se};
+    memcpy(r.condition, m->conditions[row->condition], sizeof r.condition);
     compared_print(&r, m->job, &s->line);
     return put(s);
 }
@@ -314,8 +318,7 @@ static int write_zone(struct solve_records *s, const struct answer *a,
     const struct answer_zone *z = &f->zone;
     if (!notes_zone(a, f, &finding))
         return STATUS_DONE;
-    struct zone_record r = {.sensor = f->row->sensor,
-                            .condition = a->model->conditions[f->row->condition],
+    struct zone_record r = {.sensor = (int)f->row->sensor,
                             .quantity = z->quantity,
                             .before = z->before,
                             .after = z->after,
@@ -323,6 +326,7 @@ static int write_zone(struct solve_records *s, const struct answer *a,
                             .zone_after = zones_of(z->after, z->limits),
                             .overall = z->overall,
                             .basis = ZONES_BASIS};
+    memcpy(r.condition, a->model->conditions[f->row->condition], sizeof r.condition);
     memcpy(r.limits, z->limits, sizeof r.limits);
     zone_print(&r, &s->stream.job, &s->line);
     int status = put(s);

@@ -4,6 +4,7 @@
 #include <string.h>
 
 #include "base/angle.h"
+#include "stream/fields.h"
 
 static void print_angle(struct line *line, const struct job *job, double angle_deg)
 {
@@ -37,6 +38,36 @@ void parts_print(const struct parts_record *r, const struct job *job, struct lin
     line_end(line);
 }
 
+/* The vector of one part; its masses follow from the radii. */
+static double complex parse_part(struct fields *f, const char *key)
+{
+    const json_t *object = fields_object(f, key);
+    if (!object) {
+        fields_fail(f, "a part is missing");
+        return NAN;
+    }
+    struct fields part = fields_of(object);
+    double complex u =
+        angle_vector(fields_need_real(&part, "unbalance"), fields_real(&part, "angle_deg"));
+    if (part.why)
+        fields_fail(f, part.why);
+    return u;
+}
+
+int parts_parse(struct parts_record *r, const struct job *job, const json_t *json, const char **why)
+{
+    struct fields f = fields_of(json);
+    *r = (struct parts_record){0};
+    if (job->plane_count != 2)
+        fields_fail(&f, "parts of planes that are not two");
+    r->static_part = parse_part(&f, "static");
+    r->couple_part = parse_part(&f, "couple");
+    r->static_alone = parse_part(&f, "static_alone");
+    r->left_alone = fields_real(&f, "left_static_alone");
+    r->left = fields_real(&f, "left");
+    return fields_done(&f, why);
+}
+
 void zone_print(const struct zone_record *r, const struct job *job, struct line *line)
 {
     char before[2] = {r->zone_before, 0}, after[2] = {r->zone_after, 0};
@@ -54,6 +85,36 @@ void zone_print(const struct zone_record *r, const struct job *job, struct line 
     line_end(line);
 }
 
+/* A zone is one of 'A' to 'D', or '?'. */
+static char parse_zone(struct fields *f, const char *key)
+{
+    const char *text = fields_text(f, key);
+    if (strlen(text) == 1 && strchr("ABCD?", text[0]))
+        return text[0];
+    fields_fail(f, "a zone is not A, B, C or D");
+    return '?';
+}
+
+int zone_parse(struct zone_record *r, const struct job *job, const json_t *json, const char **why)
+{
+    struct fields f = fields_of(json);
+    *r = (struct zone_record){0};
+    r->sensor = fields_sensor(&f, "sensor", job);
+    fields_name(&f, "condition", r->condition);
+    int quantity = quantity_parse(fields_text(&f, "quantity"));
+    if (quantity != QUANTITY_VELOCITY && quantity != QUANTITY_DISPLACEMENT)
+        fields_fail(&f, "a zone of a quantity that has none");
+    r->quantity = quantity == QUANTITY_DISPLACEMENT ? QUANTITY_DISPLACEMENT : QUANTITY_VELOCITY;
+    r->before = fields_real(&f, "before_rms");
+    r->zone_before = parse_zone(&f, "before");
+    r->after = fields_real(&f, "after_rms");
+    r->zone_after = parse_zone(&f, "after");
+    fields_reals(&f, "limits_rms", r->limits, 3);
+    r->overall = fields_boolean(&f, "overall", false);
+    fields_copy(&f, "basis", r->basis, sizeof r->basis);
+    return fields_done(&f, why);
+}
+
 void compared_print(const struct compared_record *r, const struct job *job, struct line *line)
 {
     line_begin(line, "compared");
@@ -64,6 +125,24 @@ void compared_print(const struct compared_record *r, const struct job *job, stru
     line_vector(line, "measured", r->measured);
     line_real(line, "se", r->se);
     line_end(line);
+}
+
+int compared_parse(struct compared_record *r, const struct job *job, const json_t *json,
+                   const char **why)
+{
+    struct fields f = fields_of(json);
+    char run[NAME_ROOM];
+    *r = (struct compared_record){0};
+    fields_name(&f, "run", run);
+    r->run = f.why ? -1 : job_find_run(job, run);
+    if (r->run < 0)
+        fields_fail(&f, "a run that the job does not have");
+    fields_name(&f, "condition", r->condition);
+    r->sensor = fields_sensor(&f, "sensor", job);
+    r->predicted = fields_vector(&f, "predicted");
+    r->measured = fields_vector(&f, "measured");
+    r->se = fields_real(&f, "se");
+    return fields_done(&f, why);
 }
 
 void outcomes_weights(struct line *line, const char *key, const struct job *job,

@@ -1,13 +1,16 @@
 /* outcomes.h - what stands beside the answer: static and couple parts, vibration zones, predicted
  * against measured, and the figures of a `next` record that are weights.
  *
- * Kinds of their own that every other stage passes on. Masses are kg at the plane's radius, angles
- * degrees against rotation, with the angle in the sheet's sense printed beside.
+ * Kinds of their own that every stage but the report passes on. Each X_parse is as in records.h.
+ * Masses are kg at the plane's radius, angles degrees against rotation, with the angle in the
+ * sheet's sense printed beside.
  */
 #ifndef LOPSIDE_STREAM_OUTCOMES_H
 #define LOPSIDE_STREAM_OUTCOMES_H
 
 #include <complex.h>
+#include <jansson.h>
+#include <stdbool.h>
 #include <stddef.h>
 
 #include "stream/job.h"
@@ -23,28 +26,34 @@ struct parts_record {
                               * static_alone, with both parts */
 };
 void parts_print(const struct parts_record *r, const struct job *job, struct line *line);
+int parts_parse(struct parts_record *r, const struct job *job, const json_t *json, const char **why)
+    __attribute__((warn_unused_result));
 
 /* kind `zone`: a sensor's overall vibration against the boundaries A/B, B/C, C/D. */
 struct zone_record {
-    size_t sensor;
-    const char *condition;
+    int sensor;
+    char condition[NAME_ROOM];
     enum quantity quantity;
     double before, after; /* rms, SI; after: expected */
     char zone_before, zone_after;
     double limits[3]; /* rms, SI */
     bool overall;     /* false: of 1x alone, hence at least */
-    const char *basis;
+    char basis[120];
 };
 void zone_print(const struct zone_record *r, const struct job *job, struct line *line);
+int zone_parse(struct zone_record *r, const struct job *job, const json_t *json, const char **why)
+    __attribute__((warn_unused_result));
 
 /* kind `compared`: a corrected run's reading against what the runs before it predict. */
 struct compared_record {
-    size_t run, sensor;
-    const char *condition;
+    int run, sensor;
+    char condition[NAME_ROOM];
     double complex predicted, measured; /* SI peak, argument is lag */
     double se;                          /* distance over its standard error */
 };
 void compared_print(const struct compared_record *r, const struct job *job, struct line *line);
+int compared_parse(struct compared_record *r, const struct job *job, const json_t *json,
+                   const char **why) __attribute__((warn_unused_result));
 
 struct outcome_weight {
     size_t plane;
