@@ -11,6 +11,7 @@
 #include "base/message.h"
 #include "base/options.h"
 #include "base/status.h"
+#include "read/adopt.h"
 #include "read/digest.h"
 #include "read/names.h"
 #include "read/recording.h"
@@ -86,82 +87,9 @@ static int read_sheet(struct stage *stage, const char *path)
     return status;
 }
 
-static char *copy_text(const char *text)
+static int adopt(struct stage *stage, char *const *paths, size_t count)
 {
-    char *copy = malloc(strlen(text) + 1);
-    return copy ? strcpy(copy, text) : NULL;
-}
-
-static void release_runs(struct job_run *runs, struct sheet_run *layouts, size_t count)
-{
-    for (size_t i = 0; i < count; i++) {
-        for (size_t f = 0; layouts && f < layouts[i].file_count; f++)
-            free(layouts[i].files[f]);
-        if (layouts) {
-            free(layouts[i].files);
-            free(layouts[i].file_lines);
-            free(layouts[i].channels);
-            free(layouts[i].scales);
-        }
-        free(runs[i].weights);
-        free(runs[i].hand);
-        free(runs[i].without);
-    }
-    free(layouts);
-    free(runs);
-}
-
-/* A recording as a run of its own, laid out as [recording] says. 0 or -1. */
-static int adopt(const struct sheet *sheet, const char *path, const char *name, struct job_run *run,
-                 struct sheet_run *layout)
-{
-    const size_t sensors = sheet->job.sensor_count;
-    *run = (struct job_run){.condition = "service", .speed_rpm = NAN};
-    memcpy(run->name, name, NAME_ROOM);
-    *layout = (struct sheet_run){.layout = sheet->layout};
-    run->without = calloc(sensors ? sensors : 1, sizeof *run->without);
-    layout->files = calloc(1, sizeof *layout->files);
-    layout->file_lines = calloc(1, sizeof *layout->file_lines);
-    layout->channels = calloc(sensors ? sensors : 1, sizeof *layout->channels);
-    layout->scales = calloc(sensors ? sensors : 1, sizeof *layout->scales);
-    if (!run->without || !layout->files || !layout->file_lines || !layout->channels ||
-        !layout->scales)
-        return -1;
-    layout->files[0] = copy_text(path);
-    if (!layout->files[0])
-        return -1;
-    layout->file_count = 1;
-    for (size_t s = 0; s < sensors; s++) {
-        memcpy(layout->channels[s], sheet->job.sensors[s].channel, NAME_ROOM);
-        layout->scales[s] = sheet->scales[s];
-    }
-    return 0;
-}
-
-/* Puts the recordings in the place of the sheet's runs. */
-static int adopt_recordings(struct stage *stage, char *const *paths, size_t count)
-{
-    struct sheet *sheet = &stage->sheet;
-    char(*names)[NAME_ROOM] = calloc(count, sizeof *names);
-    struct job_run *runs = calloc(count, sizeof *runs);
-    struct sheet_run *layouts = calloc(count, sizeof *layouts);
-    int status = STATUS_DONE;
-    if (!names || !runs || !layouts || names_from_paths(paths, count, names) != 0)
-        status = message_no_memory();
-    for (size_t i = 0; status == STATUS_DONE && i < count; i++)
-        if (adopt(sheet, paths[i], names[i], &runs[i], &layouts[i]) != 0)
-            status = message_no_memory();
-    free(names);
-    if (status != STATUS_DONE) {
-        release_runs(runs, layouts, runs && layouts ? count : 0);
-        return status;
-    }
-    release_runs(sheet->job.runs, sheet->runs, sheet->job.run_count);
-    sheet->job.runs = runs;
-    sheet->job.run_count = count;
-    sheet->job.aim.mounted = -1;
-    sheet->runs = layouts;
-    return STATUS_DONE;
+    return adopt_recordings(&stage->sheet, paths, count) == 0 ? STATUS_DONE : message_no_memory();
 }
 
 static int choose_runs(struct stage *stage, const struct option_list *names)
@@ -190,7 +118,7 @@ static char *join_path(const struct stage *stage, const char *file)
 {
     const char *folder = stage->sheet.folder;
     if (stage->audit || file[0] == '/' || !strcmp(folder, "."))
-        return copy_text(file);
+        return strdup(file);
     char *path = malloc(strlen(folder) + strlen(file) + 2);
     if (path) {
         strcpy(path, folder);
@@ -317,7 +245,7 @@ static int print_run(struct stage *stage, size_t run, const struct task *task)
         record.file_count = task->wish.path_count;
         for (size_t f = 0; f < record.file_count; f++) {
             struct file_record *file = &record.files[f];
-            file->path = copy_text(stage->sheet.runs[run].files[f]);
+            file->path = strdup(stage->sheet.runs[run].files[f]);
             if (!file->path) {
                 status = message_no_memory();
                 continue;
@@ -589,7 +517,7 @@ int stage_read(int argc, char **argv)
     }
     status = read_sheet(&stage, operands.items[0]);
     if (status == STATUS_DONE && stage.audit)
-        status = adopt_recordings(&stage, (char *const *)&operands.items[1], operands.count - 1);
+        status = adopt(&stage, (char *const *)&operands.items[1], operands.count - 1);
     stage.sheet.job.audit = stage.audit;
     if (status == STATUS_DONE)
         status = choose_runs(&stage, &runs);
