@@ -41,7 +41,6 @@ void dossier_release(struct dossier *dossier)
     free(dossier->lines.items);
     buffer_release(&dossier->text);
     json_decref(dossier->figures);
-    json_decref(dossier->extras);
     dossier_init(dossier, NULL);
 }
 
@@ -176,38 +175,21 @@ static int add_residual(struct dossier *d, const json_t *json, const char **why)
     ADD(d->residuals, r, residual_parse(r, d->job, json, why));
 }
 
-/* For pages, the same as it is in the stream. */
-static int add_extra(struct dossier *d, const json_t *json)
-{
-    if (!d->keep_traces)
-        return 0;
-    if (!d->extras)
-        d->extras = json_array();
-    json_t *copy = json_deep_copy(json);
-    return d->extras && copy && json_array_append_new(d->extras, copy) == 0 ? 0 : -2;
-}
-
 static int add_parts(struct dossier *d, const json_t *json, const char **why)
 {
     struct parts_record *r;
-    if (add_extra(d, json) != 0)
-        return -2;
     ADD(d->parts, r, parts_parse(r, d->job, json, why));
 }
 
 static int add_zone(struct dossier *d, const json_t *json, const char **why)
 {
     struct zone_record *r;
-    if (add_extra(d, json) != 0)
-        return -2;
     ADD(d->zones, r, zone_parse(r, d->job, json, why));
 }
 
 static int add_compared(struct dossier *d, const json_t *json, const char **why)
 {
     struct compared_record *r;
-    if (add_extra(d, json) != 0)
-        return -2;
     ADD(d->compared, r, compared_parse(r, d->job, json, why));
 }
 

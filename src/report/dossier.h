@@ -66,8 +66,6 @@ struct dossier {
     struct buffer text; /* the lines, ",\n" before each: the middle of a JSON array */
     bool has_next;
     struct next_record next;
-    json_t *extras;  /* owned: array of the records `parts`, `zone`, `compared` as they are, where
-                      * traces are kept; NULL: none */
     json_t *figures; /* owned: the whole `next` record with the figures of its step; NULL: none */
 };
 

@@ -6,11 +6,12 @@
 
 #include "report/draw.h"
 #include "report/html_answer.h"
+#include "report/html_judged.h"
+#include "report/html_others.h"
 #include "report/html_part.h"
 #include "report/phrase.h"
 #include "report/text_answer.h"
 #include "report/text_audit.h"
-#include "report/text_others.h"
 #include "report/text_readings.h"
 
 static const char page_style[] =
@@ -144,31 +145,6 @@ static void readings(const struct dossier *d, struct buffer *out)
     html_part_table(out, &table);
 }
 
-static void checks(const struct dossier *d, struct buffer *out)
-{
-    static const struct table_column columns[] = {{"check", false, true},  {"run", false, true},
-                                                  {"sensor", false, true}, {"verdict", false, true},
-                                                  {"value", true, false},  {"limit", true, false},
-                                                  {"unit", false, false},  {"basis", false, true}};
-    static const char *const verdicts[] = {"ok", "caution", "REFUSED"};
-    struct table table;
-    table_init(&table, columns, sizeof columns / sizeof *columns);
-    for (size_t i = 0; i < d->findings.count; i++) {
-        const struct finding_record *f = &d->findings.items[i];
-        table_cell(&table, "%s", f->check);
-        table_cell(&table, "%s", f->run);
-        table_cell(&table, "%s", dossier_sensor(d, f->sensor));
-        table_cell(&table, "%s", verdicts[f->verdict]);
-        table_cell(&table, isfinite(f->value) ? "%.3g" : "-", f->value);
-        table_cell(&table, isfinite(f->limit) ? "%.3g" : "-", f->limit);
-        table_cell(&table, "%s", f->unit);
-        table_cell(&table, "%s", f->basis);
-    }
-    if (table.cell_count > 0)
-        html_part_heading(out, "Every check that was made");
-    html_part_table(out, &table);
-}
-
 static void evidence(const struct dossier *d, bool small, struct buffer *out)
 {
     html_part_heading(out, small ? "Lag over time, recording by recording"
@@ -232,14 +208,14 @@ void html_write(const struct dossier *dossier, const char *job, size_t length, s
     } else {
         html_answer_write(d, out);
         forecast(d, out);
-        as_text(d, text_answer_ideal, "Ideal weight", out);
-        as_text(d, text_others_write, "Otherwise", out);
+        html_judged_outcomes(d, out);
+        html_others_write(d, out);
         readings(d, out);
     }
-    as_text(d, text_readings_findings, "Findings", out);
+    html_judged_findings(d, out);
     evidence(d, audit, out);
     if (!audit)
-        checks(d, out);
+        html_judged_checks(d, out);
     provenance(d, job, length, out);
     buffer_text(out, "</body></html>\n");
 }

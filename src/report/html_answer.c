@@ -5,6 +5,7 @@
 
 #include "base/status.h"
 #include "report/draw.h"
+#include "report/html_others.h"
 #include "report/html_part.h"
 #include "report/phrase.h"
 #include "report/shown.h"
@@ -163,6 +164,8 @@ void html_answer_write(const struct dossier *dossier, struct buffer *out)
                           "lopside solve.");
         advice(d, out);
     }
+    if (is_step(d, "trial"))
+        html_others_trial(d, out);
     if (is_step(d, "trial") && d->job->angles != SENSE_NONE)
         html_part_say(out, "", "Note each weight's mass and its angle from the mark, counted %s.",
                       job_sense_text(d->job));

@@ -1,0 +1,185 @@
+#include "report/html_judged.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "report/html_part.h"
+#include "report/shown.h"
+#include "report/table.h"
+#include "sheet/units.h"
+
+static const char *const verdicts[] = {"in order", "caution", "REFUSED"};
+
+/* "3.2 (limit 3 s.e.)", as far as they are known. */
+static void value_cell(const struct finding_record *f, struct table *table)
+{
+    const char *gap = f->unit[0] ? " " : "";
+    if (!isfinite(f->value))
+        table_cell(table, "%s", "");
+    else if (f->limit > 0 && isfinite(f->limit))
+        table_cell(table, "%.3g%s%s (limit %.3g)", f->value, gap, f->unit, f->limit);
+    else
+        table_cell(table, "%.3g%s%s", f->value, gap, f->unit);
+}
+
+void html_judged_findings(const struct dossier *dossier, struct buffer *out)
+{
+    static const struct table_column columns[] = {
+        {"verdict", false, false}, {"check", false, false},
+        {"run", false, true},      {"sensor", false, true},
+        {"value", true, false},    {"what was seen, what to do", false, true}};
+    const struct dossier *d = dossier;
+    size_t counts[3] = {0, 0, 0};
+    struct table table;
+    if (d->findings.count == 0)
+        return;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (int verdict = VERDICT_REFUSE; verdict >= VERDICT_OK; verdict--) {
+        for (size_t i = 0; i < d->findings.count; i++) {
+            const struct finding_record *f = &d->findings.items[i];
+            if ((int)f->verdict != verdict)
+                continue;
+            counts[verdict]++;
+            if (verdict == VERDICT_OK)
+                continue;
+            table_cell(&table, "%s", verdicts[verdict]);
+            table_cell(&table, "%s", f->check);
+            table_cell(&table, "%s", f->run);
+            table_cell(&table, "%s", dossier_sensor(d, f->sensor));
+            value_cell(f, &table);
+            table_cell(&table, "%s", f->text);
+        }
+    }
+    html_part_heading(out, "Findings");
+    html_part_say(out, "", "%zu refused, %zu to be read with caution, %zu in order.",
+                  counts[VERDICT_REFUSE], counts[VERDICT_CAUTION], counts[VERDICT_OK]);
+    html_part_table(out, &table);
+}
+
+void html_judged_checks(const struct dossier *dossier, struct buffer *out)
+{
+    static const struct table_column columns[] = {{"check", false, true},  {"run", false, true},
+                                                  {"sensor", false, true}, {"verdict", false, true},
+                                                  {"value", true, false},  {"limit", true, false},
+                                                  {"unit", false, false},  {"basis", false, true}};
+    struct table table;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < dossier->findings.count; i++) {
+        const struct finding_record *f = &dossier->findings.items[i];
+        table_cell(&table, "%s", f->check);
+        table_cell(&table, "%s", f->run);
+        table_cell(&table, "%s", dossier_sensor(dossier, f->sensor));
+        table_cell(&table, "%s", verdicts[f->verdict]);
+        table_cell(&table, isfinite(f->value) ? "%.3g" : "-", f->value);
+        table_cell(&table, isfinite(f->limit) ? "%.3g" : "-", f->limit);
+        table_cell(&table, "%s", f->unit);
+        table_cell(&table, "%s", f->basis);
+    }
+    if (table.cell_count > 0)
+        html_part_heading(out, "Every check that was made");
+    html_part_table(out, &table);
+}
+
+/* The unit of zones, as standards and people have it: rms velocity or displacement. */
+static const char *zone_unit(const struct job *job, enum quantity quantity, double *si)
+{
+    bool us = job->units == UNITS_US;
+    if (quantity == QUANTITY_VELOCITY) {
+        *si = us ? 0.0254 : 0.001;
+        return us ? "in/s rms" : "mm/s rms";
+    }
+    *si = us ? 25.4e-6 : 1e-6;
+    return us ? "mil rms" : "um rms";
+}
+
+static void zone_row(const struct dossier *d, const struct zone_record *r, struct table *table)
+{
+    double si;
+    const char *unit = zone_unit(d->job, r->quantity, &si);
+    char text[3][DIGITS_ROOM];
+    table_cell(table, "%s", dossier_sensor(d, r->sensor));
+    table_cell(table, "%s", r->condition);
+    table_cell(table, "%s, %s", r->overall ? "overall" : "1x alone", unit);
+    table_cell(table, "%.3g", r->before / si);
+    table_cell(table, "%c", r->zone_before);
+    table_cell(table, "%.3g", r->after / si);
+    table_cell(table, "%c", r->zone_after);
+    for (size_t i = 0; i < 3; i++)
+        digits_text(text[i], r->limits[i] / si, NAN);
+    table_cell(table, "%s, %s, %s", text[0], text[1], text[2]);
+}
+
+static void zones(const struct dossier *d, struct buffer *out)
+{
+    static const struct table_column columns[] = {
+        {"sensor", false, true}, {"condition", false, true},    {"of", false, false},
+        {"before", true, false}, {"zone", false, false},        {"expected after", true, false},
+        {"zone", false, false},  {"A/B, B/C, C/D", true, false}};
+    struct table table;
+    if (d->zones.count == 0)
+        return;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < d->zones.count; i++)
+        zone_row(d, &d->zones.items[i], &table);
+    html_part_heading(out, "Vibration zones");
+    html_part_say(out, "note", "Basis: %s. 1x alone: at least that much.", d->zones.items[0].basis);
+    html_part_table(out, &table);
+}
+
+/* Speed of the reading that `compared` is about; NaN: not in the stream. */
+static double speed_of(const struct dossier *d, const struct compared_record *c)
+{
+    for (size_t i = 0; i < d->readings.count; i++) {
+        const struct reading_record *r = &d->readings.items[i].reading;
+        if (r->sensor == c->sensor && strcmp(r->run, d->job->runs[c->run].name) == 0 &&
+            strcmp(r->condition, c->condition) == 0)
+            return r->speed_rpm;
+    }
+    return NAN;
+}
+
+static void vector_cell(const struct job_sensor *sensor, double complex z, double rpm,
+                        struct table *table)
+{
+    struct shown s = shown_vector(z, NULL, sensor->quantity, rpm, &sensor->show, NAN);
+    char unit[24], amplitude[DIGITS_ROOM], lag[DIGITS_ROOM];
+    if (isnan(s.amplitude))
+        table_cell(table, "-");
+    else
+        table_cell(table, "%s %s at %s deg lag", digits_text(amplitude, s.amplitude, NAN),
+                   units_show_text(&sensor->show, unit), digits_angle(lag, s.lag_deg, 1));
+}
+
+static void compared(const struct dossier *d, struct buffer *out)
+{
+    static const struct table_column columns[] = {{"run", false, true},
+                                                  {"sensor", false, true},
+                                                  {"predicted", true, false},
+                                                  {"measured", true, false},
+                                                  {"apart, s.e.", true, false}};
+    struct table table;
+    if (d->compared.count == 0)
+        return;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < d->compared.count; i++) {
+        const struct compared_record *c = &d->compared.items[i];
+        const struct job_sensor *sensor = &d->job->sensors[c->sensor];
+        double rpm = speed_of(d, c);
+        table_cell(&table, "%s", d->job->runs[c->run].name);
+        table_cell(&table, "%s", sensor->name);
+        vector_cell(sensor, c->predicted, rpm, &table);
+        vector_cell(sensor, c->measured, rpm, &table);
+        table_cell(&table, isfinite(c->se) ? "%.1f" : "-", c->se);
+    }
+    html_part_heading(out, "Predicted against measured");
+    html_part_say(out, "note",
+                  "What the runs before predict for the corrected run, 1x. Apart: the distance "
+                  "over its standard error.");
+    html_part_table(out, &table);
+}
+
+void html_judged_outcomes(const struct dossier *dossier, struct buffer *out)
+{
+    zones(dossier, out);
+    compared(dossier, out);
+}

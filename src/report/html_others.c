@@ -1,0 +1,263 @@
+#include "report/html_others.h"
+
+#include <math.h>
+#include <stdio.h>
+
+#include "base/angle.h"
+#include "report/html_part.h"
+#include "report/phrase.h"
+#include "report/shown.h"
+#include "report/table.h"
+
+static double number(const json_t *object, const char *key)
+{
+    const json_t *value = json_object_get(object, key);
+    return json_is_number(value) ? json_number_value(value) : NAN;
+}
+
+static const char *string(const json_t *object, const char *key)
+{
+    const char *text = json_string_value(json_object_get(object, key));
+    return text ? text : "";
+}
+
+/* A cell of what phrases built; releases it. */
+static void take_cell(struct table *table, struct buffer *text)
+{
+    table->failed = table->failed || text->failed;
+    if (!text->failed)
+        table_cell(table, "%s", text->bytes ? text->bytes : "-");
+    buffer_release(text);
+}
+
+static void mass_cell(struct table *table, const struct job *job, double kg, double half)
+{
+    struct buffer text = BUFFER_INIT;
+    if (isfinite(kg))
+        phrase_mass(&text, job, kg, half);
+    take_cell(table, &text);
+}
+
+static void angle_cell(struct table *table, const struct job *job, double deg, double half)
+{
+    struct buffer text = BUFFER_INIT;
+    if (isfinite(deg))
+        phrase_angle(&text, job, deg, half);
+    take_cell(table, &text);
+}
+
+static void mass_half_cell(struct table *table, const struct job *job, double kg, double half)
+{
+    char text[DIGITS_ROOM];
+    double wide = shown_mass(job, half);
+    if (isfinite(wide) && wide > 0)
+        table_cell(table, "%s %s", digits_half(text, wide, digits_place(shown_mass(job, kg), wide)),
+                   shown_mass_unit(job));
+    else
+        table_cell(table, "-");
+}
+
+static void angle_half_cell(struct table *table, double half)
+{
+    char text[DIGITS_ROOM];
+    if (isnan(half))
+        table_cell(table, "-");
+    else if (half < 90)
+        table_cell(table, "%s deg", digits_angle_half(text, half));
+    else
+        table_cell(table, "not known");
+}
+
+static void ideal_rows(const struct dossier *d, const struct correction_record *c,
+                       struct table *table)
+{
+    double half[2];
+    phrase_weight_half(c->least_squares[0], c->least_squares[1], c->ellipse, half);
+    table_cell(table, "%s", dossier_plane(d, c->plane));
+    table_cell(table, "ideal");
+    mass_cell(table, d->job, c->mass, half[0]);
+    table_cell(table, "%s", "");
+    angle_cell(table, d->job, c->angle_deg, half[1]);
+    table_cell(table, "%s", "");
+    if (isnan(c->least_squares[0]))
+        return;
+    table_cell(table, "%s", dossier_plane(d, c->plane));
+    table_cell(table, "least squares");
+    mass_cell(table, d->job, c->least_squares[0], half[0]);
+    mass_half_cell(table, d->job, c->least_squares[0], half[0]);
+    angle_cell(table, d->job, c->least_squares[1], half[1]);
+    angle_half_cell(table, half[1]);
+}
+
+static void ideal(const struct dossier *d, struct buffer *out)
+{
+    static const struct table_column columns[] = {{"plane", false, true}, {"weight", false, false},
+                                                  {"mass", true, false},  {"+/-", true, false},
+                                                  {"angle", true, false}, {"+/-", true, false}};
+    struct table table;
+    if (d->corrections.count == 0)
+        return;
+    const char *to = d->corrections.items[0].relative_to;
+    bool is_run = job_find_run(d->job, to) >= 0;
+    html_part_heading(out, "Ideal weight");
+    html_part_say(out, "note",
+                  "%s, relative to %s%s%s. Least squares is for a hand check; +/- is its 95 %% "
+                  "half width.",
+                  d->placements.count > 0 ? "Before it is split over positions and pieces"
+                                          : "For the record, not to be fitted as it stands",
+                  is_run ? "run '" : "", to, is_run ? "'" : "");
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < d->corrections.count; i++)
+        ideal_rows(d, &d->corrections.items[i], &table);
+    html_part_table(out, &table);
+}
+
+/* A table of a record's list of weights. */
+static void weights(const struct job *job, const json_t *items, struct buffer *out)
+{
+    static const struct table_column columns[] = {{"plane", false, true},
+                                                  {"position", true, false},
+                                                  {"angle from the mark", true, false},
+                                                  {"what", true, false}};
+    struct table table;
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < json_array_size(items); i++) {
+        const json_t *item = json_array_get(items, i);
+        struct buffer what = BUFFER_INIT;
+        double mass = number(item, "mass"), position = number(item, "position");
+        table_cell(&table, "%s", string(item, "plane"));
+        table_cell(&table, position > 0 ? "%.0f" : "-", position);
+        angle_cell(&table, job, number(item, "angle_deg"), NAN);
+        buffer_text(&what, mass < 0 ? "remove " : "fit ");
+        phrase_mass(&what, job, fabs(mass), NAN);
+        take_cell(&table, &what);
+    }
+    html_part_table(out, &table);
+}
+
+/* Root of the expected squared vibration, as a share of what it is now, in %. */
+static const char *share(char text[DIGITS_ROOM], double of_nothing)
+{
+    return digits_at(text, 100 * of_nothing, of_nothing < 0.0995 ? -1 : 0);
+}
+
+static void others(const struct dossier *d, struct buffer *out)
+{
+    const json_t *list = json_object_get(d->figures, "others");
+    double best = number(d->figures, "of_nothing");
+    char text[DIGITS_ROOM];
+    if (d->placements.count == 0 || json_array_size(list) == 0 || isnan(best))
+        return;
+    html_part_heading(out, "Instead of the placement: the next best");
+    html_part_say(out, "note",
+                  "Instead of the weights at the top, not besides them. Those leave an expected "
+                  "%s %% of the vibration.",
+                  share(text, best));
+    for (size_t i = 0; i < json_array_size(list); i++) {
+        const json_t *other = json_array_get(list, i);
+        const json_t *items = json_object_get(other, "items");
+        html_part_say(out, "", "Leaves %s %%%s", share(text, number(other, "of_nothing")),
+                      json_array_size(items) ? ":" : ": nothing added.");
+        weights(d->job, items, out);
+    }
+}
+
+/* The ideal answer with the mounted weights the other way, and one weight a plane for all. */
+static void otherwise(const struct dossier *d, struct buffer *out)
+{
+    const json_t *instead = json_object_get(d->figures, "instead");
+    const json_t *list = json_object_get(instead, "weights");
+    const json_t *merged = json_object_get(d->figures, "merged");
+    if (d->placements.count == 0)
+        return;
+    if (json_array_size(list) > 0) {
+        const char *to = string(instead, "relative_to");
+        bool is_run = job_find_run(d->job, to) >= 0;
+        html_part_heading(out, is_run ? "Ideal weight if the last run's weights stay on"
+                                      : "Ideal weight if everything comes off first");
+        html_part_say(out, "note", "Instead of the weights at the top. Relative to %s%s%s.",
+                      is_run ? "run '" : "", to, is_run ? "'" : "");
+        weights(d->job, list, out);
+    }
+    if (json_array_size(merged) > 0) {
+        html_part_heading(out, "One weight a plane for all that is then on");
+        html_part_say(out, "note",
+                      "The same as all mounted and placed weights together, for a permanent "
+                      "weight in their place.");
+        weights(d->job, merged, out);
+    }
+}
+
+static void part_row(const struct dossier *d, const char *name, double complex unbalance,
+                     double left, struct table *table)
+{
+    char text[DIGITS_ROOM];
+    double angle = cabs(unbalance) > 0 ? carg(unbalance) * 180 / PI : NAN;
+    table_cell(table, "%s", name);
+    for (size_t p = 0; p < 2; p++)
+        mass_cell(table, d->job, cabs(unbalance) / d->job->planes[p].radius_m, NAN);
+    angle_cell(table, d->job, angle, 1);
+    if (isfinite(left))
+        table_cell(table, "%s %%", share(text, left));
+    else
+        table_cell(table, "%s", "");
+}
+
+static void parts(const struct dossier *d, const struct parts_record *r, struct buffer *out)
+{
+    char heads[2][2 * NAME_ROOM], text[DIGITS_ROOM];
+    const struct job_plane *planes = d->job->planes;
+    for (size_t p = 0; p < 2; p++)
+        snprintf(heads[p], sizeof heads[p], "plane '%s'", planes[p].name);
+    const struct table_column columns[] = {{"part", false, true},
+                                           {heads[0], true, true},
+                                           {heads[1], true, true},
+                                           {"angle", true, false},
+                                           {"leaves", true, false}};
+    struct table table;
+    html_part_heading(out, "Static and couple parts of the ideal weight");
+    html_part_say(out, "note",
+                  "Static: on both planes at that angle. Couple: on '%s' at that angle, on '%s' "
+                  "opposite to it. Leaves: share of the expected vibration.",
+                  planes[0].name, planes[1].name);
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    part_row(d, "static", r->static_part, NAN, &table);
+    part_row(d, "couple", r->couple_part, NAN, &table);
+    table_cell(&table, "both together");
+    for (int i = 0; i < 3; i++)
+        table_cell(&table, "%s", "");
+    table_cell(&table, "%s %%", share(text, r->left));
+    part_row(d, "static alone, at its best", r->static_alone, r->left_alone, &table);
+    html_part_table(out, &table);
+}
+
+void html_others_trial(const struct dossier *dossier, struct buffer *out)
+{
+    static const struct table_column columns[] = {{"plane", false, true},
+                                                  {"trial weight", true, false},
+                                                  {"force at service speed", true, false},
+                                                  {"10 % of the journal load", true, false}};
+    const json_t *trials = json_object_get(dossier->figures, "trials");
+    struct table table;
+    char force[2 * DIGITS_ROOM];
+    table_init(&table, columns, sizeof columns / sizeof *columns);
+    for (size_t i = 0; i < json_array_size(trials); i++) {
+        const json_t *trial = json_array_get(trials, i);
+        double newton = number(trial, "force_n");
+        table_cell(&table, "%s", string(trial, "plane"));
+        mass_cell(&table, dossier->job, number(trial, "mass"), NAN);
+        table_cell(&table, "%s",
+                   isfinite(newton) ? shown_force(dossier->job, force, newton) : "not known");
+        mass_cell(&table, dossier->job, number(trial, "wanted_mass"), NAN);
+    }
+    html_part_table(out, &table);
+}
+
+void html_others_write(const struct dossier *dossier, struct buffer *out)
+{
+    ideal(dossier, out);
+    for (size_t i = 0; i < dossier->parts.count; i++)
+        parts(dossier, &dossier->parts.items[i], out);
+    others(dossier, out);
+    otherwise(dossier, out);
+}
