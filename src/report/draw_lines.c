@@ -10,10 +10,13 @@
 #define WIDE 480.0
 #define LEFT 58.0
 #define RIGHT 462.0
+#define SMALL_WIDE 320.0 /* three beside each other on a page */
+#define SMALL_RIGHT 308.0
 
 /* A strip of a drawing: one quantity over x. */
 struct strip {
     double top, high; /* pixels */
+    double right;     /* pixels */
     double from, to;  /* of x, in its unit */
     const double *x, *y;
     size_t count;
@@ -22,7 +25,7 @@ struct strip {
 
 static double across(const struct strip *s, double x)
 {
-    return LEFT + (s->to > s->from ? (x - s->from) / (s->to - s->from) : 0.5) * (RIGHT - LEFT);
+    return LEFT + (s->to > s->from ? (x - s->from) / (s->to - s->from) : 0.5) * (s->right - LEFT);
 }
 
 /* Range of the finite values, with some room; never narrower than `least`. */
@@ -49,11 +52,11 @@ static void strip(const struct strip *s, double least, struct buffer *out)
     double y[2];
     char low[DIGITS_ROOM], high[DIGITS_ROOM];
     const struct svg_point frame[] = {
-        {LEFT, s->top}, {RIGHT, s->top}, {RIGHT, s->top + s->high}, {LEFT, s->top + s->high}};
+        {LEFT, s->top}, {s->right, s->top}, {s->right, s->top + s->high}, {LEFT, s->top + s->high}};
     svg_path(out, "thin", frame, 4, 1);
-    svg_text(out, "small bold", "start", LEFT + 4, s->top + 11, "%s", s->name);
+    svg_text(out, "small bold", "start", LEFT, s->top - 4, "%s", s->name);
     if (!range(s->y, s->count, least, y)) {
-        svg_text(out, "small", "middle", (LEFT + RIGHT) / 2, s->top + s->high / 2, "none");
+        svg_text(out, "small", "middle", (LEFT + s->right) / 2, s->top + s->high / 2, "none");
         return;
     }
     int place = (int)floor(log10(y[1] - y[0])) - 1;
@@ -120,30 +123,38 @@ static void foot(const struct strip *s, double y, const char *unit, struct buffe
 {
     char from[DIGITS_ROOM], to[DIGITS_ROOM];
     svg_text(out, "small", "start", LEFT, y, "%s", digits_text(from, s->from, NAN));
-    svg_text(out, "small", "middle", (LEFT + RIGHT) / 2, y, "%s", unit);
-    svg_text(out, "small", "end", RIGHT, y, "%s", digits_text(to, s->to, NAN));
+    svg_text(out, "small", "middle", (LEFT + s->right) / 2, y, "%s", unit);
+    svg_text(out, "small", "end", s->right, y, "%s", digits_text(to, s->to, NAN));
 }
 
 /* Amplitude and lag, and speed where `over` is time. */
 static double strips(const struct series *s, const struct job_sensor *sensor, const char *title,
                      bool time, bool small, double y, struct buffer *out)
 {
-    double high = small ? 100 : time ? 235 : 215, x[2];
+    double high = small ? 108 : time ? 272 : 245, x[2];
     char unit[24], name[40];
     if (!range(s->x, s->count, 0, x))
         return 0;
     x[0] = fmax(0, x[0]);
-    svg_begin(out, y, WIDE, high, title);
-    svg_text(out, "bold", "start", 6, 13, "%s", title);
+    svg_begin(out, y, small ? SMALL_WIDE : WIDE, high, title);
+    svg_text(out, small ? "small bold" : "bold", "start", 6, 13, "%s", title);
     snprintf(name, sizeof name, "1x, %s", units_show_text(&sensor->show, unit));
-    struct strip a = {20, 85, x[0], x[1], s->x, s->amplitude, s->count, name};
+    struct strip a = {32, 85, RIGHT, x[0], x[1], s->x, s->amplitude, s->count, name};
     double least = 0;
     for (size_t i = 0; i < s->count; i++)
         least = fmax(least, isfinite(s->amplitude[i]) ? 0.02 * s->amplitude[i] : 0);
-    struct strip lag = {
-        small ? 20 : 110, small ? 60 : time ? 50 : 85, x[0], x[1], s->x, s->lag, s->count,
-        "lag, deg"};
-    struct strip rpm = {165, 50, x[0], x[1], s->x, s->speed, s->count, "speed, rpm"};
+    struct strip lag = {small ? 32 : 135,
+                        small  ? 60
+                        : time ? 50
+                               : 85,
+                        small ? SMALL_RIGHT : RIGHT,
+                        x[0],
+                        x[1],
+                        s->x,
+                        s->lag,
+                        s->count,
+                        "lag, deg"};
+    struct strip rpm = {203, 50, RIGHT, x[0], x[1], s->x, s->speed, s->count, "speed, rpm"};
     if (!small)
         strip(&a, least > 0 ? least : 1e-9, out);
     strip(&lag, 4, out);
@@ -189,73 +200,4 @@ double draw_lines_speed(const struct dossier *d, size_t curve, double y, struct 
     double high = strips(&s, &d->job->sensors[c->sensor], title, false, false, y, out);
     free(s.x);
     return high;
-}
-
-/* Index of the first point that stands for a band (half an order or more from the one before), not
- * for a line: its amplitude is that of all within the band, and must not look like a rise. */
-static size_t bands_from(const struct spectrum_record *r)
-{
-    for (size_t i = 1; i < r->count; i++) {
-        if (r->orders[i] - r->orders[i - 1] >= 0.5)
-            return i;
-    }
-    return r->count;
-}
-
-/* Points first to end over the last four decades below the largest; dots where they are few. */
-static void spectrum_trace(const struct spectrum_record *r, size_t first, size_t end, double most,
-                           double top, double high, bool dots, struct buffer *out)
-{
-    double last = r->orders[r->count - 1];
-    struct svg_point *points = calloc(end - first + 1, sizeof *points);
-    if (!points) {
-        out->failed = 1;
-        return;
-    }
-    for (size_t i = first; i < end; i++) {
-        double decades = r->amplitude[i] > 0 ? fmax(-4, log10(r->amplitude[i] / most)) : -4;
-        points[i - first] = (struct svg_point){LEFT + r->orders[i] / last * (RIGHT - LEFT),
-                                               top - high * decades / 4};
-        if (dots)
-            svg_circle(out, "moved", points[i - first].x, points[i - first].y, 2);
-    }
-    if (!dots)
-        svg_path(out, "trace", points, end - first, 0);
-    free(points);
-}
-
-double draw_lines_spectrum(const struct dossier *d, size_t spectrum, double y, struct buffer *out)
-{
-    static const char *const units[] = {"m/s2 pk", "m/s pk", "m pk", ""};
-    const struct spectrum_record *r = &d->spectra.items[spectrum];
-    double most = 0, top = 22, high = 110;
-    char title[200];
-    if (r->sensor < 0 || (size_t)r->sensor >= d->job->sensor_count)
-        return 0;
-    for (size_t i = 0; i < r->count; i++)
-        most = r->amplitude[i] > most ? r->amplitude[i] : most;
-    if (!(most > 0) || !(r->orders[r->count - 1] > 0))
-        return 0;
-    snprintf(title, sizeof title, "%s, %s: order spectrum", r->run, dossier_sensor(d, r->sensor));
-    svg_begin(out, y, WIDE, 170, title);
-    svg_text(out, "bold", "start", 6, 13, "%s", title);
-    for (int i = 0; i <= 4; i++) {
-        double line = top + high * i / 4;
-        svg_line(out, "thin", LEFT, line, RIGHT, line);
-        svg_text(out, "small", "end", LEFT - 4, line + 4, "%.1e", most / pow(10, i));
-    }
-    double last = r->orders[r->count - 1], step = last > 12 ? 5 : 1;
-    for (double order = 0; order <= last + 1e-9; order += step) {
-        double x = LEFT + order / last * (RIGHT - LEFT);
-        svg_line(out, "thin", x, top, x, top + high);
-        svg_text(out, "small", "middle", x, top + high + 13, "%.0fx", order);
-    }
-    size_t bands = bands_from(r);
-    spectrum_trace(r, 0, bands, most, top, high, false, out);
-    spectrum_trace(r, bands, r->count, most, top, high, true, out);
-    svg_text(out, "small", "middle", (LEFT + RIGHT) / 2, 163, "order; amplitude in %s, log scale%s",
-             units[d->job->sensors[r->sensor].quantity],
-             bands < r->count ? "; circles: all within a wide band" : "");
-    svg_end(out);
-    return 170;
 }

@@ -205,17 +205,44 @@ static void legend(const struct polar *p, const struct dossier_reading *item, in
              is_bare(p, item->reading.run) ? "" : " (weights on)", item->use ? "" : " REFUSED");
 }
 
-static void forecast(const struct polar *p, const struct forecast_record *f)
+/* Where the vibration as found lies: the middle of the bare runs that are used; false: none. */
+static bool as_found(const struct polar *p, struct svg_point *at)
 {
-    struct svg_point path[2] = {place(p, f->before, f->speed_rpm),
-                                place(p, f->after, f->speed_rpm)};
+    size_t count = 0;
+    *at = (struct svg_point){0, 0};
+    for (size_t i = 0; i < p->d->readings.count; i++) {
+        const struct dossier_reading *item = &p->d->readings.items[i];
+        if (!is_here(p, item) || !item->use || !is_bare(p, item->reading.run))
+            continue;
+        struct svg_point one = place(p, item->reading.vector, item->reading.speed_rpm);
+        at->x += one.x;
+        at->y += one.y;
+        count++;
+    }
+    at->x /= (double)count;
+    at->y /= (double)count;
+    return count > 0;
+}
+
+/* Dashed lines from as found to every run with weights. */
+static void effects(const struct polar *p)
+{
+    struct svg_point from;
+    if (!as_found(p, &from))
+        return;
     for (size_t i = 0; i < p->d->readings.count; i++) {
         const struct reading_record *r = &p->d->readings.items[i].reading;
         if (!is_here(p, &p->d->readings.items[i]) || is_bare(p, r->run))
             continue;
         struct svg_point to = place(p, r->vector, r->speed_rpm);
-        svg_line(p->out, "trial", path[0].x, path[0].y, to.x, to.y);
+        svg_line(p->out, "trial", from.x, from.y, to.x, to.y);
     }
+}
+
+static void forecast(const struct polar *p, const struct forecast_record *f)
+{
+    struct svg_point path[2] = {place(p, f->before, f->speed_rpm),
+                                place(p, f->after, f->speed_rpm)};
     svg_path(p->out, "to", path, 2, 0);
     svg_circle(p->out, "range", MIDDLE_X, MIDDLE_Y,
                peak(p, f->after_95[1], f->speed_rpm) * p->scale);
@@ -257,6 +284,7 @@ double draw_polar(const struct dossier *d, size_t sensor, const char *condition,
         if (is_here(&p, &d->readings.items[i]))
             region(&p, &d->readings.items[i]);
     }
+    effects(&p);
     for (size_t i = 0; i < d->forecasts.count; i++) {
         if (forecast_here(&p, &d->forecasts.items[i]))
             forecast(&p, &d->forecasts.items[i]);

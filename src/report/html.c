@@ -13,6 +13,7 @@
 #include "report/text_answer.h"
 #include "report/text_audit.h"
 #include "report/text_readings.h"
+#include "sheet/units.h"
 
 static const char page_style[] =
     "@page{margin:14mm}*{box-sizing:border-box}"
@@ -165,6 +166,19 @@ static void evidence(const struct dossier *d, bool small, struct buffer *out)
     buffer_text(out, "</div>\n");
 }
 
+static void sensor(const struct job *job, const struct job_sensor *s, struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    char unit[24], at[DIGITS_ROOM];
+    buffer_format(&text, "Sensor '%s': channel '%s', measures %s, shown in %s", s->name, s->channel,
+                  quantity_text(s->quantity), units_show_text(&s->show, unit));
+    if (isfinite(s->at_deg))
+        buffer_format(&text, ", sits at %s deg, counted %s", digits_angle(at, s->at_deg, NAN),
+                      job->angles == SENSE_NONE ? "as the sheet counts" : job_sense_text(job));
+    buffer_text(&text, ".");
+    html_part_take(out, "p", &text);
+}
+
 static void provenance(const struct dossier *d, const char *job, size_t length, struct buffer *out)
 {
     html_part_heading(out, "Made from");
@@ -177,6 +191,8 @@ static void provenance(const struct dossier *d, const char *job, size_t length, 
                           run->run, run->files[f].path, run->files[f].frames, run->files[f].rate_hz,
                           run->files[f].sha256);
     }
+    for (size_t i = 0; i < d->job->sensor_count; i++)
+        sensor(d->job, &d->job->sensors[i], out);
     html_part_say(out, "note", "By lopside " LOPSIDE_VERSION ". All settings of the job:");
     char *line = strndup(job, length);
     if (!line) {

@@ -138,16 +138,19 @@ static double speed_of(const struct dossier *d, const struct compared_record *c)
     return NAN;
 }
 
-static void vector_cell(const struct job_sensor *sensor, double complex z, double rpm,
+/* se: standard error of the distance (SI peak); both vectors are shown no finer than it allows. */
+static void vector_cell(const struct job_sensor *sensor, double complex z, double se, double rpm,
                         struct table *table)
 {
-    struct shown s = shown_vector(z, NULL, sensor->quantity, rpm, &sensor->show, NAN);
+    const double cov[3] = {se * se / 2, 0, se * se / 2};
+    struct shown s =
+        shown_vector(z, isfinite(se) ? cov : NULL, sensor->quantity, rpm, &sensor->show, NAN);
     char unit[24], amplitude[DIGITS_ROOM], lag[DIGITS_ROOM];
     if (isnan(s.amplitude))
         table_cell(table, "-");
     else
-        table_cell(table, "%s %s at %s deg lag", digits_text(amplitude, s.amplitude, NAN),
-                   units_show_text(&sensor->show, unit), digits_angle(lag, s.lag_deg, 1));
+        table_cell(table, "%s %s at %s deg lag", digits_text(amplitude, s.amplitude, s.half),
+                   units_show_text(&sensor->show, unit), digits_angle(lag, s.lag_deg, s.lag_half));
 }
 
 static void compared(const struct dossier *d, struct buffer *out)
@@ -167,8 +170,9 @@ static void compared(const struct dossier *d, struct buffer *out)
         double rpm = speed_of(d, c);
         table_cell(&table, "%s", d->job->runs[c->run].name);
         table_cell(&table, "%s", sensor->name);
-        vector_cell(sensor, c->predicted, rpm, &table);
-        vector_cell(sensor, c->measured, rpm, &table);
+        double se = c->se > 0 ? cabs(c->measured - c->predicted) / c->se : NAN;
+        vector_cell(sensor, c->predicted, se, rpm, &table);
+        vector_cell(sensor, c->measured, se, rpm, &table);
         table_cell(&table, isfinite(c->se) ? "%.1f" : "-", c->se);
     }
     html_part_heading(out, "Predicted against measured");

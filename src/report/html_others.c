@@ -2,6 +2,7 @@
 
 #include <math.h>
 #include <stdio.h>
+#include <string.h>
 
 #include "base/angle.h"
 #include "report/html_part.h"
@@ -112,8 +113,19 @@ static void ideal(const struct dossier *d, struct buffer *out)
     html_part_table(out, &table);
 }
 
-/* A table of a record's list of weights. */
-static void weights(const struct job *job, const json_t *items, struct buffer *out)
+/* 95 % half widths of the ideal weight on that plane: kg, deg. NaN: not known. */
+static void half_of(const struct dossier *d, const char *plane, double half[2])
+{
+    half[0] = half[1] = NAN;
+    for (size_t i = 0; i < d->corrections.count; i++) {
+        const struct correction_record *c = &d->corrections.items[i];
+        if (strcmp(dossier_plane(d, c->plane), plane) == 0)
+            phrase_weight_half(c->least_squares[0], c->least_squares[1], c->ellipse, half);
+    }
+}
+
+/* A table of a record's list of weights. ideal: known no better than the ideal weight is. */
+static void weights(const struct dossier *d, const json_t *items, bool ideal, struct buffer *out)
 {
     static const struct table_column columns[] = {{"plane", false, true},
                                                   {"position", true, false},
@@ -125,11 +137,14 @@ static void weights(const struct job *job, const json_t *items, struct buffer *o
         const json_t *item = json_array_get(items, i);
         struct buffer what = BUFFER_INIT;
         double mass = number(item, "mass"), position = number(item, "position");
+        double half[2] = {NAN, NAN};
+        if (ideal)
+            half_of(d, string(item, "plane"), half);
         table_cell(&table, "%s", string(item, "plane"));
         table_cell(&table, position > 0 ? "%.0f" : "-", position);
-        angle_cell(&table, job, number(item, "angle_deg"), NAN);
+        angle_cell(&table, d->job, number(item, "angle_deg"), half[1]);
         buffer_text(&what, mass < 0 ? "remove " : "fit ");
-        phrase_mass(&what, job, fabs(mass), NAN);
+        phrase_mass(&what, d->job, fabs(mass), half[0]);
         take_cell(&table, &what);
     }
     html_part_table(out, &table);
@@ -153,13 +168,17 @@ static void others(const struct dossier *d, struct buffer *out)
                   "Instead of the weights at the top, not besides them. Those leave an expected "
                   "%s %% of the vibration.",
                   share(text, best));
+    buffer_text(out, "<div class=\"pictures\">\n");
     for (size_t i = 0; i < json_array_size(list); i++) {
         const json_t *other = json_array_get(list, i);
         const json_t *items = json_object_get(other, "items");
+        buffer_text(out, "<div>\n");
         html_part_say(out, "", "Leaves %s %%%s", share(text, number(other, "of_nothing")),
                       json_array_size(items) ? ":" : ": nothing added.");
-        weights(d->job, items, out);
+        weights(d, items, false, out);
+        buffer_text(out, "</div>\n");
     }
+    buffer_text(out, "</div>\n");
 }
 
 /* The ideal answer with the mounted weights the other way, and one weight a plane for all. */
@@ -177,14 +196,14 @@ static void otherwise(const struct dossier *d, struct buffer *out)
                                       : "Ideal weight if everything comes off first");
         html_part_say(out, "note", "Instead of the weights at the top. Relative to %s%s%s.",
                       is_run ? "run '" : "", to, is_run ? "'" : "");
-        weights(d->job, list, out);
+        weights(d, list, true, out);
     }
     if (json_array_size(merged) > 0) {
         html_part_heading(out, "One weight a plane for all that is then on");
         html_part_say(out, "note",
                       "The same as all mounted and placed weights together, for a permanent "
                       "weight in their place.");
-        weights(d->job, merged, out);
+        weights(d, merged, true, out);
     }
 }
 
@@ -194,9 +213,12 @@ static void part_row(const struct dossier *d, const char *name, double complex u
     char text[DIGITS_ROOM];
     double angle = cabs(unbalance) > 0 ? carg(unbalance) * 180 / PI : NAN;
     table_cell(table, "%s", name);
-    for (size_t p = 0; p < 2; p++)
-        mass_cell(table, d->job, cabs(unbalance) / d->job->planes[p].radius_m, NAN);
-    angle_cell(table, d->job, angle, 1);
+    double half[2] = {NAN, NAN};
+    for (size_t p = 0; p < 2; p++) {
+        half_of(d, d->job->planes[p].name, half);
+        mass_cell(table, d->job, cabs(unbalance) / d->job->planes[p].radius_m, half[0]);
+    }
+    angle_cell(table, d->job, angle, half[1]);
     if (isfinite(left))
         table_cell(table, "%s %%", share(text, left));
     else
