@@ -7,6 +7,7 @@
 #include "report/text_answer.h"
 #include "report/text_audit.h"
 #include "report/text_others.h"
+#include "report/text_outcomes.h"
 #include "report/text_readings.h"
 
 static void header(const struct dossier *d, struct buffer *out)
@@ -67,9 +68,13 @@ void text_write(const struct dossier *dossier, struct buffer *out)
         text_answer_now(dossier, out);
         text_answer_safety(dossier, out);
         text_answer_forecast(dossier, out);
+        text_outcomes_zones(dossier, out);
         text_others_write(dossier, out);
         text_answer_ideal(dossier, out);
+        text_others_same(dossier, out);
+        text_outcomes_parts(dossier, out);
         text_answer_tolerance(dossier, out);
+        text_outcomes_compared(dossier, out);
         text_readings_all(dossier, out);
         text_readings_responses(dossier, out);
     }

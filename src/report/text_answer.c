@@ -8,6 +8,7 @@
 #include "report/phrase.h"
 #include "report/shown.h"
 #include "report/table.h"
+#include "report/text_others.h"
 
 static bool step_is(const struct dossier *d, const char *step)
 {
@@ -163,6 +164,7 @@ static void nothing(const struct dossier *d, bool refused, struct buffer *out)
         advice(d, 2, out);
     else
         paper_wrap(out, 2, 2, "Mend what is listed above and record those runs again.");
+    text_others_trials(d, out);
     note_angle(d, out);
 }
 
@@ -177,6 +179,7 @@ static void step_only(const struct dossier *d, struct buffer *out)
                    "No answer is in this stream: it has not been through `lopside solve`.");
     if (d->has_next)
         advice(d, 2, out);
+    text_others_trials(d, out);
     note_angle(d, out);
 }
 

@@ -1,10 +1,12 @@
 #include "report/text_others.h"
 
 #include <math.h>
+#include <string.h>
 
 #include "report/digits.h"
 #include "report/paper.h"
 #include "report/phrase.h"
+#include "report/shown.h"
 
 static double number(const json_t *object, const char *key)
 {
@@ -25,20 +27,32 @@ static void share(struct buffer *out, double of_nothing)
     buffer_format(out, "%s %%", digits_at(text, 100 * of_nothing, of_nothing < 0.0995 ? -1 : 0));
 }
 
-static void item(struct buffer *out, const struct job *job, const json_t *json)
+static void put(struct buffer *out, size_t first, size_t rest, struct buffer *text)
+{
+    if (text->failed)
+        out->failed = 1;
+    else if (text->bytes)
+        paper_wrap(out, first, rest, text->bytes);
+    buffer_release(text);
+}
+
+/* A weight of a list, to the digits that the 95 % half widths (kg, deg; NaN: nominal) support. */
+static void item(struct buffer *out, const struct job *job, const json_t *json,
+                 const double half[2])
 {
     double mass = number(json, "mass"), position = number(json, "position");
     buffer_text(out, mass < 0 ? "remove " : "");
-    phrase_mass(out, job, fabs(mass), NAN);
+    phrase_mass(out, job, fabs(mass), half[0]);
     buffer_format(out, " on plane '%s'", string(json, "plane"));
     if (position > 0)
         buffer_format(out, ", position %.0f", position);
     buffer_text(out, ", at ");
-    phrase_angle(out, job, number(json, "angle_deg"), NAN);
+    phrase_angle(out, job, number(json, "angle_deg"), half[1]);
 }
 
 static void other(const struct job *job, const json_t *json, struct buffer *out)
 {
+    static const double nominal[2] = {NAN, NAN};
     const json_t *items = json_object_get(json, "items");
     struct buffer text = BUFFER_INIT;
     buffer_text(&text, "- ");
@@ -48,13 +62,9 @@ static void other(const struct job *job, const json_t *json, struct buffer *out)
         buffer_text(&text, "nothing added");
     for (size_t i = 0; i < json_array_size(items); i++) {
         buffer_text(&text, i ? "; " : "");
-        item(&text, job, json_array_get(items, i));
+        item(&text, job, json_array_get(items, i), nominal);
     }
-    if (text.failed)
-        out->failed = 1;
-    else
-        paper_wrap(out, 2, 4, text.bytes);
-    buffer_release(&text);
+    put(out, 2, 4, &text);
 }
 
 void text_others_write(const struct dossier *dossier, struct buffer *out)
@@ -68,11 +78,106 @@ void text_others_write(const struct dossier *dossier, struct buffer *out)
     share(&text, best);
     buffer_text(&text, " of the vibration; the next best would leave:");
     paper_heading(out, "OTHERWISE");
-    if (text.failed)
-        out->failed = 1;
-    else
-        paper_wrap(out, 2, 2, text.bytes);
-    buffer_release(&text);
+    put(out, 2, 2, &text);
     for (size_t i = 0; i < json_array_size(others); i++)
         other(dossier->job, json_array_get(others, i), out);
+}
+
+static int sensor_index(const struct job *job, const char *name)
+{
+    for (size_t i = 0; i < job->sensor_count; i++)
+        if (strcmp(job->sensors[i].name, name) == 0)
+            return (int)i;
+    return -1;
+}
+
+static void trial(const struct job *job, const json_t *json, struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    char change[DIGITS_ROOM];
+    const int sensor = sensor_index(job, string(json, "sensor"));
+    const double mass = number(json, "mass");
+    if (sensor < 0)
+        return;
+    const struct show *show = &job->sensors[sensor].show;
+    const double effect = shown_amplitude(number(json, "effect"), NAN,
+                                          job->sensors[sensor].quantity, job->service_rpm, show)
+                              .amplitude;
+    if (!isfinite(effect))
+        return;
+    buffer_format(&text, "Plane '%s'", string(json, "plane"));
+    if (isfinite(mass)) { /* it is in the text of the step, too, to three digits */
+        buffer_text(&text, ", ");
+        phrase_mass(&text, job, fabs(mass), fabs(mass) / 10);
+    }
+    /* A stored response is of another day: two digits are all it deserves. */
+    buffer_format(&text, ": expected to change sensor '%s' most, by about %s %s %s (1x).",
+                  job->sensors[sensor].name, digits_text(change, effect, effect), show->unit,
+                  detection_text(show->detection));
+    put(out, 2, 4, &text);
+}
+
+void text_others_trials(const struct dossier *dossier, struct buffer *out)
+{
+    const json_t *trials = json_object_get(dossier->figures, "trials");
+    for (size_t i = 0; i < json_array_size(trials); i++)
+        trial(dossier->job, json_array_get(trials, i), out);
+}
+
+/* 95 % half widths of an ideal weight (kg, deg) on that plane; NaN: not known. */
+static void ideal_half(const struct dossier *d, const json_t *json, double half[2])
+{
+    half[0] = half[1] = NAN;
+    for (size_t i = 0; i < d->corrections.count; i++) {
+        const struct correction_record *c = &d->corrections.items[i];
+        if (strcmp(dossier_plane(d, c->plane), string(json, "plane")) == 0)
+            phrase_weight_half(number(json, "mass"), number(json, "angle_deg"), c->ellipse, half);
+    }
+}
+
+static void list(const struct dossier *d, const char *lead, const json_t *weights, bool ideal,
+                 struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    buffer_format(&text, "%s ", lead);
+    if (json_array_size(weights) == 0)
+        buffer_text(&text, "nothing");
+    for (size_t i = 0; i < json_array_size(weights); i++) {
+        const json_t *weight = json_array_get(weights, i);
+        double half[2] = {NAN, NAN};
+        if (ideal)
+            ideal_half(d, weight, half);
+        buffer_text(&text, i ? "; " : "");
+        item(&text, d->job, weight, half);
+    }
+    buffer_text(&text, ".");
+    put(out, 2, 4, &text);
+}
+
+void text_others_same(const struct dossier *dossier, struct buffer *out)
+{
+    const json_t *instead = json_object_get(dossier->figures, "instead");
+    const json_t *merged = json_object_get(dossier->figures, "merged");
+    if (!instead && !merged)
+        return;
+    paper_heading(out, "THE SAME IN OTHER WORDS");
+    if (instead) {
+        const char *to = string(instead, "relative_to");
+        struct buffer lead = BUFFER_INIT;
+        if (job_find_run(dossier->job, to) >= 0)
+            buffer_format(&lead, "The ideal weight with the weights of run '%s' left on:", to);
+        else
+            buffer_text(&lead, "The ideal weight with everything taken off first:");
+        if (!lead.failed)
+            list(dossier, lead.bytes, json_object_get(instead, "weights"), true, out);
+        out->failed = out->failed || lead.failed;
+        buffer_release(&lead);
+    }
+    if (merged)
+        list(dossier,
+             dossier->placements.count > 0
+                 ? "What will be on, as one weight a plane at the plane's radius:"
+                 : "What is on, as one weight a plane at the plane's radius:",
+             merged, false, out);
+    paper_say(out, 2, 2, "Each is in the place of what is above, not to be fitted besides it.");
 }
