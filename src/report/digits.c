@@ -1,5 +1,6 @@
 #include "report/digits.h"
 
+#include <limits.h>
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
@@ -27,6 +28,11 @@ int digits_place(double value, double half)
     if (value == 0)
         return place;
     return place > finest ? place : finest;
+}
+
+int digits_place_second(double value)
+{
+    return value != 0 && isfinite(value) ? exponent_of(value) - 1 : INT_MAX;
 }
 
 char *digits_at(char *text, double value, int place)

@@ -19,6 +19,10 @@
  * <= 0: not known). value NaN or infinite: 0. */
 int digits_place(double value, double half);
 
+/* The decimal exponent of the second significant digit of `value`; INT_MAX for zero, NaN and
+ * infinities, which have none. */
+int digits_place_second(double value);
+
 /* Writes `value` into text (DIGITS_ROOM bytes) as above; "-" for NaN and infinities. Returns text.
  */
 char *digits_text(char *text, double value, double half);

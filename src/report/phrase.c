@@ -17,8 +17,18 @@ void phrase_angle(struct buffer *out, const struct job *job, double angle_deg, d
 void phrase_mass(struct buffer *out, const struct job *job, double kg, double half)
 {
     char text[DIGITS_ROOM];
-    digits_text(text, shown_mass(job, kg), shown_mass(job, half));
+    double shown = shown_mass(job, kg), wide = shown_mass(job, half);
+    int place = digits_place(shown, wide), coarsest = digits_place_second(shown);
+    if (place > coarsest)
+        digits_at(text, shown, coarsest);
+    else
+        digits_text(text, shown, wide);
     buffer_format(out, "%s %s", text, shown_mass_unit(job));
+}
+
+bool phrase_weight_useless(double kg, double half)
+{
+    return half > fabs(kg);
 }
 
 void phrase_pieces(struct buffer *out, const struct job *job, const double *pieces, size_t count)

@@ -13,8 +13,13 @@
  * width, deg; NaN: not known, or nominal. */
 void phrase_angle(struct buffer *out, const struct job *job, double angle_deg, double half);
 
-/* "60 g", to the digits that `half` (kg; NaN: nominal) supports. */
+/* "60 g", to the digits that `half` (kg; NaN: nominal) supports, but two significant ones at least: a
+ * weight that is badly known is still not 0 g. */
 void phrase_mass(struct buffer *out, const struct job *job, double kg, double half);
+
+/* True where a weight's 95 % half width (kg) is more than the weight itself, so that nothing can be
+ * compared with it. NaN: false. */
+bool phrase_weight_useless(double kg, double half);
 
 /* "3 pieces: 50 + 10 + 10 g". One piece: "in one piece". */
 void phrase_pieces(struct buffer *out, const struct job *job, const double *pieces, size_t count);

@@ -247,7 +247,9 @@ static void ideal(const struct dossier *d, const struct correction_record *c, st
     if (isnan(c->least_squares[0]))
         return;
     text = (struct buffer)BUFFER_INIT;
-    buffer_text(&text, "least squares, for a hand check: ");
+    buffer_format(&text, "least squares, %s: ",
+                  phrase_weight_useless(c->least_squares[0], half[0]) ? "of no use for a hand check"
+                                                                      : "for a hand check");
     phrase_mass(&text, d->job, c->least_squares[0], half[0]);
     buffer_text(&text, " at ");
     phrase_angle(&text, d->job, c->least_squares[1], half[1]);
@@ -338,11 +340,15 @@ void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
 
 static const char *within(const struct residual_record *r)
 {
+    /* An upper end of twice what is allowed says as little as no estimate would: our choice. */
+    const double blind = 2;
     if (isnan(r->after) || isnan(r->permissible))
         return "not known";
     if (r->after > r->permissible)
         return "NOT MET";
-    return isnan(r->after_95) || r->after_95 <= r->permissible ? "met" : "met, not surely";
+    if (r->after_95 <= r->permissible)
+        return "met";
+    return r->after_95 <= blind * r->permissible ? "not proven" : "not known";
 }
 
 void text_answer_tolerance_table(const struct dossier *dossier, struct table *table)

@@ -1,0 +1,162 @@
+/* What the text report says beside the numbers: weights badly known, tolerances, holes, targets
+ * missed, sensors lost. The stream is the golden one with records changed. */
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+#include <cmocka.h>
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/status.h"
+#include "report/dossier.h"
+#include "report/phrase.h"
+#include "report/text.h"
+
+struct loaded {
+    struct job job;
+    struct dossier dossier;
+};
+
+static void load_line(struct loaded *l, const char *line, size_t length)
+{
+    const char *why = "";
+    json_t *json = json_loadb(line, length, JSON_REJECT_DUPLICATES, NULL);
+    assert_non_null(json);
+    const char *kind = json_string_value(json_object_get(json, "kind"));
+    if (strcmp(kind, "job") == 0)
+        assert_int_equal(job_parse(&l->job, json, &why), 0);
+    else if (strcmp(kind, "end") != 0)
+        assert_int_equal(dossier_add(&l->dossier, json, line, length, &why), 0);
+    json_decref(json);
+}
+
+static void load(struct loaded *l, const char *name)
+{
+    char path[512];
+    snprintf(path, sizeof path, GOLDEN "/%s.jsonl", name);
+    FILE *file = fopen(path, "r");
+    assert_non_null(file);
+    memset(l, 0, sizeof *l);
+    job_init(&l->job);
+    dossier_init(&l->dossier, &l->job);
+    char *line = NULL;
+    size_t room = 0;
+    ssize_t length;
+    while ((length = getline(&line, &room, file)) > 0)
+        load_line(l, line, (size_t)length);
+    free(line);
+    fclose(file);
+    dossier_close(&l->dossier);
+}
+
+/* The report with every run of blanks and line ends as one blank, so that wrapping does not matter;
+ * to be freed. */
+static char *said(struct loaded *l)
+{
+    struct buffer out = BUFFER_INIT;
+    text_write(&l->dossier, &out);
+    assert_int_equal(out.failed, 0);
+    char *text = malloc(out.length + 1), *to = text;
+    assert_non_null(text);
+    for (const char *c = out.bytes; *c; c++) {
+        char plain = *c;
+        if (plain == '\n')
+            plain = ' ';
+        if (plain != ' ' || to == text || to[-1] != ' ')
+            *to++ = plain;
+    }
+    *to = '\0';
+    buffer_release(&out);
+    return text;
+}
+
+static void unload(struct loaded *l)
+{
+    dossier_release(&l->dossier);
+    job_release(&l->job);
+}
+
+static void assert_says(struct loaded *l, const char *what, bool does)
+{
+    char *text = said(l);
+    if ((strstr(text, what) != NULL) != does)
+        fail_msg("'%s' %s in: %s", what, does ? "is not" : "stands", text);
+    free(text);
+}
+
+/* Two significant digits of a mass are the least: by hand. */
+static void no_weight_becomes_nothing(void **state)
+{
+    (void)state;
+    static const struct {
+        double kg, half;
+        const char *text;
+    } cases[] = {
+        {0.02801, 2.0, "28 g"},  {0.0047, 2.0, "4.7 g"},        {0.1047, 0.0067, "104.7 g"},
+        {0.105, 0.011, "105 g"}, {-0.02801, 2.0, "-28 g"},      {0.06, NAN, "60 g"},
+        {0, 2.0, "0 g"},         {0.1047, INFINITY, "104.7 g"}, {NAN, 2.0, "- g"},
+    };
+    struct job job;
+    job_init(&job);
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        struct buffer out = BUFFER_INIT;
+        phrase_mass(&out, &job, cases[i].kg, cases[i].half);
+        assert_string_equal(out.bytes, cases[i].text);
+        buffer_release(&out);
+    }
+    job_release(&job);
+}
+
+static void badly_known_weights_say_so(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    struct correction_record *c = &l.dossier.corrections.items[0];
+    assert_says(&l, "least squares, for a hand check: 114.7 g", true);
+    assert_says(&l, "of no use", false);
+    c->ellipse[0] = c->ellipse[2] = 1; /* a standard deviation of 1 kg */
+    assert_says(&l, "112.3 g", false);
+    assert_says(&l, "Plane 'wheel': 110 g at", true);
+    assert_says(&l, "least squares, of no use for a hand check: 110 g", true);
+    unload(&l);
+}
+
+static void tolerance_is_not_claimed(void **state)
+{
+    (void)state;
+    /* kg m; permissible 0.010 */
+    static const struct {
+        double after, after_95;
+        const char *word;
+    } cases[] = {
+        {0.002, 0.009, " met Basis"},          {0.002, 0.015, " not proven Basis"},
+        {0.002, 0.021, " not known Basis"},    {0.002, 0.790, " not known Basis"},
+        {0.011, 0.015, " NOT MET Basis"},      {0.002, NAN, " not known Basis"},
+        {0.002, INFINITY, " not known Basis"}, {NAN, NAN, " not known Basis"},
+    };
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        struct loaded l;
+        load(&l, "report-balance");
+        struct residual_record *r = &l.dossier.residuals.items[0];
+        r->after = cases[i].after;
+        r->after_95 = cases[i].after_95;
+        r->permissible = 0.010;
+        assert_says(&l, cases[i].word, true);
+        unload(&l);
+    }
+}
+
+int main(void)
+{
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(no_weight_becomes_nothing),
+        cmocka_unit_test(badly_known_weights_say_so),
+        cmocka_unit_test(tolerance_is_not_claimed),
+    };
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
