@@ -28,12 +28,15 @@ static const char page_style[] =
     ".wide{overflow-x:auto;max-width:100%}table{border-collapse:collapse;margin:.4em 0;"
     "font-size:.9em}th,td{padding:2px 8px;border-bottom:1px solid #bbb;text-align:left;"
     "overflow-wrap:normal}th{border-bottom:1.5px solid #111}.r{text-align:right}"
+    ".no{font-weight:bold}h2+p,h3+p,.note{break-after:avoid}"
     ".pictures{display:flex;flex-wrap:wrap;gap:8px}.pictures "
     "svg{max-width:100%;height:auto}.pictures svg,tr,li{break-inside:avoid}"
     "pre{white-space:pre-wrap;font-size:.75em;border:1px solid #bbb;padding:6px}.note{color:#333;"
-    "font-size:.9em}@media(max-width:500px){th,td{padding:2px 3px;font-size:11px}}@media "
+    "font-size:.9em}@media(min-width:501px){.r{white-space:nowrap}}@media(max-width:500px){th,td{"
+    "padding:2px 3px;font-size:11px}}@media "
     "print{body{padding:0;max-width:none;font-size:10pt}"
-    ".wide{overflow:visible}}";
+    ".wide{overflow:visible}.pictures svg{max-width:49%}.many svg{max-width:32%}"
+    ".planes svg{max-width:100%}}";
 
 static void head(const struct dossier *d, struct buffer *out)
 {
@@ -77,34 +80,24 @@ static void forecast(const struct dossier *d, struct buffer *out)
     }
 }
 
-/* The parts that are prose already, as the text report has them. */
-static void as_text(const struct dossier *d, void (*write)(const struct dossier *, struct buffer *),
-                    const char *heading, struct buffer *out)
+/* What the text report says first of an audit, as one paragraph. */
+static void summary(const struct dossier *d, struct buffer *out)
 {
-    struct buffer text = BUFFER_INIT;
-    write(d, &text);
-    if (text.length > 0 || text.failed) {
-        html_part_heading(out, heading);
-        const char *line = text.bytes && !text.failed ? text.bytes : "";
-        line += strspn(line, "\n");
-        line += strcspn(line, "\n"); /* the text's own heading */
-        line += strspn(line, "\n");
-        if (text.failed)
-            out->failed = 1;
-        buffer_text(out, "<pre>");
-        for (; *line; line += strcspn(line, "\n"), line += *line == '\n') {
-            size_t length = strcspn(line, "\n");
-            char *copy = strndup(line, length);
-            if (!copy) {
-                out->failed = 1;
-                break;
-            }
-            svg_escape(out, copy);
-            buffer_text(out, "\n");
-            free(copy);
-        }
-        buffer_text(out, "</pre>\n");
+    struct buffer text = BUFFER_INIT, joined = BUFFER_INIT;
+    text_audit_summary(d, &text);
+    const char *line = text.bytes && !text.failed ? text.bytes : "";
+    line += strspn(line, "\n");
+    line += strcspn(line, "\n"); /* the text's own heading */
+    while (*(line += strspn(line, " \n"))) {
+        size_t length = strcspn(line, "\n");
+        buffer_text(&joined, joined.length ? " " : "");
+        buffer_add(&joined, line, length);
+        line += length;
     }
+    if (text.failed)
+        out->failed = 1;
+    html_part_heading(out, "Can these readings be trusted?");
+    html_part_take(out, "p", &joined);
     buffer_release(&text);
 }
 
@@ -150,7 +143,7 @@ static void evidence(const struct dossier *d, bool small, struct buffer *out)
 {
     html_part_heading(out, small ? "Lag over time, recording by recording"
                                  : "Evidence: over time, order spectra");
-    buffer_text(out, "<div class=\"pictures\">\n");
+    buffer_format(out, "<div class=\"pictures%s\">\n", small ? " many" : "");
     for (size_t r = 0; r < d->runs.count; r++) {
         for (size_t s = 0; s < d->job->sensor_count; s++)
             draw_lines_time(d, r, s, small, 0, out);
@@ -213,7 +206,7 @@ void html_write(const struct dossier *dossier, const char *job, size_t length, s
     head(d, out);
     if (audit) {
         struct table table;
-        as_text(d, text_audit_summary, "Can these readings be trusted?", out);
+        summary(d, out);
         html_part_heading(out, "Readings");
         html_part_say(out, "note",
                       "Phase is lag, in degrees. sd%% and deg: standard deviation of "

@@ -146,7 +146,7 @@ static void nothing(const struct dossier *d, int answer, struct buffer *out)
 
 static void drawings(const struct dossier *d, struct buffer *out)
 {
-    buffer_text(out, "<div class=\"pictures\">\n");
+    buffer_format(out, "<div class=\"pictures%s\">\n", d->job->plane_count == 1 ? " planes" : "");
     for (size_t i = 0; i < d->job->plane_count; i++)
         draw_plane(d, i, 0, out);
     buffer_text(out, "</div>\n");

@@ -1,7 +1,9 @@
 #include "report/html_part.h"
 
 #include <stdarg.h>
+#include <stdbool.h>
 #include <stdio.h>
+#include <string.h>
 
 #include "report/svg.h"
 
@@ -36,7 +38,9 @@ void html_part_take(struct buffer *out, const char *element, struct buffer *text
 static void cell(struct buffer *out, const char *element, const struct table_column *column,
                  const char *text)
 {
-    buffer_format(out, "<%s%s>", element, column->right ? " class=\"r\"" : "");
+    bool bad = strcmp(text, "REFUSED") == 0 || strcmp(text, "UNREAD") == 0;
+    const char *class = column->right ? " class=\"r\"" : bad ? " class=\"no\"" : "";
+    buffer_format(out, "<%s%s>", element, class);
     svg_escape(out, text);
     buffer_format(out, "</%s>", element);
 }
