@@ -6,6 +6,7 @@
 
 #include "base/angle.h"
 #include "solve/drill.h"
+#include "solve/sits.h"
 #include "solve/tolerance.h"
 #include "solve/trial.h"
 #include "solve/turn.h"
@@ -159,10 +160,16 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
     if (l.off || !(job->rotor_mass > 0) || !(job->service_rpm > 0))
         return false;
     double load = journal_load(job, plane) * TRIAL_GRAVITY;
-    double mass = cabs(a->placed_weights[plane]); /* all of it together, or the most at one place */
-    for (size_t i = 0; i < a->placement.best.count; i++)
-        if (a->placement.best.items[i].plane == plane)
-            mass = fmax(mass, a->placement.best.items[i].mass);
+    /* all that then sits there together, or the most at one place */
+    double mass = cabs(a->placed_weights[plane] + a->mounted[plane]);
+    double sign = job->planes[plane].work == WORK_REMOVE ? -1 : 1;
+    bool mounted = a->mounted[plane] != 0;
+    for (size_t i = 0; i < a->placement.best.count; i++) {
+        const struct place_item *item = &a->placement.best.items[i];
+        if (item->plane == plane)
+            mass = fmax(mass, fabs(sign * item->mass +
+                                   sits_equivalent(job, plane, item->angle_deg)));
+    }
     double force = trial_force(mass, job->planes[plane].radius_m, job->service_rpm);
     if (!(load > 0))
         return false;
@@ -173,9 +180,9 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
                                  .sensor = -1};
     judge(f, &l, 100 * force / load);
     snprintf(f->text, sizeof f->text,
-             "what is placed on '%s' pulls with %s N at service speed, %s %% of the static journal "
+             "what %s on '%s' pulls with %s N at service speed, %s %% of the static journal "
              "load%s",
-             job->planes[plane].name, judge_figure(force, 2).text,
+             mounted ? "then sits" : "is placed", job->planes[plane].name, judge_figure(force, 2).text,
              judge_figure(100 * force / load, 2).text,
              f->verdict == ADVICE_OK ? ""
                                      : "; check rotor mass, speed, radius and readings before it "

@@ -12,6 +12,7 @@
 #include "solve/drill.h"
 #include "solve/parts.h"
 #include "solve/ruling.h"
+#include "solve/sits.h"
 
 static int room(struct answer *a, size_t most)
 {
@@ -276,8 +277,10 @@ static bool ideal_fits(const struct answer *a)
     for (size_t p = 0; p < a->planes; p++) {
         const struct job_plane *plane = &a->model->job->planes[p];
         double mass = cabs(a->weights[p]);
-        if (!plane->any_position || plane->stock || mass > most_at(plane) ||
-            mass > plane->most_in_all)
+        double most = most_at(plane), all = plane->most_in_all - sits_in_all(a->model->job, p);
+        if (!isinf(most))
+            most -= sits_at(a->model->job, p, angle_of(a->weights[p]));
+        if (!plane->any_position || plane->stock || mass > most || mass > all)
             return false;
     }
     return true;
@@ -323,7 +326,7 @@ static int place_ideal(struct answer *a)
 }
 
 struct menu { /* one plane's lists for the search */
-    double *angles, *masses;
+    double *angles, *masses, *held;
     int *counts;
 };
 
@@ -332,7 +335,8 @@ static bool menu_init(struct menu *menu, const struct job_plane *from)
     menu->angles = calloc(from->position_count + 1, sizeof *menu->angles);
     menu->masses = calloc(from->stock_count + 1, sizeof *menu->masses);
     menu->counts = calloc(from->stock_count + 1, sizeof *menu->counts);
-    return menu->angles && menu->masses && menu->counts;
+    menu->held = calloc(from->any_position ? 360 : from->position_count + 1, sizeof *menu->held);
+    return menu->angles && menu->masses && menu->counts && menu->held;
 }
 
 static void menu_release(struct menu *menu)
@@ -340,6 +344,7 @@ static void menu_release(struct menu *menu)
     free(menu->angles);
     free(menu->masses);
     free(menu->counts);
+    free(menu->held);
 }
 
 /* All positions are taken, or no piece may be used: nothing may be put here. */
@@ -350,8 +355,9 @@ static void forbid(struct place_plane *to)
     to->most = to->most_in_all = 0;
 }
 
-static int fill_plane(const struct job_plane *from, struct menu *menu, struct place_plane *to)
+static int fill_plane(const struct job *job, size_t p, struct menu *menu, struct place_plane *to)
 {
+    const struct job_plane *from = &job->planes[p];
     size_t free_positions = 0, stock = 0;
     bool drilled = from->work == WORK_REMOVE && from->hole_m > 0 && from->depth_m > 0;
     double deepest = drilled ? drill_mass(from->hole_m, from->density, from->depth_m) : INFINITY;
@@ -360,6 +366,8 @@ static int fill_plane(const struct job_plane *from, struct menu *menu, struct pl
     for (size_t i = 0; !from->any_position && i < from->position_count; i++)
         if (!from->positions[i].taken)
             menu->angles[free_positions++] = from->positions[i].angle_deg;
+    for (size_t i = 0; i < (from->any_position ? 360 : free_positions); i++)
+        menu->held[i] = sits_at(job, p, from->any_position ? (double)i : menu->angles[i]);
     for (size_t i = 0; i < from->stock_count; i++) {
         if (from->stock[i].mass > deepest) /* each piece is one hole */
             continue;
@@ -374,7 +382,8 @@ static int fill_plane(const struct job_plane *from, struct menu *menu, struct pl
                                .stock = stock,
                                .pieces = pieces > PLACE_PIECES_MOST ? PLACE_PIECES_MOST : pieces,
                                .most = from->stock_count ? from->most : most_at(from),
-                               .most_in_all = from->most_in_all,
+                               .most_in_all = fmax(0, from->most_in_all - sits_in_all(job, p)),
+                               .held = menu->held,
                                .sign = from->work == WORK_REMOVE ? -1 : 1};
     if ((!from->any_position && free_positions == 0) || (from->stock_count > 0 && stock == 0))
         forbid(to);
@@ -397,7 +406,7 @@ static int place_by_search(struct answer *a)
     struct place_plane *planes = calloc(a->planes + 1, sizeof *planes);
     int result = menus && planes ? ANSWER_OK : ANSWER_NO_MEMORY;
     for (size_t p = 0; p < a->planes && result == ANSWER_OK; p++)
-        result = fill_plane(&job->planes[p], &menus[p], &planes[p]);
+        result = fill_plane(job, p, &menus[p], &planes[p]);
     if (result == ANSWER_OK) {
         struct place_problem problem = {.planes = a->planes,
                                         .plane = planes,
@@ -426,6 +435,9 @@ static bool common_plane(const struct place_plane of[2], double ratio, struct me
         for (size_t j = 0; j < of[1].positions; j++)
             if (fabs(angle_wrap_180(of[0].angles_deg[i] - of[1].angles_deg[j])) < 0.01) {
                 partner[positions] = j;
+                menu->held[positions] =
+                    fmax(of[0].held[i], fmin(of[0].most, of[1].most / ratio) -
+                                            (of[1].most - of[1].held[j]) / ratio);
                 menu->angles[positions++] = of[0].angles_deg[i];
                 break;
             }
@@ -438,7 +450,10 @@ static bool common_plane(const struct place_plane of[2], double ratio, struct me
                     first < 0 || (second >= 0 && second < first) ? second : first;
                 break;
             }
+    for (size_t i = 0; of[0].positions == 0 && i < 360; i++)
+        menu->held[i] = fmax(of[0].held[i], of[1].held[i] / ratio);
     *to = of[0];
+    to->held = menu->held;
     to->angles_deg = menu->angles;
     to->masses = menu->masses;
     to->counts = menu->counts;
@@ -490,7 +505,7 @@ static int place_static(struct answer *a)
     double complex *forms = calloc(8 * a->rows + 1, sizeof *forms);
     int result = partner && forms && menu_init(&menus[2], &from[0]) ? ANSWER_OK : ANSWER_NO_MEMORY;
     for (size_t p = 0; p < 2 && result == ANSWER_OK; p++)
-        result = fill_plane(&from[p], &menus[p], &of[p]);
+        result = fill_plane(a->model->job, p, &menus[p], &of[p]);
     if (result == ANSWER_OK && common_plane(of, ratio, &menus[2], partner, &common)) {
         parts_reduce(a->forms, a->rows, radius, forms);
         parts_reduce(a->certain, a->rows, radius, forms + 4 * a->rows);

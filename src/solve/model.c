@@ -259,6 +259,26 @@ static void gather_runout(struct model *m, const struct model_reading *readings,
     }
 }
 
+/* A probe without the slow-roll vector that the sheet wants taken off is lost. */
+static void lose_unrolled(const struct model *m, struct model_row *row)
+{
+    bool probe = m->job->sensors[row->sensor].quantity == QUANTITY_DISPLACEMENT;
+    bool read = row->count > 0 || row->lost_run >= 0;
+    row->unrolled = m->runout_run >= 0 && probe && read && !row->runout;
+    if (!row->unrolled)
+        return;
+    row->state = MODEL_LOST;
+    row->lost_run = m->runout_run;
+}
+
+static int find_runout(const struct job *job)
+{
+    for (size_t i = 0; i < job->run_count; i++)
+        if (!strcmp(job->runs[i].role, "runout"))
+            return (int)i;
+    return -1;
+}
+
 static bool amplitudes_only(const struct job *job, const struct model_reading *readings,
                             size_t count)
 {
@@ -278,6 +298,7 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
     memset(m, 0, sizeof *m);
     m->job = job;
     m->last_run = -1;
+    m->runout_run = find_runout(job);
     qsort(readings, count, sizeof *readings, by_run);
     m->conditions = calloc(job->run_count + count + 1, sizeof *m->conditions);
     m->rows = calloc((job->run_count + count + 1) * (job->sensor_count + 1), sizeof *m->rows);
@@ -315,6 +336,8 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
     m->repeats = pool.dof;
     for (size_t r = 0; r < m->row_count && result == MODEL_OK; r++)
         result = fit_row(m, &m->rows[r]);
+    for (size_t r = 0; r < m->row_count; r++)
+        lose_unrolled(m, &m->rows[r]);
     if (result != MODEL_OK)
         model_release(m);
     return result;

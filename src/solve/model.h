@@ -68,6 +68,8 @@ struct model_row {
     int changed_plane;                /* whose response; -1: of no plane alone */
     enum model_stored kept;           /* what became of the stored responses */
     bool runout;                      /* the slow-roll vector is taken off the readings */
+    bool unrolled; /* a probe whose slow-roll vector could not be read though the sheet has a runout
+                      run: its readings hold an unknown part; always MODEL_LOST */
 };
 
 struct model_runout {      /* of a sensor */
@@ -90,6 +92,7 @@ struct model {
                         phases only (amplitude.h) */
     bool *present;   /* owned, one per run: it has readings, usable or not */
     struct model_runout *runout; /* owned, one per sensor */
+    int runout_run;              /* the first runout run of the sheet; -1: none */
     bool *held;   /* owned, planes: a stored response of that plane is in use in some row */
     int last_run; /* last run of the sheet that has usable readings; -1: none */
 };

@@ -79,13 +79,64 @@ static void vector_words(const struct job_sensor *s, double complex z, double rp
                  units_show_text(&s->show, unit), angle_of(shown));
 }
 
+/* The row of a sensor whose slow-roll vector is missing; NULL: it is not. */
+static const struct model_row *unrolled(const struct model *m, size_t sensor)
+{
+    for (size_t i = 0; i < m->row_count; i++)
+        if (m->rows[i].sensor == sensor && m->rows[i].unrolled)
+            return &m->rows[i];
+    return NULL;
+}
+
+static bool tell_unrolled(const struct model *m, size_t sensor, struct advice_finding *f)
+{
+    const struct model_row *row = unrolled(m, sensor);
+    if (!row)
+        return false;
+    *f = (struct advice_finding){.check = "runout",
+                                 .unit = "",
+                                 .basis = "common practice",
+                                 .verdict = row->in_aim ? ADVICE_REFUSE : ADVICE_CAUTION,
+                                 .run = m->runout_run,
+                                 .sensor = (int)sensor,
+                                 .value = NAN,
+                                 .limit = NAN};
+    snprintf(f->text, sizeof f->text,
+             m->runout[sensor].count > 0
+                 ? "the readings of sensor '%s' have no phase, so that no slow-roll vector can be "
+                   "taken off them: it is %s"
+                 : "there is no usable slow-roll vector to take off the readings of sensor '%s': "
+                   "it is %s",
+             m->job->sensors[sensor].name,
+             row->in_aim ? "lost, and the aim counts on it" : "left out; the aim does without it");
+    return true;
+}
+
+void notes_runout_step(const struct model *m, const struct model_row *row, struct advice_next *next)
+{
+    const char *sensor = m->job->sensors[row->sensor].name;
+    const char *run = m->job->runs[m->runout_run].name;
+    *next = (struct advice_next){.step = "repeat"};
+    snprintf(next->reason, sizeof next->reason,
+             "no usable slow-roll vector of a sensor that the aim counts on: '%s' (run '%s')",
+             sensor, run);
+    snprintf(next->text, sizeof next->text,
+             m->amplitudes
+                 ? "sensor '%s' holds runout, which cannot be taken off without phase: run again "
+                   "with a phase reference, slow roll '%s' included, or set the aim on sensors "
+                   "that are no probes"
+                 : "repeat the slow roll '%2$s' so that sensor '%1$s' gives a vector there: slow, "
+                   "unclipped, with the tacho; or set the aim on sensors that are no probes",
+             sensor, run);
+}
+
 bool notes_runout(const struct model *m, size_t sensor, struct advice_finding *f)
 {
     const struct model_runout *o = &m->runout[sensor];
     const struct job_sensor *s = &m->job->sensors[sensor];
     char words[100];
     if (o->count == 0 || m->amplitudes)
-        return false;
+        return tell_unrolled(m, sensor, f);
     *f = (struct advice_finding){.check = "runout",
                                  .unit = "",
                                  .basis = "common practice",

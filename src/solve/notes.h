@@ -14,8 +14,13 @@
 bool notes_stored(const struct model *model, const struct model_row *row,
                   struct advice_finding *finding);
 
-/* `runout`: the slow-roll vector that is taken off the readings of a sensor. */
+/* `runout`: the slow-roll vector that is taken off the readings of a sensor; a refusal (a caution
+ * outside of the aim) where it is missing. */
 bool notes_runout(const struct model *model, size_t sensor, struct advice_finding *finding);
+
+/* The next step where the slow-roll vector of `row` is missing (row->unrolled). */
+void notes_runout_step(const struct model *model, const struct model_row *row,
+                       struct advice_next *next);
 
 /* `prediction`: a row's reading of run `run` lies `se` standard errors from what was predicted. */
 void notes_prediction(const struct model *model, const struct model_row *row, size_t run, double se,

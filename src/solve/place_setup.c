@@ -121,7 +121,7 @@ static int init_site(struct place_site *site, const struct place_problem *proble
         site->e[i] = plane->sign * angle_vector(1, deg);
     }
     site->stock = (struct place_stock){site->positions, plane->stock, site->e, plane->masses,
-                                       plane->counts, plane->most, plane->most_in_all};
+                                       plane->counts, plane->most, plane->most_in_all, plane->held};
     return 0;
 }
 

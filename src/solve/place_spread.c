@@ -270,7 +270,11 @@ int place_spread(struct place_hunt *hunt, size_t depth, const struct place_form 
     for (size_t q = 0; q < form->planes; q++) {
         struct place_site *site = &hunt->site[depth + q];
         if (site->kind == PLACE_POSITIONS) {
-            memset(site->state, OPEN, site->positions);
+            const struct place_stock *s = &site->stock;
+            for (size_t i = 0; i < site->positions; i++) {
+                bool full = s->held != NULL && s->held[i] > 0 && !isinf(s->most);
+                site->state[i] = full ? OUT : OPEN;
+            }
         }
     }
     return explore(hunt, depth, form);

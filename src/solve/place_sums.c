@@ -24,7 +24,7 @@ bool place_sums_allowed(const struct place_stock *stock, const uint32_t *items, 
             continue;
         }
         size_t position = items[i] / stock->stock, piece = items[i] % stock->stock;
-        double here = 0;
+        double here = stock->held != NULL ? stock->held[position] : 0;
         int same = 0;
         for (size_t j = 0; j < count; j++) {
             if (items[j] == PLACE_NO_ITEM) {

@@ -19,6 +19,7 @@ struct place_stock {
     const double *masses;    /* stock; borrowed */
     const int *counts;       /* stock; -1: any number; borrowed */
     double most, most_in_all;
+    const double *held;      /* positions: kg that `most` counts besides; NULL: none; borrowed */
 };
 
 struct place_sum {

@@ -31,8 +31,20 @@ static bool any_good(const struct model *m)
     return false;
 }
 
+/* A probe of the aim whose slow-roll vector is missing: the run of runout is one that is needed. */
+static const struct model_row *unrolled(const struct model *m)
+{
+    for (size_t r = 0; r < m->row_count; r++)
+        if (m->rows[r].in_aim && m->rows[r].unrolled)
+            return &m->rows[r];
+    return NULL;
+}
+
 struct ruling ruling_of(const struct model *m)
 {
+    const struct model_row *slow = unrolled(m);
+    if (slow)
+        return (struct ruling){RULING_REPEAT, slow, m->job->aim.named};
     if (model_is_bare(m) && !any_good(m))
         return rule_bare(m);
     struct ruling solve = {RULING_SOLVE, NULL, false};

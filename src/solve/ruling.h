@@ -21,7 +21,8 @@ struct ruling {
 };
 
 /* Lost: a sensor that the aim names, or every sensor of a condition (a run that the regression
- * needs). Otherwise the job goes on with what is left; rows that are not in the aim decide nothing.
+ * needs), or the slow roll of a probe of the aim. Otherwise the job goes on with what is left; rows
+ * that are not in the aim decide nothing.
  */
 struct ruling ruling_of(const struct model *model);
 

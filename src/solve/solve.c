@@ -230,7 +230,10 @@ static int conclude(struct solve_records *s)
             status = solve_records_next(s, &next, NULL, STATUS_DONE);
             break;
         case RULING_REPEAT:
-            advice_repeat_step(&model, &ruling, &next);
+            if (ruling.row && ruling.row->unrolled)
+                notes_runout_step(&model, ruling.row, &next);
+            else
+                advice_repeat_step(&model, &ruling, &next);
             status = solve_records_next(s, &next, NULL, STATUS_REFUSED);
             break;
         case RULING_MISSING:

@@ -11,6 +11,7 @@
 #include "solve/drill.h"
 #include "solve/notes.h"
 #include "solve/parts.h"
+#include "solve/sits.h"
 #include "solve/trial.h"
 #include "solve/zones.h"
 #include "stream/outcomes.h"
@@ -303,7 +304,11 @@ int solve_records_placements(struct solve_records *s, const struct answer *a)
             r.pieces[k] = signed_mass(plane, item->pieces[k]);
             r.depths_m[k] = drill_depth(plane->hole_m, plane->density, item->pieces[k]);
         }
+        double sits = sits_equivalent(job, item->plane, item->angle_deg);
         r.force_n = trial_force(item->mass, plane->radius_m, job->service_rpm);
+        r.sits = sits != 0;
+        r.total_mass = r.mass + sits_mass(job, item->plane, item->angle_deg);
+        r.total_force_n = trial_force(fabs(r.mass + sits), plane->radius_m, job->service_rpm);
         snprintf(r.relative_to, sizeof r.relative_to, "%s", relative_to(job));
         placement_print(&r, job, &s->line);
         status = put(s);

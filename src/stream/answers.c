@@ -87,6 +87,10 @@ void placement_print(const struct placement_record *r, const struct job *job, st
         line_reals(line, "depths_m", r->depths_m, r->piece_count);
     }
     line_real(line, "force_n", r->force_n);
+    if (r->sits) {
+        line_real(line, "total_mass", r->total_mass);
+        line_real(line, "total_force_n", r->total_force_n);
+    }
     line_text(line, "relative_to", r->relative_to);
     line_end(line);
 }
@@ -110,6 +114,9 @@ int placement_parse(struct placement_record *r, const struct job *job, const jso
     if (r->piece_count && fields_has(&f, "depths_m"))
         fields_reals(&f, "depths_m", r->depths_m, r->piece_count);
     r->force_n = fields_real(&f, "force_n");
+    r->sits = fields_has(&f, "total_mass");
+    r->total_mass = fields_real(&f, "total_mass");
+    r->total_force_n = fields_real(&f, "total_force_n");
     fields_copy(&f, "relative_to", r->relative_to, sizeof r->relative_to);
     return fields_done(&f, why);
 }

@@ -243,6 +243,9 @@ struct placement_record {       /* what to fit now at one position of one plane 
     size_t piece_count;
     double depths_m[PIECES_MOST]; /* of each piece's hole, removed with a drill; NaN, or 0: none */
     double force_n;             /* at service speed and the plane's radius; NaN: no speed known */
+    bool sits;                  /* something stays mounted at this position: the two below are printed */
+    double total_mass;          /* kg, of all that then sits there, as bolted on; negative: removed */
+    double total_force_n;       /* of that; NaN: no speed known */
     char relative_to[NAME_ROOM];
 };
 void placement_print(const struct placement_record *r, const struct job *job, struct line *line);

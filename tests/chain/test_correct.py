@@ -383,6 +383,24 @@ class Fitting(unittest.TestCase):
         self.assertEqual(findings(stream, "runout"), [])
         self.assertLess(abs(corrections(stream)["P"] + (truth["A"][0] + slow) / truth["A"][1]), 1e-9)
 
+    def test_runout_that_is_missing(self):
+        """A probe that the slow roll left out: no answer where the aim counts on it, else an answer without it."""
+        truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)], "B": [20 * cmath.exp(2j), 900 * cmath.exp(0.3j)]}
+        slow = 12 * cmath.exp(-2j)
+        runs = [(n, {"A": r["A"], "B": r["B"] + slow}, w) for n, r, w in trials(truth, [("P", 0.02, 30)])]
+        runs.append(("slow roll", {"B": slow}, [], ["role = runout", "speed = 200 rpm"]))
+        stream = stream_of(sheet({"P": []}, runs), expect=4)
+        self.assertEqual(chain.kind(stream, "placement"), [])
+        (f,) = [f for f in findings(stream, "runout") if f["verdict"] == "refuse"]
+        self.assertEqual((f["sensor"], f["run"]), ("A", "slow roll"))
+        (step,) = chain.kind(stream, "next")
+        self.assertEqual(step["step"], "repeat")
+        self.assertIn("slow roll", step["text"])
+        stream = stream_of(sheet({"P": []}, runs, ["target B = 1 um pk", "repeatability = 0 %"]))
+        self.assertLess(abs(corrections(stream)["P"] + truth["B"][0] / truth["B"][1]), 1e-9)
+        self.assertEqual([f["sensor"] for f in findings(stream, "runout") if f["verdict"] == "caution"], ["A"])
+        self.assertEqual([f["sensor"] for f in chain.kind(stream, "forecast")], ["B"])
+
     def test_predicted_against_measured(self):
         truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}
         w = chain.weight(0.03, 80)
@@ -460,6 +478,42 @@ class Fitting(unittest.TestCase):
         self.assertLess(abs(got - want), 0.02 * abs(want))
         for f in chain.kind(stream, "forecast"):
             self.assertLess(abs(chain.vector(f["after"])), 0.05 * abs(chain.vector(f["before"])))
+
+
+class Mounted(unittest.TestCase):
+    """What stays on counts: at its position, on its plane, and in the force."""
+
+    def placed(self, *lines, mounted=True):
+        truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}  # 30 g are needed, at 94 deg
+        plane = {"P": ["radius = 500 mm", "positions = 12 from 0 deg", "pieces = 2", *lines]}
+        aim = ["repeatability = 0 %", *(["mounted = trial 1"] if mounted else [])]
+        rotor = ["mass = 100 kg", "service speed = 1200 rpm"]
+        return stream_of(sheet(plane, trials(truth, [("P", 0.015, 90)]), aim, rotor=rotor))
+
+    def test_most_at_a_position(self):
+        at_90 = lambda s: sum(p["mass"] for p in chain.kind(s, "placement") if p["position"] == 4)
+        self.assertAlmostEqual(at_90(self.placed("stock = 5 10 g", "most = 25 g")), 0.010, delta=1e-9)
+        self.assertEqual(at_90(self.placed("stock = 5 10 g", "most = 15 g")), 0)
+        self.assertEqual(at_90(self.placed("most = 15 g")), 0)
+        self.assertGreater(at_90(self.placed("stock = 5 10 g", "most = 15 g", mounted=False)), 0.009)
+
+    def test_most_on_a_plane(self):
+        for own in (["stock = 5 10 g"], []):
+            placed = chain.kind(self.placed("most in all = 20 g", *own), "placement")
+            self.assertAlmostEqual(sum(p["mass"] for p in placed), 0.005, delta=1e-9)
+
+    def test_total_and_force(self):
+        stream = self.placed("stock = 5 10 g", "most = 25 g")
+        (p,) = (p for p in chain.kind(stream, "placement") if p["position"] == 4)
+        self.assertAlmostEqual(p["total_mass"], 0.025, delta=1e-9)
+        omega = 0.5 * (1200 * math.pi / 30) ** 2  # r w^2
+        self.assertAlmostEqual(p["total_force_n"], 0.025 * omega, delta=1e-3)
+        pull = omega * abs(chain.weight(0.015, 90) + sum(chain.weight(q["mass"], q["sheet_deg"])
+                                                          for q in chain.kind(stream, "placement")))
+        (f,) = findings(stream, "correction-force")
+        self.assertAlmostEqual(f["value"], 100 * pull / (50 * 9.80665), delta=1e-3)  # of half the weight
+        (p,) = chain.kind(self.placed("stock = 5 10 g", mounted=False), "placement")[:1]
+        self.assertNotIn("total_mass", p)
 
 
 class Without(unittest.TestCase):
