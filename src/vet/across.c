@@ -84,6 +84,25 @@ double across_as_found(const struct vet_runs *runs, const size_t *order, const s
     return refused;
 }
 
+double across_target(const struct job *job, const struct vet_reading *reading, size_t sensor)
+{
+    const struct job_target *target = job->aim.targets ? &job->aim.targets[sensor] : NULL;
+
+    if (!target || isnan(target->amplitude))
+        return NAN;
+    return cabs(units_convert(target->amplitude, target->quantity, job->sensors[sensor].quantity,
+                              2 * PI * reading->speed_rpm / 60));
+}
+
+double across_floor(const struct vet_runs *runs, const size_t *order, const struct job *job,
+                    const struct vet_run *run, size_t sensor)
+{
+    double as_found = across_as_found(runs, order, job, run->condition, sensor);
+    double target = across_target(job, &run->readings[sensor], sensor);
+
+    return isnan(target) ? as_found : fmax(as_found, target);
+}
+
 static bool share_file(const struct vet_run *a, const struct vet_run *b)
 {
     for (size_t i = 0; i < a->hash_count; i++)
@@ -320,14 +339,14 @@ static void say_hours(const struct job *job, const struct vet_run *run, const st
 /* Compares a member with the other one (two) or the median (more); true where it is refused. */
 static bool judge_repeat(const struct vet_runs *runs, const struct job *job, const size_t *members,
                          size_t count, size_t which, size_t sensor, double complex middle,
-                         double as_found, struct findings *findings)
+                         double floor, struct findings *findings)
 {
     char hours[40];
     const struct vet_run *run = &runs->items[members[which]];
     const struct vet_run *other = &runs->items[members[which == 0]];
     const struct vet_reading *r = &run->readings[sensor], *o = &other->readings[sensor];
     double complex d = r->vector - (count == 2 ? o->vector : middle);
-    double scale = fmax(fmax(r->amplitude, o->amplitude), isnan(as_found) ? 0 : as_found);
+    double scale = fmax(fmax(r->amplitude, o->amplitude), isnan(floor) ? 0 : floor);
     double value = 100 * cabs(d) / scale, limit;
     enum ruling ruling = limits_judge(findings->limits, CHECK_REPEAT, value, &limit);
     bool beyond = distance(d, r->cov, o->cov) > CHI2_99;
@@ -353,14 +372,14 @@ static void repeat_sensor(struct vet_runs *runs, const size_t *order, const stru
     for (size_t k = 0; k < runs->count; k++) {
         size_t count = across_repeats_of(runs, order, job, k, sensor, members);
         double complex middle;
-        double as_found;
+        double floor;
         if (count < 2)
             continue;
         middle = median_vector(runs, members, count, sensor, room);
-        as_found = across_as_found(runs, order, job, runs->items[order[k]].condition, sensor);
+        floor = across_floor(runs, order, job, &runs->items[order[k]], sensor);
         for (size_t i = 0; i < count; i++) /* room: who is refused, once all have been compared */
             room[i] =
-                judge_repeat(runs, job, members, count, i, sensor, middle, as_found, findings);
+                judge_repeat(runs, job, members, count, i, sensor, middle, floor, findings);
         for (size_t i = 0; i < count; i++)
             if (room[i] > 0)
                 runs->items[members[i]].readings[sensor].use = false;
@@ -390,15 +409,13 @@ void across_low_level(struct vet_runs *runs, const size_t *order, const struct j
             continue;
         for (size_t i = 0; i < job->sensor_count; i++) {
             const struct vet_reading *r = &run->readings[i];
-            const struct job_target *target = &job->aim.targets[i];
-            double size;
-            if (!r->present || !r->use || isnan(target->amplitude))
+            double share;
+            if (!r->present || !r->use)
                 continue;
-            size = cabs(units_convert(r->amplitude, job->sensors[i].quantity, target->quantity,
-                                      2 * PI * r->speed_rpm / 60));
-            findings_add(findings, CHECK_LOW_LEVEL, (int)order[k], (int)i,
-                         size <= target->amplitude, "1x is %g %% of the target",
-                         findings_figure(100 * size / target->amplitude));
+            share = r->amplitude / across_target(job, r, i);
+            if (!isnan(share))
+                findings_add(findings, CHECK_LOW_LEVEL, (int)order[k], (int)i, share <= 1,
+                             "1x is %g %% of the target", findings_figure(100 * share));
         }
     }
 }

@@ -24,6 +24,15 @@ size_t *across_order(const struct vet_runs *runs, const struct job *job);
 double across_as_found(const struct vet_runs *runs, const size_t *order, const struct job *job,
                        const char *condition, size_t sensor);
 
+/* The sensor's target as an amplitude of its own quantity at the reading's speed, SI peak; NaN for
+ * none, or without a speed. */
+double across_target(const struct job *job, const struct vet_reading *reading, size_t sensor);
+
+/* What percentages of the run's reading of a sensor refer to at least: the larger of as-found
+ * amplitude and target, SI peak; NaN for neither. */
+double across_floor(const struct vet_runs *runs, const size_t *order, const struct job *job,
+                    const struct vet_run *run, size_t sensor);
+
 /* True where the k-th run in `order` is an ordinary one and the first of its condition. */
 bool across_first_of_condition(const struct vet_runs *runs, const size_t *order,
                                const struct job *job, size_t k);
@@ -52,8 +61,8 @@ void across_phase_reference(struct vet_runs *runs, const size_t *order, const st
 void across_speed_match(struct vet_runs *runs, const size_t *order, const struct job *job,
                         struct findings *findings);
 
-/* Runs of equal weights: the difference in % of the larger of reading and as-found amplitude,
- * judged where it exceeds its own uncertainty (cov of both, 99 % point of chi-squared). Two that
+/* Runs of equal weights: the difference in % of the largest of reading, as-found amplitude and
+ * target, judged where it exceeds its own uncertainty (cov of both, 99 % point of chi-squared). Two that
  * differ too much are both refused; of more, those too far from their median. How long lies between
  * two is said where both tell it. */
 void across_repeat(struct vet_runs *runs, const size_t *order, const struct job *job,

@@ -14,9 +14,9 @@ static const double CHANCE = 0.01; /* of a line in mere scatter, common practice
 static double scale_of(const struct vet_runs *runs, const size_t *order, const struct job *job,
                        const struct vet_run *run, size_t sensor)
 {
-    double as_found = across_as_found(runs, order, job, run->condition, sensor);
+    double floor = across_floor(runs, order, job, run, sensor);
 
-    return fmax(run->readings[sensor].amplitude, isnan(as_found) ? 0 : as_found);
+    return fmax(run->readings[sensor].amplitude, isnan(floor) ? 0 : floor);
 }
 
 /* Vectors and times of the members; false where a time is not known. */

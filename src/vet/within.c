@@ -6,6 +6,7 @@
 
 #include "base/angle.h"
 #include "sheet/units.h"
+#include "vet/across.h"
 
 static const double GRAVITY = 9.80665; /* m/s2, CGPM 1901 */
 static const double STEPS_LEAST =
@@ -269,12 +270,12 @@ static bool steadiness(const struct vet_reading *r, int position, int s, double 
 }
 
 /* A lasting jump is a move from start to end as well. */
-static bool drift(struct vet_reading *r, int position, int s, double share,
+static bool drift(struct vet_reading *r, int position, int s, double share, double own,
                   struct findings *findings)
 {
     bool jumped = r->step_pct > larger(r->drift_pct, 0);
     double percent = jumped ? r->step_pct : r->drift_pct;
-    double value = percent * share, size = percent / 100 * r->amplitude;
+    double value = percent * share, size = percent / 100 * r->amplitude, limit;
     enum ruling ruling;
 
     if (isnan(value))
@@ -287,7 +288,8 @@ static bool drift(struct vet_reading *r, int position, int s, double share,
                                         findings_figure(value))
                          : findings_add(findings, CHECK_DRIFT, position, s, value,
                                         "no trend stands out from the scatter");
-    if (ruling != RULING_OK) {
+    if (ruling != RULING_OK ||
+        limits_judge(findings->limits, CHECK_DRIFT, percent * own, &limit) != RULING_OK) {
         r->widen[0] += size * size / 12;
         r->widen[2] += size * size / 12;
     }
@@ -302,10 +304,10 @@ static void say_neighbour(const struct vet_reading *r, char *to, size_t room)
                  r->speed_rpm / 60 - r->beat.turning);
 }
 
-static bool beats(struct vet_reading *r, int position, int s, double share,
+static bool beats(struct vet_reading *r, int position, int s, double share, double own,
                   struct findings *findings)
 {
-    double value = 100 * r->beat.swing / r->amplitude * share, variance;
+    double percent = 100 * r->beat.swing / r->amplitude, value = percent * share, variance, limit;
     enum ruling ruling;
     char neighbour[64];
 
@@ -318,6 +320,8 @@ static bool beats(struct vet_reading *r, int position, int s, double share,
                                 findings_figure(r->beat.period), neighbour)
                  : findings_add(findings, CHECK_BEAT, position, s, value,
                                 "no periodic swing stands out from the scatter");
+    if (ruling == RULING_OK)
+        ruling = limits_judge(findings->limits, CHECK_BEAT, percent * own, &limit);
     variance = ruling == RULING_OK ? 0 : beat_variance(&r->beat);
     r->widen[0] += variance;
     r->widen[2] += variance;
@@ -383,14 +387,15 @@ void within_vectors(struct vet_run *run, int position, const double *as_found,
 
     for (size_t i = 0; i < job->sensor_count; i++) {
         struct vet_reading *r = &run->readings[i];
-        double share = r->amplitude / larger(r->amplitude, as_found[i]);
+        double base = larger(r->amplitude, as_found[i]), own = r->amplitude / base;
+        double share = r->amplitude / larger(base, across_target(job, r, i));
         bool refuse = false;
         if (!r->present || run->hand)
             continue;
         refuse |= steadiness(r, position, (int)i, share, findings);
-        refuse |= drift(r, position, (int)i, share, findings);
+        refuse |= drift(r, position, (int)i, share, own, findings);
         if (r->has_phase) {
-            refuse |= beats(r, position, (int)i, share, findings);
+            refuse |= beats(r, position, (int)i, share, own, findings);
             refuse |= resonates(r, position, (int)i, share, findings);
         }
         if (bare)

@@ -5,8 +5,9 @@
 #include "vet/facts.h"
 #include "vet/findings.h"
 
-/* Percentages of a vector refer to the larger of the reading and the sensor's as-found amplitude in
- * its condition; lag is judged only where the reading is at least this share of that (contract). */
+/* Percentages of a vector refer to the largest of the reading, the sensor's as-found amplitude in
+ * its condition, and its target where the sheet has one: what is small against what is aimed at
+ * needs no precision. Lag is judged only where the reading is at least this share of that (contract). */
 #define WITHIN_LAG_SHARE 0.2
 
 /* Checks of the recording itself: readable, length, service-speed, speed-steady, clipping,
@@ -20,7 +21,7 @@ void within_run(struct vet_run *run, int position, const struct job *job,
  * as-found and audited runs one-x-share, two-x, half-order, neighbour. as_found: SI peak amplitude
  * per sensor, NaN where there is none. Also adds to `widen` what a drift that tripped leaves open:
  * d^2/12 on each component, the variance along a straight path of length d; and what a beat that
- * tripped does (beat.h). */
+ * tripped does (beat.h): here the target does not count. */
 void within_vectors(struct vet_run *run, int position, const double *as_found,
                     const struct job *job, struct findings *findings);
 
