@@ -230,7 +230,8 @@ static void assert_printable(const char *text, size_t most)
 }
 
 static const char *const golden[] = {"report-balance", "report-refused", "report-unsolved",
-                                     "report-trial",   "report-audit",   "report-nasty"};
+                                     "report-trial",   "report-audit",   "report-nasty",
+                                     "report-outcomes"};
 
 static void text_is_printable(void **state)
 {
@@ -246,6 +247,26 @@ static void text_is_printable(void **state)
         buffer_release(&out);
         unload(&l);
     }
+}
+
+/* By definition an inch is 25.4 mm and an ounce 28.35 g: 3.4 mm/s are 0.134 in/s, 1.4 are 0.05512, 20 g
+ * are 0.705 oz. */
+static void outcomes_in_inches(void **state)
+{
+    (void)state;
+    struct loaded l;
+    struct buffer out = BUFFER_INIT;
+    load(&l, "report-outcomes");
+    dossier_close(&l.dossier);
+    l.job.units = UNITS_US;
+    text_write(&l.dossier, &out);
+    assert_int_equal(out.failed, 0);
+    assert_non_null(strstr(out.bytes, "in/s rms   0.134  C"));
+    assert_non_null(strstr(out.bytes, "0.05512  0.1102"));
+    assert_non_null(strstr(out.bytes, " oz in on each: 0.705 oz at 60 deg with rotation"));
+    assert_null(strstr(out.bytes, " g mm"));
+    buffer_release(&out);
+    unload(&l);
 }
 
 static void nothing_that_may_not_be_fitted_is_shown(void **state)
@@ -333,6 +354,7 @@ int main(void)
         cmocka_unit_test(malformed_and_unknown),
         cmocka_unit_test(angles_name_their_sense),
         cmocka_unit_test(text_is_printable),
+        cmocka_unit_test(outcomes_in_inches),
         cmocka_unit_test(nothing_that_may_not_be_fitted_is_shown),
         cmocka_unit_test(json_keeps_every_byte),
         cmocka_unit_test(tables_have_their_rows),

@@ -13,6 +13,7 @@
 #include <unistd.h>
 
 #include "close_to.h"
+#include "stream/outcomes.h"
 #include "stream/records.h"
 #include "stream/stream.h"
 
@@ -420,6 +421,66 @@ static void test_blocks_without_phase(void **state)
     job_release(&job);
 }
 
+/* The JSON of a line, to be released. */
+static json_t *json_of(const struct line *line)
+{
+    json_t *json = json_loadb(line->text.bytes, line->text.length, JSON_REJECT_DUPLICATES, NULL);
+    assert_non_null(json);
+    return json;
+}
+
+/* What is wrong with one field is said of the whole record. */
+#define SPOILT(parse, back, json, key, value)                                                      \
+    do {                                                                                           \
+        json_t *spoilt = json_deep_copy(json);                                                     \
+        assert_int_equal(json_object_set_new(spoilt, key, value), 0);                              \
+        assert_int_equal(parse(back, &job, spoilt, &why), -1);                                     \
+        json_decref(spoilt);                                                                       \
+    } while (0)
+
+static void test_outcomes_round_trip(void **state)
+{
+    (void)state;
+    struct job job;
+    const char *why = NULL;
+    struct line line = LINE_INIT;
+    job_init(&job);
+    json_t *json = json_loads(JOB, 0, NULL);
+    assert_int_equal(job_parse(&job, json, &why), 0);
+    json_decref(json);
+
+    struct zone_record z = {.condition = "service", .quantity = QUANTITY_DISPLACEMENT, .before = 3,
+                            .after = 1, .zone_before = 'C', .zone_after = 'A',
+                            .limits = {1, 2, 4}, .overall = true, .basis = "b"}, y;
+    zone_print(&z, &job, &line);
+    json = json_of(&line);
+    assert_int_equal(zone_parse(&y, &job, json, &why), 0);
+    assert_true(y.sensor == 0 && y.quantity == z.quantity && y.before == 3 && y.after == 1);
+    assert_true(y.zone_before == 'C' && y.zone_after == 'A' && y.limits[2] == 4 && y.overall);
+    assert_string_equal(y.basis, "b");
+    SPOILT(zone_parse, &y, json, "before", json_string("E"));
+    SPOILT(zone_parse, &y, json, "quantity", json_string("acceleration"));
+    SPOILT(zone_parse, &y, json, "sensor", json_string("another"));
+    json_decref(json);
+
+    struct compared_record c = {.condition = "hot", .predicted = CMPLX(1, -2),
+                                .measured = CMPLX(3, 4), .se = 2.5}, d;
+    compared_print(&c, &job, &line);
+    json = json_of(&line);
+    assert_int_equal(compared_parse(&d, &job, json, &why), 0);
+    assert_true(d.run == 0 && d.sensor == 0 && d.predicted == c.predicted &&
+                d.measured == c.measured && d.se == 2.5);
+    assert_string_equal(d.condition, "hot");
+    SPOILT(compared_parse, &d, json, "run", json_string("another"));
+    SPOILT(compared_parse, &d, json, "measured", json_string("much"));
+
+    struct parts_record p;
+    assert_int_equal(parts_parse(&p, &job, json, &why), -1); /* a job of one plane has none */
+    json_decref(json);
+    line_release(&line);
+    job_release(&job);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -429,6 +490,7 @@ int main(void)
         cmocka_unit_test(test_job_round_trip),     cmocka_unit_test(test_sheet_angles),
         cmocka_unit_test(test_reals_and_strings),  cmocka_unit_test(test_reading_round_trip),
         cmocka_unit_test(test_coast_down_records), cmocka_unit_test(test_blocks_without_phase),
+        cmocka_unit_test(test_outcomes_round_trip),
     };
     quiet();
     cmocka_set_message_output(CM_OUTPUT_STDOUT);
