@@ -16,6 +16,7 @@
 #include "solve/model.h"
 #include "solve/notes.h"
 #include "solve/parts.h"
+#include "solve/ruling.h"
 #include "solve/slope.h"
 #include "solve/stored.h"
 #include "solve/zones.h"
@@ -277,6 +278,52 @@ static void test_runout(void **state)
     model_release(&d.model);
 }
 
+/* A probe whose slow roll gave no vector is lost, in the aim for the whole job; any other sensor is
+ * not. */
+static void test_runout_missing(void **state)
+{
+    (void)state;
+    struct desk d;
+    struct advice_finding f;
+    struct advice_next next;
+    for (int k = 0; k < 4; k++) { /* refused, no phase, no reading at all, amplitudes alone */
+        desk_init(&d);
+        desk_run(&d, "", 0, 0, 0);
+        desk_run(&d, "", 0.1, 200, 0);
+        desk_run(&d, "runout", 0, 0, 0);
+        d.readings[2].use = k != 0;
+        d.readings[2].phase = k != 1;
+        if (k == 2)
+            d.readings[2] = d.readings[1];
+        for (int i = 0; i < 2; i++)
+            d.readings[i].phase = k != 3;
+        struct model_row *row = desk_fit(&d);
+        assert_true(row->unrolled && !row->runout);
+        assert_int_equal(row->state, MODEL_LOST);
+        struct ruling ruling = ruling_of(&d.model);
+        assert_int_equal(ruling.kind, RULING_REPEAT);
+        assert_ptr_equal(ruling.row, row);
+        assert_true(notes_runout(&d.model, 0, &f));
+        assert_int_equal(f.verdict, ADVICE_REFUSE);
+        assert_int_equal(f.run, 2);
+        assert_non_null(strstr(f.text, k == 3 ? "no phase" : "no usable slow-roll vector"));
+        notes_runout_step(&d.model, row, &next);
+        assert_string_equal(next.step, "repeat");
+        assert_true(strlen(next.reason) > 0);
+        row->in_aim = false; /* then it is left out, and said so */
+        assert_ptr_not_equal(ruling_of(&d.model).row, row);
+        assert_true(notes_runout(&d.model, 0, &f));
+        assert_int_equal(f.verdict, ADVICE_CAUTION);
+        assert_non_null(strstr(f.text, "left out"));
+        model_release(&d.model);
+        d.sensor.quantity = QUANTITY_VELOCITY;
+        row = desk_fit(&d);
+        assert_false(row->unrolled);
+        assert_false(notes_runout(&d.model, 0, &f));
+        model_release(&d.model);
+    }
+}
+
 /* A straight line over speed, exact: y = 2 + 3j + (0.5 - 0.25j)(n - 1000); residual variance by
  * hand where two values of opposite sign stand about it. */
 static void test_slope(void **state)
@@ -345,6 +392,7 @@ int main(void)
         cmocka_unit_test(test_stored_that_changed),
         cmocka_unit_test(test_lookback),
         cmocka_unit_test(test_runout),
+        cmocka_unit_test(test_runout_missing),
         cmocka_unit_test(test_slope),
         cmocka_unit_test(test_slope_bring),
     };
