@@ -40,23 +40,6 @@ static void relative_to(const struct dossier *d, struct buffer *out)
     html_part_take(out, "p", &text);
 }
 
-/* "2 holes of 12 mm, 10 + 8.5 mm deep"; nothing where no drill is named. */
-static void holes(const struct dossier *d, const struct placement_record *p, struct buffer *text)
-{
-    const char *unit = d->job->units == UNITS_US ? "in" : "mm";
-    double si = d->job->units == UNITS_US ? 0.0254 : 0.001;
-    char number[DIGITS_ROOM];
-    if (p->piece_count == 0 || !(p->depths_m[0] > 0) || p->plane < 0)
-        return;
-    double wide = d->job->planes[p->plane].hole_m;
-    buffer_format(text, "%zu %s", p->piece_count, p->piece_count > 1 ? "holes" : "hole");
-    if (wide > 0)
-        buffer_format(text, " of %s %s", digits_text(number, wide / si, NAN), unit);
-    for (size_t i = 0; i < p->piece_count; i++)
-        buffer_format(text, "%s%.3g", i ? " + " : ", ", p->depths_m[i] / si);
-    buffer_format(text, " %s deep", unit);
-}
-
 static void placement_row(const struct dossier *d, const struct placement_record *p,
                           struct table *table)
 {
@@ -67,7 +50,7 @@ static void placement_row(const struct dossier *d, const struct placement_record
     if (p->mass >= 0)
         phrase_pieces(&pieces, d->job, p->pieces, p->piece_count);
     else
-        holes(d, p, &pieces);
+        phrase_holes(&pieces, d->job, p);
     table->failed = table->failed || angle.failed || mass.failed || pieces.failed;
     if (!table->failed) {
         table_cell(table, "%s", dossier_plane(d, p->plane));

@@ -46,6 +46,48 @@ void phrase_pieces(struct buffer *out, const struct job *job, const double *piec
     buffer_format(out, " %s", shown_mass_unit(job));
 }
 
+void phrase_holes(struct buffer *out, const struct job *job, const struct placement_record *p)
+{
+    const bool us = job->units == UNITS_US;
+    const char *unit = us ? "in" : "mm";
+    const double si = units_factor(DIMENSION_LENGTH, unit);
+    char text[DIGITS_ROOM];
+    if (p->piece_count == 0 || !(p->depths_m[0] > 0) || p->plane < 0 ||
+        (size_t)p->plane >= job->plane_count)
+        return;
+    const double wide = job->planes[p->plane].hole_m;
+    if (p->piece_count > 1)
+        buffer_format(out, "drill %zu holes", p->piece_count);
+    else
+        buffer_text(out, "drill one hole");
+    if (wide > 0)
+        buffer_format(out, " of %s %s", digits_text(text, wide / si, NAN), unit);
+    /* A tenth of a millimetre is what a drill's stop can be set to: common practice. */
+    for (size_t i = 0; i < p->piece_count; i++)
+        buffer_format(out, "%s%s", i ? " + " : ", ",
+                      digits_at(text, p->depths_m[i] / si, us ? -3 : -1));
+    buffer_format(out, " %s deep", unit);
+}
+
+bool phrase_is_removed(const struct job *job, const struct placement_record *p)
+{
+    return p->mass < 0 || (p->plane >= 0 && (size_t)p->plane < job->plane_count &&
+                           job->planes[p->plane].work == WORK_REMOVE);
+}
+
+const char *phrase_fitted(const struct dossier *d)
+{
+    size_t removed = 0;
+    for (size_t i = 0; i < d->placements.count; i++)
+        removed += phrase_is_removed(d->job, &d->placements.items[i]);
+    if (d->placements.count == 0)
+        return "with nothing fitted";
+    if (removed == 0)
+        return "with the weights above fitted";
+    return removed == d->placements.count ? "with the material above removed"
+                                          : "with the weights above fitted and removed";
+}
+
 static void weight(struct buffer *out, const struct job *job, const struct job_weight *w)
 {
     if (w->mounted_mass < 0) {

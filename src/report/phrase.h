@@ -24,6 +24,15 @@ bool phrase_weight_useless(double kg, double half);
 /* "3 pieces: 50 + 10 + 10 g". One piece: "in one piece". */
 void phrase_pieces(struct buffer *out, const struct job *job, const double *pieces, size_t count);
 
+/* "drill 2 holes of 12 mm, 15.0 + 8.5 mm deep" for a placement; nothing where no drill is named. */
+void phrase_holes(struct buffer *out, const struct job *job, const struct placement_record *p);
+
+/* True where the placement takes material off. */
+bool phrase_is_removed(const struct job *job, const struct placement_record *p);
+
+/* "with the weights above fitted", as forecasts are: or removed, or nothing at all. Static text. */
+const char *phrase_fitted(const struct dossier *d);
+
 /* What run `run` of the job carries: "60 g at 30 deg against rotation on plane 'wheel'", or "no
  * weights". */
 void phrase_weights(struct buffer *out, const struct job *job, size_t run);

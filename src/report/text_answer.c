@@ -1,6 +1,7 @@
 #include "report/text_answer.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "base/status.h"
@@ -55,12 +56,6 @@ static void relative_to(const struct dossier *d, const char *name, struct buffer
     put(out, 2, 2, &text);
 }
 
-static bool is_removed(const struct dossier *d, const struct placement_record *p)
-{
-    return p->mass < 0 || (p->plane >= 0 && (size_t)p->plane < d->job->plane_count &&
-                           d->job->planes[p->plane].work == WORK_REMOVE);
-}
-
 /* Pieces in stock have their nominal mass; where any mass may be cut, the ideal weight's 95 % half
  * width (kg) says to which digit it deserves to be. NaN: nominal. */
 double text_answer_free_half(const struct dossier *d, int plane)
@@ -80,8 +75,8 @@ double text_answer_free_half(const struct dossier *d, int plane)
 static void placement(const struct dossier *d, size_t number, const struct placement_record *p,
                       struct buffer *out)
 {
-    struct buffer text = BUFFER_INIT;
-    bool removed = is_removed(d, p);
+    struct buffer text = BUFFER_INIT, holes = BUFFER_INIT;
+    bool removed = phrase_is_removed(d->job, p);
     buffer_format(&text, "%zu. Plane '%s', ", number, dossier_plane(d, p->plane));
     if (p->position > 0)
         buffer_format(&text, "position %d: ", p->position);
@@ -94,7 +89,13 @@ static void placement(const struct dossier *d, size_t number, const struct place
     if (!removed) {
         buffer_text(&text, " ");
         phrase_pieces(&text, d->job, p->pieces, p->piece_count);
+    } else {
+        phrase_holes(&holes, d->job, p);
+        if (holes.length > 0)
+            buffer_format(&text, "; %s", holes.bytes);
     }
+    text.failed = text.failed || holes.failed;
+    buffer_release(&holes);
     if (isfinite(p->force_n)) {
         char force[2 * DIGITS_ROOM], speed[DIGITS_ROOM];
         shown_force(d->job, force, fabs(p->force_n));
@@ -330,10 +331,10 @@ void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
     struct table table;
     if (dossier->forecasts.count == 0)
         return;
+    char heading[80];
     text_answer_forecast_table(dossier, &table);
-    paper_heading(out, dossier->placements.count > 0
-                           ? "FORECAST: 1x amplitudes with the weights above fitted"
-                           : "FORECAST: 1x amplitudes with nothing fitted");
+    snprintf(heading, sizeof heading, "FORECAST: 1x amplitudes %s", phrase_fitted(dossier));
+    paper_heading(out, heading);
     table_print(&table, 2, out);
     table_release(&table);
 }

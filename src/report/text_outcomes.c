@@ -1,6 +1,7 @@
 #include "report/text_outcomes.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "base/angle.h"
@@ -145,6 +146,7 @@ void text_outcomes_zones(const struct dossier *dossier, struct buffer *out)
         {"C/D", true, false},
     };
     struct table table;
+    char heading[80];
     bool least = false;
     if (dossier->zones.count == 0)
         return;
@@ -153,9 +155,9 @@ void text_outcomes_zones(const struct dossier *dossier, struct buffer *out)
         zone_row(dossier, &dossier->zones.items[i], &table);
         least = least || !dossier->zones.items[i].overall;
     }
-    paper_heading(out, dossier->placements.count > 0
-                           ? "VIBRATION ZONES: after is expected with the weights above fitted"
-                           : "VIBRATION ZONES: after is expected with nothing fitted");
+    snprintf(heading, sizeof heading, "VIBRATION ZONES: after is expected %s",
+             phrase_fitted(dossier));
+    paper_heading(out, heading);
     table_print(&table, 2, out);
     table_release(&table);
     if (least)

@@ -151,12 +151,37 @@ static void tolerance_is_not_claimed(void **state)
     }
 }
 
+static void holes_are_told(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    assert_says(&l, "drill", false);
+    assert_says(&l, "FORECAST: 1x amplitudes with the weights above fitted", true);
+    struct placement_record *p = l.dossier.placements.items;
+    l.job.planes[0].work = WORK_REMOVE;
+    l.job.planes[0].hole_m = 0.012;
+    p[0].mass = -0.06;
+    p[0].depths_m[0] = 0.01234;
+    p[0].depths_m[1] = 0.0085;
+    p[1].mass = -0.05;
+    p[1].depths_m[0] = 0.02;
+    assert_says(&l, "remove 60 g; drill 2 holes of 12 mm, 12.3 + 8.5 mm deep; force 591 N", true);
+    assert_says(&l, "remove 50 g; drill one hole of 12 mm, 20.0 mm deep; force 492 N", true);
+    assert_says(&l, "FORECAST: 1x amplitudes with the material above removed", true);
+    assert_says(&l, "with the weights above", false);
+    l.job.units = UNITS_US; /* 12.34 mm are 0.4858 in */
+    assert_says(&l, "drill 2 holes of 0.4724 in, 0.486 + 0.335 in deep", true);
+    unload(&l);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(no_weight_becomes_nothing),
         cmocka_unit_test(badly_known_weights_say_so),
         cmocka_unit_test(tolerance_is_not_claimed),
+        cmocka_unit_test(holes_are_told),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
