@@ -238,6 +238,8 @@ static int correct_static(struct answer *a)
 static void widen_ellipse(struct answer *a)
 {
     double dof = a->model->dof;
+    for (size_t r = 0; r < a->rows; r++)
+        dof = fmin(dof, a->posterior[r].dof);
     if (isinf(dof))
         return;
     double factor = dof * (pow(0.05, -2 / dof) - 1) / 5.9915;

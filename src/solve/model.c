@@ -183,6 +183,22 @@ static int pool_row(struct repeat_pool *pool, const struct model_row *row, size_
     return result;
 }
 
+/* Runs that visibly do not fit one set of responses know no better than they agree: all variances
+ * by the square of the misfit (the ratio of R. T. Birge, Phys. Rev. 40 (1932) 207-227), and t of
+ * the spare figures; fewer than three have no variance, hence count as three. */
+static void widen_misfit(const struct model *m, struct model_row *row)
+{
+    size_t n = row->posterior.unknowns;
+    double spare = m->amplitudes ? (double)row->count - 3 : 2 * ((double)row->count - (double)n);
+    row->widened = 1;
+    if (!(row->misfit >= MODEL_MISFIT) || isinf(row->misfit))
+        return;
+    row->widened = row->misfit * row->misfit;
+    for (size_t i = 0; i < 4 * n * n; i++)
+        row->posterior.cov[i] *= row->widened;
+    row->posterior.dof = fmin(row->posterior.dof, fmax(spare, 3));
+}
+
 /* The row from amplitudes alone: three trials and as found, or it is short. */
 static int fit_amplitudes(const struct model *m, struct model_row *row)
 {
@@ -202,6 +218,7 @@ static int fit_amplitudes(const struct model *m, struct model_row *row)
     if (error == AMPLITUDE_OK) {
         row->state = MODEL_GOOD;
         row->posterior.dof = m->dof;
+        widen_misfit(m, row);
     } else if (error == AMPLITUDE_AMBIGUOUS) {
         row->ambiguous = row->count >= 4;
         row->state = row->ambiguous || row->lost_run < 0 ? MODEL_SHORT : MODEL_LOST;
@@ -228,6 +245,7 @@ static int fit_row(struct model *m, struct model_row *row)
                : result == REGRESS_NAN     ? MODEL_NAN
                                            : MODEL_FAILED;
     row->posterior.dof = m->dof;
+    widen_misfit(m, row);
     for (size_t p = 0; p < m->job->plane_count; p++)
         m->held[p] = m->held[p] || row->stored[p];
     if (row->runout) { /* one error that all readings share: Z0 has it, no response does */
@@ -326,6 +344,7 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
             row->condition = c;
             row->sensor = s;
             row->misfit = row->changed = NAN;
+            row->widened = 1;
             row->changed_plane = -1;
             row->lost_run = -1;
             result = gather(m, row, readings, count);

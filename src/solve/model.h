@@ -26,6 +26,10 @@ struct model_reading { /* what the stage hands over; any order */
     enum quantity overall_quantity;
 };
 
+/* From so many standard errors of misfit on, the scatter between the runs stands for what they are
+ * known by (the caution limit of `linearity`). */
+#define MODEL_MISFIT 3.0
+
 enum model_state {
     MODEL_GOOD, /* the usable readings determine everything */
     MODEL_LOST, /* they would, had none been refused */
@@ -58,6 +62,7 @@ struct model_row {
     double target;     /* SI peak in the sensor's own quantity; NaN: none */
     struct posterior posterior; /* relative to as found; zeroed where nothing was read */
     double misfit;              /* s.e.; NaN: no run is spare */
+    double widened; /* variances of posterior and next reading count so many times; 1: they fit */
     size_t misfit_run;
     bool ambiguous; /* amplitudes alone leave more than one answer */
     int lost_run;   /* the first run whose reading of this row was refused; -1: none */

@@ -17,18 +17,17 @@
 static void forecast_row(const struct answer *a, const struct model_row *row,
                          const double complex *total, struct answer_forecast *f)
 {
-    double cov[3], unused[3];
+    double cov[3], unused[3], dof = row->posterior.dof;
     f->row = row;
     f->before = posterior_predict(&row->posterior, a->mounted, unused);
     f->after = posterior_predict(&row->posterior, total, cov);
-    cov[0] += row->sigma * row->sigma + row->typical[0];
-    cov[1] += row->typical[1];
-    cov[2] += row->sigma * row->sigma + row->typical[2];
+    cov[0] += row->widened * (row->sigma * row->sigma + row->typical[0]);
+    cov[1] += row->widened * row->typical[1];
+    cov[2] += row->widened * (row->sigma * row->sigma + row->typical[2]);
     f->variance = cov[0] + cov[2];
-    f->range[0] = forecast_quantile(f->after, cov, a->model->dof, 0.025);
-    f->range[1] = forecast_quantile(f->after, cov, a->model->dof, 0.975);
-    f->chance =
-        isnan(row->target) ? NAN : forecast_within(f->after, cov, a->model->dof, row->target);
+    f->range[0] = forecast_quantile(f->after, cov, dof, 0.025);
+    f->range[1] = forecast_quantile(f->after, cov, dof, 0.975);
+    f->chance = isnan(row->target) ? NAN : forecast_within(f->after, cov, dof, row->target);
 }
 
 /* Mean overall rms of the row's readings with what is mounted, and nothing else; NaN: none. */

@@ -401,6 +401,23 @@ class Fitting(unittest.TestCase):
         self.assertEqual([f["sensor"] for f in findings(stream, "runout") if f["verdict"] == "caution"], ["A"])
         self.assertEqual([f["sensor"] for f in chain.kind(stream, "forecast")], ["B"])
 
+    def test_removed_material_stays(self):
+        """A drilled trial: the answer is still for the rotor as found, and says that the hole counts as put back."""
+        truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}
+        want = -truth["A"][0] / truth["A"][1]
+        hole = chain.weight(0.02, 30)
+        runs = trials(truth, [("P", -0.02, 30)])
+        stream = stream_of(sheet({"P": []}, runs))
+        self.assertLess(abs(corrections(stream)["P"] - want), 1e-9)
+        (f,) = findings(stream, "removed-stays")
+        self.assertEqual((f["verdict"], f["run"]), ("caution", "trial 1"))
+        self.assertIn("`mounted = trial 1`", f["text"])
+        stream = stream_of(sheet({"P": []}, runs, ["repeatability = 0 %", "mounted = trial 1"]))
+        self.assertLess(abs(corrections(stream)["P"] - (want + hole)), 1e-9)
+        self.assertEqual(findings(stream, "removed-stays"), [])
+        runs = trials(truth, [("P", 0.02, 30)])
+        self.assertEqual(findings(stream_of(sheet({"P": []}, runs)), "removed-stays"), [])
+
     def test_predicted_against_measured(self):
         truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}
         w = chain.weight(0.03, 80)
@@ -514,6 +531,20 @@ class Mounted(unittest.TestCase):
         self.assertAlmostEqual(f["value"], 100 * pull / (50 * 9.80665), delta=1e-3)  # of half the weight
         (p,) = chain.kind(self.placed("stock = 5 10 g", mounted=False), "placement")[:1]
         self.assertNotIn("total_mass", p)
+
+    def test_a_fit_that_is_visibly_wrong_promises_little(self):
+        """A trial of 20 g that the sheet has as 13 g, 120 deg from another: what the machine then does is in the range."""
+        z, a = 30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)
+        for kg, sure in ((0.020, True), (0.013, False)):
+            runs = trials({"A": [z, a]}, [("P", 0.02, 30)])
+            runs.append(("second", {"A": complex(z + a * chain.weight(0.02, 150))}, [("P", kg, 150)]))
+            stream = stream_of(sheet({"P": []}, runs, ["repeatability = 1 %", "target = 10 um pk"]))
+            (misfit,) = findings(stream, "linearity")
+            self.assertEqual(misfit["verdict"], "ok" if sure else "caution")
+            (f,) = chain.kind(stream, "forecast")
+            after = abs(z + a * sum(chain.weight(p["mass"], p["sheet_deg"]) for p in chain.kind(stream, "placement")))
+            self.assertLess(after, f["after_95"][1] * 1e6)
+            self.assertEqual(f["chance"] > 0.99, sure)
 
 
 class Without(unittest.TestCase):
