@@ -64,6 +64,33 @@ bool notes_stored(const struct model *m, const struct model_row *row, struct adv
     return true;
 }
 
+bool notes_removed(const struct job *job, struct advice_finding *f)
+{
+    int run = job_removed_run(job), mounted = job->aim.mounted;
+    if (run < 0)
+        return false;
+    *f = (struct advice_finding){.check = "removed-stays",
+                                 .unit = "",
+                                 .basis = "common practice",
+                                 .verdict = ADVICE_CAUTION,
+                                 .run = run,
+                                 .sensor = -1,
+                                 .value = NAN,
+                                 .limit = NAN};
+    if (mounted < 0)
+        snprintf(f->text, sizeof f->text,
+                 "run '%s' has removed material: what cannot be put back must be named as "
+                 "`mounted = %s` in [aim]; this answer is for a rotor with everything as found",
+                 job->runs[run].name, job->runs[run].name);
+    else
+        snprintf(f->text, sizeof f->text,
+                 "run '%s' has removed material that the mounted run '%s' does not list: what "
+                 "cannot be put back must stand among that run's weights as well; this answer is "
+                 "for a rotor where it is put back",
+                 job->runs[run].name, job->runs[mounted].name);
+    return true;
+}
+
 /* "12 um pk-pk at a lag of 40 deg" as the sensor is shown. */
 static void vector_words(const struct job_sensor *s, double complex z, double rpm, char *text,
                          size_t size)

@@ -14,6 +14,10 @@
 bool notes_stored(const struct model *model, const struct model_row *row,
                   struct advice_finding *finding);
 
+/* `removed-stays`: a run drilled or ground material off that `mounted` does not list; the answer
+ * takes it as put back. */
+bool notes_removed(const struct job *job, struct advice_finding *finding);
+
 /* `runout`: the slow-roll vector that is taken off the readings of a sensor; a refusal (a caution
  * outside of the aim) where it is missing. */
 bool notes_runout(const struct model *model, size_t sensor, struct advice_finding *finding);

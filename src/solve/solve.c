@@ -120,6 +120,14 @@ static bool has_targets(const struct answer *a)
     return false;
 }
 
+static int note_removed(struct solve_records *s, const struct advice_next *next)
+{
+    struct advice_finding f;
+    if (!strcmp(next->step, "done") || !notes_removed(&s->stream.job, &f))
+        return STATUS_DONE;
+    return solve_records_finding(s, &f);
+}
+
 /* Correction, placement, forecast; the planes are known to be told apart. */
 static int give_answer(struct solve_records *s, struct answer *a)
 {
@@ -155,6 +163,8 @@ static int give_answer(struct solve_records *s, struct answer *a)
     if (!next.step)
         advice_fit_step(a, trim || again, &next);
     status = kernel_status(outlook_fill(a));
+    if (status == STATUS_DONE)
+        status = note_removed(s, &next);
     if (status == STATUS_DONE)
         status = solve_records_corrections(s, a);
     if (status == STATUS_DONE)

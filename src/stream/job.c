@@ -109,6 +109,32 @@ bool job_run_is_bare(const struct job *job, size_t run)
     return total <= 1e-12 * largest; /* rounding of weights that cancel */
 }
 
+/* True where run `run` lists a removal like `w`, or a larger one at its place. */
+static bool lists_removal(const struct job_run *run, const struct job_weight *w)
+{
+    for (size_t i = 0; i < run->weight_count; i++) {
+        const struct job_weight *o = &run->weights[i];
+        double apart = fabs(remainder(o->angle_deg - w->angle_deg, 360));
+        if (o->plane == w->plane && apart < 1e-6 &&
+            fabs(o->radius_m - w->radius_m) <= 1e-9 * w->radius_m &&
+            o->mounted_mass <= w->mounted_mass * (1 - 1e-9))
+            return true;
+    }
+    return false;
+}
+
+int job_removed_run(const struct job *job)
+{
+    const struct job_run *kept = job->aim.mounted >= 0 ? &job->runs[job->aim.mounted] : NULL;
+    for (size_t r = 0; r < job->run_count; r++)
+        for (size_t i = 0; i < job->runs[r].weight_count; i++) {
+            const struct job_weight *w = &job->runs[r].weights[i];
+            if (w->mounted_mass < 0 && !(kept && lists_removal(kept, w)))
+                return (int)r;
+        }
+    return -1;
+}
+
 bool job_speed_condition(const char *condition, double speed_rpm, char to[NAME_ROOM])
 {
     char text[32];

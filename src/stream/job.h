@@ -193,6 +193,10 @@ int job_find_run(const struct job *job, const char *name);
 /* True where run `run` carries no weight at all (its net equivalent weights are all zero). */
 bool job_run_is_bare(const struct job *job, size_t run);
 
+/* The first run that removed material which the run named by `mounted` does not list, so that the
+ * job's answer takes it as put back; -1: none. */
+int job_removed_run(const struct job *job);
+
 /* The condition of a coast-down's reading at one of its speeds: "<condition> @ 900 rpm", the speed as a
  * whole number or in its shortest decimal form (to 1e-6 rpm). False where it does not fit and is cut; the sheet sees to it
  * that this never happens. */
