@@ -5,7 +5,6 @@
 #include <string.h>
 
 #include "base/angle.h"
-#include "solve/drill.h"
 #include "solve/sits.h"
 #include "solve/tolerance.h"
 #include "solve/trial.h"
@@ -458,30 +457,15 @@ void advice_useless_step(const struct answer *a, struct advice_next *next)
              limits ? "" : " by more than its noise");
 }
 
-/* Holes to drill: "; drill 'rim' at 40 deg with rotation: hole 12 mm, 18.2 mm deep". */
-static size_t list_holes(const struct answer *a, char *text, size_t size)
+/* Whether any hole is to be drilled; its depth stands beside its placement. */
+static bool has_holes(const struct answer *a)
 {
-    const struct job *job = a->model->job;
-    size_t length = 0;
-    text[0] = '\0';
-    for (size_t i = 0; i < a->placement.best.count && length + 130 < size; i++) {
-        const struct place_item *item = &a->placement.best.items[i];
-        const struct job_plane *plane = &job->planes[item->plane];
-        if (plane->work != WORK_REMOVE || !(plane->hole_m > 0))
-            continue;
-        double angle = job_sheet_angle(job, item->angle_deg);
-        bool us = job->units == UNITS_US;
-        double unit = us ? 0.0254 : 1e-3;
-        for (size_t k = 0; k < item->piece_count && length + 130 < size; k++)
-            length += (size_t)snprintf(
-                text + length, size - length, "; drill '%s' at %.0f deg %s: hole %s %s, %s %s deep",
-                plane->name, angle, job_sense_text(job), judge_figure(plane->hole_m / unit, 3).text,
-                us ? "in" : "mm",
-                judge_figure(drill_depth(plane->hole_m, plane->density, item->pieces[k]) / unit, 3)
-                    .text,
-                us ? "in" : "mm");
+    for (size_t i = 0; i < a->placement.best.count; i++) {
+        const struct job_plane *plane = &a->model->job->planes[a->placement.best.items[i].plane];
+        if (plane->work == WORK_REMOVE && plane->hole_m > 0)
+            return true;
     }
-    return length;
+    return false;
 }
 
 static bool only_removal(const struct answer *a)
@@ -492,12 +476,36 @@ static bool only_removal(const struct answer *a)
     return a->placement.best.count > 0;
 }
 
+/* Aimed sensors that take no part: two by name and how many more. */
+static void list_lost(const struct answer *a, char *text, size_t size)
+{
+    const struct model *m = a->model;
+    size_t length = strlen(text), named = 0, more = 0;
+    for (size_t r = 0; r < m->row_count; r++) {
+        const struct model_row *row = &m->rows[r];
+        if (!row->in_aim || row->state == MODEL_GOOD)
+            continue;
+        char one[120];
+        int wanted = snprintf(one, sizeof one, "; without sensor '%s' (%s)",
+                              m->job->sensors[row->sensor].name, m->conditions[row->condition]);
+        if (named == 2 || length + (size_t)wanted + 20 > size) {
+            more++;
+            continue;
+        }
+        named++;
+        length += (size_t)snprintf(text + length, size - length, "%s", one);
+    }
+    if (more > 0)
+        snprintf(text + length, size - length, "; and %zu more", more);
+}
+
 void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next)
 {
     const struct job *job = a->model->job;
     int mounted = job->aim.mounted;
     *next = (struct advice_next){.step = trim ? "trim" : "correct"};
-    const char *work = only_removal(a) ? "remove material as placed"
+    const char *drill = has_holes(a) ? "drill as placed, depths beside each placement" : NULL;
+    const char *work = only_removal(a) ? drill ? drill : "remove material as placed"
                        : mounted >= 0  ? "add what is placed"
                                        : "fit what is placed";
     if (mounted >= 0)
@@ -506,7 +514,10 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
                  work);
     else
         snprintf(next->text, sizeof next->text,
-                 "take everything off that was mounted, %s, then run again", work);
+                 job_removed_run(job) >= 0
+                     ? "put back what runs removed and take off what was mounted, %s, then run again"
+                     : "take everything off that was mounted, %s, then run again",
+                 work);
     size_t length = strlen(next->text);
     double gap = a->placement.gap, from = a->placement.nothing;
     if (gap > 0 && from > 0)
@@ -521,20 +532,15 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
         snprintf(next->text + length, sizeof next->text - length,
                  "; that fewer pieces would not do as well is not proven");
     length = strlen(next->text);
-    length += list_holes(a, next->text + length, sizeof next->text - length);
+    if (drill && !only_removal(a))
+        length += (size_t)snprintf(next->text + length, sizeof next->text - length, "; %s", drill);
     if (a->static_only)
         length += (size_t)snprintf(next->text + length, sizeof next->text - length,
                                    "; the static part comes first, the couple after that run");
     if (a->model->amplitudes)
         length += (size_t)snprintf(next->text + length, sizeof next->text - length,
                                    "; found from amplitudes alone, no lag is meant");
-    for (size_t r = 0; r < a->model->row_count && length + 80 < sizeof next->text; r++) {
-        const struct model_row *row = &a->model->rows[r];
-        if (row->in_aim && row->state != MODEL_GOOD)
-            length += (size_t)snprintf(next->text + length, sizeof next->text - length,
-                                       "; without sensor '%s' (%s)", job->sensors[row->sensor].name,
-                                       a->model->conditions[row->condition]);
-    }
+    list_lost(a, next->text, sizeof next->text);
 }
 
 void advice_done_step(const struct answer *a, int run, bool met, struct advice_next *next)

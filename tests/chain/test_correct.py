@@ -333,6 +333,8 @@ class Fitting(unittest.TestCase):
             stream = stream_of(sheet(planes, trials(truth, [("P", 0.02, 0)]), angles=angles, phase=phase))
             placed = chain.kind(stream, "placement")
             self.assertGreater(len(placed), 1)
+            (step,) = chain.kind(stream, "next")  # no hole is left out of the text, since none is in it
+            self.assertIn("drill as placed, depths beside each placement", step["text"])
             total = 0
             for p in placed:
                 self.assertLess(p["mass"], 0)
