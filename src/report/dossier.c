@@ -329,6 +329,22 @@ bool dossier_is_audit(const struct dossier *dossier)
     return dossier->job->audit;
 }
 
+bool dossier_is_runout(const struct dossier *dossier, const char *run)
+{
+    const int index = job_find_run(dossier->job, run);
+    return index >= 0 && strcmp(dossier->job->runs[index].role, "runout") == 0;
+}
+
+bool dossier_left_out(const struct dossier *dossier, int sensor, const char *condition)
+{
+    for (size_t i = 0; i < dossier->forecasts.count; i++) {
+        const struct forecast_record *f = &dossier->forecasts.items[i];
+        if (f->sensor == sensor && strcmp(f->condition, condition) == 0)
+            return false;
+    }
+    return dossier->forecasts.count > 0;
+}
+
 enum verdict dossier_verdict(const struct dossier *dossier, const char *run, int sensor)
 {
     enum verdict worst = VERDICT_OK;

@@ -91,6 +91,12 @@ bool dossier_is_audit(const struct dossier *dossier);
 
 /* The gravest verdict of any finding on that run and sensor (findings on the whole run included).
  */
+/* True where that run is a slow roll, whose readings are for every condition. */
+bool dossier_is_runout(const struct dossier *dossier, const char *run);
+
+/* True where something is forecast, but not that sensor in that condition: solve did without it. */
+bool dossier_left_out(const struct dossier *dossier, int sensor, const char *condition);
+
 enum verdict dossier_verdict(const struct dossier *dossier, const char *run, int sensor);
 
 /* Name of a sensor or plane of the job; "" for an index that is none. */

@@ -309,6 +309,89 @@ static void forecast_row(const struct dossier *d, const struct forecast_record *
     table_cell(table, "%s", digits_chance(chance, f->chance));
 }
 
+/* What the lost sensor shows where the rotor is as the answer takes it: the mean of the used
+ * readings, as shown; NaN: there are none. */
+static double lost_before(const struct dossier *d, size_t sensor, const char *condition)
+{
+    const char *to = d->placements.count > 0 ? d->placements.items[0].relative_to : "";
+    const struct job_sensor *s = &d->job->sensors[sensor];
+    const int base = job_find_run(d->job, to);
+    double complex sum = 0;
+    double rpm = NAN;
+    size_t count = 0;
+    for (size_t i = 0; i < d->readings.count; i++) {
+        const struct reading_record *r = &d->readings.items[i].reading;
+        const int run = job_find_run(d->job, r->run);
+        if (r->sensor != (int)sensor || strcmp(r->condition, condition) != 0 || run < 0 ||
+            dossier_is_runout(d, r->run) || !d->readings.items[i].use || !r->has_phase)
+            continue;
+        if (base >= 0 ? run != base : !job_run_is_bare(d->job, (size_t)run))
+            continue;
+        sum += r->vector;
+        rpm = r->speed_rpm;
+        count++;
+    }
+    if (count == 0)
+        return NAN;
+    return shown_amplitude(cabs(sum) / (double)count, NAN, s->quantity, rpm, &s->show).amplitude;
+}
+
+/* An aimed sensor about which nothing is foretold. condition: "" where it was never read. */
+static void lost_row(const struct dossier *d, size_t sensor, const char *condition, bool single,
+                     struct table *table)
+{
+    const struct job_sensor *s = &d->job->sensors[sensor];
+    const struct job_target *target = &d->job->aim.targets[sensor];
+    const double before = lost_before(d, sensor, condition);
+    const double aim =
+        shown_amplitude(target->amplitude, NAN, target->quantity, d->job->service_rpm, &s->show)
+            .amplitude;
+    char text[DIGITS_ROOM];
+    bool plain =
+        !condition[0] || (single && strcmp(condition, d->forecasts.items[0].condition) == 0);
+    table_cell(table, "%s%s%s", s->name, plain ? "" : ", ", plain ? "" : condition);
+    table_cell(table, "%s %s", s->show.unit, detection_text(s->show.detection));
+    /* Three digits: common practice for one amplitude. */
+    table_cell(table, "%s", digits_text(text, before, before / 10));
+    table_cell(table, "-");
+    table_cell(table, "not forecast");
+    table_cell(table, "%s", digits_text(text, aim, NAN));
+    table_cell(table, "-");
+}
+
+static bool said_before(const struct dossier *d, size_t reading)
+{
+    const struct reading_record *r = &d->readings.items[reading].reading;
+    for (size_t i = 0; i < reading; i++) {
+        const struct reading_record *other = &d->readings.items[i].reading;
+        if (other->sensor == r->sensor && strcmp(other->condition, r->condition) == 0)
+            return true;
+    }
+    return false;
+}
+
+static void lost_rows(const struct dossier *d, bool single, struct table *table)
+{
+    const struct job *job = d->job;
+    for (size_t s = 0; s < job->sensor_count && job->aim.targets; s++) {
+        bool known = false;
+        if (job->aim.named && !job->aim.targets[s].in_aim)
+            continue;
+        for (size_t i = 0; i < d->readings.count; i++) {
+            const struct reading_record *r = &d->readings.items[i].reading;
+            if (r->sensor != (int)s || dossier_is_runout(d, r->run))
+                continue;
+            known = true;
+            if (dossier_left_out(d, (int)s, r->condition) && !said_before(d, i))
+                lost_row(d, s, r->condition, single, table);
+        }
+        for (size_t i = 0; i < d->forecasts.count; i++)
+            known = known || d->forecasts.items[i].sensor == (int)s;
+        if (!known && d->forecasts.count > 0)
+            lost_row(d, s, "", single, table);
+    }
+}
+
 void text_answer_forecast_table(const struct dossier *dossier, struct table *table)
 {
     static const struct table_column columns[] = {
@@ -324,6 +407,7 @@ void text_answer_forecast_table(const struct dossier *dossier, struct table *tab
     table_init(table, columns, sizeof columns / sizeof *columns);
     for (size_t i = 0; i < dossier->forecasts.count; i++)
         forecast_row(dossier, &dossier->forecasts.items[i], single, table);
+    lost_rows(dossier, single, table);
 }
 
 void text_answer_forecast(const struct dossier *dossier, struct buffer *out)

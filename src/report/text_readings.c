@@ -44,6 +44,19 @@ static void vector_cells(struct table *table, const struct shown *s, const char 
     }
 }
 
+/* What became of a reading. A runout run is for all conditions, so it is not told from them. */
+static const char *use_text(const struct dossier *d, const struct dossier_reading *item)
+{
+    const struct reading_record *r = &item->reading;
+    if (!item->judged)
+        return "not vetted";
+    if (!item->use)
+        return "REFUSED";
+    if (dossier_is_runout(d, r->run))
+        return "used";
+    return dossier_left_out(d, r->sensor, r->condition) ? "not used" : "used";
+}
+
 static void reading_row(const struct dossier *d, const struct dossier_reading *item,
                         struct table *table)
 {
@@ -58,7 +71,7 @@ static void reading_row(const struct dossier *d, const struct dossier_reading *i
         table_cell(table, "%ld/%ld", r->steady.turns, r->blocks);
     else
         table_cell(table, "by hand");
-    table_cell(table, "%s", !item->judged ? "not vetted" : item->use ? "used" : "REFUSED");
+    table_cell(table, "%s", use_text(d, item));
 }
 
 static bool same_group(const struct dossier_reading *a, const struct dossier_reading *b)

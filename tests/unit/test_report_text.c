@@ -175,6 +175,30 @@ static void holes_are_told(void **state)
     unload(&l);
 }
 
+static void a_lost_sensor_is_not_forgotten(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    assert_says(&l, "not forecast", false);
+    assert_says(&l, "not used", false);
+    l.dossier.forecasts.count = 1; /* DE-V alone */
+    /* NDE-H as found is 3.117 mm/s rms, its target 1.8: see golden.cmake and the stream. */
+    assert_says(&l, "NDE-H mm/s rms 3.12 - not forecast 1.8 -", true);
+    assert_says(&l, "DE-V mm/s rms 7.23 0.41 0.13 to 0.86", true);
+    assert_says(&l, "1479/61 used NDE-H 3.12 mm/s rms 0.13 252 deg 3 1479/61 not used", true);
+    assert_says(&l, "1479/61 used NDE-H 2.61 mm/s rms 0.11 228 deg 3 1479/61 not used", true);
+    l.dossier.readings.items[1].use = false; /* as found too */
+    assert_says(&l, "NDE-H mm/s rms - - not forecast 1.8 -", true);
+    assert_says(&l, "NDE-H 3.12 mm/s rms 0.13 252 deg 3 1479/61 REFUSED", true);
+    l.job.aim.named = true; /* the aim does without it */
+    l.job.aim.targets[1].in_aim = false;
+    assert_says(&l, "not forecast", false);
+    l.dossier.forecasts.count = 0; /* no answer: nothing is left out of it */
+    assert_says(&l, "not used", false);
+    unload(&l);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -182,6 +206,7 @@ int main(void)
         cmocka_unit_test(badly_known_weights_say_so),
         cmocka_unit_test(tolerance_is_not_claimed),
         cmocka_unit_test(holes_are_told),
+        cmocka_unit_test(a_lost_sensor_is_not_forgotten),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
