@@ -27,16 +27,8 @@ static void advice(const struct dossier *d, struct buffer *out)
 
 static void relative_to(const struct dossier *d, struct buffer *out)
 {
-    const char *name = d->placements.items[0].relative_to;
     struct buffer text = BUFFER_INIT;
-    int run = job_find_run(d->job, name);
-    if (run < 0) {
-        buffer_format(&text, "Relative to the rotor %s: take every trial weight off first.", name);
-    } else {
-        buffer_format(&text, "In addition to the weights of run '%s', which stay on: ", name);
-        phrase_weights(&text, d->job, (size_t)run);
-        buffer_text(&text, ".");
-    }
+    phrase_relative_to(&text, d->job, d->placements.items[0].relative_to);
     html_part_take(out, "p", &text);
 }
 

@@ -124,6 +124,35 @@ void phrase_weights(struct buffer *out, const struct job *job, size_t run)
     }
 }
 
+static bool any_added(const struct job *job)
+{
+    for (size_t r = 0; r < job->run_count; r++)
+        for (size_t i = 0; i < job->runs[r].weight_count; i++)
+            if (job->runs[r].weights[i].mounted_mass > 0)
+                return true;
+    return false;
+}
+
+void phrase_relative_to(struct buffer *out, const struct job *job, const char *name)
+{
+    int run = job_find_run(job, name), removed = job_removed_run(job);
+    if (run >= 0) {
+        buffer_format(out, "In addition to the weights of run '%s', which stay on: ", name);
+        phrase_weights(out, job, (size_t)run);
+        buffer_text(out, ".");
+        return;
+    }
+    buffer_format(out, "Relative to the rotor %s: ", name);
+    if (removed < 0)
+        buffer_text(out, "take every trial weight off first.");
+    else
+        buffer_format(out,
+                      "put back what was removed in run '%s'%s, or name the run as mounted in "
+                      "[aim] and ask again.",
+                      job->runs[removed].name,
+                      any_added(job) ? " and take every trial weight off first" : " first");
+}
+
 void phrase_weight_half(double mass, double angle_deg, const double cov[3], double half[2])
 {
     /* The weight is a vector like a reading's: along it the mass, across it the angle. The "show"

@@ -21,6 +21,11 @@ void phrase_mass(struct buffer *out, const struct job *job, double kg, double ha
  * compared with it. NaN: false. */
 bool phrase_weight_useless(double kg, double half);
 
+/* What the answer takes as on the rotor: "Relative to the rotor as found: take every trial weight
+ * off first.", what to put back where a run removed material, or the weights that stay. `name`: a
+ * record's relative_to. */
+void phrase_relative_to(struct buffer *out, const struct job *job, const char *name);
+
 /* "3 pieces: 50 + 10 + 10 g". One piece: "in one piece". */
 void phrase_pieces(struct buffer *out, const struct job *job, const double *pieces, size_t count);
 

@@ -44,15 +44,8 @@ static void note_angle(const struct dossier *d, struct buffer *out)
 
 static void relative_to(const struct dossier *d, const char *name, struct buffer *out)
 {
-    int run = job_find_run(d->job, name);
-    if (run < 0) {
-        paper_say(out, 2, 2, "Relative to the rotor %s: take every trial weight off first.", name);
-        return;
-    }
     struct buffer text = BUFFER_INIT;
-    buffer_format(&text, "In addition to the weights of run '%s', which stay on: ", name);
-    phrase_weights(&text, d->job, (size_t)run);
-    buffer_text(&text, ".");
+    phrase_relative_to(&text, d->job, name);
     put(out, 2, 2, &text);
 }
 

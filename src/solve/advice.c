@@ -515,7 +515,7 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
     else
         snprintf(next->text, sizeof next->text,
                  job_removed_run(job) >= 0
-                     ? "put back what runs removed and take off what was mounted, %s, then run again"
+                     ? "put back what runs removed, take off what was mounted, %s, then run again"
                      : "take everything off that was mounted, %s, then run again",
                  work);
     size_t length = strlen(next->text);

@@ -414,6 +414,13 @@ class Fitting(unittest.TestCase):
         (f,) = findings(stream, "removed-stays")
         self.assertEqual((f["verdict"], f["run"]), ("caution", "trial 1"))
         self.assertIn("`mounted = trial 1`", f["text"])
+        with chain.folder() as where:
+            path = where / "job.ini"
+            path.write_text(sheet({"P": []}, runs))
+            for form in ("text", "html"):
+                said = " ".join(chain.lopside("balance", "--as", form, path).stdout.decode().split())
+                self.assertIn("put back what was removed in run", said)
+                self.assertNotIn("take every trial weight off", said)
         stream = stream_of(sheet({"P": []}, runs, ["repeatability = 0 %", "mounted = trial 1"]))
         self.assertLess(abs(corrections(stream)["P"] - (want + hole)), 1e-9)
         self.assertEqual(findings(stream, "removed-stays"), [])
