@@ -29,7 +29,7 @@ static double all(const struct dossier *d, enum draw_what what, double y, struct
         return all_time(d, y, out);
     case DRAW_SPECTRUM:
         for (size_t i = 0; i < d->spectra.count; i++)
-            y += draw_lines_spectrum(d, i, y, out);
+            y += draw_spectrum(d, i, y, out);
         return y;
     case DRAW_SPEED:
         for (size_t i = 0; i < d->curves.count; i++)

@@ -26,7 +26,7 @@ double draw_polar(const struct dossier *d, size_t sensor, const char *condition,
 /* Amplitude, lag and speed over time of one run and sensor. small: lag alone, as one of many. */
 double draw_lines_time(const struct dossier *d, size_t run, size_t sensor, bool small, double y,
                  struct buffer *out);
-double draw_lines_spectrum(const struct dossier *d, size_t spectrum, double y, struct buffer *out);
+double draw_spectrum(const struct dossier *d, size_t spectrum, double y, struct buffer *out);
 double draw_lines_speed(const struct dossier *d, size_t curve, double y, struct buffer *out);
 
 /* True where reading i is the first of its sensor and condition: each pair has one polar plot. */

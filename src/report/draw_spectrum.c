@@ -112,7 +112,7 @@ static void frame(const struct graph *g)
     }
 }
 
-double draw_lines_spectrum(const struct dossier *d, size_t spectrum, double y, struct buffer *out)
+double draw_spectrum(const struct dossier *d, size_t spectrum, double y, struct buffer *out)
 {
     const struct spectrum_record *r = &d->spectra.items[spectrum];
     char title[200], unit[24];

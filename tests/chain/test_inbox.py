@@ -166,7 +166,7 @@ class Inbox(unittest.TestCase):
         job = put(self.inbox, "a", {"job.ini": BY_HAND.format(title="first")})
         times = (job / "job.ini").stat()
         run(self.inbox, self.outbox)
-        time.sleep(3.2)  # from here on an untouched job is known without reading it
+        time.sleep(4.2)  # whole seconds count; from here on an untouched job is known without reading it
         run(self.inbox, self.outbox)
         self.assertTrue((self.outbox / ".inbox" / "seen" / "a").exists())
         (job / "job.ini").write_text(BY_HAND.format(title="later"))
