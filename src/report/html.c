@@ -149,7 +149,7 @@ static void evidence(const struct dossier *d, bool small, struct buffer *out)
             draw_lines_time(d, r, s, small, 0, out);
     }
     for (size_t i = 0; !small && i < d->spectra.count; i++)
-        draw_lines_spectrum(d, i, 0, out);
+        draw_spectrum(d, i, 0, out);
     buffer_text(out, "</div>\n");
     if (d->curves.count > 0)
         html_part_heading(out, "Coast-down");
