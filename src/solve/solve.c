@@ -11,6 +11,7 @@
 #include "base/options.h"
 #include "base/status.h"
 #include "solve/advice.h"
+#include "solve/already.h"
 #include "solve/answer.h"
 #include "solve/lookback.h"
 #include "solve/model.h"
@@ -232,7 +233,10 @@ static int conclude(struct solve_records *s)
     status = solve_records_responses(s, &model);
     if (status == STATUS_DONE)
         status = judge_rows(s, &model);
-    if (status == STATUS_DONE) {
+    if (status == STATUS_DONE && already_meets(&model)) {
+        already_step(&model, &next);
+        status = solve_records_next(s, &next, NULL, STATUS_DONE);
+    } else if (status == STATUS_DONE) {
         struct ruling ruling = ruling_of(&model);
         switch (ruling.kind) {
         case RULING_TRIAL:

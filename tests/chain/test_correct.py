@@ -555,6 +555,19 @@ class Mounted(unittest.TestCase):
             self.assertLess(after, f["after_95"][1] * 1e6)
             self.assertEqual(f["chance"] > 0.99, sure)
 
+    def test_good_as_found(self):
+        """Within the target with room for scatter: nothing to fit, trial or not; close to it: go on as ever."""
+        for z, step in ((7, "done"), (9.9, "trial"), (12, "trial")):
+            truth = {"A": [z * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}
+            aim = ["repeatability = 3 %", "target = 10 um pk"]
+            runs = trials(truth, [("P", 0.02, 30)])
+            (alone,) = chain.kind(stream_of(sheet({"P": []}, runs[:1], aim)), "next")
+            self.assertEqual(alone["step"], step)
+            tried = stream_of(sheet({"P": []}, runs, aim))
+            (after,) = chain.kind(tried, "next")
+            self.assertEqual(after["step"], "done" if step == "done" else "correct")
+            self.assertEqual(chain.kind(tried, "placement") == [], step == "done")
+
 
 class Without(unittest.TestCase):
     """No answer: the records say why, and `report` gives the same exit code."""
