@@ -378,8 +378,7 @@ static void repeat_sensor(struct vet_runs *runs, const size_t *order, const stru
         middle = median_vector(runs, members, count, sensor, room);
         floor = across_floor(runs, order, job, &runs->items[order[k]], sensor);
         for (size_t i = 0; i < count; i++) /* room: who is refused, once all have been compared */
-            room[i] =
-                judge_repeat(runs, job, members, count, i, sensor, middle, floor, findings);
+            room[i] = judge_repeat(runs, job, members, count, i, sensor, middle, floor, findings);
         for (size_t i = 0; i < count; i++)
             if (room[i] > 0)
                 runs->items[members[i]].readings[sensor].use = false;
@@ -435,6 +434,7 @@ void across_runout(struct vet_runs *runs, const size_t *order, const struct job 
         enum ruling ruling = share < RUNOUT_SHARE_MOST ? RULING_OK : RULING_REFUSE;
         if (strcmp(facts_role(run, job), "runout") != 0 || isnan(share))
             continue;
+        findings_instead(findings, "take the slow roll slower, or correct the sheet");
         ruling = findings_rule(findings, CHECK_SERVICE_SPEED, ruling, (int)order[k], -1,
                                100 * share, 100 * RUNOUT_SHARE_MOST, "%",
                                "runout was taken at %.0f rpm, %g %% of the service speed%s", speed,

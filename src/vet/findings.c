@@ -37,8 +37,13 @@ static struct finding *grow(struct findings *f)
     return &f->items[f->count++];
 }
 
+void findings_instead(struct findings *findings, const char *advice)
+{
+    findings->instead = advice;
+}
+
 /* Adds the limit and the advice to what was seen. */
-static void finish_text(struct finding *item, const struct check_row *row)
+static void finish_text(struct finding *item, const char *advice)
 {
     char *text = item->text;
     size_t used = strlen(text), room = sizeof item->text;
@@ -47,19 +52,21 @@ static void finish_text(struct finding *item, const struct check_row *row)
         used += (size_t)snprintf(text + used, room - used, ", limit %g%s%s", item->limit,
                                  item->unit[0] ? " " : "", item->unit);
     if (used < room && item->ruling != RULING_OK)
-        snprintf(text + used, room - used, ": %s", row->advice);
+        snprintf(text + used, room - used, ": %s", advice);
 }
 
 static enum ruling add(struct findings *f, const struct finding *from, const char *format,
                        va_list arguments)
 {
     struct finding *item = grow(f);
+    const char *advice = f->instead ? f->instead : f->limits->rows[from->check].advice;
 
+    f->instead = NULL;
     if (!item)
         return from->ruling;
     *item = *from;
     vsnprintf(item->text, sizeof item->text - 200, format, arguments); /* 200: limit and advice */
-    finish_text(item, &f->limits->rows[from->check]);
+    finish_text(item, advice);
     return item->ruling;
 }
 
@@ -70,8 +77,10 @@ enum ruling findings_add(struct findings *findings, enum check check, int run, i
     va_list arguments;
     enum ruling ruling;
 
-    if (findings->limits->rows[check].off)
+    if (findings->limits->rows[check].off) {
+        findings->instead = NULL;
         return RULING_OK;
+    }
     item.unit = findings->limits->rows[check].unit;
     item.ruling = limits_judge(findings->limits, check, value, &item.limit);
     va_start(arguments, format);
@@ -87,8 +96,10 @@ enum ruling findings_rule(struct findings *findings, enum check check, enum ruli
     struct finding item = {check, ruling, run, sensor, value, limit, unit, ""};
     va_list arguments;
 
-    if (findings->limits->rows[check].off)
+    if (findings->limits->rows[check].off) {
+        findings->instead = NULL;
         return RULING_OK;
+    }
     va_start(arguments, format);
     ruling = add(findings, &item, format, arguments);
     va_end(arguments);

@@ -129,7 +129,7 @@ static void say_what(const struct job *job, enum suspects_kind kind, const struc
 
 static void report(const struct table *t, const struct vet_runs *runs, const struct job *job,
                    const char *condition, enum suspects_kind kind, const struct suspect *s,
-                   struct findings *findings)
+                   bool hidden, struct findings *findings)
 {
     static const enum check checks[] = {CHECK_TAPE_MOVED, CHECK_SENSOR_SWAPPED,
                                         CHECK_SENSOR_TURNED};
@@ -138,12 +138,8 @@ static void report(const struct table *t, const struct vet_runs *runs, const str
     enum check check = checks[kind];
     char where[160], what[128];
 
-    if (!s->spare) {
-        findings_rule(findings, check, RULING_OK, -1, -1, NAN, NAN, "",
-                      "no run of condition '%s' is spare, and %s cannot be told", condition,
-                      things[kind]);
-        return;
-    }
+    if (!s->likely && (hidden || !s->spare))
+        return; /* nothing was judged */
     if (!s->likely) {
         findings_rule(findings, check, RULING_OK, -1, -1, 1, findings->limits->rows[check].caution,
                       "", "the runs of condition '%s' do not call for %s", condition, things[kind]);
@@ -157,14 +153,17 @@ static void report(const struct table *t, const struct vet_runs *runs, const str
                  where);
 }
 
+/* *hidden is set where something may have been moved without a trace. */
 static void check_condition(struct table *t, struct vet_runs *runs, const size_t *order,
-                            const struct job *job, const char *condition, struct findings *findings)
+                            const struct job *job, const char *condition, bool *hidden,
+                            struct findings *findings)
 {
     struct suspects_set set;
+    bool here = false, likely = false;
 
     gather(t, runs, order, job, condition);
-    if (t->count == 0)
-        return;
+    if (t->count < 2)
+        return; /* nothing to compare */
     fill(t, runs, order, job, condition);
     set = (struct suspects_set){t->count,   job->sensor_count, job->plane_count, t->weights,
                                 t->vectors, t->variance,       t->repeatability, t->alike};
@@ -176,8 +175,11 @@ static void check_condition(struct table *t, struct vet_runs *runs, const size_t
             findings->failed = true;
             return;
         }
-        report(t, runs, job, condition, (enum suspects_kind)kind, &suspect, findings);
+        here = here || suspect.hidden || (kind == SUSPECTS_TAPE && !suspect.spare);
+        likely = likely || (kind == SUSPECTS_TAPE && suspect.likely);
+        report(t, runs, job, condition, (enum suspects_kind)kind, &suspect, here, findings);
     }
+    *hidden = *hidden || (here && !likely);
 }
 
 static bool table_init(struct table *t, size_t runs, size_t sensors, size_t planes)
@@ -209,6 +211,7 @@ void moved_check(struct vet_runs *runs, const size_t *order, const struct job *j
                  struct findings *findings)
 {
     size_t named = 0; /* runs of the job's sheet; those of an audit are not compared */
+    bool hidden = false;
     struct table t;
 
     while (named < runs->count && runs->items[order[named]].index >= 0)
@@ -219,6 +222,12 @@ void moved_check(struct vet_runs *runs, const size_t *order, const struct job *j
         findings->failed = true;
     for (size_t k = 0; !findings->failed && k < named; k++)
         if (across_first_of_condition(runs, order, job, k))
-            check_condition(&t, runs, order, job, runs->items[order[k]].condition, findings);
+            check_condition(&t, runs, order, job, runs->items[order[k]].condition, &hidden,
+                            findings);
+    if (!findings->failed && hidden)
+        findings_rule(findings, CHECK_TAPE_MOVED, RULING_OK, -1, -1, NAN, NAN, "",
+                      "not checkable with these runs: a second trial at another angle, or as found "
+                      "repeated after the trial, would show a moved tape, a swapped or turned "
+                      "sensor, a wrong counting sense");
     table_release(&t);
 }

@@ -9,8 +9,10 @@
 
 static const double NORMAL_999 = 3.0902, NORMAL_95 = 1.6449; /* points of the normal distribution */
 static const double TURN_LEAST =
-    5;                           /* deg: a mark put on anew hardly lands closer, common practice */
-static const double AS_GOOD = 6; /* of chi-squared: the 95 % point with 2 degrees of freedom */
+    5; /* deg: a mark put on anew hardly lands closer, common practice */
+static const double TURN_SEEN = 30; /* deg: a smaller one does little harm; common practice */
+static const double FAR = 4;        /* of chi-squared: twice as much in amplitude */
+static const double AS_GOOD = 6;    /* of chi-squared: the 95 % point with 2 degrees of freedom */
 static const double RANK_LEAST = 1e-9; /* rounding of weights scaled to 1 */
 
 static const double ROUNDING = 1e-6; /* of chi-squared */
@@ -102,6 +104,7 @@ static double project(struct bench *b, size_t rows)
  */
 struct parts {
     double outside, inside, freedom;
+    double size;            /* of the inside as it is read, not of its residual */
     double complex product; /* sum of conj(outside) * inside */
 };
 
@@ -114,6 +117,8 @@ static int parts_of(struct bench *b, size_t sensor, size_t from, size_t first, b
     *parts = (struct parts){0};
     if (rows == 0)
         return 0;
+    for (size_t i = 0; i < rows; i++)
+        parts->size += creal(b->sides[i * 2 + 1] * conj(b->sides[i * 2 + 1]));
     parts->freedom = project(b, rows);
     if (parts->freedom < 0)
         return -1;
@@ -136,6 +141,7 @@ static double misfit(const struct parts *p, double complex factor)
  */
 struct search {
     double sum, used;
+    bool hidden;
     struct suspect best;
 };
 
@@ -160,6 +166,18 @@ static void offer(struct search *search, double sum, double used, struct suspect
     }
 }
 
+/* True where a turn of the tape would change the readings by far more than their uncertainties and
+ * still leave no misfit that shows. */
+static bool hides(const struct bench *b, const struct parts *all)
+{
+    double turned = cabs(angle_vector(1, TURN_SEEN) - 1), limit;
+
+    if (!(b->freedom > 0))
+        return true;
+    limit = suspects_chi2(b->freedom, NORMAL_999);
+    return turned * turned * all->inside <= limit && turned * turned * all->size > FAR * limit;
+}
+
 static int try_tape(struct bench *b, size_t first, bool onwards, struct search *search)
 {
     struct parts all = {0}, p;
@@ -170,8 +188,11 @@ static int try_tape(struct bench *b, size_t first, bool onwards, struct search *
             return -1;
         all.outside += p.outside;
         all.inside += p.inside;
+        all.size += p.size;
         all.product += p.product;
     }
+    if (onwards && hides(b, &all))
+        search->hidden = true;
     /* exp(-j*turned) * product is to be as negative as can be */
     turned = carg(-all.product);
     if (cabs(all.product) > 0)
@@ -261,11 +282,12 @@ static void judge(const struct bench *b, enum suspects_kind kind, const struct s
 {
     double freedom = b->freedom - search->used, then;
 
-    *suspect = (struct suspect){.better = 1};
+    *suspect = (struct suspect){.better = 1, .hidden = search->hidden};
     suspect->spare = b->freedom > 0 && !isnan(search->sum) && freedom > 0;
     if (!suspect->spare)
         return;
     *suspect = search->best;
+    suspect->hidden = search->hidden;
     suspect->spare = true;
     suspect->misfit = sqrt(b->sum / b->freedom);
     suspect->chance = beyond(b->freedom, b->sum);

@@ -19,6 +19,7 @@ struct suspects_set {
 enum suspects_kind { SUSPECTS_TAPE, SUSPECTS_SWAP, SUSPECTS_TURN };
 
 struct suspect {
+    bool hidden;         /* tape: from some run on it might have been moved without a trace */
     bool spare;          /* some run is spare; otherwise nothing can be told */
     double misfit;       /* of the runs as they are, root mean square in standard errors */
     double chance;       /* below 0.001: no chance that the runs fit as they are */
@@ -41,7 +42,9 @@ struct suspect {
  * chi-squared with two degrees of freedom for every spare reading. `likely` where that is beyond
  * its 99.9 % point as the runs are and within its 95 % point if it were so (points after Wilson &
  * Hilferty, PNAS 17 (1931) 684-688), for a turn of the tape of at least 5 deg. `other` is told
- * where the misfit would be within 6 (chi-squared) of the best. 0; -1: no memory. */
+ * where the misfit would be within 6 (chi-squared) of the best. `hidden` where from some run on a
+ * shift of all lags by 30 deg would not lift the misfit beyond the 99.9 % point, since the responses
+ * to weights take it up, although it changes the readings by twice that and more: then that the runs fit says nothing. 0; -1: no memory. */
 int suspects_find(const struct suspects_set *set, enum suspects_kind kind, struct suspect *suspect)
     __attribute__((warn_unused_result));
 

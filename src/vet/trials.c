@@ -155,6 +155,43 @@ static void judge(struct trials *t, size_t k)
         within_refuse(run, t->job);
 }
 
+/* Rank over the ordinary runs of run `of`'s condition that have no weights or stand before it; and
+ * of it too with `itself`. */
+static size_t rank_in_sheet(const struct job *job, size_t of, bool itself, double complex *room)
+{
+    size_t rows = 0, columns = job->plane_count + 1;
+
+    for (size_t r = 0; r < job->run_count; r++) {
+        if (r == of ? !itself
+                    : (r > of && !job_run_is_bare(job, r)) || job->runs[r].role[0] ||
+                          strcmp(job->runs[r].condition, job->runs[of].condition) != 0)
+            continue;
+        room[rows * columns] = 1;
+        for (size_t p = 0; p < job->plane_count; p++) {
+            double largest = 0;
+            for (size_t q = 0; q < job->run_count; q++)
+                largest = fmax(largest, cabs(job_run_weight(job, q, p)));
+            room[rows * columns + p + 1] = largest > 0 ? job_run_weight(job, r, p) / largest : 0;
+        }
+        rows++;
+    }
+    return ruling_rank(room, rows, columns);
+}
+
+bool trials_is_trial(const struct job *job, size_t run)
+{
+    double complex *room;
+    bool trial;
+
+    if (job_run_is_bare(job, run))
+        return false;
+    room = malloc(job->run_count * (job->plane_count + 1) * sizeof *room);
+    trial = !room || rank_in_sheet(job, run, true, room) > rank_in_sheet(job, run, false, room);
+
+    free(room);
+    return trial;
+}
+
 void trials_effect(struct vet_runs *runs, const size_t *order, const struct job *job,
                    struct findings *findings)
 {

@@ -16,4 +16,9 @@
 void trials_effect(struct vet_runs *runs, const size_t *order, const struct job *job,
                    struct findings *findings);
 
+/* By the sheet alone: true where run `run` of the job raises the rank over the ordinary runs before
+ * it and those without weights; false for one that can only confirm, as a correction run does after
+ * its trials. True, too, where memory is out. */
+bool trials_is_trial(const struct job *job, size_t run);
+
 #endif

@@ -7,6 +7,7 @@
 #include "base/angle.h"
 #include "sheet/units.h"
 #include "vet/across.h"
+#include "vet/trials.h"
 
 static const double GRAVITY = 9.80665; /* m/s2, CGPM 1901 */
 static const double STEPS_LEAST =
@@ -63,6 +64,13 @@ static bool without_turns(const struct vet_run *run, const struct job *job)
 static bool coasts(const struct vet_run *run, const struct job *job)
 {
     return !strcmp(facts_role(run, job), "coast-down");
+}
+
+/* Of a slow roll only the probes are used: what any other sensor shows there is no matter. */
+static bool matters(const struct vet_run *run, size_t sensor, const struct job *job)
+{
+    return strcmp(facts_role(run, job), "runout") != 0 ||
+           job->sensors[sensor].quantity == QUANTITY_DISPLACEMENT;
 }
 
 static void check_length(struct vet_run *run, int position, const struct job *job,
@@ -211,6 +219,20 @@ static void check_reference(struct vet_run *run, int position, const struct job 
         within_refuse(run, job);
 }
 
+/* What to do about weights that pull hard: only a trial may as well be smaller, and beyond the
+ * refusal limit a wrong sheet is likelier than a weight that somebody fitted. */
+static const char *force_advice(const struct vet_run *run, const struct job *job, double share,
+                                const struct findings *findings)
+{
+    double limit;
+
+    if (run->index == job->aim.mounted || !trials_is_trial(job, (size_t)run->index))
+        return "check rotor mass, speed and radius in the sheet";
+    return limits_judge(findings->limits, CHECK_WEIGHT_FORCE, share, &limit) == RULING_REFUSE
+               ? "check rotor mass, speed and radius in the sheet, else use a smaller weight"
+               : NULL;
+}
+
 static void check_force(struct vet_run *run, int position, const struct job *job,
                         struct findings *findings)
 {
@@ -224,6 +246,7 @@ static void check_force(struct vet_run *run, int position, const struct job *job
     share = 100 * force / load;
     if (isnan(share))
         return;
+    findings_instead(findings, force_advice(run, job, share, findings));
     if (findings_add(findings, CHECK_WEIGHT_FORCE, position, -1, share,
                      "the weights pull with %g N at %.0f rpm, %g %% of the static journal load",
                      findings_figure(force), rpm, findings_figure(share)) == RULING_REFUSE)
@@ -240,7 +263,7 @@ void within_run(struct vet_run *run, int position, const struct job *job, struct
     check_speed(run, position, job, findings);
     spread_same(run, job);
     for (size_t i = 0; i < job->sensor_count; i++)
-        if (run->channels[i].present)
+        if (run->channels[i].present && matters(run, i, job))
             check_channel(run, position, i, job, findings);
     check_tacho(run, position, job, findings);
     check_reference(run, position, job, findings);
@@ -390,7 +413,7 @@ void within_vectors(struct vet_run *run, int position, const double *as_found,
         double base = larger(r->amplitude, as_found[i]), own = r->amplitude / base;
         double share = r->amplitude / larger(base, across_target(job, r, i));
         bool refuse = false;
-        if (!r->present || run->hand)
+        if (!r->present || run->hand || !matters(run, i, job))
             continue;
         refuse |= steadiness(r, position, (int)i, share, findings);
         refuse |= drift(r, position, (int)i, share, own, findings);

@@ -64,6 +64,9 @@ def repeat(name="trial again", vectors=None, **wrong):
     return {"name": name, "mass": TRIAL, "vectors": vectors, **wrong}
 
 
+LAST = repeat("as-found last", mass=0)
+
+
 class Across(unittest.TestCase):
     """What needs several runs."""
 
@@ -153,18 +156,29 @@ class Across(unittest.TestCase):
         self.assertEqual(self.worst("tape-moved", repeat(tape_deg=35)), "caution")
         self.assertIn("by 35 deg in run 'trial again'", self.found[0]["text"])
         self.assertEqual(self.worst("tape-moved", repeat(tape_deg=1.5)), "ok")
+        # as found and one trial: not in order, but not known
         self.assertEqual(self.worst("tape-moved"), "ok")
-        self.assertIn("cannot be told", self.found[0]["text"])
+        self.assertIn("not checkable with these runs", self.found[0]["text"])
+        self.assertIsNone(self.found[0]["value"])
+        self.assertEqual(self.worst("tape-moved", LAST), "ok")
+        self.assertIsNotNone(self.found[0]["value"])  # now the runs would show it
+
+    def test_where_nothing_can_be_told_nothing_is_in_order(self):
+        for check in ("sensor-swapped", "sensor-turned"):
+            self.assertIsNone(self.worst(check))
 
     def test_sensor_swapped(self):
         self.assertEqual(self.worst("sensor-swapped", repeat(vectors=self.true(TRIAL)[::-1])), "caution")
-        self.assertEqual(self.worst("sensor-swapped", repeat()), "ok")
+        # in order only where as found once more at the end would have shown it
+        self.assertEqual(self.worst("sensor-swapped", repeat(), LAST), "ok")
+        self.assertEqual(self.worst("sensor-swapped", repeat(vectors=self.true(TRIAL)[::-1]), LAST), "caution")
 
     def test_sensor_turned(self):
         a, b = self.true(TRIAL)
         self.assertEqual(self.worst("sensor-turned", repeat(vectors=(a, -b))), "caution")
         self.assertEqual(self.found[0]["sensor"], "B-V")
-        self.assertEqual(self.worst("sensor-turned", repeat(vectors=(a, b * cmath.exp(0.05j)))), "ok")
+        self.assertEqual(self.worst("sensor-turned", repeat(vectors=(a, b * cmath.exp(0.05j))), LAST), "ok")
+        self.assertEqual(self.worst("sensor-turned", repeat(vectors=(a, -b)), LAST), "caution")
 
     def test_near_resonance_across_runs(self):
         for turn, verdict in ((8, "caution"), (3, "ok")):

@@ -306,6 +306,39 @@ static void limits_of_the_sheet(void **state)
 }
 
 /* Journal loads of a 340 kg rotor, mass centre 0.5 m from bearing A of 2 m: B carries a quarter. */
+static bool advised(const char *what)
+{
+    for (size_t i = 0; i < desk.findings.count; i++)
+        if (desk.findings.items[i].check == CHECK_WEIGHT_FORCE)
+            return strstr(desk.findings.items[i].text, what) != NULL;
+    fail();
+    return false;
+}
+
+/* What pulls hard may be smaller where it is a trial; elsewhere, and far beyond, the sheet is asked
+ * first. */
+static void advice_on_heavy_weights(void **state)
+{
+    (void)state;
+    vet_desk_set();
+    vet_desk_figure(CHECK_WEIGHT_FORCE, 20);
+    vet_desk_within(1);
+    assert_true(advised("use a smaller weight") && !advised("in the sheet"));
+    vet_desk_figure(CHECK_WEIGHT_FORCE, 60);
+    vet_desk_within(1);
+    assert_true(advised("check rotor mass, speed and radius in the sheet, else"));
+    desk.job.aim.mounted = 1;
+    vet_desk_within(1);
+    assert_true(advised("check rotor mass") && !advised("smaller weight"));
+
+    vet_desk_set(); /* the repeat of trial A tells nothing new */
+    assert_true(trials_is_trial(&desk.job, 1) && trials_is_trial(&desk.job, 2));
+    assert_false(trials_is_trial(&desk.job, 0) || trials_is_trial(&desk.job, 3));
+    vet_desk_weight(3, 0, 0.1, 30);
+    vet_desk_within(3);
+    assert_true(advised("check rotor mass") && !advised("smaller weight"));
+}
+
 static void loads(void **state)
 {
     (void)state;
@@ -335,6 +368,7 @@ int main(void)
         cmocka_unit_test(a_beat_is_judged),
         cmocka_unit_test(the_whole_job_is_answered),
         cmocka_unit_test(limits_of_the_sheet),
+        cmocka_unit_test(advice_on_heavy_weights),
         cmocka_unit_test(loads),
     };
     int failed = cmocka_run_group_tests(tests, NULL, NULL);

@@ -171,9 +171,27 @@ static void moved_on_the_desk(void **state)
     (void)state;
     vet_desk_set();
     moved_check(&desk.runs, desk.order, &desk.job, &desk.findings);
+    /* As found is not repeated after the trials: what moved in between is taken for their effect.
+     */
+    assert_int_equal(desk.findings.count, 1);
+    assert_int_equal(desk.findings.items[0].ruling, RULING_OK);
+    assert_true(isnan(desk.findings.items[0].value));
+    assert_int_equal(strncmp(desk.findings.items[0].text, "not checkable", 13), 0);
+
+    vet_desk_set(); /* as found once more at the end: now it would show */
+    vet_desk_weight(3, 0, 0, 0);
+    for (int i = 0; i < SENSORS; i++)
+        vet_desk_reading(3, i, 7.05e-3);
+    moved_check(&desk.runs, desk.order, &desk.job, &desk.findings);
     assert_int_equal(desk.findings.count, 3);
-    for (size_t i = 0; i < 3; i++)
+    for (size_t i = 0; i < 3; i++) {
         assert_int_equal(desk.findings.items[i].ruling, RULING_OK);
+        near(desk.findings.items[i].value, 1, 0);
+    }
+    for (int i = 0; i < SENSORS; i++) /* and does */
+        vet_desk_reading(3, i, 7.05e-3 * cexp(I * TURN * 30 / 360));
+    moved_check(&desk.runs, desk.order, &desk.job, &desk.findings);
+    assert_int_equal(vet_desk_ruled(CHECK_TAPE_MOVED, -2, -1), RULING_CAUTION);
 
     vet_desk_set();
     for (int r = 0; r < 2; r++)
