@@ -69,6 +69,18 @@ void phrase_holes(struct buffer *out, const struct job *job, const struct placem
     buffer_format(out, " %s deep", unit);
 }
 
+void phrase_sits(struct buffer *out, const struct job *job, const struct placement_record *p)
+{
+    char force[2 * DIGITS_ROOM];
+    if (!p->sits || !isfinite(p->total_mass))
+        return;
+    buffer_text(out, "; then ");
+    phrase_mass(out, job, fabs(p->total_mass), NAN);
+    buffer_text(out, p->total_mass < 0 ? " are missing there" : " sit there");
+    if (isfinite(p->total_force_n))
+        buffer_format(out, ", %s", shown_force(job, force, fabs(p->total_force_n)));
+}
+
 bool phrase_is_removed(const struct job *job, const struct placement_record *p)
 {
     return p->mass < 0 || (p->plane >= 0 && (size_t)p->plane < job->plane_count &&

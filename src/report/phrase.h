@@ -32,6 +32,9 @@ void phrase_pieces(struct buffer *out, const struct job *job, const double *piec
 /* "drill 2 holes of 12 mm, 15.0 + 8.5 mm deep" for a placement; nothing where no drill is named. */
 void phrase_holes(struct buffer *out, const struct job *job, const struct placement_record *p);
 
+/* "; then 110 g sit there, 702 N", where something stays mounted at the placement's position. */
+void phrase_sits(struct buffer *out, const struct job *job, const struct placement_record *p);
+
 /* True where the placement takes material off. */
 bool phrase_is_removed(const struct job *job, const struct placement_record *p);
 

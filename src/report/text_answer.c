@@ -95,21 +95,38 @@ static void placement(const struct dossier *d, size_t number, const struct place
         buffer_format(&text, "; force %s at %s rpm", force,
                       shown_speed(speed, d->job->service_rpm));
     }
+    phrase_sits(&text, d->job, p);
     put(out, 5, 5, &text);
 }
 
-/* The answer never stands without a word about what speaks against it. */
+static size_t count_findings(const struct dossier *d, enum verdict verdict)
+{
+    size_t count = 0;
+    for (size_t i = 0; i < d->findings.count; i++)
+        count += d->findings.items[i].verdict == verdict;
+    return count;
+}
+
+/* No step stands without a word about what speaks against it. */
+static void cautions(const struct dossier *d, struct buffer *out)
+{
+    size_t count = count_findings(d, VERDICT_CAUTION);
+    if (count > 0)
+        paper_say(out, 2, 2, "To be read first: cautions (%zu) among the findings below.", count);
+}
+
 static void doubts(const struct dossier *d, struct buffer *out)
 {
-    size_t counts[3] = {0, 0, 0};
-    for (size_t i = 0; i < d->findings.count; i++)
-        counts[d->findings.items[i].verdict]++;
-    if (counts[VERDICT_REFUSE] > 0)
+    size_t refused = count_findings(d, VERDICT_REFUSE);
+    for (size_t i = 0; i < d->forecasts.count; i++) {
+        struct buffer text = BUFFER_INIT;
+        text_answer_missed(d, i, &text);
+        put(out, 2, 2, &text);
+    }
+    if (refused > 0)
         paper_say(out, 2, 2, "Made WITHOUT what was refused (%zu): see the findings below.",
-                  counts[VERDICT_REFUSE]);
-    if (counts[VERDICT_CAUTION] > 0)
-        paper_say(out, 2, 2, "To be read first: cautions (%zu) among the findings below.",
-                  counts[VERDICT_CAUTION]);
+                  refused);
+    cautions(d, out);
 }
 
 static void placements(const struct dossier *d, struct buffer *out)
@@ -158,6 +175,7 @@ static void nothing(const struct dossier *d, bool refused, struct buffer *out)
         advice(d, 2, out);
     else
         paper_wrap(out, 2, 2, "Mend what is listed above and record those runs again.");
+    cautions(d, out);
     text_others_trials(d, out);
     note_angle(d, out);
 }
@@ -173,6 +191,7 @@ static void step_only(const struct dossier *d, struct buffer *out)
                    "No answer is in this stream: it has not been through `lopside solve`.");
     if (d->has_next)
         advice(d, 2, out);
+    cautions(d, out);
     text_others_trials(d, out);
     note_angle(d, out);
 }
@@ -275,31 +294,62 @@ static bool one_condition(const struct dossier *d)
     return true;
 }
 
+/* A forecast as its sensor shows it. */
+struct outlook {
+    double before, after, low, high, target;
+    int place; /* the last digit of what is expected */
+};
+
+static struct outlook outlook_of(const struct dossier *d, const struct forecast_record *f)
+{
+    const struct job_sensor *sensor = &d->job->sensors[f->sensor];
+    double peaks[5] = {cabs(f->before), cabs(f->after), f->after_95[0], f->after_95[1], f->target};
+    for (int i = 0; i < 5; i++)
+        peaks[i] =
+            shown_amplitude(peaks[i], NAN, sensor->quantity, f->speed_rpm, &sensor->show).amplitude;
+    /* Never finer than four digits of what there is now: a forecast of nothing left is "0.000". */
+    int place = digits_place(peaks[1], (peaks[3] - peaks[2]) / 2);
+    int coarse = digits_place(peaks[0], NAN);
+    return (struct outlook){peaks[0], peaks[1], peaks[2],
+                            peaks[3], peaks[4], place > coarse ? place : coarse};
+}
+
+void text_answer_missed(const struct dossier *dossier, size_t forecast, struct buffer *text)
+{
+    const struct forecast_record *f = &dossier->forecasts.items[forecast];
+    /* Below even odds it is not to be hoped for, and below 5 % it will not be: our choice. */
+    if (!(f->chance < 0.5) || f->sensor < 0 || (size_t)f->sensor >= dossier->job->sensor_count)
+        return;
+    const struct job_sensor *sensor = &dossier->job->sensors[f->sensor];
+    const struct outlook o = outlook_of(dossier, f);
+    const bool single = one_condition(dossier);
+    char after[DIGITS_ROOM], target[DIGITS_ROOM], chance[DIGITS_ROOM];
+    buffer_format(text, "This %s the target at %s%s%s: %s expected, target %s %s %s",
+                  f->chance < 0.05 ? "will not meet" : "is not likely to meet", sensor->name,
+                  single ? "" : ", ", single ? "" : f->condition,
+                  digits_at(after, o.after, o.place), digits_text(target, o.target, NAN),
+                  sensor->show.unit, detection_text(sensor->show.detection));
+    if (f->chance >= 0.05)
+        buffer_format(text, ", chance %s", digits_chance(chance, f->chance));
+    buffer_text(text, ".");
+}
+
 static void forecast_row(const struct dossier *d, const struct forecast_record *f, bool single,
                          struct table *table)
 {
     if (f->sensor < 0 || (size_t)f->sensor >= d->job->sensor_count)
         return;
     const struct job_sensor *sensor = &d->job->sensors[f->sensor];
-    double peaks[5] = {cabs(f->before), cabs(f->after), f->after_95[0], f->after_95[1], f->target};
-    for (int i = 0; i < 5; i++)
-        peaks[i] =
-            shown_amplitude(peaks[i], NAN, sensor->quantity, f->speed_rpm, &sensor->show).amplitude;
-    double half = (peaks[3] - peaks[2]) / 2;
-    /* Never finer than four digits of what there is now: a forecast of nothing left is "0.000". */
-    int place = digits_place(peaks[1], half), coarse = digits_place(peaks[0], NAN);
-    place = place > coarse ? place : coarse;
-    int first = digits_place(peaks[0], half);
-    char before[DIGITS_ROOM], after[DIGITS_ROOM], low[DIGITS_ROOM], high[DIGITS_ROOM];
-    char target[DIGITS_ROOM], chance[DIGITS_ROOM];
+    const struct outlook o = outlook_of(d, f);
+    int first = digits_place(o.before, (o.high - o.low) / 2);
+    char text[DIGITS_ROOM], low[DIGITS_ROOM], high[DIGITS_ROOM];
     table_cell(table, "%s%s%s", sensor->name, single ? "" : ", ", single ? "" : f->condition);
     table_cell(table, "%s %s", sensor->show.unit, detection_text(sensor->show.detection));
-    table_cell(table, "%s", digits_at(before, peaks[0], first));
-    table_cell(table, "%s", digits_at(after, peaks[1], place));
-    table_cell(table, "%s to %s", digits_at(low, peaks[2], place),
-               digits_at(high, peaks[3], place));
-    table_cell(table, "%s", digits_text(target, peaks[4], NAN));
-    table_cell(table, "%s", digits_chance(chance, f->chance));
+    table_cell(table, "%s", digits_at(text, o.before, first));
+    table_cell(table, "%s", digits_at(text, o.after, o.place));
+    table_cell(table, "%s to %s", digits_at(low, o.low, o.place), digits_at(high, o.high, o.place));
+    table_cell(table, "%s", digits_text(text, o.target, NAN));
+    table_cell(table, "%s", digits_chance(text, f->chance));
 }
 
 /* What the lost sensor shows where the rotor is as the answer takes it: the mean of the used
@@ -414,6 +464,9 @@ void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
     paper_heading(out, heading);
     table_print(&table, 2, out);
     table_release(&table);
+    paper_wrap(out, 2, 2,
+               "1x only: whatever else the overall vibration holds stays as it is, and no "
+               "balance weight changes it.");
 }
 
 static const char *within(const struct residual_record *r)

@@ -20,6 +20,10 @@ extern const char *const text_answer_cautions[];
 /* 95 % half width (kg) to which a placed mass is worth stating; NaN: pieces, nominal. */
 double text_answer_free_half(const struct dossier *d, int plane);
 
+/* "This will not meet the target at DE-H: 5.22 expected, target 1.8 mm/s rms." of that forecast; nothing
+ * where it has no target, or even odds to meet it. */
+void text_answer_missed(const struct dossier *dossier, size_t forecast, struct buffer *text);
+
 /* The tables alone, to be printed and released by the caller. */
 void text_answer_forecast_table(const struct dossier *dossier, struct table *table);
 void text_answer_tolerance_table(const struct dossier *dossier, struct table *table);

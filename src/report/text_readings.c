@@ -7,6 +7,7 @@
 #include "report/paper.h"
 #include "report/phrase.h"
 #include "report/table.h"
+#include "sheet/units.h"
 
 struct shown text_readings_shown(const struct dossier *dossier,
                                  const struct dossier_reading *reading)
@@ -111,6 +112,54 @@ size_t text_readings_group(const struct dossier *dossier, size_t i, struct table
     return i;
 }
 
+/* "12.3 mm/s rms": an overall value, in the unit its sensor is shown in where that is of the same
+ * quantity. */
+static void overall_value(const struct dossier *d, const struct reading_record *r,
+                          struct buffer *text)
+{
+    const struct overall *o = &r->overall;
+    const bool us = d->job->units == UNITS_US;
+    struct show show = d->job->sensors[r->sensor].show;
+    char number[DIGITS_ROOM];
+    if (show.quantity != o->quantity)
+        (void)units_vibration(o->quantity == QUANTITY_VELOCITY       ? (us ? "in/s" : "mm/s")
+                              : o->quantity == QUANTITY_DISPLACEMENT ? (us ? "mil" : "um")
+                              : us                                   ? "g"
+                                                                     : "m/s2",
+                              &show);
+    /* Three digits: common practice for an overall value. */
+    double value = o->rms / show.si;
+    buffer_format(text, "%s %s rms", digits_text(number, value, value / 10), show.unit);
+}
+
+static bool same_band(const struct overall *a, const struct overall *b)
+{
+    return a->from_hz == b->from_hz && a->to_hz == b->to_hz;
+}
+
+void text_readings_overall(const struct dossier *dossier, size_t first, size_t end,
+                           struct buffer *text)
+{
+    const struct overall *band = NULL;
+    for (size_t i = first; i < end; i++) {
+        const struct reading_record *r = &dossier->readings.items[i].reading;
+        char from[DIGITS_ROOM], to[DIGITS_ROOM];
+        if (!isfinite(r->overall.rms))
+            continue;
+        if (!band || !same_band(band, &r->overall))
+            buffer_format(text, "%sOverall, %s to %s Hz: ", band ? ". " : "",
+                          digits_text(from, r->overall.from_hz, NAN),
+                          digits_text(to, r->overall.to_hz, NAN));
+        else
+            buffer_text(text, ", ");
+        band = &r->overall;
+        buffer_format(text, "%s ", dossier_sensor(dossier, r->sensor));
+        overall_value(dossier, r, text);
+    }
+    if (band)
+        buffer_text(text, ".");
+}
+
 void text_readings_all(const struct dossier *dossier, struct buffer *out)
 {
     if (dossier->readings.count == 0)
@@ -129,9 +178,17 @@ void text_readings_all(const struct dossier *dossier, struct buffer *out)
         else
             paper_wrap(out, 2, 4, text.bytes);
         buffer_release(&text);
+        size_t first = i;
         i = text_readings_group(dossier, i, &table);
         table_print(&table, 4, out);
         table_release(&table);
+        text = (struct buffer)BUFFER_INIT;
+        text_readings_overall(dossier, first, i, &text);
+        if (text.failed)
+            out->failed = 1;
+        else if (text.bytes)
+            paper_wrap(out, 4, 6, text.bytes);
+        buffer_release(&text);
     }
 }
 
@@ -204,9 +261,60 @@ static void finding(const struct dossier *d, const struct finding_record *f, str
     buffer_release(&text);
 }
 
+bool text_readings_uncheckable(const struct finding_record *f)
+{
+    static const char *const starts[] = {"not checkable", "cannot be told", NULL};
+    if (f->verdict != VERDICT_OK || isfinite(f->value))
+        return false;
+    for (size_t i = 0; starts[i]; i++) {
+        if (strncmp(f->text, starts[i], strlen(starts[i])) == 0)
+            return true;
+    }
+    return false;
+}
+
+/* "Not checkable" is said once only. */
+static const char *not_said_yet(const char *text)
+{
+    static const char start[] = "not checkable ";
+    return strncmp(text, start, strlen(start)) == 0 ? text + strlen(start) : text;
+}
+
+static void uncheckable(const struct dossier *d, const struct finding_record *f, struct buffer *out)
+{
+    struct buffer text = BUFFER_INIT;
+    buffer_format(&text, "Not checkable: %s", f->check);
+    if (f->run[0])
+        buffer_format(&text, ", run '%s'", f->run);
+    if (f->sensor >= 0)
+        buffer_format(&text, ", sensor '%s'", dossier_sensor(d, f->sensor));
+    buffer_format(&text, ": %s", not_said_yet(f->text));
+    if (text.failed)
+        out->failed = 1;
+    else
+        paper_wrap(out, 2, 4, text.bytes);
+    buffer_release(&text);
+}
+
+void text_readings_count(const struct dossier *dossier, struct buffer *text)
+{
+    size_t counts[3] = {0, 0, 0}, open = 0;
+    for (size_t i = 0; i < dossier->findings.count; i++) {
+        const struct finding_record *f = &dossier->findings.items[i];
+        bool told = !text_readings_uncheckable(f);
+        counts[f->verdict] += told;
+        open += !told;
+    }
+    buffer_format(text, "%zu refused, %zu to be read with caution, %zu in order",
+                  counts[VERDICT_REFUSE], counts[VERDICT_CAUTION], counts[VERDICT_OK]);
+    if (open > 0)
+        buffer_format(text, ", %zu not checkable", open);
+    buffer_text(text, ".");
+}
+
 void text_readings_findings(const struct dossier *dossier, struct buffer *out)
 {
-    size_t counts[3] = {0, 0, 0};
+    struct buffer text = BUFFER_INIT;
     if (dossier->findings.count == 0)
         return;
     paper_heading(out, "FINDINGS");
@@ -215,11 +323,16 @@ void text_readings_findings(const struct dossier *dossier, struct buffer *out)
             const struct finding_record *f = &dossier->findings.items[i];
             if ((int)f->verdict != verdict)
                 continue;
-            counts[verdict]++;
             if (verdict != VERDICT_OK)
                 finding(dossier, f, out);
+            else if (text_readings_uncheckable(f))
+                uncheckable(dossier, f, out);
         }
     }
-    paper_say(out, 2, 2, "%zu refused, %zu to be read with caution, %zu in order.",
-              counts[VERDICT_REFUSE], counts[VERDICT_CAUTION], counts[VERDICT_OK]);
+    text_readings_count(dossier, &text);
+    if (text.failed)
+        out->failed = 1;
+    else
+        paper_wrap(out, 2, 2, text.bytes);
+    buffer_release(&text);
 }

@@ -23,6 +23,14 @@ double text_readings_response_table(const struct dossier *dossier, struct table 
 
 void text_readings_all(const struct dossier *dossier, struct buffer *out);
 void text_readings_responses(const struct dossier *dossier, struct buffer *out);
+/* What everything in a band amounts to, beside 1x, of the readings from `first` up to `end`: "Overall,
+ * 10 to 1000 Hz: DE-V 3.12 mm/s rms."; nothing where it is not known. */
+void text_readings_overall(const struct dossier *dossier, size_t first, size_t end,
+                           struct buffer *text);
+/* True where a check could not be made at all, so that nothing is in order by it. */
+bool text_readings_uncheckable(const struct finding_record *f);
+/* "0 refused, 1 to be read with caution, 7 in order, 1 not checkable." */
+void text_readings_count(const struct dossier *dossier, struct buffer *text);
 /* Refusals, then cautions in full, then the count of what was in order. */
 void text_readings_findings(const struct dossier *dossier, struct buffer *out);
 

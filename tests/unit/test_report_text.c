@@ -199,6 +199,116 @@ static void a_lost_sensor_is_not_forgotten(void **state)
     unload(&l);
 }
 
+static void a_missed_target_is_told_at_once(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    assert_says(&l, "meet the target at", false);
+    /* NDE-H is expected at 1.31, its target is 1.8 mm/s rms; a range up to where it misses. */
+    struct forecast_record *f = &l.dossier.forecasts.items[1];
+    f->after = 1.5 * f->target;
+    f->after_95[0] = 1.4 * f->target;
+    f->after_95[1] = 1.6 * f->target;
+    f->chance = 0.001; /* 1.5 * 1.8 = 2.7 */
+    assert_says(&l, "This will not meet the target at NDE-H: 2.70 expected, target 1.8 mm/s rms. ",
+                true);
+    f->chance = 0.31;
+    assert_says(&l,
+                "This is not likely to meet the target at NDE-H: 2.70 expected, target 1.8 mm/s "
+                "rms, chance 31 %. To be read first",
+                true);
+    f->chance = NAN;
+    assert_says(&l, "meet the target at", false);
+    unload(&l);
+}
+
+static void cautions_stand_by_every_step(void **state)
+{
+    (void)state;
+    static const char *const names[] = {"report-trial", "report-refused", "report-unsolved"};
+    for (size_t i = 0; i < sizeof names / sizeof *names; i++) {
+        struct loaded l;
+        load(&l, names[i]);
+        assert_says(&l, "To be read first: cautions", false);
+        static const char line[] = "{\"kind\":\"finding\",\"stage\":\"vet\",\"check\":\"phase-"
+                                   "steady\",\"verdict\":\"caution\","
+                                   "\"run\":null,\"sensor\":null,\"value\":6,\"limit\":5,\"unit\":"
+                                   "\"deg\",\"basis\":\"none\","
+                                   "\"text\":\"the lag wanders\"}";
+        load_line(&l, line, strlen(line));
+        assert_says(&l, "To be read first: cautions (1)", true);
+        unload(&l);
+    }
+}
+
+static void what_was_not_checked_is_not_in_order(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    assert_says(&l, "0 refused, 1 to be read with caution, 3 in order. ", true);
+    size_t at = 0;
+    while (at < l.dossier.findings.count && l.dossier.findings.items[at].verdict != VERDICT_OK)
+        at++;
+    assert_true(at < l.dossier.findings.count);
+    struct finding_record *f = &l.dossier.findings.items[at];
+    strcpy(f->check, "tape-moved");
+    f->run[0] = '\0';
+    f->sensor = -1;
+    f->value = NAN;
+    strcpy(f->text, "not checkable with these runs: a second trial would show it");
+    assert_says(&l, "Not checkable: tape-moved: not checkable", false);
+    assert_says(&l, "Not checkable: tape-moved: with these runs: a second trial would show it",
+                true);
+    assert_says(&l, "1 to be read with caution, 2 in order, 1 not checkable. ", true);
+    strcpy(f->text, "cannot be told with one trial");
+    assert_says(&l, "Not checkable: tape-moved: cannot be told with one trial", true);
+    f->value = 1; /* judged after all */
+    assert_says(&l, "3 in order. ", true);
+    unload(&l);
+}
+
+static void overall_has_its_unit_and_band(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    assert_says(&l, "Overall", false);
+    assert_says(&l, "1x only: ", true);
+    struct reading_record *r = &l.dossier.readings.items[0].reading;
+    r->overall = (struct overall){0.00812, QUANTITY_VELOCITY, 10, 1000};
+    assert_says(&l, "Overall, 10 to 1000 Hz: DE-V 8.12 mm/s rms. ", true);
+    r[0].overall.quantity = QUANTITY_DISPLACEMENT;
+    r[0].overall.rms = 52.3e-6;
+    assert_says(&l, "Overall, 10 to 1000 Hz: DE-V 52.3 um rms. ", true);
+    l.dossier.readings.items[1].reading.overall =
+        (struct overall){0.0041, QUANTITY_VELOCITY, 2, 1000};
+    assert_says(&l,
+                "Overall, 10 to 1000 Hz: DE-V 52.3 um rms. Overall, 2 to 1000 Hz: NDE-H 4.10 mm/s "
+                "rms. ",
+                true);
+    unload(&l);
+}
+
+static void what_sits_there_is_told(void **state)
+{
+    (void)state;
+    struct loaded l;
+    load(&l, "report-balance");
+    assert_says(&l, "sit there", false);
+    struct placement_record *p = l.dossier.placements.items;
+    p->sits = true;
+    p->total_mass = 0.11;
+    p->total_force_n = 1083.4;
+    assert_says(&l, "force 591 N at 1480 rpm; then 110 g sit there, 1080 N 2. Plane", true);
+    p->total_force_n = NAN;
+    assert_says(&l, "; then 110 g sit there 2. Plane", true);
+    p->total_mass = -0.02;
+    assert_says(&l, "; then 20 g are missing there 2. Plane", true);
+    unload(&l);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -207,6 +317,11 @@ int main(void)
         cmocka_unit_test(tolerance_is_not_claimed),
         cmocka_unit_test(holes_are_told),
         cmocka_unit_test(a_lost_sensor_is_not_forgotten),
+        cmocka_unit_test(a_missed_target_is_told_at_once),
+        cmocka_unit_test(cautions_stand_by_every_step),
+        cmocka_unit_test(what_was_not_checked_is_not_in_order),
+        cmocka_unit_test(overall_has_its_unit_and_band),
+        cmocka_unit_test(what_sits_there_is_told),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
