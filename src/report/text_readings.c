@@ -148,7 +148,7 @@ void text_readings_overall(const struct dossier *dossier, size_t first, size_t e
             continue;
         if (!band || !same_band(band, &r->overall))
             buffer_format(text, "%sOverall, %s to %s Hz: ", band ? ". " : "",
-                          digits_text(from, r->overall.from_hz, NAN),
+                          digits_text(from, round(100 * r->overall.from_hz) / 100, NAN),
                           digits_text(to, r->overall.to_hz, NAN));
         else
             buffer_text(text, ", ");
@@ -288,7 +288,8 @@ static void uncheckable(const struct dossier *d, const struct finding_record *f,
         buffer_format(&text, ", run '%s'", f->run);
     if (f->sensor >= 0)
         buffer_format(&text, ", sensor '%s'", dossier_sensor(d, f->sensor));
-    buffer_format(&text, ": %s", not_said_yet(f->text));
+    const char *rest = not_said_yet(f->text);
+    buffer_format(&text, "%s %s", rest == f->text ? ":" : ",", rest);
     if (text.failed)
         out->failed = 1;
     else

@@ -259,7 +259,7 @@ static void what_was_not_checked_is_not_in_order(void **state)
     f->value = NAN;
     strcpy(f->text, "not checkable with these runs: a second trial would show it");
     assert_says(&l, "Not checkable: tape-moved: not checkable", false);
-    assert_says(&l, "Not checkable: tape-moved: with these runs: a second trial would show it",
+    assert_says(&l, "Not checkable: tape-moved, with these runs: a second trial would show it",
                 true);
     assert_says(&l, "1 to be read with caution, 2 in order, 1 not checkable. ", true);
     strcpy(f->text, "cannot be told with one trial");
