@@ -393,12 +393,55 @@ static void runout(void **state)
         assert_int_equal(vet_desk_ruled(CHECK_SERVICE_SPEED, 0, -1), -1);
         across_runout(&desk.runs, desk.order, &desk.job, &desk.findings);
         assert_int_equal(vet_desk_ruled(CHECK_SERVICE_SPEED, 0, -1), figures[k].expected);
+        const char *said = desk.findings.items[desk.findings.count - 1].text;
+        assert_null(strstr(said, "run at service speed"));
+        if (figures[k].expected == RULING_REFUSE)
+            assert_non_null(strstr(said, "slower"));
         assert_int_equal(vet_desk_any_used(0), figures[k].expected != RULING_REFUSE);
         across_speed_match(&desk.runs, desk.order, &desk.job, &desk.findings);
         assert_int_equal(vet_desk_ruled(CHECK_SPEED_MATCH, -2, -1), RULING_OK);
         assert_true(vet_desk_all_used(1));
         assert_false(across_stands_alone(&desk.items[0], &desk.job));
         assert_true(isnan(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0)));
+    }
+}
+
+/* Of a slow roll only probes are judged, and each of the aim must have its vector from there. */
+static void runout_of_probes(void **state)
+{
+    size_t run, sensor;
+
+    (void)state;
+    for (int probe = 0; probe < 2; probe++) {
+        vet_desk_set();
+        strcpy(desk.job_runs[3].role, "runout");
+        desk.job_runs[3].weight_count = 0;
+        if (probe)
+            desk.sensors[1].quantity = QUANTITY_DISPLACEMENT;
+        desk.channels[3][1] = (struct vet_channel){true, 1, 1, 1e-4, 0, 100000, -1}; /* constant */
+        desk.readings[3][1].amplitude_pct = 90;
+        vet_desk_within(3);
+        assert_int_equal(vet_desk_ruled(CHECK_SENSOR_DEAD, 3, 1), probe ? RULING_REFUSE : -1);
+        assert_int_equal(desk.readings[3][1].use, !probe);
+        assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), !probe);
+        if (probe) {
+            assert_int_equal(run, 3);
+            assert_int_equal(sensor, 1);
+            desk.job.aim.named = true; /* the aim does without it */
+            desk.targets[1].in_aim = false;
+            assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), 1);
+        }
+        vet_desk_vectors(3);
+        assert_int_equal(vet_desk_ruled(CHECK_AMPLITUDE_STEADY, 3, 1), probe ? RULING_REFUSE : -1);
+    }
+    for (int lack = 0; lack < 3; lack++) { /* good, without phase, without a reading */
+        vet_desk_set();
+        strcpy(desk.job_runs[3].role, "runout");
+        desk.job_runs[3].weight_count = 0;
+        desk.sensors[1].quantity = QUANTITY_DISPLACEMENT;
+        desk.readings[3][1].has_phase = lack != 1;
+        desk.readings[3][1].present = lack != 2;
+        assert_int_equal(answer_possible(&desk.runs, desk.order, &desk.job, &run, &sensor), !lack);
     }
 }
 
@@ -450,6 +493,7 @@ int main(void)
         cmocka_unit_test(trends_over_time),
         cmocka_unit_test(a_condition_that_changed),
         cmocka_unit_test(runout),
+        cmocka_unit_test(runout_of_probes),
         cmocka_unit_test(a_coast_down),
     };
     int failed = cmocka_run_group_tests(tests, NULL, NULL);
