@@ -187,8 +187,11 @@ static void check_run(struct check *check, size_t run, const char *path)
         print_look(check, &wish, &look);
     fflush(stdout); /* what is said stands behind the run's head */
     if (fault.status != STATUS_DONE) {
-        message("%s", fault.text);
-        puts("  cannot be read");
+        if (path || fault.status == STATUS_SYSTEM)
+            message("%s", fault.text);
+        else
+            message("%s (run '%s' of '%s')", fault.text, job->runs[run].name, check->sheet.path);
+        puts(fault.status == STATUS_USAGE ? "  the sheet does not suit it" : "  cannot be read");
         check->status = check->status == STATUS_DONE ? fault.status : check->status;
     }
     look_release(&look);

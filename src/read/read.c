@@ -365,10 +365,22 @@ static int print_blocks(struct stage *stage, struct task *task, struct fault *fa
     return status;
 }
 
+/* The fault, and where in the sheet the recording is asked for. */
+static void tell(const struct stage *stage, size_t run, const struct fault *fault)
+{
+    if (fault->status == STATUS_SYSTEM)
+        message("%s", fault->text);
+    else if (stage->audit)
+        message("%s (sheet '%s')", fault->text, stage->sheet.path);
+    else
+        message("%s (run '%s' of '%s')", fault->text, stage->sheet.job.runs[run].name,
+                stage->sheet.path);
+}
+
 /* What is wrong with a recording: the end of a job, a finding of an audit. */
 static int give_up(struct stage *stage, size_t run, struct fault *fault)
 {
-    message("%s", fault->text);
+    tell(stage, run, fault);
     if (!stage->audit || fault->status == STATUS_SYSTEM)
         return fault->status;
     stage->failed = true;

@@ -166,7 +166,8 @@ static int calibrate(const struct recording *recording, const struct recording_c
         return STATUS_DONE;
     if (column->volts && isnan(full_scale) && !column->plain)
         return fault_set(fault, STATUS_USAGE,
-                         "sensor '%s' has a scale and the sheet gives no full scale: '%s'",
+                         "add 'full scale = 10 V' under [recording] (volts at digital full "
+                         "scale), sensor '%s' has a scale: '%s'",
                          column->name, path);
     if (!column->volts && source->audio.bits > 0 && !column->plain)
         return fault_set(fault, STATUS_USAGE,

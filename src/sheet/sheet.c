@@ -7,6 +7,23 @@
 
 #include "sheet/sheet_fields.h"
 
+/* What sound files begin with: WAV, 64-bit WAV, AIFF, FLAC, Ogg, CAF, AU. */
+static bool is_sound(const char *text, size_t length)
+{
+    static const char *const HEADS[] = {"RIFF", "RF64", "FORM", "fLaC", "OggS", "caff", ".snd"};
+    for (size_t i = 0; length > 4 && i < sizeof HEADS / sizeof *HEADS; i++)
+        if (!memcmp(text, HEADS[i], 4))
+            return memchr(text, '\0', length) != NULL;
+    return false;
+}
+
+/* Columns of figures in a file that is named as such: no section stands in it. */
+static bool is_table(const char *path, const char *text)
+{
+    const char *point = strrchr(path, '.');
+    return point && !strcmp(point, ".csv") && text[0] != '[' && !strstr(text, "\n[");
+}
+
 /* The whole file, NUL-terminated, new; NULL with the error noted. */
 static char *load(const char *path, size_t *length, struct sheet_errors *errors)
 {
@@ -24,6 +41,8 @@ static char *load(const char *path, size_t *length, struct sheet_errors *errors)
     text[*length] = '\0';
     if (ferror(file))
         sheet_errors_add(errors, 0, "cannot be read: %s", strerror(errno));
+    else if (is_sound(text, *length) || is_table(path, text))
+        sheet_errors_add(errors, 0, "this is a recording: 'lopside new' makes a sheet");
     else if (*length > SHEET_BYTES_MOST)
         sheet_errors_add(errors, 0, "not a job sheet: longer than 1 MiB");
     else

@@ -19,14 +19,20 @@ struct run_parts {
 
 /* ---- weights ---- */
 
+static const char NO_FORM[] = "wanted 'MASS at ANGLE deg' or 'MASS at position N'";
+static const char NO_POSITION[] = "the plane has no such position";
+
 /* "at 30 deg" or "at position 2". */
 static const char *take_place(const struct sheet_parse *p, const char **at,
                               const struct job_plane *plane, struct job_weight *weight)
 {
     double number = NAN;
     if (!sheet_values_word(at, "at"))
-        return "wanted 'MASS at ANGLE deg' or 'MASS at position N'";
+        return NO_FORM;
     if (!sheet_values_word(at, "position")) {
+        const char *next = *at + strspn(*at, " \t");
+        if (!*next || !strchr("+-.0123456789", *next))
+            return NO_FORM;
         const char *fault = sheet_values_measure(at, DIMENSION_ANGLE, &number);
         if (!fault && fabs(number) > 360)
             fault = "angle out of range (-360 to 360 deg)";
@@ -44,7 +50,19 @@ static const char *take_place(const struct sheet_parse *p, const char **at,
             weight->position = plane->positions[i].number;
             return NULL;
         }
-    return "the plane has no such position";
+    return NO_POSITION;
+}
+
+/* A fault of a weight; where the position is none of the plane's, which it has. */
+static void tell_weight(struct sheet_parse *p, const struct sheet_entry *e,
+                        const struct job_plane *plane, const char *fault)
+{
+    char cause[80];
+    if (fault == NO_POSITION && plane->position_count > 0) {
+        snprintf(cause, sizeof cause, "%s (1 to %zu)", fault, plane->position_count);
+        fault = cause;
+    }
+    sheet_fields_wrong(p, e, fault);
 }
 
 static const char *take_radius(const char **at, const struct job_plane *plane,
@@ -83,7 +101,7 @@ static void read_weight(struct sheet_parse *p, const struct run_parts *run,
     if (!fault && !sheet_values_end(at))
         fault = "text behind the weight, only 'radius R mm' may follow";
     if (fault)
-        sheet_fields_wrong(p, e, fault);
+        tell_weight(p, e, plane, fault);
     else
         run->job->weight_count++;
 }

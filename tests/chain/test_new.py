@@ -274,6 +274,34 @@ class Check(unittest.TestCase):
         self.assertIn("radios", complaint)
         self.check(code=2)
 
+    def test_what_to_add_is_named(self):
+        """A full scale that is missing: the line to add, the sheet and the run; the same from `balance`."""
+        text = (chain.DATA / "fan" / "job.ini").read_text()
+        for name in ("as-found", "trial", "as-found-again"):
+            if (chain.DATA / "fan" / f"{name}.wav").exists():
+                shutil.copy(chain.DATA / "fan" / f"{name}.wav", self.top)
+        (self.top / "job.ini").write_text(re.sub(r"(?m)^full scale = .*$", "skip = 0 lines", text))
+        said, complaint = self.check("job.ini", code=2)
+        self.assertNotIn("cannot be read", said)
+        balance = chain.lopside("balance", "job.ini", cwd=self.top)
+        self.assertEqual(balance.returncode, 2)
+        for told in (complaint, chain.complaint(balance)):
+            self.assertIn("add 'full scale = 10 V' under [recording] (volts at digital full scale)", told)
+            self.assertIn("(run 'as-found' of 'job.ini')", told)
+        (self.top / "job.ini").write_text(text.replace("file = trial.wav", "file = gone.wav"))
+        balance = chain.lopside("balance", "job.ini", cwd=self.top)
+        self.assertEqual(balance.returncode, 3)
+        self.assertIn("'gone.wav' (run 'trial' of 'job.ini')", chain.complaint(balance))
+
+    def test_a_recording_is_no_sheet(self):
+        shutil.copy(chain.DATA / "fan" / "trial.wav", self.top)
+        (self.top / "x.csv").write_text("t,a\n0,1\n1,2\n")
+        for name in ("trial.wav", "x.csv"):
+            for command in ("check", "balance"):
+                done = chain.lopside(command, name, cwd=self.top)
+                self.assertEqual(done.returncode, 2)
+                self.assertIn("this is a recording: 'lopside new' makes a sheet", chain.complaint(done))
+
     def test_colour(self):
         (self.top / "job.ini").write_text(self.sheet())
         write_wav(self.top / "dead.wav", [numpy.zeros(5000)] * 3)

@@ -163,6 +163,8 @@ static void test_junk(void **state)
     refuses("\x7f"
             "ELF\x02\0\0\0junk\n\n[x",
             17, "fan.ini:1: not a text file: a NUL byte\n");
+    refuses("RIFF\x24\0\0\0WAVEfmt ", 16,
+            "fan.ini: this is a recording: 'lopside new' makes a sheet\n");
     size_t length = (size_t)snprintf(text, sizeof text, "%s[job]\ntitle = x\n", SHEET_DESK_LEAST);
     text[length - 2] = '\0';
     refuses(text, length, "fan.ini:11: not a text file: a NUL byte\n");
