@@ -149,6 +149,37 @@ static size_t count_phase(const struct vet_run *run, const struct job *job, size
     return present;
 }
 
+/* One finding for the run, about the sensor where only one of several has no phase. */
+static void refer(struct vet_run *run, int position, const struct job *job, enum ruling ruling,
+                  struct findings *findings)
+{
+    size_t phase, present = count_phase(run, job, &phase);
+    int sensor = -1;
+    char hint[200];
+
+    for (size_t i = 0; present - phase == 1 && present > 1 && i < job->sensor_count; i++)
+        if (run->readings[i].present && !run->readings[i].has_phase)
+            sensor = (int)i;
+    if (run->hand)
+        findings_instead(findings,
+                         ruling == RULING_REFUSE
+                             ? "note the lag, too, or leave the run out"
+                             : "amplitudes alone may serve; note the lag, too, if you can");
+    else if (!job->has_tacho)
+        findings_instead(findings, "name the tacho's channel under [tacho]");
+    else
+        within_hint_marks(run, job, hint, sizeof hint, findings);
+    ruling = findings_rule(findings, CHECK_PHASE_REFERENCE, ruling, position, sensor, 1, 0, "",
+                           "lag cannot be read: %s",
+                           run->hand         ? "only an amplitude was noted"
+                           : !job->has_tacho ? "the sheet has no [tacho]"
+                           : run->marks > 0  ? "the marks of a turn cannot be told apart"
+                                             : "there are no tacho marks");
+    for (size_t i = 0; ruling == RULING_REFUSE && i < job->sensor_count; i++)
+        if (run->readings[i].present && !run->readings[i].has_phase)
+            run->readings[i].use = false;
+}
+
 void across_phase_reference(struct vet_runs *runs, const size_t *order, const struct job *job,
                             struct findings *findings)
 {
@@ -162,21 +193,8 @@ void across_phase_reference(struct vet_runs *runs, const size_t *order, const st
     }
     for (size_t k = 0; k < runs->count; k++) {
         struct vet_run *run = ordinary(runs, order, job, k);
-        if (!run || run->unreadable || count_phase(run, job, &phase) == phase)
-            continue;
-        for (size_t i = 0; i < job->sensor_count; i++) {
-            struct vet_reading *r = &run->readings[i];
-            enum ruling ruling = any ? RULING_REFUSE : RULING_CAUTION;
-            if (!r->present || r->has_phase)
-                continue;
-            ruling = findings_rule(findings, CHECK_PHASE_REFERENCE, ruling, (int)order[k], (int)i,
-                                   1, 0, "", "lag cannot be read: %s",
-                                   run->hand        ? "only an amplitude was noted"
-                                   : run->marks > 0 ? "the marks of a turn cannot be told apart"
-                                                    : "there are no tacho marks");
-            if (ruling == RULING_REFUSE)
-                r->use = false;
-        }
+        if (run && !run->unreadable && count_phase(run, job, &phase) != phase)
+            refer(run, (int)order[k], job, any ? RULING_REFUSE : RULING_CAUTION, findings);
     }
 }
 

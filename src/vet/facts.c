@@ -4,6 +4,9 @@
 #include <stdlib.h>
 #include <string.h>
 
+static const int MULTIPLE_MOST = 8;      /* marks a turn that somebody may have overlooked */
+static const double MULTIPLE_OFF = 0.05; /* of the speed: slip and load are less, common practice */
+
 int facts_add(struct vet_runs *runs, size_t sensor_count)
 {
     struct vet_run *run;
@@ -17,7 +20,8 @@ int facts_add(struct vet_runs *runs, size_t sensor_count)
         runs->room = room;
     }
     run = &runs->items[runs->count];
-    *run = (struct vet_run){.index = -1, .parent = -1, .pulses = true};
+    *run = (struct vet_run){
+        .index = -1, .parent = -1, .pulses = true, .jitter_deg = NAN, .tacho_rpm = NAN};
     run->readings = calloc(sensor_count + 1, sizeof *run->readings);
     run->channels = calloc(sensor_count + 1, sizeof *run->channels);
     if (!run->readings || !run->channels) {
@@ -89,4 +93,20 @@ double facts_speed(const struct vet_run *run, const struct job *job, bool used)
         if (run->readings[i].present && (run->readings[i].use || !used))
             return run->readings[i].speed_rpm;
     return NAN;
+}
+
+int facts_marks(const struct vet_run *run, const struct job *job)
+{
+    double ratio = run->tacho_rpm / job->service_rpm;
+    int given = job->tacho_marks > 1 ? job->tacho_marks : 1;
+
+    if (run->hand || !run->has_tacho || run->marks == 0 || !(ratio > 0) || !isfinite(ratio))
+        return 0;
+    for (int k = 2; k <= MULTIPLE_MOST; k++) {
+        if (fabs(ratio / k - 1) < MULTIPLE_OFF)
+            return given * k;
+        if (fabs(ratio * k - 1) < MULTIPLE_OFF && given % k == 0)
+            return given / k;
+    }
+    return 0;
 }

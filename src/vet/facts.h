@@ -53,6 +53,7 @@ struct vet_run {
     bool has_tacho, reference;
     bool pulses; /* of the tacho; false: its signal looks like vibration */
     long marks, missed, extra;
+    double jitter_deg, tacho_rpm; /* of the tacho's marks; NaN: not known */
     struct vet_reading *readings; /* owned, one per sensor */
     struct vet_channel *channels; /* owned, one per sensor */
 };
@@ -74,6 +75,10 @@ int facts_at_condition(struct vet_runs *runs, int parent, const char *condition,
 
 /* Takes readings of the conditions of the run at `parent` out of use where its own are. */
 void facts_hand_down(struct vet_runs *runs, int parent, size_t sensor_count);
+
+/* How many marks a turn the sheet should give its tacho for the run's speed to be the service speed:
+ * where one is a whole multiple of the other (2 to 8, within 5 %); 0: nothing of the kind. */
+int facts_marks(const struct vet_run *run, const struct job *job);
 
 void facts_release(struct vet_runs *runs); /* frees what it owns */
 

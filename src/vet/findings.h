@@ -22,14 +22,15 @@ struct findings {
     size_t count, room;
     bool failed;                 /* memory is out: the list is not whole */
     const struct limits *limits; /* borrowed */
-    const char *instead;         /* of the next finding's advice, static; NULL: its check's */
+    const char *instead;         /* of the next finding's advice, borrowed; NULL: its check's */
 };
 
 void findings_init(struct findings *findings, const struct limits *limits);
 void findings_clear(struct findings *findings);   /* keeps the memory */
 void findings_release(struct findings *findings); /* frees it */
 
-/* The next finding gives this advice (static) instead of its check's. */
+/* The next finding gives this advice (borrowed until then) instead of its check's; NULL:
+ * its check's. */
 void findings_instead(struct findings *findings, const char *advice);
 
 /* Judges `value` by its check, adds a finding and returns the ruling. The text is what was seen

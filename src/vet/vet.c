@@ -159,6 +159,8 @@ static int add_tacho(struct vet *v, const struct record *record)
     run->marks = r.marks;
     run->missed = r.missed;
     run->extra = r.extra;
+    run->jitter_deg = r.jitter_deg;
+    run->tacho_rpm = r.speed_rpm;
     return STATUS_DONE;
 }
 

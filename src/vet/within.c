@@ -104,15 +104,33 @@ static void check_length(struct vet_run *run, int position, const struct job *jo
         within_refuse(run, job);
 }
 
+void within_hint_marks(const struct vet_run *run, const struct job *job, char *to, size_t room,
+                       struct findings *findings)
+{
+    int marks = facts_marks(run, job), given = job->tacho_marks > 1 ? job->tacho_marks : 1;
+
+    if (marks == 0)
+        return;
+    snprintf(
+        to, room,
+        "the tacho's %.0f rpm are the service speed times %s%d: see whether the shaft gives %d "
+        "mark%s a turn, and say marks = %d under [tacho]",
+        run->tacho_rpm, marks > given ? "" : "1/", marks > given ? marks / given : given / marks,
+        marks, marks == 1 ? "" : "s", marks);
+    findings_instead(findings, to);
+}
+
 static void check_speed(struct vet_run *run, int position, const struct job *job,
                         struct findings *findings)
 {
     double speed = facts_speed(run, job, false), spread = NAN, off;
+    char hint[200];
 
     if (isnan(speed))
         return;
     if (job->service_rpm > 0 && !facts_role(run, job)[0]) {
         off = 100 * fabs(speed - job->service_rpm) / job->service_rpm;
+        within_hint_marks(run, job, hint, sizeof hint, findings);
         if (findings_add(findings, CHECK_SERVICE_SPEED, position, -1, off,
                          "turned at %.0f rpm, %g %% off the service speed of %.0f rpm", speed,
                          findings_figure(off), job->service_rpm) == RULING_REFUSE)
@@ -186,12 +204,14 @@ static void check_reference(struct vet_run *run, int position, const struct job 
                             struct findings *findings)
 {
     size_t present = 0, phase = 0;
+    char hint[200];
 
     for (size_t i = 0; i < job->sensor_count; i++) {
         present += run->readings[i].present;
         phase += run->readings[i].present && run->readings[i].has_phase;
     }
     if (without_turns(run, job)) {
+        within_hint_marks(run, job, hint, sizeof hint, findings);
         if (findings_add(findings, CHECK_PHASE_REFERENCE, position, -1, 1,
                          "there is no usable tacho: %s",
                          !run->pulses      ? "its channel looks like vibration, not like pulses"

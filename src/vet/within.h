@@ -25,6 +25,11 @@ void within_run(struct vet_run *run, int position, const struct job *job,
 void within_vectors(struct vet_run *run, int position, const double *as_found,
                     const struct job *job, struct findings *findings);
 
+/* Where the tacho's speed is a whole multiple of the service speed, or one of it: the next finding
+ * advises the number of marks that would explain it, written to `to`. */
+void within_hint_marks(const struct vet_run *run, const struct job *job, char *to, size_t room,
+                       struct findings *findings);
+
 /* Takes `use` off all readings of the run. */
 void within_refuse(struct vet_run *run, const struct job *job);
 

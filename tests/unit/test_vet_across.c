@@ -47,21 +47,55 @@ static void speeds_apart(void **state)
     assert_int_equal(vet_desk_ruled(CHECK_SPEED_MATCH, -2, -1), RULING_OK);
 }
 
+/* The first finding's text has this in it. */
+static void phase_text(const char *what)
+{
+    assert_true(desk.findings.count > 0);
+    if (!strstr(desk.findings.items[0].text, what))
+        fail_msg("%s", desk.findings.items[0].text);
+}
+
 static void lost_phase(void **state)
 {
     (void)state;
     vet_desk_set();
     desk.readings[1][0].has_phase = desk.readings[1][1].has_phase = false;
     across_phase_reference(&desk.runs, desk.order, &desk.job, &desk.findings);
-    assert_int_equal(vet_desk_ruled(CHECK_PHASE_REFERENCE, 1, 0), RULING_REFUSE);
+    assert_int_equal(vet_desk_ruled(CHECK_PHASE_REFERENCE, 1, -1), RULING_REFUSE);
+    assert_int_equal(desk.findings.count, 1); /* one for the run, not one for each sensor */
     assert_true(!vet_desk_any_used(1) && vet_desk_all_used(0));
+    phase_text("the sheet has no [tacho]");
+    desk.job.has_tacho = true;
+    findings_clear(&desk.findings);
+    across_phase_reference(&desk.runs, desk.order, &desk.job, &desk.findings);
+    phase_text("the marks of a turn cannot be told apart");
+    desk.items[1].tacho_rpm = 2 * 1480 * 1.02; /* two marks a turn, and the sheet says one */
+    desk.job.service_rpm = 1480;
+    findings_clear(&desk.findings);
+    across_phase_reference(&desk.runs, desk.order, &desk.job, &desk.findings);
+    phase_text(
+        "the service speed times 2: see whether the shaft gives 2 marks a turn, and say marks = 2");
+    desk.job.tacho_marks = 4; /* one, and the sheet says four */
+    desk.items[1].tacho_rpm = 1480 / 4.0;
+    findings_clear(&desk.findings);
+    across_phase_reference(&desk.runs, desk.order, &desk.job, &desk.findings);
+    phase_text("the service speed times 1/4: see whether the shaft gives 1 mark a turn, and say "
+               "marks = 1 ");
+
+    vet_desk_set(); /* one sensor alone, noted by hand */
+    desk.items[1].hand = true;
+    desk.readings[1][1].has_phase = false;
+    across_phase_reference(&desk.runs, desk.order, &desk.job, &desk.findings);
+    assert_int_equal(vet_desk_ruled(CHECK_PHASE_REFERENCE, 1, 1), RULING_REFUSE);
+    phase_text("only an amplitude was noted: note the lag");
+    assert_true(desk.readings[1][0].use && !desk.readings[1][1].use);
 
     vet_desk_set(); /* one plane and no phase anywhere: the amplitudes may serve */
     desk.job.plane_count = 1;
     for (int r = 0; r < RUNS; r++)
         desk.readings[r][0].has_phase = desk.readings[r][1].has_phase = false;
     across_phase_reference(&desk.runs, desk.order, &desk.job, &desk.findings);
-    assert_int_equal(vet_desk_ruled(CHECK_PHASE_REFERENCE, 1, 0), RULING_CAUTION);
+    assert_int_equal(vet_desk_ruled(CHECK_PHASE_REFERENCE, 1, -1), RULING_CAUTION);
     assert_true(vet_desk_all_used(1));
 
     vet_desk_set(); /* a recording of an audit stands alone */
