@@ -1,6 +1,7 @@
 #include "report/html.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -66,11 +67,12 @@ static void forecast(const struct dossier *d, struct buffer *out)
 {
     struct table table;
     if (d->forecasts.count > 0) {
-        html_part_heading(out, d->placements.count > 0
-                                   ? "Forecast: 1x amplitudes with these weights fitted"
-                                   : "Forecast: 1x amplitudes with nothing fitted");
+        char heading[80];
+        snprintf(heading, sizeof heading, "Forecast: 1x amplitudes %s", phrase_fitted(d));
+        html_part_heading(out, heading);
         text_answer_forecast_table(d, &table);
         html_part_table(out, &table);
+        html_part_say(out, "note", "%s", text_answer_1x_only);
     }
     if (d->residuals.count > 0) {
         html_part_heading(out, "Tolerance: estimated residual unbalance");
@@ -112,11 +114,15 @@ static void readings(const struct dossier *d, struct buffer *out)
                   "+/- is the 95 %% half width of one reading; what differs from run to run is "
                   "not in it.");
     for (size_t i = 0; i < d->readings.count;) {
-        struct buffer text = BUFFER_INIT;
+        struct buffer text = BUFFER_INIT, overall = BUFFER_INIT;
         text_readings_group_heading(d, &d->readings.items[i].reading, &text);
         html_part_take(out, "h3", &text);
+        size_t first = i;
         i = text_readings_group(d, i, &table);
         html_part_table(out, &table);
+        text_readings_overall(d, first, i, &overall);
+        if (overall.failed || overall.length > 0)
+            html_part_take(out, "p", &overall);
     }
     html_part_say(out, "note",
                   "In the polar plots lag grows against rotation from the top, seen "

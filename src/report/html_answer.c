@@ -43,6 +43,7 @@ static void placement_row(const struct dossier *d, const struct placement_record
         phrase_pieces(&pieces, d->job, p->pieces, p->piece_count);
     else
         phrase_holes(&pieces, d->job, p);
+    phrase_sits(&pieces, d->job, p);
     table->failed = table->failed || angle.failed || mass.failed || pieces.failed;
     if (!table->failed) {
         table_cell(table, "%s", dossier_plane(d, p->plane));
@@ -64,29 +65,49 @@ static void placement_row(const struct dossier *d, const struct placement_record
     buffer_release(&pieces);
 }
 
+/* No step stands without a word about what speaks against it. */
+static void cautions(const struct dossier *d, struct buffer *out)
+{
+    size_t count = 0;
+    for (size_t i = 0; i < d->findings.count; i++)
+        count += d->findings.items[i].verdict == VERDICT_CAUTION;
+    if (count > 0)
+        html_part_say(out, "warn", "To be read first: cautions (%zu) among the findings.", count);
+}
+
+static void missed(const struct dossier *d, struct buffer *out)
+{
+    for (size_t i = 0; i < d->forecasts.count; i++) {
+        struct buffer text = BUFFER_INIT;
+        text_answer_missed(d, i, &text);
+        if (text.failed)
+            out->failed = 1;
+        else if (text.length > 0)
+            html_part_say(out, "warn", "%s", text.bytes);
+        buffer_release(&text);
+    }
+}
+
 static void placements(const struct dossier *d, struct buffer *out)
 {
     static const struct table_column columns[] = {
         {"plane", false, true}, {"position", true, false}, {"angle from the mark", true, false},
         {"what", true, false},  {"pieces", false, false},  {"force", true, false}};
     struct table table;
-    size_t cautions = 0, refusals = 0;
+    size_t refusals = 0;
     html_part_heading(out, "What to do now");
     relative_to(d, out);
     table_init(&table, columns, sizeof columns / sizeof *columns);
     for (size_t i = 0; i < d->placements.count; i++)
         placement_row(d, &d->placements.items[i], &table);
     html_part_table(out, &table);
-    for (size_t i = 0; i < d->findings.count; i++) {
-        cautions += d->findings.items[i].verdict == VERDICT_CAUTION;
+    for (size_t i = 0; i < d->findings.count; i++)
         refusals += d->findings.items[i].verdict == VERDICT_REFUSE;
-    }
+    missed(d, out);
     if (refusals > 0)
         html_part_say(out, "warn", "Made WITHOUT what was refused (%zu): see the findings.",
                       refusals);
-    if (cautions > 0)
-        html_part_say(out, "warn", "To be read first: cautions (%zu) among the findings.",
-                      cautions);
+    cautions(d, out);
     advice(d, out);
 }
 
@@ -117,6 +138,7 @@ static void nothing(const struct dossier *d, int answer, struct buffer *out)
     advice(d, out);
     if (!d->has_next)
         html_part_say(out, "", "Mend what is listed above and record those runs again.");
+    cautions(d, out);
 }
 
 static void drawings(const struct dossier *d, struct buffer *out)
@@ -157,6 +179,7 @@ void html_answer_write(const struct dossier *dossier, struct buffer *out)
                           "No answer is in this stream: it has not been through "
                           "lopside solve.");
         advice(d, out);
+        cautions(d, out);
     }
     if (is_step(d, "trial"))
         html_others_trial(d, out);

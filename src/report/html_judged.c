@@ -6,6 +6,7 @@
 #include "report/html_part.h"
 #include "report/shown.h"
 #include "report/table.h"
+#include "report/text_readings.h"
 #include "sheet/units.h"
 
 static const char *const verdicts[] = {"in order", "caution", "REFUSED"};
@@ -29,7 +30,7 @@ void html_judged_findings(const struct dossier *dossier, struct buffer *out)
         {"run", false, true},      {"sensor", false, true},
         {"value", true, false},    {"what was seen, what to do", false, true}};
     const struct dossier *d = dossier;
-    size_t counts[3] = {0, 0, 0};
+    struct buffer counts = BUFFER_INIT;
     struct table table;
     if (d->findings.count == 0)
         return;
@@ -39,10 +40,10 @@ void html_judged_findings(const struct dossier *dossier, struct buffer *out)
             const struct finding_record *f = &d->findings.items[i];
             if ((int)f->verdict != verdict)
                 continue;
-            counts[verdict]++;
-            if (verdict == VERDICT_OK)
+            const bool open = text_readings_uncheckable(f);
+            if (verdict == VERDICT_OK && !open)
                 continue;
-            table_cell(&table, "%s", verdicts[verdict]);
+            table_cell(&table, "%s", open ? "not checkable" : verdicts[verdict]);
             table_cell(&table, "%s", f->check);
             table_cell(&table, "%s", f->run);
             table_cell(&table, "%s", dossier_sensor(d, f->sensor));
@@ -51,8 +52,8 @@ void html_judged_findings(const struct dossier *dossier, struct buffer *out)
         }
     }
     html_part_heading(out, "Findings");
-    html_part_say(out, "", "%zu refused, %zu to be read with caution, %zu in order.",
-                  counts[VERDICT_REFUSE], counts[VERDICT_CAUTION], counts[VERDICT_OK]);
+    text_readings_count(d, &counts);
+    html_part_take(out, "p", &counts);
     html_part_table(out, &table);
 }
 
@@ -69,7 +70,8 @@ void html_judged_checks(const struct dossier *dossier, struct buffer *out)
         table_cell(&table, "%s", f->check);
         table_cell(&table, "%s", f->run);
         table_cell(&table, "%s", dossier_sensor(dossier, f->sensor));
-        table_cell(&table, "%s", verdicts[f->verdict]);
+        table_cell(&table, "%s",
+                   text_readings_uncheckable(f) ? "not checkable" : verdicts[f->verdict]);
         table_cell(&table, isfinite(f->value) ? "%.3g" : "-", f->value);
         table_cell(&table, isfinite(f->limit) ? "%.3g" : "-", f->limit);
         table_cell(&table, "%s", f->unit);

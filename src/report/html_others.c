@@ -83,7 +83,8 @@ static void ideal_rows(const struct dossier *d, const struct correction_record *
     if (isnan(c->least_squares[0]))
         return;
     table_cell(table, "%s", dossier_plane(d, c->plane));
-    table_cell(table, "least squares");
+    table_cell(table, "least squares%s",
+               phrase_weight_useless(c->least_squares[0], half[0]) ? ", of no use" : "");
     mass_cell(table, d->job, c->least_squares[0], half[0]);
     mass_half_cell(table, d->job, c->least_squares[0], half[0]);
     angle_cell(table, d->job, c->least_squares[1], half[1]);

@@ -435,6 +435,10 @@ static void lost_rows(const struct dossier *d, bool single, struct table *table)
     }
 }
 
+const char text_answer_1x_only[] =
+    "1x only: whatever else the overall vibration holds stays as it is, and no balance weight "
+    "changes it.";
+
 void text_answer_forecast_table(const struct dossier *dossier, struct table *table)
 {
     static const struct table_column columns[] = {
@@ -464,9 +468,7 @@ void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
     paper_heading(out, heading);
     table_print(&table, 2, out);
     table_release(&table);
-    paper_wrap(out, 2, 2,
-               "1x only: whatever else the overall vibration holds stays as it is, and no "
-               "balance weight changes it.");
+    paper_wrap(out, 2, 2, text_answer_1x_only);
 }
 
 static const char *within(const struct residual_record *r)

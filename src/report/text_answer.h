@@ -17,6 +17,9 @@ void text_answer_tolerance(const struct dossier *dossier, struct buffer *out);
 /* What must be said wherever a weight is to be fitted; NULL at the end. */
 extern const char *const text_answer_cautions[];
 
+/* What a forecast is not about. */
+extern const char text_answer_1x_only[];
+
 /* 95 % half width (kg) to which a placed mass is worth stating; NaN: pieces, nominal. */
 double text_answer_free_half(const struct dossier *d, int plane);
 
