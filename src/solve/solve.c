@@ -185,6 +185,13 @@ static const struct model_row *lost_row(const struct model *m)
     return NULL;
 }
 
+static void repeat_step(const struct solve_records *s, const struct model *m,
+                        const struct ruling *ruling, struct advice_next *next)
+{
+    advice_repeat_step(m, ruling, next);
+    remedy_step(m, s->causes, s->cause_count, next);
+}
+
 static int solve_rows(struct solve_records *s, const struct model *m)
 {
     struct answer answer;
@@ -199,7 +206,7 @@ static int solve_rows(struct solve_records *s, const struct model *m)
     if (status == STATUS_DONE && judged && f.verdict == ADVICE_REFUSE) {
         struct ruling ruling = {RULING_REPEAT, lost_row(m), false};
         if (isinf(answer.condition) && ruling.row) {
-            advice_repeat_step(m, &ruling, &next);
+            repeat_step(s, m, &ruling, &next);
             status = solve_records_next(s, &next, NULL, STATUS_REFUSED);
         } else {
             advice_refused_step(&f, &next);
@@ -247,7 +254,7 @@ static int conclude(struct solve_records *s)
             if (ruling.row && ruling.row->unrolled)
                 notes_runout_step(&model, ruling.row, &next);
             else
-                advice_repeat_step(&model, &ruling, &next);
+                repeat_step(s, &model, &ruling, &next);
             status = solve_records_next(s, &next, NULL, STATUS_REFUSED);
             break;
         case RULING_MISSING:

@@ -34,6 +34,7 @@ void solve_records_release(struct solve_records *s)
     line_release(&s->line);
     free(s->ruled);
     free(s->slopes);
+    free(s->causes);
     free(s->matches);
     free(s->readings);
     stream_close(&s->stream);
@@ -112,6 +113,27 @@ static int take_turns(struct solve_records *s, const struct record *record)
     return STATUS_DONE;
 }
 
+static int take_finding(struct solve_records *s, const struct finding_record *f)
+{
+    struct remedy_cause cause;
+    if (!remedy_take(&s->stream.job, f, &cause))
+        return STATUS_DONE;
+    if (s->cause_count == s->cause_room &&
+        !grow((void **)&s->causes, &s->cause_room, sizeof *s->causes))
+        return message_no_memory();
+    s->causes[s->cause_count++] = cause;
+    return STATUS_DONE;
+}
+
+static int read_finding(struct solve_records *s, const struct record *record)
+{
+    struct finding_record r;
+    const char *why;
+    if (finding_parse(&r, &s->stream.job, record->json, &why) != 0)
+        return record_malformed(record, why);
+    return take_finding(s, &r);
+}
+
 static int read_all(struct solve_records *s)
 {
     struct record record;
@@ -123,6 +145,8 @@ static int read_all(struct solve_records *s)
             status = take_vetted(s, &record);
         else if (!strcmp(record.kind, "turns"))
             status = take_turns(s, &record);
+        else if (!strcmp(record.kind, "finding"))
+            status = read_finding(s, &record);
         if (status == STATUS_DONE)
             status = stream_pass(&s->stream, &record);
     }
@@ -232,7 +256,8 @@ int solve_records_finding(struct solve_records *s, const struct advice_finding *
     if (f->run >= 0)
         snprintf(r.run, sizeof r.run, "%s", s->stream.job.runs[f->run].name);
     finding_print(&r, &s->stream.job, &s->line);
-    return put(s);
+    int status = take_finding(s, &r);
+    return status == STATUS_DONE ? put(s) : status;
 }
 
 int solve_records_compared(struct solve_records *s, const struct model *m,

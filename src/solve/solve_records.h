@@ -12,6 +12,7 @@
 #include <stddef.h>
 
 #include "base/options.h"
+#include "solve/remedy.h"
 #include "solve/advice.h"
 #include "solve/answer.h"
 #include "solve/lookback.h"
@@ -29,6 +30,8 @@ struct solve_records {
     struct slope *slopes;        /* owned, runs x sensors: vectors over speed within the runs */
     struct slope_match *matches; /* owned: readings that were brought to one speed */
     size_t match_count, match_room;
+    struct remedy_cause *causes; /* owned: findings above a limit, all stages' */
+    size_t cause_count, cause_room;
     struct line line;
     bool said;  /* a refusal of ours says already why there is no correction */
     int status; /* the exit code that the answer calls for */

@@ -506,69 +506,6 @@ class Fitting(unittest.TestCase):
             self.assertLess(abs(chain.vector(f["after"])), 0.05 * abs(chain.vector(f["before"])))
 
 
-class Mounted(unittest.TestCase):
-    """What stays on counts: at its position, on its plane, and in the force."""
-
-    def placed(self, *lines, mounted=True):
-        truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}  # 30 g are needed, at 94 deg
-        plane = {"P": ["radius = 500 mm", "positions = 12 from 0 deg", "pieces = 2", *lines]}
-        aim = ["repeatability = 0 %", *(["mounted = trial 1"] if mounted else [])]
-        rotor = ["mass = 100 kg", "service speed = 1200 rpm"]
-        return stream_of(sheet(plane, trials(truth, [("P", 0.015, 90)]), aim, rotor=rotor))
-
-    def test_most_at_a_position(self):
-        at_90 = lambda s: sum(p["mass"] for p in chain.kind(s, "placement") if p["position"] == 4)
-        self.assertAlmostEqual(at_90(self.placed("stock = 5 10 g", "most = 25 g")), 0.010, delta=1e-9)
-        self.assertEqual(at_90(self.placed("stock = 5 10 g", "most = 15 g")), 0)
-        self.assertEqual(at_90(self.placed("most = 15 g")), 0)
-        self.assertGreater(at_90(self.placed("stock = 5 10 g", "most = 15 g", mounted=False)), 0.009)
-
-    def test_most_on_a_plane(self):
-        for own in (["stock = 5 10 g"], []):
-            placed = chain.kind(self.placed("most in all = 20 g", *own), "placement")
-            self.assertAlmostEqual(sum(p["mass"] for p in placed), 0.005, delta=1e-9)
-
-    def test_total_and_force(self):
-        stream = self.placed("stock = 5 10 g", "most = 25 g")
-        (p,) = (p for p in chain.kind(stream, "placement") if p["position"] == 4)
-        self.assertAlmostEqual(p["total_mass"], 0.025, delta=1e-9)
-        omega = 0.5 * (1200 * math.pi / 30) ** 2  # r w^2
-        self.assertAlmostEqual(p["total_force_n"], 0.025 * omega, delta=1e-3)
-        pull = omega * abs(chain.weight(0.015, 90) + sum(chain.weight(q["mass"], q["sheet_deg"])
-                                                          for q in chain.kind(stream, "placement")))
-        (f,) = findings(stream, "correction-force")
-        self.assertAlmostEqual(f["value"], 100 * pull / (50 * 9.80665), delta=1e-3)  # of half the weight
-        (p,) = chain.kind(self.placed("stock = 5 10 g", mounted=False), "placement")[:1]
-        self.assertNotIn("total_mass", p)
-
-    def test_a_fit_that_is_visibly_wrong_promises_little(self):
-        """A trial of 20 g that the sheet has as 13 g, 120 deg from another: what the machine then does is in the range."""
-        z, a = 30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)
-        for kg, sure in ((0.020, True), (0.013, False)):
-            runs = trials({"A": [z, a]}, [("P", 0.02, 30)])
-            runs.append(("second", {"A": complex(z + a * chain.weight(0.02, 150))}, [("P", kg, 150)]))
-            stream = stream_of(sheet({"P": []}, runs, ["repeatability = 1 %", "target = 10 um pk"]))
-            (misfit,) = findings(stream, "linearity")
-            self.assertEqual(misfit["verdict"], "ok" if sure else "caution")
-            (f,) = chain.kind(stream, "forecast")
-            after = abs(z + a * sum(chain.weight(p["mass"], p["sheet_deg"]) for p in chain.kind(stream, "placement")))
-            self.assertLess(after, f["after_95"][1] * 1e6)
-            self.assertEqual(f["chance"] > 0.99, sure)
-
-    def test_good_as_found(self):
-        """Within the target with room for scatter: nothing to fit, trial or not; close to it: go on as ever."""
-        for z, step in ((7, "done"), (9.9, "trial"), (12, "trial")):
-            truth = {"A": [z * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}
-            aim = ["repeatability = 3 %", "target = 10 um pk"]
-            runs = trials(truth, [("P", 0.02, 30)])
-            (alone,) = chain.kind(stream_of(sheet({"P": []}, runs[:1], aim)), "next")
-            self.assertEqual(alone["step"], step)
-            tried = stream_of(sheet({"P": []}, runs, aim))
-            (after,) = chain.kind(tried, "next")
-            self.assertEqual(after["step"], "done" if step == "done" else "correct")
-            self.assertEqual(chain.kind(tried, "placement") == [], step == "done")
-
-
 class Without(unittest.TestCase):
     """No answer: the records say why, and `report` gives the same exit code."""
 
