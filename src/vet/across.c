@@ -112,6 +112,23 @@ static bool share_file(const struct vet_run *a, const struct vet_run *b)
     return false;
 }
 
+/* A recording of an audit is judged by itself; that another one is the same file is only told. */
+static void same_in_audit(const struct vet_runs *runs, const size_t *order, size_t k,
+                          struct findings *findings)
+{
+    const struct vet_run *run = &runs->items[order[k]];
+
+    for (size_t m = 0; m < k; m++) {
+        const struct vet_run *seen = &runs->items[order[m]];
+        if (seen->index < 0 && seen->parent < 0 && share_file(run, seen)) {
+            findings_instead(findings, "one of the two names is wrong, or it was copied");
+            findings_rule(findings, CHECK_SAME_RECORDING, RULING_CAUTION, (int)order[k], -1, 1, 0,
+                          "", "recording '%s' has the same content (SHA-256)", seen->name);
+            return;
+        }
+    }
+}
+
 void across_same_recording(struct vet_runs *runs, const size_t *order, const struct job *job,
                            struct findings *findings)
 {
@@ -119,6 +136,8 @@ void across_same_recording(struct vet_runs *runs, const size_t *order, const str
         struct vet_run *run = &runs->items[order[k]];
         const struct vet_run *other = NULL;
         enum ruling ruling;
+        if (run->index < 0 && run->parent < 0)
+            same_in_audit(runs, order, k, findings);
         if (run->index < 0 || run->hash_count == 0)
             continue;
         for (size_t m = 0; m < runs->count && !other; m++) {

@@ -47,7 +47,8 @@ size_t across_repeats_of(const struct vet_runs *runs, const size_t *order, const
 void across_runout(struct vet_runs *runs, const size_t *order, const struct job *job,
                    struct findings *findings);
 
-/* Two runs with one SHA-256: with equal weights the later one is refused, else both. */
+/* Two runs with one SHA-256: with equal weights the later one is refused, else both. Of
+ * an audit the later one gets a caution. */
 void across_same_recording(struct vet_runs *runs, const size_t *order, const struct job *job,
                            struct findings *findings);
 

@@ -290,8 +290,20 @@ void within_run(struct vet_run *run, int position, const struct job *job, struct
     check_force(run, position, job, findings);
 }
 
-static bool steadiness(const struct vet_reading *r, int position, int s, double share,
-                       struct findings *findings)
+/* Could the tacho alone scatter the lags of blocks as much? Its marks scatter more than the blocks,
+ * which average over many, or too many of them are wrong. */
+static bool tacho_suspect(const struct vet_run *run, double phase_deg,
+                          const struct findings *findings)
+{
+    double all = (double)(run->marks + run->missed), limit;
+    double share = all > 0 ? 100 * (double)(run->missed + run->extra) / all : 0;
+
+    return !run->has_tacho || isnan(run->jitter_deg) || run->jitter_deg >= phase_deg ||
+           limits_judge(findings->limits, CHECK_TACHO, share, &limit) != RULING_OK;
+}
+
+static bool steadiness(const struct vet_run *run, const struct vet_reading *r, int position, int s,
+                       double share, struct findings *findings)
 {
     bool refuse = false;
     double value = r->amplitude_pct * share;
@@ -305,10 +317,13 @@ static bool steadiness(const struct vet_reading *r, int position, int s, double 
                                "block amplitudes scatter by %g %%, %ld of %ld blocks set aside%s",
                                findings_figure(value), r->set_aside, r->blocks + r->set_aside,
                                wander) == RULING_REFUSE;
-    if (!isnan(r->phase_deg) && share > WITHIN_LAG_SHARE)
+    if (!isnan(r->phase_deg) && share > WITHIN_LAG_SHARE) {
+        if (!tacho_suspect(run, r->phase_deg, findings))
+            findings_instead(findings, findings->limits->rows[CHECK_AMPLITUDE_STEADY].advice);
         refuse |= findings_add(findings, CHECK_PHASE_STEADY, position, s, r->phase_deg,
                                "block lags scatter by %g deg",
                                findings_figure(r->phase_deg)) == RULING_REFUSE;
+    }
     return refuse;
 }
 
@@ -435,7 +450,7 @@ void within_vectors(struct vet_run *run, int position, const double *as_found,
         bool refuse = false;
         if (!r->present || run->hand || !matters(run, i, job))
             continue;
-        refuse |= steadiness(r, position, (int)i, share, findings);
+        refuse |= steadiness(run, r, position, (int)i, share, findings);
         refuse |= drift(r, position, (int)i, share, own, findings);
         if (r->has_phase) {
             refuse |= beats(r, position, (int)i, share, own, findings);

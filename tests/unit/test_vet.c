@@ -306,6 +306,26 @@ static void limits_of_the_sheet(void **state)
 }
 
 /* Journal loads of a 340 kg rotor, mass centre 0.5 m from bearing A of 2 m: B carries a quarter. */
+/* Lags that scatter are the tacho's only where its marks do. */
+static void the_tacho_is_blamed_with_reason(void **state)
+{
+    (void)state;
+    for (int bad = 0; bad < 3; bad++) {
+        const char *text = NULL;
+        vet_desk_set();
+        desk.items[1].jitter_deg = bad == 1 ? 20 : 0.1;
+        desk.items[1].extra = bad == 2 ? 60 : 0;
+        vet_desk_figure(CHECK_PHASE_STEADY, 10);
+        vet_desk_vectors(1);
+        for (size_t i = 0; i < desk.findings.count; i++)
+            if (desk.findings.items[i].check == CHECK_PHASE_STEADY)
+                text = desk.findings.items[i].text;
+        assert_non_null(text);
+        assert_int_equal(strstr(text, "tacho") != NULL, bad > 0);
+        assert_int_equal(strstr(text, "a beat") != NULL, bad == 0);
+    }
+}
+
 static bool advised(const char *what)
 {
     for (size_t i = 0; i < desk.findings.count; i++)
@@ -368,6 +388,7 @@ int main(void)
         cmocka_unit_test(a_beat_is_judged),
         cmocka_unit_test(the_whole_job_is_answered),
         cmocka_unit_test(limits_of_the_sheet),
+        cmocka_unit_test(the_tacho_is_blamed_with_reason),
         cmocka_unit_test(advice_on_heavy_weights),
         cmocka_unit_test(loads),
     };

@@ -47,6 +47,22 @@ static void speeds_apart(void **state)
     assert_int_equal(vet_desk_ruled(CHECK_SPEED_MATCH, -2, -1), RULING_OK);
 }
 
+/* Two recordings of an audit with one content: told, not refused. */
+static void copies_in_an_audit(void **state)
+{
+    (void)state;
+    vet_desk_set();
+    for (int r = 0; r < RUNS; r++)
+        desk.items[r].index = -1;
+    across_same_recording(&desk.runs, desk.order, &desk.job, &desk.findings);
+    assert_int_equal(desk.findings.count, 0);
+    memcpy(desk.hashes[2][0], desk.hashes[0][0], 65);
+    across_same_recording(&desk.runs, desk.order, &desk.job, &desk.findings);
+    assert_int_equal(desk.findings.count, 1);
+    assert_int_equal(vet_desk_ruled(CHECK_SAME_RECORDING, 2, -1), RULING_CAUTION);
+    assert_true(vet_desk_all_used(0) && vet_desk_all_used(2));
+}
+
 /* The first finding's text has this in it. */
 static void phase_text(const char *what)
 {
@@ -205,6 +221,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(one_recording_twice),
         cmocka_unit_test(speeds_apart),
+        cmocka_unit_test(copies_in_an_audit),
         cmocka_unit_test(lost_phase),
         cmocka_unit_test(repeats),
         cmocka_unit_test(as_found),
