@@ -29,7 +29,8 @@ static const char page_style[] =
     ".wide{overflow-x:auto;max-width:100%}table{border-collapse:collapse;margin:.4em 0;"
     "font-size:.9em}th,td{padding:2px 8px;border-bottom:1px solid #bbb;text-align:left;"
     "overflow-wrap:normal}th{border-bottom:1.5px solid #111}.r{text-align:right}"
-    ".no{font-weight:bold}h2+p,h3+p,.note{break-after:avoid}"
+    ".no{font-weight:bold}.verdicts th:last-child,.verdicts td:last-child{position:sticky;right:0;"
+    "background:#fff;border-left:1px solid #bbb}h2+p,h3+p,.note{break-after:avoid}"
     ".pictures{display:flex;flex-wrap:wrap;gap:8px}.pictures "
     "svg{max-width:100%;height:auto}.pictures svg,tr,li{break-inside:avoid}"
     "pre{white-space:pre-wrap;font-size:.75em;border:1px solid #bbb;padding:6px}.note{color:#333;"
@@ -219,7 +220,9 @@ void html_write(const struct dossier *dossier, const char *job, size_t length, s
                       "the blocks of a recording, amplitude in %% and lag in degrees. "
                       "drift: trend over the recording, %%.");
         text_audit_rows(d, &table);
+        buffer_text(out, "<div class=\"verdicts\">\n");
         html_part_table(out, &table);
+        buffer_text(out, "</div>\n");
     } else {
         html_answer_write(d, out);
         forecast(d, out);

@@ -271,7 +271,8 @@ void html_others_trial(const struct dossier *dossier, struct buffer *out)
         mass_cell(&table, dossier->job, number(trial, "mass"), NAN);
         table_cell(&table, "%s",
                    isfinite(newton) ? shown_force(dossier->job, force, newton) : "not known");
-        mass_cell(&table, dossier->job, number(trial, "wanted_mass"), NAN);
+        double wanted = number(trial, "wanted_mass"); /* by a rule of thumb: two digits will do */
+        mass_cell(&table, dossier->job, wanted, wanted / 4);
     }
     html_part_table(out, &table);
 }

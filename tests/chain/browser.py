@@ -28,7 +28,7 @@ return [...document.querySelectorAll('svg')].filter(s => s.querySelector('[data-
 }));
 """
 
-# Words that stick out of their drawing, and boxes whose content is wider than they.
+# Words that stick out of their drawing.
 CUT = """
 const cut = [];
 for (const s of document.querySelectorAll('svg')) {
@@ -40,6 +40,14 @@ for (const s of document.querySelectorAll('svg')) {
     }
 }
 return cut;
+"""
+
+# Cells of the answer, and verdicts of an audit, that are seen only after scrolling sideways.
+HIDDEN = """
+return [...document.querySelectorAll('.answer td, .verdicts td:last-child')].filter(e => {
+    const r = e.getBoundingClientRect();
+    return r.width === 0 || r.left < 0 || r.right > document.scrollingElement.clientWidth + 0.5;
+}).map(e => e.textContent);
 """
 
 # Pairs of numbers in one polar plot that are written over each other.

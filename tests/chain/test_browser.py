@@ -93,6 +93,7 @@ class InBrowser(unittest.TestCase):
                 self.assertLessEqual(content, window)
                 self.assertEqual(self.browser.script(browser.CUT), [])
                 self.assertEqual(self.browser.script(browser.OVERLAID), [])
+                self.assertEqual(self.browser.script(browser.HIDDEN), [])
                 shown = self.browser.words()
                 self.assertEqual([words for words in expected if words not in shown], [])
         for paper, (wide, high) in browser.PAPERS.items():
@@ -183,6 +184,8 @@ class InBrowser(unittest.TestCase):
         stream = chain.through(["track", "average", "vet"], read.stdout)
         names = [p.stem for p in paths]
         self.sound(self.page("audit", stream), names)
+        verdicts = self.browser.script("return document.querySelectorAll('.verdicts td:last-child').length")
+        self.assertEqual(verdicts, 120)  # 60 recordings of two sensors; seen without scrolling, see `sound`
         many = self.browser.script("return [...document.querySelectorAll('svg')].map(s => s.getAttribute('aria-label'))")
         for name in names:
             self.assertEqual(sum(name in label for label in many), 2)  # one a sensor
