@@ -225,6 +225,61 @@ void notes_speed(const struct job *job, const struct slope_match *match, struct 
         judge_figure(units_shown(shown, &s->show), 2).text, units_show_text(&s->show, unit));
 }
 
+/* The ideal least-squares weight leaves so much of as found that something else is wrong: our choice,
+ * a single plane of a rigid rotor that is out in one plane leaves a few percent. */
+#define LEFT_MOST 0.3
+
+/* Share of the vibration that the least-squares weight leaves at a row. */
+static double share_left(const struct answer *a, const struct model_row *row)
+{
+    for (size_t r = 0; r < a->rows; r++) {
+        double unused[3];
+        if (a->row[r] == row)
+            return cabs(posterior_predict(&a->posterior[r], a->classical, unused)) / row->as_found;
+    }
+    return NAN;
+}
+
+bool notes_target(const struct answer *a, struct advice_finding *f)
+{
+    const struct answer_forecast *worst = NULL;
+    for (size_t i = 0; i < a->forecast_count; i++) {
+        const struct answer_forecast *fc = &a->forecasts[i];
+        double share = cabs(fc->after) / fc->row->target;
+        if (fc->row->in_aim && share > 1 &&
+            (!worst || share > cabs(worst->after) / worst->row->target))
+            worst = fc;
+    }
+    if (!worst || a->static_only) /* the couple comes after */
+        return false;
+    const struct job_sensor *s = &a->model->job->sensors[worst->row->sensor];
+    double w = worst->row->speed_rpm * PI / 30, target = worst->row->target;
+    double after = cabs(units_convert(cabs(worst->after), s->quantity, s->show.quantity, w));
+    double aimed = cabs(units_convert(target, s->quantity, s->show.quantity, w));
+    char unit[24];
+    bool shown = !isnan(after) && !isnan(aimed);
+    *f = (struct advice_finding){.check = "target-missed",
+                                 .unit = "%",
+                                 .basis = "the aim of the sheet",
+                                 .run = -1,
+                                 .sensor = (int)worst->row->sensor,
+                                 .verdict = ADVICE_CAUTION,
+                                 .value = 100 * cabs(worst->after) / target,
+                                 .limit = 100};
+    size_t n = (size_t)snprintf(f->text, sizeof f->text,
+                                "this will not meet the target at '%s' (%s of %s %s expected): ",
+                                s->name,
+                                shown ? judge_figure(units_shown(after, &s->show), 3).text : "more",
+                                shown ? judge_figure(units_shown(aimed, &s->show), 3).text : "it",
+                                shown ? units_show_text(&s->show, unit) : "");
+    snprintf(f->text + n, sizeof f->text - n, "%s",
+             share_left(a, worst->row) > LEFT_MOST
+                 ? "even the ideal weight leaves much of it; weights on these planes cannot do it "
+                   "alone, or a sensor or the tape is not as the sheet says"
+                 : "positions, stock or limits allow no better");
+    return true;
+}
+
 bool notes_zone(const struct answer *a, const struct answer_forecast *fc, struct advice_finding *f)
 {
     const struct answer_zone *z = &fc->zone;

@@ -26,6 +26,10 @@ bool notes_runout(const struct model *model, size_t sensor, struct advice_findin
 void notes_runout_step(const struct model *model, const struct model_row *row,
                        struct advice_next *next);
 
+/* `target-missed`: the worst forecast of the aim whose expected amplitude is above its target. False:
+ * none is. Needs outlook_fill. */
+bool notes_target(const struct answer *answer, struct advice_finding *finding);
+
 /* `prediction`: a row's reading of run `run` lies `se` standard errors from what was predicted. */
 void notes_prediction(const struct model *model, const struct model_row *row, size_t run, double se,
                       struct advice_finding *finding);

@@ -174,6 +174,9 @@ static int give_answer(struct solve_records *s, struct answer *a)
         status = solve_records_placements(s, a);
     if (status == STATUS_DONE)
         status = solve_records_outlook(s, a);
+    struct advice_finding missed;
+    if (status == STATUS_DONE && strcmp(next.step, "done") != 0 && notes_target(a, &missed))
+        status = solve_records_finding(s, &missed);
     return status == STATUS_DONE ? solve_records_next(s, &next, a, STATUS_DONE) : status;
 }
 

@@ -98,6 +98,19 @@ class Step(unittest.TestCase):
         step = self.step(sheet({"P": []}, runs, ["repeatability = 1 %"]), 4)
         self.assertRegex(step["text"], "^from run '.*counted the other way.*; run.*: check its weights")
 
+    def test_a_target_that_will_be_missed(self):
+        """The only position is 60 deg off: 30 um sin 60 deg stay; of two sensors that want opposite weights half stays."""
+        z, a = 30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)
+        want = math.degrees(cmath.phase(-z / a))
+        aim = ["repeatability = 0 %", "target = 10 um pk"]
+        runs = trials({"A": [z, a]}, [("P", 0.02, 30)])
+        (f,) = findings(stream_of(sheet({"P": [f"positions = {(want + 60) % 360} deg"]}, runs, aim)), "target-missed")
+        self.assertIn("at 'A' (26.0 of 10.0 um pk expected): positions, stock or limits", f["text"])
+        self.assertEqual(findings(stream_of(sheet({"P": []}, runs, aim)), "target-missed"), [])
+        runs = trials({"A": [z, a], "B": [-0.5 * z, a]}, [("P", 0.02, 30)])
+        (f,) = findings(stream_of(sheet({"P": []}, runs, aim)), "target-missed")
+        self.assertIn("even the ideal weight", f["text"])
+
 
 if __name__ == "__main__":
     unittest.main()
