@@ -186,7 +186,7 @@ class InBrowser(unittest.TestCase):
         self.sound(self.page("audit", stream), names)
         verdicts = self.browser.script("return document.querySelectorAll('.verdicts td:last-child').length")
         self.assertEqual(verdicts, 120)  # 60 recordings of two sensors; seen without scrolling, see `sound`
-        many = self.browser.script("return [...document.querySelectorAll('svg')].map(s => s.getAttribute('aria-label'))")
+        many = self.browser.script("return [...document.querySelectorAll('svg')].map(s => s.ariaLabel)")
         for name in names:
             self.assertEqual(sum(name in label for label in many), 2)  # one a sensor
 
