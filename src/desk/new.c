@@ -15,11 +15,10 @@
 #include "base/options.h"
 #include "base/status.h"
 #include "desk/channels.h"
+#include "desk/interview.h"
 #include "desk/outline.h"
 #include "read/names.h"
 #include "sheet/sheet.h"
-
-#define TYPED_ROOM 201 /* a title's length and the NUL */
 
 struct draft {
     struct outline outline;
@@ -31,8 +30,7 @@ struct draft {
     char (*runs)[NAME_ROOM];         /* owned */
     char **files;                    /* owned, as the sheet names them */
     struct outline_weight *weights;  /* owned */
-    char **typed;                    /* owned answers */
-    size_t typed_count;
+    struct interview interview;
 };
 
 /* ---- what the options say ---- */
@@ -136,86 +134,28 @@ static int name_files(struct draft *draft)
 
 /* ---- questions, on terminals only ---- */
 
-/* A line typed in answer to a question on standard error; NULL: nothing was typed. */
-static const char *ask(struct draft *draft, const char *question)
+/* What the options left open. */
+static int ask_for_the_rest(struct draft *draft)
 {
-    char line[TYPED_ROOM];
-    fprintf(stderr, "%s: ", question);
-    if (!fgets(line, sizeof line, stdin))
-        return NULL;
-    line[strcspn(line, "\n")] = '\0';
-    const char *text = line + strspn(line, " \t");
-    char *kept = *text ? strdup(text) : NULL;
-    if (kept)
-        draft->typed[draft->typed_count++] = kept;
-    return kept;
-}
-
-static bool any_sensor_without_unit(const struct draft *draft)
-{
-    for (size_t i = 0; i < draft->channels.count; i++)
-        if (draft->channels.items[i].use == CHANNELS_SENSOR && !*draft->channels.items[i].unit)
-            return true;
-    return false;
-}
-
-static bool has_tacho(const struct draft *draft)
-{
-    for (size_t i = 0; i < draft->channels.count; i++)
-        if (draft->channels.items[i].use == CHANNELS_TACHO)
-            return true;
-    return false;
-}
-
-static void ask_all(struct draft *draft)
-{
-    struct outline_answers *a = &draft->outline.answers;
-    const bool sound = !draft->channels.text, open = any_sensor_without_unit(draft);
-    const struct {
-        const char **answer;
-        bool wanted;
-        const char *question;
-    } questions[] = {
-        {&draft->output, true, "File to write the sheet to (job.ini; empty: show it here)"},
-        {&a->title, true, "Title of the job"},
-        {&a->angles, true, "Do angles of weights count 'against' or 'with' rotation"},
-        {&a->tacho, !has_tacho(draft), "Channel of the tacho (none: there is none)"},
-        {&a->unit, open, "What the sensors measure (g, m/s2, mm/s, in/s, um, mil)"},
-        {&a->scale, open, "Their scale (100 mV/g; empty: the recording is in that unit)"},
-        {&a->full_scale, sound, "Volts at digital full scale (10 V)"},
-        {&a->rate, !draft->channels.has_rate, "Rate of the recording (12800 Hz)"},
-        {&a->mass, true, "Mass of the rotor (340 kg)"},
-        {&a->speed, true, "Service speed (1480 rpm)"},
-        {&a->radius, true, "Radius where weights are fixed (410 mm)"},
-        {&a->positions, true, "Positions for weights (12 from 0 deg; empty: any angle)"},
-        {&a->stock, true, "Pieces at hand (10 20 50 g; empty: any mass)"},
-        {&a->target, true, "Target (1.8 mm/s rms)"}};
-    fputs("What is left empty stays open in the sheet, as a comment.\n", stderr);
-    for (size_t i = 0; i < sizeof questions / sizeof *questions; i++)
-        if (!*questions[i].answer && questions[i].wanted)
-            *questions[i].answer = ask(draft, questions[i].question);
-    for (size_t r = 0; draft->weight_texts.count == 0 && r < draft->recordings.count; r++) {
-        char question[160];
-        snprintf(question, sizeof question,
-                 "Weight mounted on plane '%s' in run '%s' (60 g at 30 deg; empty: none)",
-                 draft->outline.planes[0], draft->runs[r]);
-        const char *weight = ask(draft, question);
-        if (weight)
-            draft->weights[draft->outline.weight_count++] = (struct outline_weight){r, 0, weight};
-    }
+    draft->interview = (struct interview){.outline = &draft->outline,
+                                          .channels = &draft->channels,
+                                          .output = &draft->output,
+                                          .planes_given = draft->planes.count > 0 ||
+                                                          draft->weight_texts.count > 0,
+                                          .weights_given = draft->weight_texts.count > 0};
+    return interview_hold(&draft->interview);
 }
 
 static int answer(struct draft *draft)
 {
     static const char *const plane[] = {"rotor"};
     struct outline *outline = &draft->outline;
-    const size_t weights = draft->weight_texts.count + draft->recordings.count;
+    const size_t weights = draft->weight_texts.count + 1;
     outline->channels = &draft->channels;
     outline->planes = draft->planes.count ? draft->planes.items : plane;
     outline->plane_count = draft->planes.count ? draft->planes.count : 1;
     draft->weights = calloc(weights, sizeof *draft->weights);
-    draft->typed = calloc(weights + 16, sizeof *draft->typed);
-    if (!draft->weights || !draft->typed)
+    if (!draft->weights)
         return message_no_memory();
     outline->weights = draft->weights;
     int status = STATUS_DONE;
@@ -223,11 +163,20 @@ static int answer(struct draft *draft)
         if (take_weight(draft, draft->weight_texts.items[i]) != STATUS_DONE)
             status = STATUS_USAGE;
     if (status == STATUS_DONE && isatty(STDIN_FILENO) && isatty(STDOUT_FILENO))
-        ask_all(draft);
+        status = ask_for_the_rest(draft);
     return status == STATUS_DONE ? take_angles(&outline->answers) : status;
 }
 
 /* ---- the sheet ---- */
+
+/* Said before anything is looked at or asked for. */
+static int file_is_free(const char *path)
+{
+    if (!path || access(path, F_OK) != 0)
+        return STATUS_DONE;
+    message("is there already, and stays as it is: '%s'", path);
+    return STATUS_USAGE;
+}
 
 static int write_file(const char *path, const struct buffer *text)
 {
@@ -294,9 +243,7 @@ static void release(struct draft *draft)
 {
     for (size_t i = 0; draft->files && i < draft->recordings.count; i++)
         free(draft->files[i]);
-    for (size_t i = 0; i < draft->typed_count; i++)
-        free(draft->typed[i]);
-    free(draft->typed);
+    interview_release(&draft->interview);
     free(draft->weights);
     free(draft->files);
     free(draft->runs);
@@ -351,7 +298,9 @@ int desk_new(int argc, char **argv)
     int parsed = options_parse(&usage, argc, argv, &draft.recordings);
     int status = parsed == OPTIONS_MISUSE ? STATUS_USAGE : STATUS_DONE;
     if (parsed == OPTIONS_GO) {
-        status = look_at_channels(&draft);
+        status = file_is_free(draft.output);
+        if (status == STATUS_DONE)
+            status = look_at_channels(&draft);
         if (status == STATUS_DONE)
             status = name_runs(&draft);
         if (status == STATUS_DONE)

@@ -26,7 +26,7 @@ static void end_line(struct buffer *text, size_t start, const char *remark)
 }
 
 /* Control characters would break the line; a comment's sign and blanks at the ends need quotes. */
-static void add_value(struct buffer *text, const char *value)
+void outline_value(struct buffer *text, const char *value)
 {
     const size_t length = strlen(value);
     const bool quoted = strchr(value, '#') || value[0] == ' ' || value[length - 1] == ' ';
@@ -46,7 +46,7 @@ static void add(struct buffer *text, const char *key, const char *value, const c
     buffer_text(text, is_known(value) ? "" : "# ");
     buffer_text(text, key);
     buffer_text(text, " = ");
-    add_value(text, is_known(value) ? value : example);
+    outline_value(text, is_known(value) ? value : example);
     end_line(text, start, remark);
 }
 
@@ -154,7 +154,7 @@ static void add_sensors(const struct outline *o, struct buffer *text)
             continue;
         if (one->use == CHANNELS_OTHER) {
             buffer_text(text, "\n# left out, no vibration by its unit: column '");
-            add_value(text, one->name);
+            outline_value(text, one->name);
             buffer_text(text, "'\n");
         } else {
             add_sensor(o, one, text);

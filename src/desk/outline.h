@@ -34,4 +34,7 @@ struct outline {
 /* Appends the sheet to `text`; text->failed says whether memory ran out. */
 void outline_write(const struct outline *outline, struct buffer *text);
 
+/* Appends a value, not "", as the sheet reads it back: quoted where that is needed. */
+void outline_value(struct buffer *text, const char *value);
+
 #endif

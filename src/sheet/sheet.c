@@ -131,18 +131,19 @@ static void parse(struct sheet_parse *p, char *text, size_t length)
     sheet_checks_cross(p);
 }
 
-int sheet_read(struct sheet *sheet, const char *path, bool audit, struct buffer *errors)
+/* With `text`, which is changed, that; else the file. */
+static int read_either(struct sheet *sheet, const char *path, char *text, size_t length, bool audit,
+                       struct buffer *errors)
 {
     struct sheet_parse p = {.sheet = sheet, .audit = audit};
-    size_t length = 0;
     *sheet = (struct sheet){.path = strdup(path), .folder = folder_of(path)};
     job_init(&sheet->job);
     if (!sheet->path || !sheet->folder)
         p.errors.no_memory = true;
-    char *text = p.errors.no_memory ? NULL : load(path, &length, &p.errors);
-    if (text)
-        parse(&p, text, length);
-    free(text);
+    char *loaded = text || p.errors.no_memory ? NULL : load(path, &length, &p.errors);
+    if (!p.errors.no_memory && (text || loaded))
+        parse(&p, text ? text : loaded, length);
+    free(loaded);
     sheet_errors_print(&p.errors, path, errors);
     int result = p.errors.no_memory || errors->failed ? -1 : (int)p.errors.count;
     if (result != 0)
@@ -153,6 +154,17 @@ int sheet_read(struct sheet *sheet, const char *path, bool audit, struct buffer 
     free(p.plane_sections);
     free(p.run_sections);
     return result;
+}
+
+int sheet_read(struct sheet *sheet, const char *path, bool audit, struct buffer *errors)
+{
+    return read_either(sheet, path, NULL, 0, audit, errors);
+}
+
+int sheet_read_text(struct sheet *sheet, const char *path, char *text, size_t length, bool audit,
+                    struct buffer *errors)
+{
+    return read_either(sheet, path, text, length, audit, errors);
 }
 
 static void release_run(struct sheet_run *run)

@@ -49,6 +49,10 @@ struct sheet {
  * With `audit` a sheet needs no runs, planes or angles, and its runs are not checked for files. */
 int sheet_read(struct sheet *sheet, const char *path, bool audit, struct buffer *errors)
     __attribute__((warn_unused_result));
+
+/* The same of `length` bytes of text, which it changes, in the place of a file; `path` names it. */
+int sheet_read_text(struct sheet *sheet, const char *path, char *text, size_t length, bool audit,
+                    struct buffer *errors) __attribute__((warn_unused_result));
 void sheet_release(struct sheet *sheet); /* also twice, or after a failed sheet_read */
 
 #endif

@@ -52,7 +52,8 @@ def on_terminal(args, typed, cwd, env=None):
                 break
             shown += got
             while lines and shown.endswith(b": "):
-                os.write(fd, lines.pop(0).encode() + b"\n")
+                line = lines.pop(0)
+                os.write(fd, line.encode() + (b"" if line == "\x04" else b"\n"))
                 break
     return os.waitstatus_to_exitcode(os.waitpid(pid, 0)[1]), shown.decode("utf-8", "replace")
 
@@ -183,17 +184,50 @@ class New(unittest.TestCase):
 
     def test_asks_on_a_terminal_only(self):
         self.put("fan", "as-found.wav", "trial.wav")
-        typed = ["job.ini", "Fan # 7", "against", "g", "100 mV/g", "10 V", MASS, "985 rpm", "600 mm", "12 from 0 deg",
-                 "10 20 50 g", "1.8 mm/s rms", "", WEIGHT]
+        typed = ["job.ini", "Fan # 7", "against", "DE-V", "DE-H", "g", "100 mV/g", "10 V", MASS, "", "wheel", "",
+                 "600 mm", "12 from 0 deg", "10 20 50 g", "1.8 mm/s rms", "", WEIGHT]
         code, shown = on_terminal(["new", "as-found.wav", "trial.wav"], typed, self.top)
         self.assertEqual(code, 0, shown)
         self.assertIn("written, and complete", shown)
+        self.assertIn("70 g at position 3", shown)
         text = (self.top / "job.ini").read_text()
         self.assertIn('title = "Fan # 7"', text)
+        self.assertRegex(text, r"(?m)^service speed = 98\d rpm")
+        for line in ("[plane wheel]", "[sensor DE-V]", "[sensor DE-H]"):
+            self.assertIn(line, text)
         self.assertEqual(len(chain.kind(chain.solved(self.top / "job.ini"), "next")), 1)
         code, shown = on_terminal(["check", "job.ini"], [], self.top, {"TERM": "xterm", "NO_COLOR": ""})
         self.assertEqual(code, 0, shown)
         self.assertNotIn("?", shown)
+
+    def test_a_wrong_answer_is_asked_for_again(self):
+        """With the sheet's own words; after three tries it stays open; a file that is there is no answer."""
+        self.put("fan", "as-found.wav", "trial.wav")
+        (self.top / "mine.ini").write_text("mine")
+        typed = ["mine.ini", "job.ini", "", "left", "with", "", "", "furlong", "g", "100 mV", "100 mV/g", "10", "10 V",
+                 "340", "340 lbs", "heavy", "", "", "600", "600 mm", "12 from 0 deg", "", "1.8 mm/s rms",
+                 "", "70 g at position 13", "70 g at pos 3", "70 g at position 3"]
+        code, shown = on_terminal(["new", "as-found.wav", "trial.wav"], typed, self.top)
+        self.assertEqual(code, 0, shown)
+        for said in ("is there already, and stays as it is: 'mine.ini'", "not one of 'against rotation'",
+                     "no unit, wanted g, kg, oz or lb: 'mass = 340'", "stays open in the sheet: 'mass'",
+                     "no such position (1 to 12)", "wanted 'MASS at ANGLE deg' or 'MASS at position N'"):
+            self.assertIn(said, shown)
+        text = (self.top / "job.ini").read_text()
+        for line in ("angles = with rotation", "unit = g", "scale = 100 mV/g", "full scale = 10 V", "# mass = 340 kg",
+                     "radius = 600 mm", "weight rotor = 70 g at position 3"):
+            self.assertRegex(text, "(?m)^" + re.escape(line))
+
+    def test_end_of_answers(self):
+        self.put("fan", "as-found.wav")
+        code, shown = on_terminal(["new", "as-found.wav"], ["job.ini", "Fan", "\x04"], self.top)
+        self.assertEqual(code, 2, shown)
+        self.assertIn("nothing was written", shown)
+        self.assertFalse((self.top / "job.ini").exists())
+        (self.top / "mine.ini").write_text("mine")
+        code, shown = on_terminal(["new", "-o", "mine.ini", "as-found.wav"], [], self.top)
+        self.assertEqual(code, 2, shown)
+        self.assertNotIn("Title", shown)
 
 
 class Check(unittest.TestCase):
