@@ -112,13 +112,19 @@ static void set_forms(struct answer *a)
 
 int answer_init(struct answer *a, const struct model *m)
 {
+    return answer_init_at(a, m, m->job->aim.mounted);
+}
+
+int answer_init_at(struct answer *a, const struct model *m, int base)
+{
     memset(a, 0, sizeof *a);
     a->model = m;
+    a->base = base;
     a->planes = m->job->plane_count;
     a->condition = INFINITY;
     int result = room(a, m->row_count);
-    for (size_t p = 0; p < a->planes && result == ANSWER_OK && m->job->aim.mounted >= 0; p++)
-        a->mounted[p] = job_run_weight(m->job, (size_t)m->job->aim.mounted, p);
+    for (size_t p = 0; p < a->planes && result == ANSWER_OK && base >= 0; p++)
+        a->mounted[p] = job_run_weight(m->job, (size_t)base, p);
     for (size_t r = 0; r < m->row_count && result == ANSWER_OK; r++) {
         const struct model_row *row = &m->rows[r];
         if (!ruling_counts(row))

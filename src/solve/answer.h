@@ -31,6 +31,7 @@ struct answer_residual { /* kg m; NaN: not known */
 
 struct answer {
     const struct model *model;    /* borrowed */
+    int base;                     /* run whose weights stay on; -1: all is relative to as found */
     size_t planes, rows;          /* rows: in the aim and good */
     const struct model_row **row; /* owned array of borrowed rows */
     struct posterior *posterior;  /* owned: rows, relative to what is mounted */
@@ -66,6 +67,9 @@ enum answer_error { ANSWER_OK = 0, ANSWER_NO_MEMORY = -1, ANSWER_FAILED = -2 };
  * has a target, else in the shown quantity if all share it, else relative to as found. Judges the
  * condition number. */
 int answer_init(struct answer *answer, const struct model *model)
+    __attribute__((warn_unused_result));
+/* The same relative to run `base` (-1: to as found) instead of aim.mounted. */
+int answer_init_at(struct answer *answer, const struct model *model, int base)
     __attribute__((warn_unused_result));
 void answer_release(struct answer *answer); /* safe on a zeroed struct */
 

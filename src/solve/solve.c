@@ -129,6 +129,17 @@ static int note_removed(struct solve_records *s, const struct advice_next *next)
     return solve_records_finding(s, &f);
 }
 
+/* Nothing more is fitted: the outlook is of what run `run` carries, which stays on. */
+static int stay_with(struct answer *a, int run)
+{
+    const struct model *m = a->model;
+    if (a->base == run)
+        return STATUS_DONE;
+    answer_release(a);
+    int status = kernel_status(answer_init_at(a, m, run));
+    return status == STATUS_DONE ? kernel_status(answer_correct(a)) : status;
+}
+
 /* Correction, placement, forecast; the planes are known to be told apart. */
 static int give_answer(struct solve_records *s, struct answer *a)
 {
@@ -163,7 +174,10 @@ static int give_answer(struct solve_records *s, struct answer *a)
     }
     if (!next.step)
         advice_fit_step(a, trim || again, &next);
-    status = kernel_status(outlook_fill(a));
+    if (!strcmp(next.step, "done"))
+        status = stay_with(a, run);
+    if (status == STATUS_DONE)
+        status = kernel_status(outlook_fill(a));
     if (status == STATUS_DONE)
         status = note_removed(s, &next);
     if (status == STATUS_DONE)

@@ -273,9 +273,9 @@ int solve_records_compared(struct solve_records *s, const struct model *m,
     return put(s);
 }
 
-static const char *relative_to(const struct job *job)
+static const char *relative_to(const struct answer *a)
 {
-    return job->aim.mounted >= 0 ? job->runs[job->aim.mounted].name : "as found";
+    return a->base >= 0 ? a->model->job->runs[a->base].name : "as found";
 }
 
 static double signed_mass(const struct job_plane *plane, double mass)
@@ -297,7 +297,7 @@ int solve_records_corrections(struct solve_records *s, const struct answer *a)
                                       .least_squares = {signed_mass(plane, cabs(a->classical[p])),
                                                         angle_of(sign * a->classical[p])},
                                       .ellipse = {e[0], e[1], e[n + 1]}};
-        snprintf(r.relative_to, sizeof r.relative_to, "%s", relative_to(&s->stream.job));
+        snprintf(r.relative_to, sizeof r.relative_to, "%s", relative_to(a));
         correction_print(&r, &s->stream.job, &s->line);
         status = put(s);
     }
@@ -334,7 +334,7 @@ int solve_records_placements(struct solve_records *s, const struct answer *a)
         r.sits = sits != 0;
         r.total_mass = r.mass + sits_mass(job, item->plane, item->angle_deg);
         r.total_force_n = trial_force(fabs(r.mass + sits), plane->radius_m, job->service_rpm);
-        snprintf(r.relative_to, sizeof r.relative_to, "%s", relative_to(job));
+        snprintf(r.relative_to, sizeof r.relative_to, "%s", relative_to(a));
         placement_print(&r, job, &s->line);
         status = put(s);
     }
@@ -475,7 +475,7 @@ static void line_complex(struct line *line, const char *key, const struct job *j
 static void line_alternatives(struct line *line, const struct answer *a)
 {
     const struct job *job = a->model->job;
-    int run = job->aim.mounted >= 0 ? job->aim.mounted : a->model->last_run;
+    int run = a->base >= 0 ? a->base : a->model->last_run;
     if (run < 0 || job_run_is_bare(job, (size_t)run))
         return;
     double complex *w = calloc(a->planes + 1, sizeof *w);
@@ -483,7 +483,7 @@ static void line_alternatives(struct line *line, const struct answer *a)
         line->text.failed = 1;
         return;
     }
-    bool left = job->aim.mounted < 0; /* the other answer leaves them on */
+    bool left = a->base < 0; /* the other answer leaves them on */
     for (size_t p = 0; p < a->planes; p++)
         w[p] = a->weights[p] + a->mounted[p] - (left ? job_run_weight(job, (size_t)run, p) : 0);
     line_open(line, "instead", '{');

@@ -111,6 +111,21 @@ class Step(unittest.TestCase):
         (f,) = findings(stream_of(sheet({"P": []}, runs, aim)), "target-missed")
         self.assertIn("even the ideal weight", f["text"])
 
+    def test_done_is_of_what_is_on(self):
+        """The run that meets the aim is what the forecast and the rest are relative to, said to stay on or not."""
+        z, a = 30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)
+        deg = math.degrees(cmath.phase(-z / a))
+        runs = trials({"A": [z, a]}, [("P", 0.02, 30)])
+        runs.append(("fitted", {"A": complex(z + a * chain.weight(0.028, deg))}, [("P", 0.028, deg)]))
+        for own in ([], ["mounted = fitted"]):
+            stream = stream_of(sheet({"P": []}, runs, ["repeatability = 0 %", "target = 10 um pk", *own]))
+            (step,), (f,), (c,) = (chain.kind(stream, k) for k in ("next", "forecast", "correction"))
+            self.assertEqual(step["step"], "done")
+            for key in ("before", "after"):
+                self.assertAlmostEqual(abs(chain.vector(f[key])) * 1e6, 2, delta=1e-6)  # 2 g of 30 g are left
+            self.assertEqual(c["relative_to"], "fitted")
+            self.assertAlmostEqual(c["mass"], 0.002, delta=1e-9)
+
 
 if __name__ == "__main__":
     unittest.main()
