@@ -89,7 +89,7 @@ void turns_release(struct turns_record *r);
 
 struct tacho_record {
     char run[NAME_ROOM];
-    long marks, missed, extra; /* marks used; marks that had to be put in; pulses set aside */
+    long marks, missed, extra; /* marks used; marks that did not come; pulses set aside */
     double jitter_deg;         /* standard deviation of marks about the smooth shaft angle */
     double speed_rpm;          /* mean over the run */
     bool pulses;               /* the signal has pulses; false: it is spread as vibration is */

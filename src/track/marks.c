@@ -280,6 +280,14 @@ static void sift(struct marks *marks)
     }
 }
 
+/* The marks that did not come between two stretches, by the mean of their periods. */
+static long lost_between(const struct marks *marks, double at, double period)
+{
+    double turns = (at - marks->last) / (0.5 * (marks->period + period));
+
+    return turns >= 1.5 ? lround(turns) - 1 : 0;
+}
+
 /* Locks on with the voters and runs them through; keeps waiting where they are irregular. */
 static size_t lock(struct marks *marks, struct mark *out)
 {
@@ -298,6 +306,9 @@ static size_t lock(struct marks *marks, struct mark *out)
         return 0;
     }
     memcpy(voters, marks->voters, count * sizeof *voters);
+    if (marks->breaks && marks->count > 0) {
+        marks->between += lost_between(marks, voters[best.start].at, best.period);
+    }
     marks->locked = true;
     marks->voter_count = 0;
     marks->extra += (long)best.start;

@@ -43,7 +43,8 @@ struct marks {
     long candidate_turns;      /* how many periods it lies behind `last` */
     long strays;               /* pulses set aside since the last mark */
     bool breaks;               /* the next mark begins a new stretch */
-    long count, missed, extra; /* of the recording so far */
+    long count, missed, extra; /* of the recording so far, within stretches */
+    long between;              /* missing between them, where nothing was put in */
 };
 
 /* `per_turn`: pulses a turn, as the user states. With more than one, the one that can be told apart

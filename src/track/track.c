@@ -346,7 +346,7 @@ static int print_tacho(const struct recording *rec, struct stream *stream, struc
 {
     const struct tracker *tracker = &rec->tracker;
     struct tacho_record record = {.marks = tracker->marks.count,
-                                  .missed = tracker->marks.missed,
+                                  .missed = tracker->marks.missed + tracker->marks.between,
                                   .extra = tracker->marks.extra,
                                   .jitter_deg = shaft_jitter(&tracker->shaft),
                                   .speed_rpm = tracker_speed(tracker),

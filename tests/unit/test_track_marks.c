@@ -173,6 +173,30 @@ static void test_damaged(void **unused)
 
 /* Where size and gap name different marks and the size only just does, no recording may take the
  * one and another the other. */
+/* Twenty turns without a pulse are too many to bridge, and still twenty marks that did not come. */
+static void test_between_stretches(void **unused)
+{
+    struct marks marks;
+    struct mark out[MARKS_ROOM];
+    size_t given = 0;
+
+    (void)unused;
+    marks_init(&marks, 1);
+    for (int turn = 0; turn < 300; turn++) {
+        double at = 1000.0 * turn + (turn % 3); /* samples; the shaft is not quite even */
+        struct pulse pulse = {.at = at, .high = 20, .low = 980, .top = 1, .bottom = 0};
+
+        if (turn < 100 || turn >= 120) {
+            given += marks_push(&marks, &pulse, out);
+        }
+    }
+    given += marks_finish(&marks, out);
+    assert_int_equal(given, 280);
+    assert_int_equal(marks.count, 280);
+    assert_int_equal(marks.missed, 0);
+    assert_int_equal(marks.between, 20);
+}
+
 static void test_crossed(void **unused)
 {
     int gaps = 0, sizes = 0;
@@ -222,6 +246,7 @@ static void test_crossed(void **unused)
 int main(void)
 {
     const struct CMUnitTest tests[] = {cmocka_unit_test(test_whole), cmocka_unit_test(test_damaged),
+                                       cmocka_unit_test(test_between_stretches),
                                        cmocka_unit_test(test_crossed)};
 
     return cmocka_run_group_tests(tests, NULL, NULL);
