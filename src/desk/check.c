@@ -234,6 +234,18 @@ static void print_sheet(const struct check *check)
     puts(job->has_tacho ? "" : ", no tacho");
 }
 
+static void remark_weights(struct check *check)
+{
+    const char *plane = wish_lacks_weight(&check->sheet.job);
+    if (!plane)
+        return;
+    begin_remark(check, "weights");
+    fputs("no run says what was mounted: add 'weight ", stdout);
+    print_text(plane, 0);
+    fputs(" = ... at ...' to the trial run's section", stdout);
+    end_remark(check);
+}
+
 static void use_colour(struct check *check)
 {
     const char *no = getenv("NO_COLOR"), *term = getenv("TERM");
@@ -263,6 +275,8 @@ int desk_check(int argc, char **argv)
     if (parsed == OPTIONS_GO && status == STATUS_DONE) {
         use_colour(&check);
         print_sheet(&check);
+        if (operands.count == 1)
+            remark_weights(&check);
         for (size_t i = 1; i < operands.count; i++)
             check_run(&check, 0, operands.items[i]);
         for (size_t i = 0; operands.count == 1 && i < check.sheet.job.run_count; i++)

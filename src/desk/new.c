@@ -16,7 +16,9 @@
 #include "base/status.h"
 #include "desk/channels.h"
 #include "desk/interview.h"
+#include "desk/look.h"
 #include "desk/outline.h"
+#include "desk/wish.h"
 #include "read/names.h"
 #include "sheet/sheet.h"
 
@@ -196,19 +198,81 @@ static int write_file(const char *path, const struct buffer *text)
     return STATUS_SYSTEM;
 }
 
-/* Says what the sheet still lacks, in the words of its reader. */
-static int say_open_ends(const char *path)
+/* Each line behind `head`; those that hold one of `but` (NULL: none) are left out. */
+static void say_lines(struct buffer *lines, const char *head, const char *const *but)
 {
-    struct sheet sheet = {0};
-    struct buffer errors = BUFFER_INIT;
-    const int count = sheet_read(&sheet, path, false, &errors);
-    if (count > 0) {
-        message("written, and to be completed: '%s'", path);
-        for (char *line = strtok(errors.bytes, "\n"); line; line = strtok(NULL, "\n"))
-            message("%s", line);
-    } else if (count == 0) {
-        message("written, and complete: '%s' (look at it with lopside check)", path);
+    for (char *at = lines->bytes; at && *at;) {
+        char *end = strchr(at, '\n');
+        bool left_out = false;
+        if (end)
+            *end = '\0';
+        for (size_t i = 0; but && but[i]; i++)
+            left_out = left_out || strstr(at, but[i]);
+        if (!left_out)
+            message("%s%s", head, at);
+        at = end ? end + 1 : NULL;
     }
+}
+
+/* What `check` would find wrong with the recording of a run. True where there is something. */
+static bool say_recording(const struct sheet *sheet, size_t run)
+{
+    const struct job *job = &sheet->job;
+    struct fault fault = {0};
+    struct wish wish;
+    struct look look = {0};
+    const struct look_tacho tacho_less = {.column = -1, .level = NAN, .service_rpm = NAN};
+    if (wish_init(&wish, sheet, run, NULL) != 0)
+        fault_no_memory(&fault);
+    else if (wish.recording.column_count == 0)
+        fault_set(&fault, STATUS_USAGE, "no sensor and no tacho is on: '%s'", wish.paths[0]);
+    else if (look_at(&look, &wish.recording, &tacho_less, &fault) == STATUS_DONE)
+        look_release(&look);
+    if (fault.status != STATUS_DONE)
+        message("%s (run '%s' of '%s')", fault.text, job->runs[run].name, sheet->path);
+    wish_release(&wish);
+    return fault.status != STATUS_DONE;
+}
+
+/* A sheet that reads well: are its recordings there and as it says, and is there a trial? */
+static void say_what_check_finds(const struct sheet *sheet, bool open)
+{
+    const char *plane = wish_lacks_weight(&sheet->job);
+    for (size_t i = 0; i < sheet->job.run_count; i++)
+        if (say_recording(sheet, i))
+            open = true;
+    if (plane)
+        message("no run says what was mounted: add 'weight %s = ... at ...' to the trial run's "
+                "section",
+                plane);
+    if (open || plane)
+        message("written, and to be completed: '%s'", sheet->path);
+    else
+        message("written, and complete: '%s' (look at it with lopside check)", sheet->path);
+}
+
+/* Says all that the sheet still lacks. */
+static int say_open_ends(const struct draft *draft)
+{
+    static const char *const listed[] = {"missing key in", "missing: ", "missing section", NULL};
+    struct sheet sheet = {0};
+    struct buffer errors = BUFFER_INIT, missing = BUFFER_INIT;
+    int count = sheet_read(&sheet, draft->output, false, &errors);
+    outline_missing(&draft->outline, count > 0, &missing);
+    const bool open = missing.length > 0;
+    buffer_add(&missing, "", 1);
+    buffer_add(&errors, "", 1);
+    if (errors.failed || missing.failed)
+        count = -1;
+    if (count > 0)
+        message("written, and to be completed: '%s'", draft->output);
+    if (count >= 0)
+        say_lines(&missing, "missing: ", NULL);
+    if (count > 0)
+        say_lines(&errors, "", open ? listed : NULL);
+    if (count == 0)
+        say_what_check_finds(&sheet, open);
+    buffer_release(&missing);
     buffer_release(&errors);
     sheet_release(&sheet);
     return count < 0 ? message_no_memory() : STATUS_DONE;
@@ -226,7 +290,7 @@ static int write_sheet(struct draft *draft)
     else
         fwrite(text.bytes, 1, text.length, stdout); /* checked when the program ends */
     if (status == STATUS_DONE && draft->output)
-        status = say_open_ends(draft->output);
+        status = say_open_ends(draft);
     buffer_release(&text);
     return status;
 }

@@ -206,3 +206,38 @@ void outline_write(const struct outline *outline, struct buffer *text)
     add_section(text, "aim", NULL, !is_known(outline->answers.target));
     add(text, "target", outline->answers.target, "1.8 mm/s rms", NULL);
 }
+
+/* ---- what a correction still needs ---- */
+
+static void add_missing_of_sensors(const struct outline *o, bool doubtful, struct buffer *lines)
+{
+    for (size_t i = 0; i < o->channels->count; i++) {
+        const struct channels_one *one = &o->channels->items[i];
+        if (one->use == CHANNELS_TIME || one->use == CHANNELS_OTHER || is_tacho(o, one) ||
+            is_known(one->unit))
+            continue;
+        if (!is_known(o->answers.unit))
+            buffer_format(lines, "'unit' in [sensor %s]\n", one->name);
+        if (doubtful && !o->channels->text && !is_known(o->answers.scale))
+            buffer_format(lines, "'scale' in [sensor %s]\n", one->name);
+    }
+}
+
+void outline_missing(const struct outline *o, bool doubtful, struct buffer *lines)
+{
+    const struct outline_answers *a = &o->answers;
+    bool tacho = is_known(a->tacho);
+    for (size_t i = 0; i < o->channels->count; i++)
+        tacho = tacho || o->channels->items[i].use == CHANNELS_TACHO;
+    if (!is_known(a->angles))
+        buffer_text(lines, "'angles' in [job]\n");
+    if (doubtful && !o->channels->text && !is_known(a->full_scale))
+        buffer_text(lines, "'full scale' in [recording]\n");
+    if (o->channels->text && !o->channels->has_rate && !is_known(a->rate))
+        buffer_text(lines, "'rate' in [recording]\n");
+    if (!tacho)
+        buffer_text(lines, "'channel' in [tacho]\n");
+    add_missing_of_sensors(o, doubtful, lines);
+    for (size_t i = 0; i < o->plane_count && !is_known(a->radius); i++)
+        buffer_format(lines, "'radius' in [plane %s]\n", o->planes[i]);
+}

@@ -34,6 +34,10 @@ struct outline {
 /* Appends the sheet to `text`; text->failed says whether memory ran out. */
 void outline_write(const struct outline *outline, struct buffer *text);
 
+/* Appends a line for each comment in the sheet that a correction needs: "'radius' in [plane wheel]\n".
+ * `doubtful`: the scale and full scale of sound files, too, which a recording may do without. */
+void outline_missing(const struct outline *outline, bool doubtful, struct buffer *lines);
+
 /* Appends a value, not "", as the sheet reads it back: quoted where that is needed. */
 void outline_value(struct buffer *text, const char *value);
 

@@ -85,6 +85,17 @@ int wish_init(struct wish *wish, const struct sheet *sheet, size_t run, const ch
     return 0;
 }
 
+const char *wish_lacks_weight(const struct job *job)
+{
+    size_t runs = 0, weights = 0;
+    for (size_t i = 0; i < job->run_count; i++) {
+        runs += !job->runs[i].role[0];
+        weights += job->runs[i].weight_count;
+    }
+    const bool lacks = job->plane_count > 0 && runs > 1 && weights == 0 && job->response_count == 0;
+    return lacks ? job->planes[0].name : NULL;
+}
+
 void wish_release(struct wish *wish)
 {
     for (size_t f = 0; wish->paths && f < wish->recording.path_count; f++)

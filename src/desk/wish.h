@@ -17,6 +17,10 @@ struct wish {
  * Borrows from the sheet. 0, or -1 when memory is out. */
 int wish_init(struct wish *wish, const struct sheet *sheet, size_t run, const char *path)
     __attribute__((warn_unused_result));
+
+/* The plane for whose weights no run gives any, where a trial is needed: there are several runs, and no
+ * stored response that could stand in for it; NULL: all is well. Borrowed. */
+const char *wish_lacks_weight(const struct job *job);
 void wish_release(struct wish *wish); /* also after a failed wish_init */
 
 #endif

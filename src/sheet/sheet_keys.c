@@ -190,6 +190,21 @@ static void tell_unknown_section(const struct sheet_section *s, size_t length,
                      sheet_keys_hint(word, names, SHEET_KINDS, hint));
 }
 
+/* What a section of that kind cannot do without; NULL: no single key. */
+static const char *needed_in(int kind)
+{
+    switch (kind) {
+    case SHEET_PLANE:
+        return "'radius'";
+    case SHEET_SENSOR:
+        return "'channel' and 'unit'";
+    case SHEET_TACHO:
+        return "'channel'";
+    default:
+        return NULL;
+    }
+}
+
 static void classify_section(struct sheet_section *s, struct sheet_errors *errors)
 {
     size_t length = strcspn(s->text, " \t");
@@ -208,7 +223,9 @@ static void classify_section(struct sheet_section *s, struct sheet_errors *error
         sheet_errors_add(errors, s->line, "%s: '[%.100s]'", fault, s->text);
         return;
     }
-    if (s->entries == 0)
+    if (s->entries == 0 && needed_in(kind))
+        sheet_errors_add(errors, s->line, "missing: %s in '[%.100s]'", needed_in(kind), s->text);
+    else if (s->entries == 0)
         sheet_errors_add(errors, s->line, "empty section: '[%.100s]'", s->text);
     s->kind = kind;
     s->name = name;

@@ -218,6 +218,46 @@ class New(unittest.TestCase):
                      "radius = 600 mm", "weight rotor = 70 g at position 3"):
             self.assertRegex(text, "(?m)^" + re.escape(line))
 
+    def told(self, *args):
+        (self.top / "job.ini").unlink(missing_ok=True)
+        done = chain.lopside("new", "-o", "job.ini", *args, cwd=self.top)
+        self.assertEqual(done.returncode, 0, chain.complaint(done))
+        return chain.complaint(done)
+
+    def without(self, *names):
+        options = list(FAN)
+        for name in names:
+            at = options.index(name)
+            del options[at:at + 2]
+        return options
+
+    def test_complete_means_that_check_is_content(self):
+        """What `check` refuses is not complete: a full scale, a channel, a file, a trial's weight."""
+        self.put("fan", "as-found.wav", "trial.wav")
+        both = ["as-found.wav", "trial.wav"]
+        cases = ((self.without("--full-scale"), both, "add 'full scale = 10 V' under [recording]"),
+                 (FAN + ["--tacho", "7"], both, "no channel 7 for 'tacho', the recording has 3"),
+                 (self.without("--weight"), ["as-found.wav", "gone.wav"], "'gone.wav' (run 'gone' of 'job.ini')"),
+                 (self.without("--weight"), both, "no run says what was mounted: add 'weight wheel = ... at ...'"))
+        for options, files, expected in cases:
+            said = self.told(*options, *files)
+            self.assertIn(expected, said)
+            self.assertNotIn("and complete", said)
+            self.assertIn("written, and to be completed", said)
+        done = chain.lopside("check", "job.ini", cwd=self.top)
+        self.assertIn("no run says what was mounted", done.stdout.decode())
+        self.assertIn("written, and complete", self.told(*FAN, *both))
+
+    def test_all_that_is_missing_is_listed_at_once(self):
+        self.put("fan", "as-found.wav", "trial.wav")
+        said = self.told("--plane", "wheel", "as-found.wav", "trial.wav")
+        for line in ("'angles' in [job]", "'full scale' in [recording]", "'unit' in [sensor channel 1]",
+                     "'scale' in [sensor channel 2]", "'radius' in [plane wheel]"):
+            self.assertIn("missing: " + line, said)
+        self.assertNotIn("empty section", said)
+        done = chain.lopside("check", "job.ini", cwd=self.top)
+        self.assertIn("missing: 'radius' in '[plane wheel]'", chain.complaint(done))
+
     def test_end_of_answers(self):
         self.put("fan", "as-found.wav")
         code, shown = on_terminal(["new", "as-found.wav"], ["job.ini", "Fan", "\x04"], self.top)
