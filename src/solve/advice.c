@@ -163,6 +163,8 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
     double mass = cabs(a->placed_weights[plane] + a->mounted[plane]);
     double sign = job->planes[plane].work == WORK_REMOVE ? -1 : 1;
     bool mounted = a->mounted[plane] != 0;
+    const char *unit;
+    double kg = weight_unit(job, &unit);
     for (size_t i = 0; i < a->placement.best.count; i++) {
         const struct place_item *item = &a->placement.best.items[i];
         if (item->plane == plane)
@@ -178,14 +180,22 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
                                  .run = -1,
                                  .sensor = -1};
     judge(f, &l, 100 * force / load);
-    snprintf(f->text, sizeof f->text,
-             "what %s on '%s' pulls with %s N at service speed, %s %% of the static journal "
-             "load%s",
-             mounted ? "then sits" : "is placed", job->planes[plane].name, judge_figure(force, 2).text,
-             judge_figure(100 * force / load, 2).text,
-             f->verdict == ADVICE_OK ? ""
-                                     : "; check rotor mass, speed, radius and readings before it "
-                                       "is fitted");
+    struct judge_figure pull = judge_figure(force, 2), share = judge_figure(100 * force / load, 2);
+    if (f->verdict == ADVICE_REFUSE)
+        snprintf(f->text, sizeof f->text,
+                 "no weight is given, because %s on '%s', %s %s, would pull with %s N at service "
+                 "speed, %s %% of the static journal load: check rotor mass, speed, radius and "
+                 "stock",
+                 mounted ? "what would then sit" : "the one found", job->planes[plane].name,
+                 judge_figure(mass / kg, 3).text, unit, pull.text, share.text);
+    else
+        snprintf(f->text, sizeof f->text,
+                 "what %s on '%s' pulls with %s N at service speed, %s %% of the static journal "
+                 "load%s",
+                 mounted ? "then sits" : "is placed", job->planes[plane].name, pull.text, share.text,
+                 f->verdict == ADVICE_OK ? ""
+                                         : "; check rotor mass, speed, radius and readings before "
+                                           "it is fitted");
     return true;
 }
 
@@ -444,9 +454,41 @@ void advice_refused_step(const struct advice_finding *finding, struct advice_nex
     snprintf(next->reason, sizeof next->reason, "no correction: %.280s", finding->text);
 }
 
+/* Why nothing at all may stand on a plane: `text` gets it. False: something may. */
+static bool plane_excluded(const struct job *job, size_t p, char *text, size_t size)
+{
+    const struct job_plane *plane = &job->planes[p];
+    const char *unit;
+    double kg = weight_unit(job, &unit), least = INFINITY;
+    double most = fmin(plane->most, plane->most_in_all - sits_in_all(job, p));
+    bool open = plane->any_position;
+    for (size_t i = 0; i < plane->position_count; i++)
+        open = open || !plane->positions[i].taken;
+    for (size_t i = 0; i < plane->stock_count; i++)
+        least = fmin(least, plane->stock[i].mass);
+    if (!open)
+        snprintf(text, size, "all positions of '%s' are taken", plane->name);
+    else if (plane->stock_count > 0 && least > most * (1 + 1e-12))
+        snprintf(text, size,
+                 "the sheet's limits exclude every weight on '%s': smallest piece %s %s, most %s %s",
+                 plane->name, judge_figure(least / kg, 3).text, unit,
+                 judge_figure(fmax(0, most) / kg, 3).text, unit);
+    else
+        return false;
+    return true;
+}
+
 void advice_useless_step(const struct answer *a, struct advice_next *next)
 {
     *next = (struct advice_next){.step = "repeat"};
+    size_t excluded = 0;
+    for (size_t p = 0; p < a->planes; p++)
+        excluded += plane_excluded(a->model->job, p, next->reason, sizeof next->reason);
+    if (excluded == a->planes) {
+        snprintf(next->text, sizeof next->text,
+                 "%s: mend the sheet; no new run is needed", next->reason);
+        return;
+    }
     bool limits = a->placement.of_all >= a->placement.nothing;
     snprintf(next->reason, sizeof next->reason,
              "nothing that may be placed lowers the expected vibration%s",

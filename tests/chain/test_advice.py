@@ -126,6 +126,20 @@ class Step(unittest.TestCase):
             self.assertEqual(c["relative_to"], "fitted")
             self.assertAlmostEqual(c["mass"], 0.002, delta=1e-9)
 
+    def test_limits_that_exclude_all(self):
+        z, a = 30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)
+        runs = trials({"A": [z, a]}, [("P", 0.02, 30)])
+        for own, says in ((["stock = 10 g", "most = 5 g"], "smallest piece 10.0 g, most 5.00 g"),
+                          (["positions = 2 from 0 deg", "taken = 1 2"], "all positions of 'P' are taken")):
+            step = self.step(sheet({"P": own}, runs), 5)
+            self.assertIn(says, step["text"])
+
+    def test_a_weight_that_would_pull_too_hard(self):
+        z, a = 30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)
+        rotor = ["mass = 10 kg", "service speed = 1200 rpm"]  # 30 g at 0.1 m: 47 N of 49 N
+        step = self.step(sheet({"P": []}, trials({"A": [z, a]}, [("P", 0.003, 30)]), rotor=rotor), 5)
+        self.assertIn("no weight is given, because the one found on 'P', 30.0 g, would pull with 47 N", step["text"])
+
 
 if __name__ == "__main__":
     unittest.main()
