@@ -64,9 +64,11 @@ bool advice_turn(const struct model *m, size_t plane, struct advice_finding *f)
     bool mirrored = fabs(angle_wrap_180(worst.effect_deg + worst.weight_deg)) <
                     0.5 * fabs(angle_wrap_180(worst.effect_deg - worst.weight_deg));
     snprintf(f->text, sizeof f->text,
-             "from run '%s' the weight on '%s' turned by %.0f deg and its effect by %.0f deg%s",
-             m->job->runs[row->runs[worst.from]].name, m->job->planes[plane].name, worst.weight_deg,
-             worst.effect_deg,
+             "from run '%s' the weight on '%s' turned by %.0f deg %s and the lag of its effect by "
+             "%.0f deg%s",
+             m->job->runs[row->runs[worst.from]].name, m->job->planes[plane].name,
+             m->job->angles == SENSE_WITH ? -worst.weight_deg : worst.weight_deg,
+             job_sense_text(m->job), worst.effect_deg,
              f->verdict == ADVICE_OK ? ""
              : mirrored ? ", as if angles or phase were counted the other way: check the sheet's "
                           "`angles` and `phase`"

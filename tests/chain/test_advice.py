@@ -96,7 +96,7 @@ class Step(unittest.TestCase):
         runs += [(n, {"A": complex(z + a * chain.weight(0.02, d))}, [("P", 0.02, 60 - d)])
                  for n, d in (("second", 120), ("third", 210))]
         step = self.step(sheet({"P": []}, runs, ["repeatability = 1 %"]), 4)
-        self.assertRegex(step["text"], "^from run '.*counted the other way.*; run.*: check its weights")
+        self.assertRegex(step["text"], "^from run '.* deg against rotation .*counted the other way.*; run.*: check its weights")
 
     def test_a_target_that_will_be_missed(self):
         """The only position is 60 deg off: 30 um sin 60 deg stay; of two sensors that want opposite weights half stays."""
