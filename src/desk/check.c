@@ -1,5 +1,6 @@
 #include "desk/check.h"
 
+#include <complex.h>
 #include <math.h>
 #include <stdint.h>
 #include <stdio.h>
@@ -15,6 +16,11 @@
 #include "sheet/sheet.h"
 #include "sheet/units.h"
 
+/* Common practice: no machine that runs shakes more, and none is as still. A wrong scale or full scale
+ * does that. */
+#define VELOCITY_MOST 0.2    /* m/s rms at 1x */
+#define VELOCITY_LEAST 1e-5  /* m/s rms at 1x */
+#define ACCELERATION_MOST 49 /* m/s2 rms at 1x: 5 g */
 #define SPEED_OFF 0.1 /* the refusal of vet's check `service-speed` */
 
 struct check {
@@ -129,7 +135,50 @@ static void print_column(const struct check *check, const struct wish *wish,
     putchar('\n');
 }
 
-static void print_look(struct check *check, const struct wish *wish, const struct look *look)
+/* 1x of each sensor as it is shown. */
+static void print_once(const struct check *check, const struct wish *wish, const struct look *look,
+                       double speed)
+{
+    bool begun = false;
+    for (size_t c = 0; c < look->count; c++) {
+        if (wish->sensors[c] < 0 || !(look->columns[c].once > 0))
+            continue;
+        const struct job_sensor *sensor = &check->sheet.job.sensors[wish->sensors[c]];
+        char unit[24];
+        const double peak = cabs(
+            units_convert(look->columns[c].once, sensor->quantity, sensor->show.quantity, speed));
+        fputs(begun ? ", " : "    1x: ", stdout);
+        print_text(sensor->name, 0);
+        printf(" %.3g %s", units_shown(peak, &sensor->show), units_show_text(&sensor->show, unit));
+        begun = true;
+    }
+    if (begun)
+        putchar('\n');
+}
+
+/* `still` may be right: at slow roll. */
+static void remark_once(struct check *check, const struct wish *wish, const struct look *look,
+                        double speed, bool still)
+{
+    for (size_t c = 0; c < look->count; c++) {
+        const struct look_column *column = &look->columns[c];
+        if (wish->sensors[c] < 0 || !(column->resolution > 0) || isnan(column->once))
+            continue;
+        const enum quantity from = check->sheet.job.sensors[wish->sensors[c]].quantity;
+        const double velocity =
+            cabs(units_convert(column->once, from, QUANTITY_VELOCITY, speed)) / sqrt(2);
+        const bool much = velocity > VELOCITY_MOST || velocity * speed > ACCELERATION_MOST;
+        if (!much && (still || velocity >= VELOCITY_LEAST))
+            continue;
+        begin_remark(check, wish->columns[c].name);
+        printf("implausibly %s at 1x, %.2g mm/s rms or %.2g g rms: check scale and full scale",
+               much ? "large" : "small", velocity * 1e3, velocity * speed / 9.80665);
+        end_remark(check);
+    }
+}
+
+static void print_look(struct check *check, const struct wish *wish, const struct look *look,
+                       const char *role)
 {
     printf("  %.4g s at %.6g Hz", (double)look->frames / look->rate_hz, look->rate_hz);
     if (look->seen < look->frames)
@@ -140,8 +189,34 @@ static void print_look(struct check *check, const struct wish *wish, const struc
         print_column(check, wish, look, c);
     for (size_t c = 0; c < look->count; c++)
         remark_signal(check, look, c, wish->columns[c].name, wish->tacho == (int)c, wish->columns);
-    if (wish->tacho >= 0)
-        remark_tacho(check, &look->columns[wish->tacho]);
+    if (wish->tacho < 0)
+        return;
+    remark_tacho(check, &look->columns[wish->tacho]);
+    const double speed = look->columns[wish->tacho].speed_rpm * 2 * acos(-1) / 60; /* rad/s */
+    if (!(speed > 0) || !strcmp(role, "coast-down")) /* there is no one amplitude */
+        return;
+    print_once(check, wish, look, speed);
+    remark_once(check, wish, look, speed, role[0] != '\0');
+}
+
+/* All that is mounted in a run, as the sheet counts angles. */
+static void print_weights(const struct job *job, const struct job_run *run)
+{
+    const bool us = job->units == UNITS_US;
+    for (size_t i = 0; i < run->weight_count; i++) {
+        const struct job_weight *w = &run->weights[i];
+        fputs("  weight ", stdout);
+        print_text(job->planes[w->plane].name, 0);
+        printf(": %.4g %s at %.4g deg %s",
+               w->mounted_mass / units_factor(DIMENSION_MASS, us ? "oz" : "g"), us ? "oz" : "g",
+               job_sheet_angle(job, w->angle_deg), job_sense_text(job));
+        if (w->position > 0)
+            printf(", position %d", w->position);
+        if (w->radius_m != job->planes[w->plane].radius_m)
+            printf(", radius %.4g %s",
+                   w->radius_m / units_factor(DIMENSION_LENGTH, us ? "in" : "mm"), us ? "in" : "mm");
+        putchar('\n');
+    }
 }
 
 static void print_run_head(const struct check *check, size_t run, const char *path)
@@ -160,6 +235,7 @@ static void print_run_head(const struct check *check, size_t run, const char *pa
         print_text(check->sheet.runs[run].files[f], 0);
     }
     puts(check->sheet.job.runs[run].hand_count > 0 ? ": by hand" : "");
+    print_weights(&check->sheet.job, &check->sheet.job.runs[run]);
 }
 
 /* Run `run` of the sheet, or the recording `path`. A failure is noted, and the next is looked at.
@@ -184,7 +260,7 @@ static void check_run(struct check *check, size_t run, const char *path)
                                      .service_rpm = job->service_rpm};
     if (fault.status == STATUS_DONE &&
         look_at(&look, &wish.recording, &tacho, &fault) == STATUS_DONE)
-        print_look(check, &wish, &look);
+        print_look(check, &wish, &look, path ? "" : job->runs[run].role);
     fflush(stdout); /* what is said stands behind the run's head */
     if (fault.status != STATUS_DONE) {
         if (path || fault.status == STATUS_SYSTEM)

@@ -1,5 +1,6 @@
 #include "desk/look.h"
 
+#include <complex.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -131,6 +132,21 @@ static void note_pulses(struct look_column *column, const struct tracker *tracke
     column->speed_rpm = column->pulses ? tracker_speed(tracker) : NAN;
 }
 
+/* The mean 1x vector of a sensor over the blocks, each with its turns, as an amplitude. The sensors are the
+ * columns but the tacho, in their order. */
+static double amplitude(const struct tracker *tracker, size_t column)
+{
+    const struct windows *windows = &tracker->windows;
+    const size_t sensor = column - ((int)column > tracker->tacho);
+    double complex sum = 0;
+    double turns = 0, rest;
+    for (size_t b = 0; b < windows->count; b++) {
+        sum += (double)windows->blocks[b].turns * window_vector(windows, b, sensor, &rest);
+        turns += (double)windows->blocks[b].turns;
+    }
+    return turns > 0 ? cabs(sum) / turns : NAN;
+}
+
 static void note(struct look *look, struct glance *glance, int tacho)
 {
     for (size_t c = 0; c < look->count; c++) {
@@ -142,9 +158,12 @@ static void note(struct look *look, struct glance *glance, int tacho)
                                        .resolution = channel_resolution(channel),
                                        .railed = channel_railed(channel),
                                        .same_as = channel_pairs_same(&glance->all.pairs, c),
-                                       .speed_rpm = NAN};
+                                       .speed_rpm = NAN,
+                                       .once = NAN};
         if (tacho == (int)c)
             note_pulses(column, &glance->all);
+        else if (tacho >= 0 && tracker_regular(&glance->all) && tracker_reference(&glance->all))
+            column->once = amplitude(&glance->all, c);
         if (glance->each) {
             note_pulses(column, &glance->each[c]);
             column->two_levels = look_extremes(&glance->sampled[c * SAMPLED],

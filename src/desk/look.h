@@ -21,6 +21,7 @@ struct look_column {
     bool reference;    /* and that are one place on the shaft */
     bool two_levels;   /* looked at as a tacho: nearly always at one of two levels */
     double speed_rpm;  /* NaN: unknown */
+    double once;       /* 1x amplitude (peak), SI of the column; NaN: not known, no tacho that tells */
 };
 
 struct look {

@@ -312,14 +312,16 @@ class Check(unittest.TestCase):
     def test_remarks(self):
         t = numpy.arange(25600) / 2560
         pulses = ((t * 985 / 60) % 1 < 0.05) * 0.5
-        hum = 0.1 * numpy.sin(2 * numpy.pi * 985 / 60 * t + 0.3)
-        noise = 0.02 * numpy.random.default_rng(2).standard_normal(len(t))
+        hum = 0.002 * numpy.sin(2 * numpy.pi * 985 / 60 * t + 0.3)  # 20 mV, 0.2 g, 19 mm/s
+        noise = 0.0004 * numpy.random.default_rng(2).standard_normal(len(t))
         cases = {
             "good": ([hum + noise, 0.5 * hum - noise[::-1], pulses], []),
             "dead": ([hum + noise, 0 * hum, pulses], ["DE-H: no signal"]),
             "same": ([hum + noise, hum + noise, pulses], ["DE-V: the same signal as 'DE-H'",
                                                           "DE-H: the same signal as 'DE-V'"]),
-            "clip": ([(20 * (hum + noise)).clip(-1, 1), noise + hum, pulses], ["DE-V: ", "at full scale"]),
+            "clip": ([(1000 * (hum + noise)).clip(-1, 1), noise + hum, pulses], ["DE-V: ", "at full scale"]),
+            "loud": ([100 * hum, hum + noise, pulses], ["DE-V: implausibly large at 1x", "check scale and full scale"]),
+            "still": ([0.05 * noise, hum + noise, pulses], ["DE-V: implausibly small at 1x"]),
             "mute": ([hum + noise, hum - noise[::-1], 0 * t], ["tacho: no signal", "tacho: no regular pulses"]),
             "fast": ([hum + noise, hum - noise[::-1], ((t * 985 / 30) % 1 < 0.05) * 0.5],
                      ["tacho: 1970 rpm, and the service speed is 985 rpm"]),
@@ -347,6 +349,21 @@ class Check(unittest.TestCase):
         self.assertEqual(said, "")
         self.assertIn("radios", complaint)
         self.check(code=2)
+
+    def test_weights_and_amplitudes(self):
+        """1x of an exact sine: 0.2 g peak at 985 rpm is 0.2 * 9806.65 / (2 pi 985 / 60) / sqrt 2 mm/s rms."""
+        t = numpy.arange(25600) / 2560
+        hum = numpy.sin(2 * numpy.pi * 985 / 60 * t)
+        write_wav(self.top / "a.wav", [0.002 * hum, 0.004 * hum, ((t * 985 / 60) % 1 < 0.05) * 0.5])
+        (self.top / "job.ini").write_text(self.sheet() + f"[run a]\nfile = a.wav\nweight wheel = {WEIGHT}\n")
+        said, _ = self.check("job.ini")
+        got = re.search(r"(?m)^    1x: DE-V (\S+) mm/s rms, DE-H (\S+) mm/s rms$", said)
+        self.assertTrue(got, said)
+        for value, peak in ((got[1], 0.2), (got[2], 0.4)):
+            expected = peak * 9806.65 / (2 * numpy.pi * 985 / 60) / 2 ** 0.5
+            self.assertAlmostEqual(float(value), expected, delta=0.01 * expected)
+        mass, position = re.search(r"([\d.]+) g at position (\d+)", WEIGHT).groups()
+        self.assertRegex(said, rf"(?m)^  weight wheel: {mass} g at [\d.]+ deg \w+ rotation, position {position}$")
 
     def test_what_to_add_is_named(self):
         """A full scale that is missing: the line to add, the sheet and the run; the same from `balance`."""
