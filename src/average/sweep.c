@@ -19,6 +19,10 @@ static const size_t NOISE_BLOCKS = 48; /* nearest in speed that tell the noise o
 static const double NOISE_LEAST = 8;   /* third differences, at least */
 static const double SINGULAR = 1e-9;   /* of a pivot against the largest: rounding of the sums */
 static const double SECOND_TERM = 3;   /* second over squared first term at a resonance's peak */
+static const double FAR_LESS = 0.12; /* of the variance: in plain noise the least of several is only
+                                        luck; from the campaign of the test */
+static const double SURER_MOST =
+    16; /* times smaller a variance: that few blocks agree is no proof */
 static const double FREEDOM_LEAST =
     2; /* below, a scatter says nothing, and a multiple of it less */
 
@@ -299,9 +303,30 @@ static double honest(const struct local *l, const struct local *narrower)
     return variance;
 }
 
+/* The fit to use of `count` that agree, the narrowest first, and its variance: the widest, unless a
+ * narrower one has far less to fear, as near a resonance, where the widest holds more bend than
+ * noise.
+ */
+static const struct local *choose(const struct local *tries, size_t count, double *variance)
+{
+    const struct local *best = &tries[count - 1];
+
+    *variance = honest(best, count > 1 ? best - 1 : NULL);
+    double limit = FAR_LESS * *variance, floor = *variance / SURER_MOST;
+    for (size_t i = count - 1; i-- > 1;) {
+        double own = honest(&tries[i], &tries[i - 1]);
+        if (own < limit) {
+            limit = *variance = own;
+            best = &tries[i];
+        }
+    }
+    *variance = fmax(*variance, floor);
+    return best;
+}
+
 int sweep_at(const struct sweep *sweep, double speed_rpm, struct sweep_fit *fit)
 {
-    struct local tries[TRIES_MOST];
+    struct local tries[TRIES_MOST] = {0};
     size_t count = 0, reach = SWEEP_LEAST;
     struct point *points;
     struct noise noise;
@@ -334,11 +359,10 @@ int sweep_at(const struct sweep *sweep, double speed_rpm, struct sweep_fit *fit)
     if (result == SWEEP_MADE && count == 0)
         result = SWEEP_SPARSE;
     if (result == SWEEP_MADE) {
-        const struct local *l = &tries[count - 1];
-        *fit = (struct sweep_fit){.vector = l->a,
-                                  .variance = honest(l, count > 1 ? l - 1 : NULL),
-                                  .used = l->used,
-                                  .freedom = l->freedom};
+        double variance;
+        const struct local *l = choose(tries, count, &variance);
+        *fit = (struct sweep_fit){
+            .vector = l->a, .variance = variance, .used = l->used, .freedom = l->freedom};
         for (size_t k = 0; k < l->used; k++)
             fit->turns += points[k].turns;
     }

@@ -36,10 +36,10 @@ enum sweep_result { SWEEP_MADE, SWEEP_OUTSIDE, SWEEP_SPARSE };
  *
  * Five blocks and more are tried; the widest neighbourhood is taken whose result agrees with all
  * narrower ones (intersection of confidence intervals, A. Goldenshluger & A. Nemirovski, Math.
- * Methods Stat. 6 (1997) 135-170). The variance comes from the residuals there, with their lag-1
- * correlation, widened for few degrees of freedom like mean.h's, plus what the result still moved
- * from the narrower neighbourhood beyond its own scatter, plus the order of the second term of the
- * late answer.
+ * Methods Stat. 6 (1997) 135-170), or a narrower one whose variance is far less. The variance comes
+ * from the residuals there, with their lag-1 correlation, widened for few degrees of freedom like
+ * mean.h's, plus what the result still moved from the narrower neighbourhood beyond its own
+ * scatter, plus the order of the second term of the late answer.
  *
  * Returns SWEEP_MADE; SWEEP_OUTSIDE where the speed is not among those recorded (half of a block's
  * own sweep is allowed beyond the first and the last) or lies in a gap between them; SWEEP_SPARSE

@@ -126,6 +126,9 @@ static void compare(double start, double sweep, double damping, long turns)
         if (!(fabs(size) < 0.02 && fabs(lag) < 2)) /* the bar: 2 % and 2 deg up to 20 rpm/s */
             fail_msg("%g rpm/s, damping %g, %g rpm: %+.2f %% %+.2f deg", sweep, damping, SPEEDS[i],
                      100 * size, lag);
+        double miss = cabs(fit.vector - z); /* not less sure than it need be, and yet not too sure */
+        assert_true(sqrt(fit.variance) < 0.012 * cabs(z));
+        assert_true(miss * miss < 5.99146 * fit.variance || miss < 2e-4 * cabs(z));
     }
 }
 
