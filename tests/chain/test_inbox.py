@@ -174,6 +174,19 @@ class Inbox(unittest.TestCase):
         self.assertIn("1 answered", run(self.inbox, self.outbox).stdout)
         self.assertIn("later", (self.outbox / "a" / "report.txt").read_text())
 
+    def test_status_tells_what_to_read_first(self):
+        # 12 positions and pieces of 10 g leave far more than 0.01 mm/s of 7.2
+        put(self.inbox, "a", {"job.ini": BY_HAND.format(title="x") + "[aim]\ntarget = 0.01 mm/s rms\n"})
+        put(self.inbox, "b", {"job.ini": BY_HAND.format(title="x")})
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 0)
+        for name in "ab":
+            stream = chain.records((self.outbox / name / "stream.jsonl").read_bytes())
+            cautions = [f["check"] for f in chain.kind(stream, "finding") if f["verdict"] == "caution"]
+            self.assertEqual("target-missed" in cautions, name == "a")
+            self.assertIn("weight-force", cautions)  # 590 N against half of 340 kg
+            self.assertEqual(status(self.outbox, name)[1], "0 done, next: correct" + (
+                ", target not expected" if name == "a" else "") + f"; cautions: {len(cautions)}")
+
     def test_audit(self):
         job = recorded(self.inbox, "audit", audit=True)
         (job / "photo.jpg").write_bytes(b"x")
