@@ -424,7 +424,10 @@ void advice_missing_step(const struct model *m, const struct ruling *ruling,
         if (plane_is_bare(job, p) && !m->held[p]) {
             snprintf(next->reason, sizeof next->reason,
                      "a run is missing: none carries a weight on plane '%s'", job->planes[p].name);
-            snprintf(next->text, sizeof next->text, "run with a trial weight on");
+            snprintf(next->text, sizeof next->text,
+                     m->last_run >= 0 && !job_run_is_bare(job, (size_t)m->last_run)
+                         ? "take the other trial weights off and run with a trial weight on"
+                         : "run with a trial weight on");
             list_trials(m, next);
             return;
         }
@@ -441,11 +444,16 @@ void advice_missing_step(const struct model *m, const struct ruling *ruling,
         if (!ruling->row->posterior.known[p + 1])
             length += (size_t)snprintf(names + length, sizeof names - length, "%s'%s'",
                                        length ? " and " : "", job->planes[p].name);
+    bool one = job->plane_count == 1 && ruling->row;
+    const char *sensor = one ? job->sensors[ruling->row->sensor].name : "";
     snprintf(next->reason, sizeof next->reason,
-             "a run is missing: the weights on planes %s never change apart from each other",
-             names);
-    snprintf(next->text, sizeof next->text, "run with a trial weight on one of the planes %s alone",
-             names);
+             one ? "a run is missing: none with a weight on plane %s has a reading of '%s'"
+                 : "a run is missing: the weights on planes %s never change apart from each other",
+             names, sensor);
+    snprintf(next->text, sizeof next->text,
+             one ? "run with a trial weight on plane %s and sensor '%s' in place"
+                 : "run with a trial weight on one of the planes %s alone",
+             names, sensor);
 }
 
 void advice_refused_step(const struct advice_finding *finding, struct advice_next *next)
@@ -456,36 +464,12 @@ void advice_refused_step(const struct advice_finding *finding, struct advice_nex
     snprintf(next->reason, sizeof next->reason, "no correction: %.280s", finding->text);
 }
 
-/* Why nothing at all may stand on a plane: `text` gets it. False: something may. */
-static bool plane_excluded(const struct job *job, size_t p, char *text, size_t size)
-{
-    const struct job_plane *plane = &job->planes[p];
-    const char *unit;
-    double kg = weight_unit(job, &unit), least = INFINITY;
-    double most = fmin(plane->most, plane->most_in_all - sits_in_all(job, p));
-    bool open = plane->any_position;
-    for (size_t i = 0; i < plane->position_count; i++)
-        open = open || !plane->positions[i].taken;
-    for (size_t i = 0; i < plane->stock_count; i++)
-        least = fmin(least, plane->stock[i].mass);
-    if (!open)
-        snprintf(text, size, "all positions of '%s' are taken", plane->name);
-    else if (plane->stock_count > 0 && least > most * (1 + 1e-12))
-        snprintf(text, size,
-                 "the sheet's limits exclude every weight on '%s': smallest piece %s %s, most %s %s",
-                 plane->name, judge_figure(least / kg, 3).text, unit,
-                 judge_figure(fmax(0, most) / kg, 3).text, unit);
-    else
-        return false;
-    return true;
-}
-
 void advice_useless_step(const struct answer *a, struct advice_next *next)
 {
     *next = (struct advice_next){.step = "repeat"};
     size_t excluded = 0;
     for (size_t p = 0; p < a->planes; p++)
-        excluded += plane_excluded(a->model->job, p, next->reason, sizeof next->reason);
+        excluded += sits_nowhere(a->model->job, p, next->reason, sizeof next->reason);
     if (excluded == a->planes) {
         snprintf(next->text, sizeof next->text,
                  "%s: mend the sheet; no new run is needed", next->reason);

@@ -1,8 +1,10 @@
 #include "solve/sits.h"
 
 #include <math.h>
+#include <stdio.h>
 
 #include "base/angle.h"
+#include "solve/judge.h"
 
 /* The weights that stay on; their number is 0 where everything comes off. */
 static size_t staying(const struct job *job, const struct job_weight **weights)
@@ -61,4 +63,27 @@ double sits_in_all(const struct job *job, size_t plane)
     for (size_t n = staying(job, &w); n > 0; n--, w++)
         sum += w->plane == plane ? counted(job, w) : 0;
     return sum;
+}
+
+bool sits_nowhere(const struct job *job, size_t p, char *text, size_t size)
+{
+    const struct job_plane *plane = &job->planes[p];
+    const char *unit = job->units == UNITS_US ? "oz" : "g";
+    double kg = job->units == UNITS_US ? 0.45359237 / 16 : 1e-3, least = INFINITY;
+    double most = fmin(plane->most, plane->most_in_all - sits_in_all(job, p));
+    bool open = plane->any_position;
+    for (size_t i = 0; i < plane->position_count; i++)
+        open = open || !plane->positions[i].taken;
+    for (size_t i = 0; i < plane->stock_count; i++)
+        least = fmin(least, plane->stock[i].mass);
+    if (!open)
+        snprintf(text, size, "all positions of '%s' are taken", plane->name);
+    else if (plane->stock_count > 0 && least > most * (1 + 1e-12))
+        snprintf(text, size,
+                 "the sheet's limits exclude every weight on '%s': smallest piece %s %s, most %s %s",
+                 plane->name, judge_figure(least / kg, 3).text, unit,
+                 judge_figure(fmax(0, most) / kg, 3).text, unit);
+    else
+        return false;
+    return true;
 }

@@ -3,6 +3,7 @@
 #ifndef LOPSIDE_SOLVE_SITS_H
 #define LOPSIDE_SOLVE_SITS_H
 
+#include <stdbool.h>
 #include <stddef.h>
 
 #include "stream/job.h"
@@ -21,5 +22,8 @@ double sits_equivalent(const struct job *job, size_t plane, double angle_deg);
  * added to, removed ones on a plane that is drilled or ground. */
 double sits_at(const struct job *job, size_t plane, double angle_deg);
 double sits_in_all(const struct job *job, size_t plane);
+
+/* True where the sheet's limits let nothing at all stand on a plane: `text` says why. */
+bool sits_nowhere(const struct job *job, size_t plane, char *text, size_t size);
 
 #endif
