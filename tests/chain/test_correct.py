@@ -391,7 +391,11 @@ class Fitting(unittest.TestCase):
         slow = 12 * cmath.exp(-2j)
         runs = [(n, {"A": r["A"], "B": r["B"] + slow}, w) for n, r, w in trials(truth, [("P", 0.02, 30)])]
         runs.append(("slow roll", {"B": slow}, [], ["role = runout", "speed = 200 rpm"]))
-        stream = stream_of(sheet({"P": []}, runs), 4)
+        with chain.folder() as where:
+            path = where / "job.ini"
+            path.write_text(sheet({"P": []}, runs))
+            vetted = chain.through(chain.STAGES[:-1], b"", 4, read=[path])
+        stream = chain.records(chain.through(["solve"], vetted, 4))
         self.assertEqual(chain.kind(stream, "placement"), [])
         (f,) = [f for f in findings(stream, "runout") if f["verdict"] == "refuse"]
         self.assertEqual((f["sensor"], f["run"]), ("A", "slow roll"))
