@@ -170,8 +170,8 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
     for (size_t i = 0; i < a->placement.best.count; i++) {
         const struct place_item *item = &a->placement.best.items[i];
         if (item->plane == plane)
-            mass = fmax(mass, fabs(sign * item->mass +
-                                   sits_equivalent(job, plane, item->angle_deg)));
+            mass =
+                fmax(mass, fabs(sign * item->mass + sits_equivalent(job, plane, item->angle_deg)));
     }
     double force = trial_force(mass, job->planes[plane].radius_m, job->service_rpm);
     if (!(load > 0))
@@ -194,7 +194,8 @@ bool advice_force(const struct answer *a, size_t plane, struct advice_finding *f
         snprintf(f->text, sizeof f->text,
                  "what %s on '%s' pulls with %s N at service speed, %s %% of the static journal "
                  "load%s",
-                 mounted ? "then sits" : "is placed", job->planes[plane].name, pull.text, share.text,
+                 mounted ? "then sits" : "is placed", job->planes[plane].name, pull.text,
+                 share.text,
                  f->verdict == ADVICE_OK ? ""
                                          : "; check rotor mass, speed, radius and readings before "
                                            "it is fitted");
@@ -471,8 +472,8 @@ void advice_useless_step(const struct answer *a, struct advice_next *next)
     for (size_t p = 0; p < a->planes; p++)
         excluded += sits_nowhere(a->model->job, p, next->reason, sizeof next->reason);
     if (excluded == a->planes) {
-        snprintf(next->text, sizeof next->text,
-                 "%s: mend the sheet; no new run is needed", next->reason);
+        snprintf(next->text, sizeof next->text, "%s: mend the sheet; no new run is needed",
+                 next->reason);
         return;
     }
     bool limits = a->placement.of_all >= a->placement.nothing;

@@ -225,8 +225,8 @@ void notes_speed(const struct job *job, const struct slope_match *match, struct 
         judge_figure(units_shown(shown, &s->show), 2).text, units_show_text(&s->show, unit));
 }
 
-/* The ideal least-squares weight leaves so much of as found that something else is wrong: our choice,
- * a single plane of a rigid rotor that is out in one plane leaves a few percent. */
+/* The ideal least-squares weight leaves so much of as found that something else is wrong: our
+ * choice, a single plane of a rigid rotor that is out in one plane leaves a few percent. */
 #define LEFT_MOST 0.3
 
 /* Share of the vibration that the least-squares weight leaves at a row. */
@@ -266,12 +266,12 @@ bool notes_target(const struct answer *a, struct advice_finding *f)
                                  .verdict = ADVICE_CAUTION,
                                  .value = 100 * cabs(worst->after) / target,
                                  .limit = 100};
-    size_t n = (size_t)snprintf(f->text, sizeof f->text,
-                                "this will not meet the target at '%s' (%s of %s %s expected): ",
-                                s->name,
-                                shown ? judge_figure(units_shown(after, &s->show), 3).text : "more",
-                                shown ? judge_figure(units_shown(aimed, &s->show), 3).text : "it",
-                                shown ? units_show_text(&s->show, unit) : "");
+    size_t n =
+        (size_t)snprintf(f->text, sizeof f->text,
+                         "this will not meet the target at '%s' (%s of %s %s expected): ", s->name,
+                         shown ? judge_figure(units_shown(after, &s->show), 3).text : "more",
+                         shown ? judge_figure(units_shown(aimed, &s->show), 3).text : "it",
+                         shown ? units_show_text(&s->show, unit) : "");
     snprintf(f->text + n, sizeof f->text - n, "%s",
              share_left(a, worst->row) > LEFT_MOST
                  ? "even the ideal weight leaves much of it; weights on these planes cannot do it "

@@ -90,8 +90,8 @@ static double larger_trial(const struct job *job, const struct remedy_cause *cau
     return NAN;
 }
 
-static void remedy_words(const struct model *m, const struct remedy_cause *cause,
-                         const char *names, const char *sensors, char *text, size_t size)
+static void remedy_words(const struct model *m, const struct remedy_cause *cause, const char *names,
+                         const char *sensors, char *text, size_t size)
 {
     const struct job *job = m->job;
     bool us = job->units == UNITS_US;
@@ -146,9 +146,8 @@ static void append(struct advice_next *next, const char *more)
 }
 
 /* The refusing cause of the lowest rank above `above` of the aim's sensors; NULL: none. */
-static const struct remedy_cause *next_cause(const struct model *m,
-                                             const struct remedy_cause *causes, size_t count,
-                                             int above)
+static const struct remedy_cause *
+next_cause(const struct model *m, const struct remedy_cause *causes, size_t count, int above)
 {
     const struct remedy_cause *best = NULL;
     for (size_t i = 0; i < count; i++) {

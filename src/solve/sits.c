@@ -79,10 +79,11 @@ bool sits_nowhere(const struct job *job, size_t p, char *text, size_t size)
     if (!open)
         snprintf(text, size, "all positions of '%s' are taken", plane->name);
     else if (plane->stock_count > 0 && least > most * (1 + 1e-12))
-        snprintf(text, size,
-                 "the sheet's limits exclude every weight on '%s': smallest piece %s %s, most %s %s",
-                 plane->name, judge_figure(least / kg, 3).text, unit,
-                 judge_figure(fmax(0, most) / kg, 3).text, unit);
+        snprintf(
+            text, size,
+            "the sheet's limits exclude every weight on '%s': smallest piece %s %s, most %s %s",
+            plane->name, judge_figure(least / kg, 3).text, unit,
+            judge_figure(fmax(0, most) / kg, 3).text, unit);
     else
         return false;
     return true;
