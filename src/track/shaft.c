@@ -251,6 +251,7 @@ static void join(const struct shaft_knot *a, const struct shaft_knot *b, struct 
 
     turn->t0 = a->at;
     turn->t1 = b->at;
+    turn->ripple = NULL;
     memset(turn->c, 0, sizeof turn->c);
     /* Slopes this far from the mean of the turn are no rotor's: keep to a straight line. */
     if (!(d0 > 0.4 && d0 < 2.5 && d1 > 0.4 && d1 < 2.5 && fabs(a0) < 2 && fabs(a1) < 2)) {

@@ -19,12 +19,22 @@
 #define SHAFT_HURRIED 3
 #define SHAFT_START 20 /* and behind the first one, so that their scatter is known */
 
+#define SHAFT_RIPPLE_ORDERS 12
+
+/* What is added to the angle within a turn, in turns: mean + sum of cosine[k]*cos((k+1)*2*pi*s) +
+ * sine[k]*sin((k+1)*2*pi*s). */
+struct shaft_ripple {
+    size_t orders;
+    double mean, cosine[SHAFT_RIPPLE_ORDERS], sine[SHAFT_RIPPLE_ORDERS];
+};
+
 /* One turn: time from t0 to t1 (samples), angle in turns c[1]*s + ... + c[5]*s^5, s =
  * (t-t0)/(t1-t0). */
 struct shaft_turn {
     double t0, t1;
     double c[6];
-    bool first, last; /* of an unbroken stretch of turns */
+    bool first, last;                  /* of an unbroken stretch of turns */
+    const struct shaft_ripple *ripple; /* borrowed; NULL: none. shaft.c knows of none */
 };
 
 struct shaft_knot { /* time of a mark, and its derivatives by turns */

@@ -54,7 +54,8 @@ int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
     tracker->sums = calloc(2 * tracker->sensors + 1, sizeof *tracker->sums);
     if (!tracker->planes || !tracker->channels || !tracker->offset || !tracker->sums ||
         (tracker->tacho < 0 && begin_tone(tracker, set_up)) ||
-        channel_pairs_init(&tracker->pairs, columns)) {
+        channel_pairs_init(&tracker->pairs, columns) ||
+        teeth_init(&tracker->teeth, set_up->marks)) {
         tracker_release(tracker);
         return -1;
     }
@@ -73,6 +74,7 @@ void tracker_release(struct tracker *tracker)
     free(tracker->sums);
     channel_pairs_release(&tracker->pairs);
     window_release(&tracker->windows);
+    teeth_release(&tracker->teeth);
     spectrum_end(&tracker->spectrum);
     tone_release(&tracker->tone);
     *tracker = (struct tracker){0};
@@ -204,6 +206,9 @@ static int take_turns(struct tracker *tracker)
             spectrum_break(&tracker->spectrum);
         }
         turn.first |= tracker->skipped;
+        if (tracker->marks.reference) {
+            teeth_bend(&tracker->teeth, &turn);
+        }
         tracker->skipped = false;
         bool ramps = window_ramps(&tracker->windows, &turn);
 
@@ -224,6 +229,7 @@ static int break_stretch(struct tracker *tracker)
     int failed = take_turns(tracker);
 
     shaft_restart(&tracker->shaft);
+    teeth_break(&tracker->teeth);
     tracker->skipped = true;
     return failed;
 }
@@ -234,6 +240,7 @@ static int take_marks(struct tracker *tracker, const struct mark *marks, size_t 
         if (marks[i].breaks && break_stretch(tracker)) {
             return -1;
         }
+        teeth_mark(&tracker->teeth, marks[i].at, marks[i].real);
         shaft_push(&tracker->shaft, marks[i].at, marks[i].real);
         if (take_turns(tracker)) {
             return -1;
@@ -249,6 +256,7 @@ static int take_pulses(struct tracker *tracker, const struct pulse *pulses, size
     struct mark marks[MARKS_ROOM];
 
     for (size_t i = 0; i < count; i++) {
+        teeth_pulse(&tracker->teeth, pulses[i].at);
         if (take_marks(tracker, marks, marks_push(&tracker->marks, &pulses[i], marks))) {
             return -1;
         }

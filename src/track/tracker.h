@@ -18,6 +18,7 @@
 #include "track/shaft.h"
 #include "track/shape.h"
 #include "track/spectrum.h"
+#include "track/teeth.h"
 #include "track/tone.h"
 #include "track/window.h"
 
@@ -56,6 +57,7 @@ struct tracker {
     struct pulse_finder finder;
     struct marks marks;
     struct shaft shaft;
+    struct teeth teeth;
     bool skipped; /* the turn before was not usable: the next one begins a stretch */
     struct windows windows;
     struct spectrum spectrum;

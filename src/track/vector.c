@@ -37,6 +37,30 @@ static void half_angle(lanes y, lanes *sine, lanes *cosine)
     *cosine = c;
 }
 
+/* Adds the ripple at the shares s of a turn to the angle u, and its slope (by s) to `slope`: two
+ * sums over powers of exp(j*2*pi*s), by Horner's rule. */
+static void add_ripple(const struct shaft_ripple *ripple, lanes s, lanes *u, lanes *slope)
+{
+    lanes sine, cosine, re = spread(0), im = re, slope_re = re, slope_im = re;
+
+    half_angle(s - spread(0.5), &sine, &cosine);
+    lanes c = spread(2) * sine * sine - spread(1), j = spread(-2) * sine * cosine;
+
+    for (size_t k = ripple->orders; k-- > 0;) {
+        double turn = 2 * PI * (double)(k + 1);
+        lanes a = re + spread(ripple->cosine[k]), b = im - spread(ripple->sine[k]);
+
+        re = a * c - b * j;
+        im = a * j + b * c;
+        a = slope_re + spread(turn * ripple->sine[k]);
+        b = slope_im + spread(turn * ripple->cosine[k]);
+        slope_re = a * c - b * j;
+        slope_im = a * j + b * c;
+    }
+    *u += re + spread(ripple->mean);
+    *slope += slope_re;
+}
+
 void vector_weigh(struct vector_weights *weights, const struct shaft_turn *turn, double start,
                   size_t count)
 {
@@ -58,6 +82,9 @@ void vector_weigh(struct vector_weights *weights, const struct shaft_turn *turn,
         slope = slope * s + spread(3 * k[3]);
         slope = slope * s + spread(2 * k[2]);
         slope = slope * s + spread(k[1]);
+        if (turn->ripple) {
+            add_ripple(turn->ripple, s, &u, &slope);
+        }
         slope = slope * spread(step);
         half_angle(u - spread(0.5), &sine, &cosine);
         *(lanes *)(weights->angle + i) = u;
