@@ -7,24 +7,10 @@
 #define NAMED 2  /* of a list, by name; the rest is counted */
 #define CHECKS 2 /* groups of refusals in one text */
 
-static bool is_diagnosis(const char *check)
+bool remedy_is_diagnosis(const char *check)
 {
     return !strcmp(check, "lag-follows-weight") || !strcmp(check, "sensor-swapped") ||
            !strcmp(check, "tape-moved");
-}
-
-bool remedy_take(const struct job *job, const struct finding_record *f, struct remedy_cause *cause)
-{
-    bool refused = f->verdict == VERDICT_REFUSE;
-    *cause = (struct remedy_cause){.run = f->run[0] ? job_find_run(job, f->run) : -1,
-                                   .sensor = f->sensor,
-                                   .refused = refused,
-                                   .value = f->value,
-                                   .limit = f->limit};
-    memcpy(cause->check, f->check, sizeof cause->check);
-    memcpy(cause->text, f->text, sizeof cause->text);
-    return cause->run >= 0 &&
-           (refused || (is_diagnosis(f->check) && f->verdict == VERDICT_CAUTION));
 }
 
 static bool in_aim(const struct model *m, int sensor)
@@ -164,7 +150,7 @@ void remedy_step(const struct model *m, const struct remedy_cause *causes, size_
 {
     struct advice_next own = {.step = next->step};
     for (size_t i = 0; i < count && !own.text[0]; i++)
-        if (is_diagnosis(causes[i].check) && in_aim(m, causes[i].sensor))
+        if (remedy_is_diagnosis(causes[i].check) && in_aim(m, causes[i].sensor))
             snprintf(own.text, sizeof own.text, "%.250s", causes[i].text);
     int above = -1;
     bool any = own.text[0] != '\0';

@@ -7,7 +7,7 @@
 
 #include "solve/advice.h"
 #include "solve/model.h"
-#include "stream/records.h"
+#include "stream/job.h"
 
 struct remedy_cause { /* a finding above a limit, of any stage */
     char check[NAME_ROOM];
@@ -17,10 +17,9 @@ struct remedy_cause { /* a finding above a limit, of any stage */
     char text[400];
 };
 
-/* True where a finding can be a cause: refused, or one that says what is wrong with the sheet or
- * the set-up (`lag-follows-weight`, `sensor-swapped`, `tape-moved`) at caution. Fills `cause`. */
-bool remedy_take(const struct job *job, const struct finding_record *finding,
-                 struct remedy_cause *cause);
+/* True for the checks that say what is wrong with the sheet or the set-up (`lag-follows-weight`,
+ * `sensor-swapped`, `tape-moved` ...): they are causes from a caution on, the others once refused. */
+bool remedy_is_diagnosis(const char *check);
 
 /* Puts the text of the step `repeat` by the causes: first what is wrong with sheet or set-up, then
  * what was refused, by check, with all runs (two by name and how many more). Leaves `next` as it is

@@ -113,10 +113,26 @@ static int take_turns(struct solve_records *s, const struct record *record)
     return STATUS_DONE;
 }
 
+/* True where a finding can be a cause of what is to be done; fills `cause`. */
+static bool cause_of(const struct job *job, const struct finding_record *f,
+                     struct remedy_cause *cause)
+{
+    bool refused = f->verdict == VERDICT_REFUSE;
+    *cause = (struct remedy_cause){.run = f->run[0] ? job_find_run(job, f->run) : -1,
+                                   .sensor = f->sensor,
+                                   .refused = refused,
+                                   .value = f->value,
+                                   .limit = f->limit};
+    memcpy(cause->check, f->check, sizeof cause->check);
+    memcpy(cause->text, f->text, sizeof cause->text);
+    return cause->run >= 0 &&
+           (refused || (remedy_is_diagnosis(f->check) && f->verdict == VERDICT_CAUTION));
+}
+
 static int take_finding(struct solve_records *s, const struct finding_record *f)
 {
     struct remedy_cause cause;
-    if (!remedy_take(&s->stream.job, f, &cause))
+    if (!cause_of(&s->stream.job, f, &cause))
         return STATUS_DONE;
     if (s->cause_count == s->cause_room &&
         !grow((void **)&s->causes, &s->cause_room, sizeof *s->causes))
