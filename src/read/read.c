@@ -26,7 +26,7 @@
 #define BLOCK_FRAMES 16384u        /* more gain nothing in speed */
 #define BLOCK_BYTES (512u * 1024u) /* bounds the memory of many columns */
 #define COLUMN_BYTES (sizeof(float))
-#define HELD_BYTES (8u * 1024u * 1024u) /* decoded ahead of the hash; a text's is there by then */
+#define HELD_BYTES (4u * 1024u * 1024u) /* decoded ahead of the hash; a text's is there by then */
 
 struct stage {
     struct sheet sheet;
@@ -458,6 +458,8 @@ static int open_stream(struct stage *stage)
     stage->held = stage->path_count > 0 ? malloc(HELD_BYTES) : NULL;
     if (stage->path_count > 0)
         stage->queue = digest_queue_new(stage->paths, stage->path_count);
+    if (stage->held) /* touched now, so that the peak of memory does not hang on the hash's speed */
+        memset(stage->held, 0, HELD_BYTES);
     if (!stage->sink || !stage->block || (stage->path_count > 0 && (!stage->queue || !stage->held)))
         return message_no_memory();
     buffer_clear(&stage->line.text);
