@@ -112,9 +112,9 @@ class Inbox(unittest.TestCase):
     def clean(self):
         """Nothing half-done is left."""
         state = self.outbox / ".inbox"
-        for name in ("work", "old"):
+        for name in ("making", "old"):
             self.assertEqual(list((state / name).iterdir()), [], name)
-        self.assertEqual({p.name for p in state.iterdir()}, {"lock", "log", "main", "old", "seen", "work"})
+        self.assertEqual({p.name for p in state.iterdir()}, {"lock", "log", "main", "making", "old", "seen"})
 
     def test_answers(self):
         fill(self.inbox, 6)
@@ -363,7 +363,7 @@ class Inbox(unittest.TestCase):
     def test_clears_up_after_jobs_that_went(self):
         put(self.inbox, "a", {"job.ini": BY_HAND.format(title="x")})
         run(self.inbox, self.outbox)
-        (self.outbox / ".inbox" / "work" / "a" / "result").mkdir(parents=True)
+        (self.outbox / ".inbox" / "making" / "a" / "result").mkdir(parents=True)
         shutil.rmtree(self.inbox / "a")
         self.assertEqual(run(self.inbox, self.outbox).returncode, 0)
         self.assertEqual(list((self.outbox / ".inbox" / "lock").iterdir()), [])
