@@ -44,14 +44,6 @@ static void say(struct buffer *out, const char *format, va_list list)
     svg_escape(out, text);
 }
 
-void svg_say(struct buffer *out, const char *format, ...)
-{
-    va_list list;
-    va_start(list, format);
-    say(out, format, list);
-    va_end(list);
-}
-
 /* Blue and orange as in Okabe & Ito's palette for the colour-blind; every use has a shape or a line
  * style of its own besides. */
 const char *svg_style(void)

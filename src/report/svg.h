@@ -16,9 +16,6 @@ struct svg_point {
  * visible (paper_clean), then & < > " ' as entities. */
 void svg_escape(struct buffer *out, const char *text);
 
-/* The same from a format. */
-void svg_say(struct buffer *out, const char *format, ...) __attribute__((format(printf, 2, 3)));
-
 /* The rules that colour and hatch every drawing; borrowed. */
 const char *svg_style(void);
 

@@ -29,31 +29,42 @@ static double counted(const struct job *job, const struct job_weight *w)
     return fmax(0, sign * w->mounted_mass);
 }
 
-double sits_mass(const struct job *job, size_t plane, double angle_deg)
+static double mounted(const struct job *job, const struct job_weight *w)
+{
+    (void)job;
+    return w->mounted_mass;
+}
+
+static double equivalent(const struct job *job, const struct job_weight *w)
+{
+    (void)job;
+    return w->mass;
+}
+
+/* Of what stays at one place, the sum of what `of` tells of each weight. */
+static double sum_at(const struct job *job, size_t plane, double angle_deg,
+                     double (*of)(const struct job *, const struct job_weight *))
 {
     const struct job_weight *w;
     double sum = 0;
     for (size_t n = staying(job, &w); n > 0; n--, w++)
-        sum += is_here(w, plane, angle_deg) ? w->mounted_mass : 0;
+        sum += is_here(w, plane, angle_deg) ? of(job, w) : 0;
     return sum;
+}
+
+double sits_mass(const struct job *job, size_t plane, double angle_deg)
+{
+    return sum_at(job, plane, angle_deg, mounted);
 }
 
 double sits_equivalent(const struct job *job, size_t plane, double angle_deg)
 {
-    const struct job_weight *w;
-    double sum = 0;
-    for (size_t n = staying(job, &w); n > 0; n--, w++)
-        sum += is_here(w, plane, angle_deg) ? w->mass : 0;
-    return sum;
+    return sum_at(job, plane, angle_deg, equivalent);
 }
 
 double sits_at(const struct job *job, size_t plane, double angle_deg)
 {
-    const struct job_weight *w;
-    double sum = 0;
-    for (size_t n = staying(job, &w); n > 0; n--, w++)
-        sum += is_here(w, plane, angle_deg) ? counted(job, w) : 0;
-    return sum;
+    return sum_at(job, plane, angle_deg, counted);
 }
 
 double sits_in_all(const struct job *job, size_t plane)
