@@ -6,6 +6,9 @@
 
 #include <cmocka.h>
 
+#include "close_to.h"
+#include "noise_source.h"
+
 #include <math.h>
 
 #include "average/blocks.h"
@@ -14,33 +17,6 @@
 #include "average/trend.h"
 
 #define PI_HERE 3.14159265358979323846
-
-#define near(actual, expected, tolerance)                                                          \
-    do {                                                                                           \
-        double a_ = (actual), e_ = (expected);                                                     \
-        if (!(fabs(a_ - e_) <= (tolerance)))                                                       \
-            fail_msg("%s is %.10g, not %.10g within %g", #actual, a_, e_, (double)(tolerance));    \
-    } while (0)
-
-static uint64_t seed;
-
-/* SplitMix64 (Steele, Lea, Flood, OOPSLA 2014) and Box & Muller (1958). */
-static double uniform(void)
-{
-    uint64_t z = (seed += 0x9e3779b97f4a7c15u);
-
-    z = (z ^ (z >> 30)) * 0xbf58476d1ce4e5b9u;
-    z = (z ^ (z >> 27)) * 0x94d049bb133111ebu;
-    z ^= z >> 31;
-    return ((double)(z >> 11) + 0.5) / 9007199254740992.0;
-}
-
-static double complex normal(void)
-{
-    double r = sqrt(-2 * log(uniform())), a = 2 * PI_HERE * uniform();
-
-    return CMPLX(r * cos(a), r * sin(a));
-}
 
 static void a_burst_is_set_aside(void **state)
 {
@@ -97,8 +73,8 @@ static void medians(void **state)
     double odd[] = {5, 1, 3}, even[] = {4, 1, 3, 2};
 
     (void)state;
-    near(robust_median(odd, 3), 3, 0);
-    near(robust_median(even, 4), 2.5, 0);
+    assert_close(robust_median(odd, 3), 3, 0);
+    assert_close(robust_median(even, 4), 2.5, 0);
     assert_true(isnan(robust_median(odd, 0)));
 }
 
@@ -136,11 +112,11 @@ static void trend_size_is_end_to_end(void **state)
         t[i] = 3 * i;
         z[i] = 5 + (0.03 + 0.04 * I) * t[i];
     }
-    near(trend_size(z, t, 11), 0.05 * 30, 1e-9);
+    assert_close(trend_size(z, t, 11), 0.05 * 30, 1e-9);
     assert_true(isnan(trend_size(z, t, 3)));
     for (int i = 0; i < 11; i++)
         z[i] = 5;
-    near(trend_size(z, t, 11), 0, 0);
+    assert_close(trend_size(z, t, 11), 0, 0);
     z[4] = NAN;
     assert_true(isnan(trend_size(z, t, 11)));
 }
@@ -154,22 +130,22 @@ static void overalls(void **state)
     double velocity = hypot(w * 2e-6, 4 * w * 1e-6) / sqrt(2);
 
     (void)state;
-    near(overall_rms(orders, amplitude, 4, 1500, QUANTITY_DISPLACEMENT, QUANTITY_VELOCITY),
+    assert_close(overall_rms(orders, amplitude, 4, 1500, QUANTITY_DISPLACEMENT, QUANTITY_VELOCITY),
          velocity, 1e-12);
-    near(overall_rms(orders, amplitude, 4, 1500, QUANTITY_VELOCITY, QUANTITY_VELOCITY),
+    assert_close(overall_rms(orders, amplitude, 4, 1500, QUANTITY_VELOCITY, QUANTITY_VELOCITY),
          hypot(2e-6, 1e-6) / sqrt(2), 1e-15);
-    near(overall_rms(orders, amplitude, 4, 1500, QUANTITY_ACCELERATION, QUANTITY_VELOCITY),
+    assert_close(overall_rms(orders, amplitude, 4, 1500, QUANTITY_ACCELERATION, QUANTITY_VELOCITY),
          hypot(2e-6 / w, 1e-6 / (4 * w)) / sqrt(2), 1e-18);
     assert_true(
         isnan(overall_rms(orders, amplitude, 0, 1500, QUANTITY_VELOCITY, QUANTITY_VELOCITY)));
     assert_true(
         isnan(overall_rms(orders, amplitude, 4, NAN, QUANTITY_VELOCITY, QUANTITY_VELOCITY)));
     overall_band(1500, &from, &to);
-    near(from, 10, 0);
-    near(to, 1000, 0);
+    assert_close(from, 10, 0);
+    assert_close(to, 1000, 0);
     overall_band(600, &from, &to); /* 1x at 10 Hz: half of it is 5 Hz */
-    near(from, 5, 1e-12);
-    near(overall_one_x(orders, amplitude, 4), 2e-6, 0);
+    assert_close(from, 5, 1e-12);
+    assert_close(overall_one_x(orders, amplitude, 4), 2e-6, 0);
     assert_true(isnan(overall_one_x(orders + 2, amplitude + 2, 2)));
 }
 
@@ -197,7 +173,7 @@ static void many_blocks_are_packed(void **state)
         for (size_t i = 0; i < b.count; i++) {
             mean += b.vectors[i] * b.turns[i];
             kept += b.turns[i];
-            near(b.speed[i], 1200, 1e-9);
+            assert_close(b.speed[i], 1200, 1e-9);
             assert_true(i == 0 || b.t[i] > b.t[i - 1]);
         }
         /* at most less than half of a packed block, of 16, is dropped at the end */

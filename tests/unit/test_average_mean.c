@@ -6,6 +6,9 @@
 
 #include <cmocka.h>
 
+#include "close_to.h"
+#include "noise_source.h"
+
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
@@ -14,34 +17,8 @@
 #include "average/mean.h"
 
 #define MOST 80
-#define near(actual, expected, tolerance)                                                          \
-    do {                                                                                           \
-        double a_ = (actual), e_ = (expected);                                                     \
-        if (!(fabs(a_ - e_) <= (tolerance)))                                                       \
-            fail_msg("%s is %.10g, not %.10g within %g", #actual, a_, e_, (double)(tolerance));    \
-    } while (0)
-
-static uint64_t seed;
-
-/* SplitMix64 (Steele, Lea, Flood, OOPSLA 2014), to (0, 1). */
-static double uniform(void)
-{
-    uint64_t z = (seed += 0x9e3779b97f4a7c15u);
-
-    z = (z ^ (z >> 30)) * 0xbf58476d1ce4e5b9u;
-    z = (z ^ (z >> 27)) * 0x94d049bb133111ebu;
-    z ^= z >> 31;
-    return ((double)(z >> 11) + 0.5) / 9007199254740992.0;
-}
 
 /* Independent normal components of variance 1 (Box & Muller 1958). */
-static double complex normal(void)
-{
-    double r = sqrt(-2 * log(uniform())), a = 6.283185307179586 * uniform();
-
-    return CMPLX(r * cos(a), r * sin(a));
-}
-
 enum noise { WHITE, SLOW, MIXED, TREND, BURST };
 
 static void simulate(double complex *z, size_t n, enum noise kind, double r)
@@ -170,12 +147,12 @@ static void naive_formula_fails(void **state)
 static void f_points(void **state)
 {
     (void)state;
-    near(longrun_f_tail(3.48, 2, 5), 0.05, 2e-4);
-    near(longrun_f_tail(2.25, 2, 10), 0.10, 2e-4);
-    near(longrun_f_tail(2.59, 4, 8), 0.05, 2e-4);
-    near(longrun_f2_point(0.01, 5), 7.56, 0.005);
-    near(longrun_f2_point(0.05, 15), 3.32, 0.005);
-    near(longrun_f_tail(0, 3, 4), 1, 1e-15);
+    assert_close(longrun_f_tail(3.48, 2, 5), 0.05, 2e-4);
+    assert_close(longrun_f_tail(2.25, 2, 10), 0.10, 2e-4);
+    assert_close(longrun_f_tail(2.59, 4, 8), 0.05, 2e-4);
+    assert_close(longrun_f2_point(0.01, 5), 7.56, 0.005);
+    assert_close(longrun_f2_point(0.05, 15), 3.32, 0.005);
+    assert_close(longrun_f_tail(0, 3, 4), 1, 1e-15);
 }
 
 static void properties(void **state)
@@ -195,11 +172,11 @@ static void properties(void **state)
     }
     assert_int_equal(mean_of_blocks(z, turns, t, 20, &a), 0);
     assert_int_equal(mean_of_blocks(scaled, turns, t, 20, &b), 0);
-    near(cabs(b.vector - a.vector * turned), 0, 1e-12);
-    near((b.cov[0] + b.cov[2]) / (a.cov[0] + a.cov[2]), turn_size * turn_size, 1e-9);
-    near(b.independent, a.independent, 1e-9);
-    near(b.phase_sd_deg, a.phase_sd_deg, 1e-9);
-    near(a.turns, 20 * 20 + 19, 0); /* 0 1 2 0 1 2 ... over 20 blocks is 19 */
+    assert_close(cabs(b.vector - a.vector * turned), 0, 1e-12);
+    assert_close((b.cov[0] + b.cov[2]) / (a.cov[0] + a.cov[2]), turn_size * turn_size, 1e-9);
+    assert_close(b.independent, a.independent, 1e-9);
+    assert_close(b.phase_sd_deg, a.phase_sd_deg, 1e-9);
+    assert_close(a.turns, 20 * 20 + 19, 0); /* 0 1 2 0 1 2 ... over 20 blocks is 19 */
 }
 
 static void few_blocks(void **state)
@@ -211,7 +188,7 @@ static void few_blocks(void **state)
     (void)state;
     assert_int_equal(mean_of_blocks(z, turns, t, 0, &m), -2);
     assert_int_equal(mean_of_blocks(z, turns, t, 1, &m), 0);
-    near(m.cov[0], 2.5, 1e-12); /* half of the squared amplitude, 1 + 4 */
+    assert_close(m.cov[0], 2.5, 1e-12); /* half of the squared amplitude, 1 + 4 */
     assert_true(isnan(m.amplitude_sd) && isnan(m.drift));
     assert_int_equal(mean_of_blocks(z, turns, t, 2, &m), 0);
     assert_true(m.cov[0] > 0.005 / 2 && m.cov[2] > 0);
@@ -231,11 +208,11 @@ static void amplitudes_alone(void **state)
         t[i] = i;
     }
     assert_int_equal(mean_of_amplitudes(a, turns, t, 16, &m), 0);
-    near(creal(m.vector), 3, 1e-12);
+    assert_close(creal(m.vector), 3, 1e-12);
     assert_true(isnan(m.phase_sd_deg));
-    near(m.cov[0], 0.01 * 16 / 15 / 16 * (1 - 1.1 / 16),
+    assert_close(m.cov[0], 0.01 * 16 / 15 / 16 * (1 - 1.1 / 16),
          1e-9); /* variance over n, with the header's c */
-    near(m.cov[0], m.cov[2], 0);
+    assert_close(m.cov[0], m.cov[2], 0);
 }
 
 int main(void)

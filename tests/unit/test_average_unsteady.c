@@ -7,6 +7,8 @@
 
 #include <cmocka.h>
 
+#include "close_to.h"
+
 #include <math.h>
 #include <stdlib.h>
 
@@ -18,13 +20,6 @@
 
 #define PI_HERE 3.14159265358979323846
 #define MOST 256
-
-#define near(actual, expected, tolerance)                                                          \
-    do {                                                                                           \
-        double a_ = (actual), e_ = (expected);                                                     \
-        if (!(fabs(a_ - e_) <= (tolerance)))                                                       \
-            fail_msg("%s is %.10g, not %.10g within %g", #actual, a_, e_, (double)(tolerance));    \
-    } while (0)
 
 static struct rng rng;
 static double complex z[MOST];
@@ -71,10 +66,10 @@ static void a_neighbour_turns_the_vector(void **state)
             steady(n, 0.1);
             add_neighbour(n, way * 0.23, 1.5);
             struct unsteady u = judged(n);
-            near(u.beat, 1.5, 0.15); /* 2 sd of an amplitude from 20 blocks: 0.1*sqrt(2/20)/0.91*2 = 0.07 */
-            near(u.turning_hz, way * 0.23, 0.01);
-            near(u.beat_s, 1 / 0.23, 0.2);
-            near(u.step, 0, 0);
+            assert_close(u.beat, 1.5, 0.15); /* 2 sd of an amplitude from 20 blocks: 0.1*sqrt(2/20)/0.91*2 = 0.07 */
+            assert_close(u.turning_hz, way * 0.23, 0.01);
+            assert_close(u.beat_s, 1 / 0.23, 0.2);
+            assert_close(u.step, 0, 0);
         }
     }
 }
@@ -87,8 +82,8 @@ static void the_own_swing_goes_to_and_fro(void **state)
     for (int k = 0; k < 40; k++)
         z[k] *= 1 + 0.1 * sin(2 * PI_HERE * t[k] / 7.5);
     struct unsteady u = judged(40);
-    near(u.beat, 1, 0.1); /* 10 % of 10; blocks of a second weaken 7.5 s by 3 %, which is undone */
-    near(u.beat_s, 7.5, 0.2);
+    assert_close(u.beat, 1, 0.1); /* 10 % of 10; blocks of a second weaken 7.5 s by 3 %, which is undone */
+    assert_close(u.beat_s, 7.5, 0.2);
     assert_true(isnan(u.turning_hz));
 }
 
@@ -99,7 +94,7 @@ static void whole_periods_in_a_block_leave_nothing(void **state)
     rng_init(&rng, 3);
     steady(40, 0.1);
     add_neighbour(40, 2, 3);
-    near(judged(40).beat, 0, 0);
+    assert_close(judged(40).beat, 0, 0);
 }
 
 static void a_step_is_no_beat_and_no_drift(void **state)
@@ -111,9 +106,9 @@ static void a_step_is_no_beat_and_no_drift(void **state)
         for (size_t k = n / 3; k < n; k++)
             z[k] += 1.2 * I;
         struct unsteady u = judged(n);
-        near(u.step, 1.2, 0.35); /* 3 sd: 0.2*sqrt(1/8 + 1/16)*sqrt(2) = 0.12 at 24 blocks */
-        near(u.step_s, 3 + (double)n / 3 - 0.5, 1.01);
-        near(u.beat, 0, 0);
+        assert_close(u.step, 1.2, 0.35); /* 3 sd: 0.2*sqrt(1/8 + 1/16)*sqrt(2) = 0.12 at 24 blocks */
+        assert_close(u.step_s, 3 + (double)n / 3 - 0.5, 1.01);
+        assert_close(u.beat, 0, 0);
     }
 }
 
@@ -141,9 +136,9 @@ static void a_step_and_a_beat_together(void **state)
     for (size_t k = 30; k < 60; k++)
         z[k] += 3;
     struct unsteady u = judged(60);
-    near(u.step, 3, 0.2);
-    near(u.beat, 0.8, 0.1);
-    near(u.turning_hz, 0.31, 0.01);
+    assert_close(u.step, 3, 0.2);
+    assert_close(u.beat, 0.8, 0.1);
+    assert_close(u.turning_hz, 0.31, 0.01);
 }
 
 /* A slow wander of variance w2 beside white blocks: AR(1) with 20 blocks' memory. */
@@ -190,9 +185,9 @@ static void few_blocks_say_nothing(void **state)
     for (size_t k = 0; k < MOST; k++)
         z[k] = 5;
     u = judged(40); /* no scatter at all */
-    near(u.beat, 0, 0);
-    near(u.step, 0, 0);
-    near(u.wander, 0, 0);
+    assert_close(u.beat, 0, 0);
+    assert_close(u.step, 0, 0);
+    assert_close(u.wander, 0, 0);
 }
 
 struct alarms {

@@ -7,18 +7,13 @@
 
 #include <cmocka.h>
 
+#include "close_to.h"
+
 #include <math.h>
 
 #include "average/circular.h"
 
 #define COUNT(array) (sizeof(array) / sizeof *(array))
-
-#define near(actual, expected, tolerance)                                                          \
-    do {                                                                                           \
-        double a_ = (actual), e_ = (expected);                                                     \
-        if (!(fabs(a_ - e_) <= (tolerance)))                                                       \
-            fail_msg("%s is %.10g, not %.10g within %g", #actual, a_, e_, (double)(tolerance));    \
-    } while (0)
 
 /* J. H. Zar, Biostatistical Analysis, 5th ed. (2010), examples 26.2 and 26.4: mean 99 deg, r
  * 0.82522, angular deviation 34 deg, circular standard deviation 36 deg. */
@@ -28,10 +23,10 @@ static void eight_directions(void **state)
     struct circular c = circular_summary(deg, NULL, COUNT(deg));
 
     (void)state;
-    near(c.mean_deg, 99, 0.5);
-    near(c.resultant, 0.82522, 5e-6);
-    near(c.deviation_deg, 34, 0.5);
-    near(c.sd_deg, 36, 0.5);
+    assert_close(c.mean_deg, 99, 0.5);
+    assert_close(c.resultant, 0.82522, 5e-6);
+    assert_close(c.deviation_deg, 34, 0.5);
+    assert_close(c.sd_deg, 36, 0.5);
 }
 
 /* Zar (2010), examples 26.3 and 26.5, grouped in 30 deg: mean 162 deg, r 0.55064, deviation 54 deg,
@@ -46,10 +41,10 @@ static void grouped_directions(void **state)
     for (int i = 0; i < 12; i++)
         deg[i] = 15 + 30 * i;
     c = circular_summary(deg, frequency, COUNT(deg));
-    near(c.mean_deg, 162, 0.5);
-    near(c.resultant, 0.55064, 1e-5); /* the book rounds sums on the way */
-    near(c.deviation_deg, 54, 0.5);
-    near(c.sd_deg, 63, 0.5);
+    assert_close(c.mean_deg, 162, 0.5);
+    assert_close(c.resultant, 0.55064, 1e-5); /* the book rounds sums on the way */
+    assert_close(c.deviation_deg, 54, 0.5);
+    assert_close(c.sd_deg, 63, 0.5);
 }
 
 /* K. V. Mardia and P. E. Jupp, Directional Statistics (2000), example 1.1, a roulette wheel: mean
@@ -60,9 +55,9 @@ static void roulette(void **state)
     struct circular c = circular_summary(deg, NULL, COUNT(deg));
 
     (void)state;
-    near(c.mean_deg, 51, 0.5);
-    near(c.resultant, 0.711, 5e-4);
-    near(c.variance, 0.289, 5e-4);
+    assert_close(c.mean_deg, 51, 0.5);
+    assert_close(c.resultant, 0.711, 5e-4);
+    assert_close(c.variance, 0.289, 5e-4);
 }
 
 /* N. I. Fisher, Statistical Analysis of Circular Data (1993), appendix B.3, 76 turtles after
@@ -80,8 +75,8 @@ static void turtles(void **state)
 
     (void)state;
     assert_int_equal(COUNT(deg), 76);
-    near(c.mean_deg, 64.2, 0.05);
-    near(c.resultant, 0.497, 5e-4);
+    assert_close(c.mean_deg, 64.2, 0.05);
+    assert_close(c.resultant, 0.497, 5e-4);
 }
 
 /* Across north: the published test value of SciPy's circular mean, 0.167690146 deg. */
@@ -92,11 +87,11 @@ static void across_north(void **state)
     double complex z[COUNT(deg)];
 
     (void)state;
-    near(c.mean_deg, 0.167690146, 5e-10);
+    assert_close(c.mean_deg, 0.167690146, 5e-10);
     for (size_t i = 0; i < COUNT(deg); i++) /* of any length: directions alone count */
         z[i] = (double)(i + 1) * cexp(I * deg[i] * 3.14159265358979323846 / 180);
-    near(circular_of_vectors(z, COUNT(deg)).mean_deg, 0.167690146, 5e-10);
-    near(circular_of_vectors(z, COUNT(deg)).sd_deg, c.sd_deg, 1e-9);
+    assert_close(circular_of_vectors(z, COUNT(deg)).mean_deg, 0.167690146, 5e-10);
+    assert_close(circular_of_vectors(z, COUNT(deg)).sd_deg, c.sd_deg, 1e-9);
 }
 
 static void singular(void **state)
@@ -107,9 +102,9 @@ static void singular(void **state)
 
     (void)state;
     assert_true(isnan(circular_summary(opposite, NULL, 2).mean_deg));
-    near(circular_summary(opposite, NULL, 2).resultant, 0, 1e-12);
-    near(circular_summary(same, NULL, 3).sd_deg, 0, 1e-5);
-    near(circular_summary(same, NULL, 3).mean_deg, 33, 1e-9);
+    assert_close(circular_summary(opposite, NULL, 2).resultant, 0, 1e-12);
+    assert_close(circular_summary(same, NULL, 3).sd_deg, 0, 1e-5);
+    assert_close(circular_summary(same, NULL, 3).mean_deg, 33, 1e-9);
     assert_true(isnan(circular_summary(bad, NULL, 3).resultant));
     assert_true(isnan(circular_summary(same, NULL, 0).resultant));
     assert_true(isnan(circular_of_vectors(zero, 2).resultant));

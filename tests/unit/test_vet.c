@@ -145,9 +145,9 @@ static void a_drift_widens(void **state)
     vet_desk_figure(CHECK_DRIFT, 12);
     vet_desk_vectors(1);
     /* A value spread evenly over a length d has the variance d^2/12. */
-    near(desk.readings[1][0].widen[0], pow(0.12 * 7e-3, 2) / 12, 1e-15);
-    near(desk.readings[1][0].widen[2], desk.readings[1][0].widen[0], 0);
-    near(desk.readings[1][0].cov[0], 1e-10, 0);
+    assert_close(desk.readings[1][0].widen[0], pow(0.12 * 7e-3, 2) / 12, 1e-15);
+    assert_close(desk.readings[1][0].widen[2], desk.readings[1][0].widen[0], 0);
+    assert_close(desk.readings[1][0].cov[0], 1e-10, 0);
 }
 
 static void unreadable_and_dead(void **state)
@@ -285,7 +285,7 @@ static void limits_of_the_sheet(void **state)
     limits_init(&limits, &desk.job);
     assert_int_equal(limits_judge(&limits, CHECK_SPEED_MATCH, 1.5, &limit), RULING_OK);
     assert_int_equal(limits_judge(&limits, CHECK_SPEED_MATCH, 2.5, &limit), RULING_CAUTION);
-    near(limit, 2, 0);
+    assert_close(limit, 2, 0);
     assert_int_equal(limits_judge(&limits, CHECK_SPEED_MATCH, 3.5, &limit), RULING_REFUSE);
     desk.limit =
         (struct job_limit){"speed-match", false, 5, NAN}; /* beyond the refusal's default */
@@ -363,12 +363,12 @@ static void loads(void **state)
 {
     (void)state;
     vet_desk_set();
-    near(within_journal_load(&desk.job), 340 * 9.80665 / 2, 1e-9);
+    assert_close(within_journal_load(&desk.job), 340 * 9.80665 / 2, 1e-9);
     desk.job.span_m = 2;
     desk.job.centre_m = 0.5;
-    near(within_journal_load(&desk.job), 340 * 9.80665 / 4, 1e-9);
+    assert_close(within_journal_load(&desk.job), 340 * 9.80665 / 4, 1e-9);
     desk.job.centre_m = 2.4; /* overhung: the near bearing carries 1.2 times the weight */
-    near(within_journal_load(&desk.job), 340 * 9.80665 * 1.2, 1e-9);
+    assert_close(within_journal_load(&desk.job), 340 * 9.80665 * 1.2, 1e-9);
     desk.job.rotor_mass = NAN;
     assert_true(isnan(within_journal_load(&desk.job)));
 }

@@ -159,13 +159,13 @@ static void as_found(void **state)
     (void)state;
     vet_desk_set();
     desk.job_runs[3].weight_count = 0;
-    near(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0), 7e-3, 0);
+    assert_close(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0), 7e-3, 0);
     desk.readings[0][0].use = false;
-    near(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0),
+    assert_close(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0),
          cabs(4.05 + 4 * I) * 1e-3, 1e-12);
-    near(across_as_found(&desk.runs, desk.order, &desk.job, "service", 1), 7e-3, 0);
+    assert_close(across_as_found(&desk.runs, desk.order, &desk.job, "service", 1), 7e-3, 0);
     desk.readings[3][0].use = false;
-    near(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0), 7e-3, 0);
+    assert_close(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0), 7e-3, 0);
     assert_true(isnan(across_as_found(&desk.runs, desk.order, &desk.job, "hot", 0)));
 }
 

@@ -7,21 +7,15 @@
 
 #include <cmocka.h>
 
+#include "close_to.h"
+#include "noise_source.h"
+
 #include <math.h>
 
 #include "vet/beat.h"
 #include "vet/effect.h"
 #include "vet/orders.h"
 #include "vet/ruling.h"
-
-#define near(actual, expected, tolerance)                                                          \
-    do {                                                                                           \
-        double a_ = (actual), e_ = (expected);                                                     \
-        if (!(fabs(a_ - e_) <= (tolerance)))                                                       \
-            fail_msg("%s is %.10g, not %.10g within %g", #actual, a_, e_, (double)(tolerance));    \
-    } while (0)
-
-static uint64_t seed;
 
 /* The standard error of a change: cov 2 and 2 in all, repeatability 1 per component of both
  * readings, hence sqrt(2 + 2 + 4) by the law of propagation of variances. */
@@ -31,11 +25,11 @@ static void effects(void **state)
     struct effect e = effect_of(10, cov, 10 + 8 * I, cov, 1);
 
     (void)state;
-    near(e.errors, 8 / sqrt(8), 1e-12);
-    near(e.amplitude_pct, 100 * (sqrt(164) / 10 - 1), 1e-9);
-    near(e.lag_deg, atan2(8, 10) * 180 / 3.14159265358979, 1e-9);
-    near(effect_of(10, cov, 10, cov, 0).errors, 0, 0);
-    near(effect_of(cexp(I * 3.1), cov, cexp(-I * 3.1), cov, 0).lag_deg, 4.7662, 1e-4);
+    assert_close(e.errors, 8 / sqrt(8), 1e-12);
+    assert_close(e.amplitude_pct, 100 * (sqrt(164) / 10 - 1), 1e-9);
+    assert_close(e.lag_deg, atan2(8, 10) * 180 / 3.14159265358979, 1e-9);
+    assert_close(effect_of(10, cov, 10, cov, 0).errors, 0, 0);
+    assert_close(effect_of(cexp(I * 3.1), cov, cexp(-I * 3.1), cov, 0).lag_deg, 4.7662, 1e-4);
 }
 
 /* Acceleration shown as velocity: a line at order n counts 1/n of its size against 1x. */
@@ -54,32 +48,14 @@ static void lines_of_a_spectrum(void **state)
     amplitude[27] = 0.45; /* 1.75x */
     amplitude[3] = 50;    /* 0.25x: below half of 1x */
     o = orders_of(orders, amplitude, 160, 0);
-    near(o.two_x, 80, 1e-9);
-    near(o.half_order, 45, 1e-9);
-    near(o.neighbour, 37.5, 1e-9); /* root of the sum of squares, 0.75 */
-    near(o.neighbour_order, 27 / 16.0, 1e-12);
+    assert_close(o.two_x, 80, 1e-9);
+    assert_close(o.half_order, 45, 1e-9);
+    assert_close(o.neighbour, 37.5, 1e-9); /* root of the sum of squares, 0.75 */
+    assert_close(o.neighbour_order, 27 / 16.0, 1e-12);
     o = orders_of(orders, amplitude, 160, -1);
-    near(o.two_x, 40, 1e-9);
-    near(o.half_order, 30, 1e-9);
+    assert_close(o.two_x, 40, 1e-9);
+    assert_close(o.half_order, 30, 1e-9);
     assert_true(isnan(orders_of(orders, amplitude, 3, 0).two_x));
-}
-
-/* SplitMix64 (Steele, Lea, Flood, OOPSLA 2014) and Box & Muller (1958). */
-static double uniform(void)
-{
-    uint64_t z = (seed += 0x9e3779b97f4a7c15u);
-
-    z = (z ^ (z >> 30)) * 0xbf58476d1ce4e5b9u;
-    z = (z ^ (z >> 27)) * 0x94d049bb133111ebu;
-    z ^= z >> 31;
-    return ((double)(z >> 11) + 0.5) / 9007199254740992.0;
-}
-
-static double complex normal(void)
-{
-    double r = sqrt(-2 * log(uniform())), a = 2 * 3.14159265358979 * uniform();
-
-    return CMPLX(r * cos(a), r * sin(a));
 }
 
 /* Blocks of `step` seconds of 1x at `rpm` beside a neighbour's line at `hz`, averaged over each
@@ -109,12 +85,12 @@ static void beats(void **state)
     seed = 5;
     beside_neighbour(z, t, 40, 1.01, 1480, 24.9, 0.3);
     beat = beat_of(z, t, 40);
-    near(beat.swing, 2, 0.15); /* the line's own amplitude */
-    near(1480.0 / 60 - beat.turning, 24.9, 0.007);
+    assert_close(beat.swing, 2, 0.15); /* the line's own amplitude */
+    assert_close(1480.0 / 60 - beat.turning, 24.9, 0.007);
     beside_neighbour(z, t, 40, 1.01, 1480, 24.3, 0.3); /* and on the other side */
-    near(1480.0 / 60 - beat_of(z, t, 40).turning, 24.3, 0.007);
+    assert_close(1480.0 / 60 - beat_of(z, t, 40).turning, 24.3, 0.007);
     beside_neighbour(z, t, 40, 1.01, 1480, 1480.0 / 60 + 1.5 / 40, 0.3);
-    near(beat_of(z, t, 40).swing, 0, 0); /* one and a half periods are a wander */
+    assert_close(beat_of(z, t, 40).swing, 0, 0); /* one and a half periods are a wander */
     for (int k = 0; k < 1000; k++) {
         beside_neighbour(z, t, 20, 1, 1500, 25, 1); /* on 1x itself: part of the reading */
         false_alarms += beat_of(z, t, 20).swing > 0;
@@ -132,9 +108,9 @@ static void what_a_beat_leaves(void **state)
     struct beat beat = {2, -0.25, 4, 20, 1, 1.5};
 
     (void)state;
-    near(beat_variance(&beat), pow(2 / (3.14159265358979 * 5), 2) / 2, 1e-12);
+    assert_close(beat_variance(&beat), pow(2 / (3.14159265358979 * 5), 2) / 2, 1e-12);
     beat.swing = 0;
-    near(beat_variance(&beat), 0, 0);
+    assert_close(beat_variance(&beat), 0, 0);
 }
 
 /* A swing to and fro of size 2 has the root mean square 1.41, less what a block averages away. */
@@ -143,16 +119,16 @@ static void a_beat_from_elsewhere(void **state)
     struct beat own = {0, NAN, NAN, 20, 1, 1.3}, measured = {2, NAN, 8, NAN, NAN, NAN};
 
     (void)state;
-    near(beat_join(&measured, own).swing, 2, 0);
-    near(beat_join(&measured, own).duration, 20, 0);
+    assert_close(beat_join(&measured, own).swing, 2, 0);
+    assert_close(beat_join(&measured, own).duration, 20, 0);
     own.rest = 0.5; /* the blocks do not scatter that much */
-    near(beat_join(&measured, own).swing, 0, 0);
+    assert_close(beat_join(&measured, own).swing, 0, 0);
     own.rest = 1.3;
     measured.swing = NAN;
-    near(beat_join(&measured, own).swing, 0, 0);
+    assert_close(beat_join(&measured, own).swing, 0, 0);
     measured.swing = 0; /* looked for, and not found */
     own.swing = 1;
-    near(beat_join(&measured, own).swing, 0, 0);
+    assert_close(beat_join(&measured, own).swing, 0, 0);
 }
 
 static int answer(const bool *usable, const bool *in_aim, bool named)

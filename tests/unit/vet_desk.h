@@ -9,6 +9,8 @@
 
 #include <cmocka.h>
 
+#include "close_to.h"
+
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -22,13 +24,6 @@
 
 #define SENSORS 2
 #define RUNS 4
-
-#define near(actual, expected, tolerance)                                                          \
-    do {                                                                                           \
-        double a_ = (actual), e_ = (expected);                                                     \
-        if (!(fabs(a_ - e_) <= (tolerance)))                                                       \
-            fail_msg("%s is %.10g, not %.10g within %g", #actual, a_, e_, (double)(tolerance));    \
-    } while (0)
 
 /* An invented job: two sensors, two planes, runs as-found, trial A, trial B, and a repeat of trial
  * A. */
