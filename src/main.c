@@ -7,6 +7,7 @@
 
 #include "average/average.h"
 #include "base/message.h"
+#include "base/nearest.h"
 #include "base/status.h"
 #include "desk/balance.h"
 #include "desk/check.h"
@@ -44,6 +45,18 @@ static const struct command *find(const char *name)
     return NULL;
 }
 
+static int no_such_stage(const char *name)
+{
+    const char *names[sizeof commands / sizeof *commands + 1] = {"help"};
+    char hint[NEAREST_ROOM];
+    size_t count = 1;
+    for (const struct command *c = commands; c->name; c++)
+        names[count++] = c->name;
+    message("no such stage: '%s'%s (see 'lopside help')", name,
+            nearest_hint(name, names, count, hint));
+    return STATUS_USAGE;
+}
+
 static void print_help(void)
 {
     puts("lopside - from vibration recordings to a balance weight\n\n"
@@ -79,10 +92,8 @@ static int help(int argc, char **argv)
         return finish_output();
     }
     const struct command *command = find(argv[2]);
-    if (!command) {
-        message("no such stage: '%s' (see 'lopside help')", argv[2]);
-        return STATUS_USAGE;
-    }
+    if (!command)
+        return no_such_stage(argv[2]);
     char *arguments[] = {argv[2], (char *)"--help", NULL};
     return run_command(command, 2, arguments);
 }
@@ -109,9 +120,7 @@ int main(int argc, char **argv)
         return finish_output();
     }
     const struct command *command = find(argv[1]);
-    if (!command) {
-        message("no such stage: '%s' (see 'lopside help')", argv[1]);
-        return STATUS_USAGE;
-    }
+    if (!command)
+        return no_such_stage(argv[1]);
     return run_command(command, argc - 1, argv + 1);
 }

@@ -13,18 +13,37 @@
 #include "base/status.h"
 #include "desk/look.h"
 #include "desk/wish.h"
+#include "report/shown.h"
 #include "sheet/sheet.h"
 #include "sheet/units.h"
+#include "vet/within.h"
 
-/* Common practice: no machine that runs shakes more, and none is as still. A wrong scale or full scale
- * does that. */
+/* Common practice: no machine that runs shakes more, and none is as still. A wrong scale or full
+ * scale does that. */
 #define VELOCITY_MOST 0.2    /* m/s rms at 1x */
 #define VELOCITY_LEAST 1e-5  /* m/s rms at 1x */
 #define ACCELERATION_MOST 49 /* m/s2 rms at 1x: 5 g */
-#define SPEED_OFF 0.1 /* the refusal of vet's check `service-speed` */
+#define SPEED_OFF 0.1        /* the refusal of vet's check `service-speed` */
 
-struct check {
+#define TURNS_LEAST 20 /* the refusal of vet's check `length` */
+#define FORCE_MUCH                                                                                 \
+    15                /* % of the static journal load: the caution of vet's check `weight-force`   \
+                       */
+#define FORCE_MOST 50 /* its refusal */
+#define PULSES_OFF                                                                                 \
+    0.1               /* pulses a turn are a whole number, nearer than the speeds' own tolerance   \
+                       */
+#define PULSES_MOST 8 /* of more it would be guessed */
+
+struct content {     /* a file that was looked at */
+    const char *run; /* borrowed: the run's name, or the recording's path */
+    char sha256[65];
+};
+
+struct checkup {
     struct sheet sheet;
+    struct content *contents; /* owned */
+    size_t content_count;
     long remarks;
     const char *mark, *plain; /* what begins and ends a remark on a terminal; else empty */
     int status;               /* the first failure */
@@ -42,7 +61,7 @@ static void print_text(const char *text, int width)
     printf("%*s", width > 0 ? width : 0, "");
 }
 
-static void begin_remark(struct check *check, const char *name)
+static void begin_remark(struct checkup *check, const char *name)
 {
     printf("    %s! ", check->mark);
     print_text(name, 0);
@@ -50,7 +69,7 @@ static void begin_remark(struct check *check, const char *name)
     check->remarks++;
 }
 
-static void end_remark(const struct check *check)
+static void end_remark(const struct checkup *check)
 {
     printf("%s\n", check->plain);
 }
@@ -72,8 +91,8 @@ static struct show unit_of(const struct job *job, int sensor)
 
 /* ---- one run ---- */
 
-static void remark_signal(struct check *check, const struct look *look, size_t c, const char *name,
-                          bool tacho, const struct recording_column *columns)
+static void remark_signal(struct checkup *check, const struct look *look, size_t c,
+                          const char *name, bool tacho, const struct recording_column *columns)
 {
     const struct look_column *column = &look->columns[c];
     if (!(column->resolution > 0)) {
@@ -95,7 +114,7 @@ static void remark_signal(struct check *check, const struct look *look, size_t c
     }
 }
 
-static void remark_tacho(struct check *check, const struct look_column *column)
+static void remark_tacho(struct checkup *check, const struct look_column *column)
 {
     const double service = check->sheet.job.service_rpm;
     if (!column->pulses) {
@@ -108,13 +127,53 @@ static void remark_tacho(struct check *check, const struct look_column *column)
         end_remark(check);
     }
     if (column->pulses && fabs(column->speed_rpm / service - 1) > SPEED_OFF) {
+        const int marks = check->sheet.job.tacho_marks;
+        const double pulses = marks * column->speed_rpm / service, whole = round(pulses);
         begin_remark(check, "tacho");
         printf("%.0f rpm, and the service speed is %.0f rpm", column->speed_rpm, service);
+        if (fabs(pulses - whole) < PULSES_OFF && whole >= 1 && whole <= PULSES_MOST)
+            printf(": with %.0f pulse%s a turn it would be 'marks = %.0f' in [tacho]", whole,
+                   whole > 1 ? "s" : "", whole);
         end_remark(check);
     }
 }
 
-static void print_column(const struct check *check, const struct wish *wish,
+static void remark_length(struct checkup *check, const struct look *look, double rpm)
+{
+    const double turns = (double)look->frames / look->rate_hz * rpm / 60;
+    if (!(turns < TURNS_LEAST))
+        return;
+    begin_remark(check, "length");
+    printf("%.0f turns, fewer than %d carry no reading: record longer", floor(turns), TURNS_LEAST);
+    end_remark(check);
+}
+
+/* A file that another run has, too: one of them names the wrong one. 0, or -1 when memory is out.
+ */
+static int remark_content(struct checkup *check, const struct look *look, const char *run)
+{
+    struct content *contents = realloc(check->contents, (check->content_count + look->file_count) *
+                                                            sizeof *check->contents);
+    if (!contents)
+        return -1;
+    check->contents = contents;
+    for (size_t f = 0; f < look->file_count; f++) {
+        for (size_t i = 0; i < check->content_count; i++)
+            if (strcmp(contents[i].run, run) && !strcmp(contents[i].sha256, look->sha256[f])) {
+                begin_remark(check, "file");
+                fputs("the same content as in '", stdout);
+                print_text(contents[i].run, 0);
+                fputs("', to the byte", stdout);
+                end_remark(check);
+                break;
+            }
+        contents[check->content_count].run = run;
+        memcpy(contents[check->content_count++].sha256, look->sha256[f], sizeof contents->sha256);
+    }
+    return 0;
+}
+
+static void print_column(const struct checkup *check, const struct wish *wish,
                          const struct look *look, size_t c)
 {
     const struct look_column *column = &look->columns[c];
@@ -136,8 +195,8 @@ static void print_column(const struct check *check, const struct wish *wish,
 }
 
 /* 1x of each sensor as it is shown. */
-static void print_once(const struct check *check, const struct wish *wish, const struct look *look,
-                       double speed)
+static void print_once(const struct checkup *check, const struct wish *wish,
+                       const struct look *look, double speed)
 {
     bool begun = false;
     for (size_t c = 0; c < look->count; c++) {
@@ -157,7 +216,7 @@ static void print_once(const struct check *check, const struct wish *wish, const
 }
 
 /* `still` may be right: at slow roll. */
-static void remark_once(struct check *check, const struct wish *wish, const struct look *look,
+static void remark_once(struct checkup *check, const struct wish *wish, const struct look *look,
                         double speed, bool still)
 {
     for (size_t c = 0; c < look->count; c++) {
@@ -177,7 +236,7 @@ static void remark_once(struct check *check, const struct wish *wish, const stru
     }
 }
 
-static void print_look(struct check *check, const struct wish *wish, const struct look *look,
+static void print_look(struct checkup *check, const struct wish *wish, const struct look *look,
                        const char *role)
 {
     printf("  %.4g s at %.6g Hz", (double)look->frames / look->rate_hz, look->rate_hz);
@@ -195,6 +254,7 @@ static void print_look(struct check *check, const struct wish *wish, const struc
     const double speed = look->columns[wish->tacho].speed_rpm * 2 * acos(-1) / 60; /* rad/s */
     if (!(speed > 0) || !strcmp(role, "coast-down")) /* there is no one amplitude */
         return;
+    remark_length(check, look, look->columns[wish->tacho].speed_rpm);
     print_once(check, wish, look, speed);
     remark_once(check, wish, look, speed, role[0] != '\0');
 }
@@ -214,12 +274,41 @@ static void print_weights(const struct job *job, const struct job_run *run)
             printf(", position %d", w->position);
         if (w->radius_m != job->planes[w->plane].radius_m)
             printf(", radius %.4g %s",
-                   w->radius_m / units_factor(DIMENSION_LENGTH, us ? "in" : "mm"), us ? "in" : "mm");
+                   w->radius_m / units_factor(DIMENSION_LENGTH, us ? "in" : "mm"),
+                   us ? "in" : "mm");
         putchar('\n');
     }
 }
 
-static void print_run_head(const struct check *check, size_t run, const char *path)
+/* The weights' force at service speed against what the journals carry at rest. */
+static void remark_force(struct checkup *check, const struct job_run *run)
+{
+    const struct job *job = &check->sheet.job;
+    const double force = within_force(run, job, job->service_rpm);
+    const double share = 100 * force / within_journal_load(job);
+    if (!(share > FORCE_MUCH))
+        return;
+    begin_remark(check, "weights");
+    char text[2 * DIGITS_ROOM];
+    printf("they pull with %s at %.0f rpm, %.2g %% of the static journal load, %s",
+           shown_force(job, text, force), job->service_rpm, share,
+           share > FORCE_MOST ? "more than 50 % is refused: a smaller weight, or is a unit wrong?"
+                              : "more than 15 % is much for a trial: is every unit right?");
+    end_remark(check);
+}
+
+static void remark_found(struct checkup *check, size_t run)
+{
+    if (job_found_loaded(&check->sheet.job) != (int)run)
+        return;
+    begin_remark(check, "as found");
+    fputs("this run carries weights: as found is taken as the rotor without them; leave out what "
+          "was on before the job began",
+          stdout);
+    end_remark(check);
+}
+
+static void print_run_head(struct checkup *check, size_t run, const char *path)
 {
     if (path) {
         fputs("\nrecording '", stdout);
@@ -236,11 +325,13 @@ static void print_run_head(const struct check *check, size_t run, const char *pa
     }
     puts(check->sheet.job.runs[run].hand_count > 0 ? ": by hand" : "");
     print_weights(&check->sheet.job, &check->sheet.job.runs[run]);
+    remark_found(check, run);
+    remark_force(check, &check->sheet.job.runs[run]);
 }
 
 /* Run `run` of the sheet, or the recording `path`. A failure is noted, and the next is looked at.
  */
-static void check_run(struct check *check, size_t run, const char *path)
+static void check_run(struct checkup *check, size_t run, const char *path)
 {
     const struct job *job = &check->sheet.job;
     struct fault fault = {0};
@@ -259,8 +350,11 @@ static void check_run(struct check *check, size_t run, const char *path)
                                      .level = job->tacho_level,
                                      .service_rpm = job->service_rpm};
     if (fault.status == STATUS_DONE &&
-        look_at(&look, &wish.recording, &tacho, &fault) == STATUS_DONE)
+        look_at(&look, &wish.recording, &tacho, &fault) == STATUS_DONE) {
         print_look(check, &wish, &look, path ? "" : job->runs[run].role);
+        if (remark_content(check, &look, path ? path : job->runs[run].name) != 0)
+            fault_no_memory(&fault);
+    }
     fflush(stdout); /* what is said stands behind the run's head */
     if (fault.status != STATUS_DONE) {
         if (path || fault.status == STATUS_SYSTEM)
@@ -276,7 +370,7 @@ static void check_run(struct check *check, size_t run, const char *path)
 
 /* ---- the sheet ---- */
 
-static int read_sheet(struct check *check, const char *path, bool audit)
+static int read_sheet(struct checkup *check, const char *path, bool audit)
 {
     struct buffer errors = BUFFER_INIT;
     int count = sheet_read(&check->sheet, path, audit, &errors);
@@ -297,7 +391,7 @@ static void print_count(size_t count, const char *what)
     printf(", %zu %s%s", count, what, count == 1 ? "" : "s");
 }
 
-static void print_sheet(const struct check *check)
+static void print_sheet(const struct checkup *check)
 {
     const struct job *job = &check->sheet.job;
     print_text(job->title, 0);
@@ -310,7 +404,7 @@ static void print_sheet(const struct check *check)
     puts(job->has_tacho ? "" : ", no tacho");
 }
 
-static void remark_weights(struct check *check)
+static void remark_weights(struct checkup *check)
 {
     const char *plane = wish_lacks_weight(&check->sheet.job);
     if (!plane)
@@ -322,7 +416,16 @@ static void remark_weights(struct check *check)
     end_remark(check);
 }
 
-static void use_colour(struct check *check)
+static void remark_never_bare(struct checkup *check)
+{
+    begin_remark(check, "as found");
+    fputs("every run carries weights: as found is taken as the rotor without any of them, which no "
+          "run shows",
+          stdout);
+    end_remark(check);
+}
+
+static void use_colour(struct checkup *check)
 {
     const char *no = getenv("NO_COLOR"), *term = getenv("TERM");
     const bool colour = isatty(STDOUT_FILENO) && !(no && *no) && term && strcmp(term, "dumb") != 0;
@@ -343,7 +446,7 @@ int desk_check(int argc, char **argv)
         "Shows rate, length, range and the tacho of every run, from the first 20 s of it.\n"
         "With recordings, these are looked at in the place of the sheet's runs."};
     struct option_list operands;
-    struct check check = {.status = STATUS_DONE};
+    struct checkup check = {.status = STATUS_DONE};
     int parsed = options_parse(&usage, argc, argv, &operands);
     int status = parsed == OPTIONS_MISUSE ? STATUS_USAGE : STATUS_DONE;
     if (parsed == OPTIONS_GO)
@@ -353,6 +456,8 @@ int desk_check(int argc, char **argv)
         print_sheet(&check);
         if (operands.count == 1)
             remark_weights(&check);
+        if (operands.count == 1 && job_never_bare(&check.sheet.job))
+            remark_never_bare(&check);
         for (size_t i = 1; i < operands.count; i++)
             check_run(&check, 0, operands.items[i]);
         for (size_t i = 0; operands.count == 1 && i < check.sheet.job.run_count; i++)
@@ -360,6 +465,7 @@ int desk_check(int argc, char **argv)
         printf("\n%ld remark%s\n", check.remarks, check.remarks == 1 ? "" : "s");
         status = check.status;
     }
+    free(check.contents);
     sheet_release(&check.sheet);
     option_list_release(&operands);
     return status;

@@ -333,6 +333,9 @@ static int ask_about_rotor(struct interview *v)
     int result = want(v, &a->mass, "Mass of the rotor (340 kg)", "rotor", "mass", "");
     if (result == 0 && !a->speed)
         result = ask(v, &speed, &a->speed);
+    if (result == 0)
+        result = want(v, &a->grade, "Balance quality grade, ISO 21940-11 (G6.3; empty: none)",
+                      "rotor", "grade", "");
     return result;
 }
 

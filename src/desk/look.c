@@ -132,8 +132,8 @@ static void note_pulses(struct look_column *column, const struct tracker *tracke
     column->speed_rpm = column->pulses ? tracker_speed(tracker) : NAN;
 }
 
-/* The mean 1x vector of a sensor over the blocks, each with its turns, as an amplitude. The sensors are the
- * columns but the tacho, in their order. */
+/* The mean 1x vector of a sensor over the blocks, each with its turns, as an amplitude. The sensors
+ * are the columns but the tacho, in their order. */
 static double amplitude(const struct tracker *tracker, size_t column)
 {
     const struct windows *windows = &tracker->windows;
@@ -191,6 +191,17 @@ static int take(struct look *look, struct glance *glance, const struct recording
     return STATUS_DONE;
 }
 
+static int keep_hashes(struct look *look, const struct recording_wish *wish, struct fault *fault)
+{
+    look->sha256 = calloc(wish->path_count, sizeof *look->sha256);
+    if (!look->sha256)
+        return fault_no_memory(fault);
+    look->file_count = wish->path_count;
+    for (size_t i = 0; i < wish->path_count; i++)
+        memcpy(look->sha256[i], wish->digests[i]->sha256, sizeof look->sha256[i]);
+    return STATUS_DONE;
+}
+
 static void release(struct glance *glance)
 {
     for (size_t c = 0; c < glance->begun; c++)
@@ -219,7 +230,8 @@ int look_at(struct look *look, const struct recording_wish *wish, const struct l
             *fault = digests[i]->fault;
     }
     whole.digests = digests;
-    if (fault->status == STATUS_DONE && take(look, &glance, &whole, tacho, fault) != STATUS_DONE)
+    if (fault->status == STATUS_DONE && (take(look, &glance, &whole, tacho, fault) != STATUS_DONE ||
+                                         keep_hashes(look, &whole, fault) != STATUS_DONE))
         look_release(look);
     release(&glance);
     digest_queue_free(queue);
@@ -229,6 +241,7 @@ int look_at(struct look *look, const struct recording_wish *wish, const struct l
 
 void look_release(struct look *look)
 {
+    free(look->sha256);
     free(look->columns);
     *look = (struct look){0};
 }

@@ -30,6 +30,8 @@ struct look {
     long long seen;              /* of them looked at */
     struct look_column *columns; /* owned, as wished */
     size_t count;
+    char (*sha256)[65]; /* owned, one a file */
+    size_t file_count;
 };
 
 struct look_tacho {

@@ -12,6 +12,7 @@
 
 #include "base/buffer.h"
 #include "base/message.h"
+#include "base/nearest.h"
 #include "base/options.h"
 #include "base/status.h"
 #include "desk/channels.h"
@@ -53,6 +54,18 @@ static int find_run(const struct draft *draft, const char *name, size_t length)
     return -1;
 }
 
+static void tell_no_run(const struct draft *draft, const char *text, size_t length)
+{
+    const char *names[32];
+    char name[NAME_ROOM], hint[NEAREST_ROOM];
+    size_t count = 0;
+    snprintf(name, sizeof name, "%.*s", (int)length, text);
+    for (; count < draft->recordings.count && count < sizeof names / sizeof *names; count++)
+        names[count] = draft->runs[count];
+    message("no run of that name: '%.*s'%s (runs are named after their recordings)", (int)length,
+            text, nearest_hint(name, names, count, hint));
+}
+
 /* "trial=60 g at position 2", "trial:left=60 g at position 2" */
 static int take_weight(struct draft *draft, const char *text)
 {
@@ -67,8 +80,7 @@ static int take_weight(struct draft *draft, const char *text)
                                          outline->plane_count)
                              : 0;
     if (r < 0)
-        message("no run of that name: '%.*s' (runs are named after their recordings)", (int)run,
-                text);
+        tell_no_run(draft, text, run);
     else if (p < 0)
         message("no plane of that name: '%.*s'", (int)(head - run - 1), text + run + 1);
     else
@@ -139,12 +151,12 @@ static int name_files(struct draft *draft)
 /* What the options left open. */
 static int ask_for_the_rest(struct draft *draft)
 {
-    draft->interview = (struct interview){.outline = &draft->outline,
-                                          .channels = &draft->channels,
-                                          .output = &draft->output,
-                                          .planes_given = draft->planes.count > 0 ||
-                                                          draft->weight_texts.count > 0,
-                                          .weights_given = draft->weight_texts.count > 0};
+    draft->interview =
+        (struct interview){.outline = &draft->outline,
+                           .channels = &draft->channels,
+                           .output = &draft->output,
+                           .planes_given = draft->planes.count > 0 || draft->weight_texts.count > 0,
+                           .weights_given = draft->weight_texts.count > 0};
     return interview_hold(&draft->interview);
 }
 
@@ -330,16 +342,19 @@ int desk_new(int argc, char **argv)
         {"output", 'o', OPTION_TEXT, "FILE", NULL, 0, 0, NULL,
          "write the sheet there, if it is not there yet", &draft.output},
         TEXT("title", "TEXT", "what the job is called", &a->title),
+        TEXT("units", "SYSTEM", "of what is shown: metric or US [metric]", &a->units),
         TEXT("angles", "SENSE", "how angles of weights count: against or with rotation",
              &a->angles),
         TEXT("tacho", "CHANNEL", "the once-per-turn channel, or none [found by its pulses]",
              &a->tacho),
         TEXT("unit", "UNIT", "what the sensors measure: g, mm/s, ...", &a->unit),
         TEXT("scale", "SCALE", "of the sensors: '100 mV/g'", &a->scale),
+        TEXT("show", "UNIT", "how their vibration is shown: 'mm/s rms', 'um pk-pk', ...", &a->show),
         TEXT("full-scale", "VOLTS", "at digital full scale: '10 V'", &a->full_scale),
         TEXT("rate", "RATE", "of columns without a time: '12800 Hz'", &a->rate),
         TEXT("mass", "MASS", "of the rotor: '340 kg'", &a->mass),
         TEXT("speed", "SPEED", "in service: '1480 rpm'", &a->speed),
+        TEXT("grade", "GRADE", "of balance quality, ISO 21940-11: G6.3", &a->grade),
         {"plane", 0, OPTION_LIST, "NAME", "rotor", 0, 0, NULL, "where weights go (may repeat)",
          &draft.planes},
         TEXT("radius", "LENGTH", "of the planes: '410 mm'", &a->radius),

@@ -75,6 +75,7 @@ static void add_job(const struct outline *o, struct buffer *text)
     add(text, "angles", a->angles, "against rotation",
         is_known(a->angles) ? "how weights and positions count from the mark"
                             : "or: with rotation. How weights and positions count from the mark");
+    add(text, "units", a->units, "US", "for what is shown; metric where absent");
 }
 
 static void add_rotor(const struct outline *o, struct buffer *text)
@@ -85,10 +86,14 @@ static void add_rotor(const struct outline *o, struct buffer *text)
         snprintf(seen, sizeof seen, "%.0f rpm", o->channels->speed_rpm);
         snprintf(remark, sizeof remark, "the first recording has %s", seen);
     }
-    add_section(text, "rotor", NULL, !is_known(a->mass) && !is_known(a->speed));
+    add_section(text, "rotor", NULL,
+                !is_known(a->mass) && !is_known(a->speed) && !is_known(a->grade));
     add(text, "mass", a->mass, "340 kg", "for the tolerance and the first trial weight");
     add(text, "service speed", a->speed, seen, remark);
-    add(text, "grade", NULL, "G6.3", "ISO 21940-11");
+    add(text, "rotation", NULL, "clockwise", "or: counter-clockwise; for the drawings");
+    add(text, "seen from", NULL, "drive end", "where one stands to see that");
+    add(text, "grade", a->grade, "G6.3",
+        "ISO 21940-11, for the tolerance; with mass and service speed");
 }
 
 static void add_recording(const struct outline *o, struct buffer *text)
@@ -143,7 +148,7 @@ static void add_sensor(const struct outline *o, const struct channels_one *one, 
     if (!told)
         add(text, "scale", o->answers.scale, o->channels->text ? "4 mV/(mm/s)" : "100 mV/g",
             o->channels->text ? "absent: the column is in that unit already" : NULL);
-    add(text, "show", NULL, "mm/s rms", "how it is shown");
+    add(text, "show", o->answers.show, "mm/s rms", "how it is shown");
 }
 
 static void add_sensors(const struct outline *o, struct buffer *text)
@@ -171,6 +176,9 @@ static void add_planes(const struct outline *o, struct buffer *text)
         add(text, "positions", a->positions, "12 from 0 deg",
             is_known(a->positions) ? NULL : "absent: any angle");
         add(text, "stock", a->stock, "10 20 50 g", is_known(a->stock) ? NULL : "absent: any mass");
+        add(text, "pieces", NULL, "4", "at most, on this plane");
+        add(text, "most", NULL, "150 g", "at one position");
+        add(text, "taken", NULL, "3 7", "positions that are not free");
     }
 }
 

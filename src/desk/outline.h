@@ -11,7 +11,7 @@
 /* Texts as the sheet takes them. NULL or "": not known. */
 struct outline_answers {
     const char *title, *angles, *tacho, *unit, *scale, *full_scale, *rate, *mass, *speed, *radius,
-        *positions, *stock, *target;
+        *positions, *stock, *target, *grade, *units, *show;
 };
 
 struct outline_weight {

@@ -10,6 +10,8 @@
 #include <sys/stat.h>
 #include <unistd.h>
 
+#include "base/nearest.h"
+
 #define CHUNK (256u * 1024u) /* stays in the second-level cache */
 #define TEXT_PROBE 4096u     /* binary headers have a NUL within their first bytes */
 
@@ -46,10 +48,12 @@ int digest_mark(const char *path, struct digest_mark *mark, struct fault *fault)
 {
     struct stat s;
     if (stat(path, &s) != 0) {
-        char why[128] = "";
-        if (strerror_r(errno, why, sizeof why) != 0)
+        const int cause = errno;
+        char why[128] = "", hint[NEAREST_ROOM] = "";
+        if (strerror_r(cause, why, sizeof why) != 0)
             why[0] = '\0';
-        return fault_set(fault, STATUS_RECORDING, "cannot open the recording, %s: '%s'", why, path);
+        return fault_set(fault, STATUS_RECORDING, "cannot open the recording, %s: '%s'%s", why, path,
+                         cause == ENOENT ? nearest_file(path, hint) : hint);
     }
     if (!S_ISREG(s.st_mode))
         return fault_set(fault, STATUS_RECORDING, "%s: '%s'",

@@ -9,6 +9,7 @@
 #include <unistd.h>
 
 #include "base/message.h"
+#include "base/nearest.h"
 #include "base/options.h"
 #include "base/status.h"
 #include "read/adopt.h"
@@ -92,6 +93,18 @@ static int adopt(struct stage *stage, char *const *paths, size_t count)
     return adopt_recordings(&stage->sheet, paths, count) == 0 ? STATUS_DONE : message_no_memory();
 }
 
+static void tell_no_run(const struct stage *stage, const char *name)
+{
+    const struct job *job = &stage->sheet.job;
+    const char *names[32];
+    char hint[NEAREST_ROOM];
+    size_t count = 0;
+    for (; count < job->run_count && count < sizeof names / sizeof *names; count++)
+        names[count] = job->runs[count].name;
+    message("no run of that name in the sheet: '%s'%s (%s)", name,
+            nearest_hint(name, names, count, hint), stage->sheet.path);
+}
+
 static int choose_runs(struct stage *stage, const struct option_list *names)
 {
     const struct job *job = &stage->sheet.job;
@@ -106,12 +119,20 @@ static int choose_runs(struct stage *stage, const struct option_list *names)
         if (run >= 0) {
             stage->chosen[run] = true;
         } else {
-            message("no run of that name in the sheet: '%s' (%s)", names->items[i],
-                    stage->sheet.path);
+            tell_no_run(stage, names->items[i]);
             status = STATUS_USAGE;
         }
     }
     return status;
+}
+
+/* A remark, no error: the answer is for the rotor without the weights that this run lists. */
+static void remark_as_found(const struct stage *stage)
+{
+    const int run = stage->audit ? -1 : job_found_loaded(&stage->sheet.job);
+    if (run >= 0 && stage->chosen[run])
+        message("run '%s' carries weights, as found is taken as the rotor without them (%s)",
+                stage->sheet.job.runs[run].name, stage->sheet.path);
 }
 
 static char *join_path(const struct stage *stage, const char *file)
@@ -537,6 +558,8 @@ int stage_read(int argc, char **argv)
         status = choose_runs(&stage, &runs);
     if (status == STATUS_DONE)
         status = list_paths(&stage);
+    if (status == STATUS_DONE)
+        remark_as_found(&stage);
     if (status == STATUS_DONE)
         status = open_stream(&stage);
     if (status == STATUS_DONE)

@@ -148,10 +148,23 @@ static bool any_added(const struct job *job)
 void phrase_relative_to(struct buffer *out, const struct job *job, const char *name)
 {
     int run = job_find_run(job, name), removed = job_removed_run(job);
+    const int loaded = job_found_loaded(job);
     if (run >= 0) {
         buffer_format(out, "In addition to the weights of run '%s', which stay on: ", name);
         phrase_weights(out, job, (size_t)run);
         buffer_text(out, ".");
+        return;
+    }
+    if (removed < 0 && loaded >= 0) {
+        buffer_format(out,
+                      "Relative to the rotor without any weight that the sheet lists, those of run "
+                      "'%s' included: take all of them off first.",
+                      job->runs[loaded].name);
+        return;
+    }
+    if (removed < 0 && job_never_bare(job)) {
+        buffer_text(out, "Relative to the rotor without any weight that the sheet lists, which no run "
+                         "shows: take all of them off first.");
         return;
     }
     buffer_format(out, "Relative to the rotor %s: ", name);

@@ -5,6 +5,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "base/nearest.h"
 #include "sheet/sheet_fields.h"
 
 /* What sound files begin with: WAV, 64-bit WAV, AIFF, FLAC, Ogg, CAF, AU. */
@@ -29,7 +30,10 @@ static char *load(const char *path, size_t *length, struct sheet_errors *errors)
 {
     FILE *file = fopen(path, "rb");
     if (!file) {
-        sheet_errors_add(errors, 0, "cannot be opened: %s", strerror(errno));
+        const int why = errno;
+        char hint[NEAREST_ROOM] = "";
+        sheet_errors_add(errors, 0, "cannot be opened: %s%s", strerror(why),
+                         why == ENOENT ? nearest_file(path, hint) : hint);
         return NULL;
     }
     char *text = malloc(SHEET_BYTES_MOST + 2);

@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "base/angle.h"
+#include "base/nearest.h"
 
 size_t sheet_fields_section(const struct sheet_parse *p, enum sheet_kind kind, const char *name)
 {
@@ -153,9 +154,9 @@ void sheet_fields_text(struct sheet_parse *p, size_t section, const char *key, c
 static void tell_unknown(struct sheet_parse *p, const struct sheet_entry *entry, const char *what,
                          const char *name, const char *const *names, size_t count)
 {
-    char hint[80];
+    char hint[NEAREST_ROOM];
     sheet_errors_add(&p->errors, entry->line, "no such %s: '%.100s'%s", what, name,
-                     sheet_keys_hint(name, names, count, hint));
+                     nearest_hint(name, names, count, hint));
 }
 
 #define FIND(things, count, what)                                                                  \

@@ -1,9 +1,9 @@
 #include "sheet/sheet_keys.h"
 
-#include <ctype.h>
 #include <stdio.h>
 #include <string.h>
 
+#include "base/nearest.h"
 #include "stream/job.h"
 
 #define COUNT(array) (sizeof(array) / sizeof((array)[0]))
@@ -108,52 +108,6 @@ static const struct kind KINDS[SHEET_KINDS] = {
 
 _Static_assert(COUNT(LIMITS) <= KEYS_MOST && COUNT(RUN) <= KEYS_MOST, "KEYS_MOST too small");
 
-/* ---- nearest name ---- */
-
-static size_t least(size_t a, size_t b)
-{
-    return a < b ? a : b;
-}
-
-/* Letters to insert, drop or change between two short texts (Wagner & Fischer, J. ACM 21 (1974)
- * 168-173), case aside; 99 where one is too long to be a key. */
-static size_t distance(const char *a, const char *b)
-{
-    size_t row[42], m = strlen(a), n = strlen(b);
-    if (m > 41 || n > 41)
-        return 99;
-    for (size_t j = 0; j <= n; j++)
-        row[j] = j;
-    for (size_t i = 1; i <= m; i++) {
-        size_t corner = row[0];
-        row[0] = i;
-        for (size_t j = 1; j <= n; j++) {
-            bool same = tolower((unsigned char)a[i - 1]) == tolower((unsigned char)b[j - 1]);
-            size_t change = corner + !same;
-            corner = row[j];
-            row[j] = least(change, least(row[j], row[j - 1]) + 1);
-        }
-    }
-    return row[n];
-}
-
-const char *sheet_keys_hint(const char *wrong, const char *const *names, size_t count, char *room)
-{
-    const char *nearest = NULL;
-    size_t best = strlen(wrong) < 4 ? 2 : 3; /* nearer than this */
-    for (size_t i = 0; i < count; i++) {
-        size_t d = distance(wrong, names[i]);
-        if (d < best && d < strlen(names[i])) {
-            best = d;
-            nearest = names[i];
-        }
-    }
-    room[0] = '\0';
-    if (nearest)
-        snprintf(room, 80, " (did you mean '%s'?)", nearest);
-    return room;
-}
-
 /* ---- sections ---- */
 
 const char *sheet_keys_name_fault(const char *name)
@@ -182,12 +136,12 @@ static void tell_unknown_section(const struct sheet_section *s, size_t length,
                                  struct sheet_errors *errors)
 {
     const char *names[SHEET_KINDS];
-    char word[48], hint[80];
+    char word[48], hint[NEAREST_ROOM];
     for (int i = 0; i < SHEET_KINDS; i++)
         names[i] = KINDS[i].name;
     snprintf(word, sizeof word, "%.*s", length < 47 ? (int)length : 47, s->text);
     sheet_errors_add(errors, s->line, "unknown section: '[%.100s]'%s", s->text,
-                     sheet_keys_hint(word, names, SHEET_KINDS, hint));
+                     nearest_hint(word, names, SHEET_KINDS, hint));
 }
 
 /* What a section of that kind cannot do without; NULL: no single key. */
@@ -289,7 +243,7 @@ static void tell_unknown_key(const struct sheet_entry *e, const struct kind *kin
                              struct sheet_errors *errors)
 {
     const char *names[KEYS_MOST];
-    char hint[80];
+    char hint[NEAREST_ROOM];
     if (e->text[0] == ';') {
         sheet_errors_add(errors, e->line, "a comment begins with '#', not with ';': '%.100s'",
                          e->text);
@@ -298,7 +252,7 @@ static void tell_unknown_key(const struct sheet_entry *e, const struct kind *kin
     for (size_t i = 0; i < kind->count; i++)
         names[i] = kind->keys[i].name;
     sheet_errors_add(errors, e->line, "unknown key in [%s]: '%.100s'%s", kind->name, e->text,
-                     sheet_keys_hint(e->text, names, kind->count, hint));
+                     nearest_hint(e->text, names, kind->count, hint));
 }
 
 /* `word` alone, a key that needs a name behind it: says so. */

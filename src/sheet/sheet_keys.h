@@ -36,7 +36,4 @@ void sheet_keys_check(struct sheet_lines *lines, struct sheet_errors *errors);
 /* What is wrong with a name (up to 40 bytes, none of `: = ; # ]`, no blank at an end), or NULL. */
 const char *sheet_keys_name_fault(const char *name);
 
-/* " (did you mean 'X'?)" into room of 80 bytes, or "", for the nearest of the names. */
-const char *sheet_keys_hint(const char *wrong, const char *const *names, size_t count, char *room);
-
 #endif

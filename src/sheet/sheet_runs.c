@@ -359,5 +359,6 @@ void sheet_runs_read(struct sheet_parse *p)
         read_run(p, &run);
     }
     if (job->run_count == 0 && !p->audit)
-        sheet_errors_add(&p->errors, 1, "missing section: '[run NAME]'");
+        sheet_errors_add(&p->errors, 1, "missing section: '[run NAME]' (without one, name recordings: 'lopside read "
+                         "SHEET RECORDING...')");
 }

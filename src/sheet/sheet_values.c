@@ -62,6 +62,8 @@ const char *sheet_values_number(const char **at, double *value)
         return "number too long";
     if (text[length] == ',' && is_digit(text[length + 1]))
         return "a number is written with a decimal point, lists with blanks";
+    if (text[length] == ';')
+        return "a list is written with blanks between its items";
     /* strtod wants the point of the process's locale. */
     const char *tail = text[point] == '.' ? text + point + 1 : text + point;
     snprintf(copy, sizeof copy, "%.*s%.8s%.*s", (int)point, text,

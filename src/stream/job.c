@@ -4,6 +4,7 @@
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
+#include <strings.h>
 
 #include "base/angle.h"
 
@@ -107,6 +108,33 @@ bool job_run_is_bare(const struct job *job, size_t run)
     for (size_t p = 0; p < job->plane_count; p++)
         total = fmax(total, cabs(job_run_weight(job, run, p)));
     return total <= 1e-12 * largest; /* rounding of weights that cancel */
+}
+
+static bool says_found(const char *name)
+{
+    for (; *name; name++)
+        if (strncasecmp(name, "found", 5) == 0)
+            return true;
+    return false;
+}
+
+int job_found_loaded(const struct job *job)
+{
+    for (size_t r = 0; r < job->run_count; r++)
+        if (!job->runs[r].role[0] && says_found(job->runs[r].name) && !job_run_is_bare(job, r) &&
+            job->aim.mounted < 0)
+            return (int)r;
+    return -1;
+}
+
+bool job_never_bare(const struct job *job)
+{
+    size_t ordinary = 0, bare = 0;
+    for (size_t r = 0; r < job->run_count; r++) {
+        ordinary += !job->runs[r].role[0];
+        bare += !job->runs[r].role[0] && job_run_is_bare(job, r);
+    }
+    return job->aim.mounted < 0 && ordinary > 0 && bare == 0;
 }
 
 /* True where run `run` lists a removal like `w`, or a larger one at its place. */

@@ -197,6 +197,14 @@ bool job_run_is_bare(const struct job *job, size_t run);
  * job's answer takes it as put back; -1: none. */
 int job_removed_run(const struct job *job);
 
+/* The first ordinary run that is as found by its name ("found" in it, case aside) and carries weights all the
+ * same, so that the job's answer takes as found to be the rotor without them; -1: none, or they stay on (`mounted`). */
+int job_found_loaded(const struct job *job);
+
+/* True where some ordinary run carries weights and none carries none, so that as found is what no run
+ * shows; false where the weights of `mounted` stay on. */
+bool job_never_bare(const struct job *job);
+
 /* The condition of a coast-down's reading at one of its speeds: "<condition> @ 900 rpm", the speed as a
  * whole number or in its shortest decimal form (to 1e-6 rpm). False where it does not fit and is cut; the sheet sees to it
  * that this never happens. */

@@ -184,7 +184,7 @@ class New(unittest.TestCase):
 
     def test_asks_on_a_terminal_only(self):
         self.put("fan", "as-found.wav", "trial.wav")
-        typed = ["job.ini", "Fan # 7", "against", "DE-V", "DE-H", "g", "100 mV/g", "10 V", MASS, "", "wheel", "",
+        typed = ["job.ini", "Fan # 7", "against", "DE-V", "DE-H", "g", "100 mV/g", "10 V", MASS, "", "G6.3", "wheel", "",
                  "600 mm", "12 from 0 deg", "10 20 50 g", "1.8 mm/s rms", "", WEIGHT]
         code, shown = on_terminal(["new", "as-found.wav", "trial.wav"], typed, self.top)
         self.assertEqual(code, 0, shown)
@@ -193,7 +193,7 @@ class New(unittest.TestCase):
         text = (self.top / "job.ini").read_text()
         self.assertIn('title = "Fan # 7"', text)
         self.assertRegex(text, r"(?m)^service speed = 98\d rpm")
-        for line in ("[plane wheel]", "[sensor DE-V]", "[sensor DE-H]"):
+        for line in ("[plane wheel]", "[sensor DE-V]", "[sensor DE-H]", "grade = G6.3"):
             self.assertIn(line, text)
         self.assertEqual(len(chain.kind(chain.solved(self.top / "job.ini"), "next")), 1)
         code, shown = on_terminal(["check", "job.ini"], [], self.top, {"TERM": "xterm", "NO_COLOR": ""})
@@ -205,12 +205,12 @@ class New(unittest.TestCase):
         self.put("fan", "as-found.wav", "trial.wav")
         (self.top / "mine.ini").write_text("mine")
         typed = ["mine.ini", "job.ini", "", "left", "with", "", "", "furlong", "g", "100 mV", "100 mV/g", "10", "10 V",
-                 "340", "340 lbs", "heavy", "", "", "600", "600 mm", "12 from 0 deg", "", "1.8 mm/s rms",
+                 "340", "340 lbs", "heavy", "", "6.3", "", "", "600", "600 mm", "12 from 0 deg", "", "1.8 mm/s rms",
                  "", "70 g at position 13", "70 g at pos 3", "70 g at position 3"]
         code, shown = on_terminal(["new", "as-found.wav", "trial.wav"], typed, self.top)
         self.assertEqual(code, 0, shown)
         for said in ("is there already, and stays as it is: 'mine.ini'", "not one of 'against rotation'",
-                     "no unit, wanted g, kg, oz or lb: 'mass = 340'", "stays open in the sheet: 'mass'",
+                     "no unit, wanted g, kg, oz or lb: 'mass = 340'", "not a grade, wanted G and a number", "stays open in the sheet: 'mass'",
                      "no such position (1 to 12)", "wanted 'MASS at ANGLE deg' or 'MASS at position N'"):
             self.assertIn(said, shown)
         text = (self.top / "job.ini").read_text()
@@ -324,7 +324,8 @@ class Check(unittest.TestCase):
             "still": ([0.05 * noise, hum + noise, pulses], ["DE-V: implausibly small at 1x"]),
             "mute": ([hum + noise, hum - noise[::-1], 0 * t], ["tacho: no signal", "tacho: no regular pulses"]),
             "fast": ([hum + noise, hum - noise[::-1], ((t * 985 / 30) % 1 < 0.05) * 0.5],
-                     ["tacho: 1970 rpm, and the service speed is 985 rpm"]),
+                     ["tacho: 1970 rpm, and the service speed is 985 rpm: with 2 pulses a turn it would be 'marks = 2'"]),
+            "short": ([c[:2560] for c in (hum + noise, hum - noise[::-1], pulses)], ["length: 16 turns, fewer than 20"]),
         }
         (self.top / "job.ini").write_text(self.sheet())
         for name, (columns, expected) in cases.items():
@@ -334,6 +335,76 @@ class Check(unittest.TestCase):
             self.assertEqual(bool(expected), "0 remarks" not in said, said)
             for text in expected:
                 self.assertIn(text, said, name)
+
+    def test_remarks_on_the_runs(self):
+        """Weights in the run as found; one file twice; a force out of proportion; nothing but weights."""
+        self.put = New.put.__get__(self)
+        self.put("fan", "as-found.wav", "trial.wav")
+        runs = ("[run as-found]\nfile = as-found.wav\n{found}[run again]\nfile = {again}\n{bare}"
+                "[run trial]\nfile = trial.wav\nweight wheel = {mass} at position 3\n")
+        # Force m r w^2 over half of the rotor's weight, 640 kg * 9.80665 N/kg / 2 (common practice for the load).
+        newton = 0.3 * 0.6 * (2 * numpy.pi * 985 / 60) ** 2
+        share = 100 * newton / (640 * 9.80665 / 2)
+        heavy = f"weights: they pull with {round(newton, -1):.0f} N at 985 rpm, {share:.2g} % of the static journal load"
+        shutil.copy(self.top / "as-found.wav", self.top / "copy.wav")
+        with wave.open(str(chain.DATA / "fan" / "as-found-again.wav")):
+            shutil.copy(chain.DATA / "fan" / "as-found-again.wav", self.top / "again.wav")
+        ours = "weight wheel = 10 g at position 2\n"
+        cases = (("", "again.wav", "", "70 g", []),
+                 (ours, "again.wav", "", "70 g", ["as found: this run carries weights"]),
+                 (ours, "again.wav", ours, "70 g", ["as found: this run carries weights",
+                                                    "as found: every run carries weights"]),
+                 ("", "copy.wav", "", "70 g", ["file: the same content as in 'as-found', to the byte"]),
+                 ("", "again.wav", "", "300 g", [heavy, "more than 50 % is refused"]),
+                 ("", "again.wav", "", "100 g", ["more than 15 % is much for a trial"]))
+        for found, again, bare, mass, expected in cases:
+            text = runs.format(found=found, again=again, bare=bare, mass=mass)
+            (self.top / "job.ini").write_text(self.sheet() + text)
+            said, _ = self.check("job.ini")
+            self.assertEqual(said.count("    ! "), len([e for e in expected if not e.startswith("more")]) or
+                             len(expected), said)
+            for remark in expected:
+                self.assertIn(remark, said)
+
+    def test_the_rotor_without_weights(self):
+        """Where the run as found carries weights, `read` and the report say what the answer takes off."""
+        self.put = New.put.__get__(self)
+        self.put("fan", "as-found.wav", "trial.wav")
+        text = (self.sheet() + "[run as-found]\nfile = as-found.wav\nweight wheel = 10 g at position 2\n"
+                f"[run trial]\nfile = trial.wav\nweight wheel = {WEIGHT}\nweight wheel = 10 g at position 2\n")
+        (self.top / "job.ini").write_text(text)
+        for form in ("text", "html"):
+            done = chain.lopside("balance", "--as", form, "job.ini", cwd=self.top)
+            self.assertEqual(done.returncode, 0, chain.complaint(done))
+            self.assertIn("lopside read: run 'as-found' carries weights, as found is taken as the rotor without them "
+                          "(job.ini)", chain.complaint(done))
+            said = " ".join(done.stdout.decode().replace("&#39;", "'").split())
+            self.assertIn("without any weight that the sheet lists, those of run 'as-found' included", said)
+            self.assertNotIn("take every trial weight off first", said)
+        (self.top / "job.ini").write_text(text + "[aim]\nmounted = as-found\n")
+        done = chain.lopside("balance", "job.ini", cwd=self.top)
+        self.assertEqual(chain.complaint(done), "")
+
+    def test_perhaps_meant(self):
+        """The nearest name of a stage, a run, a file, a sheet; none where nothing is near."""
+        self.put = New.put.__get__(self)
+        self.put("fan", "as-found.wav", "trial.wav")
+        (self.top / "job.ini").write_text(self.sheet() + "[run as-found]\nfile = as-fuond.wav\n[run trial]\n"
+                                          f"file = trial.csv\nweight wheel = {WEIGHT}\n")
+        cases = ((["blance"], 2, "no such stage: 'blance' (did you mean 'balance'?)"),
+                 (["help", "raed"], 2, "no such stage: 'raed' (did you mean 'read'?)"),
+                 (["sing"], 2, "no such stage: 'sing' (see"),
+                 (["read", "--run", "trail", "job.ini"], 2, "in the sheet: 'trail' (did you mean 'trial'?) (job.ini)"),
+                 (["read", "--run", "other", "job.ini"], 2, "in the sheet: 'other' (job.ini)"),
+                 (["check", "jobb.ini"], 2, "(did you mean 'job.ini'?)"),
+                 (["balance", "job.ini"], 3, "'as-fuond.wav' (did you mean 'as-found.wav'?) (run 'as-found'"),
+                 (["read", "--run", "trial", "job.ini"], 3, "'trial.csv' (did you mean 'trial.wav'?) (run 'trial'"),
+                 (["new", "--weight", "trail=1 g at 0 deg", "trial.wav"], 2, "'trail' (did you mean 'trial'?)"))
+        for args, code, expected in cases:
+            done = chain.lopside(*args, cwd=self.top)
+            self.assertEqual(done.returncode, code, chain.complaint(done))
+            self.assertEqual(len(chain.complaint(done).splitlines()), 1)
+            self.assertIn(expected, chain.complaint(done))
 
     def test_failures(self):
         (self.top / "job.ini").write_text(self.sheet())

@@ -12,6 +12,7 @@
 
 #include "base/angle.h"
 #include "base/buffer.h"
+#include "base/nearest.h"
 #include "base/options.h"
 #include "close_to.h"
 
@@ -112,11 +113,35 @@ static void test_buffer(void **state)
     assert_null(b.bytes);
 }
 
+/* Distances counted by hand: letters inserted, dropped or changed. */
+static void test_nearest(void **state)
+{
+    (void)state;
+    const char *names[] = {"read", "track", "average", "trial 2", "trial 1"};
+    char room[NEAREST_ROOM], wide[NEAREST_ROOM];
+    assert_string_equal(nearest_hint("trakc", names, 5, room), " (did you mean 'track'?)"); /* 2 */
+    assert_string_equal(nearest_hint("READ", names, 5, room), " (did you mean 'read'?)");   /* 0 */
+    assert_string_equal(nearest_hint("raed", names, 5, room), " (did you mean 'read'?)");   /* 2 */
+    assert_string_equal(nearest_hint("reddd", names, 5, room), "");                         /* 3 */
+    assert_string_equal(nearest_hint("rad", names, 5, room), " (did you mean 'read'?)");    /* 1 */
+    assert_string_equal(nearest_hint("ra", names, 5, room), ""); /* 2, of a short word */
+    assert_string_equal(nearest_hint("trial 1", names, 5, room), " (did you mean 'trial 1'?)");
+    assert_string_equal(nearest_hint("trial 3", names, 5, room), " (did you mean 'trial 2'?)");
+    assert_string_equal(nearest_hint("", names, 5, room), "");
+    assert_string_equal(nearest_hint("read", names, 0, room), "");
+    memset(wide, 'a', sizeof wide);
+    wide[sizeof wide - 1] = '\0';
+    names[0] = wide;
+    assert_string_equal(nearest_hint(wide, names, 1, room), ""); /* fits nowhere */
+    assert_string_equal(nearest_file("/no/such/folder/a.wav", room), "");
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {cmocka_unit_test(test_options),
                                        cmocka_unit_test(test_option_misuse),
-                                       cmocka_unit_test(test_angles), cmocka_unit_test(test_buffer)};
+                                       cmocka_unit_test(test_angles), cmocka_unit_test(test_buffer),
+                                       cmocka_unit_test(test_nearest)};
     dup2(open("/dev/null", O_WRONLY), STDERR_FILENO);
     cmocka_set_message_output(CM_OUTPUT_STDOUT);
     return cmocka_run_group_tests(tests, NULL, NULL);

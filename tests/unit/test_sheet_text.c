@@ -183,7 +183,8 @@ static void test_junk(void **state)
     refuses("", 0,
             "fan.ini:1: missing section: '[sensor NAME]'\n"
             "fan.ini:1: missing section: '[plane NAME]'\n"
-            "fan.ini:1: missing section: '[run NAME]'\n");
+            "fan.ini:1: missing section: '[run NAME]' (without one, name recordings: 'lopside read "
+            "SHEET RECORDING...')\n");
 }
 
 static void test_too_long(void **state)
