@@ -122,7 +122,7 @@ static void test_nearest(void **state)
     assert_string_equal(nearest_hint("trakc", names, 5, room), " (did you mean 'track'?)"); /* 2 */
     assert_string_equal(nearest_hint("READ", names, 5, room), " (did you mean 'read'?)");   /* 0 */
     assert_string_equal(nearest_hint("raed", names, 5, room), " (did you mean 'read'?)");   /* 2 */
-    assert_string_equal(nearest_hint("reddd", names, 5, room), "");                         /* 3 */
+    assert_string_equal(nearest_hint("rexyz", names, 5, room), "");                         /* 3 */
     assert_string_equal(nearest_hint("rad", names, 5, room), " (did you mean 'read'?)");    /* 1 */
     assert_string_equal(nearest_hint("ra", names, 5, room), ""); /* 2, of a short word */
     assert_string_equal(nearest_hint("trial 1", names, 5, room), " (did you mean 'trial 1'?)");
