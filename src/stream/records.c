@@ -331,7 +331,41 @@ void spectrum_print(const struct spectrum_record *r, const struct job *job, stru
     line_text(line, "sensor", job->sensors[r->sensor].name);
     line_reals(line, "orders", r->orders, r->count);
     line_reals(line, "amplitude", r->amplitude, r->count);
+    if (r->lines_known) {
+        line_open(line, "lines", '[');
+        for (size_t i = 0; i < r->line_count; i++)
+            line_reals(line, NULL, r->lines + 2 * i, 2);
+        line_close(line, ']');
+    }
     line_end(line);
+}
+
+/* [[hz, amplitude] ...] to pairs of numbers. */
+static void spectrum_lines_parse(struct fields *f, struct spectrum_record *r)
+{
+    const json_t *lines = fields_array(f, "lines");
+    size_t count = json_array_size(lines);
+
+    r->lines_known = lines;
+    r->lines = count ? malloc(2 * count * sizeof *r->lines) : NULL;
+    if (count && !r->lines) {
+        fields_fail(f, fields_no_memory);
+        return;
+    }
+    for (size_t i = 0; i < count; i++) {
+        const json_t *line = json_array_get(lines, i);
+
+        for (size_t k = 0; k < 2; k++) {
+            const json_t *number = json_array_get(line, k);
+
+            if (json_array_size(line) != 2 || !json_is_number(number)) {
+                fields_fail(f, "a line is not a frequency and an amplitude");
+                return;
+            }
+            r->lines[2 * i + k] = json_number_value(number);
+        }
+    }
+    r->line_count = count;
 }
 
 int spectrum_parse(struct spectrum_record *r, const struct job *job, const json_t *json,
@@ -346,6 +380,7 @@ int spectrum_parse(struct spectrum_record *r, const struct job *job, const json_
     r->amplitude = fields_new_reals(&f, "amplitude", &count);
     if (count != r->count)
         fields_fail(&f, "orders and amplitudes differ in number");
+    spectrum_lines_parse(&f, r);
     if (f.why)
         spectrum_release(r);
     return fields_done(&f, why);
@@ -355,8 +390,9 @@ void spectrum_release(struct spectrum_record *r)
 {
     free(r->orders);
     free(r->amplitude);
-    r->orders = r->amplitude = NULL;
-    r->count = 0;
+    free(r->lines);
+    r->orders = r->amplitude = r->lines = NULL;
+    r->count = r->line_count = 0;
 }
 
 /* ---- curve ---- */

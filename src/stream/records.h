@@ -105,6 +105,12 @@ struct spectrum_record {
     int sensor;
     double *orders, *amplitude; /* owned; amplitude peak, SI of the sensor's quantity */
     size_t count;
+    /* Owned; the largest lines that do not turn with the shaft (at no multiple of half an order), largest
+     * first: each two numbers, hz and amplitude (as above). Printed where `lines_known`: an empty list says that
+     * there is none, an absent one that nobody looked. */
+    double *lines;
+    size_t line_count;
+    bool lines_known;
 };
 void spectrum_print(const struct spectrum_record *r, const struct job *job, struct line *line);
 int spectrum_parse(struct spectrum_record *r, const struct job *job, const json_t *json,

@@ -359,10 +359,24 @@ static int print_tacho(const struct recording *rec, struct stream *stream, struc
     return stream_write(stream, line);
 }
 
+/* Frequencies and amplitudes of what does not turn with the shaft, in pairs. */
+static size_t name_lines(const struct recording *rec, size_t sensor, double *lines)
+{
+    struct stray strays[STRAY_MOST];
+    size_t count = spectrum_strays(&rec->tracker.spectrum, sensor, strays);
+
+    for (size_t i = 0; i < count; i++) {
+        lines[2 * i] = strays[i].order * rec->wave.rate_hz;
+        lines[2 * i + 1] = strays[i].amplitude;
+    }
+    return count;
+}
+
 static int print_spectra(const struct recording *rec, struct stream *stream, struct line *line)
 {
-    double orders[SPECTRUM_LINES], amplitude[SPECTRUM_LINES];
-    struct spectrum_record record = {.orders = orders, .amplitude = amplitude};
+    double orders[SPECTRUM_LINES], amplitude[SPECTRUM_LINES], lines[2 * STRAY_MOST];
+    struct spectrum_record record = {
+        .orders = orders, .amplitude = amplitude, .lines = lines, .lines_known = true};
     int status = STATUS_DONE;
 
     strcpy(record.run, rec->run);
@@ -371,7 +385,8 @@ static int print_spectra(const struct recording *rec, struct stream *stream, str
             continue;
         }
         record.sensor = rec->sensors[c];
-        record.count = spectrum_lines(&rec->tracker.spectrum, s++, orders, amplitude);
+        record.count = spectrum_lines(&rec->tracker.spectrum, s, orders, amplitude);
+        record.line_count = name_lines(rec, s++, lines);
         if (record.count > 0 && tracker_regular(&rec->tracker)) {
             spectrum_print(&record, &stream->job, line);
             status = stream_write(stream, line);

@@ -169,6 +169,35 @@ class Track(unittest.TestCase):
         got = chain.weight(1000 * correction["mass"], correction["angle_deg"])
         self.assertLess(abs(got - want), 0.03 * abs(want))  # the project's bar for simulated jobs
 
+    def test_lines_of_others(self):
+        """SciPy takes the shaft's orders off by least squares over its own angle and sees the rest through a flat top."""
+        t = numpy.arange(30 * RATE) / RATE
+        others = {33.4: 0.013, 100: 0.004, 11.3: 0.003}
+        with chain.folder() as where:
+            u = turns(t, 0)
+            x = vibration(u, numpy.random.default_rng(9), 0.002)
+            x += sum(a * numpy.cos(2 * math.pi * hz * t + hz) for hz, a in others.items())
+            write(where, [x * 100, SHAPES["pulse"](u)], TACHO)
+            stream = tracked(where, ("read", "track", "average", "vet"))
+        (spectrum,) = chain.kind(stream, "spectrum")
+        theta = 2 * math.pi * u
+        base = numpy.stack([f(n * theta) for n in range(1, 4) for f in (numpy.cos, numpy.sin)], 1)
+        rest = x - base @ numpy.linalg.lstsq(base, x, rcond=None)[0]
+        hz, power = signal.periodogram(rest, RATE, "flattop", scaling="spectrum", detrend="constant")
+        self.assertEqual(len(spectrum["lines"]), len(others))
+        for f, amplitude in spectrum["lines"]:
+            near = numpy.flatnonzero(abs(hz - f) < 0.3)
+            best = near[numpy.argmax(power[near])]
+            self.assertLess(abs(amplitude / math.sqrt(2 * power[best]) - 1), 0.03)
+            want = min(others, key=lambda other: abs(other - f))
+            self.assertLess(abs(f - want), 0.03)
+        self.assertEqual(spectrum["lines"], sorted(spectrum["lines"], key=lambda line: -line[1]))
+        # vet names the largest of them from the coarser lines, to a sixteenth of an order
+        (neighbour,) = [f for f in chain.kind(stream, "finding") if f["check"] == "neighbour"]
+        self.assertEqual(neighbour["verdict"], "caution")
+        told = float(neighbour["text"].split("line at ")[1].split(" Hz")[0])
+        self.assertLess(abs(told - spectrum["lines"][0][0]), 24.7 / 16)
+
     def test_equal_marks(self):
         """Speed and amplitudes, but no phase."""
         t = numpy.arange(10 * RATE) / RATE

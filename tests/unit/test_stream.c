@@ -421,6 +421,47 @@ static void test_blocks_without_phase(void **state)
     job_release(&job);
 }
 
+/* A spectrum with no lines named, with none found, and with two; the field is not demanded. */
+static void test_spectrum_lines(void **state)
+{
+    (void)state;
+    struct job job;
+    const char *why = NULL;
+    struct line line = LINE_INIT;
+    double orders[] = {1, 2}, amplitude[] = {0.5, 0.25}, lines[] = {37.5, 0.125, 100, 0.0625};
+    struct spectrum_record r = {.run = "a", .orders = orders, .amplitude = amplitude, .count = 2,
+                                .lines = lines}, again;
+    job_init(&job);
+    json_t *json = json_loads(JOB, 0, NULL);
+    assert_int_equal(job_parse(&job, json, &why), 0);
+    json_decref(json);
+    for (int kind = 0; kind < 3; kind++) {
+        r.lines_known = kind > 0;
+        r.line_count = kind > 1 ? 2 : 0;
+        spectrum_print(&r, &job, &line);
+        json = json_loadb(line.text.bytes, line.text.length, JSON_REJECT_DUPLICATES, NULL);
+        assert_int_equal(json_array_size(json_object_get(json, "lines")), r.line_count);
+        assert_int_equal(spectrum_parse(&again, &job, json, &why), 0);
+        assert_int_equal(again.lines_known, kind > 0);
+        assert_int_equal(again.line_count, r.line_count);
+        assert_int_equal(again.count, 2);
+        if (kind > 1)
+            assert_memory_equal(again.lines, lines, sizeof lines);
+        spectrum_release(&again);
+        if (kind > 1) {
+            json_array_append_new(json_object_get(json, "lines"), json_pack("[f]", 3.0));
+            assert_int_equal(spectrum_parse(&again, &job, json, &why), -1);
+            json_object_set_new(json, "lines", json_pack("[[f, s]]", 3.0, "x"));
+            assert_int_equal(spectrum_parse(&again, &job, json, &why), -1);
+            json_object_set_new(json, "lines", json_true());
+            assert_int_equal(spectrum_parse(&again, &job, json, &why), -1);
+        }
+        json_decref(json);
+    }
+    line_release(&line);
+    job_release(&job);
+}
+
 /* The JSON of a line, to be released. */
 static json_t *json_of(const struct line *line)
 {
@@ -490,7 +531,7 @@ int main(void)
         cmocka_unit_test(test_job_round_trip),     cmocka_unit_test(test_sheet_angles),
         cmocka_unit_test(test_reals_and_strings),  cmocka_unit_test(test_reading_round_trip),
         cmocka_unit_test(test_coast_down_records), cmocka_unit_test(test_blocks_without_phase),
-        cmocka_unit_test(test_outcomes_round_trip),
+        cmocka_unit_test(test_spectrum_lines),     cmocka_unit_test(test_outcomes_round_trip),
     };
     quiet();
     cmocka_set_message_output(CM_OUTPUT_STDOUT);
