@@ -124,7 +124,19 @@ static void foot(const struct strip *s, double y, const char *unit, struct buffe
     char from[DIGITS_ROOM], to[DIGITS_ROOM];
     svg_text(out, "small", "start", LEFT, y, "%s", digits_text(from, s->from, NAN));
     svg_text(out, "small", "middle", (LEFT + s->right) / 2, y, "%s", unit);
-    svg_text(out, "small", "end", s->right, y, "%s", digits_text(to, s->to, NAN));
+    svg_text(out, "small", "end", s->right, y, "%s", digits_text(to, s->to, s->to / 10));
+}
+
+/* From the start of the recording to its end, as far as blocks tell. */
+static void whole_time(const struct series *s, double to[2])
+{
+    double first = INFINITY, last = 0;
+    for (size_t i = 0; i < s->count; i++) {
+        first = fmin(first, s->x[i]);
+        last = fmax(last, s->x[i]);
+    }
+    to[0] = 0;
+    to[1] = last + fmax(0, first);
 }
 
 /* Amplitude and lag, and speed where `over` is time. */
@@ -136,6 +148,8 @@ static double strips(const struct series *s, const struct job_sensor *sensor, co
     if (!range(s->x, s->count, 0, x))
         return 0;
     x[0] = fmax(0, x[0]);
+    if (time) /* each block's middle; the first is as far from the start as the last from the end */
+        whole_time(s, x);
     svg_begin(out, y, small ? SMALL_WIDE : WIDE, high, title);
     svg_text(out, small ? "small bold" : "bold", "start", 6, 13, "%s", title);
     snprintf(name, sizeof name, "1x, %s", units_show_text(&sensor->show, unit));

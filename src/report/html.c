@@ -34,7 +34,8 @@ static const char page_style[] =
     ".pictures{display:flex;flex-wrap:wrap;gap:8px}.pictures "
     "svg{max-width:100%;height:auto}.pictures svg,tr,li{break-inside:avoid}"
     "pre{white-space:pre-wrap;font-size:.75em;border:1px solid #bbb;padding:6px}.note{color:#333;"
-    "font-size:.9em}@media(min-width:501px){.r{white-space:nowrap}}@media(max-width:500px){th,td{"
+    "font-size:.9em}.k{white-space:nowrap}@media(min-width:501px){.r{white-space:nowrap}}@media("
+    "max-width:500px){th,td{"
     "padding:2px 3px;font-size:11px}}@media "
     "print{body{padding:0;max-width:none;font-size:10pt}"
     ".wide{overflow:visible}.pictures svg{max-width:49%}.many svg{max-width:32%}"
@@ -72,14 +73,23 @@ static void forecast(const struct dossier *d, struct buffer *out)
         snprintf(heading, sizeof heading, "Forecast: 1x amplitudes %s", phrase_fitted(d));
         html_part_heading(out, heading);
         text_answer_forecast_table(d, &table);
+        const char *blind = text_answer_not_forecast(&table);
         html_part_table(out, &table);
+        if (blind)
+            html_part_say(out, "note", "%s", blind);
+        html_part_say(out, "note", "%s", text_answer_after);
         html_part_say(out, "note", "%s", text_answer_1x_only);
     }
     if (d->residuals.count > 0) {
         html_part_heading(out, "Tolerance: estimated residual unbalance");
         text_answer_tolerance_table(d, &table);
         html_part_table(out, &table);
-        html_part_say(out, "note", "Basis: %s.", d->residuals.items[0].basis);
+        struct buffer words = BUFFER_INIT;
+        text_answer_tolerance_words(d, &words);
+        buffer_format(&words, " Basis: %s.", d->residuals.items[0].basis);
+        html_part_say(out, "note", "%s", words.bytes && !words.failed ? words.bytes : "");
+        out->failed = out->failed || words.failed;
+        buffer_release(&words);
     }
 }
 
@@ -125,6 +135,8 @@ static void readings(const struct dossier *d, struct buffer *out)
         if (overall.failed || overall.length > 0)
             html_part_take(out, "p", &overall);
     }
+    if (text_readings_words(d))
+        html_part_say(out, "note", "%s", text_readings_words(d));
     html_part_say(out, "note",
                   "In the polar plots lag grows against rotation from the top, seen "
                   "as the planes are.");
@@ -148,18 +160,21 @@ static void readings(const struct dossier *d, struct buffer *out)
 
 static void evidence(const struct dossier *d, bool small, struct buffer *out)
 {
-    html_part_heading(out, small ? "Lag over time, recording by recording"
-                                 : "Evidence: over time, order spectra");
-    buffer_format(out, "<div class=\"pictures%s\">\n", small ? " many" : "");
-    for (size_t r = 0; r < d->runs.count; r++) {
-        for (size_t s = 0; s < d->job->sensor_count; s++)
-            draw_lines_time(d, r, s, small, 0, out);
+    if (d->turns.count > 0 || d->spectra.count > 0) { /* else: readings by hand */
+        html_part_heading(out, small ? "Lag over time, recording by recording"
+                                     : "Evidence: over time, order spectra");
+        buffer_format(out, "<div class=\"pictures%s\">\n", small ? " many" : "");
+        for (size_t r = 0; r < d->runs.count; r++) {
+            for (size_t s = 0; s < d->job->sensor_count; s++)
+                draw_lines_time(d, r, s, small, 0, out);
+        }
+        for (size_t i = 0; !small && i < d->spectra.count; i++)
+            draw_spectrum(d, i, 0, out);
+        buffer_text(out, "</div>\n");
     }
-    for (size_t i = 0; !small && i < d->spectra.count; i++)
-        draw_spectrum(d, i, 0, out);
-    buffer_text(out, "</div>\n");
-    if (d->curves.count > 0)
-        html_part_heading(out, "Coast-down");
+    if (d->curves.count == 0)
+        return;
+    html_part_heading(out, "Coast-down");
     buffer_text(out, "<div class=\"pictures\">\n");
     for (size_t i = 0; i < d->curves.count; i++)
         draw_lines_speed(d, i, 0, out);
@@ -187,7 +202,7 @@ static void provenance(const struct dossier *d, const char *job, size_t length, 
         if (run->file_count == 0)
             html_part_say(out, "note", "Run '%s': readings by hand.", run->run);
         for (size_t f = 0; f < run->file_count; f++)
-            html_part_say(out, "note", "Run '%s': %s, %lld frames at %.10g Hz, SHA-256 %s",
+            html_part_say(out, "note", "Run '%s': %s, %lld samples at %.10g Hz, SHA-256 %s",
                           run->run, run->files[f].path, run->files[f].frames, run->files[f].rate_hz,
                           run->files[f].sha256);
     }

@@ -1,6 +1,7 @@
 #include "report/html_answer.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "base/status.h"
@@ -36,7 +37,7 @@ static void placement_row(const struct dossier *d, const struct placement_record
                           struct table *table)
 {
     struct buffer angle = BUFFER_INIT, mass = BUFFER_INIT, pieces = BUFFER_INIT;
-    char force[2 * DIGITS_ROOM], speed[DIGITS_ROOM];
+    char force[2 * DIGITS_ROOM];
     phrase_angle(&angle, d->job, p->angle_deg, NAN);
     phrase_mass(&mass, d->job, fabs(p->mass), text_answer_free_half(d, p->plane));
     if (p->mass >= 0)
@@ -55,8 +56,7 @@ static void placement_row(const struct dossier *d, const struct placement_record
         table_cell(table, "%s %s", p->mass < 0 ? "remove" : "fit", mass.bytes);
         table_cell(table, "%s", pieces.bytes ? pieces.bytes : "-");
         if (isfinite(p->force_n))
-            table_cell(table, "%s at %s rpm", shown_force(d->job, force, fabs(p->force_n)),
-                       shown_speed(speed, d->job->service_rpm));
+            table_cell(table, "%s", shown_force(d->job, force, fabs(p->force_n)));
         else
             table_cell(table, "not known");
     }
@@ -71,8 +71,14 @@ static void cautions(const struct dossier *d, struct buffer *out)
     size_t count = 0;
     for (size_t i = 0; i < d->findings.count; i++)
         count += d->findings.items[i].verdict == VERDICT_CAUTION;
-    if (count > 0)
-        html_part_say(out, "warn", "To be read first: cautions (%zu) among the findings.", count);
+    if (count == 0)
+        return;
+    struct buffer text = BUFFER_INIT;
+    phrase_checks(&text, d, VERDICT_CAUTION);
+    html_part_say(out, "warn", "To be read first: cautions (%zu) among the findings%s.", count,
+                  text.bytes && !text.failed ? text.bytes : "");
+    out->failed = out->failed || text.failed;
+    buffer_release(&text);
 }
 
 static void missed(const struct dossier *d, struct buffer *out)
@@ -90,10 +96,13 @@ static void missed(const struct dossier *d, struct buffer *out)
 
 static void placements(const struct dossier *d, struct buffer *out)
 {
-    static const struct table_column columns[] = {
+    char force[40] = "force", speed[DIGITS_ROOM];
+    const struct table_column columns[] = {
         {"plane", false, true}, {"position", true, false}, {"angle from the mark", true, false},
-        {"what", true, false},  {"pieces", false, false},  {"force", true, false}};
+        {"what", true, false},  {"pieces", false, false},  {force, true, false}};
     struct table table;
+    if (isfinite(d->job->service_rpm))
+        snprintf(force, sizeof force, "force at %s rpm", shown_speed(speed, d->job->service_rpm));
     size_t refusals = 0;
     html_part_heading(out, "What to do now");
     relative_to(d, out);
@@ -104,9 +113,13 @@ static void placements(const struct dossier *d, struct buffer *out)
     for (size_t i = 0; i < d->findings.count; i++)
         refusals += d->findings.items[i].verdict == VERDICT_REFUSE;
     missed(d, out);
-    if (refusals > 0)
-        html_part_say(out, "warn", "Made WITHOUT what was refused (%zu): see the findings.",
-                      refusals);
+    if (refusals > 0) {
+        struct buffer text = BUFFER_INIT;
+        phrase_checks(&text, d, VERDICT_REFUSE);
+        html_part_say(out, "warn", "Made WITHOUT what was refused: see the findings (%zu)%s.",
+                      refusals, text.bytes && !text.failed ? text.bytes : "");
+        buffer_release(&text);
+    }
     cautions(d, out);
     advice(d, out);
 }
@@ -119,8 +132,12 @@ static void reasons(const struct dossier *d, bool solve_only, struct buffer *out
         struct buffer text = BUFFER_INIT;
         if (f->verdict != VERDICT_REFUSE || (solve_only && strcmp(f->stage, "solve") != 0))
             continue;
-        buffer_format(&text, "%s%s%s%s%s: %s", f->check, f->run[0] ? ", run " : "", f->run,
-                      f->sensor >= 0 ? ", sensor " : "", dossier_sensor(d, f->sensor), f->text);
+        buffer_format(&text, "%s", f->check);
+        if (f->run[0])
+            buffer_format(&text, ", run '%s'", f->run);
+        if (f->sensor >= 0)
+            buffer_format(&text, ", sensor '%s'", dossier_sensor(d, f->sensor));
+        buffer_format(&text, ": %s", f->text);
         html_part_take(out, "li", &text);
     }
     buffer_text(out, "</ul>\n");

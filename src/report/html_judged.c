@@ -18,7 +18,8 @@ static void value_cell(const struct finding_record *f, struct table *table)
     if (!isfinite(f->value))
         table_cell(table, "%s", "");
     else if (f->limit > 0 && isfinite(f->limit))
-        table_cell(table, "%.3g%s%s (limit %.3g)", f->value, gap, f->unit, f->limit);
+        table_cell(table, "%.3g%s%s (limit %.3g%s%s)", f->value, gap, f->unit, f->limit, gap,
+                   f->unit);
     else
         table_cell(table, "%.3g%s%s", f->value, gap, f->unit);
 }
@@ -57,6 +58,17 @@ void html_judged_findings(const struct dossier *dossier, struct buffer *out)
     html_part_table(out, &table);
 }
 
+/* "at least 50", where the value had to be above it. */
+static void limit_cell(const struct finding_record *f, struct table *table)
+{
+    const bool above = f->value > f->limit, below = f->value < f->limit;
+    if (isfinite(f->limit))
+        table_cell(table, "%s%.3g", (f->verdict == VERDICT_OK ? above : below) ? "at least " : "",
+                   f->limit);
+    else
+        table_cell(table, "-");
+}
+
 void html_judged_checks(const struct dossier *dossier, struct buffer *out)
 {
     static const struct table_column columns[] = {{"check", false, true},  {"run", false, true},
@@ -73,7 +85,7 @@ void html_judged_checks(const struct dossier *dossier, struct buffer *out)
         table_cell(&table, "%s",
                    text_readings_uncheckable(f) ? "not checkable" : verdicts[f->verdict]);
         table_cell(&table, isfinite(f->value) ? "%.3g" : "-", f->value);
-        table_cell(&table, isfinite(f->limit) ? "%.3g" : "-", f->limit);
+        limit_cell(f, &table);
         table_cell(&table, "%s", f->unit);
         table_cell(&table, "%s", f->basis);
     }

@@ -166,8 +166,9 @@ static void others(const struct dossier *d, struct buffer *out)
         return;
     html_part_heading(out, "Instead of the placement: the next best");
     html_part_say(out, "note",
-                  "Instead of the weights at the top, not besides them. Those leave an expected "
-                  "%s %% of the vibration.",
+                  "Instead of the weights at the top, not besides them. Over all sensors, and "
+                  "with all that is uncertain in the readings to come, those leave %s %% of the "
+                  "vibration.",
                   share(text, best));
     buffer_text(out, "<div class=\"pictures\">\n");
     for (size_t i = 0; i < json_array_size(list); i++) {
@@ -241,7 +242,8 @@ static void parts(const struct dossier *d, const struct parts_record *r, struct 
     html_part_heading(out, "Static and couple parts of the ideal weight");
     html_part_say(out, "note",
                   "Static: on both planes at that angle. Couple: on '%s' at that angle, on '%s' "
-                  "opposite to it. Leaves: share of the expected vibration.",
+                  "opposite to it. Leaves: share of the vibration, over all sensors "
+                  "and with all that is uncertain in the readings to come.",
                   planes[0].name, planes[1].name);
     table_init(&table, columns, sizeof columns / sizeof *columns);
     part_row(d, "static", r->static_part, NAN, &table);

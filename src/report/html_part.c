@@ -35,11 +35,17 @@ void html_part_take(struct buffer *out, const char *element, struct buffer *text
     buffer_release(text);
 }
 
+#define WHOLE_MOST 8 /* characters of a cell that stay on one line, also on a phone */
+
 static void cell(struct buffer *out, const char *element, const struct table_column *column,
                  const char *text)
 {
     bool bad = strcmp(text, "REFUSED") == 0 || strcmp(text, "UNREAD") == 0;
-    const char *class = column->right ? " class=\"r\"" : bad ? " class=\"no\"" : "";
+    /* A figure and its unit, as "fit 40 g": never parted. */
+    bool whole = strlen(text) <= WHOLE_MOST && strpbrk(text, "0123456789");
+    const char *class = column->right ? (whole ? " class=\"r k\"" : " class=\"r\"")
+                        : bad         ? " class=\"no\""
+                                      : "";
     buffer_format(out, "<%s%s>", element, class);
     svg_escape(out, text);
     buffer_format(out, "</%s>", element);

@@ -163,8 +163,9 @@ void phrase_relative_to(struct buffer *out, const struct job *job, const char *n
         return;
     }
     if (removed < 0 && job_never_bare(job)) {
-        buffer_text(out, "Relative to the rotor without any weight that the sheet lists, which no run "
-                         "shows: take all of them off first.");
+        buffer_text(out,
+                    "Relative to the rotor without any weight that the sheet lists, which no run "
+                    "shows: take all of them off first.");
         return;
     }
     buffer_format(out, "Relative to the rotor %s: ", name);
@@ -188,6 +189,32 @@ void phrase_weight_half(double mass, double angle_deg, const double cov[3], doub
     struct shown s = shown_vector(w, cov, QUANTITY_DISPLACEMENT, NAN, &plain, NAN);
     half[0] = s.half;
     half[1] = s.lag_half;
+}
+
+static bool is_first_of_check(const struct dossier *d, size_t finding)
+{
+    const struct finding_record *f = &d->findings.items[finding];
+    for (size_t i = 0; i < finding; i++)
+        if (d->findings.items[i].verdict == f->verdict &&
+            strcmp(d->findings.items[i].check, f->check) == 0)
+            return false;
+    return true;
+}
+
+void phrase_checks(struct buffer *out, const struct dossier *d, enum verdict verdict)
+{
+    size_t named = 0;
+    for (size_t i = 0; i < d->findings.count; i++) {
+        const struct finding_record *f = &d->findings.items[i];
+        if (f->verdict != verdict || !is_first_of_check(d, i))
+            continue;
+        if (named < 4)
+            buffer_format(out, "%s%s", named ? ", " : " (", f->check);
+        else if (named == 4)
+            buffer_text(out, ", ...");
+        named++;
+    }
+    buffer_text(out, named ? ")" : "");
 }
 
 void phrase_sentence(struct buffer *out, const char *text)

@@ -49,6 +49,10 @@ void phrase_weights(struct buffer *out, const struct job *job, size_t run);
  * is zero. */
 void phrase_weight_half(double mass, double angle_deg, const double cov[3], double half[2]);
 
+/* " (drift, beat)": the checks that gave findings of that verdict, each once, four at most and then "...";
+ * nothing where there are none. */
+void phrase_checks(struct buffer *out, const struct dossier *d, enum verdict verdict);
+
 /* `text` as a sentence: its first letter (ASCII) a capital, a full stop at its end. */
 void phrase_sentence(struct buffer *out, const char *text);
 

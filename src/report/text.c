@@ -45,7 +45,7 @@ static void files(const struct dossier *d, struct buffer *out)
             char rate[DIGITS_ROOM];
             digits_at(rate, file->rate_hz,
                       fabs(file->rate_hz - round(file->rate_hz)) < 5e-4 ? 0 : -3);
-            paper_say(out, 2, 4, "Run '%s': %s, %lld frames at %s Hz, SHA-256 %.12s...", run->run,
+            paper_say(out, 2, 4, "Run '%s': %s, %lld samples at %s Hz, SHA-256 %.12s...", run->run,
                       file->path, file->frames, rate, file->sha256);
         }
     }

@@ -110,9 +110,14 @@ static size_t count_findings(const struct dossier *d, enum verdict verdict)
 /* No step stands without a word about what speaks against it. */
 static void cautions(const struct dossier *d, struct buffer *out)
 {
+    struct buffer text = BUFFER_INIT;
     size_t count = count_findings(d, VERDICT_CAUTION);
-    if (count > 0)
-        paper_say(out, 2, 2, "To be read first: cautions (%zu) among the findings below.", count);
+    if (count == 0)
+        return;
+    buffer_format(&text, "To be read first: cautions (%zu) among the findings below", count);
+    phrase_checks(&text, d, VERDICT_CAUTION);
+    buffer_text(&text, ".");
+    put(out, 2, 2, &text);
 }
 
 static void doubts(const struct dossier *d, struct buffer *out)
@@ -123,9 +128,14 @@ static void doubts(const struct dossier *d, struct buffer *out)
         text_answer_missed(d, i, &text);
         put(out, 2, 2, &text);
     }
-    if (refused > 0)
-        paper_say(out, 2, 2, "Made WITHOUT what was refused (%zu): see the findings below.",
-                  refused);
+    if (refused > 0) {
+        struct buffer text = BUFFER_INIT;
+        buffer_format(&text, "Made WITHOUT what was refused: see the findings (%zu) below",
+                      refused);
+        phrase_checks(&text, d, VERDICT_REFUSE);
+        buffer_text(&text, ".");
+        put(out, 2, 2, &text);
+    }
     cautions(d, out);
 }
 
@@ -439,6 +449,19 @@ const char text_answer_1x_only[] =
     "1x only: whatever else the overall vibration holds stays as it is, and no balance weight "
     "changes it.";
 
+const char text_answer_after[] =
+    "After is what the best estimates give. The next reading holds their uncertainty and the "
+    "scatter from run to run, too, so that where little is left it is likely to be more.";
+
+/* The table has a row about which nothing is foretold. */
+const char *text_answer_not_forecast(const struct table *table)
+{
+    for (size_t i = 0; i < table->cell_count; i++)
+        if (table->cells[i] && strcmp(table->cells[i], "not forecast") == 0)
+            return "Not forecast: no reading that may be used tells what this sensor will show.";
+    return NULL;
+}
+
 void text_answer_forecast_table(const struct dossier *dossier, struct table *table)
 {
     static const struct table_column columns[] = {
@@ -467,7 +490,11 @@ void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
     snprintf(heading, sizeof heading, "FORECAST: 1x amplitudes %s", phrase_fitted(dossier));
     paper_heading(out, heading);
     table_print(&table, 2, out);
+    const char *blind = text_answer_not_forecast(&table);
     table_release(&table);
+    if (blind)
+        paper_wrap(out, 2, 2, blind);
+    paper_wrap(out, 2, 2, text_answer_after);
     paper_wrap(out, 2, 2, text_answer_1x_only);
 }
 
@@ -507,14 +534,32 @@ void text_answer_tolerance_table(const struct dossier *dossier, struct table *ta
     }
 }
 
+void text_answer_tolerance_words(const struct dossier *dossier, struct buffer *text)
+{
+    bool unproven = false, unknown = false;
+    buffer_text(text, "95 % below: the residual is below it 95 times in 100.");
+    for (size_t i = 0; i < dossier->residuals.count; i++) {
+        const char *word = within(&dossier->residuals.items[i]);
+        unproven = unproven || strcmp(word, "not proven") == 0;
+        unknown = unknown || strcmp(word, "not known") == 0;
+    }
+    if (unproven)
+        buffer_text(text, " Not proven: the estimate is permissible, but that bound is not.");
+    if (unknown)
+        buffer_text(text, " Not known: there is no estimate, or none that tells.");
+}
+
 void text_answer_tolerance(const struct dossier *dossier, struct buffer *out)
 {
     struct table table;
+    struct buffer words = BUFFER_INIT;
     if (dossier->residuals.count == 0)
         return;
     text_answer_tolerance_table(dossier, &table);
     paper_heading(out, "TOLERANCE: estimated residual unbalance");
     table_print(&table, 2, out);
+    text_answer_tolerance_words(dossier, &words);
+    put(out, 2, 2, &words);
     if (dossier->residuals.items[0].basis[0])
         paper_say(out, 2, 2, "Basis: %s.", dossier->residuals.items[0].basis);
     table_release(&table);

@@ -17,8 +17,14 @@ void text_answer_tolerance(const struct dossier *dossier, struct buffer *out);
 /* What must be said wherever a weight is to be fitted; NULL at the end. */
 extern const char *const text_answer_cautions[];
 
-/* What a forecast is not about. */
-extern const char text_answer_1x_only[];
+/* What a forecast is not about, and what its figure "after" is. */
+extern const char text_answer_1x_only[], text_answer_after[];
+
+/* What "not forecast" in that table means; NULL where it is not in it. Static text. */
+const char *text_answer_not_forecast(const struct table *table);
+
+/* What the words in the table of the tolerance mean, as far as they are in it. */
+void text_answer_tolerance_words(const struct dossier *dossier, struct buffer *text);
 
 /* 95 % half width (kg) to which a placed mass is worth stating; NaN: pieces, nominal. */
 double text_answer_free_half(const struct dossier *d, int plane);

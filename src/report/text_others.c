@@ -74,7 +74,9 @@ void text_others_write(const struct dossier *dossier, struct buffer *out)
     if (dossier->placements.count == 0 || json_array_size(others) == 0 || isnan(best))
         return;
     struct buffer text = BUFFER_INIT;
-    buffer_text(&text, "Instead of the above, not besides it. What is above leaves an expected ");
+    buffer_text(&text,
+                "Instead of the above, not besides it. Over all sensors, and with all that is "
+                "uncertain in the readings to come, what is above leaves ");
     share(&text, best);
     buffer_text(&text, " of the vibration; the next best would leave:");
     paper_heading(out, "OTHERWISE");

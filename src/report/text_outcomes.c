@@ -89,8 +89,11 @@ void text_outcomes_parts(const struct dossier *dossier, struct buffer *out)
     part(dossier, "Couple", r->couple_part, -r->couple_part, out);
     part(dossier, "The best static alone", r->static_alone, r->static_alone, out);
     if (isfinite(r->left_alone) && isfinite(r->left))
-        paper_say(out, 2, 4, "Static alone would leave %s %% of the vibration, both parts %s %%.",
-                  share(alone, r->left_alone), share(both, r->left));
+        paper_say(
+            out, 2, 4,
+            "Static alone would leave %s %% of the vibration, both parts %s %%, over all sensors "
+            "and with all that is uncertain in the readings to come.",
+            share(alone, r->left_alone), share(both, r->left));
 }
 
 /* The sensor's name, and the condition where it is not the ordinary one. */

@@ -148,7 +148,7 @@ void text_readings_overall(const struct dossier *dossier, size_t first, size_t e
             continue;
         if (!band || !same_band(band, &r->overall))
             buffer_format(text, "%sOverall, %s to %s Hz: ", band ? ". " : "",
-                          digits_text(from, round(100 * r->overall.from_hz) / 100, NAN),
+                          digits_text(from, round(10 * r->overall.from_hz) / 10, NAN),
                           digits_text(to, r->overall.to_hz, NAN));
         else
             buffer_text(text, ", ");
@@ -158,6 +158,15 @@ void text_readings_overall(const struct dossier *dossier, size_t first, size_t e
     }
     if (band)
         buffer_text(text, ".");
+}
+
+const char *text_readings_words(const struct dossier *dossier)
+{
+    for (size_t i = 0; i < dossier->readings.count; i++)
+        if (strcmp(use_text(dossier, &dossier->readings.items[i]), "not used") == 0)
+            return "Not used: fit to be used, but the answer is given without this sensor, because "
+                   "another reading that it needs was refused or is missing.";
+    return NULL;
 }
 
 void text_readings_all(const struct dossier *dossier, struct buffer *out)
@@ -190,6 +199,8 @@ void text_readings_all(const struct dossier *dossier, struct buffer *out)
             paper_wrap(out, 4, 6, text.bytes);
         buffer_release(&text);
     }
+    if (text_readings_words(dossier))
+        paper_wrap(out, 2, 2, text_readings_words(dossier));
 }
 
 static void response_row(const struct dossier *d, const struct response_record *r, double mass,
@@ -252,8 +263,8 @@ static void finding(const struct dossier *d, const struct finding_record *f, str
         buffer_format(&text, ", sensor '%s'", dossier_sensor(d, f->sensor));
     buffer_format(&text, ": %s", f->text);
     if (isfinite(f->value) && f->limit > 0 && isfinite(f->limit) && !strstr(f->text, "limit"))
-        buffer_format(&text, " [%.3g against a limit of %.3g%s%s]", f->value, f->limit,
-                      f->unit[0] ? " " : "", f->unit);
+        buffer_format(&text, " [%.3g%s%s, limit %.3g%s%s]", f->value, f->unit[0] ? " " : "",
+                      f->unit, f->limit, f->unit[0] ? " " : "", f->unit);
     if (text.failed)
         out->failed = 1;
     else

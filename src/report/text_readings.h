@@ -22,6 +22,9 @@ double text_readings_response_table(const struct dossier *dossier, struct table 
     __attribute__((warn_unused_result));
 
 void text_readings_all(const struct dossier *dossier, struct buffer *out);
+/* What "not used" in the tables of readings means; NULL where it is in none. Static text. */
+const char *text_readings_words(const struct dossier *dossier);
+
 void text_readings_responses(const struct dossier *dossier, struct buffer *out);
 /* What everything in a band amounts to, beside 1x, of the readings from `first` up to `end`: "Overall,
  * 10 to 1000 Hz: DE-V 3.12 mm/s rms."; nothing where it is not known. */
