@@ -329,6 +329,19 @@ bool dossier_is_audit(const struct dossier *dossier)
     return dossier->job->audit;
 }
 
+int dossier_base(const struct job *job, const char *relative_to)
+{
+    return strcmp(relative_to, "as found") == 0 ? -1 : job_find_run(job, relative_to);
+}
+
+const json_t *dossier_instead(const struct dossier *dossier)
+{
+    const int run = job_find_run(dossier->job, "as found");
+    return run >= 0 && !job_run_is_bare(dossier->job, (size_t)run)
+               ? NULL
+               : json_object_get(dossier->figures, "instead");
+}
+
 bool dossier_is_runout(const struct dossier *dossier, const char *run)
 {
     const int index = job_find_run(dossier->job, run);

@@ -91,6 +91,14 @@ bool dossier_is_audit(const struct dossier *dossier);
 
 /* The gravest verdict of any finding on that run and sensor (findings on the whole run included).
  */
+/* The run that a record is relative to, whose weights stay on; -1: the rotor as found, also where a run
+ * has just that name (the sheet does not let its weights stay on). */
+int dossier_base(const struct job *job, const char *relative_to);
+
+/* The ideal weight with what is mounted the other way, left on or taken off; NULL: none, or a run named
+ * "as found" carries weights, so that it cannot be told which it is. Borrowed. */
+const json_t *dossier_instead(const struct dossier *dossier);
+
 /* True where that run is a slow roll, whose readings are for every condition. */
 bool dossier_is_runout(const struct dossier *dossier, const char *run);
 

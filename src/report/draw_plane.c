@@ -104,7 +104,7 @@ static void weight(const struct job *job, const struct placement_record *p, stru
 /* What stays on the rotor while the placement is added. */
 static void stays(const struct dossier *d, size_t plane, struct buffer *out)
 {
-    int run = d->placements.count ? job_find_run(d->job, d->placements.items[0].relative_to) : -1;
+    int run = d->placements.count ? dossier_base(d->job, d->placements.items[0].relative_to) : -1;
     for (size_t i = 0; run >= 0 && i < d->job->runs[run].weight_count; i++) {
         const struct job_weight *w = &d->job->runs[run].weights[i];
         struct svg_point here = at(d->job, DISC - 16, w->angle_deg);

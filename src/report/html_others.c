@@ -100,7 +100,7 @@ static void ideal(const struct dossier *d, struct buffer *out)
     if (d->corrections.count == 0)
         return;
     const char *to = d->corrections.items[0].relative_to;
-    bool is_run = job_find_run(d->job, to) >= 0;
+    bool is_run = dossier_base(d->job, to) >= 0;
     html_part_heading(out, "Ideal weight");
     html_part_say(out, "note",
                   "%s, relative to %s%s%s. Least squares is for a hand check; +/- is its 95 %% "
@@ -186,14 +186,14 @@ static void others(const struct dossier *d, struct buffer *out)
 /* The ideal answer with the mounted weights the other way, and one weight a plane for all. */
 static void otherwise(const struct dossier *d, struct buffer *out)
 {
-    const json_t *instead = json_object_get(d->figures, "instead");
+    const json_t *instead = dossier_instead(d);
     const json_t *list = json_object_get(instead, "weights");
     const json_t *merged = json_object_get(d->figures, "merged");
     if (d->placements.count == 0)
         return;
     if (json_array_size(list) > 0) {
         const char *to = string(instead, "relative_to");
-        bool is_run = job_find_run(d->job, to) >= 0;
+        bool is_run = dossier_base(d->job, to) >= 0;
         html_part_heading(out, is_run ? "Ideal weight if the last run's weights stay on"
                                       : "Ideal weight if everything comes off first");
         html_part_say(out, "note", "Instead of the weights at the top. Relative to %s%s%s.",

@@ -147,7 +147,7 @@ static bool any_added(const struct job *job)
 
 void phrase_relative_to(struct buffer *out, const struct job *job, const char *name)
 {
-    int run = job_find_run(job, name), removed = job_removed_run(job);
+    int run = dossier_base(job, name), removed = job_removed_run(job);
     const int loaded = job_found_loaded(job);
     if (run >= 0) {
         buffer_format(out, "In addition to the weights of run '%s', which stay on: ", name);

@@ -94,6 +94,8 @@ static void placement(const struct dossier *d, size_t number, const struct place
         shown_force(d->job, force, fabs(p->force_n));
         buffer_format(&text, "; force %s at %s rpm", force,
                       shown_speed(speed, d->job->service_rpm));
+    } else {
+        buffer_text(&text, "; force not known, the sheet has no service speed");
     }
     phrase_sits(&text, d->job, p);
     put(out, 5, 5, &text);
@@ -289,8 +291,8 @@ void text_answer_ideal(const struct dossier *dossier, struct buffer *out)
     paper_say(out, 2, 2, "%s, relative to %s%s%s.",
               dossier->placements.count > 0 ? "Before it is split over positions and pieces"
                                             : "For the record, not to be fitted as it stands",
-              job_find_run(dossier->job, to) >= 0 ? "run '" : "", to,
-              job_find_run(dossier->job, to) >= 0 ? "'" : "");
+              dossier_base(dossier->job, to) >= 0 ? "run '" : "", to,
+              dossier_base(dossier->job, to) >= 0 ? "'" : "");
     for (size_t i = 0; i < dossier->corrections.count; i++)
         ideal(dossier, &dossier->corrections.items[i], out);
 }
@@ -368,7 +370,7 @@ static double lost_before(const struct dossier *d, size_t sensor, const char *co
 {
     const char *to = d->placements.count > 0 ? d->placements.items[0].relative_to : "";
     const struct job_sensor *s = &d->job->sensors[sensor];
-    const int base = job_find_run(d->job, to);
+    const int base = dossier_base(d->job, to);
     double complex sum = 0;
     double rpm = NAN;
     size_t count = 0;

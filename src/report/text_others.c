@@ -158,7 +158,7 @@ static void list(const struct dossier *d, const char *lead, const json_t *weight
 
 void text_others_same(const struct dossier *dossier, struct buffer *out)
 {
-    const json_t *instead = json_object_get(dossier->figures, "instead");
+    const json_t *instead = dossier_instead(dossier);
     const json_t *merged = json_object_get(dossier->figures, "merged");
     if (!instead && !merged)
         return;
@@ -166,7 +166,7 @@ void text_others_same(const struct dossier *dossier, struct buffer *out)
     if (instead) {
         const char *to = string(instead, "relative_to");
         struct buffer lead = BUFFER_INIT;
-        if (job_find_run(dossier->job, to) >= 0)
+        if (dossier_base(dossier->job, to) >= 0)
             buffer_format(&lead, "The ideal weight with the weights of run '%s' left on:", to);
         else
             buffer_text(&lead, "The ideal weight with everything taken off first:");

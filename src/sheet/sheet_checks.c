@@ -152,10 +152,25 @@ static void check_channels(struct sheet_parse *p)
         check_channel(p, job->run_count, sensor);
 }
 
+/* Records say "as found" for the rotor without weights: that cannot be a run whose weights stay on.
+ */
+static void check_mounted(struct sheet_parse *p)
+{
+    const struct job *job = &p->sheet->job;
+    const int run = job->aim.mounted;
+    if (run < 0 || strcmp(job->runs[run].name, "as found") || job_run_is_bare(job, (size_t)run))
+        return;
+    sheet_errors_add(&p->errors, p->lines.sections[p->run_sections[run]].line,
+                     "the rotor without weights is called 'as found': give this run, whose weights "
+                     "stay on, another name: '[%.60s]'",
+                     p->lines.sections[p->run_sections[run]].text);
+}
+
 void sheet_checks_cross(struct sheet_parse *p)
 {
     check_job(p);
     for (size_t run = 0; run < p->sheet->job.run_count; run++)
         check_run(p, run);
     check_channels(p);
+    check_mounted(p);
 }

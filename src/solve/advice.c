@@ -10,6 +10,8 @@
 #include "solve/trial.h"
 #include "solve/turn.h"
 
+#define GAP_SHOWN 0.01 /* %, our choice: less than any reading tells */
+
 static void judge(struct advice_finding *f, const struct judge_limits *l, double value)
 {
     f->value = value;
@@ -299,17 +301,29 @@ void advice_no_correction(const struct advice_next *next, struct advice_finding 
 
 /* ---- steps ---- */
 
-/* "'wheel' about 60 g (58 N)" for a plane; without a size just its name. */
+/* Three digits without zeros behind the point: pieces in stock are as exact as they are named. */
+static struct judge_figure mass_figure(double mass)
+{
+    struct judge_figure figure = judge_figure(mass, 3);
+    size_t length = strlen(figure.text);
+    if (strchr(figure.text, '.'))
+        while (figure.text[length - 1] == '0')
+            figure.text[--length] = '\0';
+    if (length > 0 && figure.text[length - 1] == '.')
+        figure.text[length - 1] = '\0';
+    return figure;
+}
+
+/* "on 'wheel' about 60 g (force 58 N)" for a plane; without a size just its name. */
 static size_t trial_words(const struct job *job, size_t p, const struct advice_trial *t, char *text,
                           size_t size)
 {
     const char *unit;
     double kg = weight_unit(job, &unit);
     if (isnan(t->mass))
-        return (size_t)snprintf(text, size, "'%s'", job->planes[p].name);
-    return (size_t)snprintf(text, size, "'%s' about %s %s (%s N)", job->planes[p].name,
-                            judge_figure(t->mass / kg, 3).text, unit,
-                            judge_figure(t->force, 2).text);
+        return (size_t)snprintf(text, size, "on '%s'", job->planes[p].name);
+    return (size_t)snprintf(text, size, "on '%s' about %s %s (force %s N)", job->planes[p].name,
+                            mass_figure(t->mass / kg).text, unit, judge_figure(t->force, 2).text);
 }
 
 static bool plane_is_bare(const struct job *job, size_t p)
@@ -549,14 +563,12 @@ void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next
                  work);
     size_t length = strlen(next->text);
     double gap = a->placement.gap, from = a->placement.nothing;
+    double better =
+        100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from));
     if (gap > 0 && from > 0)
-        snprintf(
-            next->text + length, sizeof next->text - length,
-            "; a better placement is not ruled out, by %s %% of the expected vibration at most",
-            judge_figure(
-                100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from)),
-                2)
-                .text);
+        snprintf(next->text + length, sizeof next->text - length,
+                 "; a better placement is not ruled out, by %s %% of the vibration at most",
+                 better < GAP_SHOWN ? "0.01" : judge_figure(better, 2).text);
     else if (a->placement.cut)
         snprintf(next->text + length, sizeof next->text - length,
                  "; that fewer pieces would not do as well is not proven");

@@ -385,6 +385,29 @@ class Check(unittest.TestCase):
         done = chain.lopside("balance", "job.ini", cwd=self.top)
         self.assertEqual(chain.complaint(done), "")
 
+    def test_a_run_named_as_found(self):
+        """Records call the rotor without weights 'as found'; a run of just that name is not mistaken for a base."""
+        sheet = ("[job]\nangles = with rotation\nphase = lag\n[rotor]\nmass = 600 lb\n[sensor A]\nunit = mil\n"
+                 "[plane hub]\nradius = 8 in\n[run as found]\nspeed = 1780 rpm\nreading A = 6.0 mil pk-pk at 45 deg\n{}"
+                 "[run trial]\nspeed = 1780 rpm\nreading A = 5.0 mil pk-pk at 90 deg\nweight hub = 1 oz at 0 deg\n{}")
+        loaded = "weight hub = 1 oz at 90 deg\n"
+        (self.top / "job.ini").write_text(sheet.format("", ""))
+        for form in ("text", "html"):
+            done = chain.lopside("balance", "--as", form, "job.ini", cwd=self.top)
+            self.assertEqual(done.returncode, 0, chain.complaint(done))
+            said = " ".join(done.stdout.decode().split())
+            self.assertIn("Relative to the rotor as found: take every trial weight off first.", said)
+            self.assertNotIn("stay on", said.split("FORECAST")[0] if form == "text" else said.split("Forecast")[0])
+            self.assertIn("not known", said)  # the force: there is no service speed
+        (self.top / "job.ini").write_text(sheet.format(loaded, ""))
+        said = chain.lopside("balance", "job.ini", cwd=self.top).stdout.decode()
+        self.assertIn("take all of them off first", " ".join(said.split()))
+        self.assertNotIn("everything taken off first", " ".join(said.split()))
+        (self.top / "job.ini").write_text(sheet.format(loaded, "[aim]\nmounted = as found\n"))
+        done = chain.lopside("balance", "job.ini", cwd=self.top)
+        self.assertEqual(done.returncode, 2)
+        self.assertIn("give this run, whose weights stay on, another name: '[run as found]'", chain.complaint(done))
+
     def test_perhaps_meant(self):
         """The nearest name of a stage, a run, a file, a sheet; none where nothing is near."""
         self.put = New.put.__get__(self)
