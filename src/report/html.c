@@ -120,10 +120,7 @@ static void readings(const struct dossier *d, struct buffer *out)
     if (d->readings.count == 0)
         return;
     html_part_heading(out, "Readings");
-    html_part_say(out, "note",
-                  "Phase is lag: how far the shaft turns from the mark to the vibration's peak. "
-                  "+/- is the 95 %% half width of one reading; what differs from run to run is "
-                  "not in it.");
+    html_part_say(out, "note", "%s", text_readings_note);
     for (size_t i = 0; i < d->readings.count;) {
         struct buffer text = BUFFER_INIT, overall = BUFFER_INIT;
         text_readings_group_heading(d, &d->readings.items[i].reading, &text);

@@ -160,6 +160,11 @@ void text_readings_overall(const struct dossier *dossier, size_t first, size_t e
         buffer_text(text, ".");
 }
 
+const char text_readings_note[] =
+    "Phase is lag: how far the shaft turns from the mark to the vibration's peak. +/- is the 95 % "
+    "half width of one reading; what differs from run to run is not in it. Turns/blocks: the turns "
+    "that a reading rests on, and the blocks they were cut into to see its scatter.";
+
 const char *text_readings_words(const struct dossier *dossier)
 {
     for (size_t i = 0; i < dossier->readings.count; i++)
@@ -174,10 +179,7 @@ void text_readings_all(const struct dossier *dossier, struct buffer *out)
     if (dossier->readings.count == 0)
         return;
     paper_heading(out, "READINGS");
-    paper_say(out, 2, 2,
-              "Phase is lag: how far the shaft turns from the mark to the vibration's "
-              "peak. +/- is the 95 %% half width of one reading; what differs from run to "
-              "run is not in it.");
+    paper_wrap(out, 2, 2, text_readings_note);
     for (size_t i = 0; i < dossier->readings.count;) {
         struct table table;
         struct buffer text = BUFFER_INIT;

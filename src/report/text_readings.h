@@ -22,6 +22,9 @@ double text_readings_response_table(const struct dossier *dossier, struct table 
     __attribute__((warn_unused_result));
 
 void text_readings_all(const struct dossier *dossier, struct buffer *out);
+/* What stands above the tables of readings. */
+extern const char text_readings_note[];
+
 /* What "not used" in the tables of readings means; NULL where it is in none. Static text. */
 const char *text_readings_words(const struct dossier *dossier);
 
