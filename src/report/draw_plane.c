@@ -94,7 +94,10 @@ static void weight(const struct job *job, const struct placement_record *p, stru
     if (p->position == 0) {
         struct svg_point name = at(job, OUTSIDE, p->angle_deg);
         char angle[DIGITS_ROOM];
-        svg_text(out, "small", "middle", name.x, name.y + 4, "%s deg",
+        /* Beside the disc it is written away from it. */
+        double aside = (name.x - MIDDLE_X) / OUTSIDE;
+        const char *anchor = aside > 0.4 ? "start" : aside < -0.4 ? "end" : "middle";
+        svg_text(out, "small", anchor, name.x, name.y + 4, "%s deg",
                  digits_angle(angle, job_sheet_angle(job, p->angle_deg), NAN));
     }
     buffer_text(out, "</g>\n");
