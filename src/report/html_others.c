@@ -175,7 +175,10 @@ static void others(const struct dossier *d, struct buffer *out)
         const json_t *other = json_array_get(list, i);
         const json_t *items = json_object_get(other, "items");
         buffer_text(out, "<div>\n");
-        html_part_say(out, "", "Leaves %s %%%s", share(text, number(other, "of_nothing")),
+        html_part_say(out, "", "Leaves %s %%%s%s", share(text, number(other, "of_nothing")),
+                      json_is_true(json_object_get(other, "unopposed"))
+                          ? ", without pieces that work against each other"
+                          : "",
                       json_array_size(items) ? ":" : ": nothing added.");
         weights(d, items, false, out);
         buffer_text(out, "</div>\n");

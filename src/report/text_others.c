@@ -57,7 +57,9 @@ static void other(const struct job *job, const json_t *json, struct buffer *out)
     struct buffer text = BUFFER_INIT;
     buffer_text(&text, "- ");
     share(&text, number(json, "of_nothing"));
-    buffer_text(&text, ": ");
+    buffer_text(&text, json_is_true(json_object_get(json, "unopposed"))
+                           ? ", without pieces that work against each other: "
+                           : ": ");
     if (json_array_size(items) == 0)
         buffer_text(&text, "nothing added");
     for (size_t i = 0; i < json_array_size(items); i++) {

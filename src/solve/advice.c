@@ -10,8 +10,6 @@
 #include "solve/trial.h"
 #include "solve/turn.h"
 
-#define GAP_SHOWN 0.01 /* %, our choice: less than any reading tells */
-
 static void judge(struct advice_finding *f, const struct judge_limits *l, double value)
 {
     f->value = value;
@@ -334,12 +332,34 @@ static bool plane_is_bare(const struct job *job, size_t p)
     return true;
 }
 
+/* Appends what the sheet lacks for the size of a trial weight, and nothing else. */
+static void say_unsized(const struct job *job, struct advice_next *next)
+{
+    bool radius = false;
+    for (size_t p = 0; p < job->plane_count; p++)
+        radius = radius || !(job->planes[p].radius_m > 0);
+    const char *const lacks[] = {job->rotor_mass > 0 ? NULL : "its rotor's mass",
+                                 job->service_rpm > 0 ? NULL : "its service speed",
+                                 radius ? "the radius of each plane" : NULL};
+    size_t length = strlen(next->text), count = 0, said = 0;
+    for (size_t i = 0; i < 3; i++)
+        count += lacks[i] != NULL;
+    for (size_t i = 0; i < 3 && length + 40 < sizeof next->text; i++)
+        if (lacks[i])
+            length += (size_t)snprintf(next->text + length, sizeof next->text - length, "%s%s",
+                                       said++ == 0     ? "; for its size the sheet must give "
+                                       : said == count ? " and "
+                                                       : ", ",
+                                       lacks[i]);
+}
+
 /* Appends the trial weights of the planes that no run has tried yet. */
 static void list_trials(const struct model *m, struct advice_next *next)
 {
     const struct job *job = m->job;
     struct advice_trial trials[16];
     size_t length = strlen(next->text), count = 0;
+    bool unsized = false;
     if (job->plane_count > 16)
         return;
     advice_trials(job, trials);
@@ -349,10 +369,10 @@ static void list_trials(const struct model *m, struct advice_next *next)
         length += (size_t)snprintf(next->text + length, sizeof next->text - length, "%s",
                                    count++ ? ", " : ": ");
         length += trial_words(job, p, &trials[p], next->text + length, sizeof next->text - length);
+        unsized = unsized || isnan(trials[p].wanted);
     }
-    if (count && isnan(trials[0].mass) && length < sizeof next->text)
-        snprintf(next->text + length, sizeof next->text - length,
-                 "; no size without rotor mass, service speed and radius");
+    if (count && unsized)
+        say_unsized(job, next);
 }
 
 void advice_trial_step(const struct model *m, struct advice_next *next)
@@ -365,6 +385,11 @@ void advice_trial_step(const struct model *m, struct advice_next *next)
                  ? "run with a trial weight at any convenient position"
                  : "run with a trial weight, one plane at a time, at any convenient position");
     list_trials(m, next);
+    size_t length = strlen(next->text);
+    if (m->amplitudes && m->job->plane_count == 1)
+        snprintf(next->text + length, sizeof next->text - length,
+                 "; no lag can be read: it takes three such runs, the same weight at three angles "
+                 "about 120 deg apart, or one with a phase reference (and as found with it)");
 }
 
 void advice_repeat_step(const struct model *m, const struct ruling *ruling,
@@ -416,6 +441,45 @@ static bool list_absent(const struct model *m, struct advice_next *next)
     return true;
 }
 
+/* Without phase: what the trials so far leave open, and what the next run is for. */
+static void amplitudes_step(const struct model *m, const struct model_row *row,
+                            struct advice_next *next)
+{
+    const char *unit;
+    double kg = weight_unit(m->job, &unit), sign = m->job->angles == SENSE_WITH ? -1 : 1;
+    size_t trials = 0;
+    for (size_t i = 0; row && i < row->count; i++)
+        trials += !job_run_is_bare(m->job, row->runs[i]);
+    bool two = row && (row->ambiguous || trials == 2);
+    bool remove = m->job->planes[0].work == WORK_REMOVE;
+    double turn = remove ? -1 : 1; /* what is removed stands opposite */
+    snprintf(next->reason, sizeof next->reason,
+             row && row->ambiguous
+                 ? "a run is missing: amplitudes alone leave more than one answer"
+                 : "a run is missing: without phase it takes as found and three trials");
+    if (two && !isnan(creal(row->either[0] + row->either[1])))
+        snprintf(
+            next->text, sizeof next->text,
+            "amplitudes alone leave two answers that fit alike, %s%s %s at %.0f deg or %s %s "
+            "at %.0f deg %s: do neither yet; a run with the trial weight at one more angle, off "
+            "the line of the others, or with a phase reference, tells which is right",
+            remove ? "removing " : "", judge_figure(cabs(row->either[0]) / kg, 2).text, unit,
+            angle_wrap_360(sign * angle_of(turn * row->either[0])),
+            judge_figure(cabs(row->either[1]) / kg, 2).text, unit,
+            angle_wrap_360(sign * angle_of(turn * row->either[1])), job_sense_text(m->job));
+    else if (two)
+        snprintf(next->text, sizeof next->text,
+                 "amplitudes alone leave more than one answer that fits these runs: a run with the "
+                 "trial weight at one more angle, off the line of the others, or with a phase "
+                 "reference, tells which is right");
+    else
+        snprintf(next->text, sizeof next->text,
+                 "amplitudes alone take as found and three trials: one leaves any angle open, two "
+                 "leave two answers, the third tells which is right; run with the same weight at "
+                 "%s, about 120 deg apart, or once with a phase reference",
+                 trials == 0 ? "three angles in turn" : "two more angles in turn");
+}
+
 void advice_missing_step(const struct model *m, const struct ruling *ruling,
                          struct advice_next *next)
 {
@@ -425,14 +489,7 @@ void advice_missing_step(const struct model *m, const struct ruling *ruling,
         return;
     bool known_first = ruling->row && ruling->row->posterior.known[0];
     if (m->amplitudes) {
-        bool two = ruling->row && ruling->row->ambiguous;
-        snprintf(next->reason, sizeof next->reason,
-                 two ? "a run is missing: amplitudes alone leave more than one answer"
-                     : "a run is missing: without phase it takes as found and three trials");
-        snprintf(next->text, sizeof next->text,
-                 two ? "run with the trial weight at another angle, or with a phase reference"
-                     : "run with the trial weight at three angles, about 120 deg apart, or with a "
-                       "phase reference");
+        amplitudes_step(m, ruling->row, next);
         return;
     }
     for (size_t p = 0; p < job->plane_count; p++)
@@ -498,90 +555,6 @@ void advice_useless_step(const struct answer *a, struct advice_next *next)
              "nothing that may be placed lowers the expected vibration%s: allow more positions, "
              "pieces or mass, or repeat the runs with a larger trial weight",
              limits ? "" : " by more than its noise");
-}
-
-/* Whether any hole is to be drilled; its depth stands beside its placement. */
-static bool has_holes(const struct answer *a)
-{
-    for (size_t i = 0; i < a->placement.best.count; i++) {
-        const struct job_plane *plane = &a->model->job->planes[a->placement.best.items[i].plane];
-        if (plane->work == WORK_REMOVE && plane->hole_m > 0)
-            return true;
-    }
-    return false;
-}
-
-static bool only_removal(const struct answer *a)
-{
-    for (size_t i = 0; i < a->placement.best.count; i++)
-        if (a->model->job->planes[a->placement.best.items[i].plane].work != WORK_REMOVE)
-            return false;
-    return a->placement.best.count > 0;
-}
-
-/* Aimed sensors that take no part: two by name and how many more. */
-static void list_lost(const struct answer *a, char *text, size_t size)
-{
-    const struct model *m = a->model;
-    size_t length = strlen(text), named = 0, more = 0;
-    for (size_t r = 0; r < m->row_count; r++) {
-        const struct model_row *row = &m->rows[r];
-        if (!row->in_aim || row->state == MODEL_GOOD)
-            continue;
-        char one[120];
-        int wanted = snprintf(one, sizeof one, "; without sensor '%s' (%s)",
-                              m->job->sensors[row->sensor].name, m->conditions[row->condition]);
-        if (named == 2 || length + (size_t)wanted + 20 > size) {
-            more++;
-            continue;
-        }
-        named++;
-        length += (size_t)snprintf(text + length, size - length, "%s", one);
-    }
-    if (more > 0)
-        snprintf(text + length, size - length, "; and %zu more", more);
-}
-
-void advice_fit_step(const struct answer *a, bool trim, struct advice_next *next)
-{
-    const struct job *job = a->model->job;
-    int mounted = job->aim.mounted;
-    *next = (struct advice_next){.step = trim ? "trim" : "correct"};
-    const char *drill = has_holes(a) ? "drill as placed, depths beside each placement" : NULL;
-    const char *work = only_removal(a) ? drill ? drill : "remove material as placed"
-                       : mounted >= 0  ? "add what is placed"
-                                       : "fit what is placed";
-    if (mounted >= 0)
-        snprintf(next->text, sizeof next->text,
-                 "leave the weights of run '%s' on, %s, then run again", job->runs[mounted].name,
-                 work);
-    else
-        snprintf(next->text, sizeof next->text,
-                 job_removed_run(job) >= 0
-                     ? "put back what runs removed, take off what was mounted, %s, then run again"
-                     : "take everything off that was mounted, %s, then run again",
-                 work);
-    size_t length = strlen(next->text);
-    double gap = a->placement.gap, from = a->placement.nothing;
-    double better =
-        100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from));
-    if (gap > 0 && from > 0)
-        snprintf(next->text + length, sizeof next->text - length,
-                 "; a better placement is not ruled out, by %s %% of the vibration at most",
-                 better < GAP_SHOWN ? "0.01" : judge_figure(better, 2).text);
-    else if (a->placement.cut)
-        snprintf(next->text + length, sizeof next->text - length,
-                 "; that fewer pieces would not do as well is not proven");
-    length = strlen(next->text);
-    if (drill && !only_removal(a))
-        length += (size_t)snprintf(next->text + length, sizeof next->text - length, "; %s", drill);
-    if (a->static_only)
-        length += (size_t)snprintf(next->text + length, sizeof next->text - length,
-                                   "; the static part comes first, the couple after that run");
-    if (a->model->amplitudes)
-        length += (size_t)snprintf(next->text + length, sizeof next->text - length,
-                                   "; found from amplitudes alone, no lag is meant");
-    list_lost(a, next->text, sizeof next->text);
 }
 
 void advice_done_step(const struct answer *a, int run, bool met, struct advice_next *next)

@@ -71,7 +71,6 @@ void advice_missing_step(const struct model *model, const struct ruling *ruling,
                          struct advice_next *next);
 void advice_refused_step(const struct advice_finding *finding, struct advice_next *next);
 void advice_useless_step(const struct answer *answer, struct advice_next *next);
-void advice_fit_step(const struct answer *answer, bool trim, struct advice_next *next);
 void advice_done_step(const struct answer *answer, int run, bool met, struct advice_next *next);
 
 #endif

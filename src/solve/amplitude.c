@@ -2,14 +2,19 @@
 
 #include <lapacke.h>
 #include <math.h>
+#include <stdbool.h>
 #include <string.h>
 
 #include "base/angle.h"
 
-#define FEWEST 4   /* runs: three unknowns and one to tell mirrored answers apart */
-#define STEPS 60   /* of one descent */
-#define ANGLES 24  /* starts around the circle */
-#define SIZES 5    /* starts in the size of the response, a factor of two apart */
+#define FEWEST 4  /* runs: three unknowns and one to tell mirrored answers apart */
+#define STEPS 60  /* of one descent */
+#define ANGLES 24 /* starts around the circle */
+#define SIZES 5   /* starts in the size of the response, a factor of two apart */
+#define STARTS (ANGLES * SIZES)
+#define ALIKE 5.99 /* in the sum of squares: as the header says */
+#define APART 0.02 /* of the response: another answer */
+#define PAIR 3     /* runs that leave two answers */
 #define FLOOR 1e-9 /* as in regress.c: nobody reads nine digits */
 
 struct task {
@@ -75,11 +80,16 @@ static double descend(const struct task *t, double u[3])
     return sum;
 }
 
-/* The best of all starts in `best`; *rival: the least sum of squares of a different answer. */
-static double search(const struct task *t, double best[3], double *rival)
+static bool differ(const double a[3], const double b[3])
 {
-    double found[ANGLES * SIZES][4], least = INFINITY;
-    for (int i = 0; i < ANGLES * SIZES; i++) {
+    return hypot(a[1] - b[1], a[2] - b[2]) > APART * hypot(b[1], b[2]);
+}
+
+/* Where all starts end, with their sums of squares, and the best of them. */
+static double search(const struct task *t, double found[STARTS][4], double best[3])
+{
+    double least = INFINITY;
+    for (int i = 0; i < STARTS; i++) {
         double complex a = angle_vector(pow(2, i / ANGLES - 2), 360.0 / ANGLES * (i % ANGLES));
         double *u = found[i];
         u[0] = 1;
@@ -91,12 +101,21 @@ static double search(const struct task *t, double best[3], double *rival)
             memcpy(best, u, 3 * sizeof *best);
         }
     }
-    *rival = INFINITY;
-    double size = hypot(best[1], best[2]);
-    for (int i = 0; i < ANGLES * SIZES; i++)
-        if (hypot(found[i][1] - best[1], found[i][2] - best[2]) > 0.02 * size)
-            *rival = fmin(*rival, found[i][3]);
     return least;
+}
+
+/* The end of least sum of squares that is none of those `but`; NULL: there is none. */
+static const double *rival(double (*found)[4], const double *const *but, size_t count)
+{
+    const double *next = NULL;
+    for (int i = 0; i < STARTS; i++) {
+        bool other = true;
+        for (size_t k = 0; k < count; k++)
+            other = other && differ(found[i], but[k]);
+        if (other && (!next || found[i][3] < next[3]))
+            next = found[i];
+    }
+    return next;
 }
 
 /* Covariance of [T, A] at the best, the imaginary part of T being zero by definition. */
@@ -138,25 +157,58 @@ static void judge(const struct task *t, const double u[3], double least, double 
         *misfit = sqrt(least / (double)(t->count - 3));
 }
 
+/* What there is to fit; false: a number is not finite, or nothing was read as found. */
+static bool task_of(size_t count, const double *amplitude, const double complex *w,
+                    const double *variance, double scale, struct task *t)
+{
+    double sum = scale;
+    *t = (struct task){count, amplitude, w, variance, scale, 0};
+    for (size_t i = 0; i < count; i++) {
+        t->reach = fmax(t->reach, cabs(w[i]));
+        sum += amplitude[i] + variance[i] + cabs(w[i]);
+    }
+    return isfinite(sum) && scale > 0;
+}
+
+int amplitude_pair(size_t count, const double *amplitude, const double complex *w,
+                   const double *variance, double scale, double complex either[2])
+{
+    struct task t;
+    double found[STARTS][4], best[3];
+    either[0] = either[1] = NAN;
+    if (!task_of(count, amplitude, w, variance, scale, &t))
+        return AMPLITUDE_NAN;
+    if (count < PAIR || !(t.reach > 0))
+        return AMPLITUDE_AMBIGUOUS;
+    double least = search(&t, found, best);
+    const double *answers[2] = {best, NULL};
+    answers[1] = rival(found, answers, 1);
+    if (!answers[1] || !(answers[1][3] - least < ALIKE))
+        return AMPLITUDE_AMBIGUOUS;
+    const double *third = rival(found, answers, 2);
+    if (third && third[3] - least < ALIKE)
+        return AMPLITUDE_AMBIGUOUS;
+    for (int i = 0; i < 2; i++)
+        either[i] = -answers[i][0] / CMPLX(answers[i][1], answers[i][2]) * t.reach;
+    return AMPLITUDE_OK;
+}
+
 int amplitude_fit(size_t count, const double *amplitude, const double complex *w,
                   const double *variance, double scale, struct posterior *p, double *misfit,
                   size_t *which)
 {
-    struct task t = {count, amplitude, w, variance, scale, 0};
-    double best[3], rival, sum = scale;
+    struct task t;
+    double found[STARTS][4], best[3];
     memset(p, 0, sizeof *p);
     *misfit = NAN;
     *which = 0;
-    for (size_t i = 0; i < count; i++) {
-        t.reach = fmax(t.reach, cabs(w[i]));
-        sum += amplitude[i] + variance[i] + cabs(w[i]);
-    }
-    if (!isfinite(sum) || !(scale > 0))
+    if (!task_of(count, amplitude, w, variance, scale, &t))
         return AMPLITUDE_NAN;
     if (count < FEWEST || !(t.reach > 0))
         return AMPLITUDE_AMBIGUOUS;
-    double least = search(&t, best, &rival);
-    if (rival - least < 5.99)
+    double least = search(&t, found, best);
+    const double *answer = best, *other = rival(found, &answer, 1);
+    if (other && other[3] - least < ALIKE)
         return AMPLITUDE_AMBIGUOUS;
     judge(&t, best, least, misfit, which);
     return fill(&t, best, p);

@@ -31,4 +31,12 @@ int amplitude_fit(size_t count, const double *amplitude, const double complex *w
                   const double *variance, double scale, struct posterior *p, double *misfit,
                   size_t *which) __attribute__((warn_unused_result));
 
+/* Where two answers fit alike (within 5.99 of each other, as above), their corrections -T/A, kg:
+ * for one more run than is enough for a circle of answers (as found and two trials), or for
+ * collinear weights. AMPLITUDE_AMBIGUOUS: there are more than two, or one alone. Arguments as in
+ * amplitude_fit. */
+int amplitude_pair(size_t count, const double *amplitude, const double complex *w,
+                   const double *variance, double scale, double complex either[2])
+    __attribute__((warn_unused_result));
+
 #endif

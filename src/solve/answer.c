@@ -9,7 +9,8 @@
 #include "sheet/units.h"
 #include "solve/chebyshev.h"
 #include "solve/correct.h"
-#include "solve/drill.h"
+#include "solve/menu.h"
+#include "solve/oppose.h"
 #include "solve/parts.h"
 #include "solve/ruling.h"
 #include "solve/sits.h"
@@ -153,6 +154,7 @@ void answer_release(struct answer *a)
 {
     for (size_t r = 0; a->posterior && r < a->rows; r++)
         posterior_release(&a->posterior[r]);
+    place_release(&a->unopposed);
     if (a->placed)
         place_release(&a->placement);
     free(a->residuals);
@@ -272,20 +274,12 @@ int answer_correct(struct answer *a)
 
 /* ---- placement ---- */
 
-/* What may stand at one position of a plane, kg: the deepest hole is a limit, too. */
-static double most_at(const struct job_plane *plane)
-{
-    if (plane->work != WORK_REMOVE)
-        return plane->most;
-    return fmin(plane->most, drill_mass(plane->hole_m, plane->density, plane->depth_m));
-}
-
 static bool ideal_fits(const struct answer *a)
 {
     for (size_t p = 0; p < a->planes; p++) {
         const struct job_plane *plane = &a->model->job->planes[p];
         double mass = cabs(a->weights[p]);
-        double most = most_at(plane), all = plane->most_in_all - sits_in_all(a->model->job, p);
+        double most = menu_most(plane), all = plane->most_in_all - sits_in_all(a->model->job, p);
         if (!isinf(most))
             most -= sits_at(a->model->job, p, angle_of(a->weights[p]));
         if (!plane->any_position || plane->stock || mass > most || mass > all)
@@ -333,88 +327,27 @@ static int place_ideal(struct answer *a)
     return ANSWER_OK;
 }
 
-struct menu { /* one plane's lists for the search */
-    double *angles, *masses, *held;
-    int *counts;
-};
-
-static bool menu_init(struct menu *menu, const struct job_plane *from)
+static int search(const struct place_problem *problem, struct place_result *result, bool *done)
 {
-    menu->angles = calloc(from->position_count + 1, sizeof *menu->angles);
-    menu->masses = calloc(from->stock_count + 1, sizeof *menu->masses);
-    menu->counts = calloc(from->stock_count + 1, sizeof *menu->counts);
-    menu->held = calloc(from->any_position ? 360 : from->position_count + 1, sizeof *menu->held);
-    return menu->angles && menu->masses && menu->counts && menu->held;
-}
-
-static void menu_release(struct menu *menu)
-{
-    free(menu->angles);
-    free(menu->masses);
-    free(menu->counts);
-    free(menu->held);
-}
-
-/* All positions are taken, or no piece may be used: nothing may be put here. */
-static void forbid(struct place_plane *to)
-{
-    to->positions = 1;
-    to->stock = 0;
-    to->most = to->most_in_all = 0;
-}
-
-static int fill_plane(const struct job *job, size_t p, struct menu *menu, struct place_plane *to)
-{
-    const struct job_plane *from = &job->planes[p];
-    size_t free_positions = 0, stock = 0;
-    bool drilled = from->work == WORK_REMOVE && from->hole_m > 0 && from->depth_m > 0;
-    double deepest = drilled ? drill_mass(from->hole_m, from->density, from->depth_m) : INFINITY;
-    if (!menu_init(menu, from))
-        return ANSWER_NO_MEMORY;
-    for (size_t i = 0; !from->any_position && i < from->position_count; i++)
-        if (!from->positions[i].taken)
-            menu->angles[free_positions++] = from->positions[i].angle_deg;
-    for (size_t i = 0; i < (from->any_position ? 360 : free_positions); i++)
-        menu->held[i] = sits_at(job, p, from->any_position ? (double)i : menu->angles[i]);
-    for (size_t i = 0; i < from->stock_count; i++) {
-        if (from->stock[i].mass > deepest) /* each piece is one hole */
-            continue;
-        menu->masses[stock] = from->stock[i].mass;
-        menu->counts[stock++] = from->stock[i].count;
-    }
-    int pieces = from->pieces > 0 ? from->pieces : 4; /* the sheet's default */
-    *to = (struct place_plane){.angles_deg = menu->angles,
-                               .positions = free_positions,
-                               .masses = menu->masses,
-                               .counts = menu->counts,
-                               .stock = stock,
-                               .pieces = pieces > PLACE_PIECES_MOST ? PLACE_PIECES_MOST : pieces,
-                               .most = from->stock_count ? from->most : most_at(from),
-                               .most_in_all = fmax(0, from->most_in_all - sits_in_all(job, p)),
-                               .held = menu->held,
-                               .sign = from->work == WORK_REMOVE ? -1 : 1};
-    if ((!from->any_position && free_positions == 0) || (from->stock_count > 0 && stock == 0))
-        forbid(to);
-    return ANSWER_OK;
-}
-
-static int search(struct answer *a, const struct place_problem *problem)
-{
-    int error = place_search(problem, &a->placement);
-    a->placed = error == PLACE_OK;
+    int error = place_search(problem, result);
+    *done = error == PLACE_OK;
     return error == PLACE_OK          ? ANSWER_OK
            : error == PLACE_NO_MEMORY ? ANSWER_NO_MEMORY
                                       : ANSWER_FAILED;
 }
 
-static int place_by_search(struct answer *a)
+/* Over all that the sheet allows, on plane p within arc[p] where that is less than all around; arc
+ * NULL: everywhere. nodes: as in place.h. */
+static int place_by_search(const struct answer *a, const struct menu_arc *arc, long nodes,
+                           struct place_result *found, bool *done)
 {
     const struct job *job = a->model->job;
     struct menu *menus = calloc(a->planes + 1, sizeof *menus);
     struct place_plane *planes = calloc(a->planes + 1, sizeof *planes);
     int result = menus && planes ? ANSWER_OK : ANSWER_NO_MEMORY;
     for (size_t p = 0; p < a->planes && result == ANSWER_OK; p++)
-        result = fill_plane(job, p, &menus[p], &planes[p]);
+        result =
+            menu_fill(job, p, arc && arc[p].half_deg < 180 ? &arc[p] : NULL, &menus[p], &planes[p]);
     if (result == ANSWER_OK) {
         struct place_problem problem = {.planes = a->planes,
                                         .plane = planes,
@@ -422,8 +355,14 @@ static int place_by_search(struct answer *a)
                                         .forms = a->forms,
                                         .certain = a->certain,
                                         .worst = job->aim.minimise == MINIMISE_WORST,
-                                        .floor = a->floor};
-        result = search(a, &problem);
+                                        .floor = a->floor,
+                                        .nodes = nodes};
+        result = search(&problem, found, done);
+    }
+    for (size_t p = 0; p < a->planes && result == ANSWER_OK; p++) {
+        menu_number(&menus[p], p, &found->best);
+        menu_number(&menus[p], p, &found->next[0]);
+        menu_number(&menus[p], p, &found->next[1]);
     }
     for (size_t p = 0; menus && p < a->planes; p++)
         menu_release(&menus[p]);
@@ -509,11 +448,12 @@ static int place_static(struct answer *a)
     double ratio = from[0].radius_m / from[1].radius_m, radius[2] = {1, 1 / ratio};
     struct menu menus[3] = {{0}};
     struct place_plane of[2], common;
-    size_t *partner = calloc(from[0].position_count + 1, sizeof *partner);
+    size_t *partner = calloc(MENU_ANGLES_MOST(&from[0]) + 1, sizeof *partner);
     double complex *forms = calloc(8 * a->rows + 1, sizeof *forms);
-    int result = partner && forms && menu_init(&menus[2], &from[0]) ? ANSWER_OK : ANSWER_NO_MEMORY;
+    int result =
+        partner && forms && menu_init(&menus[2], &from[0]) == 0 ? ANSWER_OK : ANSWER_NO_MEMORY;
     for (size_t p = 0; p < 2 && result == ANSWER_OK; p++)
-        result = fill_plane(a->model->job, p, &menus[p], &of[p]);
+        result = menu_fill(a->model->job, p, NULL, &menus[p], &of[p]);
     if (result == ANSWER_OK && common_plane(of, ratio, &menus[2], partner, &common)) {
         parts_reduce(a->forms, a->rows, radius, forms);
         parts_reduce(a->certain, a->rows, radius, forms + 4 * a->rows);
@@ -523,11 +463,13 @@ static int place_static(struct answer *a)
                                         .forms = forms,
                                         .certain = forms + 4 * a->rows,
                                         .floor = a->floor};
-        result = search(a, &problem);
+        result = search(&problem, &a->placement, &a->placed);
         struct place_choice *choices[3] = {&a->placement.best, &a->placement.next[0],
                                            &a->placement.next[1]};
         for (size_t i = 0; i < 3 && result == ANSWER_OK; i++)
             result = spread_out(choices[i], of, &common, partner, ratio);
+        for (size_t i = 0; i < 6 && result == ANSWER_OK; i++)
+            menu_number(&menus[i % 2], i % 2, choices[i / 2]);
     }
     for (size_t p = 0; p < 3; p++)
         menu_release(&menus[p]);
@@ -546,19 +488,50 @@ static int place_first(struct answer *a)
         place_release(&a->placement);
     a->placed = a->static_only = false;
     memcpy(a->weights, a->full, a->planes * sizeof *a->weights);
-    return ideal_fits(a) ? place_ideal(a) : place_by_search(a);
+    return ideal_fits(a) ? place_ideal(a) : place_by_search(a, NULL, 0, &a->placement, &a->placed);
 }
 
 int answer_place(struct answer *a)
 {
     int result = ideal_fits(a)    ? place_ideal(a)
                  : a->static_only ? place_first(a)
-                                  : place_by_search(a);
+                                  : place_by_search(a, NULL, 0, &a->placement, &a->placed);
     for (size_t i = 0; result == ANSWER_OK && i < a->placement.best.count; i++) {
         const struct place_item *item = &a->placement.best.items[i];
         double sign = a->model->job->planes[item->plane].work == WORK_REMOVE ? -1 : 1;
         a->placed_weights[item->plane] += angle_vector(sign * item->mass, item->angle_deg);
     }
+    return result;
+}
+
+/* Of the nodes of the search proper: what is found only stands beside it. */
+#define UNOPPOSED_NODES 400000L
+
+int answer_unopposed(struct answer *a)
+{
+    struct menu_arc *arc = calloc(a->planes + 1, sizeof *arc);
+    bool done = false, more = answer_helps(a) && !a->static_only;
+    int result = arc ? ANSWER_OK : ANSWER_NO_MEMORY;
+    for (size_t p = 0; p < a->planes && result == ANSWER_OK; p++)
+        arc[p].half_deg = 180;
+    while (more && result == ANSWER_OK) {
+        const struct place_choice *choice = done ? &a->unopposed.best : &a->placement.best;
+        more = false;
+        for (size_t p = 0; p < a->planes; p++) {
+            if (arc[p].half_deg < 180 || !oppose_on(choice, p))
+                continue;
+            double sign = a->model->job->planes[p].work == WORK_REMOVE ? -1 : 1;
+            arc[p] = (struct menu_arc){angle_of(sign * a->weights[p]), OPPOSE_APART_DEG / 2};
+            a->opposed = more = true;
+        }
+        if (!more)
+            break;
+        if (done)
+            place_release(&a->unopposed);
+        result = place_by_search(a, arc, UNOPPOSED_NODES, &a->unopposed, &done);
+    }
+    a->has_unopposed = done && a->unopposed.best.count > 0;
+    free(arc);
     return result;
 }
 

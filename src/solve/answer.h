@@ -53,7 +53,10 @@ struct answer {
     double floor;              /* of the noise, J units (place.h) */
     struct place_result placement; /* owned */
     bool placed;
-    double complex *placed_weights;    /* owned: planes */
+    bool opposed;                   /* pieces of the placement work against each other (oppose.h) */
+    bool has_unopposed;             /* there is an answer where none do */
+    struct place_result unopposed;  /* owned: that answer */
+    double complex *placed_weights; /* owned: planes */
     struct answer_forecast *forecasts; /* owned: one a good row of the model, aim or not */
     size_t forecast_count;
     struct answer_residual *residuals; /* owned: planes */
@@ -79,6 +82,11 @@ int answer_correct(struct answer *answer) __attribute__((warn_unused_result));
 /* What to fit now: the ideal weight where every plane takes any mass at any angle, else the search.
  */
 int answer_place(struct answer *answer) __attribute__((warn_unused_result));
+
+/* What to fit where no pieces of a plane shall work against each other: searched again within 60
+ * deg of the ideal weight on the planes where they do; sets opposed, has_unopposed and unopposed.
+ * Nothing is searched where none do, or where the static part alone is placed. */
+int answer_unopposed(struct answer *answer) __attribute__((warn_unused_result));
 
 /* Run `run` carries weights that were meant to correct: they leave less than half of the as-found
  * vibration (aim.mounted unset: everything could come off). *as_good: what is placed beats them by

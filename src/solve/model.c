@@ -213,6 +213,9 @@ static int fit_amplitudes(const struct model *m, struct model_row *row)
     size_t which;
     int error = amplitude_fit(row->count, real, row->x, real + row->count, row->as_found,
                               &row->posterior, &row->misfit, &which);
+    if (error == AMPLITUDE_AMBIGUOUS && amplitude_pair(row->count, real, row->x, real + row->count,
+                                                       row->as_found, row->either) != AMPLITUDE_OK)
+        row->either[0] = row->either[1] = NAN;
     free(real);
     row->misfit_run = row->count > 0 ? row->runs[which] : 0;
     if (error == AMPLITUDE_OK) {

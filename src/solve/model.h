@@ -65,7 +65,9 @@ struct model_row {
     double widened; /* variances of posterior and next reading count so many times; 1: they fit */
     size_t misfit_run;
     bool ambiguous; /* amplitudes alone leave more than one answer */
-    int lost_run;   /* the first run whose reading of this row was refused; -1: none */
+    double complex
+        either[2]; /* amplitudes alone: the two weights (kg) that fit alike; NaN: no such pair */
+    int lost_run;  /* the first run whose reading of this row was refused; -1: none */
     const struct job_response *
         *stored; /* owned array, planes; borrowed responses in use; NULL: none */
     const struct job_response *apart; /* borrowed: one of another speed, hence not used; or NULL */

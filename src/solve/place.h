@@ -42,8 +42,8 @@ struct place_plane {
     double most_in_all;         /* kg on the plane (sum of magnitudes); INFINITY: no limit */
     double sign;                /* +1: added; -1: removed (a piece of mass m counts as W = -m exp(j angle)) */
     const double *held;         /* kg, >= 0, what stands at each position already (any angle: at each whole
-                                 * degree): `most` counts it; NULL: nothing; borrowed. With any mass a position
-                                 * that holds something takes no more where `most` is finite */
+                                 * degree): `most` counts it; NULL: nothing; borrowed. Not looked at where
+                                 * any mass stands at any angle */
 };
 
 struct place_problem {

@@ -37,7 +37,8 @@ struct place_site { /* one plane that has any influence */
     size_t positions;
     double complex *e;       /* positions unit vectors with the plane's sign; owned */
     struct place_stock stock;
-    double cap, total;       /* finite limits of the continuous masses */
+    double cap, total;       /* finite limits of the continuous masses: at one position, of all */
+    double *caps;            /* positions, what each may still take; finite; owned */
     int pieces;              /* now allowed */
     struct place_region region;
     struct place_sums parts[2]; /* by depth: large and small */

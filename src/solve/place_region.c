@@ -60,8 +60,8 @@ static size_t hull_of(double complex *points, size_t count, double size, double 
 }
 
 /* The corner that lies furthest along a direction: the best positions are filled first. */
-static double complex furthest(const double complex *e, size_t count, double cap, double total,
-                               double complex direction, double *along)
+static double complex furthest(const double complex *e, size_t count, const double *cap,
+                               double total, double complex direction, double *along)
 {
     double complex sum = 0;
     for (size_t i = 0; i < count; i++) {
@@ -75,7 +75,7 @@ static double complex furthest(const double complex *e, size_t count, double cap
         if (along[best] <= 0) {
             break;
         }
-        double m = fmin(cap, total);
+        double m = fmin(cap[best], total);
         sum += m * e[best];
         total -= m;
         along[best] = -1;
@@ -107,10 +107,13 @@ void place_region_disc(struct place_region *region, double radius)
 }
 
 int place_region_polygon(struct place_region *region, const double complex *e, size_t count,
-                         double cap, double total)
+                         const double *cap, double total)
 {
     *region = (struct place_region){0};
-    bool swaps = cap < total;
+    bool swaps = false;
+    for (size_t i = 0; i < count; i++) {
+        swaps = swaps || cap[i] < total;
+    }
     size_t most = 2 * count + count * count;
     double *at = malloc((most + 1) * sizeof *at);
     double complex *points = malloc((most + count + 2) * sizeof *points);
@@ -170,8 +173,8 @@ bool place_region_holds(const struct place_region *region, double complex x)
 }
 
 /* One basic solution: i and j carry the rest, those priced above 1 are full. */
-static bool split_by(const double complex *e, size_t count, double cap, double complex w, size_t i,
-                     size_t j, double *m)
+static bool split_by(const double complex *e, size_t count, const double *cap, double complex w,
+                     size_t i, size_t j, double *m)
 {
     double det = cimag(conj(e[i]) * e[j]);
     if (fabs(det) < 1e-9) {
@@ -181,24 +184,24 @@ static bool split_by(const double complex *e, size_t count, double cap, double c
     double complex rest = w;
     for (size_t l = 0; l < count; l++) {
         bool full = l != i && l != j && creal(conj(price) * e[l]) > 1;
-        if (full && isinf(cap)) {
+        if (full && isinf(cap[l])) {
             return false;
         }
-        m[l] = full ? cap : 0;
+        m[l] = full ? cap[l] : 0;
         rest -= m[l] * e[l];
     }
     m[i] = cimag(conj(rest) * e[j]) / det;
     m[j] = cimag(conj(e[i]) * rest) / det;
     double slack = 1e-9 * cabs(w);
-    if (!(m[i] >= -slack && m[j] >= -slack && m[i] <= cap + slack && m[j] <= cap + slack)) {
+    if (!(m[i] >= -slack && m[j] >= -slack && m[i] <= cap[i] + slack && m[j] <= cap[j] + slack)) {
         return false;
     }
-    m[i] = fmin(fmax(m[i], 0), cap);
-    m[j] = fmin(fmax(m[j], 0), cap);
+    m[i] = fmin(fmax(m[i], 0), cap[i]);
+    m[j] = fmin(fmax(m[j], 0), cap[j]);
     return true;
 }
 
-bool place_region_split(const double complex *e, size_t count, double cap, double complex w,
+bool place_region_split(const double complex *e, size_t count, const double *cap, double complex w,
                         double *m)
 {
     double size = cabs(w);
@@ -207,8 +210,8 @@ bool place_region_split(const double complex *e, size_t count, double cap, doubl
         return true;
     }
     for (size_t i = 0; i < count; i++) {
-        if (cabs(w - size * e[i]) <= 1e-9 * size && size <= cap * (1 + 1e-9)) {
-            m[i] = fmin(size, cap);
+        if (cabs(w - size * e[i]) <= 1e-9 * size && size <= cap[i] * (1 + 1e-9)) {
+            m[i] = fmin(size, cap[i]);
             return true;
         }
     }

@@ -113,7 +113,8 @@ static int init_site(struct place_site *site, const struct place_problem *proble
     }
     site->e = malloc((site->positions + 1) * sizeof *site->e);
     site->state = calloc(site->positions + 1, 1);
-    if (site->e == NULL || site->state == NULL) {
+    site->caps = calloc(site->positions + 1, sizeof *site->caps);
+    if (site->e == NULL || site->state == NULL || site->caps == NULL) {
         return -1;
     }
     for (size_t i = 0; i < site->positions; i++) {
@@ -172,6 +173,10 @@ static int limit_site(struct place_hunt *hunt, const struct place_problem *probl
     }
     site->total = fmin(problem->plane[site->plane].most_in_all, PLACE_PIECES_MOST * far);
     site->cap = fmin(problem->plane[site->plane].most, site->total);
+    for (size_t i = 0; i < site->positions; i++) {
+        double held = site->stock.held != NULL ? site->stock.held[i] : 0;
+        site->caps[i] = fmax(0, fmin(site->stock.most - held, site->total));
+    }
     place_form_release(&sum);
     return stiffness < 0 ? -1 : 0;
 }
@@ -269,8 +274,8 @@ int place_setup_pieces(struct place_hunt *hunt, const struct place_problem *prob
         if (site->kind == PLACE_ANYWHERE || plane->positions == 0) {
             double one = site->kind == PLACE_ANYWHERE ? site->cap : total;
             place_region_disc(&site->region, one);
-        } else if (place_region_polygon(&site->region, site->e, site->positions,
-                                        fmin(site->cap, total), total) != 0) {
+        } else if (place_region_polygon(&site->region, site->e, site->positions, site->caps,
+                                        total) != 0) {
             return -1;
         }
     }
@@ -289,6 +294,7 @@ void place_setup_release(struct place_hunt *hunt)
         place_sums_release(&site->parts[0]);
         place_sums_release(&site->parts[1]);
         place_region_release(&site->region);
+        free(site->caps);
         free(site->state);
         free(site->e);
     }

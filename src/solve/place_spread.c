@@ -19,8 +19,8 @@ static void clear_load(struct place_load *load)
     memset(load->item, 0xff, sizeof load->item);
 }
 
-/* The positions that may carry something now. */
-static size_t usable(const struct place_site *site, size_t *index, double complex *e)
+/* The positions that may carry something now, and how much. */
+static size_t usable(const struct place_site *site, size_t *index, double complex *e, double *cap)
 {
     size_t in = 0, n = 0;
     for (size_t i = 0; i < site->positions; i++) {
@@ -30,6 +30,7 @@ static size_t usable(const struct place_site *site, size_t *index, double comple
     for (size_t i = 0; i < site->positions; i++) {
         if (site->state[i] == IN || (site->state[i] == OPEN && !closed)) {
             index[n] = i;
+            cap[n] = site->caps[i];
             e[n++] = site->e[i];
         }
     }
@@ -44,12 +45,14 @@ static int region_of(const struct place_site *site, struct place_region *region)
     }
     size_t *index = malloc((site->positions + 1) * sizeof *index);
     double complex *e = malloc((site->positions + 1) * sizeof *e);
+    double *cap = malloc((site->positions + 1) * sizeof *cap);
     int result = -1;
     *region = (struct place_region){0};
-    if (index != NULL && e != NULL) {
-        size_t n = usable(site, index, e);
-        result = place_region_polygon(region, e, n, site->cap, site->total);
+    if (index != NULL && e != NULL && cap != NULL) {
+        size_t n = usable(site, index, e, cap);
+        result = place_region_polygon(region, e, n, cap, site->total);
     }
+    free(cap);
     free(e);
     free(index);
     return result;
@@ -61,10 +64,11 @@ static int masses_for(const struct place_site *site, double complex w, double *m
     size_t *index = malloc((site->positions + 1) * sizeof *index);
     double complex *e = malloc((site->positions + 1) * sizeof *e);
     double *part = malloc((site->positions + 1) * sizeof *part);
+    double *cap = malloc((site->positions + 1) * sizeof *cap);
     int result = -1;
-    if (index != NULL && e != NULL && part != NULL) {
-        size_t n = usable(site, index, e);
-        *possible = place_region_split(e, n, site->cap, w, part);
+    if (index != NULL && e != NULL && part != NULL && cap != NULL) {
+        size_t n = usable(site, index, e, cap);
+        *possible = place_region_split(e, n, cap, w, part);
         double sum = 0;
         memset(m, 0, site->positions * sizeof *m);
         for (size_t i = 0; i < n; i++) {
@@ -76,6 +80,7 @@ static int masses_for(const struct place_site *site, double complex w, double *m
         }
         result = 0;
     }
+    free(cap);
     free(part);
     free(e);
     free(index);
@@ -270,10 +275,8 @@ int place_spread(struct place_hunt *hunt, size_t depth, const struct place_form 
     for (size_t q = 0; q < form->planes; q++) {
         struct place_site *site = &hunt->site[depth + q];
         if (site->kind == PLACE_POSITIONS) {
-            const struct place_stock *s = &site->stock;
             for (size_t i = 0; i < site->positions; i++) {
-                bool full = s->held != NULL && s->held[i] > 0 && !isinf(s->most);
-                site->state[i] = full ? OUT : OPEN;
+                site->state[i] = site->caps[i] > 0 ? OPEN : OUT;
             }
         }
     }

@@ -13,6 +13,8 @@
 #include "solve/advice.h"
 #include "solve/already.h"
 #include "solve/answer.h"
+#include "solve/fit.h"
+#include "solve/holes.h"
 #include "solve/lookback.h"
 #include "solve/model.h"
 #include "solve/notes.h"
@@ -129,6 +131,12 @@ static int note_removed(struct solve_records *s, const struct advice_next *next)
     return solve_records_finding(s, &f);
 }
 
+static int note_holes(struct solve_records *s, const struct answer *a)
+{
+    struct advice_finding f;
+    return a->placed && holes_overlap(a, &f) ? solve_records_finding(s, &f) : STATUS_DONE;
+}
+
 /* Nothing more is fitted: the outlook is of what run `run` carries, which stays on. */
 static int stay_with(struct answer *a, int run)
 {
@@ -154,6 +162,8 @@ static int give_answer(struct solve_records *s, struct answer *a)
     if (status == STATUS_DONE && !next.step)
         status = kernel_status(answer_place(a));
     if (status == STATUS_DONE && a->placed)
+        status = kernel_status(answer_unopposed(a));
+    if (status == STATUS_DONE && a->placed)
         status = judge_forces(s, a, &refused);
     if (status != STATUS_DONE)
         return status;
@@ -173,7 +183,7 @@ static int give_answer(struct solve_records *s, struct answer *a)
         advice_done_step(a, run, false, &next);
     }
     if (!next.step)
-        advice_fit_step(a, trim || again, &next);
+        fit_step(a, trim || again, &next);
     if (!strcmp(next.step, "done"))
         status = stay_with(a, run);
     if (status == STATUS_DONE)
@@ -186,6 +196,8 @@ static int give_answer(struct solve_records *s, struct answer *a)
         status = solve_records_parts(s, a);
     if (status == STATUS_DONE && strcmp(next.step, "done") != 0)
         status = solve_records_placements(s, a);
+    if (status == STATUS_DONE && strcmp(next.step, "done") != 0)
+        status = note_holes(s, a);
     if (status == STATUS_DONE)
         status = solve_records_outlook(s, a);
     struct advice_finding missed;

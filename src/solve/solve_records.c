@@ -10,6 +10,7 @@
 #include "base/status.h"
 #include "solve/drill.h"
 #include "solve/notes.h"
+#include "solve/oppose.h"
 #include "solve/parts.h"
 #include "solve/sits.h"
 #include "solve/trial.h"
@@ -341,9 +342,12 @@ int solve_records_placements(struct solve_records *s, const struct answer *a)
                                      .angle_deg = item->angle_deg,
                                      .mass = signed_mass(plane, item->mass),
                                      .piece_count = item->piece_count};
-        for (size_t k = 0; k < item->piece_count; k++) {
-            r.pieces[k] = signed_mass(plane, item->pieces[k]);
-            r.depths_m[k] = drill_depth(plane->hole_m, plane->density, item->pieces[k]);
+        if (plane->work == WORK_REMOVE && plane->hole_m > 0)
+            r.piece_count = 1; /* one hole, as deep as all of it needs */
+        for (size_t k = 0; k < r.piece_count; k++) {
+            double piece = r.piece_count == 1 ? item->mass : item->pieces[k];
+            r.pieces[k] = signed_mass(plane, piece);
+            r.depths_m[k] = drill_depth(plane->hole_m, plane->density, piece);
         }
         double sits = sits_equivalent(job, item->plane, item->angle_deg);
         r.force_n = trial_force(item->mass, plane->radius_m, job->service_rpm);
@@ -446,29 +450,53 @@ static void line_trials(struct line *line, const struct job *job)
     free(trials);
 }
 
-static void line_others(struct line *line, const struct answer *a)
+static void line_other(struct line *line, const struct answer *a, const struct place_choice *choice,
+                       bool unopposed)
 {
     const struct job *job = a->model->job;
+    struct outcome_weight items[64];
+    size_t count = choice->count < 64 ? choice->count : 64;
+    for (size_t i = 0; i < count; i++) {
+        const struct place_item *item = &choice->items[i];
+        const struct job_plane *plane = &job->planes[item->plane];
+        items[i] = (struct outcome_weight){item->plane, position_number(plane, item->position),
+                                           signed_mass(plane, item->mass), item->angle_deg};
+    }
+    line_open(line, NULL, '{');
+    line_real(line, "of_nothing", sqrt(fmax(0, choice->objective) / a->placement.nothing));
+    if (unopposed)
+        line_boolean(line, "unopposed", true);
+    outcomes_weights(line, "items", job, items, count);
+    line_close(line, '}');
+}
+
+/* The two next best and, last, what does without pieces that work against each other where the
+ * placement has such. */
+static void line_others(struct line *line, const struct answer *a)
+{
     const struct place_result *place = &a->placement;
     line_real(line, "gap", place->gap);
     line_boolean(line, "fewest_proven", !place->cut);
     line_real(line, "of_nothing", sqrt(fmax(0, place->best.objective) / place->nothing));
     line_open(line, "others", '[');
-    for (int k = 0; k < 2 && !isnan(place->next[k].objective); k++) {
-        struct outcome_weight items[64];
-        size_t count = place->next[k].count < 64 ? place->next[k].count : 64;
-        for (size_t i = 0; i < count; i++) {
-            const struct place_item *item = &place->next[k].items[i];
-            const struct job_plane *plane = &job->planes[item->plane];
-            items[i] = (struct outcome_weight){item->plane, position_number(plane, item->position),
-                                               signed_mass(plane, item->mass), item->angle_deg};
-        }
-        line_open(line, NULL, '{');
-        line_real(line, "of_nothing", sqrt(fmax(0, place->next[k].objective) / place->nothing));
-        outcomes_weights(line, "items", job, items, count);
-        line_close(line, '}');
-    }
+    for (int k = 0; k < 2 && !isnan(place->next[k].objective); k++)
+        if (!a->has_unopposed || !oppose_same(&place->next[k], &a->unopposed.best))
+            line_other(line, a, &place->next[k], false);
+    if (a->has_unopposed)
+        line_other(line, a, &a->unopposed.best, true);
     line_close(line, ']');
+}
+
+/* Planes that are added to, in w; the others are set to zero: holes do not become one. */
+static bool mergeable(const struct job *job, double complex *w)
+{
+    bool any = false;
+    for (size_t p = 0; p < job->plane_count; p++) {
+        if (job->planes[p].work == WORK_REMOVE)
+            w[p] = 0;
+        any = any || job->planes[p].work != WORK_REMOVE;
+    }
+    return any;
 }
 
 /* Weights that are not zero, as they stand. */
@@ -486,8 +514,8 @@ static void line_complex(struct line *line, const char *key, const struct job *j
     outcomes_weights(line, key, job, items, count);
 }
 
-/* The same answer with what is on taken off or left; and one weight a plane for all that is then
- * on. */
+/* The same answer with what is on taken off or left; and one weight for all that is then on a plane
+ * that is added to. */
 static void line_alternatives(struct line *line, const struct answer *a)
 {
     const struct job *job = a->model->job;
@@ -508,7 +536,7 @@ static void line_alternatives(struct line *line, const struct answer *a)
     line_close(line, '}');
     for (size_t p = 0; p < a->planes; p++)
         w[p] = a->mounted[p] + a->placed_weights[p];
-    if (!left)
+    if (!left && mergeable(job, w))
         line_complex(line, "merged", job, w);
     free(w);
 }

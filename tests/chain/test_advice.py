@@ -5,18 +5,19 @@ Sheets of exact hand readings; expected values come from the truth that made the
 import cmath
 import json
 import math
+import re
 import unittest
 
 import chain
-from test_correct import findings, sheet, stream_of, trials
+from test_correct import SENSES, findings, sheet, stream_of, trials
 
 
 class Mounted(unittest.TestCase):
     """What stays on counts: at its position, on its plane, and in the force."""
 
-    def placed(self, *lines, mounted=True):
+    def placed(self, *lines, mounted=True, own=True):
         truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}  # 30 g are needed, at 94 deg
-        plane = {"P": ["radius = 500 mm", "positions = 12 from 0 deg", "pieces = 2", *lines]}
+        plane = {"P": ["radius = 500 mm", *(["positions = 12 from 0 deg"] if own else []), *([] if "pieces = 1" in lines else ["pieces = 2"]), *lines]}
         aim = ["repeatability = 0 %", *(["mounted = trial 1"] if mounted else [])]
         rotor = ["mass = 100 kg", "service speed = 1200 rpm"]
         return stream_of(sheet(plane, trials(truth, [("P", 0.015, 90)]), aim, rotor=rotor))
@@ -27,6 +28,17 @@ class Mounted(unittest.TestCase):
         self.assertEqual(at_90(self.placed("stock = 5 10 g", "most = 15 g")), 0)
         self.assertEqual(at_90(self.placed("most = 15 g")), 0)
         self.assertGreater(at_90(self.placed("stock = 5 10 g", "most = 15 g", mounted=False)), 0.009)
+
+    def test_most_where_any_mass_may_stand(self):
+        """At most 25 g a place, 15 g of them at 90 deg already: 10 g more fill it. The 15.1 g at 98 deg that are wanted would
+        have 5.4 g left (cosine rule); 14 g at 120 deg, their projection, leave 15.1 sin 22 deg = 5.6 g."""
+        (p,) = chain.kind(self.placed("most = 25 g", "pieces = 1"), "placement")
+        self.assertEqual(p["position"], 4)
+        self.assertAlmostEqual(p["mass"], 0.010, delta=1e-9)
+        self.assertAlmostEqual(p["total_mass"], 0.025, delta=1e-9)
+        for p in chain.kind(self.placed("positions = any", "most = 25 g", own=False), "placement"):
+            near = abs(chain.turn(p["sheet_deg"], 90)) <= 0.5
+            self.assertLessEqual(p["mass"], (0.010 if near else 0.025) + 1e-9)
 
     def test_most_on_a_plane(self):
         for own in (["stock = 5 10 g"], []):
@@ -133,6 +145,65 @@ class Step(unittest.TestCase):
                           (["positions = 2 from 0 deg", "taken = 1 2"], "all positions of 'P' are taken")):
             step = self.step(sheet({"P": own}, runs), 5)
             self.assertIn(says, step["text"])
+
+    def test_without_phase(self):
+        """What each further run of the amplitude method is for; two answers are both told, in the sheet's sense."""
+        z, a = 30 + 0j, 1000 * cmath.exp(2.5j)
+        weights = [(0.02, 0), (0.02, 120), (0.02, 240)]
+        runs = [("as-found", {"A": abs(z)}, [])]
+        runs += [(f"t{k}", {"A": abs(z + a * chain.weight(*w))}, [("P", *w)]) for k, w in enumerate(weights)]
+        for angles, sign in (("against rotation", 1), ("with rotation", -1)):
+            own = [(n, r, [(p, m, sign * d) for p, m, d in w]) for n, r, w in runs]
+            text = [self.step(sheet({"P": []}, own[:n], angles=angles), code)["text"] for n, code in ((1, 0), (2, 5), (3, 5))]
+            self.assertIn("the same weight at three angles", text[0])
+            self.assertIn("run with the same weight at two more angles in turn", text[1])
+            found = re.search(r"two answers that fit alike, (\d+) g at (\d+) deg or (\d+) g at (\d+) deg " + angles, text[2])
+            told = [(float(found[k]), float(found[k + 1]) * sign) for k in (1, 3)]
+            want = 30, math.degrees(cmath.phase(-z / a))  # 30 g at 37 deg
+            self.assertTrue(any(abs(g - want[0]) <= 1 and abs(chain.turn(d, want[1])) <= 1 for g, d in told), told)
+            for grams, deg in told:  # both explain the three amplitudes: with response -z/w
+                w = chain.weight(grams / 1000, deg)
+                for (mass, at), (_, got, _) in zip(weights, runs[1:3]):
+                    self.assertAlmostEqual(abs(z - z / w * chain.weight(mass, at)), got["A"], delta=1.5)
+            self.assertEqual(self.step(sheet({"P": []}, own, angles=angles), 0)["step"], "correct")
+
+    def test_a_trial_without_a_size(self):
+        """Only what the sheet lacks is asked for."""
+        runs = [("as-found", {"A": 30 * cmath.exp(1j)}, [])]
+        for rotor, lacks in ((["mass = 200 kg"], "the sheet must give its service speed$"),
+                             (["service speed = 1200 rpm"], "the sheet must give its rotor's mass$"),
+                             ([], "the sheet must give its rotor's mass and its service speed$")):
+            self.assertRegex(self.step(sheet({"P": []}, runs, rotor=rotor), 0)["text"], lacks)
+        rotor = ["mass = 200 kg", "service speed = 1200 rpm"]
+        self.assertNotIn("must give", self.step(sheet({"P": []}, runs, rotor=rotor), 0)["text"])
+
+    def test_pieces_against_each_other(self):
+        """Only 40 g pieces for 20.7 g: exact by two, 150 deg apart; without that 19.3 g are left, by one."""
+        grams = 80 * math.cos(math.radians(75))
+        truth = {"A": [grams * cmath.exp(1j), 1000 * cmath.exp(1j * (1 + math.pi))]}  # at 0 deg
+        plane = {"P": ["positions = 24 from 0 deg", "stock = 40 g", "pieces = 2"]}
+        for angles, phase in SENSES:
+            stream = stream_of(sheet(plane, trials(truth, [("P", 0.02, 30)]), angles=angles, phase=phase))
+            self.assertEqual(sorted(round(p["sheet_deg"]) for p in chain.kind(stream, "placement")), [75, 285])
+            (step,) = chain.kind(stream, "next")
+            last = step["others"][-1]
+            left = min(abs(grams - sum(chain.weight(40, d) for d in set_)) for set_ in
+                       [[15 * i, 15 * j] for i in range(-4, 5) for j in range(-4, 5)] + [[15 * i] for i in range(-4, 5)])
+            self.assertAlmostEqual(left, 40 - grams, delta=1e-9)
+            self.assertEqual([round(p["sheet_deg"]) for p in last["items"]], [0])
+            self.assertTrue(last["unopposed"])
+            self.assertAlmostEqual(last["of_nothing"], left / grams, delta=1e-6)
+            self.assertIn("pieces on 'P' work partly against each other: the last alternative does without, and leaves an "
+                          "expected 93 % instead of 0", step["text"])
+            self.assertFalse(any("unopposed" in o for o in step["others"][:-1]))
+            data = "".join(json.dumps(r) + "\n" for r in stream).encode()
+            for form in ("text", "html"):
+                said = " ".join(chain.lopside("report", "--as", form, stdin=data).stdout.decode().split())
+                self.assertEqual(said.count(", without pieces that work against each other"), 1)
+        plane["P"][1] = "stock = 5 10 20 g"  # 20 g at 0 deg, and no more than a degree or a gram is missed
+        (step,) = chain.kind(stream_of(sheet(plane, trials(truth, [("P", 0.02, 30)]), ["repeatability = 2 %"])), "next")
+        self.assertNotIn("against each other", step["text"])
+        self.assertFalse(any("unopposed" in o for o in step["others"]))
 
     def test_a_weight_that_would_pull_too_hard(self):
         z, a = 30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)

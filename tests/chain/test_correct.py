@@ -348,6 +348,45 @@ class Fitting(unittest.TestCase):
             self.assertLess(c["mass"], 0)
             self.assertLess(abs(chain.weight(c["mass"], c["sheet_deg"]) - want), 1e-6 * abs(want))
 
+    def test_one_hole_a_position(self):
+        """Pieces of 10 g at one place are one hole, no deeper than 40 mm; 17.756 g are 20 mm (as above)."""
+        truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(1j)]}  # 30 g off at 0 deg
+        gram = 0.020 / (7850 * math.pi / 4 * 0.012 ** 2 * 0.020)  # m a kg
+        own = ["work = remove", "stock = 10 g", "hole = 12 mm", "density = 7850 kg/m3"]
+        for depth, masses in ((40, [0.030]), (25, [0.020, 0.020])):  # 35.5 g, 22.2 g
+            plane = {"P": ["positions = 10 20 0 340 350 deg", "pieces = 3", f"depth = {depth} mm", *own]}
+            placed = chain.kind(stream_of(sheet(plane, trials(truth, [("P", 0.02, 30)]))), "placement")
+            if depth == 40:
+                self.assertEqual([round(p["sheet_deg"]) for p in placed], [0])
+            for p in placed:
+                self.assertLessEqual(-p["mass"], depth / 1000 / gram)
+                self.assertEqual(p["pieces"], [p["mass"]])
+                self.assertAlmostEqual(p["depths_m"][0], -p["mass"] * gram, delta=1e-9)
+            self.assertAlmostEqual(sum(p["mass"] for p in placed), -0.030, delta=1e-9)
+
+    def test_holes_that_meet(self):
+        """Every 10 deg at 100 mm holes are 2 * 100 mm * sin(5 deg) = 17.4 mm apart: 12 mm fit, 20 mm do not."""
+        truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(1j)]}
+        for width, depth, meets in ((12, 20, False), (20, 6, True)):  # 17.8 g, 14.8 g a hole
+            plane = {"P": ["positions = 36 from 0 deg", "work = remove", f"hole = {width} mm", "density = 7850 kg/m3",
+                           f"depth = {depth} mm"]}
+            stream = stream_of(sheet(plane, trials(truth, [("P", 0.02, 30)])))
+            self.assertGreater(len(chain.kind(stream, "placement")), 1)
+            found = findings(stream, "hole-spacing")
+            self.assertEqual([f["verdict"] for f in found], ["caution"] if meets else [])
+            if meets:
+                self.assertAlmostEqual(found[0]["value"], 200 * math.sin(math.radians(5)), delta=1e-6)
+                self.assertEqual(found[0]["limit"], 20)
+        # a hole that stays 5 deg beside: 8.7 mm; the same place is drilled on, and meets nothing
+        for at, meets in ((5, True), (0, False)):
+            plane = {"P": ["positions = 1 from 0 deg", "work = remove", "hole = 12 mm", "density = 7850 kg/m3"]}
+            runs = trials(truth, [("P", -0.01, at)])
+            stream = stream_of(sheet(plane, runs, ["repeatability = 0 %", "mounted = trial 1"]))
+            self.assertEqual(len(chain.kind(stream, "placement")), 1)
+            self.assertEqual(len(findings(stream, "hole-spacing")), meets)
+            (step,) = chain.kind(stream, "next")
+            self.assertNotIn("merged", step)  # holes do not become one
+
     def test_on_or_off(self):
         """What stays on and what comes off are two ways to one total; several weights make one."""
         truth = {"A": [30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}

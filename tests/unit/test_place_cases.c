@@ -120,6 +120,37 @@ static void splits_between_two_blades(void **unused)
     }
 }
 
+/* Any mass, at most 40 g at a position, some of which hold something: what is left there may still be filled. Ideal 50 g
+ * at 0 deg; blades every 45 deg. Three blades reach it: 15 g at 0 and, by projection, (50 - 15)/(2 cos 45 deg) at 45 and
+ * at 315. One blade: 15 g at 0 leave 35 g, better than 30 g at 45 deg, which leave (cosine rule) 35.8 g. */
+static void what_is_held_leaves_room(void **unused)
+{
+    (void)unused;
+    static const double eight[] = {0, 45, 90, 135, 180, 225, 270, 315};
+    static const double held[] = {0.025, 0.010, 0, 0, 0, 0, 0, 0.010};
+    struct place_plane plane = any_mass(eight, 8, 3);
+    struct place_result result;
+    plane.most = 0.040;
+    plane.held = held;
+    double complex w = search_one(&plane, -2, 40, 0, &result);
+    assert_true(cabs(w - 0.05) <= 1e-6 * 0.05);
+    assert_int_equal(result.best.count, 3);
+    for (size_t i = 0; i < 3; i++) {
+        const struct place_item *item = &result.best.items[i];
+        assert_true(item->mass <= 0.040 - held[item->position] + 1e-9);
+        double expected = item->position == 0 ? 0.015 : 0.035 / (2 * cos(45 * DEGREE));
+        assert_true(fabs(item->mass - expected) <= 1e-5 * expected);
+    }
+    place_release(&result);
+    plane.pieces = 1;
+    search_one(&plane, -2, 40, 0, &result);
+    assert_int_equal(result.best.count, 1);
+    assert_int_equal(result.best.items[0].position, 0);
+    assert_true(fabs(sqrt(result.best.objective) - 40 * 0.035) <= 1e-6);
+    assert_true(result.gap == 0);
+    place_release(&result);
+}
+
 /* Two planes, one position each out of six, any mass: against every pair with its 2 x 2 real normal
  * equations (both masses free, or one of them at zero). */
 static double best_pair(const double complex *f, const double *angles, size_t n)
@@ -371,6 +402,7 @@ int main(void)
         cmocka_unit_test(free_weights_are_least_squares),
         cmocka_unit_test(the_disc_limits),
         cmocka_unit_test(splits_between_two_blades),
+        cmocka_unit_test(what_is_held_leaves_room),
         cmocka_unit_test(one_position_a_plane),
         cmocka_unit_test(worst_of_two_is_the_middle),
         cmocka_unit_test(any_angle_means_whole_degrees),

@@ -366,6 +366,21 @@ static void test_four_runs(void **state)
     posterior_release(&p);
     assert_int_equal(amplitude_fit(3, amplitude, w, none, 10, &p, &misfit, &which),
                      AMPLITUDE_AMBIGUOUS);
+    /* without the third trial: x = A w/T lies where two circles meet, |x + 1| = 19.07../10 and
+     * |x + angle_vector(1, -120)| = 4.32../10; the weights are -w/x */
+    double complex either[2], from = -1, to = -angle_vector(1, -120), along = to - from;
+    double r = amplitude[1] / 10, q = amplitude[2] / 10, d = cabs(along);
+    double foot = (d * d + r * r - q * q) / (2 * d), height = sqrt(r * r - foot * foot);
+    assert_int_equal(amplitude_pair(3, amplitude, w, none, 10, either), AMPLITUDE_OK);
+    for (int k = 0; k < 2; k++) {
+        double complex x = from + along / d * (foot + (k ? -1 : 1) * I * height);
+        double off = fmin(cabs(either[0] + 50 / x), cabs(either[1] + 50 / x));
+        assert_true(off < 1e-4);
+    }
+    assert_true(cabs(either[0] - either[1]) > 1);
+    assert_int_equal(amplitude_pair(2, amplitude, w, none, 10, either), AMPLITUDE_AMBIGUOUS);
+    assert_int_equal(amplitude_pair(4, amplitude, w, none, 10, either), AMPLITUDE_AMBIGUOUS);
+    assert_true(isnan(creal(either[0])) && isnan(creal(either[1])));
     /* weights along one line: the mirrored answer fits as well */
     w[2] = -50;
     w[3] = 25;
@@ -374,7 +389,14 @@ static void test_four_runs(void **state)
     amplitude[3] = cabs(10 + 5 * angle_vector(1, 35));
     assert_int_equal(amplitude_fit(4, amplitude, w, none, 10, &p, &misfit, &which),
                      AMPLITUDE_AMBIGUOUS);
+    /* A w/T = 1 at 35 or at -35 deg: 50 at 145 or at 215 deg */
+    assert_int_equal(amplitude_pair(4, amplitude, w, none, 10, either), AMPLITUDE_OK);
+    for (int k = -1; k < 2; k += 2) {
+        double complex one = angle_vector(50, 180 + 35 * k);
+        assert_true(fmin(cabs(either[0] - one), cabs(either[1] - one)) < 1e-4);
+    }
     amplitude[0] = NAN;
+    assert_int_equal(amplitude_pair(4, amplitude, w, none, 10, either), AMPLITUDE_NAN);
     assert_int_equal(amplitude_fit(4, amplitude, w, none, 10, &p, &misfit, &which), AMPLITUDE_NAN);
 }
 

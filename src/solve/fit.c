@@ -1,0 +1,148 @@
+#include "solve/fit.h"
+
+#include <math.h>
+#include <stdarg.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "solve/oppose.h"
+
+#define GAP_SHOWN 0.01 /* %, our choice: less than any reading tells */
+
+/* Whether any hole is to be drilled; its depth stands beside its placement. */
+static bool has_holes(const struct answer *a)
+{
+    for (size_t i = 0; i < a->placement.best.count; i++) {
+        const struct job_plane *plane = &a->model->job->planes[a->placement.best.items[i].plane];
+        if (plane->work == WORK_REMOVE && plane->hole_m > 0)
+            return true;
+    }
+    return false;
+}
+
+static bool only_removal(const struct answer *a)
+{
+    for (size_t i = 0; i < a->placement.best.count; i++)
+        if (a->model->job->planes[a->placement.best.items[i].plane].work != WORK_REMOVE)
+            return false;
+    return a->placement.best.count > 0;
+}
+
+/* Aimed sensors that take no part: two by name and how many more. */
+static void list_lost(const struct answer *a, char *text, size_t size)
+{
+    const struct model *m = a->model;
+    size_t length = strlen(text), named = 0, more = 0;
+    for (size_t r = 0; r < m->row_count; r++) {
+        const struct model_row *row = &m->rows[r];
+        if (!row->in_aim || row->state == MODEL_GOOD)
+            continue;
+        char one[120];
+        int wanted = snprintf(one, sizeof one, "; without sensor '%s' (%s)",
+                              m->job->sensors[row->sensor].name, m->conditions[row->condition]);
+        if (named == 2 || length + (size_t)wanted + 20 > size) {
+            more++;
+            continue;
+        }
+        named++;
+        length += (size_t)snprintf(text + length, size - length, "%s", one);
+    }
+    if (more > 0)
+        snprintf(text + length, size - length, "; and %zu more", more);
+}
+
+/* Adds a clause, whole or not at all. */
+__attribute__((format(printf, 2, 3))) static void clause(struct advice_next *next,
+                                                         const char *format, ...)
+{
+    char more[300];
+    size_t length = strlen(next->text);
+    va_list arguments;
+    va_start(arguments, format);
+    size_t wanted = (size_t)vsnprintf(more, sizeof more, format, arguments);
+    va_end(arguments);
+    if (wanted < sizeof more && length + wanted + 2 < sizeof next->text)
+        snprintf(next->text + length, sizeof next->text - length, "%s%s", length ? "; " : "", more);
+}
+
+/* What is not proven about the placement. */
+static void say_unproven(const struct answer *a, struct advice_next *next)
+{
+    double gap = a->placement.gap, from = a->placement.nothing;
+    double better =
+        100 * (sqrt(a->placement.of_all / from) - sqrt(fmax(0, a->placement.bound) / from));
+    if (gap > 0 && from > 0)
+        clause(next, "a better placement is not ruled out, by %s %% of the vibration at most",
+               better < GAP_SHOWN ? "0.01" : judge_figure(better, 2).text);
+    else if (a->placement.cut)
+        clause(next, "that fewer pieces would not do as well is not proven");
+}
+
+/* Root of expected squared vibration with that choice, in % of what it is now, no finer than 0.1 %.
+ */
+static struct judge_figure left_of(const struct answer *a, const struct place_choice *choice)
+{
+    double share = sqrt(fmax(0, choice->objective) / a->placement.nothing);
+    return judge_figure(round(1000 * share) / 10, 2);
+}
+
+/* Pieces that work against each other, and what doing without them costs. */
+static void say_opposed(const struct answer *a, struct advice_next *next)
+{
+    char planes[120] = "";
+    size_t length = 0;
+    for (size_t p = 0; p < a->planes && length + 50 < sizeof planes; p++)
+        if (oppose_on(&a->placement.best, p))
+            length += (size_t)snprintf(planes + length, sizeof planes - length, "%s'%s'",
+                                       length ? " and " : "", a->model->job->planes[p].name);
+    if (!a->opposed)
+        return;
+    if (!a->has_unopposed) {
+        clause(next, "pieces on %s work partly against each other, but without that nothing helps",
+               planes);
+        return;
+    }
+    struct judge_figure without = left_of(a, &a->unopposed.best);
+    struct judge_figure with = left_of(a, &a->placement.best);
+    if (strcmp(without.text, with.text) == 0)
+        clause(
+            next,
+            "pieces on %s work partly against each other: the last alternative does without, and "
+            "leaves no more to two digits",
+            planes);
+    else
+        clause(
+            next,
+            "pieces on %s work partly against each other: the last alternative does without, and "
+            "leaves an expected %s %% instead of %s %%",
+            planes, without.text, with.text);
+}
+
+void fit_step(const struct answer *a, bool trim, struct advice_next *next)
+{
+    const struct job *job = a->model->job;
+    int mounted = job->aim.mounted;
+    *next = (struct advice_next){.step = trim ? "trim" : "correct"};
+    const char *drill = has_holes(a) ? "drill as placed, depths beside each placement" : NULL;
+    const char *work = only_removal(a) ? drill ? drill : "remove material as placed"
+                       : mounted >= 0  ? "add what is placed"
+                                       : "fit what is placed";
+    if (mounted >= 0)
+        clause(next, "leave the weights of run '%s' on, %s, then run again",
+               job->runs[mounted].name, work);
+    else
+        clause(next,
+               job_removed_run(job) >= 0
+                   ? "put back what runs removed, take off what was mounted, %s, then run again"
+                   : "take everything off that was mounted, %s, then run again",
+               work);
+    say_unproven(a, next);
+    if (drill && !only_removal(a))
+        clause(next, "%s", drill);
+    if (a->static_only)
+        clause(next, "the static part comes first, the couple after that run");
+    if (a->model->amplitudes)
+        clause(next, "found from amplitudes alone, no lag is meant");
+    say_opposed(a, next);
+    list_lost(a, next->text, sizeof next->text);
+}

@@ -1,0 +1,15 @@
+/* fit.h - the next step where there is something to fit, in words. */
+#ifndef LOPSIDE_SOLVE_FIT_H
+#define LOPSIDE_SOLVE_FIT_H
+
+#include <stdbool.h>
+
+#include "solve/advice.h"
+#include "solve/answer.h"
+
+/* The step `correct`, or `trim`: what is done with what is on, whether a better placement is not
+ * ruled out, pieces that work against each other, holes, sensors that take no part. Each clause
+ * stands whole or not at all. Needs answer_place and answer_unopposed. */
+void fit_step(const struct answer *answer, bool trim, struct advice_next *next);
+
+#endif
