@@ -2,14 +2,14 @@
 
 #include <math.h>
 
-#include "base/angle.h"
+#include "average/colour.h"
 
-static const size_t COUNT_LEAST = 6;        /* with fewer a correlation says nothing */
-static const double CORRELATION_MOST = 0.9; /* (1+r)/(1-r) = 19: more, and the run has no mean */
-static const double LEVEL = 0.1; /* of the cosine test; see tests/unit/test_average_mean.c */
+static const size_t COUNT_LEAST = 6; /* with fewer a correlation says nothing */
+static const double LEVEL = 0.1;     /* of the cosine test; see tests/unit/test_average_mean.c */
 static const size_t WANDER_LEAST =
     12; /* blocks; with fewer there is no slow part beside the line */
 static const double WANDER_LEVEL = 0.01; /* of the search for wander; common practice */
+static const double FEW = 2.5;           /* from the simulation, with colour.c's weights */
 static const double CHI2_95 = 5.99146;   /* chi-squared with 2 degrees of freedom, 95 % */
 
 double longrun_f_tail(double x, size_t a, size_t b)
@@ -29,6 +29,13 @@ double longrun_f2_point(double p, double b)
     return b * (pow(p, -1 / b) - 1);
 }
 
+double longrun_few(size_t count)
+{
+    double n = (double)count;
+
+    return count < COUNT_LEAST ? 2 * longrun_f2_point(0.05, n - 1) / CHI2_95 : 1 - FEW / n;
+}
+
 static double complex mean(const double complex *vectors, size_t count)
 {
     double complex sum = 0;
@@ -43,32 +50,6 @@ static double square(double complex z)
     return creal(z) * creal(z) + cimag(z) * cimag(z);
 }
 
-/* (1+r)/(1-r) of the lag-1 correlation; `power` is the sum of squared deviations. */
-static double from_correlation(const double complex *vectors, size_t count, double complex middle,
-                               double power)
-{
-    double n = (double)count, sum = 0, r;
-
-    for (size_t i = 1; i < count; i++)
-        sum += creal((vectors[i] - middle) * conj(vectors[i - 1] - middle));
-    r = (sum / power + 1 / n) / (1 - 3 / n);
-    if (r < 1 / sqrt(2 * n)) /* the standard error, of both components together */
-        return 1;
-    if (r > CORRELATION_MOST)
-        r = CORRELATION_MOST;
-    return (1 + r) / (1 - r);
-}
-
-/* The power in cosine sum j = 1, 2 ...; those of all j < count add up to the whole. */
-static double cosine_power(const double complex *vectors, size_t count, size_t j)
-{
-    double complex sum = 0;
-
-    for (size_t i = 0; i < count; i++)
-        sum += vectors[i] * cos(PI * (double)j * ((double)i + 0.5) / (double)count);
-    return 2 * square(sum) / (double)count;
-}
-
 static double from_cosines(const double complex *vectors, size_t count, double power)
 {
     size_t most = count < 128 ? 8 : 16, j = 1;
@@ -78,7 +59,7 @@ static double from_cosines(const double complex *vectors, size_t count, double p
         size_t rest = count - 1 - b;
         double excess;
         for (; j <= b; j++)
-            low += cosine_power(vectors, count, j);
+            low += colour_cosine_power(vectors, count, j);
         excess = low / (double)b / ((power - low) / (double)rest);
         if (longrun_f_tail(excess, b, rest) < LEVEL) {
             double wider = 2 * longrun_f2_point(0.05, (double)b) / CHI2_95;
@@ -102,7 +83,7 @@ double longrun_wander(const double complex *vectors, size_t count)
     for (size_t b = 2; b <= most && 2 * b <= count; b *= 2) {
         size_t rest = count - 1 - b;
         for (; j <= b; j++)
-            low += cosine_power(vectors, count, j);
+            low += colour_cosine_power(vectors, count, j);
         double floor = fmax(power - low, 0) / (double)rest;
         if (low > 0 && longrun_f_tail(low / (double)b / floor, b, rest) < WANDER_LEVEL)
             largest = fmax(largest, low - (double)b * floor);
@@ -110,10 +91,10 @@ double longrun_wander(const double complex *vectors, size_t count)
     return sqrt(largest / (double)count);
 }
 
-double longrun_factor(const double complex *vectors, size_t count)
+double longrun_factor(const double complex *vectors, size_t count, int components)
 {
     double complex middle = mean(vectors, count);
-    double power = 0, a, b;
+    double power = 0, shown, cosines;
 
     for (size_t i = 0; i < count; i++)
         power += square(vectors[i] - middle);
@@ -121,8 +102,9 @@ double longrun_factor(const double complex *vectors, size_t count)
         return NAN;
     /* No scatter beyond rounding: correlated or not, it does not matter. */
     if (count < COUNT_LEAST || power <= 1e-24 * square(middle) * (double)count || power == 0)
-        return 1;
-    a = from_correlation(vectors, count, middle, power);
-    b = from_cosines(vectors, count, power);
-    return a > b ? a : b;
+        return longrun_few(count);
+    shown =
+        power / (double)(components * (long)(count - 1)); /* variance of a component of a block */
+    cosines = from_cosines(vectors, count, power) * longrun_few(count);
+    return fmax(cosines, colour_variance(vectors, count, components) * (double)count / shown);
 }

@@ -5,21 +5,20 @@
 #include <complex.h>
 #include <stddef.h>
 
-/* The variance of the mean of `count` successive block vectors, over variance/count. At least 1;
- * exactly 1 for fewer than 6 blocks or blocks without any scatter; NaN where a vector is NaN.
- *
- * The larger of two estimates, both pooled over the two components:
- *  - the lag-1 correlation of the blocks, freed of its small-sample bias (M. G. Kendall, Biometrika
- *    41 (1954) 403-404), where it exceeds one standard error, as
- *    (1+r)/(1-r). Wander nearly as slow as the run (r = 0.8 in 16 blocks) is covered 83 times in
- * 100 only; widening it for the few independent blocks would cover it 90 times, but then readings
- * of ordinary runs with a slight swing are held for so uncertain that corrections shrink;
+/* The variance of the mean of `count` successive block vectors of so many `components` (2; 1 where
+ * they lie on one line), over variance/count, such that a 95 % region with chi-squared holds the
+ * truth 95 times in 100. NaN where a vector is NaN; longrun_few() for fewer than 6 blocks or blocks
+ * without any scatter; the larger of two estimates otherwise:
+ *  - colour.h, for noise of one block's or a few blocks' memory;
  *  - the mean power of the first B = 2, 4, 8 (16) cosine sums (E. Lazarus, D. J. Lewis, J. H.
  * Stock, M. W. Watson, J. Bus. Econ. Stat. 36 (2018) 541-559, "EWC"), where it exceeds the power of
  * the rest at the 10 % level of F(2B, 2(n-1-B)), widened by what F(2, 2B) is wider than
- * chi-squared. This sees slow drift that hides below larger white scatter, which the lag-1
- * correlation does not. */
-double longrun_factor(const double complex *vectors, size_t count);
+ * chi-squared. This sees slow drift that hides below larger white scatter. */
+double longrun_factor(const double complex *vectors, size_t count, int components);
+
+/* The same where nothing is known of the blocks' order: what F(2, 2(n-1)) is wider than chi-squared
+ * for fewer than 6 of `count` = n; 1 - 2.5/n from there, the least that longrun_factor takes. */
+double longrun_few(size_t count);
 
 /* Standard deviation, of both components together, of the slow part of `count` vectors whose mean
  * and line have been taken off: the power of the first B = 2, 4, 8 (16) cosine sums beyond that of

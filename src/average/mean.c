@@ -10,7 +10,6 @@
 #include "average/trend.h"
 
 static const double ROUND_FREEDOM = 10; /* see the header, and the simulation it names */
-static const double CHI2_95 = 5.99146;  /* chi-squared with 2 degrees of freedom, 95 % */
 
 /* The blocks used, in one allocation: z then turns then t. */
 struct kept {
@@ -44,15 +43,7 @@ static int keep_blocks(const double complex *vectors, const double *turns, const
     return 0;
 }
 
-/* What a region must be scaled by for few blocks; continuous to a few per cent at 12. */
-static double small_sample(size_t count)
-{
-    double n = (double)count;
-
-    return count < 12 ? 2 * longrun_f2_point(0.05, n - 1) / CHI2_95 : 1 - 1.1 / n;
-}
-
-static void covariance_of_mean(const struct kept *k, struct mean *mean)
+static void covariance_of_mean(const struct kept *k, int components, struct mean *mean)
 {
     double n = (double)k->count, re = 0, im = 0, both = 0;
     double weight = (n - 1) / (n - 1 + ROUND_FREEDOM), round, scale;
@@ -66,17 +57,17 @@ static void covariance_of_mean(const struct kept *k, struct mean *mean)
     }
     for (size_t i = 0; i < k->count; i++) {
         double complex d = k->z[i] - mean->vector;
-        re += creal(d) * creal(d) / (n - 1);
-        im += cimag(d) * cimag(d) / (n - 1);
-        both += creal(d) * cimag(d) / (n - 1);
+        double share = k->turns[i] / mean->turns * n / (n - 1); /* a longer block scatters less */
+        re += share * creal(d) * creal(d);
+        im += share * cimag(d) * cimag(d);
+        both += share * creal(d) * cimag(d);
     }
-    scale = longrun_factor(k->z, k->count);
-    mean->independent = n / scale < 1 ? 1 : n / scale;
-    scale *= small_sample(k->count) / n;
+    scale = longrun_factor(k->z, k->count, components);
+    mean->independent = fmax(1, fmin(n, n / scale));
     round = 0.5 * (re + im) * (1 - weight);
-    mean->cov[0] = (re * weight + round) * scale;
-    mean->cov[1] = both * weight * scale;
-    mean->cov[2] = (im * weight + round) * scale;
+    mean->cov[0] = (re * weight + round) * scale / n;
+    mean->cov[1] = both * weight * scale / n;
+    mean->cov[2] = (im * weight + round) * scale / n;
 }
 
 static int steadiness(const struct kept *k, struct mean *mean)
@@ -97,8 +88,8 @@ static int steadiness(const struct kept *k, struct mean *mean)
     return unsteady_of_blocks(k->z, k->t, k->count, &mean->unsteady);
 }
 
-int mean_of_blocks(const double complex *vectors, const double *turns, const double *t,
-                   size_t count, struct mean *mean)
+static int mean_of(const double complex *vectors, const double *turns, const double *t,
+                   size_t count, int components, struct mean *mean)
 {
     struct kept kept;
     double complex sum = 0;
@@ -115,10 +106,16 @@ int mean_of_blocks(const double complex *vectors, const double *turns, const dou
         mean->turns += kept.turns[i];
     }
     mean->vector = sum / mean->turns;
-    covariance_of_mean(&kept, mean);
+    covariance_of_mean(&kept, components, mean);
     result = steadiness(&kept, mean);
     free(kept.z);
     return result;
+}
+
+int mean_of_blocks(const double complex *vectors, const double *turns, const double *t,
+                   size_t count, struct mean *mean)
+{
+    return mean_of(vectors, turns, t, count, 2, mean);
 }
 
 int mean_of_amplitudes(const double *amplitudes, const double *turns, const double *t, size_t count,
@@ -131,7 +128,7 @@ int mean_of_amplitudes(const double *amplitudes, const double *turns, const doub
         return -1;
     for (size_t i = 0; i < count; i++)
         vectors[i] = amplitudes[i];
-    result = mean_of_blocks(vectors, turns, t, count, mean);
+    result = mean_of(vectors, turns, t, count, 1, mean);
     free(vectors);
     if (result)
         return result;
