@@ -7,6 +7,7 @@
 #include <string.h>
 
 #include "base/message.h"
+#include "base/nearest.h"
 
 struct parser {
     const struct usage *usage;
@@ -100,6 +101,22 @@ static void take_value(struct parser *p, const struct option *o, const char *tex
     }
 }
 
+static void tell_unknown(struct parser *p, const char *argument)
+{
+    const char *names[32];
+    char known[32][32], wrong[64], meant[NEAREST_ROOM];
+    size_t count = 0;
+    for (const struct option *o = p->usage->options; o && o->name && count < 30; o++)
+        snprintf(known[count++], sizeof *known, "--%.29s", o->name);
+    snprintf(known[count++], sizeof *known, "--help");
+    snprintf(known[count++], sizeof *known, "--version");
+    for (size_t i = 0; i < count; i++)
+        names[i] = known[i];
+    snprintf(wrong, sizeof wrong, "%.*s", (int)strcspn(argument, "="), argument);
+    message("unknown option: '%s'%s", argument, nearest_hint(wrong, names, count, meant));
+    p->errors++;
+}
+
 /* Handles the option at argv[i]; returns the index of the last argument used. */
 static int take_option(struct parser *p, int argc, char **argv, int i)
 {
@@ -117,8 +134,7 @@ static int take_option(struct parser *p, int argc, char **argv, int i)
     }
     const struct option *o = find_option(p->usage, name, length);
     if (!o || (argv[i][1] != '-' && length != 1)) {
-        message("unknown option: '%s'", argv[i]);
-        p->errors++;
+        tell_unknown(p, argv[i]);
     } else if (equals) {
         take_value(p, o, equals + 1);
     } else if (o->type == OPTION_FLAG) {
@@ -189,12 +205,14 @@ void options_help(const struct usage *usage)
 {
     printf("lopside%s%s - %s\n\nUsage: lopside%s%s%s%s%s\n", usage->stage ? " " : "",
            usage->stage ? usage->stage : "", usage->summary, usage->stage ? " " : "",
-           usage->stage ? usage->stage : "", usage->options && usage->options->name ? " [OPTION...]" : "",
+           usage->stage ? usage->stage : "",
+           usage->options && usage->options->name ? " [OPTION...]" : "",
            *usage->operands ? " " : "", usage->operands);
     puts("\nOptions:");
     for (const struct option *o = usage->options; o && o->name; o++)
         help_option(o);
-    puts("  -h, --help             print this and stop\n  --version              print the version and stop");
+    puts("  -h, --help             print this and stop\n  --version              print the version "
+         "and stop");
     if (usage->details)
         printf("\n%s\n", usage->details);
 }

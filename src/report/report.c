@@ -93,6 +93,18 @@ static int find(const char *const *names, const char *name)
     return WHAT_NOT_GIVEN;
 }
 
+static int tell_names(int form, const char *name)
+{
+    const char *const *names = form == FORM_CSV ? tidy_names : draw_names;
+    struct buffer list = BUFFER_INIT;
+    for (int i = 0; names[i]; i++)
+        buffer_format(&list, "%s%s", i ? ", " : "", names[i]);
+    message("no such %s: '%s' (one of %s)", form == FORM_CSV ? "table" : "picture", name,
+            list.failed ? "" : list.bytes);
+    buffer_release(&list);
+    return STATUS_USAGE;
+}
+
 /* Turns --what into the index of the form's own list. */
 static int validate(int form, const char *name, int *what)
 {
@@ -109,8 +121,7 @@ static int validate(int form, const char *name, int *what)
     *what = name ? find(form == FORM_CSV ? tidy_names : draw_names, name) : WHAT_NOT_GIVEN;
     if (!name || *what != WHAT_NOT_GIVEN)
         return STATUS_DONE;
-    message("no such %s: '%s'", form == FORM_CSV ? "table" : "picture", name);
-    return STATUS_USAGE;
+    return tell_names(form, name);
 }
 
 int stage_report(int argc, char **argv)
