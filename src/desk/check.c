@@ -416,6 +416,17 @@ static void remark_weights(struct checkup *check)
     end_remark(check);
 }
 
+/* No weight may be placed without its force in sight. */
+static void remark_speed(struct checkup *check)
+{
+    const struct job *job = &check->sheet.job;
+    if (job->plane_count == 0 || job->service_rpm > 0)
+        return;
+    begin_remark(check, "rotor");
+    fputs("without 'service speed' in [rotor] no weight's force can be told", stdout);
+    end_remark(check);
+}
+
 static void remark_never_bare(struct checkup *check)
 {
     begin_remark(check, "as found");
@@ -456,6 +467,8 @@ int desk_check(int argc, char **argv)
         print_sheet(&check);
         if (operands.count == 1)
             remark_weights(&check);
+        if (operands.count == 1)
+            remark_speed(&check);
         if (operands.count == 1 && job_never_bare(&check.sheet.job))
             remark_never_bare(&check);
         for (size_t i = 1; i < operands.count; i++)

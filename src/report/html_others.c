@@ -9,6 +9,7 @@
 #include "report/phrase.h"
 #include "report/shown.h"
 #include "report/table.h"
+#include "report/text_answer.h"
 
 static double number(const json_t *object, const char *key)
 {
@@ -125,8 +126,12 @@ static void half_of(const struct dossier *d, const char *plane, double half[2])
     }
 }
 
-/* A table of a record's list of weights. ideal: known no better than the ideal weight is. */
-static void weights(const struct dossier *d, const json_t *items, bool ideal, struct buffer *out)
+/* How well the weights of a list are known: as named, as the ideal weight, as placed ones. */
+enum known { NOMINAL, AS_IDEAL, AS_PLACED };
+
+/* A table of a record's list of weights. */
+static void weights(const struct dossier *d, const json_t *items, enum known known,
+                    struct buffer *out)
 {
     static const struct table_column columns[] = {{"plane", false, true},
                                                   {"position", true, false},
@@ -139,8 +144,10 @@ static void weights(const struct dossier *d, const json_t *items, bool ideal, st
         struct buffer what = BUFFER_INIT;
         double mass = number(item, "mass"), position = number(item, "position");
         double half[2] = {NAN, NAN};
-        if (ideal)
+        if (known == AS_IDEAL)
             half_of(d, string(item, "plane"), half);
+        else if (known == AS_PLACED)
+            half[0] = text_answer_free_half(d, job_find_plane(d->job, string(item, "plane")));
         table_cell(&table, "%s", string(item, "plane"));
         table_cell(&table, position > 0 ? "%.0f" : "-", position);
         angle_cell(&table, d->job, number(item, "angle_deg"), half[1]);
@@ -180,7 +187,7 @@ static void others(const struct dossier *d, struct buffer *out)
                           ? ", without pieces that work against each other"
                           : "",
                       json_array_size(items) ? ":" : ": nothing added.");
-        weights(d, items, false, out);
+        weights(d, items, AS_PLACED, out);
         buffer_text(out, "</div>\n");
     }
     buffer_text(out, "</div>\n");
@@ -201,14 +208,14 @@ static void otherwise(const struct dossier *d, struct buffer *out)
                                       : "Ideal weight if everything comes off first");
         html_part_say(out, "note", "Instead of the weights at the top. Relative to %s%s%s.",
                       is_run ? "run '" : "", to, is_run ? "'" : "");
-        weights(d, list, true, out);
+        weights(d, list, AS_IDEAL, out);
     }
     if (json_array_size(merged) > 0) {
         html_part_heading(out, "One weight a plane for all that is then on");
         html_part_say(out, "note",
                       "The same as all mounted and placed weights together, for a permanent "
                       "weight in their place.");
-        weights(d, merged, true, out);
+        weights(d, merged, NOMINAL, out);
     }
 }
 

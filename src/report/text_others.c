@@ -7,6 +7,7 @@
 #include "report/paper.h"
 #include "report/phrase.h"
 #include "report/shown.h"
+#include "report/text_answer.h"
 
 static double number(const json_t *object, const char *key)
 {
@@ -50,9 +51,8 @@ static void item(struct buffer *out, const struct job *job, const json_t *json,
     phrase_angle(out, job, number(json, "angle_deg"), half[1]);
 }
 
-static void other(const struct job *job, const json_t *json, struct buffer *out)
+static void other(const struct dossier *d, const json_t *json, struct buffer *out)
 {
-    static const double nominal[2] = {NAN, NAN};
     const json_t *items = json_object_get(json, "items");
     struct buffer text = BUFFER_INIT;
     buffer_text(&text, "- ");
@@ -63,8 +63,11 @@ static void other(const struct job *job, const json_t *json, struct buffer *out)
     if (json_array_size(items) == 0)
         buffer_text(&text, "nothing added");
     for (size_t i = 0; i < json_array_size(items); i++) {
+        const json_t *one = json_array_get(items, i);
+        const double half[2] = {
+            text_answer_free_half(d, job_find_plane(d->job, string(one, "plane"))), NAN};
         buffer_text(&text, i ? "; " : "");
-        item(&text, job, json_array_get(items, i), nominal);
+        item(&text, d->job, one, half);
     }
     put(out, 2, 4, &text);
 }
@@ -84,7 +87,7 @@ void text_others_write(const struct dossier *dossier, struct buffer *out)
     paper_heading(out, "OTHERWISE");
     put(out, 2, 2, &text);
     for (size_t i = 0; i < json_array_size(others); i++)
-        other(dossier->job, json_array_get(others, i), out);
+        other(dossier, json_array_get(others, i), out);
 }
 
 static int sensor_index(const struct job *job, const char *name)
