@@ -13,7 +13,7 @@
 #include "average/sweep.h"
 #include "base/angle.h"
 #include "base/message.h"
-#include "base/options.h"
+#include "base/stage.h"
 #include "base/status.h"
 #include "sheet/units.h"
 #include "stream/records.h"
@@ -67,8 +67,7 @@ static int foreign(const struct gather *g, const struct record *record, const ch
 {
     if (g->open && !strcmp(g->run, run))
         return STATUS_DONE;
-    message("record outside its run: '%s' (run '%s')", record->kind, run);
-    return STATUS_USAGE;
+    return record_outside(record, run);
 }
 
 static int add_turns(struct gather *g, const struct record *record, const struct job *job)
@@ -519,20 +518,6 @@ int stage_average(int argc, char **argv)
         "Reads records from the files, one after another, or from standard input. Behind the last\n"
         "record of each run stand its readings: the mean vector of the blocks, outlier blocks set\n"
         "aside, with the covariance of that mean, and how steady it was.\n"};
-    struct option_list files = {0};
-    int status;
 
-    message_stage("average");
-    switch (options_parse(&usage, argc, argv, &files)) {
-    case OPTIONS_STOP:
-        status = STATUS_DONE;
-        break;
-    case OPTIONS_GO:
-        status = loop(&files);
-        break;
-    default:
-        status = STATUS_USAGE;
-    }
-    option_list_release(&files);
-    return status;
+    return stage_run(&usage, argc, argv, loop);
 }

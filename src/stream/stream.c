@@ -163,6 +163,13 @@ int record_malformed(const struct record *record, const char *why)
     return STATUS_USAGE;
 }
 
+int record_outside(const struct record *record, const char *run)
+{
+    message("record outside its run: '%s' (run '%s'; '%s', line %lld)", record->kind, run,
+            record->input, record->line);
+    return STATUS_USAGE;
+}
+
 static int malformed(const struct stream_state *s, const char *why)
 {
     const struct record record = {.kind = json_string_value(json_object_get(s->json, "kind")),

@@ -89,6 +89,9 @@ int stream_write(struct stream *stream, struct line *line) __attribute__((warn_u
  * blame (fields_no_memory) it says that and gives 1. */
 int record_malformed(const struct record *record, const char *why);
 
+/* Says that a record's run is not the one that it stands in, with its place; gives 2. */
+int record_outside(const struct record *record, const char *run);
+
 /* Writes `end`, flushes, checks that everything arrived. */
 int stream_finish(struct stream *stream) __attribute__((warn_unused_result));
 void stream_close(struct stream *stream);

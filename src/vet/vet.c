@@ -7,7 +7,7 @@
 #include <string.h>
 
 #include "base/message.h"
-#include "base/options.h"
+#include "base/stage.h"
 #include "base/status.h"
 #include "stream/records.h"
 #include "stream/stream.h"
@@ -47,12 +47,6 @@ static struct vet_run *current(struct vet *v, const char *run)
     struct vet_run *last = v->open >= 0 ? &v->runs.items[v->open] : NULL;
 
     return last && !strcmp(last->name, run) ? last : NULL;
-}
-
-static int foreign(const struct record *record, const char *run)
-{
-    message("record outside its run: '%s' (run '%s')", record->kind, run);
-    return STATUS_USAGE;
 }
 
 static int add_run(struct vet *v, const struct record *record)
@@ -106,7 +100,7 @@ static int add_turns(struct vet *v, const struct record *record)
         b->t[b->count++] = r.t_s;
     }
     turns_release(&r);
-    return run ? STATUS_DONE : foreign(record, r.run);
+    return run ? STATUS_DONE : record_outside(record, r.run);
 }
 
 static int add_curve(struct vet *v, const struct record *record)
@@ -118,7 +112,7 @@ static int add_curve(struct vet *v, const struct record *record)
         return record_malformed(record, why);
     if (!current(v, r.run)) {
         curve_release(&r);
-        return foreign(record, r.run);
+        return record_outside(record, r.run);
     }
     curve_release(&v->curves[r.sensor]);
     v->curves[r.sensor] = r;
@@ -135,7 +129,7 @@ static int add_channel(struct vet *v, const struct record *record)
         return record_malformed(record, why);
     run = current(v, r.run);
     if (!run)
-        return foreign(record, r.run);
+        return record_outside(record, r.run);
     if (r.sensor >= 0)
         run->channels[r.sensor] =
             (struct vet_channel){true, r.min, r.max, r.resolution, r.railed, r.samples, r.same_as};
@@ -152,7 +146,7 @@ static int add_tacho(struct vet *v, const struct record *record)
         return record_malformed(record, why);
     run = current(v, r.run);
     if (!run)
-        return foreign(record, r.run);
+        return record_outside(record, r.run);
     run->has_tacho = true;
     run->reference = r.reference;
     run->pulses = r.pulses;
@@ -185,7 +179,7 @@ static int add_spectrum(struct vet *v, const struct record *record)
         to->neighbour_order = o.neighbour_order;
     }
     spectrum_release(&r);
-    return run ? STATUS_DONE : foreign(record, r.run);
+    return run ? STATUS_DONE : record_outside(record, r.run);
 }
 
 static void take_steady(struct vet_reading *to, const struct steady *steady)
@@ -221,7 +215,7 @@ static int add_reading(struct vet *v, const struct record *record)
     if (reading_parse(&r, &v->stream.job, record->json, &why))
         return record_malformed(record, why);
     if (!current(v, r.run))
-        return foreign(record, r.run);
+        return record_outside(record, r.run);
     at = facts_at_condition(&v->runs, v->open, r.condition, v->stream.job.sensor_count);
     if (at < 0)
         return message_no_memory();
@@ -550,20 +544,6 @@ int stage_vet(int argc, char **argv)
         "for every check and its ruling on every reading. Exit code 4: a refusal leaves too "
         "little\n"
         "to answer the job. The limits of the checks stand in the sheet's section [limits].\n"};
-    struct option_list files = {0};
-    int status;
 
-    message_stage("vet");
-    switch (options_parse(&usage, argc, argv, &files)) {
-    case OPTIONS_STOP:
-        status = STATUS_DONE;
-        break;
-    case OPTIONS_GO:
-        status = loop(&files);
-        break;
-    default:
-        status = STATUS_USAGE;
-    }
-    option_list_release(&files);
-    return status;
+    return stage_run(&usage, argc, argv, loop);
 }
