@@ -99,8 +99,9 @@ static bool permissible(const struct job *job, size_t planes, double *out, char 
     if (job->aim.tolerance == TOLERANCE_API_4WN)
         snprintf(basis, 120, "API 4W/N; check the current edition");
     else if (planes == 2)
-        snprintf(basis, 120, "ISO 21940-11 G%g, %s; limits of the shares from memory: check it",
-                 job->grade, distances ? "shared by the lever rule" : "equal halves");
+        snprintf(basis, 120, "ISO 21940-11 G%g, %s", job->grade,
+                 distances ? "shared by distances; limits of a share from memory, check the edition"
+                           : "in equal halves, for want of distances in [rotor]");
     else
         snprintf(basis, 120, "ISO 21940-11 G%g%s", job->grade, planes > 2 ? ", equal shares" : "");
     return true;
