@@ -13,6 +13,8 @@
 
 #define HEAD_BYTES 65536u /* the preamble and some hundred rows */
 #define LINE_MOST 65536u  /* a longer last line is no row of measurements */
+#define LANES_LEAST                                                                                \
+    (256 * 1024) /* bytes of text from which on a second thread is worth its start */
 
 static int read_fault(const struct csv_file *file, struct fault *fault)
 {
@@ -129,7 +131,7 @@ static int examine(struct csv_file *file, const struct csv_wish *wish, const str
 int csv_file_open(struct csv_file *file, const char *path, const struct csv_wish *wish,
                   const struct digest *digest, struct fault *fault)
 {
-    *file = (struct csv_file){.path = path, .fd = -1, .rate_hz = NAN};
+    *file = (struct csv_file){.path = path, .fd = -1, .size = digest->mark.size, .rate_hz = NAN};
     char *head = malloc(HEAD_BYTES);
     file->chunk = malloc(LINE_MOST > CSV_ROWS_FEED_MOST ? LINE_MOST : CSV_ROWS_FEED_MOST);
     if (!head || !file->chunk) {
@@ -147,22 +149,75 @@ int csv_file_open(struct csv_file *file, const char *path, const struct csv_wish
 
 int csv_file_start(struct csv_file *file, const size_t *columns, size_t count, struct fault *fault)
 {
-    if (lseek(file->fd, (off_t)file->layout.data_offset, SEEK_SET) < 0)
-        return read_fault(file, fault);
-    return csv_rows_init(&file->rows, &file->layout, columns, count,
-                         file->layout.has_time ? &file->even : NULL, file->path, fault);
+    file->offset = file->fetched = (long long)file->layout.data_offset;
+    file->ready = &file->rows;
+    if (csv_rows_init(&file->rows, &file->layout, columns, count,
+                      file->layout.has_time ? &file->even : NULL, file->path,
+                      fault) == STATUS_DONE &&
+        file->size - file->offset >= LANES_LEAST)
+        file->lanes = csv_lanes_new(&file->layout, columns, count); /* without: slower, not wrong */
+    return fault->status;
 }
+
+/* ---- the next rows, by the lanes ---- */
+
+/* False where a time is not as it should be; then nothing has changed. */
+static bool judge_times(struct csv_file *file, const struct csv_rows *rows)
+{
+    struct even even = file->even;
+    for (size_t i = 0; i < rows->count && rows->times; i++)
+        if (even_next(&even, rows->times[i] * rows->time_si, rows->grains[i]) != EVEN_DONE)
+            return false;
+    file->even = even;
+    return true;
+}
+
+/* Until the parts are full or the text ends; what goes wrong is met again by who reads in one go.
+ */
+static void feed_lanes(struct csv_file *file)
+{
+    size_t room;
+    char *text;
+    while ((text = csv_lanes_room(file->lanes, &room))) {
+        const ssize_t got = read_at(file->fd, text, room, file->fetched);
+        if (got <= 0)
+            break;
+        file->fetched += got;
+        if (!csv_lanes_fill(file->lanes, (size_t)got))
+            break;
+    }
+}
+
+/* False: from file->offset on the text must be read in one go. */
+static bool advance_lanes(struct csv_file *file)
+{
+    struct csv_lanes_part part;
+    if (file->ready != &file->rows)
+        csv_lanes_drop(file->lanes);
+    file->ready = &file->rows;
+    feed_lanes(file);
+    if (!csv_lanes_next(file->lanes, &part) || !part.clean || !judge_times(file, part.rows))
+        return false;
+    csv_rows_skip(&file->rows, part.lines);
+    file->offset += (long long)part.length;
+    file->ready = part.rows;
+    return true;
+}
+
+/* ---- the next rows, in one go ---- */
 
 /* Parses the next bytes. */
 static int advance(struct csv_file *file, struct fault *fault)
 {
-    ssize_t got;
-    do
-        got = read(file->fd, file->chunk, CSV_ROWS_FEED_MOST);
-    while (got < 0 && errno == EINTR);
+    file->taken = 0;
+    if (file->lanes && advance_lanes(file))
+        return STATUS_DONE;
+    csv_lanes_free(file->lanes);
+    file->lanes = NULL;
+    const ssize_t got = read_at(file->fd, file->chunk, CSV_ROWS_FEED_MOST, file->offset);
     if (got < 0)
         return read_fault(file, fault);
-    file->taken = 0;
+    file->offset += got;
     if (got > 0)
         return csv_rows_feed(&file->rows, file->chunk, (size_t)got);
     file->ended = true;
@@ -173,12 +228,12 @@ int csv_file_read(struct csv_file *file, size_t frames, const double **rows, siz
                   struct fault *fault)
 {
     *got = 0;
-    while (file->taken == file->rows.count && !file->ended)
+    while (file->taken == file->ready->count && !file->ended)
         if (advance(file, fault) != STATUS_DONE)
             return fault->status;
-    const size_t ready = file->rows.count - file->taken;
+    const size_t ready = file->ready->count - file->taken;
     *got = ready < frames ? ready : frames;
-    *rows = file->rows.values + file->taken * file->rows.slots;
+    *rows = file->ready->values + file->taken * file->ready->slots;
     file->taken += *got;
     file->done += (long long)*got;
     if (file->done > file->frames || (*got == 0 && file->done < file->frames))
@@ -191,6 +246,8 @@ int csv_file_read(struct csv_file *file, size_t frames, const double **rows, siz
 
 void csv_file_close(struct csv_file *file)
 {
+    csv_lanes_free(file->lanes);
+    file->lanes = NULL;
     csv_rows_release(&file->rows);
     csv_layout_release(&file->layout);
     free(file->chunk);

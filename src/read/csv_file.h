@@ -4,6 +4,7 @@
 
 #include <stddef.h>
 
+#include "read/csv_lanes.h"
 #include "read/csv_layout.h"
 #include "read/csv_rows.h"
 #include "read/digest.h"
@@ -12,16 +13,21 @@
 struct csv_file {
     const char *path; /* borrowed, for messages */
     int fd;           /* private */
+    long long size;   /* private: bytes of the file */
     struct csv_layout layout;
-    struct csv_rows rows; /* private */
-    struct even even;     /* private */
-    char *chunk;          /* private */
-    size_t taken;         /* private: rows handed out of those that are ready */
-    bool ended;           /* private */
-    double uncertainty;   /* of that rate, relative: how coarsely the times are printed */
-    double rate_hz;       /* from the time column; NaN: there is none */
-    long long frames;     /* rows of data */
-    long long done;       /* rows handed out so far */
+    struct csv_rows rows;         /* private: reads in one go what the lanes do not */
+    struct csv_lanes *lanes;      /* private; NULL: none, or no more */
+    const struct csv_rows *ready; /* private: the rows that are handed out */
+    struct even even;             /* private */
+    char *chunk;                  /* private */
+    long long offset;             /* private: of the text that comes behind the ready rows */
+    long long fetched;            /* private: of the text that the lanes do not have yet */
+    size_t taken;                 /* private: rows handed out of those that are ready */
+    bool ended;                   /* private */
+    double uncertainty;           /* of that rate, relative: how coarsely the times are printed */
+    double rate_hz;               /* from the time column; NaN: there is none */
+    long long frames;             /* rows of data */
+    long long done;               /* rows handed out so far */
 };
 
 /* Opens the text and finds its layout. `path` and `digest` (of the whole file) are borrowed. */

@@ -102,7 +102,8 @@ static const double powers[POWER_MOST + 1] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,
                                               1e8,  1e9,  1e10, 1e11, 1e12, 1e13, 1e14, 1e15,
                                               1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
 
-/* Digits from p on, appended to *digits; two at a time, which halves the chain of multiplications. */
+/* Digits from p on, appended to *digits; two at a time, which halves the chain of multiplications.
+ */
 static inline const char *take_digits(const char *p, const char *end, uint64_t *digits)
 {
     unsigned first, second;
@@ -118,8 +119,14 @@ static inline const char *take_digits(const char *p, const char *end, uint64_t *
     return p;
 }
 
-/* What nearly every cell is: at most 19 characters, a sign, digits and a point. False: not that. */
-static inline bool is_plain(const char *text, size_t length, char point, double *value)
+struct plain { /* what nearly every cell is: at most 19 characters, a sign, digits and a point */
+    uint64_t digits;
+    ptrdiff_t behind; /* digits behind the point */
+    double value;
+};
+
+/* False: not that. */
+static inline bool is_plain(const char *text, size_t length, char point, struct plain *plain)
 {
     const char *p = text, *end = text + length;
     if (length > DIGITS_MOST || length == 0)
@@ -139,14 +146,13 @@ static inline bool is_plain(const char *text, size_t length, char point, double 
     if (p < end || count == 0 || digits > EXACT_MOST)
         return false;
     const double x = (double)(int64_t)digits / powers[behind];
-    *value = negative ? -x : x;
+    *plain = (struct plain){digits, behind, negative ? -x : x};
     return true;
 }
 
-int decimal_parse(const char *text, size_t length, char point, double *value)
+/* What is_plain does not take. */
+static int parse_any(const char *text, size_t length, char point, double *value)
 {
-    if (is_plain(text, length, point, value))
-        return DECIMAL_DONE;
     struct parts parts;
     if (!take_apart(text, text + length, point, &parts))
         return DECIMAL_NOT_A_NUMBER;
@@ -156,6 +162,32 @@ int decimal_parse(const char *text, size_t length, char point, double *value)
     double x = (double)parts.digits;
     x = parts.exponent < 0 ? x / powers[-parts.exponent] : x * powers[parts.exponent];
     *value = parts.negative ? -x : x;
+    return DECIMAL_DONE;
+}
+
+int decimal_parse(const char *text, size_t length, char point, double *value)
+{
+    struct plain plain;
+    if (!is_plain(text, length, point, &plain))
+        return parse_any(text, length, point, value);
+    *value = plain.value;
+    return DECIMAL_DONE;
+}
+
+int decimal_parse_grain(const char *text, size_t length, char point, double *value,
+                        struct decimal_grain *grain)
+{
+    struct plain plain;
+    if (!is_plain(text, length, point, &plain)) {
+        const int result = parse_any(text, length, point, value);
+        if (result == DECIMAL_DONE)
+            *grain = decimal_grain(text, length, point);
+        return result;
+    }
+    *value = plain.value;
+    *grain = (struct decimal_grain){(int)plain.behind, 0};
+    while ((double)(int64_t)plain.digits >= powers[grain->significant]) /* 2^53 has 16 digits */
+        grain->significant++;
     return DECIMAL_DONE;
 }
 

@@ -29,4 +29,8 @@ struct decimal_grain {
 /* For text that decimal_parse takes. */
 struct decimal_grain decimal_grain(const char *text, size_t length, char point);
 
+/* Both at once; *grain, too, is set only for DECIMAL_DONE. */
+int decimal_parse_grain(const char *text, size_t length, char point, double *value,
+                        struct decimal_grain *grain) __attribute__((warn_unused_result));
+
 #endif

@@ -2,6 +2,7 @@
 
 #include <errno.h>
 #include <fcntl.h>
+#include <openssl/crypto.h>
 #include <openssl/evp.h>
 #include <pthread.h>
 #include <stdatomic.h>
@@ -25,14 +26,37 @@ static void to_hex(const unsigned char *bytes, size_t length, char *hex)
     hex[2 * length] = '\0';
 }
 
+/* The library's SHA-256 in a context of its own: one that could not be made is NULL here, whereas the
+ * library's default one is then used all the same, and reads through a null pointer (OpenSSL 3.0). */
+struct method {
+    OSSL_LIB_CTX *library;
+    EVP_MD *sha256;
+};
+
+static bool method_open(struct method *method)
+{
+    method->library = OSSL_LIB_CTX_new();
+    method->sha256 = method->library ? EVP_MD_fetch(method->library, "SHA256", NULL) : NULL;
+    return method->sha256 != NULL;
+}
+
+static void method_close(struct method *method)
+{
+    EVP_MD_free(method->sha256);
+    OSSL_LIB_CTX_free(method->library);
+}
+
 int digest_bytes(const void *bytes, size_t length, char sha256[65])
 {
     unsigned char sum[EVP_MAX_MD_SIZE];
     unsigned int size = 0;
-    if (!EVP_Digest(bytes, length, sum, &size, EVP_sha256(), NULL) || size != 32)
-        return -1;
-    to_hex(sum, 32, sha256);
-    return 0;
+    struct method method;
+    const bool done = method_open(&method) &&
+                      EVP_Digest(bytes, length, sum, &size, method.sha256, NULL) && size == 32;
+    if (done)
+        to_hex(sum, 32, sha256);
+    method_close(&method);
+    return done ? 0 : -1;
 }
 
 static struct digest_mark mark_of(const struct stat *s)
@@ -154,12 +178,13 @@ static int scan(const char *path, struct digest *digest, const atomic_bool *stop
 }
 
 /* The hash of the open file; what goes wrong is in `fault`, which becomes the digest's with it. */
-static void hash(int fd, const char *path, struct digest *digest, const atomic_bool *stop)
+static void hash(int fd, const char *path, const struct method *method, struct digest *digest,
+                 const atomic_bool *stop)
 {
     unsigned char sum[EVP_MAX_MD_SIZE];
     unsigned int size = 0;
-    EVP_MD_CTX *context = EVP_MD_CTX_new();
-    if (!context || !EVP_DigestInit_ex(context, EVP_sha256(), NULL))
+    EVP_MD_CTX *context = method->sha256 ? EVP_MD_CTX_new() : NULL;
+    if (!context || !EVP_DigestInit_ex(context, method->sha256, NULL))
         fault_no_memory(&digest->fault);
     else if (pour(fd, path, digest, true, feed_hash, context, stop) == STATUS_DONE) {
         if (EVP_DigestFinal_ex(context, sum, &size) && size == 32)
@@ -192,17 +217,21 @@ static void advance(struct digest_queue *queue, size_t *counter, size_t value)
 static void *work(void *argument)
 {
     struct digest_queue *queue = argument;
+    struct method method = {0};
     for (size_t i = 0; i < queue->count && !atomic_load(&queue->stop); i++) {
         struct digest *digest = &queue->digests[i];
         const int fd = scan(queue->paths[i], digest, &queue->stop);
         queue->scanned[i] = *digest;
         advance(queue, &queue->looked_over, i + 1);
         if (fd >= 0) {
-            hash(fd, queue->paths[i], digest, &queue->stop);
+            if (!method.library)
+                (void)method_open(&method); /* hash() says that there is none */
+            hash(fd, queue->paths[i], &method, digest, &queue->stop);
             close(fd);
         }
         advance(queue, &queue->done, i + 1);
     }
+    method_close(&method);
     return NULL;
 }
 

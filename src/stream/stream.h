@@ -103,7 +103,7 @@ const char *stream_job_line(const struct stream *stream, size_t *length);
 
 struct sink; /* buffered standard output that counts records */
 
-struct sink *sink_new(int fd);                  /* NULL: no memory. A pipe is made 256 KiB wide */
+struct sink *sink_new(int fd);                  /* NULL: no memory. A pipe is made 512 KiB wide */
 int sink_line(struct sink *sink, struct line *line) __attribute__((warn_unused_result));
 /* A record's original bytes, counted. */
 int sink_record(struct sink *sink, const char *bytes, size_t length)

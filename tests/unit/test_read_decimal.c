@@ -28,6 +28,14 @@ static void check_like_strtod(const char *text)
     const double expected = strtod(text, NULL);
     if (memcmp(&value, &expected, sizeof value) != 0)
         fail_msg("%s: %a instead of %a", text, value, expected);
+    double again = -1;
+    struct decimal_grain both = {-1, -1};
+    assert_int_equal(decimal_parse_grain(text, strlen(text), '.', &again, &both), DECIMAL_DONE);
+    const struct decimal_grain alone = decimal_grain(text, strlen(text), '.');
+    assert_memory_equal(&again, &value, sizeof value);
+    if (both.fraction != alone.fraction || both.significant != alone.significant)
+        fail_msg("%s: grain %d, %d instead of %d, %d", text, both.fraction, both.significant,
+                 alone.fraction, alone.significant);
 }
 
 static void random_digits(char *text, size_t room)
@@ -113,7 +121,10 @@ static void test_no_numbers(void **unused)
         double value = 7;
         if (decimal_parse(texts[i], strlen(texts[i]), '.', &value) != DECIMAL_NOT_A_NUMBER)
             fail_msg("'%s' was taken for a number", texts[i]);
-        assert_true(value == 7);
+        struct decimal_grain grain = {7, 7};
+        assert_int_equal(decimal_parse_grain(texts[i], strlen(texts[i]), '.', &value, &grain),
+                         DECIMAL_NOT_A_NUMBER);
+        assert_true(value == 7 && grain.fraction == 7 && grain.significant == 7);
     }
     double value = 7;
     assert_int_equal(decimal_parse("1e400", 5, '.', &value), DECIMAL_OUT_OF_RANGE);
@@ -126,6 +137,12 @@ static void test_grain(void **unused)
     const struct decimal_grain a = decimal_grain("0.00125", 7, '.');
     assert_int_equal(a.fraction, 5);
     assert_int_equal(a.significant, 3);
+    double value = 0;
+    struct decimal_grain c = {-1, -1}; /* short texts take another way to the same */
+    assert_int_equal(decimal_parse_grain("-0,00125", 8, ',', &value, &c), DECIMAL_DONE);
+    assert_true(value == -0.00125 && c.fraction == 5 && c.significant == 3);
+    assert_int_equal(decimal_parse_grain("0,00", 4, ',', &value, &c), DECIMAL_DONE);
+    assert_true(value == 0 && c.fraction == 2 && c.significant == 0);
     const struct decimal_grain b = decimal_grain("1,25e-3", 7, ',');
     assert_int_equal(b.fraction, 5);
     assert_int_equal(b.significant, 3);
