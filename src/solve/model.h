@@ -22,6 +22,7 @@ struct model_reading { /* what the stage hands over; any order */
     double complex vector; /* SI peak, argument is lag */
     double amplitude;      /* SI peak, where there is no phase */
     double cov[3];         /* of the mean, widened */
+    double by_speed;       /* of it, both components: for a speed that is not the others' */
     double overall;        /* rms, SI, of everything in a band; NaN or 0: not known */
     enum quantity overall_quantity;
 };

@@ -77,8 +77,9 @@ bool slope_bring(const struct job *job, struct model_reading *readings, size_t c
             continue;
         r->vector += shift;
         r->speed_rpm = match->rpm;
-        r->cov[0] += variance / 2;
-        r->cov[2] += variance / 2;
+        r->cov[0] += variance / 2 - r->by_speed; /* what was allowed for is now taken off */
+        r->cov[2] += variance / 2 - r->by_speed;
+        r->by_speed = 0;
         match->largest = fmax(match->largest, cabs(shift));
     }
     return true;

@@ -39,8 +39,9 @@ struct slope_match { /* what was done to a sensor in a condition */
 };
 
 /* Brings the usable readings of `sensor` in `condition` to their mean speed, cov widened by what
- * that costs, where the shifts together are more than 3 standard errors and 1 % of the readings;
- * slopes is runs x sensors. False: nothing was changed. Runs with a role are left alone. */
+ * that costs instead of by_speed, where the shifts together are more than 3 standard errors and 1 %
+ * of the readings; slopes is runs x sensors. False: nothing was changed. Runs with a role are left
+ * alone. */
 bool slope_bring(const struct job *job, struct model_reading *readings, size_t count,
                  const struct slope *slopes, size_t sensor, const char *condition,
                  struct slope_match *match);

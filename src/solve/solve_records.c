@@ -197,6 +197,7 @@ static int join(struct solve_records *s)
             return STATUS_USAGE;
         }
         r->use = ruled->use;
+        r->by_speed = ruled->by_speed;
         for (int k = 0; k < 3; k++)
             r->cov[k] += ruled->widen[k];
     }

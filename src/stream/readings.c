@@ -154,6 +154,8 @@ void vetted_print(const struct vetted_record *r, const struct job *job, struct l
         line_text(line, "condition", r->condition);
     line_boolean(line, "use", r->use);
     line_covariance(line, "widen", r->widen);
+    if (r->by_speed > 0)
+        line_real(line, "by_speed", r->by_speed);
     line_end(line);
 }
 
@@ -169,6 +171,8 @@ int vetted_parse(struct vetted_record *r, const struct job *job, const json_t *j
         fields_fail(&f, "the ruling is missing");
     r->use = fields_boolean(&f, "use", false);
     fields_covariance(&f, "widen", r->widen);
+    if (fields_has(&f, "by_speed"))
+        r->by_speed = fields_real(&f, "by_speed");
     return fields_done(&f, why);
 }
 

@@ -190,6 +190,7 @@ struct vetted_record {
     int sensor;
     bool use;
     double widen[3];            /* like cov; added to it by solve */
+    double by_speed;            /* of widen, both components: for speeds that differ between runs; 0, and not printed: none */
 };
 void vetted_print(const struct vetted_record *r, const struct job *job, struct line *line);
 int vetted_parse(struct vetted_record *r, const struct job *job, const json_t *json,

@@ -9,6 +9,7 @@
 #include "sheet/units.h"
 #include "vet/moved.h"
 #include "vet/repeats.h"
+#include "vet/speeds.h"
 #include "vet/trials.h"
 #include "vet/when.h"
 #include "vet/within.h"
@@ -271,8 +272,9 @@ static bool match_once(struct vet_runs *runs, const size_t *order, const struct 
     ruling = limits_judge(findings->limits, CHECK_SPEED_MATCH, spread, &limit);
     ruling =
         findings_add(findings, CHECK_SPEED_MATCH, ruling == RULING_REFUSE ? (int)worst : -1, -1,
-                     spread, "runs of condition '%s' turned at %.0f to %.0f rpm, %g %% apart",
-                     condition, least, most, findings_figure(spread));
+                     spread, "runs of condition '%s' turned at %.0f to %.0f rpm, %g %% apart%s",
+                     condition, least, most, findings_figure(spread),
+                     ruling == RULING_CAUTION ? ", which makes their readings less sure" : "");
     if (ruling == RULING_REFUSE)
         within_refuse(&runs->items[worst], job);
     return ruling == RULING_REFUSE;
@@ -495,5 +497,7 @@ int across_runs(struct vet_runs *runs, const size_t *order, const struct job *jo
     across_repeat(runs, order, job, findings);
     trials_effect(runs, order, job, findings);
     across_low_level(runs, order, job, findings);
+    speeds_widen(runs, order, job,
+                 findings); /* last: what is assumed widens, and refuses no trial */
     return findings->failed ? -1 : 0;
 }

@@ -31,6 +31,7 @@ struct vet_reading { /* percentages of the reading's own amplitude; NaN: not kno
     bool use;   /* the ruling */
     int reason; /* the first check that refused it; -1: none */
     double widen[3];
+    double by_speed; /* of widen, both components: for speeds that differ between runs */
 };
 
 struct vet_channel {
@@ -76,8 +77,9 @@ int facts_at_condition(struct vet_runs *runs, int parent, const char *condition,
 /* Takes readings of the conditions of the run at `parent` out of use where its own are. */
 void facts_hand_down(struct vet_runs *runs, int parent, size_t sensor_count);
 
-/* How many marks a turn the sheet should give its tacho for the run's speed to be the service speed:
- * where one is a whole multiple of the other (2 to 8, within 5 %); 0: nothing of the kind. */
+/* How many marks a turn the sheet should give its tacho for the run's speed to be the service
+ * speed: where one is a whole multiple of the other (2 to 8, within 5 %); 0: nothing of the kind.
+ */
 int facts_marks(const struct vet_run *run, const struct job *job);
 
 void facts_release(struct vet_runs *runs); /* frees what it owns */

@@ -397,6 +397,7 @@ static int write_vetted(struct vet *v, const size_t *order)
             if (run->parent >= 0)
                 memcpy(r.condition, run->condition, sizeof r.condition);
             memcpy(r.widen, from->widen, sizeof r.widen);
+            r.by_speed = from->by_speed;
             vetted_print(&r, &v->stream.job, &v->line);
             status = stream_write(&v->stream, &v->line);
         }

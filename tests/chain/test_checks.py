@@ -114,6 +114,21 @@ class Across(unittest.TestCase):
             got = self.worst("speed-match", trial={"rpm": recordings.RPM * (1 + percent / 100)})
             self.assertEqual(got, verdict, percent)
 
+    def test_speed_match_widens(self):
+        """Readings 2 % off in speed are less sure, what they forecast too; those at the speed of as found are not."""
+        with chain.folder() as where:
+            self.job(where, LAST, trial={"rpm": recordings.RPM * 1.02})
+            stream = chain.records(chain.lopside("vet", stdin=chain.through(
+                ["read", "track", "average"], b"", read=[where / "job.ini"])).stdout)
+            for v in chain.kind(stream, "vetted"):
+                if v["run"] == "trial":  # of 6 mm/s at 2 %: at least 4 % a %, hence 0.24 mm/s a component
+                    self.assertGreater(v["by_speed"], 0.24e-3 ** 2)
+                    self.assertGreaterEqual(v["widen"][0], v["by_speed"])
+                else:  # the speeds agree to what the tacho tells
+                    self.assertLess(v.get("by_speed", 0), 1e-12)
+            (f,) = [f for f in chain.kind(stream, "finding") if f["check"] == "speed-match"]
+            self.assertIn("less sure", f["text"])
+
     def test_repeat(self):
         for percent, verdict in ((8, "ok"), (12, "caution"), (27, "caution"), (33, "refuse")):
             size = [max(abs(z), abs(f)) for z, f in zip(self.true(TRIAL), AS_FOUND)]

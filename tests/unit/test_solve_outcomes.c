@@ -362,6 +362,8 @@ static void test_slope_bring(void **state)
         desk_run(&d, "", 0, 0, 0);
         d.readings[r].speed_rpm = 1000 + r;
         d.readings[r].vector = CMPLX(1, 0.1 * r);
+        d.readings[r].by_speed = 0.25; /* of a covariance that is 1 then */
+        d.readings[r].cov[0] = d.readings[r].cov[2] = 1;
         for (int i = 0; i < 40; i++)
             slope_add(&slopes[r], 998 + r + i % 5, CMPLX(1, 0.1 * (r + i % 5 - 2)));
     }
@@ -371,6 +373,8 @@ static void test_slope_bring(void **state)
     for (int r = 0; r < 3; r++) {
         near(cabs(d.readings[r].vector - CMPLX(1, 0.1)), 0, 1e-9);
         near(d.readings[r].speed_rpm, 1001, 1e-9);
+        near(d.readings[r].cov[0], 0.75, 1e-9); /* the slope is exact: nothing comes instead */
+        near(d.readings[r].cov[2], 0.75, 1e-9);
     }
     assert_false(
         slope_bring(&d.job, d.readings, 3, slopes, 0, "service", &match)); /* nothing is left */

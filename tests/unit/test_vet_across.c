@@ -47,6 +47,44 @@ static void speeds_apart(void **state)
     assert_int_equal(vet_desk_ruled(CHECK_SPEED_MATCH, -2, -1), RULING_OK);
 }
 
+/* A caution for the speeds widens what stands off the as-found run's, and refuses no trial. 2 %
+ * off, nothing told: a disc of radius 2 * 5 deg * |z|, r^2/4 a component; a turn of 8 +- 1 deg that
+ * is told: its square and error's, halved. */
+static void speeds_apart_widen(void **state)
+{
+    double one = 3.14159265358979 / 180;
+
+    (void)state;
+    for (int told = 0; told < 2; told++) {
+        vet_desk_set();
+        for (int s = 0; s < SENSORS; s++)
+            desk.readings[2][s].speed_rpm = 1480 * 1.02;
+        if (told)
+            desk.readings[2][0].resonance = (struct resonance){8, 1};
+        trials_effect(&desk.runs, desk.order, &desk.job, &desk.findings);
+        int before = vet_desk_ruled(CHECK_TRIAL_EFFECT, 2, -1);
+        findings_clear(&desk.findings);
+        assert_int_equal(across_runs(&desk.runs, desk.order, &desk.job, &desk.findings), 0);
+        assert_int_equal(vet_desk_ruled(CHECK_SPEED_MATCH, -1, -1), RULING_CAUTION);
+        assert_int_equal(vet_desk_ruled(CHECK_TRIAL_EFFECT, 2, -1), before);
+        double z = desk.readings[2][0].amplitude;
+        double expected = told ? (64 + 1) * one * one / 2 * 4 * z * z : pow(2 * 5 * one * z, 2) / 4;
+        assert_true(fabs(desk.readings[2][0].widen[0] / expected - 1) < 1e-9);
+        assert_true(fabs(desk.readings[2][0].widen[2] / expected - 1) < 1e-9);
+        assert_true(fabs(desk.readings[2][0].by_speed / expected - 1) < 1e-9);
+        assert_true(desk.readings[2][0].widen[1] == 0);
+        for (int r = 0; r < 4; r++)
+            assert_true(r == 2 || desk.readings[r][0].widen[0] == 0);
+    }
+    for (int off = 0; off < 2; off++) { /* in order, or not looked at */
+        vet_desk_set();
+        desk.readings[2][0].speed_rpm = desk.readings[2][1].speed_rpm = 1480 * (off ? 1.02 : 1.009);
+        desk.limits.rows[CHECK_SPEED_MATCH].off = off;
+        assert_int_equal(across_runs(&desk.runs, desk.order, &desk.job, &desk.findings), 0);
+        assert_true(desk.readings[2][0].widen[0] == 0);
+    }
+}
+
 /* Two recordings of an audit with one content: told, not refused. */
 static void copies_in_an_audit(void **state)
 {
@@ -162,7 +200,7 @@ static void as_found(void **state)
     assert_close(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0), 7e-3, 0);
     desk.readings[0][0].use = false;
     assert_close(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0),
-         cabs(4.05 + 4 * I) * 1e-3, 1e-12);
+                 cabs(4.05 + 4 * I) * 1e-3, 1e-12);
     assert_close(across_as_found(&desk.runs, desk.order, &desk.job, "service", 1), 7e-3, 0);
     desk.readings[3][0].use = false;
     assert_close(across_as_found(&desk.runs, desk.order, &desk.job, "service", 0), 7e-3, 0);
@@ -221,6 +259,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(one_recording_twice),
         cmocka_unit_test(speeds_apart),
+        cmocka_unit_test(speeds_apart_widen),
         cmocka_unit_test(copies_in_an_audit),
         cmocka_unit_test(lost_phase),
         cmocka_unit_test(repeats),

@@ -16,6 +16,7 @@
 #include "vet/effect.h"
 #include "vet/orders.h"
 #include "vet/ruling.h"
+#include "vet/speeds.h"
 
 /* The standard error of a change: cov 2 and 2 in all, repeatability 1 per component of both
  * readings, hence sqrt(2 + 2 + 4) by the law of propagation of variances. */
@@ -30,6 +31,24 @@ static void effects(void **state)
     assert_close(e.lag_deg, atan2(8, 10) * 180 / 3.14159265358979, 1e-9);
     assert_close(effect_of(10, cov, 10, cov, 0).errors, 0, 0);
     assert_close(effect_of(cexp(I * 3.1), cov, cexp(-I * 3.1), cov, 0).lag_deg, 4.7662, 1e-4);
+}
+
+/* 3 % off at an amplitude of 2: no turn told, r = 3 * 2 * 5 deg in radians over a disc, r^2/4; a
+ * turn of 4 +- 3 deg is not told well enough for a limit of 5; 4 +- 2 is, (16 + 4) deg^2/2; none at
+ * all leaves 4 % a %, as a disc. */
+static void speeds_that_differ(void **state)
+{
+    struct resonance unknown = {NAN, NAN}, vague = {4, 3}, told = {4, 2}, none = {0, 0.1};
+    double radians = 3.14159265358979 / 180;
+
+    (void)state;
+    assert_close(speeds_variance(3, 2, &unknown, 5), pow(6 * 5 * radians, 2) / 4, 1e-12);
+    assert_close(speeds_variance(-3, 2, &vague, 5), pow(6 * 5 * radians, 2) / 4, 1e-12);
+    assert_close(speeds_variance(3, 2, &told, 5), 36 * 20 * radians * radians / 2, 1e-12);
+    assert_close(speeds_variance(3, 2, &none, 5), pow(6 * 0.04, 2) / 4, 1e-12);
+    assert_close(speeds_variance(0, 2, &unknown, 5), 0, 0);
+    assert_true(isnan(speeds_variance(NAN, 2, &unknown, 5)) &&
+                isnan(speeds_variance(1, NAN, &none, 5)));
 }
 
 /* Acceleration shown as velocity: a line at order n counts 1/n of its size against 1x. */
@@ -184,6 +203,7 @@ int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(effects),
+        cmocka_unit_test(speeds_that_differ),
         cmocka_unit_test(lines_of_a_spectrum),
         cmocka_unit_test(beats),
         cmocka_unit_test(what_a_beat_leaves),
