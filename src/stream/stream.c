@@ -183,6 +183,9 @@ static int parse_line(struct stream_state *s, const char *line, size_t length, c
     json_error_t error;
     json_decref(s->json);
     s->json = json_loadb(line, length, JSON_REJECT_DUPLICATES, &error);
+    /* somebody's own record may count beyond 64 bits; where we need a whole number, a real is malformed */
+    if (!s->json && json_error_code(&error) == json_error_numeric_overflow)
+        s->json = json_loadb(line, length, JSON_REJECT_DUPLICATES | JSON_DECODE_INT_AS_REAL, &error);
     /* jansson does not always say that memory is out; it says nothing then */
     if (!s->json && (json_error_code(&error) == json_error_out_of_memory || !error.text[0]))
         return message_no_memory();

@@ -25,7 +25,8 @@
  *     stream_close(&stream);
  *
  * Memory: one input buffer of 512 KiB, or twice the longest line. A record of more than 256 KiB is refused
- * (parsed, a number takes up to twenty times its text), a job record of more than 16 MiB.
+ * (parsed, a number takes up to twenty times its text), a job record of more than 16 MiB. Also refused, in
+ * any record, as RFC 8259 lets a reader: a number beyond a double's range, and the character U+0000.
  */
 #ifndef LOPSIDE_STREAM_STREAM_H
 #define LOPSIDE_STREAM_STREAM_H

@@ -83,6 +83,17 @@ static void test_whole_streams(void **state)
                                 &n),
                      STATUS_DONE);
     assert_int_equal(n, 3);
+    /* somebody's own record may hold whole numbers beyond 64 bits; what we count with may not */
+    assert_int_equal(count_text(JOB "{\"kind\":\"strange\",\"n\":123456789012345678901234567890}\n"
+                                    "{\"kind\":\"end\",\"records\":2}\n",
+                                &n),
+                     STATUS_DONE);
+    assert_int_equal(n, 1);
+    assert_int_equal(count_text(JOB "{\"kind\":\"end\",\"records\":123456789012345678901234567890}\n", &n),
+                     STATUS_USAGE);
+    assert_int_equal(count_text(JOB "{\"kind\":\"strange\",\"x\":1e999}\n{\"kind\":\"end\",\"records\":2}\n",
+                                &n),
+                     STATUS_USAGE);
 }
 
 static void test_broken_rules(void **state)
