@@ -1,5 +1,6 @@
 #include "report/dossier.h"
 
+#include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -332,6 +333,19 @@ bool dossier_is_audit(const struct dossier *dossier)
 int dossier_base(const struct job *job, const char *relative_to)
 {
     return strcmp(relative_to, "as found") == 0 ? -1 : job_find_run(job, relative_to);
+}
+
+double dossier_speed(const struct dossier *dossier, const char *run)
+{
+    for (size_t i = 0; i < dossier->tachos.count; i++) {
+        if (strcmp(dossier->tachos.items[i].run, run) == 0)
+            return dossier->tachos.items[i].speed_rpm;
+    }
+    for (size_t i = 0; i < dossier->readings.count; i++) {
+        if (strcmp(dossier->readings.items[i].reading.run, run) == 0)
+            return dossier->readings.items[i].reading.speed_rpm;
+    }
+    return NAN;
 }
 
 const json_t *dossier_instead(const struct dossier *dossier)

@@ -99,6 +99,9 @@ int dossier_base(const struct job *job, const char *relative_to);
  * "as found" carries weights, so that it cannot be told which it is. Borrowed. */
 const json_t *dossier_instead(const struct dossier *dossier);
 
+/* Mean speed of a run, rpm, by its tacho or a reading; NaN: not known. */
+double dossier_speed(const struct dossier *dossier, const char *run);
+
 /* True where that run is a slow roll, whose readings are for every condition. */
 bool dossier_is_runout(const struct dossier *dossier, const char *run);
 

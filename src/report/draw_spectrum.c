@@ -14,6 +14,8 @@
 #define TOP 22.0
 #define TALL 110.0
 #define DECADES 4
+#define LINES_TOLD 3  /* what fits below a drawing */
+#define LINES_HIGH 13 /* what they take there */
 
 /* Below this order (common practice: near the noise of an integrator) nothing is drawn where the
  * shown quantity is an integral of the measured one, which would lift noise by 1/order. */
@@ -30,20 +32,6 @@ static size_t bands_from(const struct spectrum_record *r)
     return r->count;
 }
 
-/* Mean speed of a run; NaN: not known. */
-static double speed_of(const struct dossier *d, const char *run)
-{
-    for (size_t i = 0; i < d->tachos.count; i++) {
-        if (strcmp(d->tachos.items[i].run, run) == 0)
-            return d->tachos.items[i].speed_rpm;
-    }
-    for (size_t i = 0; i < d->readings.count; i++) {
-        if (strcmp(d->readings.items[i].reading.run, run) == 0)
-            return d->readings.items[i].reading.speed_rpm;
-    }
-    return NAN;
-}
-
 /* Amplitudes in the show unit, each at its own frequency; NaN below the least order. New; NULL: no
  * memory. */
 static double *shown_amplitudes(const struct spectrum_record *r, const struct job_sensor *sensor,
@@ -58,6 +46,17 @@ static double *shown_amplitudes(const struct spectrum_record *r, const struct jo
                              .amplitude;
     }
     return shown;
+}
+
+/* As shown_amplitudes, of a line that does not turn with the shaft. */
+static double shown_line(const struct spectrum_record *r, size_t line,
+                         const struct job_sensor *sensor, double rpm)
+{
+    const double at = 60 * r->lines[2 * line];
+    if (sensor->show.quantity != sensor->quantity && at < ORDER_LEAST * rpm)
+        return NAN;
+    return shown_amplitude(r->lines[2 * line + 1], NAN, sensor->quantity, at, &sensor->show)
+        .amplitude;
 }
 
 /* A spectrum to be drawn: shown amplitudes over orders, `top` the power of ten at the upper edge.
@@ -112,6 +111,35 @@ static void frame(const struct graph *g)
     }
 }
 
+/* The lines that do not turn with the shaft: a diamond each, and below the drawing what they are.
+ */
+static void lines(const struct graph *g, const struct job_sensor *sensor, double rpm)
+{
+    const struct spectrum_record *r = g->record;
+    struct buffer text = BUFFER_INIT;
+    char unit[24], hz[DIGITS_ROOM], size[DIGITS_ROOM];
+    size_t told = 0;
+    for (size_t i = 0; i < r->line_count && told < LINES_TOLD; i++) {
+        const double order = 60 * r->lines[2 * i] / rpm, shown = shown_line(r, i, sensor, rpm);
+        if (!(shown > 0) || !isfinite(order))
+            continue;
+        if (order <= g->last) {
+            struct svg_point here = at(g, order, shown);
+            svg_diamond(g->out, "moved", here.x, here.y, 4);
+        }
+        /* Three digits of a frequency, two of a side line's size: our choice. */
+        buffer_format(&text, "%s%s Hz %s", told++ ? ", " : "",
+                      digits_text(hz, r->lines[2 * i], r->lines[2 * i] / 10),
+                      digits_text(size, shown, shown));
+    }
+    if (told > 0 && !text.failed)
+        svg_text(g->out, "small", "middle", (LEFT + RIGHT) / 2, HIGH + 5,
+                 "diamonds, not turning with the shaft: %s %s", text.bytes,
+                 units_show_text(&sensor->show, unit));
+    g->out->failed = g->out->failed || text.failed;
+    buffer_release(&text);
+}
+
 double draw_spectrum(const struct dossier *d, size_t spectrum, double y, struct buffer *out)
 {
     const struct spectrum_record *r = &d->spectra.items[spectrum];
@@ -120,7 +148,9 @@ double draw_spectrum(const struct dossier *d, size_t spectrum, double y, struct 
         !(r->orders[r->count - 1] > 0))
         return 0;
     const struct job_sensor *sensor = &d->job->sensors[r->sensor];
-    double *shown = shown_amplitudes(r, sensor, speed_of(d, r->run)), most = 0;
+    const double rpm = dossier_speed(d, r->run);
+    const double high = HIGH + (r->line_count > 0 ? LINES_HIGH : 0);
+    double *shown = shown_amplitudes(r, sensor, rpm), most = 0;
     if (!shown) {
         out->failed = 1;
         return 0;
@@ -131,7 +161,7 @@ double draw_spectrum(const struct dossier *d, size_t spectrum, double y, struct 
         struct graph g = {r, shown, r->orders[r->count - 1], (int)ceil(log10(most)), out};
         size_t bands = bands_from(r);
         snprintf(title, sizeof title, "%s, %s: order spectrum", r->run, sensor->name);
-        svg_begin(out, y, WIDE, HIGH, title);
+        svg_begin(out, y, WIDE, high, title);
         svg_text(out, "bold", "start", 6, 13, "%s", title);
         frame(&g);
         trace(&g, 0, bands, false);
@@ -139,10 +169,11 @@ double draw_spectrum(const struct dossier *d, size_t spectrum, double y, struct 
         svg_text(out, "small", "middle", (LEFT + RIGHT) / 2, HIGH - 8,
                  "order; amplitude in %s, log scale%s", units_show_text(&sensor->show, unit),
                  bands < r->count ? "; circles: all within a wide band" : "");
+        lines(&g, sensor, rpm);
         svg_end(out);
     } else {
         most = 0;
     }
     free(shown);
-    return most > 0 ? HIGH : 0;
+    return most > 0 ? high : 0;
 }

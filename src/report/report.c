@@ -132,7 +132,7 @@ int stage_report(int argc, char **argv)
         {"as", 0, OPTION_CHOICE, "FORM", "text", 0, 0, forms, "what to make", &form},
         {"what", 0, OPTION_TEXT, "NAME", NULL, 0, 0, NULL,
          "the table of csv or the picture of svg: readings, responses, correction, placement, "
-         "forecast, findings, polar, plane, time, spectrum, speed", &name},
+         "forecast, findings, spectrum; polar, plane, time, spectrum, speed", &name},
         {0},
     };
     const struct usage usage = {
@@ -166,7 +166,8 @@ int stage_report(int argc, char **argv)
     }
     dossier_init(&dossier, &stream.job);
     dossier.keep_lines = form == FORM_JSON;
-    dossier.keep_traces = form == FORM_HTML || form == FORM_SVG;
+    dossier.keep_traces =
+        form == FORM_HTML || form == FORM_SVG || (form == FORM_CSV && what == TIDY_SPECTRUM);
     status = stream_open(&stream, files.items, files.count, false);
     if (status == STATUS_DONE)
         status = collect(&stream, &dossier);

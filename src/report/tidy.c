@@ -8,8 +8,10 @@
 #include "report/text_readings.h"
 #include "sheet/units.h"
 
+#define WIDE_BAND 0.5 /* orders: points so far apart stand for a band, as in the drawing */
+
 const char *const tidy_names[] = {"readings", "responses", "correction", "placement",
-                                  "forecast", "findings",  NULL};
+                                  "forecast", "findings",  "spectrum",   NULL};
 
 static const char *const verdicts[] = {"ok", "caution", "refuse"};
 
@@ -210,10 +212,51 @@ static void findings(const struct dossier *d, struct csv *csv)
     }
 }
 
+/* A line of a spectrum: at hz, of peak amplitude in SI. */
+static void spectrum_row(const struct dossier *d, const struct spectrum_record *r, double rpm,
+                         double hz, double amplitude, const char *what, struct csv *csv)
+{
+    const struct job_sensor *sensor = sensor_of(d, r->sensor);
+    csv_text(csv, r->run);
+    csv_text(csv, sensor->name);
+    csv_number(csv, rpm);
+    csv_number(csv, hz);
+    csv_number(csv, 60 * hz / rpm);
+    csv_plain(csv, what);
+    unit_cell(csv, &sensor->show);
+    /* An integral lifts the noise of the lowest orders without end. */
+    csv_number(
+        csv,
+        hz > 0 ? shown_amplitude(amplitude, NAN, sensor->quantity, 60 * hz, &sensor->show).amplitude
+               : NAN);
+    csv_row(csv);
+}
+
+static void spectrum(const struct dossier *d, struct csv *csv)
+{
+    static const char *const heads[] = {"run",   "sensor", "speed (rpm)", "frequency (Hz)",
+                                        "order", "what",   "unit",        "amplitude (unit)",
+                                        NULL};
+    csv_head(csv, heads);
+    for (size_t i = 0; i < d->spectra.count; i++) {
+        const struct spectrum_record *r = &d->spectra.items[i];
+        const double rpm = dossier_speed(d, r->run);
+        const char *what = "order";
+        for (size_t k = 0; k < r->count; k++) {
+            if (k > 0 && r->orders[k] - r->orders[k - 1] >= WIDE_BAND)
+                what = "all within a wide band";
+            spectrum_row(d, r, rpm, r->orders[k] * rpm / 60, r->amplitude[k], what, csv);
+        }
+        for (size_t k = 0; k < r->line_count; k++)
+            spectrum_row(d, r, rpm, r->lines[2 * k], r->lines[2 * k + 1],
+                         "not turning with the shaft", csv);
+    }
+}
+
 void tidy_write(const struct dossier *dossier, enum tidy_what what, struct buffer *out)
 {
     static void (*const tables[])(const struct dossier *, struct csv *) = {
-        readings, responses, correction, placement, forecast, findings};
+        readings, responses, correction, placement, forecast, findings, spectrum};
     struct csv csv = {out, 0};
     tables[what](dossier, &csv);
 }

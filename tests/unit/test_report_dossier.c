@@ -13,6 +13,7 @@
 
 #include "base/status.h"
 #include "report/dossier.h"
+#include "report/draw.h"
 #include "report/phrase.h"
 #include "report/text.h"
 #include "report/tidy.h"
@@ -249,8 +250,8 @@ static void text_is_printable(void **state)
     }
 }
 
-/* By definition an inch is 25.4 mm and an ounce 28.35 g: 3.4 mm/s are 0.134 in/s, 1.4 are 0.05512, 20 g
- * are 0.705 oz. */
+/* By definition an inch is 25.4 mm and an ounce 28.35 g: 3.4 mm/s are 0.134 in/s, 1.4 are 0.05512,
+ * 20 g are 0.705 oz. */
 static void outcomes_in_inches(void **state)
 {
     (void)state;
@@ -346,6 +347,46 @@ static void tables_have_their_rows(void **state)
     unload(&l);
 }
 
+/* At 1480 rpm: 1x is 24.6667 Hz, 50 Hz are 2.02703 orders, 5 Hz 0.202703. NDE-H measures velocity:
+ * 0.01 m/s peak is 7.07107 mm/s rms. DE-V measures acceleration: 1 m/s2 peak at 50 Hz is 1/(2 pi
+ * 50)/sqrt 2 m/s = 2.25079 mm/s rms. */
+static void lines_that_do_not_turn(void **state)
+{
+    (void)state;
+    static const char *const spectra[] = {
+        "{\"kind\":\"spectrum\",\"run\":\"as-found\",\"sensor\":\"NDE-H\",\"orders\":[0.75,1,1.25],"
+        "\"amplitude\":[0.001,0.01,0.002],\"lines\":[[50,0.01],[5,0.001]]}",
+        "{\"kind\":\"spectrum\",\"run\":\"as-found\",\"sensor\":\"DE-V\",\"orders\":[0.75,1,3],"
+        "\"amplitude\":[0.1,2,0.2],\"lines\":[[50,1],[5,0.1]]}",
+        "{\"kind\":\"spectrum\",\"run\":\"trial\",\"sensor\":\"NDE-H\",\"orders\":[1,1.25],"
+        "\"amplitude\":[0.01,0.002]}"};
+    struct loaded l;
+    struct buffer table = BUFFER_INIT, drawing = BUFFER_INIT;
+    load(&l, "report-balance");
+    for (size_t i = 0; i < sizeof spectra / sizeof *spectra; i++)
+        load_line(&l, spectra[i], strlen(spectra[i]));
+    dossier_close(&l.dossier);
+    tidy_write(&l.dossier, TIDY_SPECTRUM, &table);
+    assert_int_equal(count(table.bytes, "\r\n"), 1 + 8 + 4);
+    assert_int_equal(count(table.bytes, ",not turning with the shaft,"), 4);
+    assert_non_null(
+        strstr(table.bytes, "as-found,NDE-H,1480,24.6667,1,order,mm/s rms,7.07107\r\n"));
+    assert_non_null(strstr(table.bytes, "as-found,NDE-H,1480,50,2.02703,not turning with the shaft,"
+                                        "mm/s rms,7.07107\r\n"));
+    assert_non_null(strstr(table.bytes, "as-found,DE-V,1480,50,2.02703,not turning with the shaft,"
+                                        "mm/s rms,2.25079\r\n"));
+    assert_int_equal(count(table.bytes, ",all within a wide band,"), 1); /* DE-V at 3 */
+    draw_file(&l.dossier, DRAW_SPECTRUM, &drawing);
+    /* 5 Hz is below a quarter of 1x, where the integral of an acceleration is not shown; and beyond
+     * the last order no diamond can stand. */
+    assert_non_null(strstr(drawing.bytes, "with the shaft: 50.0 Hz 7.1, 5.00 Hz 0.71 mm/s rms"));
+    assert_non_null(strstr(drawing.bytes, "with the shaft: 50.0 Hz 2.3 mm/s rms"));
+    assert_int_equal(count(drawing.bytes, "not turning with the shaft"), 2);
+    buffer_release(&drawing);
+    buffer_release(&table);
+    unload(&l);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -358,6 +399,7 @@ int main(void)
         cmocka_unit_test(nothing_that_may_not_be_fitted_is_shown),
         cmocka_unit_test(json_keeps_every_byte),
         cmocka_unit_test(tables_have_their_rows),
+        cmocka_unit_test(lines_that_do_not_turn),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
