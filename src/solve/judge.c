@@ -16,6 +16,8 @@ struct judge_limits judge_limits_of(const struct job *job, const char *check, do
             l.caution = job->limits[i].caution;
         if (!isnan(job->limits[i].refuse))
             l.refuse = job->limits[i].refuse;
+        else if (l.caution > l.refuse)
+            l.refuse = l.caution;
     }
     return l;
 }

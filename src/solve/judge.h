@@ -13,7 +13,8 @@ struct judge_limits {
     double caution, refuse;
 };
 
-/* The sheet's limits of a check over the defaults. */
+/* The sheet's limits of a check over the defaults; a caution beyond the standing refusal takes the
+ * refusal along, as in vet. */
 struct judge_limits judge_limits_of(const struct job *job, const char *check, double caution,
                                     double refuse);
 

@@ -32,6 +32,17 @@ static int kernel_status(int error)
     return STATUS_SYSTEM;
 }
 
+/* The rows of a sensor that have run `run` are lost to the correction. */
+static void lose_sensor(struct model *m, int sensor, int run)
+{
+    for (size_t i = 0; i < m->row_count; i++) {
+        if ((int)m->rows[i].sensor != sensor || !model_find(&m->rows[i], (size_t)run))
+            continue;
+        m->rows[i].state = MODEL_LOST;
+        m->rows[i].lost_run = run;
+    }
+}
+
 /* Findings about the rows; a refused row is lost to the correction. */
 static int judge_rows(struct solve_records *s, struct model *m)
 {
@@ -51,8 +62,11 @@ static int judge_rows(struct solve_records *s, struct model *m)
     }
     for (size_t p = 0; p < m->job->plane_count && status == STATUS_DONE; p++) {
         struct advice_finding f;
-        if (advice_turn(m, p, &f))
-            status = solve_records_finding(s, &f);
+        if (!advice_turn(m, p, &f))
+            continue;
+        if (f.verdict == ADVICE_REFUSE)
+            lose_sensor(m, f.sensor, f.run);
+        status = solve_records_finding(s, &f);
     }
     for (size_t i = 0; i < m->job->sensor_count && status == STATUS_DONE; i++) {
         struct advice_finding f;

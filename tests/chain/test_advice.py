@@ -59,6 +59,60 @@ class Mounted(unittest.TestCase):
         self.assertNotIn("total_mass", p)
 
 
+class Limits(unittest.TestCase):
+    """[limits] over the checks of solve: one value is the caution limit, two are caution and refusal, `none` is off."""
+
+    def verdict(self, check, text, *limits):
+        with chain.folder() as where:
+            (where / "job.ini").write_text(text + ("[limits]\n" + "\n".join(limits) + "\n" if limits else ""))
+            done = chain.lopside("balance", where / "job.ini", "--as", "json")
+        stream = json.loads(done.stdout)
+        found = findings(stream, check)
+        if any(f["verdict"] == "refuse" for f in found):
+            self.assertIn(done.returncode, (4, 5), chain.complaint(done))
+            self.assertEqual(chain.kind(stream, "placement"), [])
+        else:
+            self.assertEqual(done.returncode, 0, chain.complaint(done))
+        self.assertLessEqual(len(found), 1)
+        return (found[0]["verdict"], found[0]["limit"], found[0]["value"]) if found else (None, None, None)
+
+    def jobs(self):
+        """One job a check, each with a figure of its own between 1 and the caution limit or little above."""
+        z, a = 30 * cmath.exp(1j), 1000 * cmath.exp(2.5j)
+        runs = trials({"A": [z, a]}, [("P", 0.02, 30)])
+        off = runs + [("second", {"A": complex(z + 0.8 + a * chain.weight(0.02, 150))}, [("P", 0.02, 150)])]
+        yield "linearity", sheet({"P": []}, off, ["repeatability = 1 %"])
+        turned = runs + [("second", {"A": complex(z + a * chain.weight(0.02, 153))}, [("P", 0.02, 150)])]
+        yield "lag-follows-weight", sheet({"P": []}, turned, ["repeatability = 1 %"])
+        rotor = ["mass = 200 kg", "service speed = 1200 rpm"]
+        yield "correction-force", sheet({"P": []}, runs, ["repeatability = 0 %"], rotor=rotor)
+        two = {"A": [z, a, 0.9 * a], "B": [20j, 700 + 0j, 800 * cmath.exp(0.2j)]}
+        yield "conditioning", sheet({"P": [], "Q": []}, trials(two, [("P", 0.02, 0), ("Q", 0.02, 0)]))
+
+    def test_limits(self):
+        for check, text in self.jobs():
+            with self.subTest(check):
+                _, _, value = self.verdict(check, text)
+                self.assertGreater(value, 0.5)
+                unit = {"correction-force": " %", "conditioning": ""}.get(check, " s.e.")
+                at = lambda *shares: f"{check} = " + " ".join(f"{s * value:.6g}{unit}" for s in shares)
+                for shares, verdict, crossed in (((1.1,), "ok", 1.1), ((0.9,), "caution", 0.9), ((1.1, 1.2), "ok", 1.1),
+                                                 ((0.9, 1.1), "caution", 0.9), ((0.8, 0.9), "refuse", 0.9)):
+                    got, limit, _ = self.verdict(check, text, at(*shares))
+                    self.assertEqual(got, verdict, shares)
+                    self.assertAlmostEqual(limit / value, crossed, delta=1e-4)
+                self.assertIsNone(self.verdict(check, text, f"{check} = none")[0])
+
+    def test_a_caution_beyond_the_refusal(self):
+        """Whoever asks for a caution at 200 is not refused at 100."""
+        a = 1000 * cmath.exp(2.5j)
+        two = {"A": [30 + 0j, a, a], "B": [20j, a, a * (1 + 0.02j)]}  # about 200
+        text = sheet({"P": [], "Q": []}, trials(two, [("P", 0.02, 0), ("Q", 0.02, 0)]))
+        got, limit, value = self.verdict("conditioning", text)
+        self.assertEqual((got, limit), ("refuse", 100))
+        self.assertEqual(self.verdict("conditioning", text, f"conditioning = {value + 1:g}")[0], "ok")
+
+
 class Step(unittest.TestCase):
     """What the next step says, and that it promises no more than the runs show."""
 
