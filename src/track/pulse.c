@@ -10,6 +10,7 @@ enum { UNKNOWN, BELOW, ABOVE, ABOVE_FROM_START };
 #define HYSTERESIS 0.15f
 
 #define GROUP 16    /* samples looked at together where nothing happens */
+#define PART 512    /* samples studied at a time */
 #define SILENT 0.1f /* of the former span: below it is no pulse */
 
 void pulse_init(struct pulse_finder *finder, int edge, double level)
@@ -49,68 +50,6 @@ static void set_levels(struct pulse_finder *finder)
     }
 }
 
-bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n)
-{
-    float top = -INFINITY, bottom = INFINITY;
-
-    for (size_t i = 0; i < n; i++) {
-        float y = finder->sign * x[i];
-
-        top = y > top ? y : top;
-        bottom = y < bottom ? y : bottom;
-    }
-    if (!(top > bottom) || !isfinite(top - bottom)) {
-        return false;
-    }
-    for (size_t i = 0; i < PULSE_MEMORY; i++) {
-        finder->tops[i] = top;
-        finder->bottoms[i] = bottom;
-    }
-    set_levels(finder);
-    finder->live = true;
-    return true;
-}
-
-bool pulse_renew(struct pulse_finder *finder, const float *x, size_t n)
-{
-    struct pulse_finder trial = *finder;
-
-    if (!pulse_levels(&trial, x, n) ||
-        trial.tops[0] - trial.bottoms[0] <
-            SILENT * (typical(finder->tops, 1.0f) - typical(finder->bottoms, -1.0f))) {
-        return false;
-    }
-    trial.state = UNKNOWN;
-    *finder = trial;
-    return true;
-}
-
-/* The time within [0, 1] at which the cubic through y(-1), y(0), y(1), y(2) passes `level`, which
- * lies between y(0) and y(1); linear where the outer points are not to be had. */
-static double crossing(const float *x, float sign, float level, bool outer)
-{
-    double y0 = sign * x[0] - level, y1 = sign * x[1] - level;
-    double at = y1 > y0 ? -y0 / (y1 - y0) : 0.5;
-
-    if (!outer) {
-        return at;
-    }
-    double ym = sign * x[-1] - level, y2 = sign * x[2] - level;
-    double c1 = y1 - ym / 3 - y0 / 2 - y2 / 6, c2 = (ym + y1) / 2 - y0;
-    double c3 = (y2 - ym) / 6 + (y0 - y1) / 2;
-
-    for (int k = 0; k < 3; k++) {
-        double value = y0 + at * (c1 + at * (c2 + at * c3));
-        double slope = c1 + at * (2 * c2 + at * 3 * c3);
-
-        if (!(slope > 0.25 * (y1 - y0))) {
-            break;
-        }
-        at = fmin(1, fmax(0, at - value / slope));
-    }
-    return at;
-}
-
 static void learn(struct pulse_finder *finder, float top, float bottom)
 {
     finder->tops[finder->turn] = top;
@@ -132,7 +71,7 @@ static double rise_time(const struct pulse_finder *finder, const float *x, size_
         return (double)k + 1;
     }
     return (double)k +
-           crossing(x + k, finder->sign, finder->middle, k > first && k + 2 < (ptrdiff_t)n);
+           edge_crossing(x + k, finder->sign, finder->middle, k > first && k + 2 < (ptrdiff_t)n);
 }
 
 /* The signal fell at x[i]: where did it pass the middle? By a straight line: only widths rest on
@@ -153,13 +92,42 @@ static double fall_time(const struct pulse_finder *finder, const float *x, size_
     return (double)k - 1 + (before > after ? before / (before - after) : 1);
 }
 
-static struct pulse ended(struct pulse_finder *finder, double end)
+static struct pulse ended(const struct pulse_finder *finder, double end)
 {
     return (struct pulse){.at = finder->rose,
                           .high = end - finder->rose,
                           .low = finder->low,
                           .top = finder->extreme,
                           .bottom = finder->bottom};
+}
+
+/* The pulse that is over at x[i], by its own half height where that is to be had. */
+static struct pulse refined(struct pulse_finder *finder, const float *x, size_t i, size_t n,
+                            size_t back, double start)
+{
+    struct pulse pulse = ended(finder, finder->fell);
+    struct edge_half half;
+    double rise = floor(pulse.at - start), low = floor(pulse.at - pulse.low - start) + 1;
+    struct edge_spot spot = {.from = -(ptrdiff_t)back,
+                             .past = (ptrdiff_t)n,
+                             .low = (ptrdiff_t)fmax(low, -(double)back),
+                             .rise = (ptrdiff_t)rise,
+                             .fall = (ptrdiff_t)i,
+                             .middle = finder->middle,
+                             .allowed = finder->above - finder->middle};
+
+    if (!isnan(finder->level) || rise < -(double)back) {
+        return pulse;
+    }
+    if (edge_find(&finder->edge, x, finder->sign, &spot, &half)) {
+        pulse.low += start + half.rise - pulse.at;
+        pulse.at = start + half.rise;
+        finder->fell = start + half.fall;
+        pulse.high = finder->fell - pulse.at;
+        pulse.top = half.top;
+        pulse.bottom = half.bottom;
+    }
+    return pulse;
 }
 
 /* Passes over whole groups of samples in which the state cannot change; returns where it stopped.
@@ -215,7 +183,7 @@ size_t pulse_find(struct pulse_finder *finder, const float *x, size_t n, size_t 
         } else if (finder->state >= ABOVE && y < finder->below) {
             finder->fell = start + fall_time(finder, x, i, back);
             if (finder->state == ABOVE) {
-                pulses[count++] = ended(finder, finder->fell);
+                pulses[count++] = refined(finder, x, i, n, back, start);
                 learn(finder, finder->extreme, finder->bottom);
             }
             finder->extreme = y;
@@ -225,6 +193,59 @@ size_t pulse_find(struct pulse_finder *finder, const float *x, size_t n, size_t 
         }
     }
     return count;
+}
+
+/* Learns the shape of the pulses in x, so that the first of them are timed as well as the rest. */
+static void study(struct pulse_finder *finder, const float *x, size_t n)
+{
+    struct pulse_finder trial = *finder;
+    struct pulse pulses[PART / 2 + 1];
+
+    if (!isnan(finder->level)) {
+        return;
+    }
+    trial.state = UNKNOWN;
+    for (size_t at = 0; at < n; at += PART) {
+        (void)pulse_find(&trial, x + at, n - at < PART ? n - at : PART, at, (double)at, pulses);
+    }
+    finder->edge = trial.edge;
+}
+
+bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n)
+{
+    float top = -INFINITY, bottom = INFINITY;
+
+    for (size_t i = 0; i < n; i++) {
+        float y = finder->sign * x[i];
+
+        top = y > top ? y : top;
+        bottom = y < bottom ? y : bottom;
+    }
+    if (!(top > bottom) || !isfinite(top - bottom)) {
+        return false;
+    }
+    for (size_t i = 0; i < PULSE_MEMORY; i++) {
+        finder->tops[i] = top;
+        finder->bottoms[i] = bottom;
+    }
+    set_levels(finder);
+    finder->live = true;
+    study(finder, x, n);
+    return true;
+}
+
+bool pulse_renew(struct pulse_finder *finder, const float *x, size_t n)
+{
+    struct pulse_finder trial = *finder;
+
+    if (!pulse_levels(&trial, x, n) ||
+        trial.tops[0] - trial.bottoms[0] <
+            SILENT * (typical(finder->tops, 1.0f) - typical(finder->bottoms, -1.0f))) {
+        return false;
+    }
+    trial.state = UNKNOWN;
+    *finder = trial;
+    return true;
 }
 
 size_t pulse_finish(struct pulse_finder *finder, double end, struct pulse *pulse)

@@ -1,8 +1,10 @@
-/* pulse.h - a tacho signal to the times of its pulses: a comparator with hysteresis.
+/* pulse.h - a tacho signal to the times of its pulses: a comparator with hysteresis tells that one
+ * came, and its own half height (edge.h) when.
  *
- * The levels come from the recording itself: first from a stretch at its beginning, then from the
- * pulses as they pass, so that AC coupling, offsets and pulses that grow are followed. A level
- * given by the user wins. Time is counted in samples from the start of the recording.
+ * The comparator's levels come from the recording itself: first from a stretch at its beginning,
+ * then from the pulses as they pass, so that AC coupling, offsets and pulses that grow are
+ * followed. A level given by the user wins, over the half height, too. Time is counted in samples
+ * from the start of the recording.
  *
  *     struct pulse_finder finder;
  *     pulse_init(&finder, +1, NAN);
@@ -16,10 +18,12 @@
 #include <stdbool.h>
 #include <stddef.h>
 
+#include "track/edge.h"
+
 struct pulse {
-    double at;        /* time of the chosen edge at the middle level, samples */
+    double at;        /* time of the chosen edge at half height, or at the given level, samples */
     double high, low; /* how long the signal stayed beyond the edge, and before it, samples */
-    double top;       /* the extreme beyond the edge, and */
+    double top;       /* the height beyond the edge, and */
     double bottom;    /* the one before it, both in the edge's direction (negated for falling) */
 };
 
@@ -36,6 +40,7 @@ struct pulse_finder {
     double fell, rose;     /* when the signal went below, rose through the middle */
     double low;            /* how long it was below before it rose */
     bool live;             /* levels are known */
+    struct edge edge;      /* the shape of the pulses so far */
 };
 
 /* `edge` +1 rising or -1 falling; `level` in the signal's unit, NaN to find it. */

@@ -1,5 +1,5 @@
-/* Tachos as they are in the field. Bounds: the vector within 1 % and 1 deg (the project's bar for
- * damaged tachos), tighter where nothing is lost. The truth is the geometry of the shaft. */
+/* Tachos as they are in the field. Bounds: the vector within 0.01 % and 0.01 deg, the project's bar
+ * for clean signals. The truth is the geometry of the shaft. */
 #include "track_recipe.h"
 
 /* A smooth pulse at `at` turns, `width` turns wide in all, 1 at its middle. */
@@ -100,25 +100,25 @@ static void test_slow_edges(void **unused)
 {
     (void)unused;
     assert_true(bump_edge * 0.2 == 0.05);
-    check(slow_edges, 1, 0.01, 0.02);
+    check(slow_edges, 1, 0.01, 0.01);
 }
 
 static void test_small_on_offset(void **unused)
 {
     (void)unused;
-    check(small_on_offset, 1, 0.01, 0.05);
+    check(small_on_offset, 1, 0.01, 0.01);
 }
 
 static void test_toothed(void **unused)
 {
     (void)unused;
-    check(toothed, 1, 0.05, 1);
+    check(toothed, 1, 0.01, 0.01);
 }
 
 static void test_coupled(void **unused)
 {
     (void)unused;
-    check(coupled, 1, 0.05, 4); /* the level lies at 0.4 of the range, not at half height */
+    check(coupled, 1, 0.01, 0.01); /* half of the rise from rest, not of the range */
 }
 
 static void test_scratch(void **unused)
@@ -136,7 +136,7 @@ static void test_scratch(void **unused)
 
         track(&tracker, &r, x, n, NULL);
         assert_true(tracker_reference(&tracker));
-        assert_vector(mean(&tracker), 1, LAG, 0.05, 0.5);
+        assert_vector(mean(&tracker), 1, LAG, 0.01, 0.01);
         assert_true(tracker.marks.extra > 190 && tracker.marks.extra < 202);
         assert_true(tracker.marks.missed <= 1);
         tracker_release(&tracker);
@@ -154,7 +154,7 @@ static void test_growing(void **unused)
     r.shaft.rev = 5;     /* 300 rpm */
     r.shaft.sweep = 1.0; /* 60 rpm/s, to 1500 rpm: pulses become five times as high */
     r.seconds = 20;
-    assert_vector(measure(&r), 1, LAG, 0.05, 0.5);
+    assert_vector(measure(&r), 1, LAG, 0.01, 0.01);
 }
 
 static void test_several_marks(void **unused)
@@ -164,9 +164,9 @@ static void test_several_marks(void **unused)
     size_t n;
 
     (void)unused;
-    check(two_unequal, 2, 0.05, 0.5);
-    check(two_uneven, 2, 0.05, 0.5);
-    check(gap_tooth, 9, 0.05, 0.5);
+    check(two_unequal, 2, 0.01, 0.01);
+    check(two_uneven, 2, 0.01, 0.01);
+    check(gap_tooth, 9, 0.01, 0.01);
     r.tacho = four_equal;
     r.marks = 4;
     float *x = record(&r, &n);
@@ -190,10 +190,10 @@ static void test_same_mark(void **unused)
         r.shaft.phase = phase;
         r.tacho = two_uneven;
         r.marks = 2;
-        assert_vector(measure(&r), 1, LAG, 0.05, 0.5);
+        assert_vector(measure(&r), 1, LAG, 0.01, 0.01);
         r.tacho = gap_tooth;
         r.marks = 9;
-        assert_vector(measure(&r), 1, LAG, 0.05, 0.5);
+        assert_vector(measure(&r), 1, LAG, 0.01, 0.01);
     }
 }
 
