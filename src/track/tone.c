@@ -259,6 +259,29 @@ int tone_finish(struct tone *tone)
     return tone->looked ? 0 : advance(tone);
 }
 
+bool tone_turn(struct tone *tone, double end, struct shaft_turn *turn)
+{
+    double hz = tone->hz, from = tone->turned;
+
+    if (!tone->found) {
+        return false;
+    }
+    while (tone->block < tone->block_count && tone->blocks[tone->block].to <= from) {
+        tone->block++;
+    }
+    if (tone->block < tone->block_count) {
+        hz = tone->blocks[tone->block].hz;
+    }
+    double to = from + tone->rate_hz / hz;
+
+    if (!(to <= end)) {
+        return false;
+    }
+    *turn = (struct shaft_turn){.t0 = from, .t1 = to, .c = {0, 1}, .first = from <= 0};
+    tone->turned = to;
+    return true;
+}
+
 double tone_speed(const struct tone *tone)
 {
     double turns = 0, time = 0;

@@ -16,6 +16,8 @@
 #include <stdbool.h>
 #include <stddef.h>
 
+#include "track/shaft.h"
+
 #define TONE_LOOK 10.0   /* seconds that are searched for the line, or 40 turns at service speed */
 #define TONE_BLOCKS 2000 /* of a recording whose length is known; segments are joined beyond */
 
@@ -52,6 +54,8 @@ struct tone {
     struct tone_block *blocks; /* owned */
     double *amplitude, *rest;  /* owned: per block and sensor; peak, rms */
     size_t block_count, block_room;
+    double turned; /* samples: end of the last turn given out, */
+    size_t block;  /* and the block that it lies in */
 };
 
 /* 0, or -1 when memory is out (nothing is kept). rate_hz > 0, sensors may be 0. */
@@ -66,6 +70,11 @@ int tone_add(struct tone *tone, const float *const *planes, size_t n)
 /* The recording is over. 0, or -1 when memory is out. Afterwards `found` says whether there was a
  * line at all; without one there are no blocks. */
 int tone_finish(struct tone *tone) __attribute__((warn_unused_result));
+
+/* The next turn at the line's speed, one after another from the recording's start (which is no
+ * mark: the angle is the time's alone), as far as it ends before the sample `end`. False where
+ * there is none yet, or no line. */
+bool tone_turn(struct tone *tone, double end, struct shaft_turn *turn);
 
 /* Mean speed over the blocks, and the standard deviation of the blocks' speeds (NaN with fewer than
  * two), rpm; NaN where no line was found. */

@@ -372,11 +372,14 @@ static size_t name_lines(const struct recording *rec, size_t sensor, double *lin
     return count;
 }
 
+/* Without a tacho a harmonic of the shaft may wander between the orders: no line is named there. */
 static int print_spectra(const struct recording *rec, struct stream *stream, struct line *line)
 {
+    const struct tracker *tracker = &rec->tracker;
+    bool tacho = tracker->tacho >= 0;
     double orders[SPECTRUM_LINES], amplitude[SPECTRUM_LINES], lines[2 * STRAY_MOST];
     struct spectrum_record record = {
-        .orders = orders, .amplitude = amplitude, .lines = lines, .lines_known = true};
+        .orders = orders, .amplitude = amplitude, .lines = lines, .lines_known = tacho};
     int status = STATUS_DONE;
 
     strcpy(record.run, rec->run);
@@ -385,9 +388,10 @@ static int print_spectra(const struct recording *rec, struct stream *stream, str
             continue;
         }
         record.sensor = rec->sensors[c];
-        record.count = spectrum_lines(&rec->tracker.spectrum, s, orders, amplitude);
-        record.line_count = name_lines(rec, s++, lines);
-        if (record.count > 0 && tracker_regular(&rec->tracker)) {
+        record.count = spectrum_lines(&tracker->spectrum, s, orders, amplitude);
+        record.line_count = tacho ? name_lines(rec, s, lines) : 0;
+        s++;
+        if (record.count > 0 && (tacho ? tracker_regular(tracker) : tracker->tone.found)) {
             spectrum_print(&record, &stream->job, line);
             status = stream_write(stream, line);
         }
@@ -432,7 +436,10 @@ static int finish(struct recording *rec, struct stream *stream)
         status = tacho ? print_tacho(rec, stream, &line) : print_tone_tacho(rec, stream, &line);
     }
     if (status == STATUS_DONE) {
-        status = tacho ? print_spectra(rec, stream, &line) : print_tone_finding(rec, stream, &line);
+        status = print_spectra(rec, stream, &line);
+    }
+    if (status == STATUS_DONE && !tacho) {
+        status = print_tone_finding(rec, stream, &line);
     }
     line_release(&line);
     drop(rec);

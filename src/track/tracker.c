@@ -169,6 +169,20 @@ static void sum_turn(struct tracker *tracker, const struct shaft_turn *turn, boo
     }
 }
 
+/* The order spectrum's part of that. */
+static void sum_orders(struct tracker *tracker, const struct shaft_turn *turn)
+{
+    long long i = (long long)ceil(turn->t0), end = (long long)ceil(turn->t1);
+
+    while (i < end) {
+        size_t n = end - i < VECTOR_PIECE ? (size_t)(end - i) : VECTOR_PIECE;
+
+        vector_weigh(&tracker->weights, turn, (double)i, n);
+        sum_spectrum(tracker, (size_t)(i - tracker->start));
+        i += (long long)n;
+    }
+}
+
 static void note_speed(struct tracker *tracker, const struct shaft_turn *turn)
 {
     double speed = 1 / (turn->t1 - turn->t0), off = speed - tracker->turn_mean;
@@ -335,6 +349,47 @@ static double needed(const struct tracker *tracker)
     return (double)tracker->start; /* marks may still come of it */
 }
 
+/* Without a tacho: order spectra over turns at the speed of the line that is followed. */
+static int take_tone(struct tracker *tracker)
+{
+    double end = (double)tracker->start + (double)tracker->done;
+    struct shaft_turn turn;
+
+    while (tone_turn(&tracker->tone, end, &turn)) {
+        if (tracker->spectrum.turns == 0 &&
+            spectrum_init(&tracker->spectrum, tracker->sensors, tracker->rate_hz, turn.t1 - turn.t0,
+                          tracker->frames)) {
+            return -1;
+        }
+        if (turn.t0 < (double)tracker->start) {
+            spectrum_break(&tracker->spectrum); /* its samples are gone */
+            continue;
+        }
+        if (spectrum_wants(&tracker->spectrum)) {
+            sum_orders(tracker, &turn);
+        }
+        spectrum_turn(&tracker->spectrum);
+    }
+    return 0;
+}
+
+/* Without a tacho, the frames up to `done`; all are held until the line is found. */
+static int advance_tone(struct tracker *tracker)
+{
+    double end = (double)tracker->start + (double)tracker->done, keep = (double)tracker->start;
+    bool full = tracker->most - tracker->done < 2 * TRACKER_CHUNK;
+
+    if (take_tone(tracker)) {
+        return -1;
+    }
+    tracker->searched = tracker->done;
+    if (tracker->tone.looked) {
+        keep = tracker->tone.found ? tracker->tone.turned - KEEP : end;
+    }
+    hold_release(tracker, full ? fmax(keep, (keep + end) / 2) : keep, full);
+    return 0;
+}
+
 /* Works on the frames up to `done`. */
 static int advance(struct tracker *tracker, bool last)
 {
@@ -342,9 +397,7 @@ static int advance(struct tracker *tracker, bool last)
     bool full = tracker->most - tracker->done < 2 * TRACKER_CHUNK;
 
     if (tracker->tacho < 0) {
-        tracker->searched = tracker->done;
-        hold_release(tracker, keep, false);
-        return 0;
+        return advance_tone(tracker);
     }
     if (!tracker->finder.live) {
         if (!last && (double)tracker->done < tracker->level_frames) {
@@ -442,7 +495,7 @@ int tracker_finish(struct tracker *tracker)
         return -1;
     }
     if (tracker->tacho < 0) {
-        return tone_finish(&tracker->tone);
+        return tone_finish(&tracker->tone) ? -1 : take_tone(tracker);
     }
     if (rest == 0 && tracker->done > 0 && advance(tracker, true)) {
         return -1;

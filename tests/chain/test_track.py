@@ -130,6 +130,17 @@ class Track(unittest.TestCase):
         self.assertIsNone(reading["vector"])
         self.assertLess(abs(reading["amplitude"] / math.hypot(fit[0], fit[1]) - 1), 0.005)
         self.assertAlmostEqual(reading["speed_rpm"], 60 * fit[2], delta=0.5)
+        (spectrum,) = chain.kind(stream, "spectrum")
+        lines = dict(zip(spectrum["orders"], spectrum["amplitude"]))
+        theta = 2 * math.pi * fit[2] * t
+        for order in (1, 2, 3):
+            base = numpy.stack([numpy.cos(order * theta), numpy.sin(order * theta)], 1)
+            want = math.hypot(*numpy.linalg.lstsq(base, x, rcond=None)[0])
+            self.assertAlmostEqual(lines[order] / want, 1, delta=0.02)  # noise of 0.01 % and the speed's error
+        self.assertNotIn("lines", spectrum)  # what does not turn with the shaft is not known here
+        hz, power = signal.welch(x, RATE, "hann", 4096, scaling="density", detrend="constant")
+        band = (hz >= 10) & (hz <= 1000)
+        self.assertAlmostEqual(reading["overall"]["rms"] / math.sqrt(numpy.trapz(power[band], hz[band])), 1, delta=0.01)
         for block in chain.kind(stream, "turns"):
             self.assertIsNone(block["vectors"]["A"])
         (tacho,) = chain.kind(stream, "tacho")

@@ -193,11 +193,102 @@ static void test_cuts(void **unused)
     free(x);
 }
 
+/* The order spectrum of `columns` equal columns without a tacho: sizes of the lines 1x to 3x, of
+ * what lies between, and the mean square of all (peak squared over two). Returns the stretches. */
+static long spectrum_of(const struct machine *m, size_t columns, double line[4], double *between,
+                        double *square)
+{
+    size_t n = (size_t)(m->rate * m->seconds);
+    double rail[8], orders[SPECTRUM_LINES], amplitude[SPECTRUM_LINES];
+    struct tracker_set_up set_up = {m->rate, (double)n, columns, -1,   rail, 1,
+                                    1,       NAN,       NAN,     NULL, false};
+    struct tracker tracker;
+    uint64_t seed = 88172645463325252ULL;
+    float frame[8];
+
+    for (size_t c = 0; c < columns; c++) {
+        rail[c] = NAN;
+    }
+    assert_int_equal(tracker_init(&tracker, &set_up), 0);
+    for (size_t i = 0; i < n; i++) {
+        double t = (double)i / m->rate, slow = TAU * t / m->seconds;
+        double theta = TAU * m->hz * (t + m->wander * m->seconds / TAU * sin(slow));
+        float x = (float)(m->amplitude * cos(theta - 1) + 0.5 * cos(2 * theta) +
+                          0.2 * cos(3 * theta) + m->noise * signal_normal(&seed));
+
+        for (size_t c = 0; c < columns; c++) {
+            frame[c] = x;
+        }
+        assert_int_equal(tracker_add(&tracker, frame, 1), 0);
+    }
+    assert_int_equal(tracker_finish(&tracker), 0);
+    size_t count = spectrum_lines(&tracker.spectrum, columns - 1, orders, amplitude);
+    long stretches = tracker.spectrum.count;
+
+    *between = *square = 0;
+    for (size_t i = 0; i < count; i++) {
+        double off = fabs(orders[i] - round(orders[i]));
+
+        if (off < 1e-9 && orders[i] < 3.5) {
+            line[lround(orders[i])] = amplitude[i];
+        } else if (off > 0.2 && orders[i] < 4) {
+            *between = fmax(*between, amplitude[i]);
+        }
+        *square += amplitude[i] * amplitude[i] / 2;
+    }
+    assert_true((double)tracker.room * (double)columns * sizeof(float) <= (double)TRACKER_HOLD);
+    tracker_release(&tracker);
+    return stretches;
+}
+
+static void test_spectrum(void **unused)
+{
+    struct machine m = fan;
+    double line[4] = {0}, between, square;
+
+    (void)unused;
+    m.noise = 0.05;
+    for (m.seconds = 3; m.seconds < 40; m.seconds *= 2) {
+        assert_true(spectrum_of(&m, 1, line, &between, &square) > 0);
+        assert_float_equal(line[1], 1, 0.005);
+        assert_float_equal(line[2], 0.5, 0.005);
+        assert_float_equal(line[3], 0.2, 0.005);
+        assert_true(between < 0.02);
+        assert_float_equal(square, 0.5 + 0.125 + 0.02 + 0.0025 / 3.2, 0.008); /* noise to 1 kHz */
+    }
+    m.wander = 0.01; /* half a bin at 3x in a stretch of a sixteenth of the wander's period */
+    m.seconds = 20;
+    assert_true(spectrum_of(&m, 1, line, &between, &square) > 25);
+    assert_float_equal(line[1], 1, 0.01);
+    assert_float_equal(line[2], 0.5, 0.01);
+    assert_float_equal(line[3], 0.2, 0.01);
+}
+
+/* Ten seconds of this are more than may be held until the line is found. */
+static void test_spectrum_of_much(void **unused)
+{
+    struct machine m = fan;
+    double line[4] = {0}, between, square;
+
+    (void)unused;
+    m.rate = 51200;
+    long stretches = spectrum_of(&m, 8, line, &between, &square);
+
+    assert_true(stretches >= 6 && stretches < 18); /* 296 turns in all make 18 */
+    assert_float_equal(line[1], 1, 0.005);
+    assert_float_equal(line[3], 0.2, 0.005);
+    assert_true(between < 0.01);
+}
+
 int main(void)
 {
-    const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_clean), cmocka_unit_test(test_wander_and_noise),
-        cmocka_unit_test(test_rivals), cmocka_unit_test(test_nothing), cmocka_unit_test(test_cuts)};
+    const struct CMUnitTest tests[] = {cmocka_unit_test(test_clean),
+                                       cmocka_unit_test(test_wander_and_noise),
+                                       cmocka_unit_test(test_rivals),
+                                       cmocka_unit_test(test_nothing),
+                                       cmocka_unit_test(test_cuts),
+                                       cmocka_unit_test(test_spectrum),
+                                       cmocka_unit_test(test_spectrum_of_much)};
 
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
