@@ -14,7 +14,7 @@
 int teeth_init(struct teeth *teeth, int per_turn)
 {
     *teeth = (struct teeth){0};
-    if (per_turn < TEETH_WHEEL - 2 || per_turn > TEETH_MOST) {
+    if (per_turn < TEETH_LEAST || per_turn > TEETH_MOST) {
         return 0;
     }
     teeth->per_turn = per_turn;
@@ -62,6 +62,70 @@ static long first_from(const struct teeth *teeth, double t)
         }
     }
     return low;
+}
+
+/* ---- harmonics of the turn ---- */
+
+static size_t orders_of(const struct teeth *teeth)
+{
+    size_t orders = (size_t)teeth->per_turn / 4;
+
+    return orders < SHAFT_RIPPLE_ORDERS ? orders : SHAFT_RIPPLE_ORDERS;
+}
+
+/* 1, cos, sin, cos of twice, ... of s turns. */
+static void powers(double s, size_t terms, double *power)
+{
+    double c = cos((2 * PI) * s), sine = sin((2 * PI) * s);
+
+    power[0] = 1;
+    power[1] = c;
+    power[2] = sine;
+    for (size_t k = 3; k + 1 < terms; k += 2) {
+        power[k] = c * power[k - 2] - sine * power[k - 1];
+        power[k + 1] = sine * power[k - 2] + c * power[k - 1];
+    }
+}
+
+/* Least squares of the harmonics over d at s, by the normal equations and Cholesky's factors, which
+ * is safe here: between points this dense the harmonics are nearly orthogonal. */
+static bool fit(const double *s, const double *d, size_t n, size_t terms, double *x)
+{
+    double a[TERMS][TERMS] = {{0}}, power[TERMS];
+
+    memset(x, 0, terms * sizeof *x);
+    for (size_t i = 0; i < n; i++) {
+        powers(s[i], terms, power);
+        for (size_t k = 0; k < terms; k++) {
+            for (size_t l = 0; l <= k; l++) {
+                a[k][l] += power[k] * power[l];
+            }
+            x[k] += power[k] * d[i];
+        }
+    }
+    for (size_t k = 0; k < terms; k++) {
+        for (size_t l = 0; l <= k; l++) {
+            for (size_t m = 0; m < l; m++) {
+                a[k][l] -= a[k][m] * a[l][m];
+            }
+            a[k][l] = l < k ? a[k][l] / a[l][l] : a[k][l];
+        }
+        if (!(a[k][k] > 0.1 * (double)n)) { /* marks that leave a harmonic open */
+            return false;
+        }
+        a[k][k] = sqrt(a[k][k]);
+        for (size_t m = 0; m < k; m++) {
+            x[k] -= a[k][m] * x[m];
+        }
+        x[k] /= a[k][k];
+    }
+    for (size_t k = terms; k-- > 0;) {
+        for (size_t m = k + 1; m < terms; m++) {
+            x[k] -= a[m][k] * x[m];
+        }
+        x[k] /= a[k][k];
+    }
+    return true;
 }
 
 /* ---- where the marks stand ---- */
@@ -153,23 +217,23 @@ static double place_of(const struct teeth *teeth, int j)
     return teeth->place[j % teeth->per_turn] + j / teeth->per_turn;
 }
 
-/* Sees whether the marks but one are those of an even wheel of `slots`, and fills where they are
- * then, on the mean as near to where they seem to be as can be. */
-static bool wheel(const struct teeth *teeth, int odd, int slots, double *place)
+/* Sees whether the marks (but the odd one, if there is one) are those of an even wheel of `slots`,
+ * and fills where they are then, on the mean as near to where they seem to be as can be. */
+static bool wheel(const struct teeth *teeth, int odd, int slots, double tolerance, double *place)
 {
-    int slot = 0, n = teeth->per_turn;
-    double off = 0, start = place_of(teeth, odd + 1);
+    int slot = 0, n = teeth->per_turn, first = odd < 0 ? 0 : odd + 1, count = n - (odd >= 0);
+    double off = 0, start = place_of(teeth, first);
 
-    for (int j = odd + 1; j < odd + n; j++) {
-        int next = j + 1 < odd + n ? j + 1 : odd + 1 + n;
+    for (int i = 0, j = first; i < count; i++, j++) {
+        int next = i + 1 < count ? j + 1 : first + n;
         double spacing = (place_of(teeth, next) - place_of(teeth, j)) * slots;
         double whole = round(spacing);
 
-        if (whole < 1 || fabs(spacing - whole) > fmin(TEETH_TOLERANCE * whole, NEAR)) {
+        if (whole < 1 || fabs(spacing - whole) > fmin(tolerance * whole, NEAR)) {
             return false;
         }
         place[j % n] = start + (double)slot / slots - j / n;
-        off += (place_of(teeth, j) - j / n - place[j % n]) / (n - 1);
+        off += (place_of(teeth, j) - j / n - place[j % n]) / count;
         slot += (int)whole;
     }
     for (int j = 0; j < n; j++) {
@@ -178,9 +242,41 @@ static bool wheel(const struct teeth *teeth, int odd, int slots, double *place)
     return slot == slots;
 }
 
+/* Whether what the marks are off is small, or smooth. */
+static bool ripples(const struct teeth *teeth, const double *place, double even, double smooth)
+{
+    double s[TEETH_MOST], d[TEETH_MOST], x[TERMS], power[TERMS], most = 0, all = 0, left = 0;
+    size_t count = 0, terms = 2 * orders_of(teeth) + 1;
+
+    for (int j = 0; j < teeth->per_turn; j++) {
+        if (j != teeth->odd && (j > 0 || teeth->odd < 0)) {
+            s[count] = teeth->place[j];
+            d[count] = place[j] - teeth->place[j]; /* their mean is zero, but for the reference */
+            most = fmax(most, fabs(d[count++]));
+        }
+    }
+    if (most * teeth->per_turn <= even) {
+        return true;
+    }
+    if (count <= terms || !fit(s, d, count, terms, x)) {
+        return false;
+    }
+    for (size_t i = 0; i < count; i++) {
+        double rest = d[i];
+
+        powers(s[i], terms, power);
+        for (size_t k = 0; k < terms; k++) {
+            rest -= x[k] * power[k];
+        }
+        left += rest * rest / (double)(count - terms);
+        all += d[i] * d[i];
+    }
+    return all - left * (double)(count - terms) >= smooth * left * (double)(terms - 1);
+}
+
 /* Takes the marks for evenly spaced where they may be: all of a wheel, those of one with one or two
  * teeth missing, or a wheel with another mark among its teeth, which by the spacing before it makes
- * itself or the next mark the reference. */
+ * itself or the next mark the reference; or a few marks, or these with one missing. */
 static bool even_out(struct teeth *teeth)
 {
     double place[TEETH_MOST] = {0};
@@ -190,13 +286,24 @@ static bool even_out(struct teeth *teeth)
     for (int k = 0; !even && k < 2; k++) {
         teeth->odd = k ? n - 1 : 0;
         for (int slots = n - 1; !even && slots <= n + 2; slots++) {
-            even = slots >= TEETH_WHEEL && wheel(teeth, teeth->odd, slots, place);
+            even = slots >= TEETH_WHEEL && wheel(teeth, teeth->odd, slots, TEETH_TOLERANCE, place);
         }
     }
-    for (int j = 1; even && j < n; j++) {
-        teeth->ripple[j] = place[j] - teeth->place[j];
-        teeth->place[j] = place[j];
-        teeth->seen[j] = teeth->turns;
+    if (even) {
+        even = ripples(teeth, place, TEETH_EVEN, TEETH_SMOOTH);
+    } else {
+        teeth->odd = -1;
+        for (int slots = n; !even && slots <= n + 1 && slots < TEETH_WHEEL; slots++) {
+            even = wheel(teeth, -1, slots, TEETH_SWING, place) &&
+                   ripples(teeth, place, TEETH_EVEN_FEW, TEETH_SMOOTH_FEW);
+        }
+    }
+    for (int j = 0; even && j < n; j++) {
+        if (j > 0 || teeth->odd < 0) {
+            teeth->ripple[j] = place[j] - teeth->place[j];
+            teeth->place[j] = place[j];
+            teeth->seen[j] = teeth->turns;
+        }
     }
     return even;
 }
@@ -213,68 +320,6 @@ static bool ready(struct teeth *teeth)
 }
 
 /* ---- the ripple of one turn ---- */
-
-static size_t orders_of(const struct teeth *teeth)
-{
-    size_t orders = (size_t)teeth->per_turn / 4;
-
-    return orders < SHAFT_RIPPLE_ORDERS ? orders : SHAFT_RIPPLE_ORDERS;
-}
-
-/* 1, cos, sin, cos of twice, ... of s turns. */
-static void powers(double s, size_t terms, double *power)
-{
-    double c = cos((2 * PI) * s), sine = sin((2 * PI) * s);
-
-    power[0] = 1;
-    power[1] = c;
-    power[2] = sine;
-    for (size_t k = 3; k + 1 < terms; k += 2) {
-        power[k] = c * power[k - 2] - sine * power[k - 1];
-        power[k + 1] = sine * power[k - 2] + c * power[k - 1];
-    }
-}
-
-/* Least squares of the harmonics over d at s, by the normal equations and Cholesky's factors, which
- * is safe here: between points this dense the harmonics are nearly orthogonal. */
-static bool fit(const double *s, const double *d, size_t n, size_t terms, double *x)
-{
-    double a[TERMS][TERMS] = {{0}}, power[TERMS];
-
-    memset(x, 0, terms * sizeof *x);
-    for (size_t i = 0; i < n; i++) {
-        powers(s[i], terms, power);
-        for (size_t k = 0; k < terms; k++) {
-            for (size_t l = 0; l <= k; l++) {
-                a[k][l] += power[k] * power[l];
-            }
-            x[k] += power[k] * d[i];
-        }
-    }
-    for (size_t k = 0; k < terms; k++) {
-        for (size_t l = 0; l <= k; l++) {
-            for (size_t m = 0; m < l; m++) {
-                a[k][l] -= a[k][m] * a[l][m];
-            }
-            a[k][l] = l < k ? a[k][l] / a[l][l] : a[k][l];
-        }
-        if (!(a[k][k] > 0.1 * (double)n)) { /* marks that leave a harmonic open */
-            return false;
-        }
-        a[k][k] = sqrt(a[k][k]);
-        for (size_t m = 0; m < k; m++) {
-            x[k] -= a[k][m] * x[m];
-        }
-        x[k] /= a[k][k];
-    }
-    for (size_t k = terms; k-- > 0;) {
-        for (size_t m = k + 1; m < terms; m++) {
-            x[k] -= a[m][k] * x[m];
-        }
-        x[k] /= a[k][k];
-    }
-    return true;
-}
 
 /* Finds the turn's marks, the nearest pulse for each, and takes them into the means. */
 static void match(struct teeth *teeth, const struct shaft_turn *turn)
@@ -321,7 +366,7 @@ void teeth_bend(struct teeth *teeth, struct shaft_turn *turn)
     size_t orders = orders_of(teeth);
 
     match(teeth, turn);
-    for (int j = 1; j < teeth->per_turn; j++) {
+    for (int j = teeth->odd < 0 ? 0 : 1; j < teeth->per_turn; j++) {
         if (j != teeth->odd) {
             s[count] = teeth->place[j] - teeth->ripple[j];
             d[count++] = teeth->ripple[j];

@@ -4,11 +4,25 @@
  * Where each mark stands is read from the first turns (medians of at least TEETH_TURNS, against a
  * cubic through the marks that are told apart, so that wandering speed does not count). The
  * recording alone cannot tell a ripple that is locked to the shaft from marks at unequal angles, so
- * a choice is made: where the spacings of the marks but the reference, TEETH_WHEEL of them or more
- * in a turn, lie within TEETH_TOLERANCE of even, they are a toothed wheel and taken for exactly
- * even; one or two teeth may be missing. Where the reference stands among them makes no difference.
- * Fewer marks, or marks that are less even (tapes laid by hand), are left alone: the curve is then
- * the one through the reference marks.
+ * a choice is made, by what each of them looks like: a ripple is smooth, so a few harmonics explain
+ * how far the marks are from even, and unequal marks are off at random.
+ *
+ * (a) TEETH_WHEEL marks or more, their spacings within TEETH_TOLERANCE of even, and either smooth
+ * (the harmonics explain TEETH_SMOOTH times as much a term as is left a degree of freedom: Fisher's
+ * ratio) or within TEETH_EVEN of even: a toothed wheel, taken for exactly even. One or two teeth
+ * may be missing, and where the reference stands among them makes no difference.
+ *
+ * (b) Fewer, but TEETH_LEAST or more: tapes or bolts. They are taken for even only with the
+ * reference among them, within TEETH_SWING of even (which is what a swing of speed by 2 % within
+ * the turn makes of even marks, and hand-laid tapes seldom keep), and smooth by TEETH_SMOOTH_FEW,
+ * or within TEETH_EVEN_FEW of even. One may be missing.
+ *
+ * (c) Any others are left where they are: the curve is the one through the reference marks. Learnt
+ * angles would come to the same, since a ripple that is locked to the shaft is learnt along with
+ * them, and one that is not averages out of 1x.
+ *
+ * Taken wrongly, even marks leave the unevenness in the angle, the same in each run: a lag that is
+ * off by no more than the marks are, which does not turn a correction.
  *
  * The differences between the marks' angles and that curve, means over the latest TEETH_MEMORY
  * turns, are fitted by harmonics of the turn, a quarter as many as marks, and a constant (least
@@ -25,7 +39,13 @@
 
 #define TEETH_MOST 64        /* more marks a turn: only the one that is told apart counts */
 #define TEETH_WHEEL 8        /* so many tapes are not laid by hand */
+#define TEETH_LEAST 4        /* marks that show a ripple once a turn */
 #define TEETH_TOLERANCE 0.08 /* of a spacing: half of what tells a mark apart by it (15 %) */
+#define TEETH_SWING 0.025    /* of a spacing */
+#define TEETH_EVEN 0.01      /* of a spacing: as teeth are cut, */
+#define TEETH_EVEN_FEW 0.002 /* and as no hand lays tapes */
+#define TEETH_SMOOTH 8       /* by chance 6 % of 8 marks, 2 % of 12, 1 % of 16 */
+#define TEETH_SMOOTH_FEW 50  /* by chance 10 % of 4 marks, 2 % of 5, under 1 % of 6 and 7 */
 #define TEETH_TURNS 6        /* for a median */
 #define TEETH_LEARN 16       /* turns of the first reading, at most */
 #define TEETH_MEMORY 64      /* turns: 1 degree of scatter becomes 0.1 degrees */
@@ -38,7 +58,7 @@ struct teeth {
     int marks;                 /* how many of them count */
     double *learnt;            /* owned: per_turn places for each of TEETH_LEARN turns */
     long turns;                /* learnt */
-    int odd;                   /* mark that is none of the wheel's */
+    int odd;                   /* mark that is none of the wheel's; -1: all are */
     bool decided;              /* the places are settled */
     double place[TEETH_MOST];  /* of each mark, turns from the reference */
     double ripple[TEETH_MOST]; /* mean of place less curve, turns */
@@ -46,7 +66,7 @@ struct teeth {
     struct shaft_ripple fitted;
 };
 
-/* `per_turn` marks a turn; out of use below TEETH_WHEEL - 2 and above TEETH_MOST. 0, or -1 when
+/* `per_turn` marks a turn; out of use below TEETH_LEAST and above TEETH_MOST. 0, or -1 when
  * memory is out. */
 int teeth_init(struct teeth *teeth, int per_turn) __attribute__((warn_unused_result));
 void teeth_release(struct teeth *teeth);
