@@ -52,6 +52,7 @@ static long place(double since, double period, double tolerance)
  * many. */
 #define SURE 0.4
 #define SURE_VOTERS 8
+#define SURE_OF_TWO 12 /* of equal ones a choice at random is the same mark every other time */
 
 struct ballot {
     double period, score, size, tolerance;
@@ -129,10 +130,15 @@ static bool vote(const struct marks *marks, struct ballot *best)
             }
         }
     }
-    if (marks->sieve.feature != SIEVE_OFF && marks->per_turn > 1) { /* a zero must be sure */
-        return found && n >= SURE_VOTERS && best->score > SURE * (double)n;
+    if (!found) {
+        return false;
     }
-    return found && (n < 4 || best->score > -0.25 * (double)n);
+    if (marks->sieve.feature != SIEVE_OFF && marks->per_turn > 1) { /* a zero must be sure */
+        size_t least = marks->per_turn == 2 ? SURE_OF_TWO : SURE_VOTERS;
+
+        return n >= least && best->score > SURE * (double)n;
+    }
+    return n < 4 || best->score > -0.25 * (double)n;
 }
 
 /* True for every mark, or for one of the equal ones of a turn. */
