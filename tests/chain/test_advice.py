@@ -92,7 +92,8 @@ class Limits(unittest.TestCase):
     def test_limits(self):
         for check, text in self.jobs():
             with self.subTest(check):
-                _, _, value = self.verdict(check, text)
+                _, limit, value = self.verdict(check, text)
+                self.assertEqual(limit, {"correction-force": 15, "conditioning": 10}.get(check, 3))  # as the table has it
                 self.assertGreater(value, 0.5)
                 unit = {"correction-force": " %", "conditioning": ""}.get(check, " s.e.")
                 at = lambda *shares: f"{check} = " + " ".join(f"{s * value:.6g}{unit}" for s in shares)
