@@ -24,13 +24,14 @@ struct mean {
 
 /* The mean of `count` (>= 1) block vectors with their turns (> 0) and times t (s, ascending).
  *
- * cov = S * f / n: S the covariance of the blocks used, weighted by their turns and drawn towards a
- * round one by 10 degrees of freedom (noise that does not know the shaft is round); f their
- * long-run factor (longrun.h). It is made to be read with chi-squared: the region |error|^2 < 5.99
- * of cov holds the truth 95 times in 100, few blocks and slow noise allowed for, and no wider
- * quantile is due. Hotelling's T2 on n-1 degrees of freedom, which is wider, then holds it 97.7
- * times in 100 for 16 blocks in white noise, 96 times for 60. One block has no scatter: half of its
- * squared amplitude stands for each variance.
+ * cov = S * f * g / n: S the covariance of the blocks used, weighted by their turns and drawn
+ * towards a round one by 10 degrees of freedom (noise that does not know the shaft is round); f
+ * their long-run factor (longrun.h); g what the turns that neighbouring blocks share take from
+ * their scatter (5 % for blocks of 4 turns, 1 % for 24). It is made to be read with chi-squared:
+ * the region |error|^2 < 5.99 of cov holds the truth 95 times in 100, few blocks and slow noise
+ * allowed for, and no wider quantile is due. Hotelling's T2 on n-1 degrees of freedom, which is
+ * wider, then holds it 97.7 times in 100 for 16 blocks in white noise, 96 times for 60. One block
+ * has no scatter: half of its squared amplitude stands for each variance.
  *
  * NaN in: NaN out. Returns 0; -1 when memory is out; -2 for no blocks. */
 int mean_of_blocks(const double complex *vectors, const double *turns, const double *t,
