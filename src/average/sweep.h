@@ -18,28 +18,24 @@ struct sweep_fit {
     double variance; /* of each component: cov is {variance, 0, variance} */
     size_t used;     /* blocks with a weight */
     double turns;    /* in these blocks */
-    double freedom;  /* residual degrees of freedom of a component */
+    double freedom;  /* so many blocks' noise averages to that variance: 1..used */
 };
 
 enum sweep_result { SWEEP_MADE, SWEEP_OUTSIDE, SWEEP_SPARSE };
 
-/* Fits Z(w) = a + b (w - w0) + c (w - w0)^2 around w0 to the blocks nearest in speed, with tricube
- * weights (W. S. Cleveland, J. Am. Stat. Assoc. 74 (1979) 829-836), and gives a, the vector at w0.
+/* The vector at w0 of a smooth curve Z(w) through the blocks nearest in speed, up to SMOOTH_MOST (smooth.h).
  *
- * The sweep within a block is allowed for twice. Its vector is the mean over the block, so that the
- * square is (w_k - w0)^2 + d_k^2/12 with d_k the change of speed within it. And a machine that
- * changes its speed answers late: to first order in the rate w' the 1x vector of a force that grows
- * with w^2 is Z + (j/2) w' (Z'' - 2 Z/w^2), for any linear machine and sensor (expansion of the
- * convolution with the impulse response about the instantaneous frequency; B. van der Pol, J. IEE
- * 93 III (1946) 153-158, calls its first term the quasi-stationary one). Both stand in the
- * regression.
+ * The sweep blurs what a block shows, in two ways. A machine that changes its speed answers late: an unbalance is
+ * the second derivative of a displacement that turns with the shaft, and passing exp(j phi(t)) of rate phi'' = w'
+ * through any linear machine and sensor gives exp((j/2) w' d^2/dw^2) Z (the convolution with the impulse response
+ * about the instantaneous frequency, to all orders where w' is steady over the machine's memory; B. van der Pol,
+ * J. IEE 93 III (1946) 153-158, calls its first term the quasi-stationary one; here lag counts positive). And its vector is the
+ * mean over the block, within which the speed changes by d: exp((d^2/24) d^2/dw^2) Z, to the fourth order
+ * in d.
  *
- * Five blocks and more are tried; the widest neighbourhood is taken whose result agrees with all
- * narrower ones (intersection of confidence intervals, A. Goldenshluger & A. Nemirovski, Math.
- * Methods Stat. 6 (1997) 135-170), or a narrower one whose variance is far less. The variance comes
- * from the residuals there, with their lag-1 correlation, widened for few degrees of freedom like
- * mean.h's, plus what the result still moved from the narrower neighbourhood beyond its own
- * scatter, plus the order of the second term of the late answer.
+ * The variance is the curve's, whatever its bend, size and noise may be as the blocks tell, plus what
+ * demodulation over n turns leaves of the twofold running speed while Z changes by D within the block: D/(4 pi n)
+ * (one integration by parts). To be read with chi-squared, like mean.h's.
  *
  * Returns SWEEP_MADE; SWEEP_OUTSIDE where the speed is not among those recorded (half of a block's
  * own sweep is allowed beyond the first and the last) or lies in a gap between them; SWEEP_SPARSE
