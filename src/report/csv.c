@@ -3,25 +3,34 @@
 #include <math.h>
 #include <string.h>
 
+#include "report/paper.h"
+
 static void begin(struct csv *csv)
 {
     if (csv->cells++ > 0)
         buffer_add(csv->out, ",", 1);
 }
 
-static void quoted(struct csv *csv, const char *text, int guard)
+/* Nothing of a stream reaches a terminal or a spreadsheet as a control character: as in the text.
+ */
+static void quoted(struct csv *csv, const char *raw, int guard)
 {
+    struct buffer clean = BUFFER_INIT;
+    paper_clean(&clean, raw);
+    const char *text = clean.bytes && !clean.failed ? clean.bytes : "";
+    csv->out->failed = csv->out->failed || clean.failed;
     if (!guard && text[strcspn(text, "\",\r\n")] == '\0') {
         buffer_text(csv->out, text);
-        return;
+    } else {
+        buffer_text(csv->out, guard ? "\"'" : "\"");
+        for (; *text; text++) {
+            if (*text == '"')
+                buffer_add(csv->out, "\"", 1);
+            buffer_add(csv->out, text, 1);
+        }
+        buffer_add(csv->out, "\"", 1);
     }
-    buffer_text(csv->out, guard ? "\"'" : "\"");
-    for (; *text; text++) {
-        if (*text == '"')
-            buffer_add(csv->out, "\"", 1);
-        buffer_add(csv->out, text, 1);
-    }
-    buffer_add(csv->out, "\"", 1);
+    buffer_release(&clean);
 }
 
 void csv_text(struct csv *csv, const char *text)

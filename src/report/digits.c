@@ -82,12 +82,25 @@ char *digits_half(char *text, double half, int place)
     return digits_at(text, ceil(half / step - HAIR) * step, place);
 }
 
+char *digits_beside(char *text, double half, int place)
+{
+    if (!(half > 0) || !isfinite(half)) {
+        strcpy(text, "-");
+        return text;
+    }
+    if (half >= 0.5 * pow(10, place))
+        return digits_half(text, half, place);
+    text[0] = '<';
+    digits_at(text + 1, pow(10, place), place);
+    return text;
+}
+
 bool digits_half_counts(double half, int place)
 {
     return half >= 0.01 * pow(10, place);
 }
 
-static int angle_place(double half_deg)
+int digits_angle_place(double half_deg)
 {
     return half_deg >= 1 ? 0 : -1;
 }
@@ -98,7 +111,7 @@ char *digits_angle(char *text, double deg, double half_deg)
         strcpy(text, "-");
         return text;
     }
-    int place = angle_place(half_deg);
+    int place = digits_angle_place(half_deg);
     double scale = pow(10, -place);
     double rounded = round(angle_wrap_360(deg) * scale) / scale;
     digits_at(text, rounded >= 360 ? 0 : rounded, place);
@@ -109,7 +122,7 @@ char *digits_angle(char *text, double deg, double half_deg)
 
 char *digits_angle_half(char *text, double half_deg)
 {
-    return digits_half(text, half_deg, angle_place(half_deg));
+    return digits_half(text, half_deg, digits_angle_place(half_deg));
 }
 
 char *digits_chance(char *text, double probability)

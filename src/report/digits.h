@@ -33,6 +33,10 @@ char *digits_at(char *text, double value, int place);
 /* The half width itself, rounded up to 10^place of the number that it stands beside: "0.083". */
 char *digits_half(char *text, double half, int place);
 
+/* A half width beside a number shown to 10^place: as digits_half; "<0.1", less than one of the last
+ * digit, where it is below half of that; "-" where it is not known (NaN, <= 0). */
+char *digits_beside(char *text, double half, int place);
+
 /* False where a half width is below a hundredth of the last place shown: it says nothing (NaN:
  * false). */
 bool digits_half_counts(double half, int place);
@@ -40,6 +44,9 @@ bool digits_half_counts(double half, int place);
 /* An angle in [0, 360): tenths of a degree where it is known to less than a degree, or not at all
  * known how well (then without a trailing ".0"); whole degrees otherwise. */
 char *digits_angle(char *text, double deg, double half_deg);
+
+/* The decimal exponent of the last digit that digits_angle shows where the half width is known. */
+int digits_angle_place(double half_deg);
 
 /* Half width of an angle, rounded up to the same place as digits_angle shows. */
 char *digits_angle_half(char *text, double half_deg);

@@ -372,6 +372,11 @@ bool dossier_left_out(const struct dossier *dossier, int sensor, const char *con
     return dossier->forecasts.count > 0;
 }
 
+bool dossier_is_unreadable(const struct finding_record *f)
+{
+    return f->verdict == VERDICT_REFUSE && strcmp(f->check, "readable") == 0;
+}
+
 enum verdict dossier_verdict(const struct dossier *dossier, const char *run, int sensor)
 {
     enum verdict worst = VERDICT_OK;

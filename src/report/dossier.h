@@ -89,8 +89,6 @@ void dossier_cov(const struct dossier_reading *reading, double cov[3]);
  */
 bool dossier_is_audit(const struct dossier *dossier);
 
-/* The gravest verdict of any finding on that run and sensor (findings on the whole run included).
- */
 /* The run that a record is relative to, whose weights stay on; -1: the rotor as found, also where a run
  * has just that name (the sheet does not let its weights stay on). */
 int dossier_base(const struct job *job, const char *relative_to);
@@ -108,6 +106,11 @@ bool dossier_is_runout(const struct dossier *dossier, const char *run);
 /* True where something is forecast, but not that sensor in that condition: solve did without it. */
 bool dossier_left_out(const struct dossier *dossier, int sensor, const char *condition);
 
+/* True for the finding that a recording of an audit could not be read. */
+bool dossier_is_unreadable(const struct finding_record *f);
+
+/* The gravest verdict of any finding on that run and sensor (findings on the whole run included).
+ */
 enum verdict dossier_verdict(const struct dossier *dossier, const char *run, int sensor);
 
 /* Name of a sensor or plane of the job; "" for an index that is none. */

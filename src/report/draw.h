@@ -2,8 +2,8 @@
  *
  * A drawing looks at the rotor from the side that the sheet names (rotor.seen_from): the mark on top,
  * and angles against rotation counter-clockwise where the rotor turns clockwise as seen, clockwise
- * where it turns counter-clockwise. Where the sheet names no rotation, clockwise is assumed, no
- * arrow is drawn, and the drawing says so.
+ * where it turns counter-clockwise. Where the sheet names no rotation it is drawn as if that were clockwise, without
+ * an arrow and without a word which way angles run, and says that it may be the mirror image of the machine.
  */
 #ifndef LOPSIDE_REPORT_DRAW_H
 #define LOPSIDE_REPORT_DRAW_H

@@ -119,21 +119,24 @@ static void stays(const struct dossier *d, size_t plane, struct buffer *out)
 static void legend(const struct dossier *d, const struct job_plane *plane, struct buffer *out)
 {
     const struct job *job = d->job;
-    static const char *const turns[] = {"not named in the sheet", "clockwise", "counter-clockwise"};
+    static const char *const turns[] = {"", "clockwise", "counter-clockwise"};
+    static const char key[] = "full circle: fit; square: remove; crossed: taken; grey: stays on";
     bool left = (job->angles == SENSE_WITH) == (clockwise(job) > 0);
     double y = MIDDLE_Y + OUTSIDE + 26;
     svg_text(out, "bold", "middle", MIDDLE_X, y, "plane '%s'%s%s", plane->name,
              job->seen_from[0] ? ", seen from " : ", seen from a side the sheet does not name",
              job->seen_from);
-    svg_text(out, "", "middle", MIDDLE_X, y + 17, "rotation as seen: %s", turns[job->turning]);
-    svg_text(out, "", "middle", MIDDLE_X, y + 34, "angles %s: %s in this drawing",
-             job_sense_text(job), left ? "counter-clockwise" : "clockwise");
-    if (job->turning == TURNING_NONE)
-        svg_text(out, "bold", "middle", MIDDLE_X, y + 51,
-                 "Rotation ASSUMED clockwise here: check before fitting.");
-    else
-        svg_text(out, "small", "middle", MIDDLE_X, y + 51,
-                 "full circle: fit; square: remove; crossed: taken; grey: stays on");
+    if (job->turning == TURNING_NONE) {
+        svg_text(out, "bold", "middle", MIDDLE_X, y + 17,
+                 "The sheet does not say which way it turns: this may");
+        svg_text(out, "bold", "middle", MIDDLE_X, y + 34,
+                 "be the MIRROR IMAGE of the machine. Go by the angles.");
+    } else {
+        svg_text(out, "", "middle", MIDDLE_X, y + 17, "rotation as seen: %s", turns[job->turning]);
+        svg_text(out, "", "middle", MIDDLE_X, y + 34, "angles %s: %s in this drawing",
+                 job_sense_text(job), left ? "counter-clockwise" : "clockwise");
+    }
+    svg_text(out, "small", "middle", MIDDLE_X, y + 51, "%s", key);
 }
 
 double draw_plane(const struct dossier *d, size_t plane, double y, struct buffer *out)

@@ -4,6 +4,7 @@
 
 #include "base/angle.h"
 #include "report/draw.h"
+#include "report/runout.h"
 #include "report/shown.h"
 #include "report/text_readings.h"
 #include "sheet/units.h"
@@ -27,10 +28,22 @@ struct polar {
     size_t name_count;
 };
 
+/* A reading with phase that says something of its sensor: a slow roll does so of probes only. */
+static bool is_drawn(const struct dossier *d, const struct reading_record *r)
+{
+    return r->has_phase && (!dossier_is_runout(d, r->run) || runout_has_effect(d, r->sensor));
+}
+
 static bool is_here(const struct polar *p, const struct dossier_reading *r)
 {
-    return (size_t)r->reading.sensor == p->index && r->reading.has_phase &&
+    return (size_t)r->reading.sensor == p->index && is_drawn(p->d, &r->reading) &&
            strcmp(r->reading.condition, p->condition) == 0;
+}
+
+/* Reading i as it is drawn: without runout, as the forecast is. */
+static struct dossier_reading drawn(const struct polar *p, size_t i)
+{
+    return runout_off(p->d, &p->d->readings.items[i]);
 }
 
 static bool forecast_here(const struct polar *p, const struct forecast_record *f)
@@ -65,9 +78,9 @@ static void measure(struct polar *p)
 {
     double most = 0;
     for (size_t i = 0; i < p->d->readings.count; i++) {
-        const struct reading_record *r = &p->d->readings.items[i].reading;
-        if (is_here(p, &p->d->readings.items[i]))
-            most = fmax(most, peak(p, r->amplitude, r->speed_rpm));
+        const struct dossier_reading item = drawn(p, i);
+        if (is_here(p, &item))
+            most = fmax(most, peak(p, item.reading.amplitude, item.reading.speed_rpm));
     }
     for (size_t i = 0; i < p->d->forecasts.count; i++) {
         const struct forecast_record *f = &p->d->forecasts.items[i];
@@ -148,10 +161,10 @@ static bool is_clear(const struct polar *p, struct svg_point at)
             return false;
     }
     for (size_t i = 0; i < p->d->readings.count; i++) {
-        const struct reading_record *r = &p->d->readings.items[i].reading;
-        if (!is_here(p, &p->d->readings.items[i]))
+        const struct dossier_reading item = drawn(p, i);
+        if (!is_here(p, &item))
             continue;
-        struct svg_point other = place(p, r->vector, r->speed_rpm);
+        struct svg_point other = place(p, item.reading.vector, item.reading.speed_rpm);
         if (fabs(at.x - other.x) < 10 && fabs(at.y - other.y) < 10)
             return false;
     }
@@ -185,7 +198,10 @@ static void point(struct polar *p, const struct dossier_reading *item, int numbe
     if (far > 18)
         svg_line(p->out, "thin", at.x, at.y, name.x + 8 / far * (at.x - name.x),
                  name.y + 8 / far * (at.y - name.y));
-    if (is_bare(p, r->run))
+    if (dossier_is_runout(p->d, r->run)) {
+        svg_line(p->out, "axis", at.x - 5, at.y - 5, at.x + 5, at.y + 5);
+        svg_line(p->out, "axis", at.x - 5, at.y + 5, at.x + 5, at.y - 5);
+    } else if (is_bare(p, r->run))
         svg_circle(p->out, item->use ? "now" : "moved", at.x, at.y, 4);
     else
         svg_square(p->out, "moved", at.x, at.y, 4);
@@ -195,6 +211,14 @@ static void point(struct polar *p, const struct dossier_reading *item, int numbe
         p->names[p->name_count++] = name;
 }
 
+/* What stands behind a reading's name: a slow roll is none of as found. */
+static const char *kind_of(const struct polar *p, const char *run)
+{
+    if (dossier_is_runout(p->d, run))
+        return " (runout)";
+    return is_bare(p, run) ? "" : " (weights on)";
+}
+
 static void legend(const struct polar *p, const struct dossier_reading *item, int number, double y)
 {
     struct shown s = text_readings_shown(p->d, item);
@@ -202,7 +226,7 @@ static void legend(const struct polar *p, const struct dossier_reading *item, in
     svg_text(p->out, "small", "start", 14, y, "%d  %s: %s %s at %s deg lag%s%s", number,
              item->reading.run, digits_text(amplitude, s.amplitude, s.half),
              units_show_text(&p->sensor->show, unit), digits_angle(lag, s.lag_deg, s.lag_half),
-             is_bare(p, item->reading.run) ? "" : " (weights on)", item->use ? "" : " REFUSED");
+             kind_of(p, item->reading.run), item->use ? "" : " REFUSED");
 }
 
 /* Where the vibration as found lies: the middle of the bare runs that are used; false: none. */
@@ -211,10 +235,11 @@ static bool as_found(const struct polar *p, struct svg_point *at)
     size_t count = 0;
     *at = (struct svg_point){0, 0};
     for (size_t i = 0; i < p->d->readings.count; i++) {
-        const struct dossier_reading *item = &p->d->readings.items[i];
-        if (!is_here(p, item) || !item->use || !is_bare(p, item->reading.run))
+        const struct dossier_reading item = drawn(p, i);
+        if (!is_here(p, &item) || !item.use || !is_bare(p, item.reading.run) ||
+            dossier_is_runout(p->d, item.reading.run))
             continue;
-        struct svg_point one = place(p, item->reading.vector, item->reading.speed_rpm);
+        struct svg_point one = place(p, item.reading.vector, item.reading.speed_rpm);
         at->x += one.x;
         at->y += one.y;
         count++;
@@ -231,10 +256,11 @@ static void effects(const struct polar *p)
     if (!as_found(p, &from))
         return;
     for (size_t i = 0; i < p->d->readings.count; i++) {
-        const struct reading_record *r = &p->d->readings.items[i].reading;
-        if (!is_here(p, &p->d->readings.items[i]) || is_bare(p, r->run))
+        const struct dossier_reading item = drawn(p, i);
+        if (!is_here(p, &item) || is_bare(p, item.reading.run) ||
+            dossier_is_runout(p->d, item.reading.run))
             continue;
-        struct svg_point to = place(p, r->vector, r->speed_rpm);
+        struct svg_point to = place(p, item.reading.vector, item.reading.speed_rpm);
         svg_line(p->out, "trial", from.x, from.y, to.x, to.y);
     }
 }
@@ -257,10 +283,10 @@ bool draw_polar_begins(const struct dossier *d, size_t i)
     const struct reading_record *r = &d->readings.items[i].reading;
     for (size_t k = 0; k < i; k++) {
         const struct reading_record *o = &d->readings.items[k].reading;
-        if (o->has_phase && o->sensor == r->sensor && strcmp(o->condition, r->condition) == 0)
+        if (is_drawn(d, o) && o->sensor == r->sensor && strcmp(o->condition, r->condition) == 0)
             return false;
     }
-    return r->has_phase;
+    return is_drawn(d, r);
 }
 
 double draw_polar(const struct dossier *d, size_t sensor, const char *condition, double y,
@@ -272,17 +298,23 @@ double draw_polar(const struct dossier *d, size_t sensor, const char *condition,
                       .condition = condition,
                       .out = out};
     int count = 0, number = 0;
+    bool off = false;
     char label[200];
-    for (size_t i = 0; i < d->readings.count; i++)
-        count += is_here(&p, &d->readings.items[i]);
+    for (size_t i = 0; i < d->readings.count; i++) {
+        const struct dossier_reading *item = &d->readings.items[i];
+        count += is_here(&p, item);
+        off = off || (is_here(&p, item) &&
+                      (runout_comes_off(d, item) || dossier_is_runout(d, item->reading.run)));
+    }
     double below = MIDDLE_Y + RIM + 40, high = below + LINE * (count + 4);
     snprintf(label, sizeof label, "Polar plot of the 1x vectors of %s", p.sensor->name);
     measure(&p);
     svg_begin(out, y, WIDE, high, label);
     web(&p);
     for (size_t i = 0; i < d->readings.count; i++) {
-        if (is_here(&p, &d->readings.items[i]))
-            region(&p, &d->readings.items[i]);
+        const struct dossier_reading item = drawn(&p, i);
+        if (is_here(&p, &item))
+            region(&p, &item);
     }
     effects(&p);
     for (size_t i = 0; i < d->forecasts.count; i++) {
@@ -290,10 +322,11 @@ double draw_polar(const struct dossier *d, size_t sensor, const char *condition,
             forecast(&p, &d->forecasts.items[i]);
     }
     for (size_t i = 0; i < d->readings.count; i++) {
-        if (!is_here(&p, &d->readings.items[i]))
+        const struct dossier_reading item = drawn(&p, i);
+        if (!is_here(&p, &item))
             continue;
-        point(&p, &d->readings.items[i], ++number);
-        legend(&p, &d->readings.items[i], number, below + LINE * (number - 1));
+        point(&p, &item, ++number);
+        legend(&p, &item, number, below + LINE * (number - 1));
     }
     below += LINE * count;
     svg_text(out, "small", "start", 14, below,
@@ -302,7 +335,8 @@ double draw_polar(const struct dossier *d, size_t sensor, const char *condition,
              "dashed: effect of weights; solid: to the forecast");
     svg_text(out, "small", "start", 14, below + 2 * LINE,
              "dotted ring: 95 %% of next readings; dash-dot ring: target");
-    svg_text(out, "small", "start", 14, below + 3 * LINE, "condition: %s", condition);
+    svg_text(out, "small", "start", 14, below + 3 * LINE, "condition: %s%s", condition,
+             off ? "; cross: runout, which is taken off the others here" : "");
     svg_end(out);
     return high;
 }

@@ -11,6 +11,7 @@
 #include "report/html_others.h"
 #include "report/html_part.h"
 #include "report/phrase.h"
+#include "report/runout.h"
 #include "report/text_answer.h"
 #include "report/text_audit.h"
 #include "report/text_readings.h"
@@ -78,6 +79,8 @@ static void forecast(const struct dossier *d, struct buffer *out)
         if (blind)
             html_part_say(out, "note", "%s", blind);
         html_part_say(out, "note", "%s", text_answer_after);
+        if (runout_forecast(d))
+            html_part_say(out, "note", "%s", runout_forecast(d));
         html_part_say(out, "note", "%s", text_answer_1x_only);
     }
     if (d->residuals.count > 0) {
@@ -131,6 +134,11 @@ static void readings(const struct dossier *d, struct buffer *out)
         text_readings_overall(d, first, i, &overall);
         if (overall.failed || overall.length > 0)
             html_part_take(out, "p", &overall);
+        buffer_release(&overall);
+        runout_words(d, first, i, &overall);
+        if (overall.failed || overall.length > 0)
+            html_part_take(out, "p", &overall);
+        buffer_release(&overall);
     }
     if (text_readings_words(d))
         html_part_say(out, "note", "%s", text_readings_words(d));

@@ -7,6 +7,7 @@
 #include "base/status.h"
 #include "report/paper.h"
 #include "report/phrase.h"
+#include "report/runout.h"
 #include "report/shown.h"
 #include "report/table.h"
 #include "report/text_others.h"
@@ -382,7 +383,8 @@ static double lost_before(const struct dossier *d, size_t sensor, const char *co
             continue;
         if (base >= 0 ? run != base : !job_run_is_bare(d->job, (size_t)run))
             continue;
-        sum += r->vector;
+        const struct dossier_reading left = runout_off(d, &d->readings.items[i]);
+        sum += left.reading.vector;
         rpm = r->speed_rpm;
         count++;
     }
@@ -497,6 +499,8 @@ void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
     if (blind)
         paper_wrap(out, 2, 2, blind);
     paper_wrap(out, 2, 2, text_answer_after);
+    if (runout_forecast(dossier))
+        paper_wrap(out, 2, 2, runout_forecast(dossier));
     paper_wrap(out, 2, 2, text_answer_1x_only);
 }
 

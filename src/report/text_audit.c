@@ -8,11 +8,6 @@
 #include "report/table.h"
 #include "report/text_readings.h"
 
-static bool is_unreadable(const struct finding_record *f)
-{
-    return f->verdict == VERDICT_REFUSE && strcmp(f->check, "readable") == 0;
-}
-
 static enum verdict verdict_of(const struct dossier *d, const struct dossier_reading *item)
 {
     enum verdict verdict = dossier_verdict(d, item->reading.run, item->reading.sensor);
@@ -27,7 +22,7 @@ void text_audit_summary(const struct dossier *dossier, struct buffer *out)
         open += !dossier->readings.items[i].judged;
     }
     for (size_t i = 0; i < dossier->findings.count; i++)
-        unreadable += is_unreadable(&dossier->findings.items[i]);
+        unreadable += dossier_is_unreadable(&dossier->findings.items[i]);
     paper_heading(out, "CAN THESE READINGS BE TRUSTED?");
     paper_say(out, 2, 2,
               "%zu readings from %zu recordings: %zu in order, %zu with caution, %zu refused.",
@@ -103,7 +98,7 @@ void text_audit_rows(const struct dossier *dossier, struct table *table)
     for (size_t i = 0; i < dossier->readings.count; i++)
         audit_row(dossier, &dossier->readings.items[i], table);
     for (size_t i = 0; i < dossier->findings.count; i++) {
-        if (is_unreadable(&dossier->findings.items[i]))
+        if (dossier_is_unreadable(&dossier->findings.items[i]))
             unreadable_row(&dossier->findings.items[i], table);
     }
 }

@@ -6,6 +6,7 @@
 
 #include "report/paper.h"
 #include "report/phrase.h"
+#include "report/runout.h"
 #include "report/table.h"
 #include "sheet/units.h"
 
@@ -29,8 +30,7 @@ static void vector_cells(struct table *table, const struct shown *s, const char 
     char text[DIGITS_ROOM];
     int place = digits_place(s->amplitude, s->half);
     table_cell(table, "%s %s", digits_text(text, s->amplitude, s->half), unit);
-    table_cell(table, "%s",
-               digits_half_counts(s->half, place) ? digits_half(text, s->half, place) : "-");
+    table_cell(table, "%s", digits_beside(text, s->half, place));
     if (isnan(s->lag_deg)) {
         table_cell(table, "no phase");
         table_cell(table, "-");
@@ -39,13 +39,11 @@ static void vector_cells(struct table *table, const struct shown *s, const char 
         table_cell(table, "-");
     } else {
         table_cell(table, "%s deg", digits_angle(text, s->lag_deg, s->lag_half));
-        table_cell(table, "%s",
-                   digits_half_counts(s->lag_half, -1) ? digits_angle_half(text, s->lag_half)
-                                                       : "-");
+        table_cell(table, "%s", digits_beside(text, s->lag_half, digits_angle_place(s->lag_half)));
     }
 }
 
-/* What became of a reading. A runout run is for all conditions, so it is not told from them. */
+/* What became of a reading. A slow roll is for all conditions, so it is not told from them. */
 static const char *use_text(const struct dossier *d, const struct dossier_reading *item)
 {
     const struct reading_record *r = &item->reading;
@@ -54,7 +52,7 @@ static const char *use_text(const struct dossier *d, const struct dossier_readin
     if (!item->use)
         return "REFUSED";
     if (dossier_is_runout(d, r->run))
-        return "used";
+        return runout_has_effect(d, r->sensor) ? "taken off" : "no effect";
     return dossier_left_out(d, r->sensor, r->condition) ? "not used" : "used";
 }
 
@@ -86,7 +84,8 @@ void text_readings_group_heading(const struct dossier *d, const struct reading_r
 {
     char speed[DIGITS_ROOM];
     int run = job_find_run(d->job, r->run);
-    buffer_format(text, "Run '%s': ", r->run);
+    buffer_format(text, "Run '%s'%s: ", r->run,
+                  dossier_is_runout(d, r->run) ? ", slow roll (runout)" : "");
     if (run >= 0) {
         phrase_weights(text, d->job, (size_t)run);
         buffer_text(text, "; ");
@@ -174,6 +173,16 @@ const char *text_readings_words(const struct dossier *dossier)
     return NULL;
 }
 
+/* What stands below a table; releases it. */
+static void below(struct buffer *text, struct buffer *out)
+{
+    if (text->failed)
+        out->failed = 1;
+    else if (text->length > 0)
+        paper_wrap(out, 4, 6, text->bytes);
+    buffer_release(text);
+}
+
 void text_readings_all(const struct dossier *dossier, struct buffer *out)
 {
     if (dossier->readings.count == 0)
@@ -195,11 +204,9 @@ void text_readings_all(const struct dossier *dossier, struct buffer *out)
         table_release(&table);
         text = (struct buffer)BUFFER_INIT;
         text_readings_overall(dossier, first, i, &text);
-        if (text.failed)
-            out->failed = 1;
-        else if (text.bytes)
-            paper_wrap(out, 4, 6, text.bytes);
-        buffer_release(&text);
+        below(&text, out);
+        runout_words(dossier, first, i, &text);
+        below(&text, out);
     }
     if (text_readings_words(dossier))
         paper_wrap(out, 2, 2, text_readings_words(dossier));

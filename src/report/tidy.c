@@ -4,6 +4,7 @@
 #include <stdio.h>
 
 #include "report/csv.h"
+#include "report/runout.h"
 #include "report/shown.h"
 #include "report/text_readings.h"
 #include "sheet/units.h"
@@ -34,6 +35,48 @@ static void vector_cells(struct csv *csv, const struct shown *s)
     csv_number(csv, s->lag_half);
 }
 
+static const char *used(const struct dossier *d, const struct dossier_reading *item)
+{
+    const struct reading_record *r = &item->reading;
+    if (!item->judged)
+        return "not vetted";
+    if (dossier_is_runout(d, r->run) && !runout_has_effect(d, r->sensor))
+        return "no";
+    return item->use ? "yes" : "no";
+}
+
+/* What the sheet says of the run: nothing of an ordinary one. */
+static const char *role(const struct dossier *d, const char *run)
+{
+    const int index = job_find_run(d->job, run);
+    return index >= 0 ? d->job->runs[index].role : "";
+}
+
+static void without_runout_cells(const struct dossier *d, const struct dossier_reading *item,
+                                 struct csv *csv)
+{
+    struct shown left = {.amplitude = NAN, .lag_deg = NAN};
+    if (runout_comes_off(d, item)) {
+        const struct dossier_reading off = runout_off(d, item);
+        left = text_readings_shown(d, &off);
+    }
+    csv_number(csv, left.amplitude);
+    csv_number(csv, left.lag_deg);
+}
+
+/* Of an audit: a recording without a reading. */
+static void unreadable_row(const struct finding_record *f, struct csv *csv)
+{
+    csv_text(csv, f->run);
+    for (int i = 1; i < 14; i++)
+        csv_plain(csv, "");
+    csv_plain(csv, "no");
+    csv_plain(csv, verdicts[f->verdict]);
+    for (int i = 0; i < 3; i++)
+        csv_plain(csv, "");
+    csv_row(csv);
+}
+
 static void readings(const struct dossier *d, struct csv *csv)
 {
     static const char *const heads[] = {"run",
@@ -52,6 +95,9 @@ static void readings(const struct dossier *d, struct csv *csv)
                                         "drift (%)",
                                         "used",
                                         "verdict",
+                                        "role",
+                                        "1x amplitude without runout (unit)",
+                                        "lag without runout (deg)",
                                         NULL};
     csv_head(csv, heads);
     for (size_t i = 0; i < d->readings.count; i++) {
@@ -69,10 +115,16 @@ static void readings(const struct dossier *d, struct csv *csv)
         csv_number(csv, r->steady.amplitude_pct);
         csv_number(csv, r->steady.phase_deg);
         csv_number(csv, r->steady.drift_pct);
-        csv_plain(csv, !item->judged ? "not vetted" : item->use ? "yes" : "no");
+        csv_plain(csv, used(d, item));
         csv_plain(csv,
                   verdicts[item->use ? dossier_verdict(d, r->run, r->sensor) : VERDICT_REFUSE]);
+        csv_plain(csv, role(d, r->run));
+        without_runout_cells(d, item, csv);
         csv_row(csv);
+    }
+    for (size_t i = 0; dossier_is_audit(d) && i < d->findings.count; i++) {
+        if (dossier_is_unreadable(&d->findings.items[i]))
+            unreadable_row(&d->findings.items[i], csv);
     }
 }
 

@@ -4,7 +4,9 @@ Where a weight is drawn comes from the coordinates of the picture alone. Seen fr
 names, with the mark on top, an angle against rotation runs counter-clockwise where the rotor turns
 clockwise: by the meaning of the words.
 """
+import csv
 import html.parser
+import io
 import json
 import math
 import unittest
@@ -47,6 +49,47 @@ def drawn(picture):
     return planes
 
 
+def written(*arguments):
+    """The report of a job with a slow roll. Right triangles of sides 3, 4, 5: probe P reads 50 um at a lag of atan(40/30) as
+    found and 36.0555 um at -atan(20/30) with the trial, and 30 um at 0 of them are runout: 40 um at 90 deg and
+    20 um at 270 deg are left."""
+    with chain.folder() as where:
+        (where / "job.ini").write_text("""[job]
+angles = against rotation
+phase = lag
+[rotor]
+service speed = 1500 rpm
+[sensor P]
+unit = um
+show = um pk-pk
+[sensor V]
+unit = mm/s
+show = mm/s rms
+[plane wheel]
+radius = 200 mm
+[run turned slowly]
+role = runout
+speed = 250 rpm
+reading P = 30 um pk-pk at 0 deg
+reading V = 0.1 mm/s rms at 10 deg
+[run f]
+speed = 1500 rpm
+reading P = 50 um pk-pk at 53.130102 deg
+reading V = 4 mm/s rms at 30 deg
+[run t]
+speed = 1500 rpm
+weight wheel = 30 g at 0 deg
+reading P = 36.055513 um pk-pk at 326.309932 deg
+reading V = 4 mm/s rms at 150 deg
+[aim]
+repeatability = 1 %
+""")
+        done = chain.lopside("balance", *arguments, where / "job.ini")
+        if done.returncode != 0:
+            raise AssertionError(chain.complaint(done))
+        return done.stdout.decode()
+
+
 class Tags(html.parser.HTMLParser):
     def __init__(self, text):
         super().__init__()
@@ -83,8 +126,11 @@ class Page(unittest.TestCase):
                         self.assertEqual("rotation" in groups, rotation is not None)
 
     def test_missing_rotation_is_said(self):
-        self.assertIn(b"ASSUMED", self.picture(solved(None)))
-        self.assertNotIn(b"ASSUMED", self.picture(solved("clockwise")))
+        open_, told = self.picture(solved(None)), self.picture(solved("clockwise"))
+        self.assertIn(b"MIRROR IMAGE", open_)
+        self.assertNotIn(b"MIRROR IMAGE", told)
+        self.assertIn(b"angles against rotation: counter-clockwise in this drawing", told)
+        self.assertNotIn(b"clockwise", open_)  # neither the rotation nor the way of the angles
 
     def test_arrow_turns_as_the_rotor(self):
         for rotation, way in (("clockwise", 1), ("counter-clockwise", -1)):
@@ -116,6 +162,47 @@ class Page(unittest.TestCase):
             done = chain.lopside("report", "--as", "svg", "--what", what, stdin=stream)
             found = {e.tag for e in ElementTree.fromstring(done.stdout).iter()}
             self.assertFalse(found & {SVG + t for t in ("script", "img", "b")})
+
+    def test_slow_roll(self):
+        for text in (written(), " ".join(Tags(written("--as", "html")).words)):
+            text = " ".join(text.split())
+            self.assertIn("Run 'turned slowly', slow roll (runout): no weights; 250 rpm", text)
+            self.assertIn("displacement probes (P),", text)
+            self.assertIn("No effect on V:", text)
+            self.assertIn("Without runout: P 40 um pk-pk at 90 deg lag.", text)
+            self.assertIn("Without runout: P 20 um pk-pk at 270 deg lag.", text)
+            self.assertIn("before and after are without runout", text)
+            self.assertRegex(text, r"P 30 um pk-pk - 0 deg - by hand taken off")
+            self.assertRegex(text, r"V 0.1 mm/s rms - 10 deg - by hand no effect")
+            self.assertEqual(text.count("slow roll (runout)"), 1)
+        rows = list(csv.DictReader(io.StringIO(written("--as", "csv"), newline="")))
+        self.assertEqual([r["role"] for r in rows], ["runout", "runout", "", "", "", ""])
+        self.assertEqual([r["used"] for r in rows], ["yes", "no", "yes", "yes", "yes", "yes"])
+        left = [(r["1x amplitude without runout (unit)"], r["lag without runout (deg)"]) for r in rows]
+        self.assertEqual([bool(a or b) for a, b in left], [False, False, True, False, True, False])
+        for row, amplitude, lag in ((2, 40, 90), (4, 20, 270)):
+            self.assertAlmostEqual(float(left[row][0]), amplitude, 3)
+            self.assertAlmostEqual(float(left[row][1]), lag, 3)
+
+    def test_slow_roll_is_drawn(self):
+        """The dots of probe P are the vectors without runout, as the forecast is; V has no dot of the slow roll."""
+        svg = ElementTree.fromstring(written("--as", "svg", "--what", "polar"))
+        plots = {}
+        for plot in svg.findall(SVG + "svg"):
+            plots[plot.get("aria-label").split()[-1]] = {
+                g.get("data-run"): g for g in plot.findall(SVG + "g") if g.get("data-what") == "reading"}
+        self.assertEqual(set(plots["V"]), {"f", "t"})
+        self.assertEqual(set(plots["P"]), {"turned slowly", "f", "t"})
+        found = plots["P"]["f"].find(SVG + "circle")
+        x, y = float(found.get("cx")), float(found.get("cy"))
+        corners = [tuple(map(float, c.split())) for c in
+                   plots["P"]["t"].find(SVG + "path").get("d").strip("MZ").split("L")]
+        trial = [sum(c[k] for c in corners) / len(corners) for k in (0, 1)]
+        # 90 and 270 deg: on one level, and the middle of the plot twice as far from one as from the other
+        self.assertAlmostEqual(y, trial[1], 1)
+        self.assertAlmostEqual((x + 2 * trial[0]) / 3, 215, 1)
+        self.assertLess(x, trial[0])  # lag grows against rotation: counter-clockwise from the top
+        self.assertIsNone(plots["P"]["turned slowly"].find(SVG + "circle"))
 
     def test_same_bytes(self):
         pages = {chain.lopside("report", "--as", "html", stdin=solved("clockwise")).stdout for _ in "12"}

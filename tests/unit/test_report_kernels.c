@@ -65,6 +65,27 @@ static void digits_round_half_widths_up(void **state)
     assert_string_equal(digits_half(text, NAN, -3), "-");
 }
 
+/* By hand from the rule: below half of the last digit it is less than one of it, and never hidden.
+ */
+static void digits_small_half_widths(void **state)
+{
+    (void)state;
+    static const struct {
+        double half;
+        int place;
+        const char *text;
+    } cases[] = {
+        {0.0008, -1, "<0.1"},  {0.003, -1, "<0.1"}, {0.049, -1, "<0.1"}, {0.051, -1, "0.1"},
+        {0.11, -1, "0.2"},     {1e-12, 0, "<1"},    {1e-12, 2, "<100"},  {0.6, 0, "1"},
+        {1e-9, -4, "<0.0001"}, {0, -1, "-"},        {-1, -1, "-"},       {NAN, -1, "-"},
+        {INFINITY, -1, "-"},
+    };
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        char text[DIGITS_ROOM];
+        assert_string_equal(digits_beside(text, cases[i].half, cases[i].place), cases[i].text);
+    }
+}
+
 /* What is shown, plus or minus what is shown, never excludes the range itself on the half width's
  * side. */
 static void digits_never_narrow_a_range(void **state)
@@ -232,7 +253,8 @@ static void table_never_cuts_a_number(void **state)
 static void csv_escapes(void **state)
 {
     (void)state;
-    /* Quoting after RFC 4180, 2.6 and 2.7; the characters that start a formula: common practice. */
+    /* Quoting after RFC 4180, 2.6 and 2.7; the characters that start a formula: common practice.
+     * Control characters are shown, not sent, as everywhere: a row is a line. */
     struct buffer out = BUFFER_INIT;
     struct csv csv = {&out, 0};
     csv_text(&csv, "plain");
@@ -244,6 +266,8 @@ static void csv_escapes(void **state)
     csv_text(&csv, "-x\"");
     csv_text(&csv, "@SUM");
     csv_text(&csv, "\tx");
+    csv_text(&csv, "\x1b[31mred\x07");
+    csv_plain(&csv, "\x1b]0;");
     csv_text(&csv, "");
     csv_text(&csv, NULL);
     csv_number(&csv, -1.5);
@@ -252,8 +276,9 @@ static void csv_escapes(void **state)
     csv_integer(&csv, 12);
     csv_row(&csv);
     assert_string_equal(out.bytes,
-                        "plain,\"a,b\",\"say \"\"go\"\"\",\"two\r\nlines\",\"'=1+1\",\"' +1\","
-                        "\"'-x\"\"\",\"'@SUM\",\"'\tx\",,,-1.5,,0,12\r\n");
+                        "plain,\"a,b\",\"say \"\"go\"\"\",two\\x0d\\x0alines,\"'=1+1\",\"' +1\","
+                        "\"'-x\"\"\",\"'@SUM\",\"'\\x09x\",\\x1b[31mred\\x07,\\x1b]0;,,,-1.5,,0,12"
+                        "\r\n");
     buffer_release(&out);
 }
 
@@ -321,6 +346,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(digits_follow_the_uncertainty),
         cmocka_unit_test(digits_round_half_widths_up),
+        cmocka_unit_test(digits_small_half_widths),
         cmocka_unit_test(digits_never_narrow_a_range),
         cmocka_unit_test(digits_angles),
         cmocka_unit_test(paper_shows_what_is_hostile),
