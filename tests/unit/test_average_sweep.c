@@ -194,7 +194,7 @@ static struct cover cover_of(const struct blocks *clean, double rpm, double comp
 /* The 95 % region of a reading holds the closed form, and is not much wider than it need be: half
  * of the errors of a region that is right lie within sqrt(ln 2 / ln 20) = 0.48 of its half width
  * (Rayleigh). Away from the critical speed 93 % or more, 90 % near it, where demodulation of a
- * quickly changing 1x is part of it. The binomial standard error of 200 is 1.5 % at 95 %. */
+ * quickly changing 1x is part of it. The binomial standard error of 120 is 2 % at 95 %. */
 static void covers_in_noise(void **state)
 {
     static const struct {
@@ -212,7 +212,7 @@ static void covers_in_noise(void **state)
         for (size_t i = 0; i < sizeof SPEEDS / sizeof *SPEEDS; i++) {
             bool away = SPEEDS[i] < 1000 || SPEEDS[i] > 1400;
             struct cover c =
-                cover_of(&clean, SPEEDS[i], truth(SPEEDS[i], 0.05), noise, 0, 200, &rng);
+                cover_of(&clean, SPEEDS[i], truth(SPEEDS[i], 0.05), noise, 0, 120, &rng);
             assert_true(c.held >= (away ? 93 : 90));
             assert_true(c.size < 0.7);
             assert_true(c.middle > 0.28 && c.middle < 0.6);
@@ -234,7 +234,7 @@ static void covers_in_slow_noise(void **state)
     for (size_t k = 0; k < 2; k++)
         for (size_t i = 0; i < 2; i++)
             assert_true(
-                cover_of(&clean, SPEEDS[i], truth(SPEEDS[i], 0.05), noise, SLOW[k], 200, &rng)
+                cover_of(&clean, SPEEDS[i], truth(SPEEDS[i], 0.05), noise, SLOW[k], 120, &rng)
                     .held >= 90);
 }
 
