@@ -1,6 +1,7 @@
 /* main.c - names the stages in the order of the chain, and what stands around it. */
 #include <fcntl.h>
 #include <signal.h>
+#include <stdbool.h>
 #include <stdio.h>
 #include <string.h>
 #include <unistd.h>
@@ -30,7 +31,7 @@ static const struct command commands[] = {
     {"average", stage_average, "blocks become one reading per sensor per run, with covariance"},
     {"vet", stage_vet, "may these readings carry a correction?"},
     {"solve", stage_solve, "responses, correction, placement, forecast, the next step"},
-    {"report", stage_report, "what people read: text, csv, json"},
+    {"report", stage_report, "what people read: text, html, csv, json, svg"},
     {"balance", desk_balance, "the six stages joined by pipes, from a sheet to a report"},
     {"new", desk_new, "a first job sheet out of recordings and a few answers"},
     {"check", desk_check, "is the sheet right, and what is on the channels?"},
@@ -85,12 +86,25 @@ static int run_command(const struct command *command, int argc, char **argv)
     return status == STATUS_DONE ? finish_output() : status; /* a failure has said its line */
 }
 
+static bool is_help(const char *name)
+{
+    return !strcmp(name, "help") || !strcmp(name, "--help") || !strcmp(name, "-h");
+}
+
+static int print_version(void)
+{
+    printf("lopside %s\n", LOPSIDE_VERSION);
+    return finish_output();
+}
+
 static int help(int argc, char **argv)
 {
-    if (argc < 3) {
+    if (argc < 3 || is_help(argv[2])) {
         print_help();
         return finish_output();
     }
+    if (!strcmp(argv[2], "--version"))
+        return print_version();
     const struct command *command = find(argv[2]);
     if (!command)
         return no_such_stage(argv[2]);
@@ -113,12 +127,10 @@ int main(int argc, char **argv)
         message("missing stage (see 'lopside help')");
         return STATUS_USAGE;
     }
-    if (!strcmp(argv[1], "help") || !strcmp(argv[1], "--help") || !strcmp(argv[1], "-h"))
+    if (is_help(argv[1]))
         return help(argc, argv);
-    if (!strcmp(argv[1], "--version")) {
-        printf("lopside %s\n", LOPSIDE_VERSION);
-        return finish_output();
-    }
+    if (!strcmp(argv[1], "--version"))
+        return print_version();
     const struct command *command = find(argv[1]);
     if (!command)
         return no_such_stage(argv[1]);

@@ -171,6 +171,8 @@ int options_parse(const struct usage *usage, int argc, char **argv, struct optio
         printf("lopside %s\n", LOPSIDE_VERSION);
         return OPTIONS_STOP;
     }
+    if (p.errors > 0) /* an argument may be missing only because an option was not understood */
+        return OPTIONS_MISUSE;
     if (operands->count < usage->least) {
         message("missing argument: %s (see 'lopside help%s%s')", usage->operands,
                 usage->stage ? " " : "", usage->stage ? usage->stage : "");

@@ -84,7 +84,8 @@ static int open_output(struct chain *chain)
     chain->output_fd = STDOUT_FILENO;
     if (!chain->output)
         return STATUS_DONE;
-    if (stat(chain->output, &what) == 0 && !S_ISREG(what.st_mode)) {
+    const bool exists = stat(chain->output, &what) == 0;
+    if (exists && !S_ISREG(what.st_mode)) {
         chain->output_fd = open(chain->output, O_WRONLY | O_CLOEXEC);
         return chain->output_fd < 0 ? output_failure(chain) : STATUS_DONE;
     }
@@ -103,9 +104,9 @@ static int open_output(struct chain *chain)
     }
     unfinished = chain->temporary;
     watch_signals(true);
-    mode_t mask = umask(0); /* as any new file, not mkstemp's 0600 */
+    mode_t mask = umask(0); /* as any new file, not mkstemp's 0600; who was kept out stays out */
     umask(mask);
-    (void)fchmod(chain->output_fd, 0666 & ~mask);
+    (void)fchmod(chain->output_fd, exists ? what.st_mode & 0777 : 0666 & ~mask);
     return STATUS_DONE;
 }
 

@@ -74,19 +74,22 @@ static void end_remark(const struct checkup *check)
     printf("%s\n", check->plain);
 }
 
-/* In what people read a column: its quantity's usual unit. */
-static struct show unit_of(const struct job *job, int sensor)
+/* In what people read a column: the unit that its sensor is shown in, or, where that is of another
+ * quantity, the one that the sheet says it measures in. */
+static struct show unit_of(const struct sheet *sheet, int sensor)
 {
-    static const char *const metric[] = {"g", "mm/s", "um"};
-    static const char *const us[] = {"g", "in/s", "mil"};
+    static const char *const units[] = {"g", "m/s2", "mm/s", "in/s", "um", "mil", NULL};
     struct show show = {.unit = "", .si = 1};
-    if (sensor >= 0) {
-        const enum quantity quantity = job->sensors[sensor].quantity;
-        const char *const *units = job->units == UNITS_US ? us : metric;
-        if (quantity == QUANTITY_TACHO || !units_vibration(units[quantity], &show))
-            show = (struct show){.unit = "", .si = 1};
-    }
-    return show;
+    if (sensor < 0)
+        return show;
+    const struct job_sensor *s = &sheet->job.sensors[sensor];
+    if (s->show.quantity == s->quantity)
+        return s->show;
+    for (size_t i = 0; units[i]; i++)
+        if (units_vibration(units[i], &show) && show.quantity == s->quantity &&
+            show.si == sheet->scales[sensor].si_per_unit)
+            return show;
+    return (struct show){.unit = "", .si = 1};
 }
 
 /* ---- one run ---- */
@@ -177,7 +180,7 @@ static void print_column(const struct checkup *check, const struct wish *wish,
                          const struct look *look, size_t c)
 {
     const struct look_column *column = &look->columns[c];
-    const struct show unit = unit_of(&check->sheet.job, wish->sensors[c]);
+    const struct show unit = unit_of(&check->sheet, wish->sensors[c]);
     const bool volts = wish->sensors[c] < 0 && !isnan(column->rail);
     fputs("    ", stdout);
     print_text(wish->columns[c].name, 16);
@@ -280,13 +283,40 @@ static void print_weights(const struct job *job, const struct job_run *run)
     }
 }
 
+static bool is_runout(const struct job_run *run)
+{
+    return strcmp(run->role, "runout") == 0;
+}
+
+/* A slow roll is taken off displacement probes, whatever is mounted in it. */
+static void remark_runout(struct checkup *check, const struct job_run *run)
+{
+    const struct job *job = &check->sheet.job;
+    size_t probes = 0;
+    for (size_t i = 0; i < job->sensor_count; i++)
+        probes += job->sensors[i].quantity == QUANTITY_DISPLACEMENT && !run->without[i];
+    if (!is_runout(run))
+        return;
+    if (probes == 0) {
+        begin_remark(check, "role");
+        fputs("a slow roll (runout) has no effect without a displacement probe", stdout);
+        end_remark(check);
+    }
+    if (run->weight_count > 0) {
+        begin_remark(check, "weights");
+        fputs("what is mounted at a slow roll (runout) is not counted: no weight pulls there",
+              stdout);
+        end_remark(check);
+    }
+}
+
 /* The weights' force at service speed against what the journals carry at rest. */
 static void remark_force(struct checkup *check, const struct job_run *run)
 {
     const struct job *job = &check->sheet.job;
     const double force = within_force(run, job, job->service_rpm);
     const double share = 100 * force / within_journal_load(job);
-    if (!(share > FORCE_MUCH))
+    if (is_runout(run) || !(share > FORCE_MUCH))
         return;
     begin_remark(check, "weights");
     char text[2 * DIGITS_ROOM];
@@ -323,10 +353,12 @@ static void print_run_head(struct checkup *check, size_t run, const char *path)
         fputs(f ? ", " : ": ", stdout);
         print_text(check->sheet.runs[run].files[f], 0);
     }
-    puts(check->sheet.job.runs[run].hand_count > 0 ? ": by hand" : "");
+    fputs(check->sheet.job.runs[run].hand_count > 0 ? ": by hand" : "", stdout);
+    puts(is_runout(&check->sheet.job.runs[run]) ? "; slow roll (runout)" : "");
     print_weights(&check->sheet.job, &check->sheet.job.runs[run]);
     remark_found(check, run);
     remark_force(check, &check->sheet.job.runs[run]);
+    remark_runout(check, &check->sheet.job.runs[run]);
 }
 
 /* Run `run` of the sheet, or the recording `path`. A failure is noted, and the next is looked at.

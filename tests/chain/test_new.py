@@ -500,6 +500,80 @@ class Check(unittest.TestCase):
             self.assertEqual((code, "\033[" in shown), (0, coloured), env)
         self.assertNotIn("\033", self.check("job.ini", "dead.wav")[0])
 
+    def test_units_of_columns(self):
+        """A column stands in its sensor's shown unit, or in its own where another quantity is shown. 2 V are 20 g at 100
+        mV/g; 1 g is 9.80665 m/s2 (both by definition)."""
+        t = numpy.arange(25600) / 2560
+        wave_ = 0.2 * numpy.sin(2 * numpy.pi * 985 / 60 * t)  # of 10 V: 2 V peak
+        write_wav(self.top / "a.wav", [wave_, 0.5 * wave_, ((t * 985 / 60) % 1 < 0.05) * 0.5])
+        head = "[recording]\nfull scale = 10 V\n[tacho]\nchannel = 3\n[sensor S]\nchannel = 1\n"
+        for unit, scale, show, said, highest in (
+                ("m/s2", "100 mV/g", "mm/s rms", "m/s2", 196.133), ("m/s2", "100 mV/g", "g pk", "g", 20),
+                ("g", "100 mV/g", "mm/s rms", "g", 20), ("g", "100 mV/g", "m/s2 rms", "m/s2", 196.133),
+                ("mm/s", "100 mV/(mm/s)", "in/s pk", "in/s", 20 / 25.4), ("mil", "100 mV/mil", "mm/s rms", "mil", 20)):
+            (self.top / "u.ini").write_text(f"{head}unit = {unit}\nscale = {scale}\nshow = {show}\n")
+            text, _ = self.check("u.ini", "a.wav")
+            got = re.search(r"(?m)^    S +1 +(\S+) +(\S+) +(\S+) (\S+)$", text)
+            self.assertTrue(got, text)
+            self.assertEqual(got[4], said)
+            self.assertAlmostEqual(float(got[2]), highest, delta=0.01 * highest)
+
+    def test_slow_roll(self):
+        sheet = """[job]
+angles = against rotation
+phase = lag
+[rotor]
+mass = 10 kg
+service speed = 3000 rpm
+[sensor S]
+unit = {}
+[plane wheel]
+radius = 200 mm
+[run slow]
+role = runout
+speed = 200 rpm
+weight wheel = 500 g at 0 deg
+reading S = 10 {} at 10 deg
+[run f]
+speed = 3000 rpm
+reading S = 50 {} at 10 deg
+"""
+        for unit, shown, effect in (("um", "um pk-pk", True), ("g", "mm/s rms", False)):
+            (self.top / "job.ini").write_text(sheet.format(unit, shown, shown))
+            said, _ = self.check("job.ini")
+            self.assertIn("run 'slow': by hand; slow roll (runout)\n", said)
+            self.assertIn("run 'f': by hand\n", said)
+            self.assertEqual("has no effect without a displacement probe" in said, not effect)
+            self.assertIn("what is mounted at a slow roll (runout) is not counted", said)
+            self.assertNotIn("static journal load", said)  # nothing pulls at that speed
+
+    def test_help_everywhere(self):
+        plain = chain.lopside("help").stdout
+        for args in (["help", "help"], ["help", "--help"], ["help", "-h"], ["--help"], ["-h"], ["--help", "help"]):
+            done = chain.lopside(*args)
+            self.assertEqual((done.returncode, done.stdout, done.stderr), (0, plain, b""), args)
+        for args in (["help", "--version"], ["--version"], ["read", "--version"], ["help", "--version"]):
+            done = chain.lopside(*args)
+            self.assertEqual((done.returncode, done.stderr), (0, b""), args)
+            self.assertRegex(done.stdout, rb"^lopside [0-9.]+\n$")
+        self.assertEqual(chain.lopside("help", "--nope").returncode, 2)
+
+    def test_one_line_of_misuse(self):
+        for args in (["read", "--nope"], ["read", "--run"], ["balance", "--as"], ["new", "--nope"], ["check", "--nope"]):
+            done = chain.lopside(*args)
+            self.assertEqual(done.returncode, 2)
+            self.assertEqual(len(chain.complaint(done).splitlines()), 1, chain.complaint(done))
+
+    def test_a_report_keeps_its_files_mode(self):
+        out = self.top / "report.txt"
+        for mode in (0o600, 0o640, 0o666):
+            out.write_text("old")
+            out.chmod(mode)
+            done = chain.lopside("balance", "-o", out, chain.DATA / "fan" / "job.ini")
+            self.assertEqual(done.returncode, 0, chain.complaint(done))
+            self.assertIn("WHAT TO DO NOW", out.read_text())
+            self.assertEqual(out.stat().st_mode & 0o777, mode)
+
     def test_hostile_words(self):
         text = self.sheet().replace("Grain dryer", "Grain\033[31m dryer")
         (self.top / "job.ini").write_text(text + "[run a]\nfile = x\033]0;y.wav\n")
