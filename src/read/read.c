@@ -408,6 +408,7 @@ static int give_up(struct stage *stage, size_t run, struct fault *fault)
     struct finding_record finding = {.stage = "read",
                                      .check = "readable",
                                      .verdict = VERDICT_REFUSE,
+                                     .basis = "common practice",
                                      .sensor = -1,
                                      .value = NAN,
                                      .limit = NAN};

@@ -28,6 +28,8 @@ void text_audit_summary(const struct dossier *dossier, struct buffer *out)
               "%zu readings from %zu recordings: %zu in order, %zu with caution, %zu refused.",
               dossier->readings.count, dossier->runs.count, counts[VERDICT_OK],
               counts[VERDICT_CAUTION], counts[VERDICT_REFUSE]);
+    if (dossier->readings.count > 0 && counts[VERDICT_REFUSE] == dossier->readings.count)
+        paper_say(out, 2, 2, "NONE of these readings is fit to balance on: the findings say why.");
     if (unreadable > 0)
         paper_say(out, 2, 2, "%zu could not be read: they stand at the end of the table.",
                   unreadable);

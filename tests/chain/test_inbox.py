@@ -3,6 +3,8 @@
 INBOX_KILLS and INBOX_JOBS set the size of the campaign of kills (the suite runs a slice of it).
 """
 import contextlib
+import csv
+import io
 import os
 import pathlib
 import random
@@ -11,6 +13,7 @@ import signal
 import subprocess
 import time
 import unittest
+import wave
 
 import chain
 
@@ -199,6 +202,37 @@ class Inbox(unittest.TestCase):
         self.assertEqual(status(self.outbox, "audit")[0], 3)
         self.assertIn("cut.wav", status(self.outbox, "audit")[1])
         self.assertEqual(set(result(self.outbox / "audit")), RESULT)  # the others are audited all the same
+        stream = chain.records((self.outbox / "audit" / "stream.jsonl").read_bytes())
+        (bad,) = [f for f in chain.kind(stream, "finding") if f["check"] == "readable"]
+        self.assertEqual((bad["verdict"], bad["basis"]), ("refuse", "common practice"))
+        table = chain.lopside("report", "--as", "csv", self.outbox / "audit" / "stream.jsonl").stdout.decode()
+        row = [r for r in csv.DictReader(io.StringIO(table, newline="")) if r["run"] == "cut"]
+        self.assertEqual([(r["sensor"], r["used"], r["verdict"]) for r in row], [("", "no", "refuse")])
+
+    def test_audit_of_nothing(self):
+        put(self.inbox, "a", {"job.ini": "[tacho]\nchannel = 1\n[sensor S]\nchannel = 2\nunit = g\n", "notes.pdf": "x"})
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 3)
+        self.assertEqual(status(self.outbox, "a"), (
+            2, "2 lopside inbox: no recording in the folder, and no [run] in its job.ini (files that are no recordings: 1)"))
+        self.assertIn("no recording in the folder", (self.outbox / "a" / "report.txt").read_text())
+        self.assertEqual(set(result(self.outbox / "a")), RESULT - {"stream.jsonl"})
+
+    def test_refused_readings_are_counted(self):
+        """0 means that there is an answer: what was refused on the way stands beside it, in the reports, too."""
+        job = recorded(self.inbox, "audit", audit=True)
+        for path in job.glob("*.wav"):  # the first second of each: some 16 turns of 985 rpm
+            with wave.open(str(path)) as whole:
+                head, part = whole.getparams(), whole.readframes(whole.getframerate())
+            with wave.open(str(path), "wb") as cut:
+                cut.setparams(head)
+                cut.writeframes(part)
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 0)
+        self.assertEqual(status(self.outbox, "audit")[0], 0)
+        self.assertIn("0 done; REFUSED: 6 of 6 readings", status(self.outbox, "audit")[1])
+        for name in ("report.txt", "report.html"):
+            text = " ".join((self.outbox / "audit" / name).read_text().split())
+            self.assertIn("6 refused", text)
+            self.assertIn("NONE of these readings is fit to balance on", text)
 
     def test_links(self):
         """A link to a file is a file; a linked folder is not entered, wherever it leads."""
