@@ -296,11 +296,27 @@ static void judge(struct dossier *d, const struct vetted_record *vetted)
     }
 }
 
+/* What the regression refused is used no more than what vet did: of one sensor, or of all of a run. */
+static void refuse(struct dossier *d, const struct finding_record *f)
+{
+    if (f->verdict != VERDICT_REFUSE || strcmp(f->stage, "solve") != 0 ||
+        strcmp(f->check, "linearity") != 0 || !f->run[0])
+        return;
+    for (size_t i = 0; i < d->readings.count; i++) {
+        struct dossier_reading *item = &d->readings.items[i];
+        if (strcmp(item->reading.run, f->run) == 0 &&
+            (f->sensor < 0 || f->sensor == item->reading.sensor))
+            item->use = false;
+    }
+}
+
 void dossier_close(struct dossier *dossier)
 {
     struct dossier *d = dossier;
     for (size_t i = 0; i < d->vetted.count; i++)
         judge(d, &d->vetted.items[i]);
+    for (size_t i = 0; i < d->findings.count; i++)
+        refuse(d, &d->findings.items[i]);
     for (size_t i = 0; i < d->runs.count; i++) {
         struct dossier_run *run = &d->runs.items[i];
         run->arrival = rank(d, run->record.run, run->arrival);

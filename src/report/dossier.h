@@ -19,7 +19,7 @@
 struct dossier_reading {
     struct reading_record reading;
     bool judged;     /* a `vetted` record was seen */
-    bool use;        /* vet's ruling; true where nothing was judged */
+    bool use;        /* vet's ruling, and not refused by solve; true where nothing was judged */
     double widen[3]; /* vet's addition to cov; zero where nothing was judged */
     size_t run;      /* rank of its run in the report */
     size_t arrival;  /* position in the stream */

@@ -375,6 +375,43 @@ static void the_page_says_it_too(void **state)
     unload(&l);
 }
 
+/* What solve refuses is not used, whatever vet said of it before: of one sensor or of a whole run.
+ */
+static void a_refusal_by_solve_is_seen(void **state)
+{
+    (void)state;
+    static const struct {
+        const char *stage, *check, *verdict, *run, *sensor;
+        bool use[2]; /* of DE-V and NDE-H in the trial run */
+    } cases[] = {
+        {"solve", "linearity", "refuse", "\"trial\"", "\"DE-V\"", {false, true}},
+        {"solve", "linearity", "refuse", "\"trial\"", "null", {false, false}},
+        {"solve", "linearity", "caution", "\"trial\"", "\"DE-V\"", {true, true}},
+        {"solve", "linearity", "refuse", "null", "\"DE-V\"", {true, true}},
+        {"solve", "conditioning", "refuse", "\"trial\"", "\"DE-V\"", {true, true}},
+    };
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        struct loaded l;
+        char line[400];
+        snprintf(line, sizeof line,
+                 "{\"kind\":\"finding\",\"stage\":\"%s\",\"check\":\"%s\",\"verdict\":\"%s\","
+                 "\"run\":%s,\"sensor\":%s,\"value\":12,\"limit\":10,\"unit\":\"s.e.\","
+                 "\"basis\":\"common practice\",\"text\":\"the reading does not fit\"}",
+                 cases[i].stage, cases[i].check, cases[i].verdict, cases[i].run, cases[i].sensor);
+        load(&l, "report-balance");
+        load_line(&l, line, strlen(line));
+        dossier_close(&l.dossier);
+        for (size_t k = 0; k < l.dossier.readings.count; k++) {
+            const struct dossier_reading *item = &l.dossier.readings.items[k];
+            const bool trial = strcmp(item->reading.run, "trial") == 0;
+            const bool second = strcmp(l.job.sensors[item->reading.sensor].name, "NDE-H") == 0;
+            assert_int_equal(item->use, trial ? cases[i].use[second] : true);
+        }
+        assert_says(&l, "170.0 deg 0.5 1479/61 REFUSED", !cases[i].use[0]);
+        unload(&l);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -390,6 +427,7 @@ int main(void)
         cmocka_unit_test(overall_has_its_unit_and_band),
         cmocka_unit_test(what_sits_there_is_told),
         cmocka_unit_test(the_page_says_it_too),
+        cmocka_unit_test(a_refusal_by_solve_is_seen),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
