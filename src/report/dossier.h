@@ -44,16 +44,18 @@ struct dossier {
     const struct job *job; /* borrowed */
     bool keep_lines;       /* set before the first record: keep the original bytes */
     bool keep_traces;      /* set before: keep turns, spectra and curves, for drawings */
+    bool sparse;           /* set before: of an audit, which may have thousands of recordings, keep no
+                            * spectra, and only count the findings that are in order */
 
     DOSSIER_LIST(dossier_run) runs;         /* the sheet's order, then that of arrival */
     DOSSIER_LIST(dossier_reading) readings; /* by run, then as they came */
     DOSSIER_LIST(tacho_record) tachos;
-    DOSSIER_LIST(channel_record) channels;
     DOSSIER_LIST(turns_record) turns;
     DOSSIER_LIST(spectrum_record) spectra;
     DOSSIER_LIST(curve_record) curves;
     DOSSIER_LIST(vetted_record) vetted;
     DOSSIER_LIST(finding_record) findings;
+    size_t counted; /* findings in order that are not kept */
     DOSSIER_LIST(response_record) responses;
     DOSSIER_LIST(correction_record) corrections;
     DOSSIER_LIST(placement_record) placements;

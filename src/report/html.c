@@ -163,8 +163,10 @@ static void readings(const struct dossier *d, struct buffer *out)
     html_part_table(out, &table);
 }
 
-static void evidence(const struct dossier *d, bool small, struct buffer *out)
+/* Of an audit there may be thousands: what is done goes out between two recordings. */
+static int evidence(const struct dossier *d, bool small, struct buffer *out, html_spill spill)
 {
+    int status = 0;
     if (d->turns.count > 0 || d->spectra.count > 0) { /* else: readings by hand */
         html_part_heading(out, small ? "Lag over time, recording by recording"
                                      : "Evidence: over time, order spectra");
@@ -172,18 +174,22 @@ static void evidence(const struct dossier *d, bool small, struct buffer *out)
         for (size_t r = 0; r < d->runs.count; r++) {
             for (size_t s = 0; s < d->job->sensor_count; s++)
                 draw_lines_time(d, r, s, small, 0, out);
+            status = out->length >= HTML_SPILL ? spill(out) : 0;
+            if (status != 0)
+                return status;
         }
         for (size_t i = 0; !small && i < d->spectra.count; i++)
             draw_spectrum(d, i, 0, out);
         buffer_text(out, "</div>\n");
     }
     if (d->curves.count == 0)
-        return;
+        return 0;
     html_part_heading(out, "Coast-down");
     buffer_text(out, "<div class=\"pictures\">\n");
     for (size_t i = 0; i < d->curves.count; i++)
         draw_lines_speed(d, i, 0, out);
     buffer_text(out, "</div>\n");
+    return 0;
 }
 
 static void sensor(const struct job *job, const struct job_sensor *s, struct buffer *out)
@@ -226,7 +232,8 @@ static void provenance(const struct dossier *d, const char *job, size_t length, 
     free(line);
 }
 
-void html_write(const struct dossier *dossier, const char *job, size_t length, struct buffer *out)
+int html_write(const struct dossier *dossier, const char *job, size_t length, struct buffer *out,
+               html_spill spill)
 {
     const struct dossier *d = dossier;
     bool audit = dossier_is_audit(d);
@@ -251,9 +258,12 @@ void html_write(const struct dossier *dossier, const char *job, size_t length, s
         readings(d, out);
     }
     html_judged_findings(d, out);
-    evidence(d, audit, out);
+    int status = evidence(d, audit, out, spill);
+    if (status != 0)
+        return status;
     if (!audit)
         html_judged_checks(d, out);
     provenance(d, job, length, out);
     buffer_text(out, "</body></html>\n");
+    return spill(out);
 }

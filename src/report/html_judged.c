@@ -33,7 +33,7 @@ void html_judged_findings(const struct dossier *dossier, struct buffer *out)
     const struct dossier *d = dossier;
     struct buffer counts = BUFFER_INIT;
     struct table table;
-    if (d->findings.count == 0)
+    if (d->findings.count + d->counted == 0)
         return;
     table_init(&table, columns, sizeof columns / sizeof *columns);
     for (int verdict = VERDICT_REFUSE; verdict >= VERDICT_OK; verdict--) {

@@ -36,18 +36,21 @@ static int collect(struct stream *stream, struct dossier *dossier)
     return stream->status;
 }
 
-static int write_out(const struct buffer *out)
+/* Writes and empties. */
+static int write_out(struct buffer *out)
 {
     if (out->failed)
         return message_no_memory();
-    size_t written = out->length ? fwrite(out->bytes, 1, out->length, stdout) : 0;
-    if (written == out->length && fflush(stdout) == 0)
+    size_t length = out->length;
+    size_t written = length ? fwrite(out->bytes, 1, length, stdout) : 0;
+    buffer_clear(out);
+    if (written == length && fflush(stdout) == 0)
         return STATUS_DONE;
     message("cannot write: %s", strerror(errno));
     return STATUS_SYSTEM;
 }
 
-static int write_whole(const struct stream *stream, const struct dossier *dossier)
+static int write_whole(const struct stream *stream, struct dossier *dossier)
 {
     struct buffer head = BUFFER_INIT, tail = BUFFER_INIT;
     size_t length = 0;
@@ -64,22 +67,24 @@ static int write_whole(const struct stream *stream, const struct dossier *dossie
     return status;
 }
 
-static int render(const struct stream *stream, const struct dossier *dossier, int form, int what)
+static int render(const struct stream *stream, struct dossier *dossier, int form, int what)
 {
     struct buffer out = BUFFER_INIT;
     if (form == FORM_JSON)
         return write_whole(stream, dossier);
     size_t length = 0;
     const char *job = stream_job_line(stream, &length);
+    int status = STATUS_DONE;
     if (form == FORM_HTML)
-        html_write(dossier, job, length, &out);
+        status = html_write(dossier, job, length, &out, write_out);
     else if (form == FORM_SVG)
         draw_file(dossier, (enum draw_what)what, &out);
     else if (form == FORM_CSV)
         tidy_write(dossier, what == WHAT_NOT_GIVEN ? TIDY_READINGS : (enum tidy_what)what, &out);
     else
         text_write(dossier, &out);
-    int status = write_out(&out);
+    if (status == STATUS_DONE)
+        status = write_out(&out);
     buffer_release(&out);
     return status;
 }
@@ -132,7 +137,8 @@ int stage_report(int argc, char **argv)
         {"as", 0, OPTION_CHOICE, "FORM", "text", 0, 0, forms, "what to make", &form},
         {"what", 0, OPTION_TEXT, "NAME", NULL, 0, 0, NULL,
          "the table of csv or the picture of svg: readings, responses, correction, placement, "
-         "forecast, findings, spectrum; polar, plane, time, spectrum, speed", &name},
+         "forecast, findings, spectrum; polar, plane, time, spectrum, speed",
+         &name},
         {0},
     };
     const struct usage usage = {
@@ -168,6 +174,8 @@ int stage_report(int argc, char **argv)
     dossier.keep_lines = form == FORM_JSON;
     dossier.keep_traces =
         form == FORM_HTML || form == FORM_SVG || (form == FORM_CSV && what == TIDY_SPECTRUM);
+    dossier.sparse = form == FORM_TEXT || form == FORM_HTML ||
+                     (form == FORM_CSV && (what == WHAT_NOT_GIVEN || what == TIDY_READINGS));
     status = stream_open(&stream, files.items, files.count, false);
     if (status == STATUS_DONE)
         status = collect(&stream, &dossier);

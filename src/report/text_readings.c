@@ -319,7 +319,7 @@ static void uncheckable(const struct dossier *d, const struct finding_record *f,
 
 void text_readings_count(const struct dossier *dossier, struct buffer *text)
 {
-    size_t counts[3] = {0, 0, 0}, open = 0;
+    size_t counts[3] = {dossier->counted, 0, 0}, open = 0;
     for (size_t i = 0; i < dossier->findings.count; i++) {
         const struct finding_record *f = &dossier->findings.items[i];
         bool told = !text_readings_uncheckable(f);
@@ -336,7 +336,7 @@ void text_readings_count(const struct dossier *dossier, struct buffer *text)
 void text_readings_findings(const struct dossier *dossier, struct buffer *out)
 {
     struct buffer text = BUFFER_INIT;
-    if (dossier->findings.count == 0)
+    if (dossier->findings.count + dossier->counted == 0)
         return;
     paper_heading(out, "FINDINGS");
     for (int verdict = VERDICT_REFUSE; verdict >= VERDICT_OK; verdict--) {

@@ -41,7 +41,7 @@ static void load_line(struct loaded *l, const char *line, size_t length)
 }
 
 /* The golden stream of that name. */
-static void load(struct loaded *l, const char *name)
+static void load_as(struct loaded *l, const char *name, bool sparse)
 {
     char path[512];
     snprintf(path, sizeof path, GOLDEN "/%s.jsonl", name);
@@ -52,6 +52,7 @@ static void load(struct loaded *l, const char *name)
     dossier_init(&l->dossier, &l->job);
     l->dossier.keep_lines = true;
     l->dossier.keep_traces = true;
+    l->dossier.sparse = sparse;
     char *line = NULL;
     size_t room = 0;
     ssize_t length;
@@ -59,6 +60,11 @@ static void load(struct loaded *l, const char *name)
         load_line(l, line, (size_t)length);
     free(line);
     fclose(file);
+}
+
+static void load(struct loaded *l, const char *name)
+{
+    load_as(l, name, false);
 }
 
 static void unload(struct loaded *l)
@@ -319,6 +325,43 @@ static void json_keeps_every_byte(void **state)
     }
 }
 
+/* What is only counted of an audit is not missed in its text and its table of readings. */
+static void an_audit_may_be_kept_sparsely(void **state)
+{
+    (void)state;
+    struct loaded whole, sparse;
+    struct buffer text[2] = {BUFFER_INIT, BUFFER_INIT};
+    static const char in_order[] =
+        "{\"kind\":\"finding\",\"stage\":\"vet\",\"check\":\"length\",\"verdict\":\"ok\","
+        "\"run\":null,\"sensor\":null,\"value\":300,\"limit\":100,\"unit\":\"turns\","
+        "\"basis\":\"common practice\",\"text\":\"long enough\"}";
+    load(&whole, "report-audit");
+    load_as(&sparse, "report-audit", true);
+    load_line(&whole, in_order, strlen(in_order));
+    load_line(&sparse, in_order, strlen(in_order));
+    dossier_close(&whole.dossier);
+    dossier_close(&sparse.dossier);
+    assert_true(sparse.dossier.counted > 0);
+    assert_int_equal(sparse.dossier.findings.count + sparse.dossier.counted,
+                     whole.dossier.findings.count);
+    text_write(&whole.dossier, &text[0]);
+    text_write(&sparse.dossier, &text[1]);
+    assert_string_equal(text[0].bytes, text[1].bytes);
+    buffer_clear(&text[0]);
+    buffer_clear(&text[1]);
+    tidy_write(&whole.dossier, TIDY_READINGS, &text[0]);
+    tidy_write(&sparse.dossier, TIDY_READINGS, &text[1]);
+    assert_string_equal(text[0].bytes, text[1].bytes);
+    buffer_release(&text[0]);
+    buffer_release(&text[1]);
+    unload(&whole);
+    unload(&sparse);
+    load_as(&sparse, "report-balance", true); /* of a job with an answer all is kept */
+    load_line(&sparse, in_order, strlen(in_order));
+    assert_int_equal(sparse.dossier.counted, 0);
+    unload(&sparse);
+}
+
 static size_t count(const char *text, const char *what)
 {
     size_t n = 0;
@@ -400,6 +443,7 @@ int main(void)
         cmocka_unit_test(json_keeps_every_byte),
         cmocka_unit_test(tables_have_their_rows),
         cmocka_unit_test(lines_that_do_not_turn),
+        cmocka_unit_test(an_audit_may_be_kept_sparsely),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
