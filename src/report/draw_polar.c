@@ -113,19 +113,8 @@ static void web(const struct polar *p)
              units_show_text(&p->sensor->show, unit));
 }
 
-/* Squared radius, in standard deviations, of the 95 % region of a mean of two components whose
- * covariance has `freedom` degrees of freedom: Hotelling (1931), T2 = 2v/(v-1) F(2, v-1), with the
- * closed form of F's quantile for 2 degrees in the numerator. Not known, or many: -2 ln 0.05. Fewer
- * than 2 count as 2. */
-static double region_square(double freedom)
-{
-    const double alpha = 0.05;
-    if (!(freedom > 0) || freedom > 1e6)
-        return -2 * log(alpha);
-    double v = fmax(freedom, 2);
-    return v * (pow(alpha, -2 / (v - 1)) - 1);
-}
-
+/* The 95 % region of both components: chi-squared with two degrees of freedom, -2 ln 0.05. A
+ * reading's covariance is made for it, few blocks allowed for. */
 static void region(const struct polar *p, const struct dossier_reading *item)
 {
     const struct reading_record *r = &item->reading;
@@ -135,7 +124,7 @@ static void region(const struct polar *p, const struct dossier_reading *item)
     if (!(cov[0] > 0) || !(cov[2] > 0))
         return;
     double a = sqrt(cov[0]), b = cov[1] / a, c = sqrt(fmax(0, cov[2] - b * b));
-    double k = sqrt(region_square(r->steady.independent - 1));
+    double k = sqrt(-2 * log(0.05));
     for (int i = 0; i < 48; i++) {
         double u = cos(2 * PI * i / 48), v = sin(2 * PI * i / 48);
         points[i] = place(p, r->vector + k * CMPLX(a * u, b * u + c * v), r->speed_rpm);

@@ -211,8 +211,8 @@ static void compared_row(const struct dossier *d, const struct compared_record *
         dossier_cov(reading, cov);
     struct shown predicted =
         shown_vector(r->predicted, guess, sensor->quantity, rpm, &sensor->show, NAN);
-    struct shown measured = shown_vector(r->measured, cov, sensor->quantity, rpm, &sensor->show,
-                                         reading ? reading->reading.steady.independent - 1 : NAN);
+    struct shown measured =
+        shown_vector(r->measured, cov, sensor->quantity, rpm, &sensor->show, NAN);
     sensor_cell(d, r->sensor, r->condition, table);
     table_cell(table, "%s", units_show_text(&sensor->show, unit));
     vector_cells(&predicted, table);

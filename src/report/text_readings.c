@@ -18,9 +18,8 @@ struct shown text_readings_shown(const struct dossier *dossier,
     double cov[3];
     dossier_cov(reading, cov);
     if (r->has_phase)
-        return shown_vector(r->vector, cov, sensor->quantity, r->speed_rpm, &sensor->show,
-                            r->steady.independent - 1);
-    double half = cov[0] > 0 ? shown_t95(r->steady.independent - 1) * sqrt(cov[0]) : NAN;
+        return shown_vector(r->vector, cov, sensor->quantity, r->speed_rpm, &sensor->show, NAN);
+    double half = cov[0] > 0 ? shown_t95(NAN) * sqrt(cov[0]) : NAN;
     return shown_amplitude(r->amplitude, half, sensor->quantity, r->speed_rpm, &sensor->show);
 }
 

@@ -7,7 +7,9 @@
 #include "report/shown.h"
 #include "report/table.h"
 
-/* A reading as its sensor shows it, vet's widening included. */
+/* A reading as its sensor shows it, vet's widening included. Its half widths are 1.96 standard
+ * deviations of `cov`, each of amplitude and lag by itself: `cov` is made to be read so, few blocks
+ * and slow noise allowed for, and Student's t for its blocks would count these twice. */
 struct shown text_readings_shown(const struct dossier *dossier,
                                  const struct dossier_reading *reading);
 

@@ -12,6 +12,8 @@
 # second plane. Their 95 % half widths follow from standard deviations of 1 and 2 g. Predicted: 1.00 mm/s rms at a lag
 # of 90 deg (as acceleration: a quarter turn earlier) and 2.00 at 0; measured 1.50 at 180 and 2.00 at 90. All weights
 # as one a plane: 22.3 g at 33 deg and 40 g at 270 deg make 33.55 g at 303.9 deg, by the cosine rule.
+# +/- of readings: 1.96 standard deviations of `cov` along the vector; outcomes, NDE-H: 1.96*sqrt(5e-9)/sqrt(2) m/s
+# = 0.098 mm/s rms.
 # Trial: 0.5 m/s2 peak at 1480 rpm is 0.5/(2 pi 1480/60)/sqrt 2 = 2.28 mm/s rms.
 #
 # cmake -DLOPSIDE=program -DGOLDEN=folder -P golden.cmake
