@@ -97,7 +97,7 @@ static bool set_series(struct series *s, double *room)
     s->step = robust_median(room, n - 1);
     s->middle = (s->t[0] + s->t[n - 1]) / 2;
     s->half = (s->t[n - 1] - s->t[0]) / 2;
-    return s->step > 0 && 2 * s->half / s->step < (double)(SPAN_MOST * n);
+    return s->step > 0 && s->half > 0 && 2 * s->half / s->step < (double)(SPAN_MOST * n);
 }
 
 /* ---- the spectrum ---- */

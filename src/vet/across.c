@@ -95,15 +95,6 @@ double across_target(const struct job *job, const struct vet_reading *reading, s
                               2 * PI * reading->speed_rpm / 60));
 }
 
-double across_floor(const struct vet_runs *runs, const size_t *order, const struct job *job,
-                    const struct vet_run *run, size_t sensor)
-{
-    double as_found = across_as_found(runs, order, job, run->condition, sensor);
-    double target = across_target(job, &run->readings[sensor], sensor);
-
-    return isnan(target) ? as_found : fmax(as_found, target);
-}
-
 static bool share_file(const struct vet_run *a, const struct vet_run *b)
 {
     for (size_t i = 0; i < a->hash_count; i++)
@@ -386,7 +377,7 @@ static bool judge_repeat(const struct vet_runs *runs, const struct job *job, con
     const struct vet_reading *r = &run->readings[sensor], *o = &other->readings[sensor];
     double complex d = r->vector - (count == 2 ? o->vector : middle);
     double scale = fmax(fmax(r->amplitude, o->amplitude), isnan(floor) ? 0 : floor);
-    double value = 100 * cabs(d) / scale, limit;
+    double value = scale > 0 ? 100 * cabs(d) / scale : 0, limit;
     enum ruling ruling = limits_judge(findings->limits, CHECK_REPEAT, value, &limit);
     bool beyond = distance(d, r->cov, o->cov) > CHI2_99;
 
@@ -415,7 +406,7 @@ static void repeat_sensor(struct vet_runs *runs, const size_t *order, const stru
         if (count < 2)
             continue;
         middle = median_vector(runs, members, count, sensor, room);
-        floor = across_floor(runs, order, job, &runs->items[order[k]], sensor);
+        floor = across_as_found(runs, order, job, runs->items[order[k]].condition, sensor);
         for (size_t i = 0; i < count; i++) /* room: who is refused, once all have been compared */
             room[i] = judge_repeat(runs, job, members, count, i, sensor, middle, floor, findings);
         for (size_t i = 0; i < count; i++)

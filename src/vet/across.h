@@ -28,11 +28,6 @@ double across_as_found(const struct vet_runs *runs, const size_t *order, const s
  * none, or without a speed. */
 double across_target(const struct job *job, const struct vet_reading *reading, size_t sensor);
 
-/* What percentages of the run's reading of a sensor refer to at least: the larger of as-found
- * amplitude and target, SI peak; NaN for neither. */
-double across_floor(const struct vet_runs *runs, const size_t *order, const struct job *job,
-                    const struct vet_run *run, size_t sensor);
-
 /* True where the k-th run in `order` is an ordinary one and the first of its condition. */
 bool across_first_of_condition(const struct vet_runs *runs, const size_t *order,
                                const struct job *job, size_t k);

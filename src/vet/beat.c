@@ -39,7 +39,8 @@ static double complex rest(const struct straight *line, const double complex *ve
     return vectors[i] - line->middle - line->slope * (t[i] - line->t_middle);
 }
 
-struct phasor { /* of one block: its rest, turned back by the frequency at hand and by one step of it */
+struct phasor { /* of one block: its rest, turned back by the frequency at hand and by one step of
+                   it */
     double re, im, step_re, step_im;
 };
 
@@ -50,7 +51,8 @@ static struct phasor phasor_at(double complex rest, double t, double f, double s
     return (struct phasor){creal(z), cimag(z), creal(turn), cimag(turn)};
 }
 
-/* The line at the frequency at hand, as an amplitude; every phasor moves on to the next frequency. */
+/* The line at the frequency at hand, as an amplitude; every phasor moves on to the next frequency.
+ */
 static double next_line(struct phasor *phasors, size_t count)
 {
     double re = 0, im = 0;
@@ -90,7 +92,8 @@ struct beat beat_of(const double complex *vectors, const double *t, size_t count
     const int last = OVERSAMPLING * (int)count / 2;
     const double fine = 1 / (OVERSAMPLING * beat.duration);
     for (size_t i = 0; i < count; i++)
-        phasors[i] = phasor_at(rest(&line, vectors, t, i), t[i] - line.t_middle, -last * fine, fine);
+        phasors[i] =
+            phasor_at(rest(&line, vectors, t, i), t[i] - line.t_middle, -last * fine, fine);
     for (int k = -last; k <= last; k++) {
         double f = k * fine, size = next_line(phasors, count);
         if (fabs(f) * beat.duration >= PERIODS_LEAST && size > most) {

@@ -13,7 +13,10 @@ struct effect effect_of(double complex before, const double before_cov[3], doubl
     struct effect effect;
 
     effect.errors = size > 0 || isnan(size) ? size / sqrt(variance) : 0;
-    effect.amplitude_pct = 100 * fabs(cabs(after) - cabs(before)) / cabs(before);
+    effect.amplitude_pct =
+        size > 0 || isnan(size) ? 100 * fabs(cabs(after) - cabs(before)) / cabs(before) : 0;
     effect.lag_deg = fabs(angle_wrap_180((carg(after) - carg(before)) * 180 / PI));
+    if (cabs(before) == 0 || cabs(after) == 0) /* what is nothing has no lag */
+        effect.lag_deg = 0;
     return effect;
 }

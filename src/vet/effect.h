@@ -5,9 +5,10 @@
 #include <complex.h>
 
 struct effect {
-    double errors;        /* size of the change over its standard error; infinite where that is 0 */
-    double amplitude_pct; /* change of amplitude, % of the reading before */
-    double lag_deg;       /* change of lag, 0..180 */
+    double errors; /* size of the change over its standard error; infinite where that is 0 */
+    double
+        amplitude_pct; /* change of amplitude, % of the reading before; infinite where that is 0 */
+    double lag_deg;    /* change of lag, 0..180; 0 where one of both is 0 */
 };
 
 /* The change from `before` to `after` (SI peak vectors) with their covariances {var re, cov, var

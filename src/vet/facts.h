@@ -8,6 +8,7 @@
 
 #include "stream/job.h"
 #include "vet/beat.h"
+#include "vet/orders.h"
 #include "vet/resonance.h"
 
 struct vet_reading { /* percentages of the reading's own amplitude; NaN: not known */
@@ -26,6 +27,8 @@ struct vet_reading { /* percentages of the reading's own amplitude; NaN: not kno
     enum quantity overall_quantity;
     double two_x, half_order, neighbour; /* % of 1x in the quantity shown; NaN: no spectrum */
     double neighbour_order;
+    double lines[ORDERS_LINES_MOST][2]; /* Hz, SI peak: what does not turn with the shaft */
+    size_t line_count;
     struct beat beat; /* swing in SI; NaN: too few blocks */
     struct resonance resonance;
     bool use;   /* the ruling */

@@ -84,7 +84,7 @@ static void fill(struct table *t, const struct vet_runs *runs, const size_t *ord
     }
     for (size_t i = 0; i < sensors; i++) {
         double as_found = across_as_found(runs, order, job, condition, i);
-        for (size_t r = 0; isnan(as_found) && r < t->count; r++)
+        for (size_t r = 0; !(as_found > 0) && r < t->count; r++)
             as_found = cabs(t->vectors[r * sensors + i]);
         t->repeatability[i] = pow(fmax(job->aim.repeatability, EXACT) * as_found, 2);
         for (size_t j = 0; j < sensors; j++)
@@ -107,7 +107,7 @@ static void say_where(const struct table *t, const struct vet_runs *runs, enum s
 
     if (kind != SUSPECTS_SWAP)
         snprintf(by, sizeof by, "by %.0f deg ", s->other_deg);
-    if (s->ambiguous && s->other != s->run)
+    if (s->ambiguous && (s->other != s->run || other_onwards != onwards))
         snprintf(other, sizeof other, " (or %s%s '%s'%s)", by, other_onwards ? "from" : "in",
                  name_of(t, runs, s->other), other_onwards ? " on" : "");
     snprintf(to, room, "%s run '%s'%s%s", onwards ? "from" : "in", name_of(t, runs, s->run),

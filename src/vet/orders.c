@@ -66,3 +66,19 @@ struct orders orders_of(const double *orders, const double *amplitude, size_t co
     out.neighbour *= 100 / one;
     return out;
 }
+
+double orders_line(const double (*lines)[2], size_t count, double speed_hz, int derivatives,
+                   double *hz)
+{
+    double most = 0;
+
+    *hz = NAN;
+    for (size_t i = 0; i < count; i++) {
+        double order = lines[i][0] / speed_hz, size = lines[i][1] * pow(order, derivatives);
+        if (order < 0.5 || !(size > most))
+            continue;
+        most = size;
+        *hz = lines[i][0];
+    }
+    return most;
+}

@@ -4,6 +4,8 @@
 
 #include <stddef.h>
 
+#define ORDERS_LINES_MOST 8 /* lines that are kept: more than a spectrum names */
+
 struct orders {
     double two_x, half_order, neighbour; /* % of 1x; NaN where the spectrum cannot tell */
     double neighbour_order;              /* where the largest line beside multiples of 1/2 stands */
@@ -19,5 +21,12 @@ struct orders {
  * above 0.1 orders: no neighbour can be told. */
 struct orders orders_of(const double *orders, const double *amplitude, size_t count,
                         int derivatives);
+
+/* The largest of `count` lines, {Hz, peak in the sensor's quantity} each, as they are in the
+ * quantity shown (`derivatives` as above) against what they would be at the running speed,
+ * `speed_hz`: its amplitude, comparable with that of 1x, and *hz its frequency. Lines below half of
+ * the speed are not looked at. 0 and *hz NaN: there is none, or no speed. */
+double orders_line(const double (*lines)[2], size_t count, double speed_hz, int derivatives,
+                   double *hz);
 
 #endif

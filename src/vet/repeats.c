@@ -14,7 +14,7 @@ static const double CHANCE = 0.01; /* of a line in mere scatter, common practice
 static double scale_of(const struct vet_runs *runs, const size_t *order, const struct job *job,
                        const struct vet_run *run, size_t sensor)
 {
-    double floor = across_floor(runs, order, job, run, sensor);
+    double floor = across_as_found(runs, order, job, run->condition, sensor);
 
     return fmax(run->readings[sensor].amplitude, isnan(floor) ? 0 : floor);
 }

@@ -3,7 +3,7 @@
 #include <stdlib.h>
 
 /* Columns are scaled to 1, so that this tells rounding from weights that differ. */
-static const double PIVOT_LEAST = 1e-9;
+static const double PIVOT_LEAST = 1e-6; /* a weight is not known to six digits: as solve has it */
 
 size_t ruling_rank(double complex *m, size_t rows, size_t columns)
 {
@@ -53,8 +53,11 @@ static size_t rank_for(const struct ruling_set *s, const bool *take, size_t extr
             continue;
         room[rows * columns] = 1;
         for (size_t p = 0; p < s->plane_count; p++) {
-            double largest = 0; /* of this plane over all runs: the scale of the column */
+            double largest = 0; /* of this plane over these runs: the scale of the column */
             for (size_t q = 0; q < s->run_count; q++) {
+                if (s->condition[q] != condition ||
+                    (q != extra && !take[q * s->sensor_count + sensor]))
+                    continue;
                 double m = cabs(s->weights[q * s->plane_count + p]);
                 largest = m > largest ? m : largest;
             }

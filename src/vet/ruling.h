@@ -27,7 +27,7 @@ int ruling_can_answer(const struct ruling_set *set, size_t *run_lost, size_t *se
     __attribute__((warn_unused_result));
 
 /* Rank of a rows x columns matrix (row-major, destroyed) by elimination with full pivoting; pivots
- * under 1e-9 are rounding, so columns should be scaled to about 1. */
+ * under 1e-6 are rounding, so columns should be scaled to about 1. */
 size_t ruling_rank(double complex *matrix, size_t rows, size_t columns);
 
 #endif

@@ -58,7 +58,7 @@ static size_t fill(struct bench *b, size_t sensor, size_t from, size_t first, bo
         bool inside = in_group(r, first, onwards);
         size_t at = r * s->sensor_count + (inside ? from : sensor);
         double w = 1 / sqrt(s->variance[at] + s->repeatability[sensor]);
-        if (isnan(creal(s->vectors[at])) || isnan(w))
+        if (isnan(creal(s->vectors[at])) || !isfinite(w)) /* infinite: all is exactly zero */
             continue;
         b->matrix[rows * columns] = w;
         for (size_t p = 0; p < s->plane_count; p++)
@@ -71,12 +71,13 @@ static size_t fill(struct bench *b, size_t sensor, size_t from, size_t first, bo
     return rows;
 }
 
-/* Residuals of both sides, in place; degrees of freedom; -1: no memory. LAPACK wants room for the
- * larger of rows and columns. */
+/* Residuals of both sides, in place; degrees of freedom; -1: no memory. What LAPACK cannot do,
+ * since figures are beyond its range, leaves NaN. LAPACK wants room for the larger of rows and
+ * columns. */
 static double project(struct bench *b, size_t rows)
 {
     size_t columns = b->set->plane_count + 1, room = rows > columns ? rows : columns;
-    lapack_int rank = 0;
+    lapack_int rank = 0, failed;
     double complex *kept_sides = b->kept + rows * columns;
 
     for (size_t i = 0; i < rows * columns; i++)
@@ -87,9 +88,14 @@ static double project(struct bench *b, size_t rows)
         b->sides[i] = 0;
     for (size_t j = 0; j < columns; j++)
         b->pivots[j] = 0;
-    if (LAPACKE_zgelsy(LAPACK_ROW_MAJOR, (lapack_int)rows, (lapack_int)columns, 2, b->matrix,
-                       (lapack_int)columns, b->sides, 2, b->pivots, RANK_LEAST, &rank))
+    failed = LAPACKE_zgelsy(LAPACK_ROW_MAJOR, (lapack_int)rows, (lapack_int)columns, 2, b->matrix,
+                            (lapack_int)columns, b->sides, 2, b->pivots, RANK_LEAST, &rank);
+    if (failed == LAPACK_WORK_MEMORY_ERROR || failed == LAPACK_TRANSPOSE_MEMORY_ERROR)
         return -1;
+    for (size_t i = 0; failed && i < rows * 2; i++)
+        b->sides[i] = NAN;
+    if (failed)
+        return 0;
     for (size_t i = 0; i < rows; i++) { /* solutions stand on top of the sides */
         for (size_t k = 0; k < 2; k++)
             for (size_t j = 0; j < columns; j++)

@@ -43,8 +43,9 @@ struct suspect {
  * its 99.9 % point as the runs are and within its 95 % point if it were so (points after Wilson &
  * Hilferty, PNAS 17 (1931) 684-688), for a turn of the tape of at least 5 deg. `other` is told
  * where the misfit would be within 6 (chi-squared) of the best. `hidden` where from some run on a
- * shift of all lags by 30 deg would not lift the misfit beyond the 99.9 % point, since the responses
- * to weights take it up, although it changes the readings by twice that and more: then that the runs fit says nothing. 0; -1: no memory. */
+ * shift of all lags by 30 deg would not lift the misfit beyond the 99.9 % point, since the
+ * responses to weights take it up, although it changes the readings by twice that and more: then
+ * that the runs fit says nothing. 0; -1: no memory. */
 int suspects_find(const struct suspects_set *set, enum suspects_kind kind, struct suspect *suspect)
     __attribute__((warn_unused_result));
 

@@ -135,7 +135,7 @@ static void judge(struct trials *t, size_t k)
     struct effect e = {0, 0, 0};
     int sensor = before ? strongest(t, run, before, &e, &weak) : -1;
     enum ruling ruling;
-    char errors[48];
+    char errors[48], change[100];
 
     if (sensor < 0)
         return;
@@ -144,13 +144,16 @@ static void judge(struct trials *t, size_t k)
         snprintf(errors, sizeof errors, "%g standard errors", findings_figure(e.errors));
     else
         snprintf(errors, sizeof errors, "exact readings"); /* by hand, with repeatability 0 % */
+    if (isfinite(e.amplitude_pct))
+        snprintf(change, sizeof change, "the amplitude changed by %g %% and the lag by %g deg",
+                 findings_figure(e.amplitude_pct), findings_figure(e.lag_deg));
+    else
+        snprintf(change, sizeof change, "the amplitude grew from nothing");
     ruling = findings_rule(t->findings, CHECK_TRIAL_EFFECT, ruling, (int)t->sequence[k], sensor,
                            ruling == RULING_CAUTION ? e.amplitude_pct : e.errors,
                            ruling == RULING_CAUTION ? row->caution : row->refuse,
-                           ruling == RULING_CAUTION ? "%" : "s.e.",
-                           "against '%s' the amplitude changed by %g %% and the lag by %g deg, %s",
-                           before->name, findings_figure(e.amplitude_pct),
-                           findings_figure(e.lag_deg), errors);
+                           ruling == RULING_CAUTION ? "%" : "s.e.", "against '%s' %s, %s",
+                           before->name, change, errors);
     if (ruling == RULING_REFUSE)
         within_refuse(run, t->job);
 }

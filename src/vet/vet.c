@@ -173,10 +173,15 @@ static int add_spectrum(struct vet *v, const struct record *record)
             (int)job->sensors[r.sensor].quantity - (int)job->sensors[r.sensor].show.quantity;
         struct orders o = orders_of(r.orders, r.amplitude, r.count, derivatives);
         struct vet_reading *to = &run->readings[r.sensor];
+        to->line_count = 0;
         to->two_x = o.two_x;
         to->half_order = o.half_order;
         to->neighbour = o.neighbour;
         to->neighbour_order = o.neighbour_order;
+        for (size_t i = 0; i < r.line_count && to->line_count < ORDERS_LINES_MOST; i++) {
+            to->lines[to->line_count][0] = r.lines[2 * i];
+            to->lines[to->line_count++][1] = r.lines[2 * i + 1];
+        }
     }
     spectrum_release(&r);
     return run ? STATUS_DONE : record_outside(record, r.run);

@@ -328,12 +328,12 @@ static bool steadiness(const struct vet_run *run, const struct vet_reading *r, i
 }
 
 /* A lasting jump is a move from start to end as well. */
-static bool drift(struct vet_reading *r, int position, int s, double share, double own,
+static bool drift(struct vet_reading *r, int position, int s, double share,
                   struct findings *findings)
 {
     bool jumped = r->step_pct > larger(r->drift_pct, 0);
     double percent = jumped ? r->step_pct : r->drift_pct;
-    double value = percent * share, size = percent / 100 * r->amplitude, limit;
+    double value = percent * share, size = percent / 100 * r->amplitude;
     enum ruling ruling;
 
     if (isnan(value))
@@ -346,8 +346,7 @@ static bool drift(struct vet_reading *r, int position, int s, double share, doub
                                         findings_figure(value))
                          : findings_add(findings, CHECK_DRIFT, position, s, value,
                                         "no trend stands out from the scatter");
-    if (ruling != RULING_OK ||
-        limits_judge(findings->limits, CHECK_DRIFT, percent * own, &limit) != RULING_OK) {
+    if (ruling != RULING_OK) {
         r->widen[0] += size * size / 12;
         r->widen[2] += size * size / 12;
     }
@@ -362,10 +361,10 @@ static void say_neighbour(const struct vet_reading *r, char *to, size_t room)
                  r->speed_rpm / 60 - r->beat.turning);
 }
 
-static bool beats(struct vet_reading *r, int position, int s, double share, double own,
+static bool beats(struct vet_reading *r, int position, int s, double share,
                   struct findings *findings)
 {
-    double percent = 100 * r->beat.swing / r->amplitude, value = percent * share, variance, limit;
+    double value = 100 * r->beat.swing / r->amplitude * share, variance;
     enum ruling ruling;
     char neighbour[64];
 
@@ -378,8 +377,6 @@ static bool beats(struct vet_reading *r, int position, int s, double share, doub
                                 findings_figure(r->beat.period), neighbour)
                  : findings_add(findings, CHECK_BEAT, position, s, value,
                                 "no periodic swing stands out from the scatter");
-    if (ruling == RULING_OK)
-        ruling = limits_judge(findings->limits, CHECK_BEAT, percent * own, &limit);
     variance = ruling == RULING_OK ? 0 : beat_variance(&r->beat);
     r->widen[0] += variance;
     r->widen[2] += variance;
@@ -407,57 +404,87 @@ static bool resonates(const struct vet_reading *r, int position, int s, double s
                         findings_figure(2 * found->error)) == RULING_REFUSE;
 }
 
-/* Is it unbalance at all? Cautions only, on runs without weights. */
-static bool orders(const struct vet_reading *r, int position, int s, const struct job *job,
-                   struct findings *findings)
+/* Is it unbalance at all? Asked of runs without weights. */
+static bool one_x_share(const struct vet_reading *r, int position, int s, const struct job *job,
+                        struct findings *findings)
 {
     double w = 2 * PI * r->speed_rpm / 60, one, share;
-    bool refuse = false;
 
     one = cabs(units_convert(r->amplitude, job->sensors[s].quantity, r->overall_quantity, w));
     share = 100 * one / sqrt(2) / r->overall_rms;
     if (share > 100) /* both are estimates of the same */
         share = 100;
-    if (!isnan(share))
-        refuse |=
-            findings_add(findings, CHECK_ONE_X_SHARE, position, s, share,
-                         "1x is %g %% of the overall rms", findings_figure(share)) == RULING_REFUSE;
-    if (!isnan(r->two_x))
-        refuse |= findings_add(findings, CHECK_TWO_X, position, s, r->two_x, "2x is %g %% of 1x",
-                               findings_figure(r->two_x)) == RULING_REFUSE;
-    if (!isnan(r->half_order))
-        refuse |= findings_add(findings, CHECK_HALF_ORDER, position, s, r->half_order,
-                               "the largest half order is %g %% of 1x",
-                               findings_figure(r->half_order)) == RULING_REFUSE;
-    if (!isnan(r->neighbour))
-        refuse |= findings_add(findings, CHECK_NEIGHBOUR, position, s, r->neighbour,
-                               "a line at %.1f Hz that does not turn with the shaft is %g %% of 1x",
-                               r->neighbour_order * r->speed_rpm / 60,
-                               findings_figure(r->neighbour)) == RULING_REFUSE;
+    return !isnan(share) &&
+           findings_add(findings, CHECK_ONE_X_SHARE, position, s, share,
+                        "1x is %g %% of the overall rms", findings_figure(share)) == RULING_REFUSE;
+}
+
+/* The largest line that does not turn with the shaft, % of 1x in the quantity shown; NaN: not
+ * known. The spectrum's own are found at no multiple of half an order; lines that were told one by
+ * one may stand closer. */
+static double neighbour(const struct vet_reading *r, const struct job_sensor *sensor, double *hz)
+{
+    int derivatives = (int)sensor->quantity - (int)sensor->show.quantity;
+    double told_hz, told = orders_line((const double(*)[2])r->lines, r->line_count,
+                                       r->speed_rpm / 60, derivatives, &told_hz);
+    double percent = 100 * told / r->amplitude;
+
+    *hz = r->neighbour_order * r->speed_rpm / 60;
+    if (r->line_count == 0 || !(told > 0) || percent <= r->neighbour)
+        return r->neighbour;
+    *hz = told_hz;
+    return percent;
+}
+
+/* What else than 1x there is, against the larger of 1x and the as-found 1x: `share` is 1x over
+ * that. */
+static bool orders(const struct vet_reading *r, int position, int s, const struct job *job,
+                   double share, struct findings *findings)
+{
+    double hz, other = share * neighbour(r, &job->sensors[s], &hz);
+    double two = r->two_x * share, half = r->half_order * share;
+    const char *one = share < 1 ? "the as-found 1x" : "1x";
+    bool refuse = false;
+
+    if (two >= WITHIN_SHAFT_PCT)
+        findings_instead(findings, "see whether the tacho counts this shaft, not one of half its "
+                                   "speed; else misalignment, looseness or a bent shaft");
+    if (!isnan(two))
+        refuse |= findings_add(findings, CHECK_TWO_X, position, s, two, "2x is %g %% of %s",
+                               findings_figure(two), one) == RULING_REFUSE;
+    if (!isnan(half))
+        refuse |= findings_add(findings, CHECK_HALF_ORDER, position, s, half,
+                               "the largest half order is %g %% of %s", findings_figure(half),
+                               one) == RULING_REFUSE;
+    if (!isnan(other))
+        refuse |= findings_add(findings, CHECK_NEIGHBOUR, position, s, other,
+                               "a line at %.1f Hz that does not turn with the shaft is %g %% of %s",
+                               hz, findings_figure(other), one) == RULING_REFUSE;
     return refuse;
 }
 
 void within_vectors(struct vet_run *run, int position, const double *as_found,
                     const struct job *job, struct findings *findings)
 {
-    bool bare =
-        run->index < 0 || (job_run_is_bare(job, (size_t)run->index) && !facts_role(run, job)[0]);
+    bool ordinary = !facts_role(run, job)[0];
+    bool bare = ordinary && (run->index < 0 || job_run_is_bare(job, (size_t)run->index));
 
     for (size_t i = 0; i < job->sensor_count; i++) {
         struct vet_reading *r = &run->readings[i];
-        double base = larger(r->amplitude, as_found[i]), own = r->amplitude / base;
-        double share = r->amplitude / larger(base, across_target(job, r, i));
+        double share = r->amplitude / larger(r->amplitude, as_found[i]);
         bool refuse = false;
         if (!r->present || run->hand || !matters(run, i, job))
             continue;
         refuse |= steadiness(run, r, position, (int)i, share, findings);
-        refuse |= drift(r, position, (int)i, share, own, findings);
+        refuse |= drift(r, position, (int)i, share, findings);
         if (r->has_phase) {
-            refuse |= beats(r, position, (int)i, share, own, findings);
+            refuse |= beats(r, position, (int)i, share, findings);
             refuse |= resonates(r, position, (int)i, share, findings);
         }
         if (bare)
-            refuse |= orders(r, position, (int)i, job, findings);
+            refuse |= one_x_share(r, position, (int)i, job, findings);
+        if (ordinary)
+            refuse |= orders(r, position, (int)i, job, share, findings);
         if (refuse)
             r->use = false;
     }

@@ -5,10 +5,14 @@
 #include "vet/facts.h"
 #include "vet/findings.h"
 
-/* Percentages of a vector refer to the largest of the reading, the sensor's as-found amplitude in
- * its condition, and its target where the sheet has one: what is small against what is aimed at
- * needs no precision. Lag is judged only where the reading is at least this share of that (contract). */
+/* Percentages of a vector refer to the larger of the reading and the sensor's as-found amplitude in
+ * its condition. Lag is judged only where the reading is at least this share of that (contract). */
 #define WITHIN_LAG_SHARE 0.2
+
+/* 2x of so many % of 1x and more is first of all a question to the tacho: one that counts a shaft
+ * of half the speed shows this shaft's 1x as 2x. Common practice; coupling trouble rarely does so.
+ */
+#define WITHIN_SHAFT_PCT 500
 
 /* Checks of the recording itself: readable, length, service-speed, speed-steady, clipping,
  * sensor-dead, tacho, phase-reference (where all readings have phase, or in an audit),
@@ -17,11 +21,11 @@
 void within_run(struct vet_run *run, int position, const struct job *job,
                 struct findings *findings);
 
-/* Checks of its vectors: amplitude-steady, phase-steady, drift, beat, near-resonance, and on
- * as-found and audited runs one-x-share, two-x, half-order, neighbour. as_found: SI peak amplitude
- * per sensor, NaN where there is none. Also adds to `widen` what a drift that tripped leaves open:
- * d^2/12 on each component, the variance along a straight path of length d; and what a beat that
- * tripped does (beat.h): here the target does not count. */
+/* Checks of its vectors: amplitude-steady, phase-steady, drift, beat, near-resonance, on ordinary
+ * and audited runs two-x, half-order, neighbour, and on those without weights one-x-share.
+ * as_found: SI peak amplitude per sensor, NaN where there is none. Also adds to `widen` what a
+ * drift that tripped leaves open: d^2/12 on each component, the variance along a straight path of
+ * length d; and what a beat that tripped does (beat.h). */
 void within_vectors(struct vet_run *run, int position, const double *as_found,
                     const struct job *job, struct findings *findings);
 
