@@ -127,8 +127,8 @@ static void foot(const struct strip *s, double y, const char *unit, struct buffe
     svg_text(out, "small", "end", s->right, y, "%s", digits_text(to, s->to, s->to / 10));
 }
 
-/* From the start of the recording to its end, as far as blocks tell. */
-static void whole_time(const struct series *s, double to[2])
+/* From the start of the recording to its end (s; NaN: not known), else as far as blocks tell. */
+static void whole_time(const struct series *s, double end, double to[2])
 {
     double first = INFINITY, last = 0;
     for (size_t i = 0; i < s->count; i++) {
@@ -136,12 +136,19 @@ static void whole_time(const struct series *s, double to[2])
         last = fmax(last, s->x[i]);
     }
     to[0] = 0;
-    to[1] = last + fmax(0, first);
+    to[1] = end >= last ? end : last + fmax(0, first);
 }
 
-/* Amplitude and lag, and speed where `over` is time. */
+/* How long a run's recording is, s; NaN: it has none. Its files are of one length. */
+static double recorded(const struct run_record *run)
+{
+    const struct file_record *file = run->file_count > 0 ? &run->files[0] : NULL;
+    return file && file->rate_hz > 0 ? (double)file->frames / file->rate_hz : NAN;
+}
+
+/* Amplitude and lag, and speed where it is over time; `end`: as in whole_time. */
 static double strips(const struct series *s, const struct job_sensor *sensor, const char *title,
-                     bool time, bool small, double y, struct buffer *out)
+                     bool time, double end, bool small, double y, struct buffer *out)
 {
     double high = small ? 108 : time ? 272 : 245, x[2];
     char unit[24], name[40];
@@ -149,7 +156,7 @@ static double strips(const struct series *s, const struct job_sensor *sensor, co
         return 0;
     x[0] = fmax(0, x[0]);
     if (time) /* each block's middle; the first is as far from the start as the last from the end */
-        whole_time(s, x);
+        whole_time(s, end, x);
     svg_begin(out, y, small ? SMALL_WIDE : WIDE, high, title);
     svg_text(out, small ? "small bold" : "bold", "start", 6, 13, "%s", title);
     snprintf(name, sizeof name, "1x, %s", units_show_text(&sensor->show, unit));
@@ -191,7 +198,8 @@ double draw_lines_time(const struct dossier *d, size_t run, size_t sensor, bool 
     }
     gather(d, name, sensor, &s);
     snprintf(title, sizeof title, "%s, %s", name, d->job->sensors[sensor].name);
-    double high = strips(&s, &d->job->sensors[sensor], title, true, small, y, out);
+    double high = strips(&s, &d->job->sensors[sensor], title, true,
+                         recorded(&d->runs.items[run].record), small, y, out);
     free(s.x);
     return high;
 }
@@ -211,7 +219,7 @@ double draw_lines_speed(const struct dossier *d, size_t curve, double y, struct 
         series_add(&s, c->speed_rpm[i], c->vectors[i], NAN, c->speed_rpm[i],
                    &d->job->sensors[c->sensor]);
     snprintf(title, sizeof title, "%s, %s: coast-down", c->run, dossier_sensor(d, c->sensor));
-    double high = strips(&s, &d->job->sensors[c->sensor], title, false, false, y, out);
+    double high = strips(&s, &d->job->sensors[c->sensor], title, false, NAN, false, y, out);
     free(s.x);
     return high;
 }

@@ -6,6 +6,7 @@
 #include "report/draw.h"
 #include "report/phrase.h"
 #include "report/shown.h"
+#include "report/text_answer.h"
 
 #define WIDE 400.0
 #define HIGH 450.0
@@ -76,12 +77,30 @@ static void position(const struct job *job, const struct job_position *p, struct
     buffer_text(out, "</g>\n");
 }
 
-static void weight(const struct job *job, const struct placement_record *p, struct buffer *out)
+/* The angle of a weight that is at no numbered position, beside the mark's line and, at the sides,
+ * written away from the disc. */
+static void angle_name(const struct job *job, double angle_deg, struct buffer *out)
 {
+    struct svg_point name = at(job, OUTSIDE, angle_deg);
+    char angle[DIGITS_ROOM];
+    const double aside = (name.x - MIDDLE_X) / OUTSIDE;
+    const bool at_mark = name.y < MIDDLE_Y && fabs(name.x - MIDDLE_X) < 30;
+    const char *anchor = aside > 0.4 ? "start" : aside < -0.4 ? "end" : "middle";
+    if (at_mark) {
+        anchor = aside < 0 ? "end" : "start";
+        name.x = MIDDLE_X + (aside < 0 ? -6 : 6);
+    }
+    svg_text(out, "small", anchor, name.x, name.y + 4, "%s deg",
+             digits_angle(angle, job_sheet_angle(job, angle_deg), NAN));
+}
+
+static void weight(const struct dossier *d, const struct placement_record *p, struct buffer *out)
+{
+    const struct job *job = d->job;
     struct svg_point here = at(job, DISC, p->angle_deg), text = at(job, INSIDE, p->angle_deg);
     struct buffer mass = BUFFER_INIT;
     bool cut = p->mass < 0;
-    phrase_mass(&mass, job, p->mass, NAN);
+    phrase_mass(&mass, job, p->mass, text_answer_free_half(d, p->plane));
     buffer_format(out, "<g data-what=\"placement\" data-position=\"%d\">", p->position);
     if (cut)
         svg_square(out, "cut", here.x, here.y, 9);
@@ -91,15 +110,8 @@ static void weight(const struct job *job, const struct placement_record *p, stru
         out->failed = 1;
     else
         svg_text(out, "bold", "middle", text.x, text.y + 4, "%s", mass.bytes);
-    if (p->position == 0) {
-        struct svg_point name = at(job, OUTSIDE, p->angle_deg);
-        char angle[DIGITS_ROOM];
-        /* Beside the disc it is written away from it. */
-        double aside = (name.x - MIDDLE_X) / OUTSIDE;
-        const char *anchor = aside > 0.4 ? "start" : aside < -0.4 ? "end" : "middle";
-        svg_text(out, "small", anchor, name.x, name.y + 4, "%s deg",
-                 digits_angle(angle, job_sheet_angle(job, p->angle_deg), NAN));
-    }
+    if (p->position == 0)
+        angle_name(job, p->angle_deg, out);
     buffer_text(out, "</g>\n");
     buffer_release(&mass);
 }
@@ -131,6 +143,9 @@ static void legend(const struct dossier *d, const struct job_plane *plane, struc
                  "The sheet does not say which way it turns: this may");
         svg_text(out, "bold", "middle", MIDDLE_X, y + 34,
                  "be the MIRROR IMAGE of the machine. Go by the angles.");
+        svg_text(out, "", "middle", MIDDLE_X, y + 51, "angles are counted from the mark, %s",
+                 job_sense_text(job));
+        y += 17;
     } else {
         svg_text(out, "", "middle", MIDDLE_X, y + 17, "rotation as seen: %s", turns[job->turning]);
         svg_text(out, "", "middle", MIDDLE_X, y + 34, "angles %s: %s in this drawing",
@@ -156,7 +171,7 @@ double draw_plane(const struct dossier *d, size_t plane, double y, struct buffer
     stays(d, plane, out);
     for (size_t i = 0; i < d->placements.count; i++) {
         if (d->placements.items[i].plane == (int)plane)
-            weight(d->job, &d->placements.items[i], out);
+            weight(d, &d->placements.items[i], out);
     }
     legend(d, p, out);
     svg_end(out);

@@ -115,6 +115,16 @@ static void web(const struct polar *p)
 
 /* The 95 % region of both components: chi-squared with two degrees of freedom, -2 ln 0.05. A
  * reading's covariance is made for it, few blocks allowed for. */
+/* No further from the middle than the rim. */
+static struct svg_point inside(struct svg_point at)
+{
+    const double far = hypot(at.x - MIDDLE_X, at.y - MIDDLE_Y);
+    if (!(far > RIM))
+        return at;
+    return (struct svg_point){MIDDLE_X + RIM / far * (at.x - MIDDLE_X),
+                              MIDDLE_Y + RIM / far * (at.y - MIDDLE_Y)};
+}
+
 static void region(const struct polar *p, const struct dossier_reading *item)
 {
     const struct reading_record *r = &item->reading;
@@ -127,7 +137,7 @@ static void region(const struct polar *p, const struct dossier_reading *item)
     double k = sqrt(-2 * log(0.05));
     for (int i = 0; i < 48; i++) {
         double u = cos(2 * PI * i / 48), v = sin(2 * PI * i / 48);
-        points[i] = place(p, r->vector + k * CMPLX(a * u, b * u + c * v), r->speed_rpm);
+        points[i] = inside(place(p, r->vector + k * CMPLX(a * u, b * u + c * v), r->speed_rpm));
     }
     buffer_text(p->out, "<g data-what=\"region\">");
     svg_path(p->out, "region", points, 48, 1);

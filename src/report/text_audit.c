@@ -31,8 +31,7 @@ void text_audit_summary(const struct dossier *dossier, struct buffer *out)
     if (dossier->readings.count > 0 && counts[VERDICT_REFUSE] == dossier->readings.count)
         paper_say(out, 2, 2, "NONE of these readings is fit to balance on: the findings say why.");
     if (unreadable > 0)
-        paper_say(out, 2, 2, "%zu could not be read: they stand at the end of the table.",
-                  unreadable);
+        paper_say(out, 2, 2, "%zu could not be read: see the end of the table.", unreadable);
     if (open > 0)
         paper_say(out, 2, 2,
                   "%zu readings were not judged: the stream has not been through `lopside "

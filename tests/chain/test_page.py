@@ -9,7 +9,9 @@ import html.parser
 import io
 import json
 import math
+import re
 import unittest
+import wave
 import xml.etree.ElementTree as ElementTree
 
 import chain
@@ -131,6 +133,12 @@ class Page(unittest.TestCase):
         self.assertNotIn(b"MIRROR IMAGE", told)
         self.assertIn(b"angles against rotation: counter-clockwise in this drawing", told)
         self.assertNotIn(b"clockwise", open_)  # neither the rotation nor the way of the angles
+        self.assertIn(b"angles are counted from the mark, against rotation", open_)
+
+    def test_drawn_mass_is_the_one_of_the_table(self):
+        """Where any mass may be cut it has the digits that it deserves, in the drawing as in words."""
+        mass = re.search(r"fit ([\d.]+ g) in one piece", written())[1]
+        self.assertIn(f">{mass}</text>", written("--as", "svg", "--what", "plane"))
 
     def test_arrow_turns_as_the_rotor(self):
         for rotation, way in (("clockwise", 1), ("counter-clockwise", -1)):
@@ -203,6 +211,20 @@ class Page(unittest.TestCase):
         self.assertAlmostEqual((x + 2 * trial[0]) / 3, 215, 1)
         self.assertLess(x, trial[0])  # lag grows against rotation: counter-clockwise from the top
         self.assertIsNone(plots["P"]["turned slowly"].find(SVG + "circle"))
+
+    def test_time_ends_with_the_recording(self):
+        """The axis ends where the file does, by its frames and rate as Python's wave reads them."""
+        stream = solved("clockwise")
+        done = chain.lopside("report", "--as", "svg", "--what", "time", stdin=stream)
+        for plot in ElementTree.fromstring(done.stdout).iter(SVG + "svg"):
+            if not plot.get("aria-label"):
+                continue
+            run = plot.get("aria-label").split(",")[0]
+            (path,) = [f["path"] for r in chain.kind(chain.records(stream), "run") if r["run"] == run for f in r["files"]]
+            with wave.open(str(chain.DATA / "fan" / path)) as file:
+                seconds = file.getnframes() / file.getframerate()
+            texts = [t.text for t in plot.iter(SVG + "text")]
+            self.assertAlmostEqual(float(texts[texts.index("time, s") + 1]), seconds, delta=0.051)
 
     def test_same_bytes(self):
         pages = {chain.lopside("report", "--as", "html", stdin=solved("clockwise")).stdout for _ in "12"}
