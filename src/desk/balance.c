@@ -315,7 +315,7 @@ int desk_balance(int argc, char **argv)
     struct progress progress;
     const struct option options[] = {
         {"as", 0, OPTION_TEXT, "FORM", "text", 0, 0, NULL, "what the report is written as", &form},
-        {"what", 0, OPTION_TEXT, "PART", NULL, 0, 0, NULL, "the part of it, for --as csv", &what},
+        {"what", 0, OPTION_TEXT, "PART", NULL, 0, 0, NULL, "the part of it, for --as csv or svg", &what},
         {"output", 'o', OPTION_TEXT, "FILE", NULL, 0, 0, NULL,
          "write the report there, whole or not at all", &chain.output},
         {NULL, 0, OPTION_FLAG, NULL, NULL, 0, 0, NULL, NULL, NULL}};

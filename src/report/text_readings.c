@@ -4,6 +4,7 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "base/status.h"
 #include "report/paper.h"
 #include "report/phrase.h"
 #include "report/runout.h"
@@ -52,6 +53,8 @@ static const char *use_text(const struct dossier *d, const struct dossier_readin
         return "REFUSED";
     if (dossier_is_runout(d, r->run))
         return runout_has_effect(d, r->sensor) ? "taken off" : "no effect";
+    if (d->responses.count == 0 && dossier_answer(d) != STATUS_DONE)
+        return "fit"; /* nothing came of it */
     return dossier_left_out(d, r->sensor, r->condition) ? "not used" : "used";
 }
 
@@ -165,10 +168,14 @@ const char text_readings_note[] =
 
 const char *text_readings_words(const struct dossier *dossier)
 {
-    for (size_t i = 0; i < dossier->readings.count; i++)
-        if (strcmp(use_text(dossier, &dossier->readings.items[i]), "not used") == 0)
+    for (size_t i = 0; i < dossier->readings.count; i++) {
+        const char *use = use_text(dossier, &dossier->readings.items[i]);
+        if (strcmp(use, "not used") == 0)
             return "Not used: fit to be used, but the answer is given without this sensor, because "
                    "another reading that it needs was refused or is missing.";
+        if (strcmp(use, "fit") == 0)
+            return "Fit: it might be used, but there is no answer that it could be used for.";
+    }
     return NULL;
 }
 

@@ -27,7 +27,7 @@ void text_readings_all(const struct dossier *dossier, struct buffer *out);
 /* What stands above the tables of readings. */
 extern const char text_readings_note[];
 
-/* What "not used" in the tables of readings means; NULL where it is in none. Static text. */
+/* What "not used" or "fit" in the tables of readings means; NULL where they are in none. Static text. */
 const char *text_readings_words(const struct dossier *dossier);
 
 void text_readings_responses(const struct dossier *dossier, struct buffer *out);
