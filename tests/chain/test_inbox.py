@@ -233,6 +233,9 @@ class Inbox(unittest.TestCase):
             text = " ".join((self.outbox / "audit" / name).read_text().split())
             self.assertIn("6 refused", text)
             self.assertIn("NONE of these readings is fit to balance on", text)
+        (job / "gone.wav").write_bytes(b"RIFF no recording")
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 3)
+        self.assertRegex(status(self.outbox, "audit")[1], r"^3 lopside read: .*gone.wav.*; REFUSED: 6 of 6 readings$")
 
     def test_links(self):
         """A link to a file is a file; a linked folder is not entered, wherever it leads."""
