@@ -22,7 +22,7 @@
  * different; and for a single mark the tape against a scratch, where sampling alone makes widths of
  * 4 and 5. */
 #define RATIO_MARKS 1.15
-#define RATIO_SCRATCH 1.4
+#define RATIO_SCRATCH 1.2
 
 void marks_init(struct marks *marks, int per_turn)
 {
@@ -56,6 +56,7 @@ static long place(double since, double period, double tolerance)
 
 struct ballot {
     double period, score, size, tolerance;
+    double off; /* what its turns differ from the ones before, in half tolerances, added up */
     size_t start;
 };
 
@@ -77,7 +78,7 @@ static size_t nearest(const struct pulse *pulses, size_t count, size_t i, double
 static struct ballot follow(const struct pulse *pulses, size_t count, size_t start, double period,
                             double tolerance)
 {
-    struct ballot ballot = {period, -(double)start, 0, tolerance, start};
+    struct ballot ballot = {period, -(double)start, 0, tolerance, 0, start};
     double last = pulses[start].at, current = period;
     size_t hits = 1;
 
@@ -93,6 +94,7 @@ static struct ballot follow(const struct pulse *pulses, size_t count, size_t sta
 
         ballot.score += 1 - (double)(n - 1) - (double)(best - i);
         i = best;
+        ballot.off += fabs((pulses[i].at - last) / current - (double)n) * 2 / TOLERANCE;
         current = 0.5 * current + 0.5 * (pulses[i].at - last) / (double)n;
         last = pulses[i].at;
         ballot.size += sieve_size(&pulses[i]);
@@ -102,12 +104,15 @@ static struct ballot follow(const struct pulse *pulses, size_t count, size_t sta
     return ballot;
 }
 
+/* A first turn from a scratch to the mark may lie within the tolerance and still be none. */
 static bool better(const struct ballot *a, const struct ballot *b)
 {
-    if (fabs(a->score - b->score) > 2) {
-        return a->score > b->score;
+    double lead = a->score - a->off - (b->score - b->off);
+
+    if (fabs(lead) > 2) {
+        return lead > 0;
     }
-    return a->size > b->size * 1.02 || (a->size > b->size * 0.98 && a->score > b->score);
+    return a->size > b->size * 1.02 || (a->size > b->size * 0.98 && lead > 0);
 }
 
 /* The best start and period that the voters have; false where no regular pulse is among them. */
@@ -255,21 +260,23 @@ static void sift_voters(struct marks *marks)
     for (size_t i = 0; i < marks->voter_count; i++) {
         if (sieve_keeps(&marks->sieve, &marks->voters[i])) {
             marks->voters[kept++] = marks->voters[i];
-        } else if (marks->per_turn == 1) {
-            marks->extra++;
+        } else {
+            marks->beside++;
         }
     }
     marks->voter_count = kept;
 }
 
-/* Tells the pulses apart, once, when enough of them have come. */
-static void sift(struct marks *marks)
+/* Tells the pulses apart, once, when enough of them have come; or leaves that to more of them,
+ * where there is time to `wait`. */
+static void sift(struct marks *marks, bool wait)
 {
     bool several = marks->per_turn > 1, found = false;
 
     if (marks->sifted) {
         return;
     }
+    marks->sieve.doubt = false;
     marks->sifted = true;
     if (several) {
         found = sieve_find(&marks->sieve, marks->voters, marks->voter_count, marks->per_turn,
@@ -277,13 +284,27 @@ static void sift(struct marks *marks)
         marks->reference = found;
     } else {
         /* a scratch that comes once a turn, or two of them, beside the single mark */
-        found =
-            sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, 2, RATIO_SCRATCH) ||
-            sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, 3, RATIO_SCRATCH);
+        for (int pulses = 2; !found && pulses <= 3; pulses++) {
+            found = sieve_find_large(&marks->sieve, marks->voters, marks->voter_count, pulses,
+                                     RATIO_SCRATCH);
+            marks->scratches = found ? pulses - 1 : 0;
+        }
     }
     if (found) {
         sift_voters(marks);
+    } else if (wait && marks->sieve.doubt && 2 * marks->quorum <= MARKS_VOTERS_MOST / 2) {
+        marks->quorum *= 2;
+        marks->sifted = false;
     }
+}
+
+long marks_extra(const struct marks *marks)
+{
+    long settling = marks->scratches + 2; /* pulses before the sieve has its means */
+    long ordinary = marks->scratches * (marks->count + marks->missed) + settling;
+
+    return marks->extra +
+           (marks->per_turn == 1 && marks->beside > ordinary ? marks->beside - ordinary : 0);
 }
 
 /* The marks that did not come between two stretches, by the mean of their periods. */
@@ -295,12 +316,15 @@ static long lost_between(const struct marks *marks, double at, double period)
 }
 
 /* Locks on with the voters and runs them through; keeps waiting where they are irregular. */
-static size_t lock(struct marks *marks, struct mark *out)
+static size_t lock(struct marks *marks, bool wait, struct mark *out)
 {
     struct ballot best;
     struct pulse voters[MARKS_VOTERS_MOST];
 
-    sift(marks);
+    sift(marks, wait);
+    if (!marks->sifted) {
+        return 0;
+    }
     size_t given = 0, count = marks->voter_count;
 
     if (!vote(marks, &best)) {
@@ -344,7 +368,7 @@ size_t marks_push(struct marks *marks, const struct pulse *pulse, struct mark *o
     size_t given = 0;
 
     if (marks->sifted && !sieve_keeps(&marks->sieve, pulse)) {
-        marks->extra += marks->per_turn == 1;
+        marks->beside++;
         return 0;
     }
     if (marks->locked) {
@@ -358,14 +382,14 @@ size_t marks_push(struct marks *marks, const struct pulse *pulse, struct mark *o
     }
     marks->voters[marks->voter_count++] = *pulse;
     if (marks->voter_count >= (marks->sifted ? MARKS_VOTERS : marks->quorum)) {
-        given += lock(marks, out + given);
+        given += lock(marks, true, out + given);
     }
     return given;
 }
 
 size_t marks_hurry(struct marks *marks, struct mark *out)
 {
-    return marks->locked || marks->voter_count < 4 ? 0 : lock(marks, out);
+    return marks->locked || marks->voter_count < 4 ? 0 : lock(marks, false, out);
 }
 
 size_t marks_finish(struct marks *marks, struct mark *out)
@@ -373,7 +397,7 @@ size_t marks_finish(struct marks *marks, struct mark *out)
     size_t given = 0;
 
     while (!marks->locked && marks->voter_count > 1) {
-        given += lock(marks, out + given);
+        given += lock(marks, false, out + given);
     }
     return marks->locked ? given + commit(marks, out + given) : given;
 }

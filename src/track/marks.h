@@ -45,6 +45,8 @@ struct marks {
     bool breaks;               /* the next mark begins a new stretch */
     long count, missed, extra; /* of the recording so far, within stretches */
     long between;              /* missing between them, where nothing was put in */
+    int scratches;             /* pulses a turn that are told apart from the single mark, and */
+    long beside;               /* pulses that the sieve left out */
 };
 
 /* `per_turn`: pulses a turn, as the user states. With more than one, the one that can be told apart
@@ -59,6 +61,10 @@ size_t marks_hurry(struct marks *marks, struct mark *out);
 
 /* Forgets the rhythm: the next pulses vote anew, and the next mark begins a new stretch. */
 void marks_unlock(struct marks *marks);
+
+/* Pulses that were set aside, without those of scratches that come every turn beside a single mark
+ * and are told apart from it: these are as good as marks of their own. */
+long marks_extra(const struct marks *marks);
 
 /* No more pulses: the marks that were held back. */
 size_t marks_finish(struct marks *marks, struct mark *out);

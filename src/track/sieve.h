@@ -18,6 +18,7 @@ struct sieve {
     double sign, threshold; /* kept: sign*value > sign*threshold */
     double size, gap, last; /* running means of the pulses, and the last one's time */
     long seen, settle;      /* pulses since the start, and how many make the means (a turn) */
+    bool doubt;             /* none was found, and more pulses might show one */
 };
 
 /* Height times width of a pulse, in whichever direction it is the shorter one. */
@@ -26,7 +27,9 @@ double sieve_size(const struct pulse *pulse);
 /* Looks for a sieve that keeps one of `marks` pulses; the ones kept must come regularly. `ratio`:
  * how many times larger the one class must be than the other. Up to SIEVE_MOST pulses are looked
  * at. Where two features name different marks and the first only just does, there is none: another
- * recording of the same shaft must not get another zero. False: the pulses cannot be told apart. */
+ * recording of the same shaft must not get another zero. Nor does a difference count that the
+ * sampling may have made: two samples or less, where the marks keep their places between
+ * the samples (`doubt`). False: the pulses cannot be told apart. */
 #define SIEVE_MOST 512
 bool sieve_find(struct sieve *sieve, const struct pulse *pulses, size_t count, int marks,
                 double ratio);

@@ -342,12 +342,40 @@ static int print_tone_tacho(const struct recording *rec, struct stream *stream, 
     return stream_write(stream, line);
 }
 
+/* A scratch that comes every turn is no damage to the count of marks, but people should know. */
+static int print_scratch_finding(const struct recording *rec, struct stream *stream,
+                                 struct line *line)
+{
+    const struct marks *marks = &rec->tracker.marks;
+    struct finding_record record = {.stage = "track",
+                                    .check = "tacho-scratch",
+                                    .verdict = VERDICT_CAUTION,
+                                    .sensor = -1,
+                                    .value = marks->scratches,
+                                    .limit = 0,
+                                    .unit = "",
+                                    .basis = "common practice"};
+
+    if (marks->scratches == 0 || !tracker_reference(&rec->tracker)) {
+        return STATUS_DONE;
+    }
+    strcpy(record.run, rec->run);
+    snprintf(
+        record.text, sizeof record.text,
+        "%s smaller than the mark %s with it every turn (%ld pulses): told apart and left out; "
+        "lag is read from the larger one",
+        marks->scratches == 1 ? "another pulse" : "two other pulses",
+        marks->scratches == 1 ? "comes" : "come", marks->beside);
+    finding_print(&record, &stream->job, line);
+    return stream_write(stream, line);
+}
+
 static int print_tacho(const struct recording *rec, struct stream *stream, struct line *line)
 {
     const struct tracker *tracker = &rec->tracker;
     struct tacho_record record = {.marks = tracker->marks.count,
                                   .missed = tracker->marks.missed + tracker->marks.between,
-                                  .extra = tracker->marks.extra,
+                                  .extra = marks_extra(&tracker->marks),
                                   .jitter_deg = shaft_jitter(&tracker->shaft),
                                   .speed_rpm = tracker_speed(tracker),
                                   .scatter_rpm = tracker_scatter(tracker),
@@ -437,6 +465,9 @@ static int finish(struct recording *rec, struct stream *stream)
     }
     if (status == STATUS_DONE) {
         status = print_spectra(rec, stream, &line);
+    }
+    if (status == STATUS_DONE && tacho) {
+        status = print_scratch_finding(rec, stream, &line);
     }
     if (status == STATUS_DONE && !tacho) {
         status = print_tone_finding(rec, stream, &line);

@@ -514,13 +514,13 @@ int tracker_finish(struct tracker *tracker)
  * many scratches). */
 static bool believable(const struct marks *marks, double jitter)
 {
-    long wrong = marks->missed + marks->extra;
+    long extra = marks_extra(marks), wrong = marks->missed + extra;
 
     if (isnan(jitter) || marks->count < FEW_MARKS) {
         return 4 * wrong <= marks->count;
     }
     return jitter < JITTER_MOST && marks->missed <= marks->count &&
-           marks->extra <= 3 * marks->count;
+           extra <= 3 * marks->count;
 }
 
 bool tracker_regular(const struct tracker *tracker)

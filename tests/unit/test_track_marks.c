@@ -303,9 +303,90 @@ static void test_crossed(void **unused)
     assert_true(gaps > PER_RATIO && sizes > PER_RATIO);
 }
 
+/* Equal marks, `width` turns wide and as steep as a comparator gives them, or with edges of so many
+ * samples; or the first is wider by `wider` turns. */
+#define STEEP_RUNS 4
+static double steep_width, steep_edge, wider;
+
+static double steep(const struct recipe *r, double t)
+{
+    struct signal shaft = r->shaft;
+    double v = 0;
+
+    for (int k = 0; k < r->marks; k++) {
+        shaft.phase = r->shaft.phase - (double)k / r->marks;
+        shaft.tape = steep_width + (k == 0 ? wider : 0);
+        shaft.edge = steep_edge * r->shaft.rev / r->shaft.rate;
+        v += 4 * signal_tape(&shaft, t);
+    }
+    return v;
+}
+
+/* How many of the recordings, each begun at another phase, have a phase. */
+static int steep_references(int marks, double samples, double per_turn, double off)
+{
+    int count = 0;
+
+    for (int k = 0; k < STEEP_RUNS; k++) {
+        struct recipe r = plain;
+        struct tracker tracker;
+        size_t n;
+
+        r.tacho = steep;
+        r.marks = marks;
+        r.seconds = 5;
+        r.shaft.rate = 2400;
+        r.shaft.rev = 2400 / per_turn * (1 + off);
+        r.shaft.phase = 0.37 + 0.0029 * k;
+        steep_width = samples / per_turn;
+        float *x = record(&r, &n);
+
+        track(&tracker, &r, x, n, NULL);
+        assert_true(tracker_regular(&tracker));
+        assert_float_equal(tracker_speed(&tracker), 60 * r.shaft.rev, 0.02 * 60 * r.shaft.rev);
+        count += tracker_reference(&tracker);
+        tracker_release(&tracker);
+        free(x);
+    }
+    return count;
+}
+
+/* Where the turn takes a whole number of samples, or nearly, sampling makes equal marks unequal,
+ * the same in every turn. */
+static void test_equal_but_sampled(void **unused)
+{
+    static const double widths[] = {2.3, 4.3, 5.6};
+
+    (void)unused;
+    wider = 0;
+    for (int marks = 2; marks <= 5; marks++) {
+        for (int k = 0; k < 3; k++) {
+            steep_edge = k == 2 ? 0.7 : 0.05;
+            /* 100 samples: two marks and five fall alike, three and four do not; 101: all do not */
+            assert_int_equal(steep_references(marks, widths[k], 100, 1.3e-5), 0);
+            assert_int_equal(steep_references(marks, widths[k], 101, -1.7e-5), 0);
+        }
+    }
+}
+
+/* The difference is seen where it is more than the sampling's, or where marks drift through the
+ * samples. */
+static void test_unequal_and_sampled(void **unused)
+{
+    (void)unused;
+    steep_edge = 0.05;
+    wider = 4.0 / 101;
+    assert_int_equal(steep_references(3, 4.3, 101, 0), STEEP_RUNS);
+    wider = 2.2 / 101.4; /* 6 or 7 samples against 4 or 5 */
+    assert_int_equal(steep_references(3, 4.3, 101.4, 0), STEEP_RUNS);
+    wider = 0;
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {cmocka_unit_test(test_whole),
+                                       cmocka_unit_test(test_equal_but_sampled),
+                                       cmocka_unit_test(test_unequal_and_sampled),
                                        cmocka_unit_test(test_damaged),
                                        cmocka_unit_test(test_between_stretches),
                                        cmocka_unit_test(test_equal_by_chance),
