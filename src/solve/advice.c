@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "base/angle.h"
+#include "solve/misfit.h"
 #include "solve/sits.h"
 #include "solve/tolerance.h"
 #include "solve/trial.h"
@@ -14,29 +15,6 @@ static void judge(struct advice_finding *f, const struct judge_limits *l, double
 {
     f->value = value;
     f->verdict = judge_value(l, value, &f->limit);
-}
-
-bool advice_linearity(const struct model *m, const struct model_row *row, struct advice_finding *f)
-{
-    struct judge_limits l = judge_limits_of(m->job, "linearity", 3, 10);
-    if (l.off || isnan(row->misfit) || row->state != MODEL_GOOD)
-        return false;
-    *f = (struct advice_finding){.check = "linearity",
-                                 .unit = "s.e.",
-                                 .basis = "common practice",
-                                 .run = (int)row->misfit_run,
-                                 .sensor = (int)row->sensor};
-    judge(f, &l, row->misfit);
-    const char *run = m->job->runs[row->misfit_run].name;
-    if (f->verdict == ADVICE_OK)
-        snprintf(f->text, sizeof f->text,
-                 "the runs fit one set of responses; run '%s' is furthest off", run);
-    else
-        snprintf(f->text, sizeof f->text,
-                 "run '%s' does not fit the others: check its weights, their angles and radii, and "
-                 "whether the machine or its speed changed",
-                 run);
-    return true;
 }
 
 bool advice_turn(const struct model *m, size_t plane, struct advice_finding *f)
@@ -407,6 +385,19 @@ void advice_repeat_step(const struct model *m, const struct ruling *ruling,
     const char *sensor = m->job->sensors[row->sensor].name;
     const char *run = row->lost_run >= 0 ? m->job->runs[row->lost_run].name : "";
     const char *condition = m->conditions[row->condition];
+    char runs[160];
+    if (row->torn) {
+        bool any = misfit_list(m, row, runs, sizeof runs);
+        snprintf(next->reason, sizeof next->reason,
+                 "the runs contradict each other, and which is wrong cannot be told: sensor '%s' "
+                 "(condition '%s')",
+                 sensor, condition);
+        snprintf(next->text, sizeof next->text,
+                 "the runs contradict each other at sensor '%s' (condition '%s')%s%s: check their "
+                 "weights, angles and radii against the sheet, then repeat one",
+                 sensor, condition, any ? ", any one may be wrong of " : "", runs);
+        return;
+    }
     if (ruling->named)
         snprintf(next->reason, sizeof next->reason,
                  "refused readings of a sensor that the aim names: '%s' (run '%s', condition '%s')",

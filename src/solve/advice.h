@@ -30,10 +30,6 @@ struct advice_next {
     char reason[300]; /* for standard error where there is no answer; else "" */
 };
 
-/* Misfit of a row where runs are spare. False: no figure, hence no finding. */
-bool advice_linearity(const struct model *model, const struct model_row *row,
-                      struct advice_finding *finding);
-
 /* Turn of a plane's effect against the turn of its weight, over all rows. False: no two trials
  * tell. */
 bool advice_turn(const struct model *model, size_t plane, struct advice_finding *finding);

@@ -10,7 +10,6 @@
 #include "solve/chebyshev.h"
 #include "solve/correct.h"
 #include "solve/menu.h"
-#include "solve/oppose.h"
 #include "solve/parts.h"
 #include "solve/ruling.h"
 #include "solve/sits.h"
@@ -190,7 +189,7 @@ static double objective(const struct answer *a, const double complex *forms,
 }
 
 /* The noise of the placement's rule (place.h) about w. */
-static double noise_at(const struct answer *a, const double complex *w)
+double answer_noise(const struct answer *a, const double complex *w)
 {
     return fmax(a->floor, 0.1 * (objective(a, a->forms, w) - objective(a, a->certain, w)));
 }
@@ -233,8 +232,8 @@ static int correct_static(struct answer *a)
     double nothing = objective(a, a->forms, zero), left = objective(a, a->forms, alone);
     a->left_alone = sqrt(left / nothing);
     a->left = sqrt(objective(a, a->forms, a->full) / nothing);
-    a->static_only =
-        a->model->job->aim.minimise == MINIMISE_STATIC_FIRST && nothing - left > noise_at(a, alone);
+    a->static_only = a->model->job->aim.minimise == MINIMISE_STATIC_FIRST &&
+                     nothing - left > answer_noise(a, alone);
     if (a->static_only)
         memcpy(a->weights, alone, sizeof alone);
     return ANSWER_OK;
@@ -301,7 +300,7 @@ static int place_ideal(struct answer *a)
         return ANSWER_NO_MEMORY;
     }
     double nothing = objective(a, a->forms, zero), least = objective(a, a->forms, a->weights);
-    double noise = noise_at(a, a->weights);
+    double noise = answer_noise(a, a->weights);
     free(zero);
     a->placement.nothing = nothing;
     a->placement.of_all = a->placement.bound = least;
@@ -336,10 +335,8 @@ static int search(const struct place_problem *problem, struct place_result *resu
                                       : ANSWER_FAILED;
 }
 
-/* Over all that the sheet allows, on plane p within arc[p] where that is less than all around; arc
- * NULL: everywhere. nodes: as in place.h. */
-static int place_by_search(const struct answer *a, const struct menu_arc *arc, long nodes,
-                           struct place_result *found, bool *done)
+int answer_search(const struct answer *a, const struct menu_arc *arc, long nodes,
+                  struct place_result *found, bool *done)
 {
     const struct job *job = a->model->job;
     struct menu *menus = calloc(a->planes + 1, sizeof *menus);
@@ -488,50 +485,19 @@ static int place_first(struct answer *a)
         place_release(&a->placement);
     a->placed = a->static_only = false;
     memcpy(a->weights, a->full, a->planes * sizeof *a->weights);
-    return ideal_fits(a) ? place_ideal(a) : place_by_search(a, NULL, 0, &a->placement, &a->placed);
+    return ideal_fits(a) ? place_ideal(a) : answer_search(a, NULL, 0, &a->placement, &a->placed);
 }
 
 int answer_place(struct answer *a)
 {
     int result = ideal_fits(a)    ? place_ideal(a)
                  : a->static_only ? place_first(a)
-                                  : place_by_search(a, NULL, 0, &a->placement, &a->placed);
+                                  : answer_search(a, NULL, 0, &a->placement, &a->placed);
     for (size_t i = 0; result == ANSWER_OK && i < a->placement.best.count; i++) {
         const struct place_item *item = &a->placement.best.items[i];
         double sign = a->model->job->planes[item->plane].work == WORK_REMOVE ? -1 : 1;
         a->placed_weights[item->plane] += angle_vector(sign * item->mass, item->angle_deg);
     }
-    return result;
-}
-
-/* Of the nodes of the search proper: what is found only stands beside it. */
-#define UNOPPOSED_NODES 400000L
-
-int answer_unopposed(struct answer *a)
-{
-    struct menu_arc *arc = calloc(a->planes + 1, sizeof *arc);
-    bool done = false, more = answer_helps(a) && !a->static_only;
-    int result = arc ? ANSWER_OK : ANSWER_NO_MEMORY;
-    for (size_t p = 0; p < a->planes && result == ANSWER_OK; p++)
-        arc[p].half_deg = 180;
-    while (more && result == ANSWER_OK) {
-        const struct place_choice *choice = done ? &a->unopposed.best : &a->placement.best;
-        more = false;
-        for (size_t p = 0; p < a->planes; p++) {
-            if (arc[p].half_deg < 180 || !oppose_on(choice, p))
-                continue;
-            double sign = a->model->job->planes[p].work == WORK_REMOVE ? -1 : 1;
-            arc[p] = (struct menu_arc){angle_of(sign * a->weights[p]), OPPOSE_APART_DEG / 2};
-            a->opposed = more = true;
-        }
-        if (!more)
-            break;
-        if (done)
-            place_release(&a->unopposed);
-        result = place_by_search(a, arc, UNOPPOSED_NODES, &a->unopposed, &done);
-    }
-    a->has_unopposed = done && a->unopposed.best.count > 0;
-    free(arc);
     return result;
 }
 
@@ -548,7 +514,7 @@ bool answer_corrected_by(const struct answer *a, int run, bool *as_good)
         w[p] = job_run_weight(a->model->job, (size_t)run, p) - a->mounted[p];
     double now = objective(a, a->forms, w);
     double best = objective(a, a->forms, a->placed_weights);
-    *as_good = now - best <= noise_at(a, a->placed_weights);
+    *as_good = now - best <= answer_noise(a, a->placed_weights);
     free(w);
     return now < nothing / 4; /* half the amplitude: our choice, a trial rarely does as well */
 }

@@ -6,6 +6,7 @@
 #include <stdbool.h>
 #include <stddef.h>
 
+#include "solve/menu.h"
 #include "solve/model.h"
 #include "solve/place.h"
 
@@ -53,10 +54,10 @@ struct answer {
     double floor;              /* of the noise, J units (place.h) */
     struct place_result placement; /* owned */
     bool placed;
-    bool opposed;                   /* pieces of the placement work against each other (oppose.h) */
-    bool has_unopposed;             /* there is an answer where none do */
-    struct place_result unopposed;  /* owned: that answer */
-    double complex *placed_weights; /* owned: planes */
+    bool opposed; /* pieces of the placement work against each other, or partly do (lighter.h) */
+    bool has_unopposed;                /* there is an answer where none do, or with less mass */
+    struct place_result unopposed;     /* owned: that answer */
+    double complex *placed_weights;    /* owned: planes */
     struct answer_forecast *forecasts; /* owned: one a good row of the model, aim or not */
     size_t forecast_count;
     struct answer_residual *residuals; /* owned: planes */
@@ -83,10 +84,13 @@ int answer_correct(struct answer *answer) __attribute__((warn_unused_result));
  */
 int answer_place(struct answer *answer) __attribute__((warn_unused_result));
 
-/* What to fit where no pieces of a plane shall work against each other: searched again within 60
- * deg of the ideal weight on the planes where they do; sets opposed, has_unopposed and unopposed.
- * Nothing is searched where none do, or where the static part alone is placed. */
-int answer_unopposed(struct answer *answer) __attribute__((warn_unused_result));
+/* The search over all that the sheet allows, on plane p within arc[p] where that is less than all
+ * around; arc NULL: everywhere. nodes: as in place.h. *done: `found` is to be released. */
+int answer_search(const struct answer *answer, const struct menu_arc *arc, long nodes,
+                  struct place_result *found, bool *done) __attribute__((warn_unused_result));
+
+/* The noise of the placement's rule (place.h) about the weights w (planes). */
+double answer_noise(const struct answer *answer, const double complex *w);
 
 /* Run `run` carries weights that were meant to correct: they leave less than half of the as-found
  * vibration (aim.mounted unset: everything could come off). *as_good: what is placed beats them by

@@ -5,6 +5,9 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "solve/advice.h"
+#include "solve/lighter.h"
+#include "solve/misfit.h"
 #include "solve/oppose.h"
 
 #define GAP_SHOWN 0.01 /* %, our choice: less than any reading tells */
@@ -38,8 +41,9 @@ static void list_lost(const struct answer *a, char *text, size_t size)
         if (!row->in_aim || row->state == MODEL_GOOD)
             continue;
         char one[120];
-        int wanted = snprintf(one, sizeof one, "; without sensor '%s' (%s)",
-                              m->job->sensors[row->sensor].name, m->conditions[row->condition]);
+        int wanted = snprintf(
+            one, sizeof one, named ? ", '%s' (%s)" : "; this answer does not know sensor '%s' (%s)",
+            m->job->sensors[row->sensor].name, m->conditions[row->condition]);
         if (named == 2 || length + (size_t)wanted + 20 > size) {
             more++;
             continue;
@@ -86,16 +90,30 @@ static struct judge_figure left_of(const struct answer *a, const struct place_ch
     return judge_figure(round(1000 * share) / 10, 2);
 }
 
+static double mass_of(const struct answer *a, const struct place_choice *choice)
+{
+    double mass = 0;
+    for (size_t p = 0; p < a->planes; p++)
+        mass += oppose_mass(choice, p);
+    return mass;
+}
+
 /* Pieces that work against each other, and what doing without them costs. */
 static void say_opposed(const struct answer *a, struct advice_next *next)
 {
     char planes[120] = "";
     size_t length = 0;
-    for (size_t p = 0; p < a->planes && length + 50 < sizeof planes; p++)
-        if (oppose_on(&a->placement.best, p))
-            length += (size_t)snprintf(planes + length, sizeof planes - length, "%s'%s'",
-                                       length ? " and " : "", a->model->job->planes[p].name);
-    if (!a->opposed)
+    bool apart = false, us = a->model->job->units == UNITS_US;
+    double ideal = 0, unit = us ? 0.45359237 / 16 : 1e-3;
+    for (size_t p = 0; p < a->planes; p++) {
+        ideal += cabs(a->weights[p]);
+        if (!lighter_wanted(a, &a->placement.best, p) || length + 50 >= sizeof planes)
+            continue;
+        apart = apart || oppose_on(&a->placement.best, p);
+        length += (size_t)snprintf(planes + length, sizeof planes - length, "%s'%s'",
+                                   length ? " and " : "", a->model->job->planes[p].name);
+    }
+    if (!a->opposed || (!a->has_unopposed && !apart))
         return;
     if (!a->has_unopposed) {
         clause(next, "pieces on %s work partly against each other, but without that nothing helps",
@@ -104,18 +122,39 @@ static void say_opposed(const struct answer *a, struct advice_next *next)
     }
     struct judge_figure without = left_of(a, &a->unopposed.best);
     struct judge_figure with = left_of(a, &a->placement.best);
-    if (strcmp(without.text, with.text) == 0)
-        clause(
-            next,
-            "pieces on %s work partly against each other: the last alternative does without, and "
-            "leaves no more to two digits",
-            planes);
+    double now = mass_of(a, &a->placement.best), then = mass_of(a, &a->unopposed.best);
+    const char *name = us ? "oz" : "g";
+    clause(next, "pieces on %s work partly against each other (%.4g %s for an ideal of %s %s)",
+           planes, now / unit, name, judge_figure(ideal / unit, 2).text, name);
+    if (then < now * (1 - 1e-9))
+        clause(next, "the first alternative does with %.4g %s", then / unit, name);
     else
-        clause(
-            next,
-            "pieces on %s work partly against each other: the last alternative does without, and "
-            "leaves an expected %s %% instead of %s %%",
-            planes, without.text, with.text);
+        clause(next, "the first alternative does without");
+    if (strcmp(without.text, with.text) == 0)
+        clause(next, "it leaves no more to two digits");
+    else
+        clause(next, "it leaves an expected %s %% instead of %s %%", without.text, with.text);
+}
+
+/* Runs that do not fit one set of responses: the reader is to look there before anything is fitted.
+ */
+static void say_misfit(const struct answer *a, struct advice_next *next)
+{
+    const struct model *m = a->model;
+    const struct model_row *worst = NULL;
+    struct advice_finding f;
+    for (size_t r = 0; r < a->rows; r++)
+        if (misfit_judge(m, a->row[r], &f) && f.verdict != ADVICE_OK &&
+            (!worst || a->row[r]->misfit > worst->misfit))
+            worst = a->row[r];
+    if (!worst || !misfit_judge(m, worst, &f))
+        return;
+    const char *run = f.run >= 0 ? m->job->runs[f.run].name : "";
+    clause(next,
+           "first see why the runs do not fit one set of responses (linearity, %s s.e. at "
+           "sensor '%s'%s%s%s): a weight from them may be far off",
+           judge_figure(worst->misfit, 2).text, m->job->sensors[worst->sensor].name,
+           run[0] ? ", run '" : "", run, run[0] ? "'" : "");
 }
 
 void fit_step(const struct answer *a, bool trim, struct advice_next *next)
@@ -123,6 +162,7 @@ void fit_step(const struct answer *a, bool trim, struct advice_next *next)
     const struct job *job = a->model->job;
     int mounted = job->aim.mounted;
     *next = (struct advice_next){.step = trim ? "trim" : "correct"};
+    say_misfit(a, next);
     const char *drill = has_holes(a) ? "drill as placed, depths beside each placement" : NULL;
     const char *work = only_removal(a) ? drill ? drill : "remove material as placed"
                        : mounted >= 0  ? "add what is placed"

@@ -9,7 +9,7 @@
 
 /* The step `correct`, or `trim`: what is done with what is on, whether a better placement is not
  * ruled out, pieces that work against each other, holes, sensors that take no part. Each clause
- * stands whole or not at all. Needs answer_place and answer_unopposed. */
+ * stands whole or not at all. Needs answer_place and lighter_find. */
 void fit_step(const struct answer *answer, bool trim, struct advice_next *next);
 
 #endif

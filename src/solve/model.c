@@ -7,6 +7,7 @@
 #include "base/angle.h"
 #include "sheet/units.h"
 #include "solve/amplitude.h"
+#include "solve/culprit.h"
 #include "solve/regress.h"
 #include "solve/repeat.h"
 #include "solve/stored.h"
@@ -18,7 +19,9 @@ static int by_run(const void *a, const void *b)
         return x->run < y->run ? -1 : 1;
     if (x->sensor != y->sensor)
         return x->sensor < y->sensor ? -1 : 1;
-    return strcmp(x->condition, y->condition);
+    return x->place < y->place
+               ? -1
+               : x->place > y->place; /* conditions as they came: as the sheet has them */
 }
 
 static bool ordinary(const struct job_run *run)
@@ -49,7 +52,9 @@ static int row_room(struct model_row *row, size_t count, size_t planes)
     row->total = calloc(count + 1, sizeof *row->total);
     row->stored = calloc(planes + 1, sizeof *row->stored);
     row->overall = calloc(count + 1, sizeof *row->overall);
-    return row->runs && row->y && row->x && row->cov && row->total && row->stored && row->overall
+    row->possible = calloc(count + 1, sizeof *row->possible);
+    return row->runs && row->y && row->x && row->cov && row->total && row->stored && row->overall &&
+                   row->possible
                ? 0
                : -1;
 }
@@ -144,6 +149,7 @@ static int gather(struct model *m, struct model_row *row, const struct model_rea
     free(all);
     if (could < 0 || can < 0)
         return could == REGRESS_FAILED || can == REGRESS_FAILED ? MODEL_FAILED : MODEL_NO_MEMORY;
+    row->lacks = could > can;
     row->state = can == (int)planes + 1     ? MODEL_GOOD
                  : could == (int)planes + 1 ? MODEL_LOST
                                             : MODEL_SHORT;
@@ -232,6 +238,30 @@ static int fit_amplitudes(const struct model *m, struct model_row *row)
     return result;
 }
 
+/* Who it may be, where the readings do not fit each other. */
+static int find_culprit(const struct model *m, struct model_row *row)
+{
+    struct regress_data data = {.count = row->count,
+                                .planes = m->job->plane_count,
+                                .y = row->y,
+                                .x = row->x,
+                                .cov = (const double(*)[3])row->total,
+                                .scale = row->as_found};
+    int which;
+    if (!(row->misfit >= MODEL_MISFIT))
+        return MODEL_OK;
+    bool mirrored = false;
+    int result = culprit_find(&data, MODEL_MISFIT, row->possible, &which);
+    if (result == REGRESS_OK && which >= 0)
+        result = culprit_mirrored(&data, MODEL_MISFIT, &mirrored);
+    for (size_t i = 0; mirrored && i < row->count; i++)
+        row->possible[i] = false;
+    row->culprit = result == REGRESS_OK && which >= 0 && !mirrored ? (int)row->runs[which] : -1;
+    return result == REGRESS_OK          ? MODEL_OK
+           : result == REGRESS_NO_MEMORY ? MODEL_NO_MEMORY
+                                         : MODEL_FAILED;
+}
+
 static int fit_row(struct model *m, struct model_row *row)
 {
     row->sigma = m->repeatability * row->as_found;
@@ -249,6 +279,9 @@ static int fit_row(struct model *m, struct model_row *row)
                                            : MODEL_FAILED;
     row->posterior.dof = m->dof;
     widen_misfit(m, row);
+    result = find_culprit(m, row);
+    if (result != MODEL_OK)
+        return result;
     for (size_t p = 0; p < m->job->plane_count; p++)
         m->held[p] = m->held[p] || row->stored[p];
     if (row->runout) { /* one error that all readings share: Z0 has it, no response does */
@@ -320,6 +353,8 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
     m->job = job;
     m->last_run = -1;
     m->runout_run = find_runout(job);
+    for (size_t i = 0; i < count; i++)
+        readings[i].place = i;
     qsort(readings, count, sizeof *readings, by_run);
     m->conditions = calloc(job->run_count + count + 1, sizeof *m->conditions);
     m->rows = calloc((job->run_count + count + 1) * (job->sensor_count + 1), sizeof *m->rows);
@@ -349,7 +384,7 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
             row->misfit = row->changed = NAN;
             row->widened = 1;
             row->changed_plane = -1;
-            row->lost_run = -1;
+            row->lost_run = row->culprit = -1;
             result = gather(m, row, readings, count);
             if (result == MODEL_OK && !m->amplitudes)
                 result = pool_row(&pool, row, job->plane_count);
@@ -376,6 +411,7 @@ void model_release(struct model *m)
         free(row->cov);
         free(row->total);
         free(row->stored);
+        free(row->possible);
         free(row->overall);
     }
     free(m->runout);
@@ -411,6 +447,21 @@ int model_rank_before(const struct model *m, size_t end)
     int rank = regress_rank(n, planes, x, m->held);
     free(x);
     return rank;
+}
+
+bool model_refuse(const struct model *m, const struct model_row *row, int run,
+                  struct model_reading *readings, size_t count)
+{
+    bool found = false;
+    for (size_t i = 0; i < count; i++) {
+        struct model_reading *r = &readings[i];
+        if ((int)r->run != run || r->sensor != row->sensor || !r->use ||
+            strcmp(r->condition, m->conditions[row->condition]) != 0)
+            continue;
+        r->use = false;
+        found = true;
+    }
+    return found;
 }
 
 const double complex *model_find(const struct model_row *row, size_t run)

@@ -23,6 +23,7 @@ struct model_reading { /* what the stage hands over; any order */
     double amplitude;      /* SI peak, where there is no phase */
     double cov[3];         /* of the mean, widened */
     double by_speed;       /* of it, both components: for a speed that is not the others' */
+    size_t place;          /* model_init's own: the order they came in */
     double overall;        /* rms, SI, of everything in a band; NaN or 0: not known */
     enum quantity overall_quantity;
 };
@@ -64,7 +65,12 @@ struct model_row {
     struct posterior posterior; /* relative to as found; zeroed where nothing was read */
     double misfit;              /* s.e.; NaN: no run is spare */
     double widened; /* variances of posterior and next reading count so many times; 1: they fit */
-    size_t misfit_run;
+    size_t misfit_run; /* furthest off */
+    bool *possible;    /* owned, count: from MODEL_MISFIT on, the readings of which any one may be
+                          wrong */
+    int culprit; /* the run that is the only one of them, the others agreeing; -1: cannot be told */
+    bool torn;   /* lost, since its readings contradict each other and no culprit can be told */
+    bool lacks;  /* refused readings would determine more than the usable ones do */
     bool ambiguous; /* amplitudes alone leave more than one answer */
     double complex
         either[2]; /* amplitudes alone: the two weights (kg) that fit alike; NaN: no such pair */
@@ -107,7 +113,8 @@ struct model {
 
 enum model_error { MODEL_OK = 0, MODEL_NO_MEMORY = -1, MODEL_FAILED = -2, MODEL_NAN = -3 };
 
-/* Builds the rows and fits each. `readings` is borrowed for the call and sorted in place. */
+/* Builds the rows and fits each. `readings` is borrowed for the call and sorted in place, by run,
+ * sensor, and the order they came in. */
 int model_init(struct model *model, const struct job *job, struct model_reading *readings,
                size_t count) __attribute__((warn_unused_result));
 void model_release(struct model *model); /* safe on a zeroed struct */
@@ -118,6 +125,11 @@ bool model_is_bare(const struct model *model);
 /* Rank of [1, weights] over the job's runs of the same condition before run `end` (readings or
  * not), roles left out; planes + 1 is a full one. Negative: no memory. */
 int model_rank_before(const struct model *model, size_t end) __attribute__((warn_unused_result));
+
+/* True where a usable reading of that run, sensor and condition is among the row's readings that
+ * model_init was given; it is then out of use: the model is to be made anew. */
+bool model_refuse(const struct model *model, const struct model_row *row, int run,
+                  struct model_reading *readings, size_t count);
 
 /* The reading of run `run` in a row, or NULL. */
 const double complex *model_find(const struct model_row *row, size_t run);

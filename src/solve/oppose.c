@@ -28,3 +28,11 @@ bool oppose_same(const struct place_choice *a, const struct place_choice *b)
     }
     return true;
 }
+
+double oppose_mass(const struct place_choice *choice, size_t plane)
+{
+    double mass = 0;
+    for (size_t i = 0; i < choice->count; i++)
+        mass += choice->items[i].plane == plane ? choice->items[i].mass : 0;
+    return mass;
+}

@@ -16,4 +16,7 @@ bool oppose_on(const struct place_choice *choice, size_t plane);
 /* True where both choices have the same masses at the same places. */
 bool oppose_same(const struct place_choice *a, const struct place_choice *b);
 
+/* kg, all that the choice has on that plane, whatever its direction. */
+double oppose_mass(const struct place_choice *choice, size_t plane);
+
 #endif

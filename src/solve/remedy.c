@@ -10,7 +10,7 @@
 bool remedy_is_diagnosis(const char *check)
 {
     return !strcmp(check, "lag-follows-weight") || !strcmp(check, "sensor-swapped") ||
-           !strcmp(check, "tape-moved");
+           !strcmp(check, "sensor-turned") || !strcmp(check, "tape-moved");
 }
 
 static bool in_aim(const struct model *m, int sensor)
@@ -145,15 +145,52 @@ next_cause(const struct model *m, const struct remedy_cause *causes, size_t coun
     return best;
 }
 
+/* The first diagnosis, without its limit; false: there is none. */
+static bool diagnosis(const struct model *m, const struct remedy_cause *causes, size_t count,
+                      char *text, size_t size)
+{
+    for (size_t i = 0; i < count; i++) {
+        if (!remedy_is_diagnosis(causes[i].check) || !in_aim(m, causes[i].sensor))
+            continue;
+        snprintf(text, size, "%.250s", causes[i].text);
+        char *limit = strstr(text, ", limit "), *advice = limit ? strstr(limit, ": ") : NULL;
+        if (advice)
+            memmove(limit, advice, strlen(advice) + 1);
+        return true;
+    }
+    return false;
+}
+
+void remedy_lead(const struct model *m, const struct remedy_cause *causes, size_t count,
+                 struct advice_next *next)
+{
+    struct advice_next own = *next;
+    if (!diagnosis(m, causes, count, own.text, sizeof own.text))
+        return;
+    append(&own, next->text);
+    memcpy(next->text, own.text, sizeof next->text);
+}
+
+/* 2x that is many times 1x asks for the tacho first, whatever else was refused. */
+static void ask_for_shaft(const struct model *m, const struct remedy_cause *causes, size_t count,
+                          struct advice_next *next)
+{
+    for (size_t i = 0; i < count; i++) {
+        const struct remedy_cause *c = &causes[i];
+        if (strcmp(c->check, "two-x") != 0 || !(c->value >= REMEDY_SHAFT_PCT) ||
+            !in_aim(m, c->sensor))
+            continue;
+        append(next, "2x is many times 1x: see whether the tacho counts this shaft");
+        return;
+    }
+}
+
 void remedy_step(const struct model *m, const struct remedy_cause *causes, size_t count,
                  struct advice_next *next)
 {
     struct advice_next own = {.step = next->step};
-    for (size_t i = 0; i < count && !own.text[0]; i++)
-        if (remedy_is_diagnosis(causes[i].check) && in_aim(m, causes[i].sensor))
-            snprintf(own.text, sizeof own.text, "%.250s", causes[i].text);
     int above = -1;
-    bool any = own.text[0] != '\0';
+    bool any = diagnosis(m, causes, count, own.text, sizeof own.text);
     for (int k = 0; k < CHECKS; k++) {
         const struct remedy_cause *c = next_cause(m, causes, count, above);
         char words[400];
@@ -167,4 +204,5 @@ void remedy_step(const struct model *m, const struct remedy_cause *causes, size_
     }
     if (any && own.text[0])
         memcpy(next->text, own.text, sizeof next->text);
+    ask_for_shaft(m, causes, count, next);
 }

@@ -17,8 +17,8 @@ static struct ruling rule_bare(const struct model *m)
         else if (row->in_aim && m->job->aim.named)
             return (struct ruling){RULING_REPEAT, row, true};
     }
-    if (usable == 0 && m->row_count > 0)
-        ruling.kind = RULING_REPEAT;
+    if (usable == 0)
+        ruling.kind = m->row_count > 0 ? RULING_REPEAT : RULING_MISSING;
     return ruling;
 }
 
@@ -51,7 +51,7 @@ struct ruling ruling_of(const struct model *m)
     const struct model_row *missing = NULL;
     size_t good = 0;
     for (size_t c = 0; c < m->condition_count; c++) {
-        size_t good_here = 0;
+        size_t good_here = 0, short_here = 0;
         const struct model_row *lost = NULL;
         for (size_t r = 0; r < m->row_count; r++) {
             const struct model_row *row = &m->rows[r];
@@ -59,19 +59,20 @@ struct ruling ruling_of(const struct model *m)
                 continue;
             if (row->state == MODEL_GOOD)
                 good_here++;
-            else if (row->state == MODEL_SHORT)
+            else if (row->state == MODEL_SHORT && !row->lacks) {
                 missing = missing ? missing : row;
-            else if (m->job->aim.named)
+                short_here++;
+            } else if (m->job->aim.named)
                 return (struct ruling){RULING_REPEAT, row, true};
-            else
-                lost = lost ? lost : row;
+            else if (!lost || (lost->state != MODEL_LOST && row->state == MODEL_LOST))
+                lost = row;
         }
-        if (good_here == 0 && lost)
+        if (good_here == 0 && lost && (lost->state == MODEL_LOST || short_here == 0))
             return (struct ruling){RULING_REPEAT, lost, false};
         good += good_here;
     }
     if (good == 0) {
-        solve.kind = m->row_count > 0 ? RULING_MISSING : RULING_REPEAT;
+        solve.kind = RULING_MISSING;
         solve.row = missing;
     }
     return solve;

@@ -15,8 +15,10 @@
 #include "solve/answer.h"
 #include "solve/fit.h"
 #include "solve/holes.h"
+#include "solve/lighter.h"
 #include "solve/lookback.h"
 #include "solve/model.h"
+#include "solve/misfit.h"
 #include "solve/notes.h"
 #include "solve/outlook.h"
 #include "solve/ruling.h"
@@ -43,6 +45,31 @@ static void lose_sensor(struct model *m, int sensor, int run)
     }
 }
 
+/* Takes readings out of use that do not fit the others, as long as it is known which: the model is
+ * made anew without them. */
+static int sift(struct solve_records *s, struct model *m)
+{
+    int status = STATUS_DONE;
+    bool again = true;
+    while (again && status == STATUS_DONE) {
+        again = false;
+        for (size_t i = 0; i < m->row_count && status == STATUS_DONE; i++) {
+            struct advice_finding f;
+            if (!misfit_judge(m, &m->rows[i], &f) || f.verdict != ADVICE_REFUSE ||
+                m->rows[i].culprit < 0 ||
+                !model_refuse(m, &m->rows[i], m->rows[i].culprit, s->readings, s->count))
+                continue;
+            again = true;
+            status = solve_records_dropped(s, &f);
+        }
+        if (!again || status != STATUS_DONE)
+            continue;
+        model_release(m);
+        status = kernel_status(model_init(m, &s->stream.job, s->readings, s->count));
+    }
+    return status;
+}
+
 /* Findings about the rows; a refused row is lost to the correction. */
 static int judge_rows(struct solve_records *s, struct model *m)
 {
@@ -50,12 +77,13 @@ static int judge_rows(struct solve_records *s, struct model *m)
     for (size_t i = 0; i < m->row_count && status == STATUS_DONE; i++) {
         struct advice_finding f[2];
         size_t count = 0;
-        count += advice_linearity(m, &m->rows[i], &f[count]);
+        count += misfit_judge(m, &m->rows[i], &f[count]);
         count += notes_stored(m, &m->rows[i], &f[count]);
         for (size_t k = 0; k < count && status == STATUS_DONE; k++) {
             if (f[k].verdict == ADVICE_REFUSE) {
                 m->rows[i].state = MODEL_LOST;
                 m->rows[i].lost_run = f[k].run;
+                m->rows[i].torn = f[k].run < 0;
             }
             status = solve_records_finding(s, &f[k]);
         }
@@ -176,7 +204,7 @@ static int give_answer(struct solve_records *s, struct answer *a)
     if (status == STATUS_DONE && !next.step)
         status = kernel_status(answer_place(a));
     if (status == STATUS_DONE && a->placed)
-        status = kernel_status(answer_unopposed(a));
+        status = kernel_status(lighter_find(a));
     if (status == STATUS_DONE && a->placed)
         status = judge_forces(s, a, &refused);
     if (status != STATUS_DONE)
@@ -232,7 +260,10 @@ static void repeat_step(const struct solve_records *s, const struct model *m,
                         const struct ruling *ruling, struct advice_next *next)
 {
     advice_repeat_step(m, ruling, next);
-    remedy_step(m, s->causes, s->cause_count, next);
+    if (ruling->row && ruling->row->torn)
+        remedy_lead(m, s->causes, s->cause_count, next);
+    else
+        remedy_step(m, s->causes, s->cause_count, next);
 }
 
 static int solve_rows(struct solve_records *s, const struct model *m)
@@ -262,6 +293,31 @@ static int solve_rows(struct solve_records *s, const struct model *m)
     return status;
 }
 
+static bool any_refused(const struct solve_records *s)
+{
+    for (size_t i = 0; i < s->cause_count; i++)
+        if (s->causes[i].refused)
+            return true;
+    return false;
+}
+
+/* As found meets the aim: nothing is to be fitted, unless what the tacho counts is not this shaft.
+ */
+static int already(struct solve_records *s, const struct model *m)
+{
+    struct advice_next next;
+    int status = STATUS_DONE;
+    already_step(m, &next);
+    for (size_t i = 0; i < m->row_count && status == STATUS_DONE; i++) {
+        struct advice_finding f;
+        if (!already_elsewhere(m, &m->rows[i], s->causes, s->cause_count, &f))
+            continue;
+        already_doubt(&f, &next);
+        status = solve_records_finding(s, &f);
+    }
+    return status == STATUS_DONE ? solve_records_next(s, &next, NULL, STATUS_DONE) : status;
+}
+
 /* All records are read: fit, judge, answer. */
 static int conclude(struct solve_records *s)
 {
@@ -280,14 +336,19 @@ static int conclude(struct solve_records *s)
         status = kernel_status(model_init(&model, &s->stream.job, s->readings, s->count));
     if (status != STATUS_DONE)
         return status;
-    status = solve_records_responses(s, &model);
+    status = sift(s, &model);
     if (status == STATUS_DONE)
         status = judge_rows(s, &model);
-    if (status == STATUS_DONE && already_meets(&model)) {
-        already_step(&model, &next);
-        status = solve_records_next(s, &next, NULL, STATUS_DONE);
+    if (status == STATUS_DONE)
+        status = solve_records_responses(s, &model);
+    struct ruling ruling = {RULING_REPEAT, NULL, false};
+    if (status == STATUS_DONE)
+        ruling = ruling_of(&model);
+    if (ruling.kind == RULING_MISSING && model.row_count == 0 && any_refused(s))
+        ruling.kind = RULING_REPEAT;
+    if (status == STATUS_DONE && ruling.kind != RULING_REPEAT && already_meets(&model)) {
+        status = already(s, &model);
     } else if (status == STATUS_DONE) {
-        struct ruling ruling = ruling_of(&model);
         switch (ruling.kind) {
         case RULING_TRIAL:
             advice_trial_step(&model, &next);
@@ -325,6 +386,8 @@ static int run(const struct option_list *files)
         status = stream_finish(&s.stream);
     if (status == STATUS_DONE)
         status = s.status;
+    if (status == STATUS_DONE && s.dropped > 0)
+        message("goes on without what it refused: %s, refusal 1 of %ld)", s.first, s.dropped);
     solve_records_release(&s);
     return status;
 }

@@ -126,8 +126,8 @@ static bool cause_of(const struct job *job, const struct finding_record *f,
                                    .limit = f->limit};
     memcpy(cause->check, f->check, sizeof cause->check);
     memcpy(cause->text, f->text, sizeof cause->text);
-    return cause->run >= 0 &&
-           (refused || (remedy_is_diagnosis(f->check) && f->verdict == VERDICT_CAUTION));
+    bool told = remedy_is_diagnosis(f->check) || !strcmp(f->check, "two-x");
+    return cause->run >= 0 && (refused || (told && f->verdict == VERDICT_CAUTION));
 }
 
 static int take_finding(struct solve_records *s, const struct finding_record *f)
@@ -243,7 +243,7 @@ int solve_records_responses(struct solve_records *s, const struct model *m)
          i++) { /* their phase would be no phase */
         const struct model_row *row = &m->rows[i];
         for (size_t p = 0; p < m->job->plane_count && status == STATUS_DONE; p++) {
-            if (row->count == 0 || !row->posterior.known[p + 1])
+            if (row->count == 0 || row->torn || !row->posterior.known[p + 1])
                 continue;
             struct response_record r = {.sensor = (int)row->sensor,
                                         .plane = (int)p,
@@ -276,6 +276,15 @@ int solve_records_finding(struct solve_records *s, const struct advice_finding *
     finding_print(&r, &s->stream.job, &s->line);
     int status = take_finding(s, &r);
     return status == STATUS_DONE ? put(s) : status;
+}
+
+int solve_records_dropped(struct solve_records *s, const struct advice_finding *f)
+{
+    const struct job *job = &s->stream.job;
+    if (s->dropped++ == 0)
+        snprintf(s->first, sizeof s->first, "'%s' (sensor '%s': %s", job->runs[f->run].name,
+                 job->sensors[f->sensor].name, f->check);
+    return solve_records_finding(s, f);
 }
 
 int solve_records_compared(struct solve_records *s, const struct model *m,
@@ -471,7 +480,7 @@ static void line_other(struct line *line, const struct answer *a, const struct p
     line_close(line, '}');
 }
 
-/* The two next best and, last, what does without pieces that work against each other where the
+/* First, what does without pieces that work against each other where the
  * placement has such. */
 static void line_others(struct line *line, const struct answer *a)
 {
@@ -480,11 +489,11 @@ static void line_others(struct line *line, const struct answer *a)
     line_boolean(line, "fewest_proven", !place->cut);
     line_real(line, "of_nothing", sqrt(fmax(0, place->best.objective) / place->nothing));
     line_open(line, "others", '[');
+    if (a->has_unopposed)
+        line_other(line, a, &a->unopposed.best, true);
     for (int k = 0; k < 2 && !isnan(place->next[k].objective); k++)
         if (!a->has_unopposed || !oppose_same(&place->next[k], &a->unopposed.best))
             line_other(line, a, &place->next[k], false);
-    if (a->has_unopposed)
-        line_other(line, a, &a->unopposed.best, true);
     line_close(line, ']');
 }
 

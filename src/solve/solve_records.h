@@ -33,8 +33,10 @@ struct solve_records {
     struct remedy_cause *causes; /* owned: findings above a limit, all stages' */
     size_t cause_count, cause_room;
     struct line line;
-    bool said;  /* a refusal of ours says already why there is no correction */
-    int status; /* the exit code that the answer calls for */
+    long dropped;    /* readings that the regression refused and does without */
+    char first[200]; /* of them, the first: what the line on standard error says */
+    bool said;       /* a refusal of ours says already why there is no correction */
+    int status;      /* the exit code that the answer calls for */
 };
 
 /* Begins with the job record of the first file (standard input where there is none); `s` is to be
@@ -56,6 +58,10 @@ int solve_records_bring(struct solve_records *s) __attribute__((warn_unused_resu
 int solve_records_responses(struct solve_records *s, const struct model *m)
     __attribute__((warn_unused_result));
 int solve_records_finding(struct solve_records *s, const struct advice_finding *f)
+    __attribute__((warn_unused_result));
+/* A reading that the regression refused and does without: the finding, and the line on standard
+ * error. */
+int solve_records_dropped(struct solve_records *s, const struct advice_finding *f)
     __attribute__((warn_unused_result));
 /* A corrected run's reading of one row (sensor and condition) against what the runs before it
  * predict. */

@@ -104,7 +104,8 @@ static bool share_file(const struct vet_run *a, const struct vet_run *b)
     return false;
 }
 
-/* A recording of an audit is judged by itself; that another one is the same file is only told. */
+/* A recording of an audit is judged by itself, and its verdict is the one it has alone; that another
+ * one is the same file is told of both, as a finding about neither. */
 static void same_in_audit(const struct vet_runs *runs, const size_t *order, size_t k,
                           struct findings *findings)
 {
@@ -114,8 +115,9 @@ static void same_in_audit(const struct vet_runs *runs, const size_t *order, size
         const struct vet_run *seen = &runs->items[order[m]];
         if (seen->index < 0 && seen->parent < 0 && share_file(run, seen)) {
             findings_instead(findings, "one of the two names is wrong, or it was copied");
-            findings_rule(findings, CHECK_SAME_RECORDING, RULING_CAUTION, (int)order[k], -1, 1, 0,
-                          "", "recording '%s' has the same content (SHA-256)", seen->name);
+            findings_rule(findings, CHECK_SAME_RECORDING, RULING_CAUTION, -1, -1, 1, 0, "",
+                          "recordings '%s' and '%s' have the same content (SHA-256)", seen->name,
+                          run->name);
             return;
         }
     }

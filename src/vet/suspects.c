@@ -12,7 +12,7 @@ static const double TURN_LEAST =
     5; /* deg: a mark put on anew hardly lands closer, common practice */
 static const double TURN_SEEN = 30; /* deg: a smaller one does little harm; common practice */
 static const double FAR = 4;        /* of chi-squared: twice as much in amplitude */
-static const double AS_GOOD = 6;    /* of chi-squared: the 95 % point with 2 degrees of freedom */
+static const double AS_GOOD = 9.21; /* of chi-squared: the 99 % point with 2 degrees of freedom */
 static const double RANK_LEAST = 1e-9; /* rounding of weights scaled to 1 */
 
 static const double ROUNDING = 1e-6; /* of chi-squared */

@@ -265,7 +265,8 @@ static void note(struct vet *v, const struct finding *f)
         if ((int)k != f->run && run->parent != f->run)
             continue;
         for (size_t i = 0; i < v->stream.job.sensor_count; i++)
-            if ((f->sensor < 0 || f->sensor == (int)i) && run->readings[i].reason < 0)
+            if ((f->sensor < 0 || f->sensor == (int)i || run->refused) &&
+                run->readings[i].reason < 0)
                 run->readings[i].reason = (int)f->check;
     }
 }

@@ -148,6 +148,17 @@ static void check_speed(struct vet_run *run, int position, const struct job *job
         within_refuse(run, job);
 }
 
+/* A sensor without a reading in a run whose others have theirs: a NaN among its samples, say. Not
+ * every speed of a coast-down has one. */
+static bool vanished(const struct vet_run *run, size_t sensor, const struct job *job)
+{
+    bool others = false;
+
+    for (size_t i = 0; i < job->sensor_count; i++)
+        others = others || run->readings[i].present;
+    return others && !run->readings[sensor].present && !coasts(run, job);
+}
+
 static void check_channel(struct vet_run *run, int position, size_t sensor, const struct job *job,
                           struct findings *findings)
 {
@@ -169,7 +180,12 @@ static void check_channel(struct vet_run *run, int position, size_t sensor, cons
         refuse |= findings_add(findings, CHECK_SENSOR_DEAD, position, s, 1,
                                c->resolution > 0 ? "no signal above the channel's resolution"
                                                  : "the signal is constant") == RULING_REFUSE;
-    else
+    else if (vanished(run, sensor, job)) {
+        findings_instead(findings, "look at its samples, which hold what is no number");
+        refuse |= findings_add(findings, CHECK_SENSOR_DEAD, position, s, 1,
+                               "no reading could be made of it, though the others gave theirs") ==
+                  RULING_REFUSE;
+    } else
         findings_add(findings, CHECK_SENSOR_DEAD, position, s, 0,
                      "the signal lives, and no other channel has the same");
     if (refuse)

@@ -48,6 +48,58 @@ class Within(unittest.TestCase):
             widened = [v["widen"] for v in chain.kind(stream, "vetted")]
             self.assertTrue(all(w[0] > 0 and w[2] > 0 for w in widened))
 
+    def test_no_gap_between_beat_and_neighbour(self):
+        """A line as large as 1x, from a third of a hertz beside it on: one of both always tells."""
+        with chain.folder() as where:
+            offsets = (0.35, 0.8, 1.2, 1.5, 1.7, 2.0, 3.2, 5.0, -1.5, -1.7)
+            for beside in offsets:
+                recordings.write(where / f"x{beside}.wav", 7, beat=1.0, beside=beside, seconds=10.0)
+            found, _ = audits.audit(where, sorted(where.glob("*.wav")))
+            for beside in offsets:
+                told = {f["check"] for f in found[f"x{beside}"] if f["verdict"] != "ok"}
+                self.assertTrue(told & {"beat", "neighbour"}, (beside, told))
+
+    def test_copies_in_an_audit(self):
+        """The same file twice is told; each keeps the verdicts that it has alone."""
+        with chain.folder() as where:
+            recordings.write(where / "a.wav", 5)
+            shutil.copy(where / "a.wav", where / "b.wav")
+            (where / "audit.ini").write_text(recordings.SHEET)
+            alone, both = ([[f["check"], f["verdict"], f["value"]] for f in chain.kind(
+                chain.records(chain.lopside("vet", stdin=chain.through(
+                    ["read", "track", "average"], b"", read=[where / "audit.ini", *names])).stdout), "finding")
+                if f["run"] == "a"] for names in ([where / "a.wav"], [where / "a.wav", where / "b.wav"]))
+            self.assertEqual(alone, both)
+            data = chain.through(["read", "track", "average", "vet"], b"",
+                                 read=[where / "audit.ini", where / "a.wav", where / "b.wav"])
+            told = [f for f in chain.kind(chain.records(data), "finding") if f["check"] == "same-recording"]
+            self.assertEqual([(f["run"], f["verdict"]) for f in told], [(None, "caution")])
+            self.assertIn("'a' and 'b'", told[0]["text"])
+
+    def test_odd_times_and_missing_readings(self):
+        """Somebody's own stage between: times that do not grow, a sensor whose samples became NaN."""
+        with chain.folder() as where:
+            recordings.write(where / "a.wav", 5)
+            (where / "audit.ini").write_text(recordings.SHEET)
+            lines = chain.through(["read", "track"], b"", read=[where / "audit.ini", where / "a.wav"]).decode().splitlines()
+            last = max(k for k, line in enumerate(lines) if '"kind":"turns"' in line)
+            odd = list(lines)
+            odd[last] = re.sub(r'"t_s":[^,]*', '"t_s":1e-300', odd[last])
+            done = chain.lopside("average", stdin="\n".join([*odd, ""]).encode())
+            self.assertNotIn(b"memory", done.stderr)
+            self.assertEqual(done.returncode, 0)
+            gone = [json.loads(line) for line in lines]
+            for record in chain.kind(gone, "turns"):
+                del record["vectors"]["A-H"], record["rest"]["A-H"]
+            gone = [r for r in gone if r["kind"] != "spectrum" or r["sensor"] != "A-H"][:-1]
+            gone.append({"kind": "end", "records": len(gone)})
+            averaged = chain.lopside("average", stdin="".join(json.dumps(r) + "\n" for r in gone).encode())
+            self.assertEqual(averaged.returncode, 0, chain.complaint(averaged))
+            stream = chain.records(chain.lopside("vet", stdin=averaged.stdout).stdout)
+            self.assertEqual([r["sensor"] for r in chain.kind(stream, "reading")], ["B-V"])
+            (f,) = [f for f in chain.kind(stream, "finding") if f["check"] == "sensor-dead" and f["verdict"] != "ok"]
+            self.assertEqual((f["sensor"], f["verdict"]), ("A-H", "refuse"))
+
     def test_findings_tell_figure_limit_and_basis(self):
         with chain.folder() as where:
             recordings.write(where / "a.wav", 5, two_x=0.7)
@@ -289,6 +341,25 @@ class Across(unittest.TestCase):
                 self.assertIn("clipping", said)
                 self.assertEqual(bool(chain.kind(report, "placement")), code == 0)
                 self.assertEqual(chain.kind(report, "next")[0]["step"], "repeat" if code else "correct")
+
+
+class OtherShaft(unittest.TestCase):
+    def test_met_by_a_tacho_on_another_shaft(self):
+        """1x far below the target, 2x far above it: `done` comes with the question which shaft the tacho counts."""
+        with chain.folder() as where:
+            recordings.write(where / "f.wav", 3, vectors=(2e-5 + 0j, 3e-5j), two_x=400.0, white=1.0)
+            for target, doubt in (("target = 1 mm/s rms", True), ("target = 20 mm/s rms", False)):
+                (where / "job.ini").write_text(recordings.SHEET + "[plane p]\nradius = 400 mm\n[run f]\nfile = f.wav\n[aim]\n"
+                                               + target + "\n[limits]\namplitude-steady = none\nphase-steady = none\n"
+                                               "drift = none\nbeat = none\n")
+                done = chain.lopside("balance", where / "job.ini", "--as", "json")
+                self.assertEqual(done.returncode, 0, chain.complaint(done))
+                stream = json.loads(done.stdout)
+                (step,) = chain.kind(stream, "next")
+                self.assertEqual(step["step"], "done")
+                self.assertEqual("the tacho may count another shaft" in step["text"], doubt)
+                told = [f["verdict"] for f in chain.kind(stream, "finding") if f["check"] == "overall-level"]
+                self.assertEqual(set(told), {"caution"} if doubt else set())
 
 
 if __name__ == "__main__":

@@ -11,6 +11,7 @@
 
 #include "base/angle.h"
 #include "solve/advice.h"
+#include "solve/misfit.h"
 #include "solve/amplitude.h"
 #include "solve/answer.h"
 #include "solve/model.h"
@@ -281,13 +282,13 @@ static void test_linearity(void **state)
     desk_run(&d, "most", angle_vector(0.06, 270), angle_vector(0.05, 320));
     d.job.aim.repeatability = 0.03;
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_true(advice_linearity(&d.model, &d.model.rows[0], &f));
+    assert_true(misfit_judge(&d.model, &d.model.rows[0], &f));
     assert_int_equal(f.verdict, ADVICE_OK);
     assert_true(f.value < 1e-6);
     model_release(&d.model);
     d.weights[3][0].angle_deg -= 180;
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_true(advice_linearity(&d.model, &d.model.rows[0], &f));
+    assert_true(misfit_judge(&d.model, &d.model.rows[0], &f));
     assert_int_equal(f.verdict, ADVICE_REFUSE);
     model_release(&d.model);
 }

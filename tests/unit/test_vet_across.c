@@ -97,7 +97,8 @@ static void copies_in_an_audit(void **state)
     memcpy(desk.hashes[2][0], desk.hashes[0][0], 65);
     across_same_recording(&desk.runs, desk.order, &desk.job, &desk.findings);
     assert_int_equal(desk.findings.count, 1);
-    assert_int_equal(vet_desk_ruled(CHECK_SAME_RECORDING, 2, -1), RULING_CAUTION);
+    assert_int_equal(vet_desk_ruled(CHECK_SAME_RECORDING, -1, -1), RULING_CAUTION);
+    assert_int_equal(desk.findings.items[0].run, -1); /* neither's verdict is another than alone */
     assert_true(vet_desk_all_used(0) && vet_desk_all_used(2));
 }
 
