@@ -54,20 +54,22 @@ def check_includes(source, folder, path):
             offend(path.relative_to(source), f"is a kernel and includes {name}")
 
 
-def symbols(build, folder, stem):
-    """Two sets: exported and called names of the object file."""
-    objects = list(build.glob(f"src/{folder}/CMakeFiles/*/{stem}.c.o"))
-    if not objects:
-        return set(), set()
-    text = subprocess.run(["nm", str(objects[0])], check=True, capture_output=True, text=True).stdout
-    exported, called = set(), set()
+def symbols(build):
+    """(folder, stem) to two sets: exported and called names of the object file."""
+    objects = {}
+    for path in build.glob("src/*/CMakeFiles/*/*.c.o"):
+        objects[str(path)] = path.relative_to(build / "src").parts[0], path.name.removesuffix(".c.o")
+    found = {key: (set(), set()) for key in objects.values()}
+    text = subprocess.run(["nm", "-A", *objects], check=True, capture_output=True, text=True).stdout if objects else ""
     for line in text.splitlines():
-        kind, name = line.split()[-2:]
-        if kind in "TDBRSGVW":
+        path, _, rest = line.partition(":")
+        kind, name = rest.split()[-2:]
+        exported, called = found[objects[path]]
+        if kind in "TDBRSGVW" and not name.startswith("_"):
             exported.add(name)
         elif kind == "U":
             called.add(name)
-    return {n for n in exported if not n.startswith("_")}, called
+    return found
 
 
 def declared(folder_path):
@@ -81,8 +83,8 @@ def declared(folder_path):
     return names
 
 
-def check_symbols(source, build, folder, path):
-    exported, called = symbols(build, folder, path.stem)
+def check_symbols(source, found, folder, path):
+    exported, called = found.get((folder, path.stem), (set(), set()))
     stage_file = is_stage_file(folder, path)
     name = path.relative_to(source)
     if folder in STAGES and not stage_file:
@@ -102,12 +104,12 @@ def check_symbols(source, build, folder, path):
 
 def main():
     source, build = pathlib.Path(sys.argv[1]), pathlib.Path(sys.argv[2])
-    seen = 0
+    seen, found = 0, symbols(build)
     for path in sorted((source / "src").glob("*/*.[ch]")):
         folder = path.parent.name
         check_includes(source, folder, path)
         if path.suffix == ".c":
-            seen += check_symbols(source, build, folder, path)
+            seen += check_symbols(source, found, folder, path)
     for line in offences:
         print(line)
     if seen < len(STAGES):
