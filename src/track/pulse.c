@@ -1,6 +1,7 @@
 #include "track/pulse.h"
 
 #include <math.h>
+#include <stdlib.h>
 
 enum { UNKNOWN, BELOW, ABOVE, ABOVE_FROM_START };
 
@@ -12,6 +13,16 @@ enum { UNKNOWN, BELOW, ABOVE, ABOVE_FROM_START };
 #define GROUP 16    /* samples looked at together where nothing happens */
 #define PART 512    /* samples studied at a time */
 #define SILENT 0.1f /* of the former span: below it is no pulse */
+
+/* A pulse of two sides: so much of the samples lies within a band about their median, as wide as
+ * the hysteresis on each side, and so far above the bottom of the range that the middle of the
+ * range would be in the band or beside it. (Where the other side is small the middle serves: the
+ * half height of the pulse itself says when it came, and an undershoot of a fifth is a
+ * capacitor's.) */
+#define REST_LEAST 0.6
+#define REST_LOW 0.2f
+#define REST_HIGH 0.75f
+#define REST_LOOKED 4096 /* samples that say where the signal rests */
 
 void pulse_init(struct pulse_finder *finder, int edge, double level)
 {
@@ -38,10 +49,10 @@ static float typical(const float *values, float sign)
 static void set_levels(struct pulse_finder *finder)
 {
     float top = typical(finder->tops, 1.0f), bottom = typical(finder->bottoms, -1.0f);
-    float span = top - bottom;
+    float floor = bottom + finder->rest * (top - bottom), span = top - floor;
 
     finder->middle =
-        isnan(finder->level) ? 0.5f * (top + bottom) : finder->sign * (float)finder->level;
+        isnan(finder->level) ? 0.5f * (top + floor) : finder->sign * (float)finder->level;
     finder->above = finder->middle + HYSTERESIS * span;
     finder->below = finder->middle - HYSTERESIS * span;
     if (!isnan(finder->level)) { /* a level close to an extreme still has to work */
@@ -211,6 +222,33 @@ static void study(struct pulse_finder *finder, const float *x, size_t n)
     finder->edge = trial.edge;
 }
 
+static int ascending(const void *a, const void *b)
+{
+    float x = *(const float *)a, y = *(const float *)b;
+
+    return (x > y) - (x < y);
+}
+
+/* Where the signal rests between the two sides of its pulses, as a share of its range; 0: they have
+ * one side. */
+static float resting(const float *x, float sign, size_t n, float bottom, float span)
+{
+    float seen[REST_LOOKED];
+    size_t stride = 1 + n / REST_LOOKED, count = 0, near = 0;
+
+    for (size_t i = 0; i < n; i += stride) {
+        seen[count++] = (sign * x[i] - bottom) / span;
+    }
+    qsort(seen, count, sizeof *seen, ascending);
+    float rest = seen[count / 2];
+
+    for (size_t i = 0; i < count; i++) {
+        near += fabsf(seen[i] - rest) < HYSTERESIS;
+    }
+    return (double)near >= REST_LEAST * (double)count && rest > REST_LOW && rest < REST_HIGH ? rest
+                                                                                             : 0;
+}
+
 bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n)
 {
     float top = -INFINITY, bottom = INFINITY;
@@ -228,6 +266,7 @@ bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n)
         finder->tops[i] = top;
         finder->bottoms[i] = bottom;
     }
+    finder->rest = isnan(finder->level) ? resting(x, finder->sign, n, bottom, top - bottom) : 0;
     set_levels(finder);
     finder->live = true;
     study(finder, x, n);

@@ -3,7 +3,9 @@
  *
  * The comparator's levels come from the recording itself: first from a stretch at its beginning,
  * then from the pulses as they pass, so that AC coupling, offsets and pulses that grow are
- * followed. A level given by the user wins, over the half height, too. Time is counted in samples
+ * followed. Pulses that go to both sides of where the signal rests, as a coil's, are seen half way
+ * between there and the top: never where it rests, whichever side comes first. A level given by the
+ * user wins, over the half height, too. Time is counted in samples
  * from the start of the recording.
  *
  *     struct pulse_finder finder;
@@ -30,8 +32,9 @@ struct pulse {
 #define PULSE_MEMORY 8 /* pulses whose extremes set the level */
 
 struct pulse_finder {
-    float sign;                 /* +1 rising edge, -1 falling */
-    double level;               /* NaN: found from the signal */
+    float sign;   /* +1 rising edge, -1 falling */
+    double level; /* NaN: found from the signal */
+    float rest; /* where it rests between the two sides of its pulses, share of the range; 0: one */
     float below, middle, above; /* levels of the comparator in the edge's direction */
     float tops[PULSE_MEMORY], bottoms[PULSE_MEMORY];
     size_t turn;           /* next place in tops and bottoms */
