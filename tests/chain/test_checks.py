@@ -362,5 +362,46 @@ class OtherShaft(unittest.TestCase):
                 self.assertEqual(set(told), {"caution"} if doubt else set())
 
 
+class CoastDown(unittest.TestCase):
+    SHEET = (recordings.SHEET + "[plane p]\nradius = 400 mm\n[run one]\nfile = one.wav\nrole = coast-down\nspeeds = {0}\n"
+             "[run two]\nfile = two.wav\nrole = coast-down\nspeeds = {0}\nweight p = 20 g at 0 deg\n")
+
+    def test_a_speed_never_reached(self):
+        with chain.folder() as where:
+            for seed, name in enumerate(("one", "two")):
+                recordings.write(where / f"{name}.wav", seed, seconds=5.0)
+            (where / "job.ini").write_text(self.SHEET.format("5000 rpm"))
+            done = chain.lopside("balance", where / "job.ini", "--as", "json")
+            self.assertEqual(done.returncode, 5, chain.complaint(done))
+            self.assertIn("no reading of it came: 'one', 'two'", done.stderr.decode())
+            texts = [f["text"] for f in chain.kind(json.loads(done.stdout), "finding") if f["check"] == "coast-down"]
+            self.assertEqual(len([t for t in texts if "5000 rpm" in t]), 2)
+
+    def test_conditions_keep_the_order_of_the_sheet(self):
+        """900 before 1100 rpm, as listed, though '1' sorts before '9'."""
+        with chain.folder() as where:
+            for seed, name in enumerate(("one", "two")):
+                recordings.write(where / f"{name}.wav", seed, seconds=1.0)
+            (where / "job.ini").write_text(self.SHEET.format("900 1100 rpm"))
+            read = [json.loads(line) for line in chain.through(["read", "track", "average"], b"",
+                                                               read=[where / "job.ini"]).decode().splitlines()]
+        runs = {r["run"]: r for r in chain.kind(read, "run")}
+        stream = [read[0]]
+        for run, z in (("one", 1e-3), ("two", 2e-3j)):
+            stream.append(runs[run])
+            for rpm in (900, 1100):
+                for sensor in recordings.SENSORS:
+                    condition = f"service @ {rpm} rpm"
+                    stream.append({"kind": "reading", "run": run, "condition": condition, "sensor": sensor, "speed_rpm": rpm,
+                                   "vector": [z.real, z.imag], "cov": [1e-12, 0, 1e-12], "blocks": 5})
+                    stream.append({"kind": "vetted", "run": run, "condition": condition, "sensor": sensor, "use": True,
+                                   "widen": [0, 0, 0]})
+        stream.append({"kind": "end", "records": len(stream)})
+        done = chain.lopside("solve", stdin="".join(json.dumps(r) + "\n" for r in stream).encode())
+        self.assertEqual(done.returncode, 0, chain.complaint(done))
+        order = [f["condition"] for f in chain.kind(chain.records(done.stdout), "forecast")]
+        self.assertEqual(order, ["service @ 900 rpm"] * 2 + ["service @ 1100 rpm"] * 2)
+
+
 if __name__ == "__main__":
     unittest.main()
