@@ -33,6 +33,14 @@ struct mean {
  * wider, then holds it 97.7 times in 100 for 16 blocks in white noise, 96 times for 60. One block
  * has no scatter: half of its squared amplitude stands for each variance.
  *
+ * What is slower than the recording cannot be seen in it. Of first-order noise 95 % is held where
+ * its memory is a fifth of the recording, 90 % at a quarter, 70 to 74 % at a half (16 blocks;
+ * tests/bench/bench_average.c): a noise so slow among those of colour.c would hold 90 % there, but
+ * make readings of a machine that only swings within the run half as wide again. Where slow noise
+ * lies below white noise of its own size, 78 % is held in 16 blocks. A beat of less than half a
+ * period is not in cov either, but shows in `drift` by its chord (20 % of beat, a tenth of a
+ * period: 12 %).
+ *
  * NaN in: NaN out. Returns 0; -1 when memory is out; -2 for no blocks. */
 int mean_of_blocks(const double complex *vectors, const double *turns, const double *t,
                    size_t count, struct mean *mean) __attribute__((warn_unused_result));

@@ -8,12 +8,17 @@
 
 #include "average/longrun.h"
 
-#define LENGTHS 8
+#define LENGTHS 10
 #define RATIOS 7
 #define NOISES 3
 #define MODELS (LENGTHS * RATIOS * NOISES)
 
-static const double LENGTH[LENGTHS] = {0.25, 0.35, 0.5, 0.7, 1, 1.4, 2, 3}; /* over reach */
+static const double LENGTH[LENGTHS] = {0.06, 0.1, 0.16, 0.25, 0.35,
+                                       0.5,  0.7, 1,    1.7,  3}; /* over reach */
+/* Lengths below 0.25 are for a resonance that is narrow for its sweep, which stands out by tens of
+ * powers of ten; their weight before the points are seen keeps slow noise from passing as one. */
+static const double NARROW = 0.25, NARROW_PRIOR = 0.01;
+static const double HOPELESS = 40; /* e^-40 of the likeliest is less than rounding */
 static const double RATIO[RATIOS] = {1, 3, 10, 30, 100, 1000, 10000}; /* of the curve over noise */
 /* Of the noise from block to block, and its weight before the points are seen, as in colour.c. */
 static const double CORRELATION[NOISES] = {0, 0.5, 0.85};
@@ -106,6 +111,28 @@ static bool ask(size_t n, double ratio, int noise, double complex middle, const 
     return true;
 }
 
+/* All ratios with one length and noise; gives how many have said something. */
+static size_t ask_ratios(size_t n, double length, int noise, double complex middle,
+                         const struct room *room, double *likeliest, struct said *said)
+{
+    double before = -INFINITY;
+    size_t good = 0;
+
+    for (size_t r = 0; r < RATIOS; r++) {
+        struct said *one = &said[good];
+        if (!ask(n, RATIO[r], noise, middle, room, one))
+            continue;
+        one->weight += length < NARROW ? log(NARROW_PRIOR) : 0;
+        one->variance *= length <= 1 ? 1 + UNEVEN : 1;
+        *likeliest = fmax(*likeliest, one->weight);
+        good++;
+        if (one->weight < before && one->weight < *likeliest - HOPELESS)
+            break; /* it has one maximum */
+        before = one->weight;
+    }
+    return good;
+}
+
 static void average(struct said *said, size_t count, size_t points, struct smooth *out)
 {
     double likeliest = -INFINITY, sum = 0;
@@ -138,6 +165,7 @@ int smooth_at_zero(const struct smooth_point *points, size_t count, double reach
     double *alike = malloc(NOISES * square * sizeof *alike);
     struct said said[MODELS];
     double complex middle = 0;
+    double likeliest = -INFINITY;
     size_t good = 0;
 
     if (!all || !alike) {
@@ -152,10 +180,8 @@ int smooth_at_zero(const struct smooth_point *points, size_t count, double reach
     set_noises(points, count, alike);
     for (size_t l = 0; l < LENGTHS; l++) {
         set_length(points, count, reach, LENGTH[l] * reach, middle, &room);
-        for (size_t r = 0; r < RATIOS; r++)
-            for (int k = 0; k < NOISES; k++)
-                if (ask(count, RATIO[r], k, middle, &room, &said[good]))
-                    said[good++].variance *= LENGTH[l] <= 1 ? 1 + UNEVEN : 1;
+        for (int k = 0; k < NOISES; k++)
+            good += ask_ratios(count, LENGTH[l], k, middle, &room, &likeliest, &said[good]);
     }
     if (good > 0)
         average(said, good, count, out);

@@ -7,7 +7,8 @@
 
 struct smooth_point {
     double x;
-    double complex blur; /* b, real part >= 0, in x^2: the point shows exp(b d^2/dx^2) of the curve */
+    double complex
+        blur; /* b, real part >= 0, in x^2: the point shows exp(b d^2/dx^2) of the curve */
     double complex z;
     size_t order; /* in time: neighbours have neighbouring numbers */
 };
@@ -19,17 +20,18 @@ struct smooth {
     double noise;         /* variance of each component of a point's noise */
 };
 
-/* The curve is a Gaussian process with the covariance exp(-u^2/(2 l^2)) over a straight line (C. E. Rasmussen,
- * C. K. I. Williams, Gaussian Processes for Machine Learning, MIT 2006, ch. 2 and 5.2). Blurring two
- * points turns the covariance into l/sqrt(L) exp(-u^2/(2 L)), L = l^2 + 2 (b_1 + conj(b_2)). The length l (a
- * quarter of `reach` to three times it), the size of the curve over the noise (1 to 10,000) and the noise's
- * correlation from one point to the next in time (0, 0.5, 0.85) are averaged over with the weights that the points
- * give them, so that their being unknown is part of the variance.
+/* The curve is a Gaussian process with the covariance exp(-u^2/(2 l^2)) over a straight line (C. E.
+ * Rasmussen, C. K. I. Williams, Gaussian Processes for Machine Learning, MIT 2006, ch. 2 and 5.2).
+ * Blurring two points turns the covariance into l/sqrt(L) exp(-u^2/(2 L)), L = l^2 + 2 (b_1 +
+ * conj(b_2)). The length l (0.06 of `reach` to three times it), the size of the curve over the
+ * noise (1 to 10,000) and the noise's correlation from one point to the next in time (0, 0.5, 0.85)
+ * are averaged over with the weights that the points give them, so that their being unknown is part
+ * of the variance.
  *
- * `count` (2 ... SMOOTH_MOST) points with |x| <= reach, reach > 0. Returns 0; 1 where the points cannot carry a curve
- * (NaN among them); -1 when memory is out. */
+ * `count` (2 ... SMOOTH_MOST) points with |x| <= reach, reach > 0. Returns 0; 1 where the points
+ * cannot carry a curve (NaN among them); -1 when memory is out. */
 #define SMOOTH_MOST 48
-int smooth_at_zero(const struct smooth_point *points, size_t count, double reach, struct smooth *out)
-    __attribute__((warn_unused_result));
+int smooth_at_zero(const struct smooth_point *points, size_t count, double reach,
+                   struct smooth *out) __attribute__((warn_unused_result));
 
 #endif

@@ -12,7 +12,7 @@ SPEEDS = [900, 1100, 1260, 1300.5, 1400]
 SENSORS = ["V", "H"]
 
 
-def machine(sweep):
+def machine(sweep, damping=0.06):
     """A rotor with critical speeds near 1260 and 1590 rpm; `sweep` in rpm per second from 1700 or 800 rpm."""
     start = 1700 if sweep < 0 else 800
     sensor = {"unit": "mm/s", "scale": "100 mV/(mm/s)", "v_per_unit": 0.1, "show": "mm/s rms", "white": 0.02}
@@ -21,7 +21,7 @@ def machine(sweep):
         "rotor": {"turning": "counter-clockwise", "start_deg": 5, "rpm": start},
         "tape": {"at_deg": 20, "width_deg": 14},
         "tacho": {"at_deg": 135, "low_v": 0.4, "high_v": 4.6, "noise_v": 0.02},
-        "modes": [{"x_hz": 21.0, "y_hz": 26.5, "damping": 0.06, "mass_kg": 900, "planes": [1.0],
+        "modes": [{"x_hz": 21.0, "y_hz": 26.5, "damping": damping, "mass_kg": 900, "planes": [1.0],
                    "sensors": [0.85, 0.8]}],
         "heavy": [{"plane": 0, "mass_g": 40, "radius_mm": 600, "body_deg": 301}],
         "sensors": [sensor | {"name": "V", "at_deg": 90}, sensor | {"name": "H", "at_deg": 0}],
@@ -37,16 +37,16 @@ def machine(sweep):
 
 
 class CoastDown(unittest.TestCase):
-    def averaged(self, sweep):
+    def averaged(self, sweep, **how):
         with chain.folder() as where:
-            truth = chain.simulate(machine(sweep), where)
+            truth = chain.simulate(machine(sweep, **how), where)
             stream = chain.records(chain.through(["read", "track", "average"], b"",
                                                  read=["--run", "coast", where / "job.ini"]))
         true = truth["readings"]
         return stream, true
 
-    def follows(self, sweep):
-        stream, true = self.averaged(sweep)
+    def follows(self, sweep, **how):
+        stream, true = self.averaged(sweep, **how)
         readings = chain.kind(stream, "reading")
         self.assertEqual([(r["condition"], r["sensor"]) for r in readings],
                          [(f"service @ {speed} rpm", s) for speed in SPEEDS for s in SENSORS])
@@ -66,6 +66,10 @@ class CoastDown(unittest.TestCase):
 
     def test_up_quickly(self):
         self.follows(20)
+
+    def test_a_sharp_resonance(self):
+        """Crossed within three seconds, twice its half-power bandwidth of 63 rpm, by a rotor that rings for half of one."""
+        self.follows(-20, damping=0.025)
 
     def test_a_job_of_coast_downs_only(self):
         """As found and with a trial weight, each a coast-down: every speed is a condition, the weight is shared."""

@@ -159,6 +159,26 @@ static void covers_in_coloured_noise(void **state)
     }
 }
 
+/* A memory of a third of the recording and more, or slow noise below white in a short one: mean.h
+ * names what is held then. */
+static void what_the_blocks_cannot_tell(void **state)
+{
+    static const struct {
+        size_t count;
+        enum noise kind;
+        double r, held; /* %, as the header says */
+    } cases[] = {{60, SLOW, 0.9, 90}, {16, SLOW, 0.9, 70}, {16, MIXED, 0.8, 78}};
+
+    (void)state;
+    seed = 4;
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        double held = cover_of(cases[i].count, cases[i].kind, cases[i].r, 2000).chi2;
+        print_message("noise %d of %.2f, %zu blocks: %.1f %%\n", (int)cases[i].kind, cases[i].r,
+                      cases[i].count, held);
+        assert_true(fabs(held - cases[i].held) < 3); /* three binomial standard errors of 78 % */
+    }
+}
+
 /* The same again as the formula for uncorrelated blocks would have it: it must fail, or the test
  * above proves nothing. */
 static void naive_formula_fails(void **state)
@@ -307,6 +327,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(covers_in_white_noise),
         cmocka_unit_test(covers_in_coloured_noise),
+        cmocka_unit_test(what_the_blocks_cannot_tell),
         cmocka_unit_test(naive_formula_fails),
         cmocka_unit_test(f_points),
         cmocka_unit_test(properties),
