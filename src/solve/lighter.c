@@ -8,6 +8,7 @@
 
 /* Of the nodes of the search proper: what is found only stands beside it. */
 #define NODES 400000L
+#define NODES_NARROW 100000L
 
 bool lighter_wanted(const struct answer *a, const struct place_choice *choice, size_t plane)
 {
@@ -57,7 +58,7 @@ static int try_narrower(struct answer *a, struct menu_arc *arc, double half_deg)
     bool done = false;
     for (size_t p = 0; p < a->planes; p++)
         arc[p].half_deg = arc[p].half_deg < 180 ? half_deg : 180;
-    int result = answer_search(a, arc, NODES, &found, &done);
+    int result = answer_search(a, arc, NODES_NARROW, &found, &done);
     if (result != ANSWER_OK || !done)
         return result;
     if (better(a, &found.best)) {
