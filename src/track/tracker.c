@@ -9,6 +9,10 @@
 #define JITTER_MOST 15.0 /* deg: marks at random within their tolerance scatter by 40 deg */
 #define FEW_MARKS 20     /* as many turns as `length` wants at least */
 #define KEEP 64          /* frames kept before the next turn, for edges and rounding */
+/* So few steps of its resolution, and so little of full scale, is what a converter makes of
+ * nothing. */
+#define DEAD_STEPS 16
+#define DEAD_SHARE 0.001
 
 static int begin_tone(struct tracker *tracker, const struct tracker_set_up *set_up)
 {
@@ -32,6 +36,7 @@ int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
                                 .tacho = set_up->tacho,
                                 .sensors = columns - (set_up->tacho >= 0),
                                 .skipped = true,
+                                .listening = true,
                                 .sweeps = set_up->sweeps};
     tracker->most = (size_t)TRACKER_HOLD / (columns * sizeof(float));
     if (tracker->most < 4 * TRACKER_CHUNK) {
@@ -48,13 +53,12 @@ int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
     shape_init(&tracker->shape);
     shaft_init(&tracker->shaft);
     window_init(&tracker->windows, tracker->sensors);
-    tracker->planes = calloc(columns, sizeof *tracker->planes);
+    tracker->planes = calloc(2 * columns, sizeof *tracker->planes);
     tracker->channels = calloc(columns, sizeof *tracker->channels);
     tracker->offset = calloc(columns, sizeof *tracker->offset);
     tracker->sums = calloc(2 * tracker->sensors + 1, sizeof *tracker->sums);
     if (!tracker->planes || !tracker->channels || !tracker->offset || !tracker->sums ||
-        (tracker->tacho < 0 && begin_tone(tracker, set_up)) ||
-        channel_pairs_init(&tracker->pairs, columns) ||
+        begin_tone(tracker, set_up) || channel_pairs_init(&tracker->pairs, columns) ||
         teeth_init(&tracker->teeth, set_up->marks)) {
         tracker_release(tracker);
         return -1;
@@ -426,6 +430,34 @@ static int advance(struct tracker *tracker, bool last)
 
 /* ---- chunks ---- */
 
+static int add_tone(struct tracker *tracker, size_t n)
+{
+    const float **sensors = tracker->planes + tracker->columns;
+
+    for (size_t c = 0, s = 0; c < tracker->columns; c++) {
+        if ((int)c != tracker->tacho) {
+            sensors[s++] = tracker->planes[c];
+        }
+    }
+    return tone_add(&tracker->tone, sensors, n);
+}
+
+static bool dead(const struct tracker *tracker)
+{
+    const struct channel *tacho = &tracker->channels[tracker->tacho];
+    double step = channel_resolution(tacho), range = (double)tacho->max - (double)tacho->min;
+
+    return !(step > 0) || (range <= DEAD_STEPS * step && range <= DEAD_SHARE * tacho->rail);
+}
+
+void tracker_phase_only(struct tracker *tracker)
+{
+    if (tracker->tacho >= 0 && tracker->listening) {
+        tone_release(&tracker->tone);
+        tracker->listening = false;
+    }
+}
+
 static int chunk(struct tracker *tracker, size_t n, bool last)
 {
     for (size_t c = 0; c < tracker->columns; c++) {
@@ -444,10 +476,14 @@ static int chunk(struct tracker *tracker, size_t n, bool last)
     }
     if (tracker->tacho >= 0) {
         shape_add(&tracker->shape, tracker->planes[tracker->tacho], n);
-    } else if (tone_add(&tracker->tone, tracker->planes, n)) {
-        return -1;
     }
     channel_pairs_add(&tracker->pairs, tracker->planes, n);
+    if (tracker->tacho >= 0 && !dead(tracker)) {
+        tracker_phase_only(tracker);
+    }
+    if (tracker->listening && add_tone(tracker, n)) {
+        return -1;
+    }
     tracker->done += n;
     return advance(tracker, last);
 }
@@ -503,10 +539,11 @@ int tracker_finish(struct tracker *tracker)
     double end = (double)tracker->start + (double)tracker->fill;
 
     if (take_pulses(tracker, &pulse, pulse_finish(&tracker->finder, end, &pulse)) ||
-        take_marks(tracker, marks, marks_finish(&tracker->marks, marks))) {
+        take_marks(tracker, marks, marks_finish(&tracker->marks, marks)) ||
+        break_stretch(tracker)) {
         return -1;
     }
-    return break_stretch(tracker);
+    return tracker->listening ? tone_finish(&tracker->tone) : 0;
 }
 
 /* Few marks that nothing speaks for but themselves must be nearly whole; and a rhythm is none that
@@ -519,14 +556,19 @@ static bool believable(const struct marks *marks, double jitter)
     if (isnan(jitter) || marks->count < FEW_MARKS) {
         return 4 * wrong <= marks->count;
     }
-    return jitter < JITTER_MOST && marks->missed <= marks->count &&
-           extra <= 3 * marks->count;
+    return jitter < JITTER_MOST && marks->missed <= marks->count && extra <= 3 * marks->count;
 }
 
 bool tracker_regular(const struct tracker *tracker)
 {
     return tracker->windows.count > 0 && tracker_pulsed(tracker) &&
            believable(&tracker->marks, shaft_jitter(&tracker->shaft));
+}
+
+bool tracker_toned(const struct tracker *tracker)
+{
+    return tracker->tacho < 0 ||
+           (tracker->listening && tracker->tone.found && !tracker_regular(tracker));
 }
 
 bool tracker_reference(const struct tracker *tracker)

@@ -46,7 +46,7 @@ struct tracker {
     size_t columns, sensors;
     int tacho;
     float *data;          /* owned: columns planes of `room` frames */
-    const float **planes; /* owned scratch: columns pointers */
+    const float **planes; /* owned scratch: columns pointers, and as many to the sensors' */
     size_t room, most;    /* frames per plane now and at most */
     size_t fill;          /* frames held */
     long long start;      /* number of the first frame held */
@@ -64,7 +64,8 @@ struct tracker {
     struct channel *channels; /* owned, per column */
     struct channel_pairs pairs;
     struct shape shape; /* of the tacho */
-    struct tone tone;   /* without a tacho */
+    struct tone tone;   /* without a tacho, or while its channel shows nothing: `listening` */
+    bool listening;
     bool sweeps;
     float *offset;            /* owned, per column: a rough mean that is taken off */
     struct vector_sums *sums; /* owned scratch: 2 * sensors */
@@ -78,6 +79,11 @@ int tracker_init(struct tracker *tracker, const struct tracker_set_up *set_up)
     __attribute__((warn_unused_result));
 void tracker_release(struct tracker *tracker);
 
+/* Right after tracker_init: amplitudes alone would be of no use, so that a dead tacho gives
+ * nothing.
+ */
+void tracker_phase_only(struct tracker *tracker);
+
 /* n interleaved frames. 0, or -1 when memory is out. */
 int tracker_add(struct tracker *tracker, const float *frames, size_t n)
     __attribute__((warn_unused_result));
@@ -87,6 +93,10 @@ int tracker_finish(struct tracker *tracker) __attribute__((warn_unused_result));
 
 /* True where the marks form a regular sequence, so that there are a speed and turns. */
 bool tracker_regular(const struct tracker *tracker);
+
+/* True where speed and amplitudes are those of the line in `tone`: there is no tacho, or its
+ * channel is dead or noise, and a line was found. */
+bool tracker_toned(const struct tracker *tracker);
 
 /* True where phase may be read, too: a mark is the same place on the shaft every time. */
 bool tracker_reference(const struct tracker *tracker);

@@ -224,6 +224,28 @@ class Track(unittest.TestCase):
             self.assertIsNone(block["vectors"]["A"])
             self.assertAlmostEqual(block["amplitudes"]["A"] / abs(VECTOR), 1, delta=0.01)
 
+    def test_dead_tacho(self):
+        """Speed and amplitude from the spectrum, where the job has runs enough to do with them."""
+        t = numpy.arange(10 * RATE) / RATE
+        draw = numpy.random.default_rng(11)
+        for name, dead in {"zero": 0 * t, "two steps": numpy.floor(2 * draw.random(t.size)) * 10 / 2**23}.items():
+            for runs in (1, 4):
+                with self.subTest(name, runs=runs), chain.folder() as where:
+                    write(where, [vibration(turns(t, 0), draw, 0.001) * 100, dead], TACHO)
+                    with open(where / "job.ini", "a") as sheet:
+                        for k in range(1, runs):
+                            sheet.write(f"[run r{k}]\nfile = r.wav\nweight w = 10 g at {120 * k} deg\n")
+                    stream = tracked(where)
+                    blocks = chain.kind(stream, "turns")
+                    self.assertEqual(len(blocks) > 0, runs == 4)
+                    self.assertEqual(len(chain.kind(stream, "finding")), 4 if runs == 4 else 0)
+                    if runs == 4:
+                        self.assertEqual({tacho["marks"] for tacho in chain.kind(stream, "tacho")}, {0})
+                    for block in blocks:
+                        self.assertIsNone(block["vectors"]["A"])
+                        self.assertAlmostEqual(block["amplitudes"]["A"] / abs(VECTOR), 1, delta=0.02)
+                        self.assertAlmostEqual(block["speed_rpm"], 60 * 24.7, delta=2)
+
 
 if __name__ == "__main__":
     unittest.main()

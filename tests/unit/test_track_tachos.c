@@ -326,15 +326,59 @@ static void test_holes(void **unused)
     free(x);
 }
 
+/* A plug that is out, or out for the first seconds. */
+static double unplugged(const struct recipe *r, double t)
+{
+    (void)t;
+    return r->low;
+}
+
+static double plugged_in_late(const struct recipe *r, double t)
+{
+    return t < 3.5 ? 0 : 3 * bump(signal_turns(&r->shaft, t), 0.015, 0.06);
+}
+
+static void test_dead(void **unused)
+{
+    (void)unused;
+    for (int k = 0; k < 2; k++) {
+        struct recipe r = plain;
+        struct tracker tracker;
+        size_t n;
+
+        r.tacho = k == 1 ? plugged_in_late : unplugged;
+        r.high = 0;
+        r.seconds = 12;
+        r.amplitude = 1.7;
+        r.noise = 0.05;
+        float *x = record(&r, &n);
+
+        track(&tracker, &r, x, n, NULL);
+        assert_int_equal(tracker_toned(&tracker), k == 0);
+        assert_int_equal(tracker_reference(&tracker), k == 1);
+        if (k == 0) { /* speed and amplitude from the spectrum */
+            assert_float_equal(tone_speed(&tracker.tone), 24.7 * 60, 0.5);
+            assert_true(tracker.tone.block_count > 8);
+            for (size_t b = 0; b < tracker.tone.block_count; b++) {
+                assert_float_equal(tracker.tone.amplitude[b], 1.7, 0.02);
+            }
+        } else {
+            assert_vector(mean(&tracker), 1.7, LAG, 0.5, 0.3);
+        }
+        tracker_release(&tracker);
+        free(x);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_slow_edges),    cmocka_unit_test(test_small_on_offset),
-        cmocka_unit_test(test_toothed),       cmocka_unit_test(test_coupled),
-        cmocka_unit_test(test_scratch),       cmocka_unit_test(test_scratch_alike),
-        cmocka_unit_test(test_coil),          cmocka_unit_test(test_growing),
-        cmocka_unit_test(test_several_marks), cmocka_unit_test(test_same_mark),
-        cmocka_unit_test(test_holes)};
+        cmocka_unit_test(test_slow_edges), cmocka_unit_test(test_small_on_offset),
+        cmocka_unit_test(test_toothed),    cmocka_unit_test(test_coupled),
+        cmocka_unit_test(test_scratch),    cmocka_unit_test(test_scratch_alike),
+        cmocka_unit_test(test_coil),       cmocka_unit_test(test_dead),
+        cmocka_unit_test(test_growing),    cmocka_unit_test(test_several_marks),
+        cmocka_unit_test(test_same_mark),  cmocka_unit_test(test_holes)};
 
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
