@@ -355,7 +355,8 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
     m->runout_run = find_runout(job);
     for (size_t i = 0; i < count; i++)
         readings[i].place = i;
-    qsort(readings, count, sizeof *readings, by_run);
+    if (count > 0)
+        qsort(readings, count, sizeof *readings, by_run);
     m->conditions = calloc(job->run_count + count + 1, sizeof *m->conditions);
     m->rows = calloc((job->run_count + count + 1) * (job->sensor_count + 1), sizeof *m->rows);
     m->present = calloc(job->run_count + 1, sizeof *m->present);
