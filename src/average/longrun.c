@@ -11,15 +11,20 @@ static const size_t WANDER_LEAST =
 static const double WANDER_LEVEL = 0.01; /* of the search for wander; common practice */
 static const double FEW = 2.5;           /* from the simulation, with colour.c's weights */
 static const double CHI2_95 = 5.99146;   /* chi-squared with 2 degrees of freedom, 95 % */
+static const double CHI1_95 = 3.84146;   /* and with 1 */
+/* Student's t, two-sided 95 %, of 1 to 16 degrees of freedom: M. Abramowitz, I. A. Stegun (1964),
+ * table 26.10. */
+static const double T_95[] = {12.706, 4.303, 3.182, 2.776, 2.571, 2.447, 2.365, 2.306,
+                              2.262,  2.228, 2.201, 2.179, 2.160, 2.145, 2.131, 2.120};
 
-double longrun_f_tail(double x, size_t a, size_t b)
+double longrun_f_tail(double x, size_t a, double b)
 {
-    double y = (double)b / ((double)b + (double)a * x);
-    double term = pow(y, (double)b), sum = 0;
+    double y = b / (b + (double)a * x);
+    double term = pow(y, b), sum = 0;
 
     for (size_t j = 0; j < a; j++) {
         sum += term;
-        term *= (1 - y) * (double)(b + j) / (double)(j + 1);
+        term *= (1 - y) * (b + (double)j) / (double)(j + 1);
     }
     return sum;
 }
@@ -29,11 +34,18 @@ double longrun_f2_point(double p, double b)
     return b * (pow(p, -1 / b) - 1);
 }
 
-double longrun_few(size_t count)
+/* What a region of 95 % is wider (squared) where the variance of each component rests on so many
+ * `freedom` squares a component than where it is known. */
+static double wider(size_t freedom, int components)
 {
-    double n = (double)count;
+    if (components == 2)
+        return 2 * longrun_f2_point(0.05, (double)freedom) / CHI2_95;
+    return T_95[freedom - 1] * T_95[freedom - 1] / CHI1_95;
+}
 
-    return count < COUNT_LEAST ? 2 * longrun_f2_point(0.05, n - 1) / CHI2_95 : 1 - FEW / n;
+double longrun_few(size_t count, int components)
+{
+    return count < COUNT_LEAST ? wider(count - 1, components) : 1 - FEW / (double)count;
 }
 
 static double complex mean(const double complex *vectors, size_t count)
@@ -50,7 +62,8 @@ static double square(double complex z)
     return creal(z) * creal(z) + cimag(z) * cimag(z);
 }
 
-static double from_cosines(const double complex *vectors, size_t count, double power)
+static double from_cosines(const double complex *vectors, size_t count, double power,
+                           int components)
 {
     size_t most = count < 128 ? 8 : 16, j = 1;
     double low = 0, factor = 1;
@@ -61,9 +74,9 @@ static double from_cosines(const double complex *vectors, size_t count, double p
         for (; j <= b; j++)
             low += colour_cosine_power(vectors, count, j);
         excess = low / (double)b / ((power - low) / (double)rest);
-        if (longrun_f_tail(excess, b, rest) < LEVEL) {
-            double wider = 2 * longrun_f2_point(0.05, (double)b) / CHI2_95;
-            double ratio = low / (double)b / (power / (double)(count - 1)) * wider;
+        if (longrun_f_tail(excess, b * (size_t)components / 2, (double)rest * components / 2) <
+            LEVEL) {
+            double ratio = low / (double)b / (power / (double)(count - 1)) * wider(b, components);
             if (ratio > factor)
                 factor = ratio;
         }
@@ -85,7 +98,7 @@ double longrun_wander(const double complex *vectors, size_t count)
         for (; j <= b; j++)
             low += colour_cosine_power(vectors, count, j);
         double floor = fmax(power - low, 0) / (double)rest;
-        if (low > 0 && longrun_f_tail(low / (double)b / floor, b, rest) < WANDER_LEVEL)
+        if (low > 0 && longrun_f_tail(low / (double)b / floor, b, (double)rest) < WANDER_LEVEL)
             largest = fmax(largest, low - (double)b * floor);
     }
     return sqrt(largest / (double)count);
@@ -102,9 +115,9 @@ double longrun_factor(const double complex *vectors, size_t count, int component
         return NAN;
     /* No scatter beyond rounding: correlated or not, it does not matter. */
     if (count < COUNT_LEAST || power <= 1e-24 * square(middle) * (double)count || power == 0)
-        return longrun_few(count);
+        return longrun_few(count, components);
     shown =
         power / (double)(components * (long)(count - 1)); /* variance of a component of a block */
-    cosines = from_cosines(vectors, count, power) * longrun_few(count);
+    cosines = from_cosines(vectors, count, power, components) * longrun_few(count, components);
     return fmax(cosines, colour_variance(vectors, count, components) * (double)count / shown);
 }

@@ -13,12 +13,14 @@
  *  - the mean power of the first B = 2, 4, 8 (16) cosine sums (E. Lazarus, D. J. Lewis, J. H.
  * Stock, M. W. Watson, J. Bus. Econ. Stat. 36 (2018) 541-559, "EWC"), where it exceeds the power of
  * the rest at the 10 % level of F(2B, 2(n-1-B)), widened by what F(2, 2B) is wider than
- * chi-squared. This sees slow drift that hides below larger white scatter. */
+ * chi-squared; F(B, n-1-B) and F(1, B) for one component. This sees slow drift that hides below
+ * larger white scatter. */
 double longrun_factor(const double complex *vectors, size_t count, int components);
 
-/* The same where nothing is known of the blocks' order: what F(2, 2(n-1)) is wider than chi-squared
- * for fewer than 6 of `count` = n; 1 - 2.5/n from there, the least that longrun_factor takes. */
-double longrun_few(size_t count);
+/* The same where nothing is known of the blocks' order: what F(2, 2(n-1)), or F(1, n-1) for one
+ * component, is wider than chi-squared for fewer than 6 of `count` = n >= 2; 1 - 2.5/n from there,
+ * the least that longrun_factor takes. */
+double longrun_few(size_t count, int components);
 
 /* Standard deviation, of both components together, of the slow part of `count` vectors whose mean
  * and line have been taken off: the power of the first B = 2, 4, 8 (16) cosine sums beyond that of
@@ -26,9 +28,9 @@ double longrun_few(size_t count);
  * NaN for fewer than 12 vectors or where one is NaN. */
 double longrun_wander(const double complex *vectors, size_t count);
 
-/* P(F > x) of Snedecor's F with 2a and 2b degrees of freedom, a and b whole and >= 1, x >= 0: the
+/* P(F > x) of Snedecor's F with 2a and 2b degrees of freedom, a whole and >= 1, b > 0, x >= 0: the
  * finite sum of the incomplete beta function (Abramowitz & Stegun 1964, 26.6.4). */
-double longrun_f_tail(double x, size_t a, size_t b);
+double longrun_f_tail(double x, size_t a, double b);
 
 /* The point that F with 2 and 2b degrees of freedom exceeds with probability p. */
 double longrun_f2_point(double p, double b);

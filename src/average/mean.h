@@ -47,7 +47,9 @@ int mean_of_blocks(const double complex *vectors, const double *turns, const dou
 
 /* The same where only amplitudes can be believed, the marks of a turn being alike: `amplitudes` of
  * the blocks; cov is {v, 0, v} with v the variance of the mean amplitude; vector is the amplitude.
- */
+ * Made for +-1.96 standard errors: in white noise these hold the truth 95 times in 100 for 2 to 5
+ * blocks and from 16, and up to 99.6 times between, where slow noise can be told from one component
+ * hardly at all. */
 int mean_of_amplitudes(const double *amplitudes, const double *turns, const double *t, size_t count,
                        struct mean *mean) __attribute__((warn_unused_result));
 
