@@ -20,7 +20,8 @@ static const double LENGTH[LENGTHS] = {0.06, 0.1, 0.16, 0.25, 0.35,
 static const double NARROW = 0.25, NARROW_PRIOR = 0.01;
 static const double HOPELESS = 40; /* e^-40 of the likeliest is less than rounding */
 static const double RATIO[RATIOS] = {1, 3, 10, 30, 100, 1000, 10000}; /* of the curve over noise */
-/* Of the noise from block to block, and its weight before the points are seen, as in colour.c. */
+/* Of the noise from block to block, and its weight before the points are seen: our choice, the
+ * runs being mostly white, as in colour.c, whose five noises have weights of their own. */
 static const double CORRELATION[NOISES] = {0, 0.5, 0.85};
 static const double PRIOR[NOISES] = {1, 0.2, 0.3};
 /* What is added to the variance of curves that bend within reach, which seldom bend alike

@@ -25,8 +25,12 @@ struct smooth {
  * Blurring two points turns the covariance into l/sqrt(L) exp(-u^2/(2 L)), L = l^2 + 2 (b_1 +
  * conj(b_2)). The length l (0.06 of `reach` to three times it), the size of the curve over the
  * noise (1 to 10,000) and the noise's correlation from one point to the next in time (0, 0.5, 0.85)
- * are averaged over with the weights that the points give them, so that their being unknown is part
- * of the variance.
+ * are averaged over with the weights that the points give them, times weights of our choice that
+ * hold white noise for likelier than slow (smooth.c), so that their being unknown is part of the
+ * variance. The variance of each is widened by what F(2, 2(count-1)) is wider than chi-squared,
+ * since the size of the noise is known from the points alone; and by 15 % where the length is
+ * `reach` or less, since curves seldom bend alike everywhere (UNEVEN in smooth.c; from a
+ * simulation).
  *
  * `count` (2 ... SMOOTH_MOST) points with |x| <= reach, reach > 0. Returns 0; 1 where the points
  * cannot carry a curve (NaN among them); -1 when memory is out. */
