@@ -7,12 +7,13 @@
  * between base state and top state.)
  *
  * Base and top are sought within four widths of the pulse, the width being that of its shorter
- * side, as the largest mean of 2m+1 samples, m an eighth of the width; a parabola through these
- * samples gives the extreme. A side that is flat is followed by a straight line instead, which
- * takes noise off and does not mind a tilt. The time between samples is a cubic's; on an edge of
- * many samples, one of least squares. Where m is 1 the parabola would overshoot a flat top: how
- * much of its overshoot counts is learnt from the pulses before, by what makes their heights equal
- * whatever the sampling (a regression of the changes of height on those of the overshoot). */
+ * side, as the largest mean of 2m+1 samples, m an eighth of the width (where m is large the mean is
+ * of evenly spaced ones among them); a parabola through all 2m+1 gives the extreme. A side that is
+ * flat is followed by a straight line instead, which takes noise off and does not mind a tilt. The
+ * time between samples is a cubic's; on an edge of many samples, one of least squares. Where m is 1
+ * the parabola would overshoot a flat top: how much of its overshoot counts is learnt from the
+ * pulses before, by what makes their heights equal whatever the sampling (a regression of the
+ * changes of height on those of the overshoot). */
 #ifndef LOPSIDE_TRACK_EDGE_H
 #define LOPSIDE_TRACK_EDGE_H
 
@@ -52,7 +53,7 @@ struct edge_spot {
  * that goes down. False, and nothing given: the samples are too few or not finite, or there is no
  * height. */
 bool edge_find(struct edge *edge, const float *x, float sign, const struct edge_spot *spot,
-               struct edge_half *half);
+               struct edge_half *half) __attribute__((warn_unused_result));
 
 /* The time within [0, 1] at which the curve through y(0) and y(1), y = sign*x, passes `level`,
  * which lies between them: a cubic through y(-1) and y(2), too, unless the signal turns back before

@@ -10,9 +10,10 @@
  *
  *     struct pulse_finder finder;
  *     pulse_init(&finder, +1, NAN);
- *     if (pulse_levels(&finder, x, n)) ...          // the first seconds; false: nothing there
- *     count = pulse_find(&finder, x, n, 0, pulses); // chunk by chunk, from the first sample on
- *     count = pulse_finish(&finder, pulses);        // the pulse that was under way
+ *     if (pulse_levels(&finder, x, n)) ...  // the first seconds; false: nothing there
+ *     // chunk by chunk, from the first sample on; x[-back] ... x[-1] are those before it
+ *     count = pulse_find(&finder, x, n, back, start, pulses);
+ *     count = pulse_finish(&finder, end, &pulse); // the pulse that was under way
  */
 #ifndef LOPSIDE_TRACK_PULSE_H
 #define LOPSIDE_TRACK_PULSE_H
@@ -51,10 +52,12 @@ void pulse_init(struct pulse_finder *finder, int edge, double level);
 
 /* Finds the first levels from n samples. False where the signal is constant or not finite: then
  * pulse_find finds nothing until a later call succeeds. */
-bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n);
+bool pulse_levels(struct pulse_finder *finder, const float *x, size_t n)
+    __attribute__((warn_unused_result));
 
 /* For when no pulse has come for long: takes the levels anew from the last n samples, unless what
- * is there is less than a tenth of what the pulses were (a tacho that fell silent). */
+ * is there is less than a tenth of what the pulses were (a tacho that fell silent). True where they
+ * were; false leaves the finder as it was, so the result may be ignored. */
 bool pulse_renew(struct pulse_finder *finder, const float *x, size_t n);
 
 /* Looks through x[0..n-1], whose first sample has the time `start`; `back` samples before x[0] can

@@ -24,12 +24,14 @@ struct sieve {
 /* Height times width of a pulse, in whichever direction it is the shorter one. */
 double sieve_size(const struct pulse *pulse);
 
-/* Looks for a sieve that keeps one of `marks` pulses; the ones kept must come regularly. `ratio`:
- * how many times larger the one class must be than the other. Up to SIEVE_MOST pulses are looked
- * at. Where two features name different marks and the first only just does, there is none: another
+/* Looks for a sieve that keeps one of `marks` (2 and more) pulses; the ones kept must come
+ * regularly. The size is looked at before the gap, larger before smaller. `ratio` (above 1): how
+ * many times larger the one class must be than the other. Up to SIEVE_MOST pulses are looked at.
+ * Where two features name different marks and the first only just does, there is none: another
  * recording of the same shaft must not get another zero. Nor does a difference count that the
  * sampling may have made: two samples or less, where the marks keep their places between
- * the samples (`doubt`). False: the pulses cannot be told apart. */
+ * the samples. False: the pulses cannot be told apart, and of `sieve` nothing was written but
+ * `doubt`. */
 #define SIEVE_MOST 512
 bool sieve_find(struct sieve *sieve, const struct pulse *pulses, size_t count, int marks,
                 double ratio);
