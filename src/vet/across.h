@@ -57,10 +57,10 @@ void across_phase_reference(struct vet_runs *runs, const size_t *order, const st
 void across_speed_match(struct vet_runs *runs, const size_t *order, const struct job *job,
                         struct findings *findings);
 
-/* Runs of equal weights: the difference in % of the largest of reading, as-found amplitude and
- * target, judged where it exceeds its own uncertainty (cov of both, 99 % point of chi-squared). Two
- * that differ too much are both refused; of more, those too far from their median. How long lies
- * between two is said where both tell it. */
+/* Runs of equal weights: the difference in % of the largest of both readings and the as-found
+ * amplitude, judged where it exceeds its own uncertainty (cov of both, 99 % point of chi-squared).
+ * Two that differ too much are both refused; of more, those too far from their median. How long
+ * lies between two is said where both tell it. */
 void across_repeat(struct vet_runs *runs, const size_t *order, const struct job *job,
                    struct findings *findings);
 

@@ -12,8 +12,8 @@
  * direction: evenly over a disc of radius limit x percent x amplitude, r^2/4 a component. Where it
  * does, the turn it tells and its error count, s^2/2 a component; never less than what the
  * vibration grows by with speed far from any resonance, 4 % for each % (acceleration below the
- * first one: force and two derivatives each as the speed squared). Our choice of rule; NaN in, NaN
- * out. */
+ * first one: force and two derivatives each as the speed squared). Our choice of rule. NaN for a
+ * percentage, amplitude or limit that is NaN; an error that is NaN tells no turn. */
 double speeds_variance(double percent, double amplitude, const struct resonance *found,
                        double limit);
 
