@@ -3,6 +3,7 @@
 #include <limits.h>
 #include <math.h>
 #include <stdio.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "base/angle.h"
@@ -69,6 +70,20 @@ char *digits_text(char *text, double value, double half)
     digits_at(text, value, digits_place(value, half));
     if (!(half > 0))
         strip_zeros(text);
+    return text;
+}
+
+char *digits_against(char *text, double value, double half, double limit)
+{
+    const int finest = digits_place(value, NAN);
+    char bound[DIGITS_ROOM];
+    const double shown_limit = strtod(digits_text(bound, limit, NAN), NULL);
+    digits_text(text, value, half);
+    for (int place = digits_place(value, half) - 1;
+         isfinite(value) && isfinite(limit) && place >= finest &&
+         (strtod(text, NULL) <= shown_limit) != (value <= limit);
+         place--)
+        digits_at(text, value, place);
     return text;
 }
 

@@ -27,6 +27,11 @@ int digits_place_second(double value);
  */
 char *digits_text(char *text, double value, double half);
 
+/* As digits_text, with as many more digits as it takes for what is printed to be on the same side
+ * of `limit`, as that is printed, as `value` is: 15753 below 15850 is not "16000". DIGITS_MOST at
+ * most. */
+char *digits_against(char *text, double value, double half, double limit);
+
 /* `value` rounded to the digit 10^place. */
 char *digits_at(char *text, double value, int place);
 

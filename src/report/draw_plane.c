@@ -100,7 +100,8 @@ static void weight(const struct dossier *d, const struct placement_record *p, st
     struct svg_point here = at(job, DISC, p->angle_deg), text = at(job, INSIDE, p->angle_deg);
     struct buffer mass = BUFFER_INIT;
     bool cut = p->mass < 0;
-    phrase_mass(&mass, job, p->mass, text_answer_free_half(d, p->plane));
+    phrase_mass(&mass, job, fabs(p->mass), text_answer_free_half(d, p->plane));
+    buffer_text(&mass, cut ? " off" : "");
     buffer_format(out, "<g data-what=\"placement\" data-position=\"%d\">", p->position);
     if (cut)
         svg_square(out, "cut", here.x, here.y, 9);

@@ -13,6 +13,7 @@
 #include "report/phrase.h"
 #include "report/runout.h"
 #include "report/text_answer.h"
+#include "report/text_forecast.h"
 #include "report/text_audit.h"
 #include "report/text_readings.h"
 #include "sheet/units.h"
@@ -74,15 +75,20 @@ static void forecast(const struct dossier *d, struct buffer *out)
         char heading[80];
         snprintf(heading, sizeof heading, "Forecast: 1x amplitudes %s", phrase_fitted(d));
         html_part_heading(out, heading);
-        text_answer_forecast_table(d, &table);
-        const char *blind = text_answer_not_forecast(&table);
+        text_forecast_table(d, &table);
+        const char *blind = text_forecast_blind(&table);
         html_part_table(out, &table);
         if (blind)
             html_part_say(out, "note", "%s", blind);
-        html_part_say(out, "note", "%s", text_answer_after);
+        html_part_say(out, "note", "%s", text_forecast_after);
+        struct buffer fitted = BUFFER_INIT;
+        text_forecast_fitted(d, &fitted);
+        if (fitted.failed || fitted.length > 0)
+            html_part_take(out, "p", &fitted);
+        buffer_release(&fitted);
         if (runout_forecast(d))
             html_part_say(out, "note", "%s", runout_forecast(d));
-        html_part_say(out, "note", "%s", text_answer_1x_only);
+        html_part_say(out, "note", "%s", text_forecast_1x_only);
     }
     if (d->residuals.count > 0) {
         html_part_heading(out, "Tolerance: estimated residual unbalance");

@@ -6,11 +6,14 @@
 
 #include "base/status.h"
 #include "report/draw.h"
+#include "report/heed.h"
 #include "report/html_others.h"
 #include "report/html_part.h"
+#include "report/mounting.h"
 #include "report/phrase.h"
 #include "report/shown.h"
 #include "report/text_answer.h"
+#include "report/text_forecast.h"
 
 static bool is_step(const struct dossier *d, const char *step)
 {
@@ -29,7 +32,7 @@ static void advice(const struct dossier *d, struct buffer *out)
 static void relative_to(const struct dossier *d, struct buffer *out)
 {
     struct buffer text = BUFFER_INIT;
-    phrase_relative_to(&text, d->job, d->placements.items[0].relative_to);
+    mounting_relative_to(&text, d->job, d->placements.items[0].relative_to);
     html_part_take(out, "p", &text);
 }
 
@@ -85,7 +88,20 @@ static void missed(const struct dossier *d, struct buffer *out)
 {
     for (size_t i = 0; i < d->forecasts.count; i++) {
         struct buffer text = BUFFER_INIT;
-        text_answer_missed(d, i, &text);
+        text_forecast_missed(d, i, &text);
+        if (text.failed)
+            out->failed = 1;
+        else if (text.length > 0)
+            html_part_say(out, "warn", "%s", text.bytes);
+        buffer_release(&text);
+    }
+}
+
+static void heed(const struct dossier *d, struct buffer *out)
+{
+    for (size_t i = 0; i < HEED_COUNT; i++) {
+        struct buffer text = BUFFER_INIT;
+        heed_line(&text, d, i);
         if (text.failed)
             out->failed = 1;
         else if (text.length > 0)
@@ -106,6 +122,7 @@ static void placements(const struct dossier *d, struct buffer *out)
     size_t refusals = 0;
     html_part_heading(out, "What to do now");
     relative_to(d, out);
+    heed(d, out);
     table_init(&table, columns, sizeof columns / sizeof *columns);
     for (size_t i = 0; i < d->placements.count; i++)
         placement_row(d, &d->placements.items[i], &table);
@@ -166,13 +183,14 @@ static void drawings(const struct dossier *d, struct buffer *out)
     buffer_text(out, "</div>\n");
 }
 
-static void safety(struct buffer *out)
+static void safety(const struct dossier *d, struct buffer *out)
 {
-    html_part_heading(out, "Before fitting");
+    const char *line;
+    html_part_heading(out, phrase_only_removed(d) ? "Before removing" : "Before fitting");
     buffer_text(out, "<ul class=\"safety\">\n");
-    for (size_t i = 0; text_answer_cautions[i]; i++) {
+    for (size_t i = 0; (line = text_answer_caution(d, i)); i++) {
         buffer_text(out, "<li>");
-        svg_escape(out, text_answer_cautions[i]);
+        svg_escape(out, line);
         buffer_text(out, "</li>\n");
     }
     buffer_text(out, "</ul>\n");
@@ -196,6 +214,7 @@ void html_answer_write(const struct dossier *dossier, struct buffer *out)
                           "No answer is in this stream: it has not been through "
                           "lopside solve.");
         advice(d, out);
+        heed(d, out);
         cautions(d, out);
     }
     if (is_step(d, "trial"))
@@ -206,6 +225,6 @@ void html_answer_write(const struct dossier *dossier, struct buffer *out)
     buffer_text(out, "</section>\n");
     if (d->placements.count > 0 || is_step(d, "trial")) {
         drawings(d, out);
-        safety(out);
+        safety(d, out);
     }
 }

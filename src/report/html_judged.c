@@ -140,28 +140,30 @@ static void zones(const struct dossier *d, struct buffer *out)
     html_part_table(out, &table);
 }
 
-/* Speed of the reading that `compared` is about; NaN: not in the stream. */
-static double speed_of(const struct dossier *d, const struct compared_record *c)
+/* The reading that `compared` is about; NULL: not in the stream. */
+static const struct dossier_reading *reading_of(const struct dossier *d,
+                                                const struct compared_record *c)
 {
     for (size_t i = 0; i < d->readings.count; i++) {
         const struct reading_record *r = &d->readings.items[i].reading;
         if (r->sensor == c->sensor && strcmp(r->run, d->job->runs[c->run].name) == 0 &&
             strcmp(r->condition, c->condition) == 0)
-            return r->speed_rpm;
+            return &d->readings.items[i];
     }
-    return NAN;
+    return NULL;
 }
 
-/* se: standard error of the distance (SI peak); both vectors are shown no finer than it allows. */
-static void vector_cell(const struct job_sensor *sensor, double complex z, double se, double rpm,
-                        struct table *table)
+/* cov as a reading has it, SI peak; its lag stands only where that tells one, as in the text. */
+static void vector_cell(const struct job_sensor *sensor, double complex z, const double cov[3],
+                        double rpm, struct table *table)
 {
-    const double cov[3] = {se * se / 2, 0, se * se / 2};
-    struct shown s =
-        shown_vector(z, isfinite(se) ? cov : NULL, sensor->quantity, rpm, &sensor->show, NAN);
+    struct shown s = shown_vector(z, cov, sensor->quantity, rpm, &sensor->show, NAN);
     char unit[24], amplitude[DIGITS_ROOM], lag[DIGITS_ROOM];
     if (isnan(s.amplitude))
         table_cell(table, "-");
+    else if (s.lag_open || isnan(s.lag_deg))
+        table_cell(table, "%s %s, lag not known", digits_text(amplitude, s.amplitude, s.half),
+                   units_show_text(&sensor->show, unit));
     else
         table_cell(table, "%s %s at %s deg lag", digits_text(amplitude, s.amplitude, s.half),
                    units_show_text(&sensor->show, unit), digits_angle(lag, s.lag_deg, s.lag_half));
@@ -181,12 +183,17 @@ static void compared(const struct dossier *d, struct buffer *out)
     for (size_t i = 0; i < d->compared.count; i++) {
         const struct compared_record *c = &d->compared.items[i];
         const struct job_sensor *sensor = &d->job->sensors[c->sensor];
-        double rpm = speed_of(d, c);
+        const struct dossier_reading *reading = reading_of(d, c);
+        double rpm = reading ? reading->reading.speed_rpm : d->job->service_rpm;
         table_cell(&table, "%s", d->job->runs[c->run].name);
         table_cell(&table, "%s", sensor->name);
-        double se = c->se > 0 ? cabs(c->measured - c->predicted) / c->se : NAN;
-        vector_cell(sensor, c->predicted, se, rpm, &table);
-        vector_cell(sensor, c->measured, se, rpm, &table);
+        double se = c->se > 0 ? cabs(c->measured - c->predicted) / c->se : 0;
+        const double guess[3] = {se * se / 2, 0, se * se / 2};
+        double own[3] = {0, 0, 0};
+        if (reading)
+            dossier_cov(reading, own);
+        vector_cell(sensor, c->predicted, guess, rpm, &table);
+        vector_cell(sensor, c->measured, own, rpm, &table);
         table_cell(&table, isfinite(c->se) ? "%.1f" : "-", c->se);
     }
     html_part_heading(out, "Predicted against measured");

@@ -36,7 +36,7 @@ static void mass_cell(struct table *table, const struct job *job, double kg, dou
 {
     struct buffer text = BUFFER_INIT;
     if (isfinite(kg))
-        phrase_mass(&text, job, kg, half);
+        phrase_signed(&text, job, kg, half);
     take_cell(table, &text);
 }
 

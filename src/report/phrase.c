@@ -26,6 +26,12 @@ void phrase_mass(struct buffer *out, const struct job *job, double kg, double ha
     buffer_format(out, "%s %s", text, shown_mass_unit(job));
 }
 
+void phrase_signed(struct buffer *out, const struct job *job, double kg, double half)
+{
+    buffer_text(out, kg < 0 ? "remove " : "");
+    phrase_mass(out, job, fabs(kg), half);
+}
+
 bool phrase_weight_useless(double kg, double half)
 {
     return half > fabs(kg);
@@ -67,6 +73,16 @@ void phrase_holes(struct buffer *out, const struct job *job, const struct placem
         buffer_format(out, "%s%s", i ? " + " : ", ",
                       digits_at(text, p->depths_m[i] / si, us ? -3 : -1));
     buffer_format(out, " %s deep", unit);
+    double least = p->depths_m[0];
+    for (size_t i = 1; i < p->piece_count; i++)
+        least = fmin(least, p->depths_m[i]);
+    /* Half the diameter over tan 59 deg: a drill's usual point of 118 deg, common practice. */
+    const double point = 0.3 * wide;
+    if (least < point)
+        buffer_format(out,
+                      " (that is less than a drill's point is high, about %s %s: go by the mass "
+                      "that comes off, or leave it)",
+                      digits_at(text, point / si, us ? -2 : 0), unit);
 }
 
 void phrase_sits(struct buffer *out, const struct job *job, const struct placement_record *p)
@@ -87,6 +103,14 @@ bool phrase_is_removed(const struct job *job, const struct placement_record *p)
                            job->planes[p->plane].work == WORK_REMOVE);
 }
 
+bool phrase_only_removed(const struct dossier *d)
+{
+    for (size_t i = 0; i < d->placements.count; i++)
+        if (!phrase_is_removed(d->job, &d->placements.items[i]))
+            return false;
+    return d->placements.count > 0;
+}
+
 const char *phrase_fitted(const struct dossier *d)
 {
     size_t removed = 0;
@@ -100,7 +124,7 @@ const char *phrase_fitted(const struct dossier *d)
                                           : "with the weights above fitted and removed";
 }
 
-static void weight(struct buffer *out, const struct job *job, const struct job_weight *w)
+void phrase_weight(struct buffer *out, const struct job *job, const struct job_weight *w)
 {
     if (w->mounted_mass < 0) {
         phrase_mass(out, job, -w->mounted_mass, NAN);
@@ -132,51 +156,8 @@ void phrase_weights(struct buffer *out, const struct job *job, size_t run)
     for (size_t i = 0; i < r->weight_count; i++) {
         if (i > 0)
             buffer_text(out, "; ");
-        weight(out, job, &r->weights[i]);
+        phrase_weight(out, job, &r->weights[i]);
     }
-}
-
-static bool any_added(const struct job *job)
-{
-    for (size_t r = 0; r < job->run_count; r++)
-        for (size_t i = 0; i < job->runs[r].weight_count; i++)
-            if (job->runs[r].weights[i].mounted_mass > 0)
-                return true;
-    return false;
-}
-
-void phrase_relative_to(struct buffer *out, const struct job *job, const char *name)
-{
-    int run = dossier_base(job, name), removed = job_removed_run(job);
-    const int loaded = job_found_loaded(job);
-    if (run >= 0) {
-        buffer_format(out, "In addition to the weights of run '%s', which stay on: ", name);
-        phrase_weights(out, job, (size_t)run);
-        buffer_text(out, ".");
-        return;
-    }
-    if (removed < 0 && loaded >= 0) {
-        buffer_format(out,
-                      "Relative to the rotor without any weight that the sheet lists, those of run "
-                      "'%s' included: take all of them off first.",
-                      job->runs[loaded].name);
-        return;
-    }
-    if (removed < 0 && job_never_bare(job)) {
-        buffer_text(out,
-                    "Relative to the rotor without any weight that the sheet lists, which no run "
-                    "shows: take all of them off first.");
-        return;
-    }
-    buffer_format(out, "Relative to the rotor %s: ", name);
-    if (removed < 0)
-        buffer_text(out, "take every trial weight off first.");
-    else
-        buffer_format(out,
-                      "put back what was removed in run '%s'%s, or name the run as mounted in "
-                      "[aim] and ask again.",
-                      job->runs[removed].name,
-                      any_added(job) ? " and take every trial weight off first" : " first");
 }
 
 void phrase_weight_half(double mass, double angle_deg, const double cov[3], double half[2])

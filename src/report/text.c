@@ -5,6 +5,7 @@
 #include "report/paper.h"
 #include "report/shown.h"
 #include "report/text_answer.h"
+#include "report/text_forecast.h"
 #include "report/text_audit.h"
 #include "report/text_others.h"
 #include "report/text_outcomes.h"
@@ -67,7 +68,7 @@ void text_write(const struct dossier *dossier, struct buffer *out)
     } else {
         text_answer_now(dossier, out);
         text_answer_safety(dossier, out);
-        text_answer_forecast(dossier, out);
+        text_forecast_write(dossier, out);
         text_outcomes_zones(dossier, out);
         text_others_write(dossier, out);
         text_answer_ideal(dossier, out);

@@ -5,11 +5,14 @@
 #include <string.h>
 
 #include "base/status.h"
+#include "report/heed.h"
+#include "report/mounting.h"
 #include "report/paper.h"
 #include "report/phrase.h"
 #include "report/runout.h"
 #include "report/shown.h"
 #include "report/table.h"
+#include "report/text_forecast.h"
 #include "report/text_others.h"
 
 static bool step_is(const struct dossier *d, const char *step)
@@ -46,7 +49,7 @@ static void note_angle(const struct dossier *d, struct buffer *out)
 static void relative_to(const struct dossier *d, const char *name, struct buffer *out)
 {
     struct buffer text = BUFFER_INIT;
-    phrase_relative_to(&text, d->job, name);
+    mounting_relative_to(&text, d->job, name);
     put(out, 2, 2, &text);
 }
 
@@ -128,7 +131,7 @@ static void doubts(const struct dossier *d, struct buffer *out)
     size_t refused = count_findings(d, VERDICT_REFUSE);
     for (size_t i = 0; i < d->forecasts.count; i++) {
         struct buffer text = BUFFER_INIT;
-        text_answer_missed(d, i, &text);
+        text_forecast_missed(d, i, &text);
         put(out, 2, 2, &text);
     }
     if (refused > 0) {
@@ -142,10 +145,20 @@ static void doubts(const struct dossier *d, struct buffer *out)
     cautions(d, out);
 }
 
+static void heed(const struct dossier *d, struct buffer *out)
+{
+    for (size_t i = 0; i < HEED_COUNT; i++) {
+        struct buffer text = BUFFER_INIT;
+        heed_line(&text, d, i);
+        put(out, 2, 2, &text);
+    }
+}
+
 static void placements(const struct dossier *d, struct buffer *out)
 {
     paper_heading(out, "WHAT TO DO NOW");
     relative_to(d, d->placements.items[0].relative_to, out);
+    heed(d, out);
     for (size_t i = 0; i < d->placements.count; i++)
         placement(d, i + 1, &d->placements.items[i], out);
     paper_say(out, 2, 2, "Angles are counted from the mark, %s.", job_sense_text(d->job));
@@ -204,6 +217,7 @@ static void step_only(const struct dossier *d, struct buffer *out)
                    "No answer is in this stream: it has not been through `lopside solve`.");
     if (d->has_next)
         advice(d, 2, out);
+    heed(d, out);
     cautions(d, out);
     text_others_trials(d, out);
     note_angle(d, out);
@@ -225,24 +239,33 @@ void text_answer_now(const struct dossier *dossier, struct buffer *out)
     }
 }
 
-const char *const text_answer_cautions[] = {
-    "Isolate and lock out the drive before anybody reaches into the machine.",
-    "Each fixing must hold its weight's force, and more at overspeed: it grows with the square "
-    "of speed.",
-    "Nobody stands in the plane of rotation at the start.",
-    "Agree beforehand at which vibration the start is broken off.",
-    "Never balance over a crack, a rub, looseness or build-up: find and mend it first.",
-    "Local codes and the site's licensed engineer decide.",
-    NULL,
-};
+const char *text_answer_caution(const struct dossier *dossier, size_t i)
+{
+    static const char *const lines[] = {
+        "Isolate and lock out the drive before anybody reaches into the machine.",
+        "Each fixing must hold its weight's force, and more at overspeed: it grows with the square "
+        "of speed.",
+        "Nobody stands in the plane of rotation at the start.",
+        "Agree beforehand at which vibration the start is broken off.",
+        "Never balance over a crack, a rub, looseness or build-up: find and mend it first.",
+        "Local codes and the site's licensed engineer decide.",
+    };
+    if (i >= sizeof lines / sizeof *lines)
+        return NULL;
+    return i == 1 && phrase_only_removed(dossier)
+               ? "Nothing is drilled or cut off where the rotor's strength or what lies beneath "
+                 "does not allow it, and no chip stays in the machine."
+               : lines[i];
+}
 
 void text_answer_safety(const struct dossier *dossier, struct buffer *out)
 {
+    const char *line;
     if (dossier->placements.count == 0 && !step_is(dossier, "trial"))
         return;
-    paper_heading(out, "BEFORE FITTING");
-    for (size_t i = 0; text_answer_cautions[i]; i++)
-        paper_say(out, 2, 4, "- %s", text_answer_cautions[i]);
+    paper_heading(out, phrase_only_removed(dossier) ? "BEFORE REMOVING" : "BEFORE FITTING");
+    for (size_t i = 0; (line = text_answer_caution(dossier, i)); i++)
+        paper_say(out, 2, 4, "- %s", line);
 }
 
 static void half_text(struct buffer *out, const struct job *job, double kg, const double half[2])
@@ -266,7 +289,7 @@ static void ideal(const struct dossier *d, const struct correction_record *c, st
     struct buffer text = BUFFER_INIT;
     phrase_weight_half(c->least_squares[0], c->least_squares[1], c->ellipse, half);
     buffer_format(&text, "Plane '%s': ", dossier_plane(d, c->plane));
-    phrase_mass(&text, d->job, c->mass, half[0]);
+    phrase_signed(&text, d->job, c->mass, half[0]);
     buffer_text(&text, " at ");
     phrase_angle(&text, d->job, c->angle_deg, half[1]);
     put(out, 2, 4, &text);
@@ -276,7 +299,7 @@ static void ideal(const struct dossier *d, const struct correction_record *c, st
     buffer_format(&text, "least squares, %s: ",
                   phrase_weight_useless(c->least_squares[0], half[0]) ? "of no use for a hand check"
                                                                       : "for a hand check");
-    phrase_mass(&text, d->job, c->least_squares[0], half[0]);
+    phrase_signed(&text, d->job, c->least_squares[0], half[0]);
     buffer_text(&text, " at ");
     phrase_angle(&text, d->job, c->least_squares[1], half[1]);
     half_text(&text, d->job, c->least_squares[0], half);
@@ -298,225 +321,6 @@ void text_answer_ideal(const struct dossier *dossier, struct buffer *out)
         ideal(dossier, &dossier->corrections.items[i], out);
 }
 
-static bool one_condition(const struct dossier *d)
-{
-    for (size_t i = 1; i < d->forecasts.count; i++) {
-        if (strcmp(d->forecasts.items[i].condition, d->forecasts.items[0].condition) != 0)
-            return false;
-    }
-    return true;
-}
-
-/* A forecast as its sensor shows it. */
-struct outlook {
-    double before, after, low, high, target;
-    int place; /* the last digit of what is expected */
-};
-
-static struct outlook outlook_of(const struct dossier *d, const struct forecast_record *f)
-{
-    const struct job_sensor *sensor = &d->job->sensors[f->sensor];
-    double peaks[5] = {cabs(f->before), cabs(f->after), f->after_95[0], f->after_95[1], f->target};
-    for (int i = 0; i < 5; i++)
-        peaks[i] =
-            shown_amplitude(peaks[i], NAN, sensor->quantity, f->speed_rpm, &sensor->show).amplitude;
-    /* Never finer than four digits of what there is now: a forecast of nothing left is "0.000". */
-    int place = digits_place(peaks[1], (peaks[3] - peaks[2]) / 2);
-    int coarse = digits_place(peaks[0], NAN);
-    return (struct outlook){peaks[0], peaks[1], peaks[2],
-                            peaks[3], peaks[4], place > coarse ? place : coarse};
-}
-
-void text_answer_missed(const struct dossier *dossier, size_t forecast, struct buffer *text)
-{
-    const struct forecast_record *f = &dossier->forecasts.items[forecast];
-    /* Below even odds it is not to be hoped for, and below 5 % it will not be: our choice. */
-    if (!(f->chance < 0.5) || f->sensor < 0 || (size_t)f->sensor >= dossier->job->sensor_count)
-        return;
-    const struct job_sensor *sensor = &dossier->job->sensors[f->sensor];
-    const struct outlook o = outlook_of(dossier, f);
-    const bool single = one_condition(dossier);
-    char after[DIGITS_ROOM], target[DIGITS_ROOM], chance[DIGITS_ROOM];
-    buffer_format(text, "This %s the target at %s%s%s: %s expected, target %s %s %s",
-                  f->chance < 0.05 ? "will not meet" : "is not likely to meet", sensor->name,
-                  single ? "" : ", ", single ? "" : f->condition,
-                  digits_at(after, o.after, o.place), digits_text(target, o.target, NAN),
-                  sensor->show.unit, detection_text(sensor->show.detection));
-    if (f->chance >= 0.05)
-        buffer_format(text, ", chance %s", digits_chance(chance, f->chance));
-    buffer_text(text, ".");
-}
-
-static void forecast_row(const struct dossier *d, const struct forecast_record *f, bool single,
-                         struct table *table)
-{
-    if (f->sensor < 0 || (size_t)f->sensor >= d->job->sensor_count)
-        return;
-    const struct job_sensor *sensor = &d->job->sensors[f->sensor];
-    const struct outlook o = outlook_of(d, f);
-    int first = digits_place(o.before, (o.high - o.low) / 2);
-    char text[DIGITS_ROOM], low[DIGITS_ROOM], high[DIGITS_ROOM];
-    table_cell(table, "%s%s%s", sensor->name, single ? "" : ", ", single ? "" : f->condition);
-    table_cell(table, "%s %s", sensor->show.unit, detection_text(sensor->show.detection));
-    table_cell(table, "%s", digits_at(text, o.before, first));
-    table_cell(table, "%s", digits_at(text, o.after, o.place));
-    table_cell(table, "%s to %s", digits_at(low, o.low, o.place), digits_at(high, o.high, o.place));
-    table_cell(table, "%s", digits_text(text, o.target, NAN));
-    table_cell(table, "%s", digits_chance(text, f->chance));
-}
-
-/* What the lost sensor shows where the rotor is as the answer takes it: the mean of the used
- * readings, as shown; NaN: there are none. */
-static double lost_before(const struct dossier *d, size_t sensor, const char *condition)
-{
-    const char *to = d->placements.count > 0 ? d->placements.items[0].relative_to : "";
-    const struct job_sensor *s = &d->job->sensors[sensor];
-    const int base = dossier_base(d->job, to);
-    double complex sum = 0;
-    double rpm = NAN;
-    size_t count = 0;
-    for (size_t i = 0; i < d->readings.count; i++) {
-        const struct reading_record *r = &d->readings.items[i].reading;
-        const int run = job_find_run(d->job, r->run);
-        if (r->sensor != (int)sensor || strcmp(r->condition, condition) != 0 || run < 0 ||
-            dossier_is_runout(d, r->run) || !d->readings.items[i].use || !r->has_phase)
-            continue;
-        if (base >= 0 ? run != base : !job_run_is_bare(d->job, (size_t)run))
-            continue;
-        const struct dossier_reading left = runout_off(d, &d->readings.items[i]);
-        sum += left.reading.vector;
-        rpm = r->speed_rpm;
-        count++;
-    }
-    if (count == 0)
-        return NAN;
-    return shown_amplitude(cabs(sum) / (double)count, NAN, s->quantity, rpm, &s->show).amplitude;
-}
-
-/* An aimed sensor about which nothing is foretold. condition: "" where it was never read. */
-static void lost_row(const struct dossier *d, size_t sensor, const char *condition, bool single,
-                     struct table *table)
-{
-    const struct job_sensor *s = &d->job->sensors[sensor];
-    const struct job_target *target = &d->job->aim.targets[sensor];
-    const double before = lost_before(d, sensor, condition);
-    const double aim =
-        shown_amplitude(target->amplitude, NAN, target->quantity, d->job->service_rpm, &s->show)
-            .amplitude;
-    char text[DIGITS_ROOM];
-    bool plain =
-        !condition[0] || (single && strcmp(condition, d->forecasts.items[0].condition) == 0);
-    table_cell(table, "%s%s%s", s->name, plain ? "" : ", ", plain ? "" : condition);
-    table_cell(table, "%s %s", s->show.unit, detection_text(s->show.detection));
-    /* Three digits: common practice for one amplitude. */
-    table_cell(table, "%s", digits_text(text, before, before / 10));
-    table_cell(table, "-");
-    table_cell(table, "not forecast");
-    table_cell(table, "%s", digits_text(text, aim, NAN));
-    table_cell(table, "-");
-}
-
-static bool said_before(const struct dossier *d, size_t reading)
-{
-    const struct reading_record *r = &d->readings.items[reading].reading;
-    for (size_t i = 0; i < reading; i++) {
-        const struct reading_record *other = &d->readings.items[i].reading;
-        if (other->sensor == r->sensor && strcmp(other->condition, r->condition) == 0)
-            return true;
-    }
-    return false;
-}
-
-static void lost_rows(const struct dossier *d, bool single, struct table *table)
-{
-    const struct job *job = d->job;
-    for (size_t s = 0; s < job->sensor_count && job->aim.targets; s++) {
-        bool known = false;
-        if (job->aim.named && !job->aim.targets[s].in_aim)
-            continue;
-        for (size_t i = 0; i < d->readings.count; i++) {
-            const struct reading_record *r = &d->readings.items[i].reading;
-            if (r->sensor != (int)s || dossier_is_runout(d, r->run))
-                continue;
-            known = true;
-            if (dossier_left_out(d, (int)s, r->condition) && !said_before(d, i))
-                lost_row(d, s, r->condition, single, table);
-        }
-        for (size_t i = 0; i < d->forecasts.count; i++)
-            known = known || d->forecasts.items[i].sensor == (int)s;
-        if (!known && d->forecasts.count > 0)
-            lost_row(d, s, "", single, table);
-    }
-}
-
-const char text_answer_1x_only[] =
-    "1x only: whatever else the overall vibration holds stays as it is, and no balance weight "
-    "changes it.";
-
-const char text_answer_after[] =
-    "After is what the best estimates give. The next reading holds their uncertainty and the "
-    "scatter from run to run, too, so that where little is left it is likely to be more.";
-
-/* The table has a row about which nothing is foretold. */
-const char *text_answer_not_forecast(const struct table *table)
-{
-    for (size_t i = 0; i < table->cell_count; i++)
-        if (table->cells[i] && strcmp(table->cells[i], "not forecast") == 0)
-            return "Not forecast: no reading that may be used tells what this sensor will show.";
-    return NULL;
-}
-
-void text_answer_forecast_table(const struct dossier *dossier, struct table *table)
-{
-    static const struct table_column columns[] = {
-        {"sensor", false, true},
-        {"unit", false, false},
-        {"before", true, false},
-        {"after", true, false},
-        {"next reading, 95 %", true, false},
-        {"target", true, false},
-        {"chance", true, false},
-    };
-    bool single = one_condition(dossier);
-    table_init(table, columns, sizeof columns / sizeof *columns);
-    for (size_t i = 0; i < dossier->forecasts.count; i++)
-        forecast_row(dossier, &dossier->forecasts.items[i], single, table);
-    lost_rows(dossier, single, table);
-}
-
-void text_answer_forecast(const struct dossier *dossier, struct buffer *out)
-{
-    struct table table;
-    if (dossier->forecasts.count == 0)
-        return;
-    char heading[80];
-    text_answer_forecast_table(dossier, &table);
-    snprintf(heading, sizeof heading, "FORECAST: 1x amplitudes %s", phrase_fitted(dossier));
-    paper_heading(out, heading);
-    table_print(&table, 2, out);
-    const char *blind = text_answer_not_forecast(&table);
-    table_release(&table);
-    if (blind)
-        paper_wrap(out, 2, 2, blind);
-    paper_wrap(out, 2, 2, text_answer_after);
-    if (runout_forecast(dossier))
-        paper_wrap(out, 2, 2, runout_forecast(dossier));
-    paper_wrap(out, 2, 2, text_answer_1x_only);
-}
-
-static const char *within(const struct residual_record *r)
-{
-    /* An upper end of twice what is allowed says as little as no estimate would: our choice. */
-    const double blind = 2;
-    if (isnan(r->after) || isnan(r->permissible))
-        return "not known";
-    if (r->after > r->permissible)
-        return "NOT MET";
-    if (r->after_95 <= r->permissible)
-        return "met";
-    return r->after_95 <= blind * r->permissible ? "not proven" : "not known";
-}
-
 void text_answer_tolerance_table(const struct dossier *dossier, struct table *table)
 {
     static const struct table_column columns[] = {
@@ -529,14 +333,17 @@ void text_answer_tolerance_table(const struct dossier *dossier, struct table *ta
         const struct residual_record *r = &dossier->residuals.items[i];
         double half = shown_unbalance(dossier->job, r->after_95 - r->after);
         double values[4] = {r->before, r->after, r->after_95, r->permissible};
+        const double most = shown_unbalance(dossier->job, r->permissible);
         table_cell(table, "%s", dossier_plane(dossier, r->plane));
         table_cell(table, "%s", shown_unbalance_unit(dossier->job));
         for (int v = 0; v < 4; v++) {
             char text[DIGITS_ROOM];
             double value = shown_unbalance(dossier->job, values[v]);
-            table_cell(table, "%s", digits_text(text, value, v < 3 ? half : NAN));
+            table_cell(table, "%s",
+                       v < 3 ? digits_against(text, value, half, most)
+                             : digits_text(text, value, NAN));
         }
-        table_cell(table, "%s", within(r));
+        table_cell(table, "%s", heed_within(r));
     }
 }
 
@@ -545,7 +352,7 @@ void text_answer_tolerance_words(const struct dossier *dossier, struct buffer *t
     bool unproven = false, unknown = false;
     buffer_text(text, "95 % below: the residual is below it 95 times in 100.");
     for (size_t i = 0; i < dossier->residuals.count; i++) {
-        const char *word = within(&dossier->residuals.items[i]);
+        const char *word = heed_within(&dossier->residuals.items[i]);
         unproven = unproven || strcmp(word, "not proven") == 0;
         unknown = unknown || strcmp(word, "not known") == 0;
     }
@@ -553,6 +360,14 @@ void text_answer_tolerance_words(const struct dossier *dossier, struct buffer *t
         buffer_text(text, " Not proven: the estimate is permissible, but that bound is not.");
     if (unknown)
         buffer_text(text, " Not known: there is no estimate, or none that tells.");
+    const struct job *job = dossier->job;
+    if (job->plane_count == 2 && job->span_m > 0 && isfinite(job->centre_m))
+        buffer_format(
+            text,
+            " Plane '%s' is counted to bearing A, from which the mass centre is measured, "
+            "because the sheet names it first, and '%s' to bearing B: if it is the other "
+            "way, change the order of the planes.",
+            job->planes[0].name, job->planes[1].name);
 }
 
 void text_answer_tolerance(const struct dossier *dossier, struct buffer *out)

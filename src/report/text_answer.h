@@ -11,17 +11,11 @@ void text_answer_now(const struct dossier *dossier,
 void text_answer_safety(const struct dossier *dossier,
                         struct buffer *out); /* where a weight is fitted */
 void text_answer_ideal(const struct dossier *dossier, struct buffer *out); /* corrections */
-void text_answer_forecast(const struct dossier *dossier, struct buffer *out);
 void text_answer_tolerance(const struct dossier *dossier, struct buffer *out);
 
-/* What must be said wherever a weight is to be fitted; NULL at the end. */
-extern const char *const text_answer_cautions[];
-
-/* What a forecast is not about, and what its figure "after" is. */
-extern const char text_answer_1x_only[], text_answer_after[];
-
-/* What "not forecast" in that table means; NULL where it is not in it. Static text. */
-const char *text_answer_not_forecast(const struct table *table);
+/* What must be said wherever a weight is to be fitted or material removed, line `i` of it; NULL: no
+ * such line. Static text. */
+const char *text_answer_caution(const struct dossier *dossier, size_t i);
 
 /* What the words in the table of the tolerance mean, as far as they are in it. */
 void text_answer_tolerance_words(const struct dossier *dossier, struct buffer *text);
@@ -29,12 +23,7 @@ void text_answer_tolerance_words(const struct dossier *dossier, struct buffer *t
 /* 95 % half width (kg) to which a placed mass is worth stating; NaN: pieces, nominal. */
 double text_answer_free_half(const struct dossier *d, int plane);
 
-/* "This will not meet the target at DE-H: 5.22 expected, target 1.8 mm/s rms." of that forecast; nothing
- * where it has no target, or even odds to meet it. */
-void text_answer_missed(const struct dossier *dossier, size_t forecast, struct buffer *text);
-
-/* The tables alone, to be printed and released by the caller. */
-void text_answer_forecast_table(const struct dossier *dossier, struct table *table);
+/* The table alone, to be printed and released by the caller. */
 void text_answer_tolerance_table(const struct dossier *dossier, struct table *table);
 
 #endif

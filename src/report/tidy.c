@@ -187,11 +187,14 @@ static void placement(const struct dossier *d, struct csv *csv)
 {
     static const char *const heads[] = {"plane",       "position",  "angle (deg)", "sense",
                                         "mass",        "mass unit", "pieces",      "force (N)",
-                                        "relative to", NULL};
+                                        "relative to", "hole (mm)", "depths (mm)", NULL};
     csv_head(csv, heads);
     for (size_t i = 0; i < d->placements.count; i++) {
         const struct placement_record *p = &d->placements.items[i];
-        struct buffer pieces = BUFFER_INIT;
+        struct buffer pieces = BUFFER_INIT, depths = BUFFER_INIT;
+        const bool drilled = p->piece_count > 0 && p->depths_m[0] > 0;
+        for (size_t k = 0; drilled && k < p->piece_count; k++)
+            buffer_format(&depths, "%s%.4g", k ? " " : "", 1000 * p->depths_m[k]);
         for (size_t k = 0; k < p->piece_count; k++)
             buffer_format(&pieces, "%s%.6g", k ? " " : "", shown_mass(d->job, p->pieces[k]));
         csv_text(csv, dossier_plane(d, p->plane));
@@ -206,9 +209,12 @@ static void placement(const struct dossier *d, struct csv *csv)
         csv_plain(csv, pieces.bytes ? pieces.bytes : "");
         csv_number(csv, p->force_n);
         csv_text(csv, p->relative_to);
+        csv_number(csv, drilled && p->plane >= 0 ? 1000 * d->job->planes[p->plane].hole_m : NAN);
+        csv_plain(csv, depths.bytes ? depths.bytes : "");
         csv_row(csv);
-        if (pieces.failed)
+        if (pieces.failed || depths.failed)
             csv->out->failed = 1;
+        buffer_release(&depths);
         buffer_release(&pieces);
     }
 }

@@ -396,7 +396,9 @@ class Check(unittest.TestCase):
             done = chain.lopside("balance", "--as", form, "job.ini", cwd=self.top)
             self.assertEqual(done.returncode, 0, chain.complaint(done))
             said = " ".join(done.stdout.decode().split())
-            self.assertIn("Relative to the rotor as found: take every trial weight off first.", said)
+            self.assertIn("Relative to the rotor as found: first take off all that the runs list, trial and correction "
+                          "weights alike: 28.35 g at 0 deg with rotation on plane 'hub' (run 'trial').",
+                          said.replace("&#39;", "'"))
             self.assertNotIn("stay on", said.split("FORECAST")[0] if form == "text" else said.split("Forecast")[0])
             self.assertIn("not known", said)  # the force: there is no service speed
         (self.top / "job.ini").write_text(sheet.format(loaded, ""))

@@ -4,6 +4,7 @@ Where a weight is drawn comes from the coordinates of the picture alone. Seen fr
 names, with the mark on top, an angle against rotation runs counter-clockwise where the rotor turns
 clockwise: by the meaning of the words.
 """
+import cmath
 import csv
 import html.parser
 import io
@@ -229,6 +230,151 @@ class Page(unittest.TestCase):
     def test_same_bytes(self):
         pages = {chain.lopside("report", "--as", "html", stdin=solved("clockwise")).stdout for _ in "12"}
         self.assertEqual(len(pages), 1)
+
+
+def by_hand(runs, aim="minimise = total\n", rotor="grade = G2.5\n", plane="positions = 8 from 0 deg\nstock = 0.5 1 2 g\n", phase="lag"):
+    """A sheet of one plane and two sensors. runs: {name: [weight value, ...]}. Readings come from z0 + a*w, the linear law:
+    a invented, z0 such that Instruction.TRIM takes away all but 0.05 mm/s."""
+    answer = sum(m * cmath.exp(1j * math.radians(deg)) for m, deg in Instruction.TRIM)
+    laws = {}
+    for name, amplitude, deg in (("V", 0.84, 284), ("H", 0.63, 14)):
+        a = amplitude * cmath.exp(1j * math.radians(deg))
+        laws[name] = (-a * answer + 0.05, a)
+    text = ("[job]\ntitle = Pump\nangles = against rotation\nphase = {}\n[rotor]\nmass = 80 kg\nservice speed = 2950 rpm\n{}"
+            "[sensor V]\nunit = mm/s\n[sensor H]\nunit = mm/s\n[plane hub]\nradius = 160 mm\n{}[aim]\n{}"
+            ).format(phase, rotor, plane, aim)
+    for name, weights in runs.items():
+        text += "[run {}]\nspeed = 2950 rpm\n".format(name)
+        w = 0
+        for mass, angle in weights:
+            text += "weight hub = {} g at {} deg\n".format(mass, angle)
+            w += mass * cmath.exp(1j * math.radians(angle))
+        for sensor, (z0, a) in laws.items():
+            z = z0 + a * w
+            deg = math.degrees(cmath.phase(z)) * (1 if phase == "lag" else -1)
+            text += "reading {} = {:.2f} mm/s rms at {:.1f} deg\n".format(sensor, abs(z), deg % 360)
+    return text
+
+
+class Instruction(unittest.TestCase):
+    """What is told to whoever stands at the machine, in text and page alike."""
+
+    def told(self, sheet, form, code=0):
+        with chain.folder() as where:
+            (where / "job.ini").write_text(sheet)
+            done = chain.lopside("balance", "--as", form, where / "job.ini")
+            self.assertEqual(done.returncode, code, chain.complaint(done))
+        text = done.stdout.decode()
+        return " ".join((" ".join(Tags(text).words) if form == "html" else text).split())
+
+    def both(self, sheet):
+        return [self.told(sheet, form) for form in ("text", "html")]
+
+    TRIAL, FIRST, TRIM = [(2.5, 0)], [(4, 180), (1, 225)], [(4, 180), (1, 225), (1, 270)]
+
+    def test_all_that_comes_off_is_named(self):
+        """A run's correction weights are no trial weights: each weight that a run lists is named, once."""
+        for text in self.both(by_hand({"as-found": [], "trial": self.TRIAL, "again": self.TRIAL, "corrected": [(3, 180)]},
+                                      "target = 0.5 mm/s rms\n")):
+            start = text.index("Relative to the rotor as found: first take off all that the runs list")
+            said = text[start:text.index(".", text.index("(run 'corrected')", start))]
+            self.assertEqual(said.count(" g at "), 2)
+            self.assertIn("2.5 g at 0 deg against rotation on plane 'hub' (run 'trial')", said)
+            self.assertIn("3 g at 180 deg against rotation on plane 'hub' (run 'corrected')", said)
+
+    def test_what_others_left_comes_off(self):
+        """The weights of `mounted` stay; those of any other run may still be on the rotor."""
+        for text in self.both(by_hand({"as-found": [], "trial": self.TRIAL, "second": [(2.5, 225)]},
+                                      "mounted = trial\ntarget = 1 mm/s rms\n")):
+            self.assertIn("which stay on: 2.5 g at 0 deg against rotation on plane 'hub'. Take off first whatever else of "
+                          "the runs is on: 2.5 g at 225 deg against rotation on plane 'hub' (run 'second').", text)
+            self.assertNotIn("already carries", text)
+
+    def test_what_is_on_is_not_fitted_again(self):
+        runs = {"as-found": [], "trial": self.TRIAL, "first": self.FIRST, "trim": self.TRIM}
+        for text in self.both(by_hand(runs, "mounted = first\ntarget = 0.5 mm/s rms\n")):
+            self.assertIn("Run 'trim' already carries all that this answer asks for and meets the aim: if its weights are "
+                          "still on, fit NOTHING of what stands here, it would be doubled; write `mounted = trim` and ask "
+                          "again.", text)
+        runs["trim"] = self.FIRST + [(0.5, 90)]
+        for text in self.both(by_hand(runs, "mounted = first\ntarget = 0.1 mm/s rms\n")):
+            self.assertNotIn("already carries", text)
+            self.assertNotIn("meets the aim", text)
+
+    def test_a_wrong_sense_cannot_be_seen(self):
+        said = "these runs cannot show a wrong counting sense"
+        runs = {"as-found": [], "trial": self.TRIAL}
+        for phase in ("lag", "lead"):
+            for text in self.both(by_hand(runs, phase=phase)):
+                self.assertEqual(text.count(said), 1)
+                self.assertIn("`phase` ({}) or `angles` (against rotation)".format(phase), text)
+                self.assertLess(text.index(said), text.lower().index("before fitting"))
+        runs["second"] = [(2.5, 90)]
+        for text in self.both(by_hand(runs)):
+            self.assertNotIn(said, text)
+
+    def test_tolerance_not_met_is_said_at_the_answer(self):
+        """G0.4 of 80 kg at 2950 rpm is 0.4*80/308.9 kg mm: 103.6 g mm (ISO 21940-11); 1 g at 160 mm, which FIRST lacks, is 160."""
+        runs = {"as-found": [], "trial": self.TRIAL, "trim": self.FIRST}
+        for grade, there in (("G0.4", True), ("G40", False)):
+            for text in self.both(by_hand(runs, "mounted = trim\ntarget = 2 mm/s rms\n", "grade = {}\n".format(grade))):
+                self.assertIn("Nothing: no weight is to be fitted.", text)
+                box = text[:text.lower().index("forecast: 1x")]
+                self.assertEqual("Tolerance NOT MET on plane 'hub': " in box, there)
+                self.assertEqual("103.6 permissible (ISO 21940-11 G0.4), whatever the vibration is." in box, there)
+
+    def test_predicted_lag_is_known_in_both_or_none(self):
+        """Of what is predicted for the corrected run so little is left that its lag tells nothing."""
+        runs = {"as-found": [], "trial": self.TRIAL, "trim": self.TRIM}
+        sheet = by_hand(runs, "mounted = trim\ntarget = 0.5 mm/s rms\n")
+        text, page = self.told(sheet, "text"), self.told(sheet, "html")
+        self.assertRegex(text, r"predicted from the runs before it: .* not known")
+        part = page[page.index("Predicted against measured"):]
+        self.assertEqual(part.count("lag not known"), text.split("predicted from the runs before it:")[1]
+                         .split("Apart:")[0].count("not known"))
+
+    def test_before_is_fitted(self):
+        """Readings that contradict each other: the fitted figure is not what the sheet says."""
+        sheet = by_hand({"as-found": [], "trial": self.TRIAL, "again": self.TRIAL})
+        self.assertNotIn("Before is what all runs together say", self.told(sheet, "text"))
+        sheet = by_hand({"as-found": [], "trial": self.TRIAL, "second": [(2.5, 90)]})
+        first, rest = sheet.split("[run trial]")
+        wrong = first.replace("reading V = 4.23", "reading V = 4.90") + "[run trial]" + rest
+        self.assertNotEqual(wrong, sheet)
+        for text in self.both(wrong):
+            self.assertIn("Before is what all runs together say; the readings themselves differ from it: V read 4.90 mm/s rms",
+                          text)
+
+    DRILL = "work = remove\nhole = 10 mm\ndensity = 7850 kg/m3\ndepth = 12 mm\n"
+
+    def test_removal_is_said_as_removal(self):
+        """A hole of 10 mm takes 0.6165 g a mm (steel, 7850 kg/m3), so 1 g is 1.6 mm deep; a point of 118 deg is 3 mm high."""
+        sheet = by_hand({"as-found": [], "trial": [(6, 0)]}, plane=self.DRILL)
+        for text in self.both(sheet):
+            self.assertNotRegex(text, r"-\d+(\.\d+)? g ")
+            self.assertIn("remove", text)
+            self.assertNotIn("Each fixing must hold", text)
+            self.assertIn("Nothing is drilled or cut off where the rotor's strength", text)
+            self.assertNotIn("drill's point", text)
+        sheet = by_hand({"as-found": [], "trial": [(6, 0)], "cut": [(-4, 0), (-1, 45)]}, "mounted = cut\ntarget = 0.1 mm/s rms\n", plane=self.DRILL)
+        for text in self.both(sheet):
+            self.assertIn("In addition to what was removed in run 'cut': 4 g removed at 0 deg", text)
+            self.assertIn("Take off first whatever else of the runs is on: 6 g at 0 deg", text)
+            self.assertIn("that is less than a drill's point is high, about 3 mm", text)
+
+    def test_holes_in_the_table(self):
+        with chain.folder() as where:
+            (where / "job.ini").write_text(by_hand({"as-found": [], "trial": [(6, 0)]}, plane=self.DRILL))
+            data = chain.through(chain.STAGES, b"", read=[where / "job.ini"])
+        done = chain.lopside("report", "--as", "csv", "--what", "placement", stdin=data)
+        (row,) = csv.DictReader(io.StringIO(done.stdout.decode(), newline=""))
+        self.assertEqual(row["hole (mm)"], "10")
+        depths = [float(d) for d in row["depths (mm)"].split()]
+        # pi/4 (10 mm)^2 7850 kg/m3
+        self.assertAlmostEqual(sum(depths) * math.pi / 4 * 100 * 7.85e-3, -float(row["mass"]), 2)
+        picture = chain.lopside("report", "--as", "svg", "--what", "plane", stdin=data).stdout.decode()
+        self.assertRegex(picture, r">[\d.]+ g off<")
+        self.assertNotRegex(picture, r">-[\d.]+ g")
 
 
 if __name__ == "__main__":

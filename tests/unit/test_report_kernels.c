@@ -53,6 +53,29 @@ static void digits_follow_the_uncertainty(void **state)
     }
 }
 
+static void digits_stay_on_their_side(void **state)
+{
+    (void)state;
+    /* By hand: to two digits of its half width the value crosses the limit, as 15753 and 15850 do.
+     */
+    static const struct {
+        double value, half, limit;
+        const char *text;
+    } cases[] = {
+        {15753, 8000, 15850, "15800"},  {15753, 8000, 15740, "15800"},
+        {15753, 8000, 20000, "15800"},  {15753, 90000, 15850, "15800"},
+        {15753, 90000, 18000, "16000"}, {15753, 90000, 15800, "15800"},
+        {15843, 90000, 15840, "16000"}, {15837, 90000, 15840, "15800"},
+        {15753, NAN, 15850, "15750"},   {NAN, 1, 2, "-"},
+        {15753, 8000, NAN, "15800"},
+    };
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        char text[DIGITS_ROOM];
+        digits_against(text, cases[i].value, cases[i].half, cases[i].limit);
+        assert_string_equal(text, cases[i].text);
+    }
+}
+
 static void digits_round_half_widths_up(void **state)
 {
     (void)state;
@@ -345,6 +368,7 @@ int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(digits_follow_the_uncertainty),
+        cmocka_unit_test(digits_stay_on_their_side),
         cmocka_unit_test(digits_round_half_widths_up),
         cmocka_unit_test(digits_small_half_widths),
         cmocka_unit_test(digits_never_narrow_a_range),
