@@ -135,32 +135,40 @@ static void test_any_height(void **unused)
 }
 
 /* Half of each pulse's own height, not of the train's: a fixed level would be off by up to 0.15 of
- * the height, 1.7 deg on these edges. */
+ * the height, 1.7 deg on these edges, which rise by pi/0.1 heights a turn. A height that is wrong
+ * by h moves the instant by h/2 over that slope, 5.7 deg times h. The largest of the samples lies
+ * up to half a sample beside the top, which is (pi/25.7)^2/4 = 0.4 % below it: 0.021 deg. That is
+ * the bar for heights that grow evenly, and twice of it for any: there a pulse's neighbours tell
+ * nothing of it. In the mean, and with four times the samples, the project's. */
 static void test_each_height(void **unused)
 {
     struct train t = {256.7, unequal, 3, 1, 0, 1};
 
     (void)unused;
-    assert_true(timing_of(&t).worst < 0.05);
+    assert_true(timing_of(&t).worst < 0.042);
     assert_true(fabs(timing_of(&t).mean) < 0.01);
     t.shape = growing;
-    assert_true(timing_of(&t).worst < 0.02);
+    assert_true(timing_of(&t).worst < 0.021);
     t.samples = 1024.3;
     assert_true(timing_of(&t).worst < 0.01);
 }
 
-/* Four samples a pulse: flat tops and round ones, each unbiased over the phases of sampling. */
+/* Four samples a pulse: flat tops and round ones, each unbiased over the phases of sampling to the
+ * project's bar. One of them: on the tape's edge, half a sine over two samples, a straight line
+ * between the two about its middle is off by up to 0.043 of a sample of 4.48 deg, 0.19 deg. Of a
+ * round top the parabola through three samples, 1.04 rad of its cosine apart, falls short by up
+ * to 1.3 % of the height (half way between two of them), at 5.7 deg a height as above 0.07 deg; the
+ * curve through the edge's samples may add half of that. */
 static void test_few_samples(void **unused)
 {
     struct train t = {80.31, tape, 5, 0, 0, 1};
 
     (void)unused;
     assert_true(fabs(timing_of(&t).mean) < 0.01);
-    assert_true(timing_of(&t).worst <
-                0.25); /* a 20th of a sample, between two samples of an edge */
+    assert_true(timing_of(&t).worst < 0.19);
     t.shape = wide_bump;
     t.samples = 60.31; /* six samples in all */
-    assert_true(fabs(timing_of(&t).mean) < 0.02);
+    assert_true(fabs(timing_of(&t).mean) < 0.01);
     assert_true(timing_of(&t).worst < 0.1);
 }
 
