@@ -25,19 +25,6 @@ static struct circular from_sums(double c, double s, double total)
     return out;
 }
 
-struct circular circular_summary(const double *deg, const double *weights, size_t count)
-{
-    double c = 0, s = 0, total = 0;
-
-    for (size_t i = 0; i < count; i++) {
-        double w = weights ? weights[i] : 1;
-        c += w * cos(deg[i] * PI / 180);
-        s += w * sin(deg[i] * PI / 180);
-        total += w;
-    }
-    return from_sums(c, s, total);
-}
-
 struct circular circular_of_vectors(const double complex *vectors, size_t count)
 {
     double c = 0, s = 0;

@@ -20,12 +20,8 @@ struct circular {
     double sd_deg;        /* circular standard deviation; infinite where R is 0 */
 };
 
-/* Summary of `count` directions in degrees, any range. `weights` (>= 0, not all 0) are frequencies
- * or turns; NULL: all alike. No directions, or a NaN among them, give NaN throughout. */
-struct circular circular_summary(const double *deg, const double *weights, size_t count);
-
-/* The same of the arguments of `count` vectors: each counts by its direction only. A zero vector
- * has no direction and gives NaN. */
+/* Summary of the arguments of `count` vectors: each counts by its direction only. No vectors, a NaN
+ * among them, or a zero vector, which has no direction, give NaN throughout. */
 struct circular circular_of_vectors(const double complex *vectors, size_t count);
 
 #endif

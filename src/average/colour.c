@@ -11,10 +11,9 @@ static const double CORRELATION[NOISES] = {0, 0.3, 0.5, 0.7, 0.85};
 /* Weights before the blocks are seen, chosen by the simulation in tests/unit/test_average_mean.c:
  * ordinary runs are mostly white. Only their ratios count. */
 static const double PRIOR[NOISES] = {1, 0.1, 0.1, 0.1, 0.3};
-static const double FEW = 1.9;         /* see the header */
-static const double CHI2_95 = 5.99146; /* chi-squared with 2 degrees of freedom, 95 % */
-static const double MISSED = 0.05;     /* 1 - 95 % */
-static const int HALVINGS = 50;        /* of the search: to rounding */
+static const double FEW = 1.9;     /* see the header */
+static const double MISSED = 0.05; /* 1 - 95 % */
+static const int HALVINGS = 50;    /* of the search: to rounding */
 
 /* What the blocks say of each noise. */
 struct noises {
@@ -127,5 +126,5 @@ double colour_variance(const double complex *vectors, size_t count, int componen
         sum += noises.weight[k] = exp(noises.weight[k] - likeliest);
     for (int k = 0; k < NOISES; k++)
         noises.weight[k] /= sum;
-    return (1 - FEW / (double)count) * point(&noises) / CHI2_95;
+    return (1 - FEW / (double)count) * point(&noises) / COLOUR_CHI2_95;
 }

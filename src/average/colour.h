@@ -5,6 +5,8 @@
 #include <complex.h>
 #include <stddef.h>
 
+#define COLOUR_CHI2_95 5.99146 /* chi-squared with 2 degrees of freedom, 95 %: -2 ln 0.05 */
+
 /* The variance of each component of the mean of `count` (>= 2) successive block vectors, made such
  * that |error|^2 over it stays below chi-squared's 95 % point 95 times in 100. `components`: 2, or
  * 1 where the vectors lie on one line.

@@ -10,8 +10,7 @@ static const size_t WANDER_LEAST =
     12; /* blocks; with fewer there is no slow part beside the line */
 static const double WANDER_LEVEL = 0.01; /* of the search for wander; common practice */
 static const double FEW = 2.5;           /* from the simulation, with colour.c's weights */
-static const double CHI2_95 = 5.99146;   /* chi-squared with 2 degrees of freedom, 95 % */
-static const double CHI1_95 = 3.84146;   /* and with 1 */
+static const double CHI1_95 = 3.84146;   /* chi-squared with 1 degree of freedom, 95 % */
 /* Student's t, two-sided 95 %, of 1 to 16 degrees of freedom: M. Abramowitz, I. A. Stegun (1964),
  * table 26.10. */
 static const double T_95[] = {12.706, 4.303, 3.182, 2.776, 2.571, 2.447, 2.365, 2.306,
@@ -39,7 +38,7 @@ double longrun_f2_point(double p, double b)
 static double wider(size_t freedom, int components)
 {
     if (components == 2)
-        return 2 * longrun_f2_point(0.05, (double)freedom) / CHI2_95;
+        return 2 * longrun_f2_point(0.05, (double)freedom) / COLOUR_CHI2_95;
     return T_95[freedom - 1] * T_95[freedom - 1] / CHI1_95;
 }
 

@@ -6,6 +6,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "average/colour.h"
 #include "average/longrun.h"
 
 #define LENGTHS 10
@@ -27,8 +28,7 @@ static const double PRIOR[NOISES] = {1, 0.2, 0.3};
 /* What is added to the variance of curves that bend within reach, which seldom bend alike
  * everywhere; from the campaign of tests/unit/test_average_sweep.c, on the flanks of resonances. */
 static const double UNEVEN = 0.15;
-static const double LINE = 100;        /* variance of the straight line over the curve's: vague */
-static const double CHI2_95 = 5.99146; /* chi-squared with 2 degrees of freedom, 95 % */
+static const double LINE = 100; /* variance of the straight line over the curve's: vague */
 
 /* Room for the models of one length. */
 struct room {
@@ -137,7 +137,7 @@ static size_t ask_ratios(size_t n, double length, int noise, double complex midd
 static void average(struct said *said, size_t count, size_t points, struct smooth *out)
 {
     double likeliest = -INFINITY, sum = 0;
-    double few = 2 * longrun_f2_point(0.05, (double)points - 1) / CHI2_95;
+    double few = 2 * longrun_f2_point(0.05, (double)points - 1) / COLOUR_CHI2_95;
 
     *out = (struct smooth){0};
     for (size_t k = 0; k < count; k++)

@@ -26,8 +26,9 @@ static void to_hex(const unsigned char *bytes, size_t length, char *hex)
     hex[2 * length] = '\0';
 }
 
-/* The library's SHA-256 in a context of its own: one that could not be made is NULL here, whereas the
- * library's default one is then used all the same, and reads through a null pointer (OpenSSL 3.0). */
+/* The library's SHA-256 in a context of its own: one that could not be made is NULL here, whereas
+ * the library's default one is then used all the same, and reads through a null pointer
+ * (OpenSSL 3.0). */
 struct method {
     OSSL_LIB_CTX *library;
     EVP_MD *sha256;
@@ -44,19 +45,6 @@ static void method_close(struct method *method)
 {
     EVP_MD_free(method->sha256);
     OSSL_LIB_CTX_free(method->library);
-}
-
-int digest_bytes(const void *bytes, size_t length, char sha256[65])
-{
-    unsigned char sum[EVP_MAX_MD_SIZE];
-    unsigned int size = 0;
-    struct method method;
-    const bool done = method_open(&method) &&
-                      EVP_Digest(bytes, length, sum, &size, method.sha256, NULL) && size == 32;
-    if (done)
-        to_hex(sum, 32, sha256);
-    method_close(&method);
-    return done ? 0 : -1;
 }
 
 static struct digest_mark mark_of(const struct stat *s)
@@ -76,8 +64,8 @@ int digest_mark(const char *path, struct digest_mark *mark, struct fault *fault)
         char why[128] = "", hint[NEAREST_ROOM] = "";
         if (strerror_r(cause, why, sizeof why) != 0)
             why[0] = '\0';
-        return fault_set(fault, STATUS_RECORDING, "cannot open the recording, %s: '%s'%s", why, path,
-                         cause == ENOENT ? nearest_file(path, hint) : hint);
+        return fault_set(fault, STATUS_RECORDING, "cannot open the recording, %s: '%s'%s", why,
+                         path, cause == ENOENT ? nearest_file(path, hint) : hint);
     }
     if (!S_ISREG(s.st_mode))
         return fault_set(fault, STATUS_RECORDING, "%s: '%s'",
@@ -153,7 +141,8 @@ static bool feed_hash(struct digest *digest, void *context, const char *bytes, s
     return EVP_DigestUpdate(context, bytes, length) == 1;
 }
 
-/* What decoding wants to know before it starts; a text is counted, which is quick. The open file, or -1. */
+/* What decoding wants to know before it starts; a text is counted, which is quick. The open file,
+ * or -1. */
 static int scan(const char *path, struct digest *digest, const atomic_bool *stop)
 {
     if (digest_mark(path, &digest->mark, &digest->fault) != STATUS_DONE)

@@ -16,16 +16,12 @@ struct digest_mark {
 };
 
 struct digest {
-    char sha256[65];
+    char sha256[65]; /* hexadecimal */
     struct digest_mark mark;
     bool text;          /* no NUL byte in its first 4 KiB */
     struct lines lines; /* of a text */
     struct fault fault; /* unreadable, a directory, empty, changed: status not STATUS_DONE */
 };
-
-/* SHA-256 of bytes, as 64 hexadecimal digits. 0, or -1 when the library fails. */
-int digest_bytes(const void *bytes, size_t length, char sha256[65])
-    __attribute__((warn_unused_result));
 
 /* The mark of a file. Status; STATUS_RECORDING for what is no regular file. */
 int digest_mark(const char *path, struct digest_mark *mark, struct fault *fault)
