@@ -186,3 +186,11 @@ void fit_step(const struct answer *a, bool trim, struct advice_next *next)
     say_opposed(a, next);
     list_lost(a, next->text, sizeof next->text);
 }
+
+void fit_heed(const struct advice_finding *f, struct advice_next *next)
+{
+    struct advice_next own = *next;
+    snprintf(own.text, sizeof own.text, "%s", f->text);
+    clause(&own, "%.299s", next->text);
+    memcpy(next->text, own.text, sizeof next->text);
+}

@@ -12,4 +12,7 @@
  * stands whole or not at all. Needs answer_place and lighter_find. */
 void fit_step(const struct answer *answer, bool trim, struct advice_next *next);
 
+/* Puts a finding in front of the step, for whoever reads no further. */
+void fit_heed(const struct advice_finding *finding, struct advice_next *next);
+
 #endif

@@ -28,6 +28,7 @@ int lookback_row(const struct model_row *row, size_t planes, size_t run, struct 
     if (result == REGRESS_OK && part.posterior.rank == planes + 1) {
         double cov[3];
         out->measured = row->y[at];
+        out->bare = part.posterior.mean[0];
         out->predicted = posterior_predict(&part.posterior, row->x + at * planes, cov);
         double variance = cov[0] + cov[2] + row->total[at][0] + row->total[at][2];
         double least = 1e-9 * row->as_found; /* exact readings are known to nine digits */

@@ -9,6 +9,7 @@
 
 struct lookback {
     double complex predicted, measured; /* SI peak, argument is lag */
+    double complex bare;                /* with nothing mounted, as those runs tell */
     double se; /* their distance over its standard error: root of the complex variance of prediction
                   and reading, scatter from run to run included */
 };

@@ -26,8 +26,8 @@ bool notes_runout(const struct model *model, size_t sensor, struct advice_findin
 void notes_runout_step(const struct model *model, const struct model_row *row,
                        struct advice_next *next);
 
-/* `target-missed`: the worst forecast of the aim whose expected amplitude is above its target. False:
- * none is. Needs outlook_fill. */
+/* `target-missed`: the worst forecast of the aim whose expected amplitude is above its target.
+ * False: none is. Needs outlook_fill. */
 bool notes_target(const struct answer *answer, struct advice_finding *finding);
 
 /* `prediction`: a row's reading of run `run` lies `se` standard errors from what was predicted. */

@@ -150,7 +150,8 @@ static bool diagnosis(const struct model *m, const struct remedy_cause *causes, 
                       char *text, size_t size)
 {
     for (size_t i = 0; i < count; i++) {
-        if (!remedy_is_diagnosis(causes[i].check) || !in_aim(m, causes[i].sensor))
+        bool said = causes[i].refused && !strcmp(causes[i].check, "prediction");
+        if ((!said && !remedy_is_diagnosis(causes[i].check)) || !in_aim(m, causes[i].sensor))
             continue;
         snprintf(text, size, "%.250s", causes[i].text);
         char *limit = strstr(text, ", limit "), *advice = limit ? strstr(limit, ": ") : NULL;

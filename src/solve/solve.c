@@ -23,6 +23,7 @@
 #include "solve/outlook.h"
 #include "solve/ruling.h"
 #include "solve/solve_records.h"
+#include "solve/witness.h"
 
 static int kernel_status(int error)
 {
@@ -34,14 +35,28 @@ static int kernel_status(int error)
     return STATUS_SYSTEM;
 }
 
-/* The rows of a sensor that have run `run` are lost to the correction. */
-static void lose_sensor(struct model *m, int sensor, int run)
+/* A row that contradicts itself is lost to the correction, its responses, too. */
+static void tear(struct model_row *row, int run)
 {
+    row->state = MODEL_LOST;
+    row->lost_run = run;
+    row->torn = true;
+}
+
+/* After a refusal at one sensor the others of the condition, too, are lost that are more than
+ * TURN_AGREES standard errors off: what is wrong with weights or senses is wrong for all. */
+static void lose_turned(struct model *m, size_t plane)
+{
+    static const double TURN_AGREES = 2; /* about the 95 % point, common practice */
     for (size_t i = 0; i < m->row_count; i++) {
-        if ((int)m->rows[i].sensor != sensor || !model_find(&m->rows[i], (size_t)run))
+        struct advice_finding f, own;
+        if (!advice_turn_row(m, &m->rows[i], plane, &f) || f.verdict != ADVICE_REFUSE)
             continue;
-        m->rows[i].state = MODEL_LOST;
-        m->rows[i].lost_run = run;
+        for (size_t k = 0; k < m->row_count; k++)
+            if (m->rows[k].condition == m->rows[i].condition &&
+                advice_turn_row(m, &m->rows[k], plane, &own) &&
+                (own.verdict == ADVICE_REFUSE || own.value >= TURN_AGREES))
+                tear(&m->rows[k], own.run);
     }
 }
 
@@ -70,6 +85,63 @@ static int sift(struct solve_records *s, struct model *m)
     return status;
 }
 
+/* True where nothing but `trial-effect` refuses the reading. */
+static bool only_too_small(const struct solve_records *s, const struct model_reading *r)
+{
+    bool small = false;
+    for (size_t i = 0; i < s->cause_count; i++) {
+        const struct remedy_cause *c = &s->causes[i];
+        if (!c->refused || c->run != (int)r->run)
+            continue;
+        bool own = !strcmp(c->check, "trial-effect");
+        if (!own && strcmp(c->check, "prediction") != 0) /* that one is of this comparison */
+            return false;
+        small = small || own;
+    }
+    return small && !r->use;
+}
+
+/* Whether a run that was refused as too small contradicts the fit of any sensor. */
+static bool run_contradicts(const struct solve_records *s, const struct model *m, size_t run)
+{
+    struct advice_finding f;
+    for (size_t i = 0; i < s->count; i++)
+        for (size_t k = 0; k < m->row_count && s->readings[i].run == run; k++)
+            if (only_too_small(s, &s->readings[i]) &&
+                witness_refused(m, &m->rows[k], &s->readings[i], &f) && f.verdict == ADVICE_REFUSE)
+                return true;
+    return false;
+}
+
+/* Readings that did not make the fit, and the corrected run, against what it predicts: a run that
+ * contradicts it loses all sensors that it is more than a caution off at. */
+static int judge_witnesses(struct solve_records *s, struct model *m)
+{
+    struct advice_finding f;
+    int status = STATUS_DONE, run = advice_corrected_run(m);
+    if (run == -2)
+        return message_no_memory();
+    for (size_t i = 0; i < m->row_count && run >= 0 && status == STATUS_DONE; i++) {
+        int contrary = witness_contrary(m, &m->rows[i], (size_t)run, &f);
+        if (contrary < 0)
+            return kernel_status(contrary);
+        if (contrary == 0 || m->rows[i].state != MODEL_GOOD)
+            continue;
+        tear(&m->rows[i], run);
+        status = solve_records_finding(s, &f);
+    }
+    for (size_t i = 0; i < s->count && status == STATUS_DONE; i++)
+        for (size_t k = 0; k < m->row_count && status == STATUS_DONE; k++) {
+            if (!only_too_small(s, &s->readings[i]) ||
+                !witness_refused(m, &m->rows[k], &s->readings[i], &f))
+                continue;
+            status = solve_records_finding(s, &f);
+            if (run_contradicts(s, m, s->readings[i].run))
+                tear(&m->rows[k], f.run);
+        }
+    return status;
+}
+
 /* Findings about the rows; a refused row is lost to the correction. */
 static int judge_rows(struct solve_records *s, struct model *m)
 {
@@ -93,9 +165,11 @@ static int judge_rows(struct solve_records *s, struct model *m)
         if (!advice_turn(m, p, &f))
             continue;
         if (f.verdict == ADVICE_REFUSE)
-            lose_sensor(m, f.sensor, f.run);
+            lose_turned(m, p);
         status = solve_records_finding(s, &f);
     }
+    if (status == STATUS_DONE)
+        status = judge_witnesses(s, m);
     for (size_t i = 0; i < m->job->sensor_count && status == STATUS_DONE; i++) {
         struct advice_finding f;
         if (notes_runout(m, i, &f))
@@ -173,6 +247,20 @@ static int note_removed(struct solve_records *s, const struct advice_next *next)
     return solve_records_finding(s, &f);
 }
 
+/* A correction that made it worse is told at the answer, too. */
+static int note_worse(struct solve_records *s, const struct model *m, int run,
+                      struct advice_next *next)
+{
+    struct advice_finding f;
+    int worse = run >= 0 ? witness_worse(m, (size_t)run, &f) : 0;
+    if (worse < 0)
+        return kernel_status(worse);
+    if (worse == 0)
+        return STATUS_DONE;
+    fit_heed(&f, next);
+    return solve_records_finding(s, &f);
+}
+
 static int note_holes(struct solve_records *s, const struct answer *a)
 {
     struct advice_finding f;
@@ -224,8 +312,12 @@ static int give_answer(struct solve_records *s, struct answer *a)
         }
         advice_done_step(a, run, false, &next);
     }
-    if (!next.step)
+    if (!next.step) {
         fit_step(a, trim || again, &next);
+        status = note_worse(s, a->model, run, &next);
+    }
+    if (status != STATUS_DONE)
+        return status;
     if (!strcmp(next.step, "done"))
         status = stay_with(a, run);
     if (status == STATUS_DONE)

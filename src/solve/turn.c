@@ -40,7 +40,7 @@ bool turn_worst(size_t count, size_t planes, const double complex *y, const doub
         return false;
     bare /= bare_runs;
     noise /= bare_runs * bare_runs;
-    bool any = false;
+    bool any = false, seen = false;
     for (size_t i = 0; i < count; i++)
         for (size_t j = i + 1; j < count; j++) {
             if (only_plane(planes, x + i * planes) != (int)plane ||
@@ -51,13 +51,20 @@ bool turn_worst(size_t count, size_t planes, const double complex *y, const doub
             double weight = angle_wrap_180(angle_of(v) - angle_of(u));
             double spread = (noise + variance(cov[i])) / (2 * cabs(a) * cabs(a)) +
                             (noise + variance(cov[j])) / (2 * cabs(b) * cabs(b));
-            if (fabs(weight) < LEAST_TURN || !(spread > 0) || !isfinite(spread))
+            if (!(spread > 0) || !isfinite(spread))
+                continue;
+            if (!any)
+                *worst = (struct turn_figure){.weight_deg = weight, .from = i, .to = j};
+            any = true;
+            if (fabs(weight) < LEAST_TURN)
                 continue;
             double effect = angle_wrap_180(angle_of(b) - angle_of(a));
             double se = fabs(angle_wrap_180(effect - weight)) * PI / 180 / sqrt(spread);
-            if (!any || se > worst->se)
-                *worst = (struct turn_figure){se, effect, weight, i, j};
-            any = true;
+            bool told = worst->told || fabs(weight) <= 180 - LEAST_TURN;
+            if (!seen || se > worst->se)
+                *worst = (struct turn_figure){se, effect, weight, i, j, told};
+            worst->told = told;
+            seen = true;
         }
     return any;
 }

@@ -163,7 +163,7 @@ class Step(unittest.TestCase):
         runs += [(n, {"A": complex(z + a * chain.weight(0.02, d))}, [("P", 0.02, 60 - d)])
                  for n, d in (("second", 120), ("third", 210))]
         step = self.step(sheet({"P": []}, runs, ["repeatability = 1 %"]), 4)
-        self.assertRegex(step["text"], "^from run '.* deg against rotation .*counted the other way.*; the runs contradict each "
+        self.assertRegex(step["text"], "^from run '.* deg (?:with|against) rotation .*counted the other way.*; the runs contradict each "
                                        "other at sensor 'A'")
         self.assertNotIn("any one", step["text"])
 
@@ -304,9 +304,9 @@ class Contradiction(unittest.TestCase):
                         [("P", 0.02, deg)] if deg is not None else []))
         return out
 
-    def solved(self, runs, code=0, aim=()):
+    def solved(self, runs, code=0, aim=(), base=AIM):
         with chain.folder() as where:
-            (where / "job.ini").write_text(sheet({"P": []}, runs, [*self.AIM, *aim]))
+            (where / "job.ini").write_text(sheet({"P": []}, runs, [*base, *aim]))
             done = chain.lopside("balance", where / "job.ini", "--as", "json")
         self.assertEqual(done.returncode, code, chain.complaint(done))
         return json.loads(done.stdout), done.stderr.decode()
@@ -348,6 +348,48 @@ class Contradiction(unittest.TestCase):
         self.assertEqual(f["verdict"], "caution")
         (step,) = chain.kind(stream, "next")
         self.assertRegex(step["text"], "^first see why the runs do not fit one set of responses .linearity, .* s.e. at sensor 'A'")
+
+    def test_a_wrong_sense_gives_no_weight(self):
+        """Lags noted with the other sign: two trials 120 deg apart say so at twice the caution, unless the sheet sets more."""
+        z, a = self.Z, self.A
+        for apart, code in ((120, 4), (180, 0)):
+            runs = trials({"A": [z, a]}, [("P", 0.02, 30)])
+            runs.append(("second", {"A": complex(z + a * chain.weight(0.02, 30 + apart))}, [("P", 0.02, 30 + apart)]))
+            stream, _ = self.solved([(n, {"A": r["A"].conjugate()}, w) for n, r, w in runs], code, base=["repeatability = 3 %"])
+            (f,) = findings(stream, "lag-follows-weight")
+            if code == 0:  # a mirror looks the same: nothing is called in order
+                self.assertIsNone(f["value"])
+                self.assertRegex(f["text"], "^not checkable .* stand 180 deg apart")
+                continue
+            self.assertEqual((f["verdict"], f["limit"]), ("refuse", 6))
+            self.assertIn("counted the other way", f["text"])
+            self.assertIn("counted the other way", chain.kind(stream, "next")[0]["text"])
+            for kind in ("correction", "placement", "forecast", "response"):
+                self.assertEqual(chain.kind(stream, kind), [])
+        wide = [(n, {"A": r["A"].conjugate()}, w) for n, r, w in runs[:2]]
+        wide.append(("second", {"A": complex(z + a * chain.weight(0.02, 150)).conjugate()}, [("P", 0.02, 150)]))
+        text = sheet({"P": []}, wide, ["repeatability = 3 %"]) + "[limits]\nlag-follows-weight = 100 s.e.\nlinearity = 100 s.e.\n"
+        (f,) = findings(stream_of(text, 5), "lag-follows-weight")  # 5: nothing helps within that misfit
+        self.assertEqual((f["verdict"], f["limit"]), ("ok", 100))
+
+    def test_a_trial_too_small_still_testifies(self):
+        """A trial of 4 s.e. with the wrong sense, then a correction that made it worse: 30 um at 50 g, lags mirrored."""
+        z, a = self.Z, self.A
+        small = complex(z + a * chain.weight(0.0055, 90))
+        fitted = chain.weight(0.05, 0)
+        for sign, code in ((1, 0), (-1, 4)):
+            turned = lambda v: v if sign > 0 else v.conjugate()
+            runs = [("as-found", {"A": turned(z)}, []), ("trial", {"A": turned(small)}, [("P", 0.0055, 90)]),
+                    ("fitted", {"A": turned(complex(z + a * fitted))}, [("P", 0.05, 0)])]
+            stream, _ = self.solved(runs, code, base=["repeatability = 3 %", "mounted = fitted"])
+            self.assertEqual([f["verdict"] for f in chain.kind(stream, "finding") if (f["check"], f["run"]) == ("trial-effect", "trial")], ["refuse"])
+            told = [f["verdict"] for f in findings(stream, "prediction") if f["run"] == "trial"]
+            self.assertEqual(told, [] if code == 0 else ["refuse"])
+            if code == 0:
+                self.assertGreater(abs(z + a * fitted), 1.2 * abs(z))  # else this job tests nothing
+                (f,) = findings(stream, "correction-worse")
+                self.assertIn("the answer rests on that run alone", f["text"])
+                self.assertRegex(chain.kind(stream, "next")[0]["text"], "^run 'fitted' is worse than as found")
 
     def test_refused_and_never_tried(self):
         """A trial without effect, and a plane that nobody tried: refused readings lead, in every stage."""
