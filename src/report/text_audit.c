@@ -14,6 +14,47 @@ static enum verdict verdict_of(const struct dossier *d, const struct dossier_rea
     return item->use ? verdict : VERDICT_REFUSE;
 }
 
+/* A recording that has no reading. */
+static void empty_row(const char *run, const char *verdict, struct table *table)
+{
+    table_cell(table, "%s", run);
+    for (int i = 0; i < 7; i++)
+        table_cell(table, "-");
+    table_cell(table, "%s", verdict);
+}
+
+/* True where there is a record of that recording and none of a reading in it: `first`, the rank of
+ * the first reading that may be its own, goes on to the next recording's. */
+static bool is_empty(const struct dossier *d, const char *run, size_t *first)
+{
+    size_t i = *first;
+    while (i < d->readings.count && strcmp(d->readings.items[i].reading.run, run) == 0)
+        i++;
+    const bool empty = i == *first;
+    *first = i;
+    return empty;
+}
+
+static bool is_unread(const struct dossier *d, const char *run)
+{
+    for (size_t i = 0; i < d->findings.count; i++)
+        if (dossier_is_unreadable(&d->findings.items[i]) &&
+            strcmp(d->findings.items[i].run, run) == 0)
+            return true;
+    return false;
+}
+
+/* How many recordings are in the table with neither a reading nor as unread. */
+static size_t count_empty(const struct dossier *d)
+{
+    size_t count = 0, first = 0;
+    for (size_t r = 0; r < d->runs.count; r++) {
+        const char *run = d->runs.items[r].record.run;
+        count += is_empty(d, run, &first) && !is_unread(d, run);
+    }
+    return count;
+}
+
 void text_audit_summary(const struct dossier *dossier, struct buffer *out)
 {
     size_t counts[3] = {0, 0, 0}, unreadable = 0, open = 0;
@@ -23,6 +64,7 @@ void text_audit_summary(const struct dossier *dossier, struct buffer *out)
     }
     for (size_t i = 0; i < dossier->findings.count; i++)
         unreadable += dossier_is_unreadable(&dossier->findings.items[i]);
+    const size_t empty = count_empty(dossier);
     paper_heading(out, "CAN THESE READINGS BE TRUSTED?");
     paper_say(out, 2, 2,
               "%zu readings from %zu recordings: %zu in order, %zu with caution, %zu refused.",
@@ -30,6 +72,9 @@ void text_audit_summary(const struct dossier *dossier, struct buffer *out)
               counts[VERDICT_CAUTION], counts[VERDICT_REFUSE]);
     if (dossier->readings.count > 0 && counts[VERDICT_REFUSE] == dossier->readings.count)
         paper_say(out, 2, 2, "NONE of these readings is fit to balance on: the findings say why.");
+    if (empty > 0)
+        paper_say(out, 2, 2,
+                  "%zu of the recordings gave no reading: see the table and the findings.", empty);
     if (unreadable > 0)
         paper_say(out, 2, 2, "%zu could not be read: see the end of the table.", unreadable);
     if (open > 0)
@@ -67,24 +112,19 @@ static void audit_row(const struct dossier *d, const struct dossier_reading *ite
     table_cell(table, "%s", r->run);
     table_cell(table, "%s", sensor->name);
     table_cell(table, "%s", shown_speed(text, r->speed_rpm));
-    table_cell(table, "%s %s %s", digits_text(text, s.amplitude, s.half), sensor->show.unit,
-               detection_text(sensor->show.detection));
+    if (isnan(s.amplitude))
+        table_cell(table, "-");
+    else
+        table_cell(table, "%s %s %s", digits_text(text, s.amplitude, s.half), sensor->show.unit,
+                   detection_text(sensor->show.detection));
     if (isnan(s.lag_deg) || s.lag_open)
-        table_cell(table, "none");
+        table_cell(table, isnan(s.amplitude) ? "-" : "none");
     else
         table_cell(table, "%s", digits_angle(text, s.lag_deg, s.lag_half));
     percent_cell(table, r->steady.amplitude_pct);
     percent_cell(table, isnan(s.lag_deg) ? NAN : r->steady.phase_deg);
     percent_cell(table, r->steady.drift_pct);
     table_cell(table, "%s", item->judged ? words[verdict_of(d, item)] : "not vetted");
-}
-
-static void unreadable_row(const struct finding_record *f, struct table *table)
-{
-    table_cell(table, "%s", f->run);
-    for (int i = 0; i < 7; i++)
-        table_cell(table, "-");
-    table_cell(table, "UNREAD");
 }
 
 void text_audit_rows(const struct dossier *dossier, struct table *table)
@@ -96,11 +136,22 @@ void text_audit_rows(const struct dossier *dossier, struct table *table)
     };
     table_init(table, columns, sizeof columns / sizeof *columns);
     table->gap = 1;
-    for (size_t i = 0; i < dossier->readings.count; i++)
-        audit_row(dossier, &dossier->readings.items[i], table);
+    size_t done = 0;
+    for (size_t r = 0; r < dossier->runs.count; r++) {
+        const char *run = dossier->runs.items[r].record.run;
+        size_t i = done, first = done;
+        if (is_empty(dossier, run, &first) && !is_unread(dossier, run))
+            empty_row(run, dossier_verdict(dossier, run, -1) == VERDICT_REFUSE ? "REFUSED" : "none",
+                      table);
+        for (; i < first; i++)
+            audit_row(dossier, &dossier->readings.items[i], table);
+        done = first;
+    }
+    for (; done < dossier->readings.count; done++) /* of runs without a record */
+        audit_row(dossier, &dossier->readings.items[done], table);
     for (size_t i = 0; i < dossier->findings.count; i++) {
         if (dossier_is_unreadable(&dossier->findings.items[i]))
-            unreadable_row(&dossier->findings.items[i], table);
+            empty_row(dossier->findings.items[i].run, "UNREAD", table);
     }
 }
 

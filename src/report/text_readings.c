@@ -18,6 +18,8 @@ struct shown text_readings_shown(const struct dossier *dossier,
     const struct job_sensor *sensor = &dossier->job->sensors[r->sensor];
     double cov[3];
     dossier_cov(reading, cov);
+    if (r->blocks > 0 && (r->has_phase ? cabs(r->vector) : r->amplitude) == 0) /* a dead sensor's */
+        return (struct shown){.amplitude = NAN, .half = NAN, .lag_deg = NAN, .lag_half = NAN};
     if (r->has_phase)
         return shown_vector(r->vector, cov, sensor->quantity, r->speed_rpm, &sensor->show, NAN);
     double half = cov[0] > 0 ? shown_t95(NAN) * sqrt(cov[0]) : NAN;
@@ -29,7 +31,10 @@ static void vector_cells(struct table *table, const struct shown *s, const char 
 {
     char text[DIGITS_ROOM];
     int place = digits_place(s->amplitude, s->half);
-    table_cell(table, "%s %s", digits_text(text, s->amplitude, s->half), unit);
+    if (isnan(s->amplitude))
+        table_cell(table, "no signal");
+    else
+        table_cell(table, "%s %s", digits_text(text, s->amplitude, s->half), unit);
     table_cell(table, "%s", digits_beside(text, s->half, place));
     if (isnan(s->lag_deg)) {
         table_cell(table, "no phase");

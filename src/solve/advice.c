@@ -593,7 +593,9 @@ void advice_done_step(const struct answer *a, int run, bool met, struct advice_n
 {
     *next = (struct advice_next){.step = "done"};
     snprintf(next->text, sizeof next->text,
-             met ? "run '%s' meets the aim: leave its weights on"
+             met ? sits_only_removed(a->model->job, (size_t)run)
+                       ? "run '%s' meets the aim: remove nothing more"
+                       : "run '%s' meets the aim: leave its weights on"
                  : "run '%s': nothing that may be placed lowers it further",
              a->model->job->runs[run].name);
 }

@@ -9,6 +9,7 @@
 #include "solve/lighter.h"
 #include "solve/misfit.h"
 #include "solve/oppose.h"
+#include "solve/sits.h"
 
 #define GAP_SHOWN 0.01 /* %, our choice: less than any reading tells */
 
@@ -86,8 +87,9 @@ static void say_unproven(const struct answer *a, struct advice_next *next)
  */
 static struct judge_figure left_of(const struct answer *a, const struct place_choice *choice)
 {
-    double share = sqrt(fmax(0, choice->objective) / a->placement.nothing);
-    return judge_figure(round(1000 * share) / 10, 2);
+    double share = 100 * sqrt(fmax(0, choice->objective) / a->placement.nothing);
+    /* rounded once, as the report does */
+    return share >= 9.95 ? judge_figure(share, 2) : judge_figure(round(10 * share) / 10, 2);
 }
 
 static double mass_of(const struct answer *a, const struct place_choice *choice)
@@ -131,7 +133,7 @@ static void say_opposed(const struct answer *a, struct advice_next *next)
     else
         clause(next, "the first alternative does without");
     if (strcmp(without.text, with.text) == 0)
-        clause(next, "it leaves no more to two digits");
+        clause(next, "what it leaves is the same to two digits");
     else
         clause(next, "it leaves an expected %s %% instead of %s %%", without.text, with.text);
 }
@@ -157,6 +159,14 @@ static void say_misfit(const struct answer *a, struct advice_next *next)
            run[0] ? ", run '" : "", run, run[0] ? "'" : "");
 }
 
+static bool lists_weights(const struct job *job)
+{
+    for (size_t r = 0; r < job->run_count; r++)
+        if (job->runs[r].weight_count > 0)
+            return true;
+    return false;
+}
+
 void fit_step(const struct answer *a, bool trim, struct advice_next *next)
 {
     const struct job *job = a->model->job;
@@ -167,14 +177,18 @@ void fit_step(const struct answer *a, bool trim, struct advice_next *next)
     const char *work = only_removal(a) ? drill ? drill : "remove material as placed"
                        : mounted >= 0  ? "add what is placed"
                                        : "fit what is placed";
-    if (mounted >= 0)
+    if (mounted >= 0 && sits_only_removed(job, (size_t)mounted))
+        clause(next, "%s, then run again", work);
+    else if (mounted >= 0)
         clause(next, "leave the weights of run '%s' on, %s, then run again",
                job->runs[mounted].name, work);
     else
         clause(next,
                job_removed_run(job) >= 0
                    ? "put back what runs removed, take off what was mounted, %s, then run again"
-                   : "take everything off that was mounted, %s, then run again",
+               : lists_weights(job)
+                   ? "take all off that the runs list, %s, then run again"
+                   : "leave all weights on that were on as found, %s, then run again",
                work);
     say_unproven(a, next);
     if (drill && !only_removal(a))

@@ -99,3 +99,11 @@ bool sits_nowhere(const struct job *job, size_t p, char *text, size_t size)
         return false;
     return true;
 }
+
+bool sits_only_removed(const struct job *job, size_t run)
+{
+    for (size_t i = 0; i < job->runs[run].weight_count; i++)
+        if (!(job->runs[run].weights[i].mounted_mass < 0))
+            return false;
+    return job->runs[run].weight_count > 0;
+}

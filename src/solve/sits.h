@@ -26,4 +26,8 @@ double sits_in_all(const struct job *job, size_t plane);
 /* True where the sheet's limits let nothing at all stand on a plane: `text` says why. */
 bool sits_nowhere(const struct job *job, size_t plane, char *text, size_t size);
 
+/* True where that run lists something, and all of it is removed material: nothing that could be left
+ * on or taken off. */
+bool sits_only_removed(const struct job *job, size_t run);
+
 #endif

@@ -6,6 +6,7 @@ import contextlib
 import csv
 import io
 import os
+import re
 import pathlib
 import random
 import shutil
@@ -236,6 +237,39 @@ class Inbox(unittest.TestCase):
         (job / "gone.wav").write_bytes(b"RIFF no recording")
         self.assertEqual(run(self.inbox, self.outbox).returncode, 3)
         self.assertRegex(status(self.outbox, "audit")[1], r"^3 lopside read: .*gone.wav.*; REFUSED: 6 of 6 readings$")
+
+    def test_a_recording_without_a_reading_is_counted(self):
+        """The tacho's channel (the last) set to zero: of that recording nothing can be read; text and page have a row for it."""
+        job = recorded(self.inbox, "audit", audit=True)
+        with wave.open(str(job / "trial.wav")) as whole:
+            head, data = whole.getparams(), bytearray(whole.readframes(whole.getnframes()))
+        frame = head.nchannels * head.sampwidth
+        for at in range(0, len(data), frame):
+            data[at + frame - head.sampwidth:at + frame] = bytes(head.sampwidth)
+        with wave.open(str(job / "trial.wav"), "wb") as mute:
+            mute.setparams(head)
+            mute.writeframes(bytes(data))
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 0)
+        self.assertRegex(status(self.outbox, "audit")[1], "^0 done; without a reading: 1")
+        for name in ("report.txt", "report.html"):
+            text = " ".join(re.sub("<[^>]*>", " ", (self.outbox / "audit" / name).read_text()).split())
+            self.assertIn("1 of the recordings gave no reading", text)
+            self.assertRegex(text, r"trial( -){7} REFUSED")
+
+    def test_tolerance_not_met_is_in_the_status(self):
+        """G0.001 of 340 kg is less than any piece; no correction leaves so little."""
+        for name, grade in (("a", "G0.001"), ("b", "G1000")):
+            text = BY_HAND.format(title="x")
+            self.assertNotIn("grade", text)
+            put(self.inbox, name, {"job.ini": text.replace("[rotor]\n", "[rotor]\ngrade = " + grade + "\n")})
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 0)
+        self.assertIn("; tolerance NOT MET", status(self.outbox, "a")[1])
+        self.assertNotIn("tolerance", status(self.outbox, "b")[1])
+
+    def test_a_broken_section_is_no_audit(self):
+        put(self.inbox, "a", {"job.ini": BY_HAND.format(title="x").replace("[job]", "[job").replace("[run ", "[rum ")})
+        self.assertEqual(run(self.inbox, self.outbox).returncode, 3)
+        self.assertRegex(status(self.outbox, "a")[1], r"^2 lopside read: job.ini:1: section header without '\]': '\[job'")
 
     def test_links(self):
         """A link to a file is a file; a linked folder is not entered, wherever it leads."""

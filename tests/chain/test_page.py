@@ -362,6 +362,29 @@ class Instruction(unittest.TestCase):
             self.assertIn("Take off first whatever else of the runs is on: 6 g at 0 deg", text)
             self.assertIn("that is less than a drill's point is high, about 3 mm", text)
 
+    def test_what_is_drilled_cannot_be_left_on(self):
+        runs = {"as-found": [], "trial": [(6, 0)], "cut": [(-m, (a + 180) % 360) for m, a in self.TRIM]}
+        for text in self.both(by_hand(runs, "mounted = cut\ntarget = 1 mm/s rms\n", plane=self.DRILL)):
+            self.assertIn("Run 'cut' meets the aim: remove nothing more.", text)
+            self.assertNotIn("leave its weights on", text)
+
+    def test_the_next_step_names_what_there_is(self):
+        runs = {"as-found": [], "trial": self.TRIAL}
+        for text in self.both(by_hand(runs)):
+            self.assertIn("Take all off that the runs list, fit what is placed, then run again", text)
+        with chain.folder() as where:  # as found alone, with the responses of the runs above
+            (where / "job.ini").write_text(by_hand(runs))
+            data = chain.through(chain.STAGES, b"", read=[where / "job.ini"])
+            (where / "stored.jsonl").write_text("".join(
+                line + "\n" for line in data.decode().splitlines() if '"kind":"response"' in line))
+            (where / "job.ini").write_text(by_hand({"as-found": []}, "responses = stored.jsonl\n"))
+            done = chain.lopside("balance", where / "job.ini")
+            self.assertEqual(done.returncode, 0, chain.complaint(done))
+            text = " ".join(done.stdout.decode().split())
+            self.assertIn("no run lists a weight, so leave on all that was on it then.", text)
+            self.assertIn("Leave all weights on that were on as found, fit what is placed, then run again", text)
+            self.assertNotIn("ake all off", text)
+
     def test_holes_in_the_table(self):
         with chain.folder() as where:
             (where / "job.ini").write_text(by_hand({"as-found": [], "trial": [(6, 0)]}, plane=self.DRILL))
