@@ -166,7 +166,7 @@ static void nothing(const struct dossier *d, int answer, struct buffer *out)
     html_part_heading(out, refused ? "No correction: the readings are not fit to balance on"
                                    : "No correction: none can be given from these runs");
     html_part_say(out, "warn",
-                  "Do not fit a correction weight on the strength of these recordings.");
+                  "Do not fit a correction weight on the strength of these readings.");
     reasons(d, !refused, out);
     html_part_heading(out, "What to do now");
     advice(d, out);

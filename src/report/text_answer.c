@@ -194,7 +194,7 @@ static void nothing(const struct dossier *d, bool refused, struct buffer *out)
 {
     paper_heading(out, refused ? "NO CORRECTION: the readings are not fit to balance on"
                                : "NO CORRECTION: none can be given from these runs");
-    paper_say(out, 2, 2, "Do not fit a correction weight on the strength of these recordings.");
+    paper_say(out, 2, 2, "Do not fit a correction weight on the strength of these readings.");
     reasons(d, !refused, out);
     paper_heading(out, "WHAT TO DO NOW");
     if (d->has_next)

@@ -184,6 +184,28 @@ const char *text_forecast_blind(const struct table *table)
     return NULL;
 }
 
+/* Sensors whose target is of another quantity than they show, each once. */
+static void say_converted(const struct dossier *d, struct buffer *text)
+{
+    size_t said = 0;
+    for (size_t s = 0; s < d->job->sensor_count && d->job->aim.targets; s++) {
+        const struct job_target *t = &d->job->aim.targets[s];
+        bool forecast = false;
+        for (size_t i = 0; i < d->forecasts.count; i++)
+            forecast = forecast || d->forecasts.items[i].sensor == (int)s;
+        if (!forecast || !isfinite(t->amplitude) || t->quantity == d->job->sensors[s].show.quantity)
+            continue;
+        buffer_format(text, "%s%s",
+                      said++ ? ", "
+                      : text->length > 0
+                          ? " Targets given in another quantity and converted at 1x: "
+                          : "Targets given in another quantity and converted at 1x: ",
+                      d->job->sensors[s].name);
+    }
+    if (said > 0)
+        buffer_text(text, "; `target` with the sensor's name gives it one of its own.");
+}
+
 void text_forecast_fitted(const struct dossier *dossier, struct buffer *text)
 {
     const bool single = one_condition(dossier);
@@ -206,6 +228,7 @@ void text_forecast_fitted(const struct dossier *dossier, struct buffer *text)
     }
     if (text->length > 0)
         buffer_text(text, ".");
+    say_converted(dossier, text);
 }
 
 void text_forecast_table(const struct dossier *dossier, struct table *table)

@@ -15,7 +15,7 @@ void text_forecast_table(const struct dossier *dossier, struct table *table);
 extern const char text_forecast_1x_only[], text_forecast_after[];
 
 /* Where the figure "before", which is fitted to all runs, differs visibly from the reading itself:
- * what was read; else nothing. */
+ * what was read; and which targets were converted to what their sensors show. Else nothing. */
 void text_forecast_fitted(const struct dossier *dossier, struct buffer *text);
 
 /* What "not forecast" in that table means; NULL where it is not in it. Static text. */

@@ -345,6 +345,14 @@ class Instruction(unittest.TestCase):
             self.assertIn("Before is what all runs together say; the readings themselves differ from it: V read 4.90 mm/s rms",
                           text)
 
+    def test_a_converted_target_is_said(self):
+        said = "Targets given in another quantity and converted at 1x: V; `target` with the sensor's name"
+        sheet = by_hand({"as-found": [], "trial": self.TRIAL}, "target = 1 mm/s rms\n")
+        for text in self.both(sheet):
+            self.assertNotIn("converted at 1x", text)
+        for text in self.both(sheet.replace("[sensor V]\nunit = mm/s\n", "[sensor V]\nunit = mm/s\nshow = um pk-pk\n")):
+            self.assertIn(said, text)
+
     DRILL = "work = remove\nhole = 10 mm\ndensity = 7850 kg/m3\ndepth = 12 mm\n"
 
     def test_removal_is_said_as_removal(self):
