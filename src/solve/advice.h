@@ -30,16 +30,6 @@ struct advice_next {
     char reason[300]; /* for standard error where there is no answer; else "" */
 };
 
-/* Turn of a plane's effect against the turn of its weight, in one row: caution at 3 standard
- * errors, refused at 6 if they are 20 deg apart as well, since the sign of the answer hangs on it.
- * In order without a figure (value NaN) where the trials stand so that a mirror could not be seen.
- * False: no two trials. */
-bool advice_turn_row(const struct model *model, const struct model_row *row, size_t plane,
-                     struct advice_finding *finding);
-
-/* The worst of them over all rows. */
-bool advice_turn(const struct model *model, size_t plane, struct advice_finding *finding);
-
 /* Condition number; names the planes that cannot be told apart and the run that would. False where
  * there is one plane only and nothing to say. */
 bool advice_conditioning(const struct answer *answer, struct advice_finding *finding);

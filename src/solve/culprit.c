@@ -86,3 +86,41 @@ int culprit_mirrored(const struct regress_data *data, double fits, bool *fits_mi
     free(x);
     return result;
 }
+
+static bool bare(const struct regress_data *data, size_t i)
+{
+    for (size_t p = 0; p < data->planes; p++)
+        if (data->x[i * data->planes + p] != 0)
+            return false;
+    return true;
+}
+
+int culprit_left_on(const struct regress_data *data, double fits, int *on, int *in)
+{
+    size_t planes = data->planes, count = data->count, at;
+    double complex *x = calloc(count * planes + 1, sizeof *x);
+    struct regress_data changed = *data;
+    int result = x ? REGRESS_OK : REGRESS_NO_MEMORY;
+    *on = *in = -1;
+    changed.x = x;
+    for (size_t i = 0; i < count && result == REGRESS_OK; i++)
+        for (size_t j = i + 1; j < count && result == REGRESS_OK && !bare(data, i); j++) {
+            struct posterior p;
+            memcpy(x, data->x, count * planes * sizeof *x);
+            for (size_t k = 0; k < planes; k++)
+                x[j * planes + k] += data->x[i * planes + k];
+            result = regress_fit(&changed, &p);
+            if (result != REGRESS_OK)
+                continue;
+            double misfit =
+                p.rank == planes + 1 ? regress_misfit(&changed, &p, &at) : (double)INFINITY;
+            posterior_release(&p);
+            if (!(misfit < fits))
+                continue;
+            fits = misfit;
+            *on = (int)i;
+            *in = (int)j;
+        }
+    free(x);
+    return result;
+}

@@ -22,4 +22,10 @@ int culprit_find(const struct regress_data *data, double fits, bool *possible, i
 int culprit_mirrored(const struct regress_data *data, double fits, bool *fits_mirrored)
     __attribute__((warn_unused_result));
 
+/* Readings `*on` and `*in` (a later one): had the weights of the first been on in the second as
+ * well, as a trial weight that nobody took off, all would fit, misfit below `fits`; the pair that
+ * fits best. -1: there is none. Readings stand in the order of the runs. */
+int culprit_left_on(const struct regress_data *data, double fits, int *on, int *in)
+    __attribute__((warn_unused_result));
+
 #endif

@@ -2,6 +2,7 @@
 
 #include <math.h>
 #include <stdio.h>
+#include <string.h>
 
 bool misfit_list(const struct model *m, const struct model_row *row, char *text, size_t size)
 {
@@ -55,5 +56,10 @@ bool misfit_judge(const struct model *m, const struct model_row *row, struct adv
                  "speeds and the tape of all, and repeat a run, which will tell",
                  any ? "any one may be wrong of " : "which is wrong cannot be told", runs);
     }
+    size_t length = strlen(f->text);
+    if (f->verdict != ADVICE_OK && row->left_on >= 0)
+        snprintf(f->text + length, sizeof f->text - length,
+                 "; they would fit if the weights of run '%s' had still been on in run '%s'",
+                 m->job->runs[row->left_on].name, m->job->runs[row->left_in].name);
     return true;
 }

@@ -256,6 +256,11 @@ static int find_culprit(const struct model *m, struct model_row *row)
         result = culprit_mirrored(&data, MODEL_MISFIT, &mirrored);
     for (size_t i = 0; mirrored && i < row->count; i++)
         row->possible[i] = false;
+    int on = -1, in = -1;
+    if (result == REGRESS_OK)
+        result = culprit_left_on(&data, MODEL_EXPLAINED, &on, &in);
+    row->left_on = on >= 0 ? (int)row->runs[on] : -1;
+    row->left_in = in >= 0 ? (int)row->runs[in] : -1;
     row->culprit = result == REGRESS_OK && which >= 0 && !mirrored ? (int)row->runs[which] : -1;
     return result == REGRESS_OK          ? MODEL_OK
            : result == REGRESS_NO_MEMORY ? MODEL_NO_MEMORY
@@ -385,7 +390,7 @@ int model_init(struct model *m, const struct job *job, struct model_reading *rea
             row->misfit = row->changed = NAN;
             row->widened = 1;
             row->changed_plane = -1;
-            row->lost_run = row->culprit = -1;
+            row->lost_run = row->culprit = row->left_on = row->left_in = -1;
             result = gather(m, row, readings, count);
             if (result == MODEL_OK && !m->amplitudes)
                 result = pool_row(&pool, row, job->plane_count);

@@ -32,6 +32,9 @@ struct model_reading { /* what the stage hands over; any order */
  * known by (the caution limit of `linearity`). */
 #define MODEL_MISFIT 3.0
 
+/* Below so many a changed reading of the sheet explains what did not fit; common practice. */
+#define MODEL_EXPLAINED 2.0
+
 enum model_state {
     MODEL_GOOD, /* the usable readings determine everything */
     MODEL_LOST, /* they would, had none been refused */
@@ -69,8 +72,10 @@ struct model_row {
     bool *possible;    /* owned, count: from MODEL_MISFIT on, the readings of which any one may be
                           wrong */
     int culprit; /* the run that is the only one of them, the others agreeing; -1: cannot be told */
-    bool torn;   /* lost, since its readings contradict each other and no culprit can be told */
-    bool lacks;  /* refused readings would determine more than the usable ones do */
+    int left_on,
+        left_in;    /* runs: all would fit, had the first's weights been on in the second; -1 */
+    bool torn;      /* lost, since its readings contradict each other and no culprit can be told */
+    bool lacks;     /* refused readings would determine more than the usable ones do */
     bool ambiguous; /* amplitudes alone leave more than one answer */
     double complex
         either[2]; /* amplitudes alone: the two weights (kg) that fit alike; NaN: no such pair */

@@ -229,15 +229,39 @@ void notes_speed(const struct job *job, const struct slope_match *match, struct 
  * choice, a single plane of a rigid rotor that is out in one plane leaves a few percent. */
 #define LEFT_MOST 0.3
 
-/* Share of the vibration that the least-squares weight leaves at a row. */
-static double share_left(const struct answer *a, const struct model_row *row)
+/* Amplitude that a weight leaves at a row, SI peak. */
+static double left_by(const struct answer *a, const struct model_row *row,
+                      const double complex *weights)
 {
     for (size_t r = 0; r < a->rows; r++) {
         double unused[3];
         if (a->row[r] == row)
-            return cabs(posterior_predict(&a->posterior[r], a->classical, unused)) / row->as_found;
+            return cabs(posterior_predict(&a->posterior[r], weights, unused));
     }
     return NAN;
+}
+
+/* Chances from which on what is expected is no certainty: our choice of words. */
+#define CHANCE_SOME 0.05
+#define CHANCE_GOOD 0.25
+
+static const char *miss_words(double chance)
+{
+    return !(chance >= CHANCE_SOME)   ? "this will not meet"
+           : !(chance >= CHANCE_GOOD) ? "this is unlikely to meet"
+                                      : "this may well not meet";
+}
+
+/* What keeps the vibration above the target. */
+static const char *miss_reason(const struct answer *a, const struct model_row *row)
+{
+    if (left_by(a, row, a->classical) / row->as_found > LEFT_MOST)
+        return "even the ideal weight leaves much of it; weights on these planes cannot do it "
+               "alone, or a sensor or the tape is not as the sheet says";
+    if (left_by(a, row, a->weights) > row->target)
+        return "even the ideal weight leaves more than the target, since what the readings of all "
+               "sensors and conditions ask for differs";
+    return "positions, stock or limits allow no better";
 }
 
 bool notes_target(const struct answer *a, struct advice_finding *f)
@@ -266,17 +290,13 @@ bool notes_target(const struct answer *a, struct advice_finding *f)
                                  .verdict = ADVICE_CAUTION,
                                  .value = 100 * cabs(worst->after) / target,
                                  .limit = 100};
-    size_t n =
-        (size_t)snprintf(f->text, sizeof f->text,
-                         "this will not meet the target at '%s' (%s of %s %s expected): ", s->name,
-                         shown ? judge_figure(units_shown(after, &s->show), 3).text : "more",
-                         shown ? judge_figure(units_shown(aimed, &s->show), 3).text : "it",
-                         shown ? units_show_text(&s->show, unit) : "");
-    snprintf(f->text + n, sizeof f->text - n, "%s",
-             share_left(a, worst->row) > LEFT_MOST
-                 ? "even the ideal weight leaves much of it; weights on these planes cannot do it "
-                   "alone, or a sensor or the tape is not as the sheet says"
-                 : "positions, stock or limits allow no better");
+    size_t n = (size_t)snprintf(
+        f->text, sizeof f->text,
+        "%s the target at '%s' (%s of %s %s expected): ", miss_words(worst->chance), s->name,
+        shown ? judge_figure(units_shown(after, &s->show), 3).text : "more",
+        shown ? judge_figure(units_shown(aimed, &s->show), 3).text : "it",
+        shown ? units_show_text(&s->show, unit) : "");
+    snprintf(f->text + n, sizeof f->text - n, "%s", miss_reason(a, worst->row));
     return true;
 }
 

@@ -5,6 +5,7 @@
 #include "solve/solve.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "base/message.h"
@@ -14,6 +15,7 @@
 #include "solve/already.h"
 #include "solve/answer.h"
 #include "solve/fit.h"
+#include "solve/follow.h"
 #include "solve/holes.h"
 #include "solve/lighter.h"
 #include "solve/lookback.h"
@@ -50,14 +52,42 @@ static void lose_turned(struct model *m, size_t plane)
     static const double TURN_AGREES = 2; /* about the 95 % point, common practice */
     for (size_t i = 0; i < m->row_count; i++) {
         struct advice_finding f, own;
-        if (!advice_turn_row(m, &m->rows[i], plane, &f) || f.verdict != ADVICE_REFUSE)
+        if (!follow_row(m, &m->rows[i], plane, &f) || f.verdict != ADVICE_REFUSE)
             continue;
         for (size_t k = 0; k < m->row_count; k++)
             if (m->rows[k].condition == m->rows[i].condition &&
-                advice_turn_row(m, &m->rows[k], plane, &own) &&
+                follow_row(m, &m->rows[k], plane, &own) &&
                 (own.verdict == ADVICE_REFUSE || own.value >= TURN_AGREES))
                 tear(&m->rows[k], own.run);
     }
+}
+
+/* Where a reading is left out that vet found exchanged, those it may be exchanged with go as well.
+ */
+static int drop_swapped(struct solve_records *s, const struct model *m, const struct model_row *row,
+                        const struct advice_finding *f)
+{
+    bool swapped = false;
+    int status = STATUS_DONE;
+    for (size_t i = 0; i < s->cause_count; i++)
+        swapped = swapped ||
+                  (!strcmp(s->causes[i].check, "sensor-swapped") && s->causes[i].run == f->run);
+    for (size_t k = 0; swapped && k < m->row_count && status == STATUS_DONE; k++) {
+        const struct model_row *other = &m->rows[k];
+        struct advice_finding own = *f;
+        if (other->condition != row->condition ||
+            m->job->sensors[other->sensor].quantity != m->job->sensors[row->sensor].quantity ||
+            !model_refuse(m, other, f->run, s->readings, s->count))
+            continue;
+        own.sensor = (int)other->sensor;
+        snprintf(own.text, sizeof own.text,
+                 "run '%s' is left out here, too: sensor '%s' may have been exchanged with '%s', "
+                 "whose reading does not fit the other runs",
+                 m->job->runs[f->run].name, m->job->sensors[other->sensor].name,
+                 m->job->sensors[row->sensor].name);
+        status = solve_records_dropped(s, &own);
+    }
+    return status;
 }
 
 /* Takes readings out of use that do not fit the others, as long as it is known which: the model is
@@ -76,6 +106,8 @@ static int sift(struct solve_records *s, struct model *m)
                 continue;
             again = true;
             status = solve_records_dropped(s, &f);
+            if (status == STATUS_DONE)
+                status = drop_swapped(s, m, &m->rows[i], &f);
         }
         if (!again || status != STATUS_DONE)
             continue;
@@ -162,12 +194,16 @@ static int judge_rows(struct solve_records *s, struct model *m)
     }
     for (size_t p = 0; p < m->job->plane_count && status == STATUS_DONE; p++) {
         struct advice_finding f;
-        if (!advice_turn(m, p, &f))
+        if (!follow_worst(m, p, &f))
             continue;
         if (f.verdict == ADVICE_REFUSE)
             lose_turned(m, p);
         status = solve_records_finding(s, &f);
     }
+    for (size_t i = 0; i < s->cause_count; i++)
+        for (size_t k = 0; k < m->row_count; k++)
+            if (m->rows[k].state == MODEL_GOOD && witness_moved(m, &m->rows[k], &s->causes[i]))
+                tear(&m->rows[k], s->causes[i].run);
     if (status == STATUS_DONE)
         status = judge_witnesses(s, m);
     for (size_t i = 0; i < m->job->sensor_count && status == STATUS_DONE; i++) {

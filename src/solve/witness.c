@@ -126,3 +126,32 @@ int witness_worse(const struct model *m, size_t run, struct advice_finding *f)
     }
     return any;
 }
+
+static bool misfits(const struct model_row *row)
+{
+    return row->misfit >= MODEL_MISFIT;
+}
+
+bool witness_moved(const struct model *m, const struct model_row *row,
+                   const struct remedy_cause *cause)
+{
+    bool swapped = !strcmp(cause->check, "sensor-swapped");
+    size_t shown = 0, alike = 0;
+    if (cause->run < 0 ||
+        strcmp(m->job->runs[cause->run].condition, m->conditions[row->condition]) != 0)
+        return false;
+    if (!strcmp(cause->check, "sensor-turned"))
+        return (int)row->sensor == cause->sensor && misfits(row);
+    if (!swapped && strcmp(cause->check, "tape-moved") != 0)
+        return false;
+    for (size_t i = 0; i < m->row_count; i++) {
+        const struct model_row *other = &m->rows[i];
+        if (other->condition != row->condition || !misfits(other))
+            continue;
+        shown++;
+        alike += m->job->sensors[other->sensor].quantity == m->job->sensors[row->sensor].quantity;
+    }
+    if (swapped)
+        return shown > 1 ? misfits(row) : alike > 0;
+    return shown > 1; /* at one sensor a weight that is not as listed explains as much */
+}

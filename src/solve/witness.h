@@ -6,6 +6,7 @@
 
 #include "solve/advice.h"
 #include "solve/model.h"
+#include "solve/remedy.h"
 
 /* The refusal `prediction`: the reading of corrected run `run` changed against as found by more
  * than a right angle off what the runs before it predict, by the limits of `lag-follows-weight`
@@ -26,5 +27,13 @@ bool witness_refused(const struct model *model, const struct model_row *row,
  * be. The worst such sensor. 1, 0, or an enum regress_error. */
 int witness_worse(const struct model *model, size_t run, struct advice_finding *finding)
     __attribute__((warn_unused_result));
+
+/* True where a row is lost to what vet found moved (`tape-moved`, `sensor-swapped`,
+ * `sensor-turned` as `cause`), since the runs of its condition visibly do not fit as they are
+ * (MODEL_MISFIT) and would if it were so: every sensor for a moved tape that two
+ * and more show, the pair for an exchange
+ * (all of one quantity, where only one shows it), the sensor itself for a turn. */
+bool witness_moved(const struct model *model, const struct model_row *row,
+                   const struct remedy_cause *cause);
 
 #endif

@@ -53,7 +53,7 @@ static const struct check_row defaults[CHECK_COUNT] = {
     [CHECK_TRIAL_EFFECT] = {"trial-effect", "s.e.", 30, 5, -1, false, PRACTICE,
                             "use a larger trial weight or another angle"},
     [CHECK_WEIGHT_FORCE] = {"weight-force", "%", 15, 50, +1, false, PRACTICE,
-                            "use a smaller weight"},
+                            "use a smaller weight, if its effect still shows"},
     [CHECK_TAPE_MOVED] = {"tape-moved", "", 3, NAN, +1, false, MISFIT,
                           "look whether tape, tacho or its edge was moved, and run anew with them "
                           "as they are now"},

@@ -126,6 +126,18 @@ static int strongest(const struct trials *t, const struct vet_run *run,
     return sensor;
 }
 
+/* True where the run's weights already pull as hard as they should. */
+static bool pulls(const struct trials *t, const struct vet_run *run)
+{
+    double rpm = t->job->service_rpm > 0 ? t->job->service_rpm : facts_speed(run, t->job, false);
+    double force = within_force(&t->job->runs[run->index], t->job, rpm), limit;
+
+    if (t->findings->limits->rows[CHECK_WEIGHT_FORCE].off)
+        return false;
+    return limits_judge(t->findings->limits, CHECK_WEIGHT_FORCE,
+                        100 * force / within_journal_load(t->job), &limit) != RULING_OK;
+}
+
 static void judge(struct trials *t, size_t k)
 {
     const struct check_row *row = &t->findings->limits->rows[CHECK_TRIAL_EFFECT];
@@ -149,6 +161,10 @@ static void judge(struct trials *t, size_t k)
                  findings_figure(e.amplitude_pct), findings_figure(e.lag_deg));
     else
         snprintf(change, sizeof change, "the amplitude grew from nothing");
+    if (pulls(t, run))
+        findings_instead(t->findings,
+                         "the weight pulls hard already: put it at another angle, or repeat the "
+                         "runs, so that less scatter hides its effect");
     ruling = findings_rule(t->findings, CHECK_TRIAL_EFFECT, ruling, (int)t->sequence[k], sensor,
                            ruling == RULING_CAUTION ? e.amplitude_pct : e.errors,
                            ruling == RULING_CAUTION ? row->caution : row->refuse,

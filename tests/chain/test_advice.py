@@ -178,7 +178,21 @@ class Step(unittest.TestCase):
         self.assertEqual(findings(stream_of(sheet({"P": []}, runs, aim)), "target-missed"), [])
         runs = trials({"A": [z, a], "B": [-0.5 * z, a]}, [("P", 0.02, 30)])
         (f,) = findings(stream_of(sheet({"P": []}, runs, aim)), "target-missed")
-        self.assertIn("even the ideal weight", f["text"])
+        self.assertIn("even the ideal weight leaves much", f["text"])
+        runs = trials({"A": [z, a], "B": [0.8 * z, a]}, [("P", 0.02, 30)])  # 3 um each way
+        (f,) = findings(stream_of(sheet({"P": []}, runs, ["repeatability = 0 %", "target = 1 um pk"])), "target-missed")
+        self.assertRegex(f["text"], "3.00 of 1.00 um pk expected.: even the ideal weight leaves more than the target")
+
+    def test_pulls_hard_and_shows_little(self):
+        """20 g at 100 mm and 1200 rpm: 32 N of 147 N, and 20 um of 150: neither a larger nor a smaller weight is advised alone."""
+        runs = trials({"A": [150 * cmath.exp(1j), 1000 * cmath.exp(2.5j)]}, [("P", 0.02, 30)])
+        for mass, hard in ((30, True), (300, False)):
+            stream = stream_of(sheet({"P": []}, runs, ["repeatability = 1 %"], rotor=[f"mass = {mass} kg", "service speed = 1200 rpm"])
+                               + "[limits]\ncorrection-force = none\n")
+            told = {f["check"]: f["text"] for f in chain.kind(stream, "finding") if f["verdict"] == "caution"}
+            self.assertEqual("weight-force" in told, hard)
+            self.assertEqual("use a larger trial weight" in told["trial-effect"], not hard)
+            self.assertEqual("pulls hard already" in told["trial-effect"], hard)
 
     def test_done_is_of_what_is_on(self):
         """The run that meets the aim is what the forecast and the rest are relative to, said to stay on or not."""
@@ -390,6 +404,39 @@ class Contradiction(unittest.TestCase):
                 (f,) = findings(stream, "correction-worse")
                 self.assertIn("the answer rests on that run alone", f["text"])
                 self.assertRegex(chain.kind(stream, "next")[0]["text"], "^run 'fitted' is worse than as found")
+
+    def test_what_moved_gives_no_weight(self):
+        """Lags shifted, or sensors exchanged, in the last run of three: as read the runs do not fit, moved back they do."""
+        turned = cmath.exp(-0.7j)
+        for case in ("tape", "swap", "none"):
+            runs = self.runs(3)
+            last = runs[2][1]
+            if case == "tape":
+                last.update({k: v * turned for k, v in last.items()})
+            elif case == "swap":
+                last["A"], last["B"] = last["B"], last["A"]
+            stream, said = self.solved(runs, 0 if case == "none" else 4, base=["repeatability = 3 %"])
+            told = [f["check"] for f in chain.kind(stream, "finding")
+                    if f["verdict"] == "caution" and f["check"] in ("tape-moved", "sensor-swapped")]
+            self.assertEqual(told[:1], {"tape": ["tape-moved"], "swap": ["sensor-swapped"], "none": []}[case])
+            if case != "none":
+                self.assertRegex(chain.kind(stream, "next")[0]["text"], "would fit .* times better if")
+                self.assertEqual(chain.kind(stream, "placement") + chain.kind(stream, "response"), [])
+
+    def test_a_trial_weight_left_on(self):
+        """A correction run with the trial still on is named as such; a run whose weight is 90 % off is not."""
+        for on, off in ((1, 1), (0, 1.9)):
+            w, t = chain.weight(0.012, 200), chain.weight(0.02, 30)
+            runs = self.runs(2)
+            runs.append(("fitted", {"A": complex(self.Z + self.A * (off * w + on * t))}, [("P", 0.012, 200)]))
+            runs = [(n, {"A": r["A"]}, x) for n, r, x in runs]
+            with chain.folder() as where:
+                (where / "job.ini").write_text(sheet({"P": []}, runs, ["repeatability = 2 %"]))
+                done = chain.lopside("balance", where / "job.ini", "--as", "json")
+            (f,) = findings(json.loads(done.stdout), "linearity")
+            self.assertNotEqual(f["verdict"], "ok")
+            said = "the weights of run 't1' had still been on in run 'fitted'"
+            self.assertEqual(said in f["text"], on == 1, f["text"])
 
     def test_refused_and_never_tried(self):
         """A trial without effect, and a plane that nobody tried: refused readings lead, in every stage."""

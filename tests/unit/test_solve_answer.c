@@ -11,6 +11,7 @@
 
 #include "base/angle.h"
 #include "solve/advice.h"
+#include "solve/follow.h"
 #include "solve/misfit.h"
 #include "solve/amplitude.h"
 #include "solve/answer.h"
@@ -303,19 +304,19 @@ static void test_lag_follows_weight(void **state)
     two_planes(&d);
     d.job.aim.repeatability = 0.03;
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_false(advice_turn(&d.model, 0, &f)); /* one trial a plane tells nothing */
+    assert_false(follow_worst(&d.model, 0, &f)); /* one trial a plane tells nothing */
     model_release(&d.model);
     desk_run(&d, "left turned", angle_vector(0.06, 150), 0);
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_true(advice_turn(&d.model, 0, &f));
-    assert_false(advice_turn(&d.model, 1, &f));
-    assert_true(advice_turn(&d.model, 0, &f) && f.value < 1e-6);
+    assert_true(follow_worst(&d.model, 0, &f));
+    assert_false(follow_worst(&d.model, 1, &f));
+    assert_true(follow_worst(&d.model, 0, &f) && f.value < 1e-6);
     assert_int_equal(f.verdict, ADVICE_OK);
     model_release(&d.model);
     for (int r = 1; r < 4; r++)
         d.weights[r][0].angle_deg = 360 - d.weights[r][0].angle_deg;
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_true(advice_turn(&d.model, 0, &f));
+    assert_true(follow_worst(&d.model, 0, &f));
     assert_int_equal(f.verdict, ADVICE_REFUSE); /* far beyond 6 s.e.: the sign hangs on it */
     assert_non_null(strstr(f.text, "the other way"));
     model_release(&d.model);
@@ -332,18 +333,18 @@ static void test_mirror_not_told(void **state)
     d.job.aim.repeatability = 0.03;
     desk_run(&d, "opposite", angle_vector(0.06, 210), 0); /* the first stands at 30 deg */
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_true(advice_turn(&d.model, 0, &f));
+    assert_true(follow_worst(&d.model, 0, &f));
     assert_int_equal(f.verdict, ADVICE_OK);
     assert_true(isnan(f.value) && strstr(f.text, "not checkable") == f.text);
     model_release(&d.model);
     d.weights[3][0].angle_deg -= 90; /* says 120 deg where it stood at 210 */
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_true(advice_turn(&d.model, 0, &f));
+    assert_true(follow_worst(&d.model, 0, &f));
     assert_true(isfinite(f.value) && f.verdict == ADVICE_REFUSE);
     model_release(&d.model);
     d.weights[3][0].angle_deg -= 90; /* says 30 deg: at one place, effects opposite */
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_true(advice_turn(&d.model, 0, &f));
+    assert_true(follow_worst(&d.model, 0, &f));
     assert_true(isnan(f.value)); /* `linearity` sees it */
     model_release(&d.model);
 }
@@ -359,7 +360,7 @@ static void test_opposite(void **state)
     desk_run(&d, "turned", angle_vector(0.06, 150), 0);
     d.weights[3][0].angle_deg += 180;
     assert_int_equal(desk_rule(&d), RULING_SOLVE);
-    assert_true(advice_turn(&d.model, 0, &f));
+    assert_true(follow_worst(&d.model, 0, &f));
     assert_int_equal(f.verdict, ADVICE_REFUSE);
     assert_non_null(strstr(f.text, "removed instead of added"));
     assert_null(strstr(f.text, "the other way"));
