@@ -138,18 +138,25 @@ static void say_opposed(const struct answer *a, struct advice_next *next)
         clause(next, "it leaves an expected %s %% instead of %s %%", without.text, with.text);
 }
 
+/* The row of the answer that fits worst, from a caution of `linearity` on; NULL: none. */
+static const struct model_row *worst_misfit(const struct answer *a, struct advice_finding *f)
+{
+    const struct model_row *worst = NULL;
+    for (size_t r = 0; r < a->rows; r++)
+        if (misfit_judge(a->model, a->row[r], f) && f->verdict != ADVICE_OK &&
+            (!worst || a->row[r]->misfit > worst->misfit))
+            worst = a->row[r];
+    return worst && misfit_judge(a->model, worst, f) ? worst : NULL;
+}
+
 /* Runs that do not fit one set of responses: the reader is to look there before anything is fitted.
  */
 static void say_misfit(const struct answer *a, struct advice_next *next)
 {
     const struct model *m = a->model;
-    const struct model_row *worst = NULL;
     struct advice_finding f;
-    for (size_t r = 0; r < a->rows; r++)
-        if (misfit_judge(m, a->row[r], &f) && f.verdict != ADVICE_OK &&
-            (!worst || a->row[r]->misfit > worst->misfit))
-            worst = a->row[r];
-    if (!worst || !misfit_judge(m, worst, &f))
+    const struct model_row *worst = worst_misfit(a, &f);
+    if (!worst)
         return;
     const char *run = f.run >= 0 ? m->job->runs[f.run].name : "";
     clause(next,
@@ -157,6 +164,18 @@ static void say_misfit(const struct answer *a, struct advice_next *next)
            "sensor '%s'%s%s%s): a weight from them may be far off",
            judge_figure(worst->misfit, 2).text, m->job->sensors[worst->sensor].name,
            run[0] ? ", run '" : "", run, run[0] ? "'" : "");
+}
+
+void fit_doubt(const struct answer *a, struct advice_next *next)
+{
+    struct advice_finding f;
+    const struct model_row *worst = worst_misfit(a, &f);
+    if (worst)
+        clause(next,
+               "but the runs do not fit one set of responses (linearity, %s s.e. at sensor '%s'): "
+               "check that what is on is what the sheet lists, before responses are kept from "
+               "them",
+               judge_figure(worst->misfit, 2).text, a->model->job->sensors[worst->sensor].name);
 }
 
 static bool lists_weights(const struct job *job)

@@ -15,4 +15,7 @@ void fit_step(const struct answer *answer, bool trim, struct advice_next *next);
 /* Puts a finding in front of the step, for whoever reads no further. */
 void fit_heed(const struct advice_finding *finding, struct advice_next *next);
 
+/* Puts behind a step `done` that the runs do not fit one set of responses, where that is so. */
+void fit_doubt(const struct answer *answer, struct advice_next *next);
+
 #endif

@@ -262,8 +262,10 @@ static int judge_forces(struct solve_records *s, const struct answer *a,
 static int look_back(struct answer *a, int run, struct advice_next *next)
 {
     int status = kernel_status(outlook_fill(a));
-    if (status == STATUS_DONE && run >= 0 && advice_is_done(a, run))
+    if (status == STATUS_DONE && run >= 0 && advice_is_done(a, run)) {
         advice_done_step(a, run, true, next);
+        fit_doubt(a, next);
+    }
     return status;
 }
 

@@ -423,6 +423,17 @@ class Contradiction(unittest.TestCase):
                 self.assertRegex(chain.kind(stream, "next")[0]["text"], "would fit .* times better if")
                 self.assertEqual(chain.kind(stream, "placement") + chain.kind(stream, "response"), [])
 
+    def test_done_though_the_sheet_is_in_doubt(self):
+        """30 g are wanted at 94 deg; the last run meets the aim, but lists its weight 15 deg off: said behind `done`."""
+        at = math.degrees(cmath.phase(-self.Z / self.A))
+        for off in (0, 15):
+            runs = [(n, {"A": r["A"]}, w) for n, r, w in self.runs(2)]
+            runs.append(("fitted", {"A": complex(self.Z + self.A * chain.weight(0.029, at))}, [("P", 0.029, at + off)]))
+            stream, _ = self.solved(runs, 0, ["target = 3 um pk"], ["repeatability = 2 %"])
+            (step,) = chain.kind(stream, "next")
+            self.assertEqual(step["step"], "done")
+            self.assertEqual("but the runs do not fit one set of responses" in step["text"], off > 0, step["text"])
+
     def test_a_trial_weight_left_on(self):
         """A correction run with the trial still on is named as such; a run whose weight is 90 % off is not."""
         for on, off in ((1, 1), (0, 1.9)):
