@@ -325,3 +325,64 @@ bool notes_zone(const struct answer *a, const struct answer_forecast *fc, struct
              z->overall ? "" : "; of 1x alone, the overall vibration is not less");
     return true;
 }
+
+/* Between conditions at one speed, common practice: a bearing's or a foundation's warmth turns a
+ * response less. */
+#define TURNED_MOST 90  /* deg */
+#define TURNED_ALIKE 30 /* deg: from sensor to sensor */
+#define SPEED_ALIKE 0.02
+
+/* Turn of the response from row a to row b, deg; NaN: not known in both, or at another speed. */
+static double turn_between(const struct model_row *a, const struct model_row *b, size_t plane)
+{
+    if (a->sensor != b->sensor || a->state != MODEL_GOOD || b->state != MODEL_GOOD ||
+        !(fabs(b->speed_rpm / a->speed_rpm - 1) <= SPEED_ALIKE))
+        return NAN;
+    return angle_wrap_180(angle_of(b->posterior.mean[plane + 1]) -
+                          angle_of(a->posterior.mean[plane + 1]));
+}
+
+/* How far all sensors turn alike between two conditions, deg; NaN: they do not. */
+static double turned(const struct model *m, size_t plane, size_t from, size_t to)
+{
+    double first = NAN;
+    size_t count = 0;
+    for (size_t i = 0; i < m->row_count; i++)
+        for (size_t k = 0; k < m->row_count; k++) {
+            if (m->rows[i].condition != from || m->rows[k].condition != to)
+                continue;
+            double turn = turn_between(&m->rows[i], &m->rows[k], plane);
+            if (isnan(turn))
+                continue;
+            first = count++ == 0 ? turn : first;
+            if (!(fabs(turn) > TURNED_MOST) || fabs(angle_wrap_180(turn - first)) > TURNED_ALIKE)
+                return NAN;
+        }
+    return count > 1 ? first : NAN;
+}
+
+bool notes_turned(const struct model *m, size_t plane, struct advice_finding *f)
+{
+    for (size_t to = 1; to < m->condition_count && !m->amplitudes; to++)
+        for (size_t from = 0; from < to; from++) {
+            double turn = turned(m, plane, from, to);
+            if (isnan(turn))
+                continue;
+            *f = (struct advice_finding){.check = "response-turned",
+                                         .unit = "deg",
+                                         .basis = "common practice",
+                                         .verdict = ADVICE_CAUTION,
+                                         .run = -1,
+                                         .sensor = -1,
+                                         .value = fabs(turn),
+                                         .limit = TURNED_MOST};
+            snprintf(f->text, sizeof f->text,
+                     "from condition '%s' to '%s' the responses to plane '%s' turn by %.0f deg at "
+                     "all sensors alike, at one speed, as if a weight's angle had been written "
+                     "wrong in one of them, or the tape moved: check the weights of their runs",
+                     m->conditions[from], m->conditions[to], m->job->planes[plane].name,
+                     fabs(turn));
+            return true;
+        }
+    return false;
+}

@@ -42,4 +42,9 @@ void notes_speed(const struct job *job, const struct slope_match *match,
 bool notes_zone(const struct answer *answer, const struct answer_forecast *forecast,
                 struct advice_finding *finding);
 
+/* The caution `response-turned`: from one condition to another, at speeds that are equal within 2
+ * %, the response of a plane turns by more than 90 deg at two sensors and more, at all of them that
+ * tell, alike within 30 deg. The first such pair. */
+bool notes_turned(const struct model *model, size_t plane, struct advice_finding *finding);
+
 #endif

@@ -206,6 +206,11 @@ static int judge_rows(struct solve_records *s, struct model *m)
                 tear(&m->rows[k], s->causes[i].run);
     if (status == STATUS_DONE)
         status = judge_witnesses(s, m);
+    for (size_t p = 0; p < m->job->plane_count && status == STATUS_DONE; p++) {
+        struct advice_finding f;
+        if (notes_turned(m, p, &f))
+            status = solve_records_finding(s, &f);
+    }
     for (size_t i = 0; i < m->job->sensor_count && status == STATUS_DONE; i++) {
         struct advice_finding f;
         if (notes_runout(m, i, &f))

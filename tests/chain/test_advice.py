@@ -434,6 +434,26 @@ class Contradiction(unittest.TestCase):
             self.assertEqual(step["step"], "done")
             self.assertEqual("but the runs do not fit one set of responses" in step["text"], off > 0, step["text"])
 
+    def test_an_angle_written_wrong_in_one_condition(self):
+        """Hot as cold but for a trial that is listed 120 deg off; a response that turns by 40 deg with warmth is ordinary."""
+        for listed, turn, told in ((30, 0.7, False), (150, 0, True)):
+            runs = [(n, r, w, ["condition = cold"]) for n, r, w in self.runs(2)]
+            warm = cmath.exp(1j * turn)
+            w = chain.weight(0.02, 30)
+            hot = [("hot", {"A": self.Z, "B": 1j * self.Z}, []),
+                   ("hot trial", {"A": complex(self.Z + warm * self.A * w), "B": complex(1j * self.Z + warm * 0.7 * self.A * w)},
+                    [("P", 0.02, listed)])]
+            runs += [(n, r, x, ["condition = hot"]) for n, r, x in hot]
+            stream = self.any_end(runs)
+            self.assertEqual([round(f["value"]) for f in findings(stream, "response-turned")], [120] if told else [])
+
+    def any_end(self, runs):
+        with chain.folder() as where:
+            (where / "job.ini").write_text(sheet({"P": []}, runs, ["repeatability = 3 %"]))
+            done = chain.lopside("balance", where / "job.ini", "--as", "json")
+        self.assertIn(done.returncode, (0, 5), chain.complaint(done))
+        return json.loads(done.stdout)
+
     def test_a_trial_weight_left_on(self):
         """A correction run with the trial still on is named as such; a run whose weight is 90 % off is not."""
         for on, off in ((1, 1), (0, 1.9)):
