@@ -130,6 +130,15 @@ void paper_say(struct buffer *out, size_t first, size_t rest, const char *format
     paper_wrap(out, first, rest, text);
 }
 
+void paper_take(struct buffer *out, size_t first, size_t rest, struct buffer *text)
+{
+    if (text->failed)
+        out->failed = 1;
+    else if (text->bytes)
+        paper_wrap(out, first, rest, text->bytes);
+    buffer_release(text);
+}
+
 void paper_heading(struct buffer *out, const char *heading)
 {
     buffer_add(out, "\n", 1);

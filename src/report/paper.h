@@ -31,6 +31,9 @@ void paper_wrap(struct buffer *out, size_t first, size_t rest, const char *text)
 void paper_say(struct buffer *out, size_t first, size_t rest, const char *format, ...)
     __attribute__((format(printf, 4, 5)));
 
+/* Wraps what a phrase built and releases it; takes over its failure. */
+void paper_take(struct buffer *out, size_t first, size_t rest, struct buffer *text);
+
 /* A blank line and a heading. */
 void paper_heading(struct buffer *out, const char *heading);
 

@@ -20,22 +20,12 @@ static bool step_is(const struct dossier *d, const char *step)
     return d->has_next && strcmp(d->next.step, step) == 0;
 }
 
-/* Wraps what a phrase built, and takes over its failure. */
-static void put(struct buffer *out, size_t first, size_t rest, struct buffer *text)
-{
-    if (text->failed)
-        out->failed = 1;
-    else if (text->bytes)
-        paper_wrap(out, first, rest, text->bytes);
-    buffer_release(text);
-}
-
 /* The next step's text as a sentence. */
 static void advice(const struct dossier *d, size_t indent, struct buffer *out)
 {
     struct buffer text = BUFFER_INIT;
     phrase_sentence(&text, d->next.text);
-    put(out, indent, indent, &text);
+    paper_take(out, indent, indent, &text);
 }
 
 /* A trial weight is worth nothing without its angle. */
@@ -50,7 +40,7 @@ static void relative_to(const struct dossier *d, const char *name, struct buffer
 {
     struct buffer text = BUFFER_INIT;
     mounting_relative_to(&text, d->job, name);
-    put(out, 2, 2, &text);
+    paper_take(out, 2, 2, &text);
 }
 
 /* Pieces in stock have their nominal mass; where any mass may be cut, the ideal weight's 95 % half
@@ -78,7 +68,7 @@ static void placement(const struct dossier *d, size_t number, const struct place
     if (p->position > 0)
         buffer_format(&text, "position %d: ", p->position);
     phrase_angle(&text, d->job, p->angle_deg, NAN);
-    put(out, 2, 5, &text);
+    paper_take(out, 2, 5, &text);
 
     text = (struct buffer)BUFFER_INIT;
     buffer_text(&text, removed ? "remove " : "fit ");
@@ -102,7 +92,7 @@ static void placement(const struct dossier *d, size_t number, const struct place
         buffer_text(&text, "; force not known, the sheet has no service speed");
     }
     phrase_sits(&text, d->job, p);
-    put(out, 5, 5, &text);
+    paper_take(out, 5, 5, &text);
 }
 
 static size_t count_findings(const struct dossier *d, enum verdict verdict)
@@ -123,7 +113,7 @@ static void cautions(const struct dossier *d, struct buffer *out)
     buffer_format(&text, "To be read first: cautions (%zu) among the findings below", count);
     phrase_checks(&text, d, VERDICT_CAUTION);
     buffer_text(&text, ".");
-    put(out, 2, 2, &text);
+    paper_take(out, 2, 2, &text);
 }
 
 static void doubts(const struct dossier *d, struct buffer *out)
@@ -132,7 +122,7 @@ static void doubts(const struct dossier *d, struct buffer *out)
     for (size_t i = 0; i < d->forecasts.count; i++) {
         struct buffer text = BUFFER_INIT;
         text_forecast_missed(d, i, &text);
-        put(out, 2, 2, &text);
+        paper_take(out, 2, 2, &text);
     }
     if (refused > 0) {
         struct buffer text = BUFFER_INIT;
@@ -140,7 +130,7 @@ static void doubts(const struct dossier *d, struct buffer *out)
                       refused);
         phrase_checks(&text, d, VERDICT_REFUSE);
         buffer_text(&text, ".");
-        put(out, 2, 2, &text);
+        paper_take(out, 2, 2, &text);
     }
     cautions(d, out);
 }
@@ -150,7 +140,7 @@ static void heed(const struct dossier *d, struct buffer *out)
     for (size_t i = 0; i < HEED_COUNT; i++) {
         struct buffer text = BUFFER_INIT;
         heed_line(&text, d, i);
-        put(out, 2, 2, &text);
+        paper_take(out, 2, 2, &text);
     }
 }
 
@@ -186,7 +176,7 @@ static void reasons(const struct dossier *d, bool solve_only, struct buffer *out
         if (f->sensor >= 0)
             buffer_format(&text, ", sensor '%s'", dossier_sensor(d, f->sensor));
         buffer_format(&text, ": %s", f->text);
-        put(out, 2, 4, &text);
+        paper_take(out, 2, 4, &text);
     }
 }
 
@@ -292,7 +282,7 @@ static void ideal(const struct dossier *d, const struct correction_record *c, st
     phrase_signed(&text, d->job, c->mass, half[0]);
     buffer_text(&text, " at ");
     phrase_angle(&text, d->job, c->angle_deg, half[1]);
-    put(out, 2, 4, &text);
+    paper_take(out, 2, 4, &text);
     if (isnan(c->least_squares[0]))
         return;
     text = (struct buffer)BUFFER_INIT;
@@ -303,7 +293,7 @@ static void ideal(const struct dossier *d, const struct correction_record *c, st
     buffer_text(&text, " at ");
     phrase_angle(&text, d->job, c->least_squares[1], half[1]);
     half_text(&text, d->job, c->least_squares[0], half);
-    put(out, 4, 6, &text);
+    paper_take(out, 4, 6, &text);
 }
 
 void text_answer_ideal(const struct dossier *dossier, struct buffer *out)
@@ -380,7 +370,7 @@ void text_answer_tolerance(const struct dossier *dossier, struct buffer *out)
     paper_heading(out, "TOLERANCE: estimated residual unbalance");
     table_print(&table, 2, out);
     text_answer_tolerance_words(dossier, &words);
-    put(out, 2, 2, &words);
+    paper_take(out, 2, 2, &words);
     if (dossier->residuals.items[0].basis[0])
         paper_say(out, 2, 2, "Basis: %s.", dossier->residuals.items[0].basis);
     table_release(&table);

@@ -28,15 +28,6 @@ static void share(struct buffer *out, double of_nothing)
     buffer_format(out, "%s %%", digits_at(text, 100 * of_nothing, of_nothing < 0.0995 ? -1 : 0));
 }
 
-static void put(struct buffer *out, size_t first, size_t rest, struct buffer *text)
-{
-    if (text->failed)
-        out->failed = 1;
-    else if (text->bytes)
-        paper_wrap(out, first, rest, text->bytes);
-    buffer_release(text);
-}
-
 /* A weight of a list, to the digits that the 95 % half widths (kg, deg; NaN: nominal) support. */
 static void item(struct buffer *out, const struct job *job, const json_t *json,
                  const double half[2])
@@ -69,7 +60,7 @@ static void other(const struct dossier *d, const json_t *json, struct buffer *ou
         buffer_text(&text, i ? "; " : "");
         item(&text, d->job, one, half);
     }
-    put(out, 2, 4, &text);
+    paper_take(out, 2, 4, &text);
 }
 
 void text_others_write(const struct dossier *dossier, struct buffer *out)
@@ -85,7 +76,7 @@ void text_others_write(const struct dossier *dossier, struct buffer *out)
     share(&text, best);
     buffer_text(&text, " of the vibration; the next best would leave:");
     paper_heading(out, "OTHERWISE");
-    put(out, 2, 2, &text);
+    paper_take(out, 2, 2, &text);
     for (size_t i = 0; i < json_array_size(others); i++)
         other(dossier, json_array_get(others, i), out);
 }
@@ -121,7 +112,7 @@ static void trial(const struct job *job, const json_t *json, struct buffer *out)
     buffer_format(&text, ": expected to change sensor '%s' most, by about %s %s %s (1x).",
                   job->sensors[sensor].name, digits_text(change, effect, effect), show->unit,
                   detection_text(show->detection));
-    put(out, 2, 4, &text);
+    paper_take(out, 2, 4, &text);
 }
 
 void text_others_trials(const struct dossier *dossier, struct buffer *out)
@@ -158,7 +149,7 @@ static void list(const struct dossier *d, const char *lead, const json_t *weight
         item(&text, d->job, weight, half);
     }
     buffer_text(&text, ".");
-    put(out, 2, 4, &text);
+    paper_take(out, 2, 4, &text);
 }
 
 void text_others_same(const struct dossier *dossier, struct buffer *out)

@@ -11,15 +11,6 @@
 #include "report/table.h"
 #include "sheet/units.h"
 
-static void put(struct buffer *out, size_t first, size_t rest, struct buffer *text)
-{
-    if (text->failed)
-        out->failed = 1;
-    else if (text->bytes)
-        paper_wrap(out, first, rest, text->bytes);
-    buffer_release(text);
-}
-
 /* ---- static and couple ---- */
 
 /* 95 % half widths of a part (kg m, and deg) as if both planes erred alike: their covariance is not
@@ -66,7 +57,7 @@ static void part(const struct dossier *d, const char *name, double complex first
     part_weight(&text, d, 0, first, half);
     buffer_text(&text, "; ");
     part_weight(&text, d, 1, second, half);
-    put(out, 2, 4, &text);
+    paper_take(out, 2, 4, &text);
 }
 
 /* "13 %", a share of the vibration; tenths below 10 %. */
