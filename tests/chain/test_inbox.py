@@ -417,6 +417,10 @@ class Inbox(unittest.TestCase):
                 for name in dice.sample(sorted(seen), JOBS * 2 // 3):  # work for the next ones
                     shutil.rmtree(self.outbox / name, ignore_errors=True)
         self.assertEqual(run(self.inbox, self.outbox).stderr, "")
+        deadline = time.monotonic() + 60  # a worker that outlived its killed script may still be at work
+        while any((self.outbox / ".inbox" / "making").iterdir()) and time.monotonic() < deadline:
+            time.sleep(0.2)
+            run(self.inbox, self.outbox)
         self.assertEqual(results(self.outbox), expected)
         self.assertEqual(tree(self.inbox), before)
         self.clean()
