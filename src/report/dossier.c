@@ -374,6 +374,18 @@ double dossier_speed(const struct dossier *dossier, const char *run)
     return NAN;
 }
 
+double dossier_number(const json_t *object, const char *key)
+{
+    const json_t *value = json_object_get(object, key);
+    return json_is_number(value) ? json_number_value(value) : NAN;
+}
+
+const char *dossier_string(const json_t *object, const char *key)
+{
+    const char *text = json_string_value(json_object_get(object, key));
+    return text ? text : "";
+}
+
 const json_t *dossier_instead(const struct dossier *dossier)
 {
     const int run = job_find_run(dossier->job, "as found");

@@ -95,6 +95,11 @@ bool dossier_is_audit(const struct dossier *dossier);
  * has just that name (the sheet does not let its weights stay on). */
 int dossier_base(const struct job *job, const char *relative_to);
 
+/* A figure of the step's own, in the unit its name says; NaN where it is absent or no number. */
+double dossier_number(const json_t *object, const char *key);
+/* A text of the step's own, borrowed from the object; "" where it is absent or no text. */
+const char *dossier_string(const json_t *object, const char *key);
+
 /* The ideal weight with what is mounted the other way, left on or taken off; NULL: none, or a run named
  * "as found" carries weights, so that it cannot be told which it is. Borrowed. */
 const json_t *dossier_instead(const struct dossier *dossier);

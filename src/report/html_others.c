@@ -11,18 +11,6 @@
 #include "report/table.h"
 #include "report/text_answer.h"
 
-static double number(const json_t *object, const char *key)
-{
-    const json_t *value = json_object_get(object, key);
-    return json_is_number(value) ? json_number_value(value) : NAN;
-}
-
-static const char *string(const json_t *object, const char *key)
-{
-    const char *text = json_string_value(json_object_get(object, key));
-    return text ? text : "";
-}
-
 /* A cell of what phrases built; releases it. */
 static void take_cell(struct table *table, struct buffer *text)
 {
@@ -142,15 +130,15 @@ static void weights(const struct dossier *d, const json_t *items, enum known kno
     for (size_t i = 0; i < json_array_size(items); i++) {
         const json_t *item = json_array_get(items, i);
         struct buffer what = BUFFER_INIT;
-        double mass = number(item, "mass"), position = number(item, "position");
+        double mass = dossier_number(item, "mass"), position = dossier_number(item, "position");
         double half[2] = {NAN, NAN};
         if (known == AS_IDEAL)
-            half_of(d, string(item, "plane"), half);
+            half_of(d, dossier_string(item, "plane"), half);
         else if (known == AS_PLACED)
-            half[0] = text_answer_free_half(d, job_find_plane(d->job, string(item, "plane")));
-        table_cell(&table, "%s", string(item, "plane"));
+            half[0] = text_answer_free_half(d, job_find_plane(d->job, dossier_string(item, "plane")));
+        table_cell(&table, "%s", dossier_string(item, "plane"));
         table_cell(&table, position > 0 ? "%.0f" : "-", position);
-        angle_cell(&table, d->job, number(item, "angle_deg"), half[1]);
+        angle_cell(&table, d->job, dossier_number(item, "angle_deg"), half[1]);
         buffer_text(&what, mass < 0 ? "remove " : "fit ");
         phrase_mass(&what, d->job, fabs(mass), half[0]);
         take_cell(&table, &what);
@@ -167,7 +155,7 @@ static const char *share(char text[DIGITS_ROOM], double of_nothing)
 static void others(const struct dossier *d, struct buffer *out)
 {
     const json_t *list = json_object_get(d->figures, "others");
-    double best = number(d->figures, "of_nothing");
+    double best = dossier_number(d->figures, "of_nothing");
     char text[DIGITS_ROOM];
     if (d->placements.count == 0 || json_array_size(list) == 0 || isnan(best))
         return;
@@ -182,7 +170,7 @@ static void others(const struct dossier *d, struct buffer *out)
         const json_t *other = json_array_get(list, i);
         const json_t *items = json_object_get(other, "items");
         buffer_text(out, "<div>\n");
-        html_part_say(out, "", "Leaves %s %%%s%s", share(text, number(other, "of_nothing")),
+        html_part_say(out, "", "Leaves %s %%%s%s", share(text, dossier_number(other, "of_nothing")),
                       json_is_true(json_object_get(other, "unopposed"))
                           ? ", without pieces that work against each other"
                           : "",
@@ -202,7 +190,7 @@ static void otherwise(const struct dossier *d, struct buffer *out)
     if (d->placements.count == 0)
         return;
     if (json_array_size(list) > 0) {
-        const char *to = string(instead, "relative_to");
+        const char *to = dossier_string(instead, "relative_to");
         bool is_run = dossier_base(d->job, to) >= 0;
         html_part_heading(out, is_run ? "Ideal weight if the last run's weights stay on"
                                       : "Ideal weight if everything comes off first");
@@ -278,12 +266,12 @@ void html_others_trial(const struct dossier *dossier, struct buffer *out)
     table_init(&table, columns, sizeof columns / sizeof *columns);
     for (size_t i = 0; i < json_array_size(trials); i++) {
         const json_t *trial = json_array_get(trials, i);
-        double newton = number(trial, "force_n");
-        table_cell(&table, "%s", string(trial, "plane"));
-        mass_cell(&table, dossier->job, number(trial, "mass"), NAN);
+        double newton = dossier_number(trial, "force_n");
+        table_cell(&table, "%s", dossier_string(trial, "plane"));
+        mass_cell(&table, dossier->job, dossier_number(trial, "mass"), NAN);
         table_cell(&table, "%s",
                    isfinite(newton) ? shown_force(dossier->job, force, newton) : "not known");
-        double wanted = number(trial, "wanted_mass"); /* by a rule of thumb: two digits will do */
+        double wanted = dossier_number(trial, "wanted_mass"); /* by a rule of thumb: two digits will do */
         mass_cell(&table, dossier->job, wanted, wanted / 4);
     }
     html_part_table(out, &table);

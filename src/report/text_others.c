@@ -9,18 +9,6 @@
 #include "report/shown.h"
 #include "report/text_answer.h"
 
-static double number(const json_t *object, const char *key)
-{
-    const json_t *value = json_object_get(object, key);
-    return json_is_number(value) ? json_number_value(value) : NAN;
-}
-
-static const char *string(const json_t *object, const char *key)
-{
-    const char *text = json_string_value(json_object_get(object, key));
-    return text ? text : "";
-}
-
 /* "8.7 %": the root of expected squared vibration, as a share of what it is now. */
 static void share(struct buffer *out, double of_nothing)
 {
@@ -32,14 +20,14 @@ static void share(struct buffer *out, double of_nothing)
 static void item(struct buffer *out, const struct job *job, const json_t *json,
                  const double half[2])
 {
-    double mass = number(json, "mass"), position = number(json, "position");
+    double mass = dossier_number(json, "mass"), position = dossier_number(json, "position");
     buffer_text(out, mass < 0 ? "remove " : "");
     phrase_mass(out, job, fabs(mass), half[0]);
-    buffer_format(out, " on plane '%s'", string(json, "plane"));
+    buffer_format(out, " on plane '%s'", dossier_string(json, "plane"));
     if (position > 0)
         buffer_format(out, ", position %.0f", position);
     buffer_text(out, ", at ");
-    phrase_angle(out, job, number(json, "angle_deg"), half[1]);
+    phrase_angle(out, job, dossier_number(json, "angle_deg"), half[1]);
 }
 
 static void other(const struct dossier *d, const json_t *json, struct buffer *out)
@@ -47,7 +35,7 @@ static void other(const struct dossier *d, const json_t *json, struct buffer *ou
     const json_t *items = json_object_get(json, "items");
     struct buffer text = BUFFER_INIT;
     buffer_text(&text, "- ");
-    share(&text, number(json, "of_nothing"));
+    share(&text, dossier_number(json, "of_nothing"));
     buffer_text(&text, json_is_true(json_object_get(json, "unopposed"))
                            ? ", without pieces that work against each other: "
                            : ": ");
@@ -56,7 +44,7 @@ static void other(const struct dossier *d, const json_t *json, struct buffer *ou
     for (size_t i = 0; i < json_array_size(items); i++) {
         const json_t *one = json_array_get(items, i);
         const double half[2] = {
-            text_answer_free_half(d, job_find_plane(d->job, string(one, "plane"))), NAN};
+            text_answer_free_half(d, job_find_plane(d->job, dossier_string(one, "plane"))), NAN};
         buffer_text(&text, i ? "; " : "");
         item(&text, d->job, one, half);
     }
@@ -66,7 +54,7 @@ static void other(const struct dossier *d, const json_t *json, struct buffer *ou
 void text_others_write(const struct dossier *dossier, struct buffer *out)
 {
     const json_t *others = json_object_get(dossier->figures, "others");
-    double best = number(dossier->figures, "of_nothing");
+    double best = dossier_number(dossier->figures, "of_nothing");
     if (dossier->placements.count == 0 || json_array_size(others) == 0 || isnan(best))
         return;
     struct buffer text = BUFFER_INIT;
@@ -93,17 +81,17 @@ static void trial(const struct job *job, const json_t *json, struct buffer *out)
 {
     struct buffer text = BUFFER_INIT;
     char change[DIGITS_ROOM];
-    const int sensor = sensor_index(job, string(json, "sensor"));
-    const double mass = number(json, "mass");
+    const int sensor = sensor_index(job, dossier_string(json, "sensor"));
+    const double mass = dossier_number(json, "mass");
     if (sensor < 0)
         return;
     const struct show *show = &job->sensors[sensor].show;
-    const double effect = shown_amplitude(number(json, "effect"), NAN,
+    const double effect = shown_amplitude(dossier_number(json, "effect"), NAN,
                                           job->sensors[sensor].quantity, job->service_rpm, show)
                               .amplitude;
     if (!isfinite(effect))
         return;
-    buffer_format(&text, "Plane '%s'", string(json, "plane"));
+    buffer_format(&text, "Plane '%s'", dossier_string(json, "plane"));
     if (isfinite(mass)) { /* it is in the text of the step, too, to three digits */
         buffer_text(&text, ", ");
         phrase_mass(&text, job, fabs(mass), fabs(mass) / 10);
@@ -128,8 +116,8 @@ static void ideal_half(const struct dossier *d, const json_t *json, double half[
     half[0] = half[1] = NAN;
     for (size_t i = 0; i < d->corrections.count; i++) {
         const struct correction_record *c = &d->corrections.items[i];
-        if (strcmp(dossier_plane(d, c->plane), string(json, "plane")) == 0)
-            phrase_weight_half(number(json, "mass"), number(json, "angle_deg"), c->ellipse, half);
+        if (strcmp(dossier_plane(d, c->plane), dossier_string(json, "plane")) == 0)
+            phrase_weight_half(dossier_number(json, "mass"), dossier_number(json, "angle_deg"), c->ellipse, half);
     }
 }
 
@@ -160,7 +148,7 @@ void text_others_same(const struct dossier *dossier, struct buffer *out)
         return;
     paper_heading(out, "THE SAME IN OTHER WORDS");
     if (instead) {
-        const char *to = string(instead, "relative_to");
+        const char *to = dossier_string(instead, "relative_to");
         struct buffer lead = BUFFER_INIT;
         if (dossier_base(dossier->job, to) >= 0)
             buffer_format(&lead, "The ideal weight with the weights of run '%s' left on:", to);
